@@ -1,0 +1,349 @@
+package calib
+
+import "reflect"
+
+var floatType = reflect.TypeFor[float64]()
+
+// SchemaVersion names the layout of a stored Result. Keys are added under the
+// same version; a key never changes its meaning or unit.
+const SchemaVersion = "beadwell-result/1"
+
+// Result is the calibration of one recording: everything that any output is
+// made from, and the contract of the JSON file. It is a plain value that is
+// stored and read back without loss. All numbers are SI.
+type Result struct {
+	Schema    string    `json:"schema"`
+	Program   Program   `json:"program"`
+	Created   string    `json:"created,omitempty"` // RFC 3339; the only field that depends on the clock
+	Input     Input     `json:"input"`
+	ReadAs    ReadAs    `json:"read_as"`
+	Settings  []Setting `json:"settings"`
+	Recording Recording `json:"recording"`
+	Medium    Medium    `json:"medium"`
+	Bead      Bead      `json:"bead"`
+	Axes      []Axis    `json:"axes"`
+	Verdict   Verdict   `json:"verdict"`
+	Findings  []Finding `json:"findings"` // never null
+}
+
+// Program says what made the result.
+type Program struct {
+	Name    string   `json:"name"`
+	Version string   `json:"version"`
+	Command []string `json:"command,omitempty"` // the command line, program name first
+}
+
+// Input identifies the file that was read.
+type Input struct {
+	Name   string `json:"name"`           // as given, e.g. "tonight/run7.csv"; "-" for standard input
+	Bead   string `json:"bead,omitempty"` // identifier when the file holds several beads
+	Size   int64  `json:"size"`           // bytes
+	SHA256 string `json:"sha256"`         // hexadecimal
+}
+
+// ReadAs tells how the file was understood.
+type ReadAs struct {
+	Line    string   `json:"line"` // one sentence for a person
+	Columns []Column `json:"columns"`
+	Notes   []string `json:"notes,omitempty"`
+}
+
+// Column is one column of the file and the use that was made of it.
+type Column struct {
+	Header string `json:"header"`
+	Role   string `json:"role"` // "time", "x", "y", "z", "stage", "ignored"
+	Unit   string `json:"unit"`
+}
+
+// Setting is one setting that was in force, with its origin.
+type Setting struct {
+	Key                 string `json:"key"`            // e.g. "bead.diameter"
+	Axis                string `json:"axis,omitempty"` // empty: all axes
+	Text                string `json:"text"`           // as it was given
+	Value               Float  `json:"value"`          // SI; null for a word
+	Unit                string `json:"unit,omitempty"`
+	StandardUncertainty Float  `json:"standard_uncertainty"` // SI; null when none was stated
+	Origin              string `json:"origin"`               // "flag", "track list", "session file", "header", "default"
+	Where               string `json:"where,omitempty"`      // e.g. "session.toml:4:1"
+	Assumed             bool   `json:"assumed,omitempty"`    // a default that matters
+}
+
+// Recording describes the samples that were analysed.
+type Recording struct {
+	Rate       Float  `json:"rate_hz"`
+	RateOrigin string `json:"rate_origin"`
+	Samples    int    `json:"samples"` // on the regular grid, missing ones included
+	Missing    int    `json:"missing"` // samples missing on every axis
+	Duration   Float  `json:"duration_s"`
+	Exposure   Float  `json:"exposure_s"`
+	Jitter     Float  `json:"jitter_s"` // rms of the stamps about the grid; null without stamps
+	Start      Float  `json:"start_s"`  // stamp of the first sample; null without stamps
+}
+
+// Medium is the liquid as it was used.
+type Medium struct {
+	Fluid         string   `json:"fluid"`
+	Temperature   Quantity `json:"temperature"`    // K
+	Viscosity     Quantity `json:"viscosity"`      // Pa s
+	Density       Quantity `json:"density"`        // kg/m3
+	ThermalEnergy Quantity `json:"thermal_energy"` // kT, J
+	Source        string   `json:"source"`
+}
+
+// Bead is the bead as it was used.
+type Bead struct {
+	Diameter Quantity `json:"diameter"` // m
+	Height   Quantity `json:"height"`   // centre above the nearer surface, m; null: far from any
+}
+
+// Axis is the calibration of one axis.
+type Axis struct {
+	Name          string                 `json:"axis"`        // "x", "y" or "z"
+	Orientation   string                 `json:"orientation"` // "parallel" or "perpendicular" to the surface
+	Mean          Float                  `json:"mean_m"`
+	Wall          Wall                   `json:"wall"`
+	Drag          Quantity               `json:"drag"` // computed, Stokes times wall factor, N s/m
+	Adopted       Adopted                `json:"adopted"`
+	Estimates     []Estimate             `json:"estimates"`  // always in the order of the Leg constants
+	Covariance    Covariance             `json:"covariance"` // of the logarithms of the estimates
+	CrossCheck    CrossCheck             `json:"cross_check"`
+	MeasuredDrag  Quantity               `json:"measured_drag"` // kT / D of the spectrum, N s/m
+	DragRatio     Quantity               `json:"drag_ratio"`    // measured over computed drag, 1
+	Spectrum      Spectrum               `json:"power_spectrum"`
+	Equipartition Equipartition          `json:"equipartition"`
+	Displacement  MeanSquareDisplacement `json:"mean_square_displacement"`
+	Trace         Trace                  `json:"trace"`
+}
+
+// Wall is the effect of the surface on the drag.
+type Wall struct {
+	Factor     Quantity `json:"factor"`      // drag over Stokes drag, 1; used
+	Faxen      Float    `json:"faxen"`       // Faxen's fifth-order value for parallel motion, for comparison; null when perpendicular or far
+	FaxenError Float    `json:"faxen_error"` // (Faxen - exact) / exact
+	Method     string   `json:"method"`
+}
+
+// The names of the stiffness estimates.
+const (
+	LegSpectrum          = "power_spectrum"                // 2 pi gamma fc
+	LegEquipartition     = "equipartition"                 // kT / variance
+	LegDisplacement      = "mean_square_displacement"      // kT / half the plateau
+	LegSpectrumAmplitude = "power_spectrum_amplitude"      // kT / variance of the fitted spectrum
+	LegDisplacementTime  = "mean_square_displacement_time" // gamma / relaxation time
+)
+
+// The two routes from a recording to a stiffness.
+const (
+	RouteDrag      = "drag"      // corner frequency or relaxation time, times Stokes drag and wall factor
+	RouteAmplitude = "amplitude" // kT over variance, plateau or spectrum amplitude
+)
+
+// Estimate is one stiffness estimate.
+type Estimate struct {
+	Leg       string   `json:"leg"`
+	Route     string   `json:"route"`
+	Stiffness Quantity `json:"stiffness"` // N/m
+}
+
+// Covariance holds the covariance of ln(stiffness) over the legs named, in that
+// order; an entry of a withheld leg is null.
+type Covariance struct {
+	Legs        []string  `json:"legs"`
+	Statistical [][]Float `json:"statistical"`
+	Combined    [][]Float `json:"combined"`
+}
+
+// CrossCheck compares the estimates of one axis.
+//
+// Equality tests that the stiffness estimates are one and the same number. They
+// share the data, so the test uses their joint covariance. Routes tests the two
+// routes alone: the measured against the computed drag. Amplitudes compares the
+// estimates of the amplitude route with each other; they are nearly one
+// statistic, so agreement there says little.
+type CrossCheck struct {
+	Equality   Test   `json:"equality"`
+	Routes     Test   `json:"routes"`
+	Amplitudes Test   `json:"amplitudes"`
+	Text       string `json:"text"`
+}
+
+// Test is a chi-square test.
+type Test struct {
+	ChiSquare         Float  `json:"chi_square"` // statistical
+	DegreesOfFreedom  int    `json:"degrees_of_freedom"`
+	PValue            Float  `json:"p_value"`             // inputs taken as exact
+	ChiSquareCombined Float  `json:"chi_square_combined"` // with the stated uncertainties of the inputs
+	PValueCombined    Float  `json:"p_value_combined"`    //
+	MeanDifference    Float  `json:"log_difference"`      // routes: ln(drag route) - ln(amplitude route)
+	Reason            string `json:"reason,omitempty"`    // why the test could not be made
+}
+
+// Adopted is the stiffness to use.
+type Adopted struct {
+	Stiffness Quantity         `json:"stiffness"`         // N/m; null when withheld, with the reason
+	Basis     string           `json:"basis"`             // which legs it rests on, in words
+	Weights   map[string]Float `json:"weights,omitempty"` // weight of each route in ln(stiffness)
+	Withheld  string           `json:"withheld,omitempty"`
+	Budget    []BudgetLine     `json:"budget,omitempty"` // contributions to the combined standard uncertainty
+}
+
+// BudgetLine is one input of the uncertainty budget (JCGM 100:2008, 5.1).
+type BudgetLine struct {
+	Input               string `json:"input"`
+	Value               Float  `json:"value"`
+	Unit                string `json:"unit"`
+	StandardUncertainty Float  `json:"standard_uncertainty"`
+	Sensitivity         Float  `json:"log_sensitivity"` // d ln(stiffness) / d ln(input); for temperature d ln(stiffness) / d ln(T / K)
+	Contribution        Float  `json:"contribution"`    // to u(ln stiffness), 1
+	Share               Float  `json:"share"`           // of the combined variance, 1
+}
+
+// Spectrum is the power spectrum estimate of one axis.
+type Spectrum struct {
+	Method        string          `json:"method"`                // "Whittle likelihood" or "exact likelihood"
+	Drag          string          `json:"drag"`                  // "constant" or "frequency-dependent"
+	Corner        Quantity        `json:"corner_frequency"`      // Hz
+	Variance      Quantity        `json:"variance"`              // of the position, blur and noise removed, m2
+	Diffusion     Quantity        `json:"diffusion_coefficient"` // m2/s
+	Noise         Quantity        `json:"noise"`                 // localisation noise, standard deviation, m
+	NoiseVariance Quantity        `json:"noise_variance"`        // m2; may be negative when it was fitted
+	NoiseOrigin   string          `json:"noise_origin"`          // "stated", "fitted", "stated and fitted"
+	LeastSquares  LeastSquares    `json:"least_squares"`         // closed-form fit, a check
+	Band          [2]Float        `json:"band_hz"`
+	Excluded      []Excluded      `json:"excluded,omitempty"`
+	Bins          int             `json:"bins"`
+	Goodness      Goodness        `json:"goodness_of_fit"`
+	Points        []SpectrumPoint `json:"points"` // blocked spectrum, for the figure
+	Model         []Point         `json:"model"`  // one-sided fitted spectrum, Hz, m2/Hz, over 0 to half the rate
+}
+
+// LeastSquares is the closed-form Lorentzian fit (Berg-Sorensen and Flyvbjerg
+// 2004), which knows nothing of blur, aliasing or noise.
+type LeastSquares struct {
+	Corner    Float  `json:"corner_frequency_hz"`
+	Diffusion Float  `json:"diffusion_coefficient_m2_per_s"`
+	Reason    string `json:"reason,omitempty"`
+}
+
+// Excluded is a range of frequencies left out of the fit.
+type Excluded struct {
+	Range  [2]Float `json:"range_hz"`
+	Reason string   `json:"reason"`
+}
+
+// Goodness is a test of the fitted model against the data.
+type Goodness struct {
+	ChiSquare        Float `json:"chi_square"`
+	DegreesOfFreedom int   `json:"degrees_of_freedom"`
+	PValue           Float `json:"p_value"`
+}
+
+// SpectrumPoint is one block of the one-sided power spectrum.
+type SpectrumPoint struct {
+	Frequency Float `json:"f_hz"`
+	Power     Float `json:"power_m2_per_hz"`
+	Standard  Float `json:"standard_uncertainty"` // of the power, from the model
+	Model     Float `json:"model_m2_per_hz"`
+	Residual  Float `json:"residual"` // in standard uncertainties
+	Bins      int   `json:"bins"`
+	Used      bool  `json:"used"`
+}
+
+// Point is one point of a curve.
+type Point struct {
+	X Float `json:"x"`
+	Y Float `json:"y"`
+}
+
+// Equipartition is the variance estimate of one axis.
+type Equipartition struct {
+	RawVariance  Float     `json:"raw_variance_m2"` // about the mean line
+	BlurFactor   Float     `json:"blur_factor"`     // S(a), variance kept by the exposure
+	NoiseShare   Float     `json:"noise_share"`     // noise variance over raw variance
+	LengthFactor Float     `json:"length_factor"`   // expected share of the variance that a record of this length shows
+	Variance     Quantity  `json:"variance"`        // corrected, m2
+	EffectiveN   Float     `json:"effective_samples"`
+	Potential    Potential `json:"potential"`
+}
+
+// Potential is the trapping potential from the position histogram.
+type Potential struct {
+	BinWidth   Float          `json:"bin_width_m"`
+	Bins       []HistogramBin `json:"bins"`
+	Gaussian   [2]Float       `json:"gaussian"`      // mean [m] and standard deviation [m] of the recorded positions
+	Curvature  Quantity       `json:"curvature"`     // of the fitted potential at its minimum, N/m, as recorded (blur and noise included)
+	Anharmonic Quantity       `json:"anharmonicity"` // excess kurtosis of the positions, 1
+	Skewness   Quantity       `json:"skewness"`      // 1
+	Reason     string         `json:"reason,omitempty"`
+}
+
+// HistogramBin is one bin of the position histogram.
+type HistogramBin struct {
+	Centre  Float `json:"x_m"` // relative to the mean
+	Count   int   `json:"count"`
+	Density Float `json:"density_per_m"`
+	Energy  Float `json:"energy_kt"` // -ln(density / peak density); null in an empty bin
+	EnergyU Float `json:"energy_standard_uncertainty_kt"`
+}
+
+// MeanSquareDisplacement is the MSD estimate of one axis.
+type MeanSquareDisplacement struct {
+	Plateau        Quantity   `json:"plateau"`         // 2 V, blur and noise removed, m2
+	RelaxationTime Quantity   `json:"relaxation_time"` // s
+	Goodness       Goodness   `json:"goodness_of_fit"`
+	Points         []MSDPoint `json:"points"`
+	Model          []Point    `json:"model"` // s, m2
+}
+
+// MSDPoint is the mean-square displacement at one lag.
+type MSDPoint struct {
+	Lag      Float `json:"lag_s"`
+	MSD      Float `json:"msd_m2"`
+	Standard Float `json:"standard_uncertainty"`
+	Model    Float `json:"model_m2"`
+	Used     bool  `json:"used"` // in the fit
+}
+
+// Trace is the position against time, decimated to minimum and maximum of
+// consecutive stretches.
+type Trace struct {
+	Start Float   `json:"start_s"`
+	Step  Float   `json:"step_s"` // length of a stretch
+	Low   []Float `json:"low_m"`
+	High  []Float `json:"high_m"`
+}
+
+// The statuses of a verdict.
+const (
+	Consistent   = "consistent"   // exit status 0
+	Inconsistent = "inconsistent" // the cross-check says not to trust it, exit status 3
+	Unfit        = "unfit"        // a health check says so, exit status 3
+)
+
+// Verdict says whether the calibration may be used.
+type Verdict struct {
+	Status      string `json:"status"`
+	Text        string `json:"text"`                // one sentence
+	Reason      string `json:"reason"`              // why, with the numbers
+	FamilyWiseP Float  `json:"family_wise_p_value"` // combined, over all axes and comparisons
+}
+
+// The severities of a finding.
+const (
+	Note     = "note"
+	Doubtful = "doubtful"
+	Bad      = "bad"
+)
+
+// Finding is something that the user should know.
+type Finding struct {
+	Code     string    `json:"code"`
+	Severity string    `json:"severity"`
+	Axis     string    `json:"axis,omitempty"`
+	Text     string    `json:"text"`
+	Remedy   string    `json:"remedy,omitempty"`
+	Value    Float     `json:"value"`     // the number that was judged; null when there is none
+	Limit    Float     `json:"threshold"` // null when there is none
+	Unit     string    `json:"unit,omitempty"`
+	Range    *[2]Float `json:"time_range_s,omitempty"` // where in the recording
+}
