@@ -39,22 +39,20 @@ func newKernel(n int) *kernel {
 	return k
 }
 
-// transform writes the transform of src to dst. All three slices have length n
-// and do not overlap; src is kept, spare is overwritten.
-func (k *kernel) transform(dst, spare, src []complex128) {
+// transform transforms src. The result lies in a or in b, whichever is returned
+// first; the other one is returned second. a and b have length n and do not overlap;
+// src may be b, and is kept if it is not.
+func (k *kernel) transform(src, a, b []complex128) (result, other []complex128) {
 	if len(k.stages) == 0 {
-		copy(dst, src)
-		return
+		copy(a, src)
+		return a, b
 	}
-	in := src
-	for i := range k.stages {
-		out := dst
-		if (len(k.stages)-i)%2 == 0 {
-			out = spare
-		}
-		k.stages[i].run(out, in)
-		in = out
+	k.stages[0].run(a, src)
+	for i := range k.stages[1:] {
+		k.stages[i+1].run(b, a)
+		a, b = b, a
 	}
+	return a, b
 }
 
 // run performs the stage from x to y.

@@ -1,0 +1,42 @@
+package transform
+
+import (
+	"fmt"
+	"testing"
+
+	"gonum.org/v1/gonum/dsp/fourier"
+)
+
+// benchmarkLengths run from one block of an averaged spectrum to a long record.
+var benchmarkLengths = []int{1 << 10, 1 << 14, 100_000, 1_000_000, 1 << 22, 10_000_000}
+
+func BenchmarkPower(b *testing.B) {
+	for _, n := range benchmarkLengths {
+		b.Run(fmt.Sprint(n), func(b *testing.B) {
+			p, err := NewPlan(n)
+			if err != nil {
+				b.Fatal(err)
+			}
+			x, dst := noise(1, n), make([]float64, n/2+1)
+			b.SetBytes(int64(8 * n))
+			for b.Loop() {
+				p.Power(dst, x)
+			}
+		})
+	}
+}
+
+func BenchmarkPowerGonum(b *testing.B) {
+	for _, n := range benchmarkLengths {
+		b.Run(fmt.Sprint(n), func(b *testing.B) {
+			p := fourier.NewFFT(n)
+			x, dst, power := noise(1, n), make([]complex128, n/2+1), make([]float64, n/2+1)
+			b.SetBytes(int64(8 * n))
+			for b.Loop() {
+				for k, z := range p.Coefficients(dst, x) {
+					power[k] = square(z)
+				}
+			}
+		})
+	}
+}
