@@ -13,7 +13,7 @@ type Value struct {
 	U         float64   // standard uncertainty, same unit; 0 when none was stated
 	HasU      bool      // whether an uncertainty was stated
 	Dimension Dimension // what it is; of the dimensions asked for, the one that its unit has
-	Unit      string    // its unit as written, "" for a plain number
+	Unit      string    // its unit in plain letters (um for µm, C for °C), "" for a plain number
 	Text      string    // the text it was read from
 }
 
@@ -102,7 +102,7 @@ func (r reader) read() (Value, *Error) {
 	if err != nil {
 		return Value{}, err
 	}
-	value := Value{Dimension: dim, Unit: p.unit, Text: r.text}
+	value := Value{Dimension: dim, Unit: plainUnit(p.unit), Text: r.text}
 	si, ok := p.number.float(unit.decade)
 	if !ok {
 		return Value{}, r.fail("", "is outside the range of numbers")

@@ -67,6 +67,11 @@ var spellings = strings.NewReplacer(
 	"·", " ", "⋅", " ", "*", " ", "^", "",
 )
 
+// plainUnit writes a unit in the one spelling, with single spaces.
+func plainUnit(text string) string {
+	return strings.Join(strings.Fields(spellings.Replace(text)), " ")
+}
+
 // parseUnit reads a unit such as "um/V", "mPa s" or "g/cm3". Everything after
 // one "/" up to the next divides once: "pN/um/mW". The second result names the
 // part that is not known, when there is one.
@@ -90,7 +95,7 @@ func parseUnit(text string) (scale, string) {
 			unit.multiply(part, sign)
 		}
 	}
-	if unit.offset != 0 && spellings.Replace(text) != "C" {
+	if unit.offset != 0 && plainUnit(text) != "C" {
 		if unit.powers == symbols["C"].powers {
 			return scale{}, text // such as "C/1": with the offset or without?
 		}

@@ -1,6 +1,9 @@
 package session
 
-import "beadwell/calib/quantity"
+import (
+	"beadwell/calib/medium"
+	"beadwell/calib/quantity"
+)
 
 // rateTolerance is how far a stated rate or scale may be from another statement of it,
 // relative: labels carry three or four digits, and a nominal 30 frames a second is 29.97.
@@ -89,5 +92,24 @@ func checkUse(s *Settings) []*Error {
 	if role, _ := s.Lookup("role", ""); role.Word == "trapped" || role.Word == "driven" {
 		needs("laser.heating", "laser.power", "give the power at the sample")
 	}
-	return problems
+	return append(problems, checkFluid(s)...)
+}
+
+// checkFluid refuses a temperature at which the fluid's correlation does not hold.
+func checkFluid(s *Settings) []*Error {
+	name, hasFluid := s.Lookup("medium.fluid", "")
+	temperature, hasTemperature := s.Lookup("medium.temperature", "")
+	if !hasFluid || !hasTemperature {
+		return nil
+	}
+	known, err := medium.ParseFluid(name.Word)
+	if err == nil {
+		_, err = known.At(temperature.Value.SI)
+	}
+	if err == nil {
+		return nil
+	}
+	return []*Error{{Where: temperature.Where, Key: temperature.Key, Text: temperature.Text,
+		Problem: "does not fit medium.fluid " + quoted(name.Text) + from(name) + ": " + err.Error(),
+		Hint:    "correct the temperature or the fluid, or give the viscosity instead of the fluid"}}
 }

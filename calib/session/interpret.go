@@ -5,9 +5,11 @@ import (
 	"path/filepath"
 	"regexp"
 	"slices"
+	"strconv"
 	"strings"
 	"unicode"
 
+	"beadwell/calib/medium"
 	"beadwell/calib/quantity"
 )
 
@@ -190,10 +192,26 @@ func plainText(key Key, text string, origin Origin) (string, *quantity.Error) {
 		return "", &quantity.Error{Text: text, Problem: "has characters that cannot be printed", Hint: "write it like " + key.Placeholder}
 	}
 	switch {
+	case key.Name == "medium.fluid":
+		return fluid(text)
 	case key.Name == "recording.background" && origin != FromFlag:
 		return text, localPath(text)
 	}
 	return text, nil
+}
+
+// fluid returns the canonical name of a fluid.
+func fluid(text string) (string, *quantity.Error) {
+	known, err := medium.ParseFluid(text)
+	if err == nil {
+		return known.Name, nil
+	}
+	message := strings.TrimPrefix(err.Error(), "fluid "+strconv.Quote(text))
+	problem, hint, found := strings.Cut(strings.TrimLeft(message, ": "), ": ")
+	if !found {
+		hint = "write one of " + strings.Join(medium.Examples(), ", ")
+	}
+	return "", &quantity.Error{Text: text, Problem: problem, Hint: hint}
 }
 
 // localPath refuses a path that leads out of its folder.

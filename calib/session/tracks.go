@@ -141,7 +141,7 @@ func (l *list) row(cells []cell) {
 func (l *list) cell(row *Row, col column, c cell) {
 	text := strings.TrimSpace(c.text)
 	switch {
-	case text == "" && (col.kind != settingColumn || c.text == "" || col.key.Name != "recording.delimiter"):
+	case text == "":
 	case col.kind == noteColumn:
 		row.Note = text
 	case col.kind == emptyColumn:
@@ -168,8 +168,8 @@ func fileName(text string) (string, *Error) {
 	if problem := localPath(text); problem != nil {
 		return "", &Error{Key: "file", Text: text, Problem: problem.Problem, Hint: "a track list speaks of recordings in its own folder and below, with forward slashes: run.csv, day2/run.csv"}
 	}
-	if printable(text) != text && strings.ContainsAny(text, "\x00\n\r") {
-		return "", &Error{Key: "file", Text: text, Problem: "has a line break or a NUL in it", Hint: "write the name of one file"}
+	if strings.Contains(text, "\n") {
+		return "", &Error{Key: "file", Text: text, Problem: "has a line break in it", Hint: "write the name of one file"}
 	}
 	return path.Clean(text), nil
 }
