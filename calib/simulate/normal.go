@@ -15,8 +15,11 @@ type deviates struct {
 type purpose uint64
 
 const (
-	motion purpose = iota + 1 // thermal motion, blur and localisation noise
-	origin                    // where the bead is when the record begins
+	motion       purpose = iota + 1 // thermal motion, blur and localisation noise
+	origin                          // where the bead is when the record begins
+	localisation                    // localisation noise, where it is not part of the exact update
+	stamps                          // time stamps
+	losses                          // which samples are lost
 )
 
 // newDeviates returns the stream of one axis for one purpose.

@@ -33,5 +33,7 @@ func (p Physical) Axis() Axis {
 	return Axis{
 		Corner:   p.Stiffness / (2 * math.Pi * p.Drag()),
 		Variance: thermal / p.Stiffness,
+
+		WallFactor: p.WallFactor,
 	}
 }

@@ -18,6 +18,9 @@ type step struct {
 
 // newStep returns the coefficients for an axis sampled at interval [s] with exposure [s].
 func newStep(a Axis, interval, exposure float64) step {
+	if a.Fixed {
+		return step{decay: 1, held: 1, own: a.Noise}
+	}
 	if a.Diffusion != 0 {
 		return freeStep(a.Diffusion, a.Noise, interval, exposure)
 	}

@@ -1,29 +1,42 @@
 package simulate
 
-import (
-	"fmt"
-	"math"
-)
-
-// Truth describes a recording: what the bead does and how it is sampled. It is
-// stored as JSON beside a simulated recording. All numbers are in SI units.
+// Truth describes a recording: what the bead does, how it is sampled, and what
+// goes wrong. It is stored as JSON beside a simulated recording. All numbers are in SI units.
 type Truth struct {
 	Samples  int     `json:"samples"`    // samples per axis
 	Rate     float64 `json:"rate_Hz"`    // sampling rate fs [Hz]
 	Exposure float64 `json:"exposure_s"` // exposure W of each sample [s], from 0 to 1/fs
 	Axes     []Axis  `json:"axes"`       // one entry per recorded axis
+
+	Hydrodynamics *Hydrodynamics `json:"hydrodynamics,omitempty"` // frequency-dependent drag on every axis; nil is constant drag
+	Photodiode    *Photodiode    `json:"photodiode,omitempty"`    // partial low-pass of the detector; nil is none
+	Stage         *Stage         `json:"stage,omitempty"`         // moving stage; nil is a stage at rest
+
+	Rotation float64 `json:"rotation_rad,omitempty"` // angle from the first recorded axis to the first axis of the trap, towards the second [rad]
+	Leaks    []Leak  `json:"leaks,omitempty"`        // cross-talk between recorded axes
+	Events   []Event `json:"events,omitempty"`       // what happens to the bead during the record, in order of time
+	Faults   Faults  `json:"faults,omitzero"`        // what the detector or the computer spoils
 }
 
 // Axis is the truth of one axis. A trapped bead has Corner and Variance; a free
-// one has Diffusion instead.
+// one has Diffusion instead; a fixed one has none of them.
 type Axis struct {
+	Name      string  `json:"name,omitempty"`               // such as x; used in headers
 	Corner    float64 `json:"corner_Hz,omitempty"`          // corner frequency fc [Hz]
 	Variance  float64 `json:"variance_m2,omitempty"`        // thermal variance V = kT/kappa [m²], before blur and noise
 	Diffusion float64 `json:"diffusion_m2_per_s,omitempty"` // diffusion coefficient D of a free bead [m²/s]
+	Fixed     bool    `json:"fixed,omitempty"`              // stuck to the surface for the whole record, or no bead at all
 	Noise     float64 `json:"noise_m,omitempty"`            // standard deviation of the localisation noise [m]
 	Mean      float64 `json:"mean_m,omitempty"`             // rest position [m]; of a free bead, where it starts
 	Drift     float64 `json:"drift_m,omitempty"`            // linear drift over the whole record [m], centred on Mean
 	Lines     []Line  `json:"lines,omitempty"`              // sinusoidal pickup
+
+	// Quartic makes the trap anharmonic: its potential is kT(u²/2 + Quartic u⁴/4) with
+	// u = x/sqrt(V). From -0.01, where the bead sits 25 kT deep, to 1.
+	Quartic float64 `json:"quartic,omitempty"`
+
+	WallFactor    float64 `json:"wall_factor,omitempty"`   // static drag over that far from walls; 0 means 1; enters with Hydrodynamics only
+	Perpendicular bool    `json:"perpendicular,omitempty"` // normal to the wall; enters with Hydrodynamics only
 }
 
 // Line is a sinusoid added to the recorded positions, as mains pickup would be:
@@ -34,58 +47,26 @@ type Line struct {
 	Phase     float64 `json:"phase_rad,omitempty"` // [rad]
 }
 
-// Validate returns an error that names the first value of the truth that no
-// recording can have, or nil.
-func (t Truth) Validate() error {
-	switch {
-	case t.Samples < 1:
-		return fmt.Errorf("samples %d: a recording needs at least 1", t.Samples)
-	case !positive(t.Rate):
-		return fmt.Errorf("sampling rate %v Hz: must be positive and finite", t.Rate)
-	case !(t.Exposure >= 0):
-		return fmt.Errorf("exposure %v s: must be 0 or positive", t.Exposure)
-	case t.Exposure*t.Rate > 1+exposureSlack:
-		return fmt.Errorf("exposure %v s: longer than the sampling interval of %v s", t.Exposure, 1/t.Rate)
-	case len(t.Axes) == 0:
-		return fmt.Errorf("no axes: at least one is needed")
-	}
-	for i, a := range t.Axes {
-		if err := a.validate(); err != nil {
-			return fmt.Errorf("axis %d: %w", i+1, err)
-		}
-	}
-	return nil
+// Leak is cross-talk: Share times the motion of one axis is added to another.
+type Leak struct {
+	From  int     `json:"from"`  // index of the axis that leaks, from 0
+	Into  int     `json:"into"`  // index of the axis that receives, from 0
+	Share float64 `json:"share"` // dimensionless
 }
 
-// exposureSlack lets an exposure of a full frame pass that was written as the
-// rounded reciprocal of the rate, such as 0.033333333 s at 30 Hz.
-const exposureSlack = 1e-6
-
-func (a Axis) validate() error {
-	free := a.Diffusion != 0
-	switch {
-	case free && (a.Corner != 0 || a.Variance != 0):
-		return fmt.Errorf("diffusion coefficient %v m²/s: a bead is either free or has a corner frequency and a variance", a.Diffusion)
-	case free && !positive(a.Diffusion):
-		return fmt.Errorf("diffusion coefficient %v m²/s: must be positive and finite", a.Diffusion)
-	case !free && !positive(a.Corner):
-		return fmt.Errorf("corner frequency %v Hz: must be positive and finite", a.Corner)
-	case !free && !positive(a.Variance):
-		return fmt.Errorf("variance %v m²: must be positive and finite", a.Variance)
-	case !(a.Noise >= 0) || math.IsInf(a.Noise, 0):
-		return fmt.Errorf("localisation noise %v m: must be 0 or positive", a.Noise)
-	case !finite(a.Mean):
-		return fmt.Errorf("mean %v m: must be finite", a.Mean)
-	case !finite(a.Drift):
-		return fmt.Errorf("drift %v m: must be finite", a.Drift)
+func (a Axis) wallFactor() float64 {
+	if a.WallFactor == 0 {
+		return 1
 	}
-	for _, l := range a.Lines {
-		if !(l.Frequency >= 0) || !finite(l.Frequency) || !finite(l.Amplitude) || !finite(l.Phase) {
-			return fmt.Errorf("line of %v m at %v Hz: frequency, amplitude and phase must be finite, the frequency not negative", l.Amplitude, l.Frequency)
-		}
-	}
-	return nil
+	return a.WallFactor
 }
 
-func finite(v float64) bool   { return !math.IsNaN(v) && !math.IsInf(v, 0) }
-func positive(v float64) bool { return v > 0 && !math.IsInf(v, 1) }
+// synthesised tells whether the motion comes from its spectrum.
+func (t Truth) synthesised() bool {
+	return t.Hydrodynamics != nil || t.Photodiode != nil
+}
+
+// mixed tells whether axes are combined before noise is added.
+func (t Truth) mixed() bool {
+	return t.Rotation != 0 || len(t.Leaks) > 0
+}
