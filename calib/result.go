@@ -35,10 +35,11 @@ type Program struct {
 
 // Input identifies the file that was read.
 type Input struct {
-	Name   string `json:"name"`           // as given, e.g. "tonight/run7.csv"; "-" for standard input
-	Bead   string `json:"bead,omitempty"` // identifier when the file holds several beads
-	Size   int64  `json:"size"`           // bytes
-	SHA256 string `json:"sha256"`         // hexadecimal
+	Name      string `json:"name"`                 // as given, e.g. "tonight/run7.csv"; "-" for standard input
+	NameBytes string `json:"name_bytes,omitempty"` // hexadecimal; in a stored result whose name is no UTF-8
+	Bead      string `json:"bead,omitempty"`       // identifier when the file holds several beads
+	Size      int64  `json:"size"`                 // bytes
+	SHA256    string `json:"sha256"`               // hexadecimal
 }
 
 // ReadAs tells how the file was understood.

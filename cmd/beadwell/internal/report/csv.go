@@ -1,0 +1,133 @@
+package report
+
+import (
+	"encoding/csv"
+	"io"
+	"strconv"
+
+	"beadwell/calib"
+)
+
+// legAdopted stands in the column leg for the adopted stiffness.
+const legAdopted = "adopted"
+
+// column is one column of the CSV table: its name with the unit, and its cell.
+type column struct {
+	name string
+	cell func(csvRow) string
+}
+
+// csvRow is one stiffness of one axis, or a recording that has none.
+type csvRow struct {
+	result    *calib.Result
+	axis      calib.Axis
+	leg       string
+	route     string
+	stiffness calib.Quantity
+	problem   string
+}
+
+// Columns of the CSV table, in order. docs/output.md describes them.
+var columns = []column{
+	{"file", func(r csvRow) string { return cell(r.result.Input.Name) }},
+	{"bead", func(r csvRow) string { return cell(r.result.Input.Bead) }},
+	{"axis", func(r csvRow) string { return cell(r.axis.Name) }},
+	{"leg", func(r csvRow) string { return cell(r.leg) }},
+	{"route", func(r csvRow) string { return cell(r.route) }},
+	{"stiffness_N_per_m", func(r csvRow) string { return full(r.stiffness.Value) }},
+	{"statistical_u_N_per_m", uncertainty(statistical, func(u calib.Uncertainty) calib.Float { return u.Standard })},
+	{"statistical_68_low_N_per_m", uncertainty(statistical, func(u calib.Uncertainty) calib.Float { return u.Interval68[0] })},
+	{"statistical_68_high_N_per_m", uncertainty(statistical, func(u calib.Uncertainty) calib.Float { return u.Interval68[1] })},
+	{"statistical_95_low_N_per_m", uncertainty(statistical, func(u calib.Uncertainty) calib.Float { return u.Interval95[0] })},
+	{"statistical_95_high_N_per_m", uncertainty(statistical, func(u calib.Uncertainty) calib.Float { return u.Interval95[1] })},
+	{"combined_u_N_per_m", uncertainty(withInputs, func(u calib.Uncertainty) calib.Float { return u.Standard })},
+	{"combined_68_low_N_per_m", uncertainty(withInputs, func(u calib.Uncertainty) calib.Float { return u.Interval68[0] })},
+	{"combined_68_high_N_per_m", uncertainty(withInputs, func(u calib.Uncertainty) calib.Float { return u.Interval68[1] })},
+	{"combined_95_low_N_per_m", uncertainty(withInputs, func(u calib.Uncertainty) calib.Float { return u.Interval95[0] })},
+	{"combined_95_high_N_per_m", uncertainty(withInputs, func(u calib.Uncertainty) calib.Float { return u.Interval95[1] })},
+	{"drag_computed_N_s_per_m", func(r csvRow) string { return full(r.axis.Drag.Value) }},
+	{"drag_measured_N_s_per_m", func(r csvRow) string { return full(r.axis.MeasuredDrag.Value) }},
+	{"corner_frequency_Hz", func(r csvRow) string { return full(r.axis.Spectrum.Corner.Value) }},
+	{"p_routes_statistical", func(r csvRow) string { return full(r.axis.CrossCheck.Routes.PValue) }},
+	{"p_routes_combined", func(r csvRow) string { return full(r.axis.CrossCheck.Routes.PValueCombined) }},
+	{"verdict", func(r csvRow) string { return cell(r.result.Verdict.Status) }},
+	{"problem", func(r csvRow) string { return cell(r.problem) }},
+}
+
+func statistical(q calib.Quantity) *calib.Uncertainty { return q.Statistical }
+func withInputs(q calib.Quantity) *calib.Uncertainty  { return q.Combined }
+
+func uncertainty(part func(calib.Quantity) *calib.Uncertainty, number func(calib.Uncertainty) calib.Float) func(csvRow) string {
+	return func(r csvRow) string {
+		u := part(r.stiffness)
+		if u == nil {
+			return ""
+		}
+		return full(number(*u))
+	}
+}
+
+// full prints a number so that it reads back to the same bits; an unknown
+// number is an empty cell.
+func full(f calib.Float) string {
+	if !f.Known() {
+		return ""
+	}
+	return strconv.FormatFloat(float64(f), 'g', -1, 64)
+}
+
+// CSV writes one row for each estimate of each axis and one for its adopted
+// stiffness, in SI units at full precision, under one header line; a recording
+// that failed is one row with the column problem filled in.
+func CSV(w io.Writer, s Set) error {
+	out := csv.NewWriter(w)
+	header := make([]string, len(columns))
+	for i, c := range columns {
+		header[i] = c.name
+	}
+	out.Write(header) // errors stay in the writer until Flush
+	for _, r := range s.Results {
+		for _, row := range csvRows(r) {
+			out.Write(cells(row))
+		}
+	}
+	for _, failure := range s.Failures {
+		out.Write(cells(failedRow(failure)))
+	}
+	out.Flush()
+	return out.Error()
+}
+
+func csvRows(r *calib.Result) []csvRow {
+	var rows []csvRow
+	for _, axis := range r.Axes {
+		row := csvRow{result: r, axis: axis}
+		row.leg, row.stiffness, row.problem = legAdopted, axis.Adopted.Stiffness, withheldReason(axis.Adopted)
+		rows = append(rows, row)
+		for _, estimate := range axis.Estimates {
+			row.leg, row.route, row.stiffness = estimate.Leg, estimate.Route, estimate.Stiffness
+			row.problem = estimate.Stiffness.Reason
+			rows = append(rows, row)
+		}
+	}
+	return rows
+}
+
+// failedRow is the row of a recording without a result.
+func failedRow(p Problem) csvRow {
+	unknown := calib.Withheld("", p.Message)
+	row := csvRow{result: &calib.Result{}, stiffness: unknown, problem: p.Message}
+	row.result.Input.Name = p.Input
+	row.result.Verdict.Status = "failed"
+	row.axis.Drag, row.axis.MeasuredDrag, row.axis.Spectrum.Corner = unknown, unknown, unknown
+	row.axis.CrossCheck.Routes = calib.Test{PValue: unknown.Value, PValueCombined: unknown.Value}
+	return row
+}
+
+func cells(row csvRow) []string {
+	out := make([]string, len(columns))
+	for i, c := range columns {
+		out[i] = c.cell(row)
+	}
+	return out
+}

@@ -1,0 +1,73 @@
+package report
+
+import (
+	"bytes"
+	"encoding/json"
+	"fmt"
+	"io"
+
+	"beadwell/calib"
+)
+
+// SetVersion names the layout of a Set, as calib.SchemaVersion does for one result.
+const SetVersion = "beadwell-results/1"
+
+// Set is the JSON of several recordings in one run: the results in the order of
+// the command line, and what kept the others from having one.
+type Set struct {
+	Schema   string          `json:"schema"`
+	Results  []*calib.Result `json:"results"`  // never null
+	Failures []Problem       `json:"failures"` // never null
+}
+
+// Problem is an error as JSON: what --format json writes to standard error, and
+// what stands in a Set for a recording that failed. A key is absent when it has no meaning for the error.
+type Problem struct {
+	Code    string    `json:"code"`             // "usage", "settings", "input", "output", "internal", "interrupted", "partial"
+	Status  int       `json:"exit_status"`      // exit status that the problem has by itself
+	Input   string    `json:"input,omitempty"`  // recording that failed, as named on the command line
+	File    string    `json:"file,omitempty"`   // file that the problem stands in
+	Line    int       `json:"line,omitempty"`   // from 1
+	Column  int       `json:"column,omitempty"` // from 1
+	Message string    `json:"message"`
+	Remedy  string    `json:"remedy,omitempty"`
+	Others  []Problem `json:"others,omitempty"` // further places with a problem
+}
+
+// JSON writes one result as indented JSON that ends with a newline. The same
+// result gives the same bytes, and ReadJSON gives the same result back. An
+// input name that is no UTF-8, which JSON cannot carry, is kept beside its
+// readable form as input.name_bytes.
+func JSON(w io.Writer, r *calib.Result) error { return writeJSON(w, storable(r)) }
+
+// SetJSON writes the results of several recordings.
+func SetJSON(w io.Writer, s Set) error {
+	stored := Set{Schema: SetVersion, Results: []*calib.Result{}, Failures: []Problem{}}
+	for _, r := range s.Results {
+		stored.Results = append(stored.Results, storable(r))
+	}
+	stored.Failures = append(stored.Failures, s.Failures...)
+	return writeJSON(w, stored)
+}
+
+// ProblemJSON writes one problem on one line.
+func ProblemJSON(w io.Writer, p Problem) error {
+	encoded, err := json.Marshal(p)
+	if err != nil {
+		return err
+	}
+	_, err = w.Write(append(escapeInvisible(encoded), '\n'))
+	return err
+}
+
+func writeJSON(w io.Writer, value any) error {
+	var b bytes.Buffer
+	e := json.NewEncoder(&b)
+	e.SetEscapeHTML(false)
+	e.SetIndent("", " ")
+	if err := e.Encode(value); err != nil {
+		return fmt.Errorf("the result cannot be written as JSON: %w", err)
+	}
+	_, err := w.Write(escapeInvisible(b.Bytes()))
+	return err
+}

@@ -1,0 +1,269 @@
+package report
+
+import (
+	"bytes"
+	"encoding/hex"
+	"encoding/json"
+	"errors"
+	"fmt"
+	"io"
+	"sort"
+	"unicode/utf8"
+
+	"beadwell/calib"
+)
+
+// maxStored bounds a stored result [bytes]: about a hundred times the largest
+// that the program writes.
+const maxStored = 64 << 20
+
+// ReadJSON reads a stored result. It is strict, so that nothing is lost on the
+// way: a key that this version does not know, a missing key, a key twice, a
+// number where a word is due, or anything behind the result is an error that
+// names the place. Errors are of type *ReadError.
+func ReadJSON(r io.Reader) (*calib.Result, error) {
+	text, err := io.ReadAll(io.LimitReader(r, maxStored+1))
+	if err != nil {
+		return nil, &ReadError{What: err.Error()}
+	}
+	if len(text) > maxStored {
+		return nil, &ReadError{What: fmt.Sprintf("is larger than %d bytes, no stored result is", maxStored)}
+	}
+	result, err := decode(text)
+	if err != nil {
+		return nil, err
+	}
+	return result, restore(result)
+}
+
+// ReadError says why a stored result cannot be read.
+type ReadError struct {
+	Line, Column int    // from 1; 0 when the place is a key
+	What         string // what is wrong, in words
+	Remedy       string
+}
+
+// Error gives the place and what is wrong there.
+func (e *ReadError) Error() string {
+	if e.Line == 0 {
+		return e.What
+	}
+	return fmt.Sprintf("%d:%d: %s", e.Line, e.Column, e.What)
+}
+
+func decode(text []byte) (*calib.Result, error) {
+	if !utf8.Valid(text) {
+		return nil, &ReadError{What: "is not UTF-8 text", Remedy: remedyStored}
+	}
+	var head struct {
+		Schema string `json:"schema"`
+	}
+	if err := json.Unmarshal(text, &head); err != nil {
+		return nil, readError(text, err)
+	}
+	switch head.Schema {
+	case calib.SchemaVersion:
+	case SetVersion:
+		return nil, &ReadError{What: "holds the results of several recordings", Remedy: "give one member of its list \"results\""}
+	default:
+		return nil, &ReadError{What: fmt.Sprintf("schema is %q, not %q", head.Schema, calib.SchemaVersion), Remedy: remedyStored}
+	}
+	decoder := json.NewDecoder(bytes.NewReader(text))
+	decoder.DisallowUnknownFields()
+	result := new(calib.Result)
+	if err := decoder.Decode(result); err != nil {
+		return nil, readError(text, err)
+	}
+	return result, compareWithSource(text, result)
+}
+
+const remedyStored = "give a result that beadwell wrote as JSON; calibrate the recording again when there is none"
+
+// readError finds the place of an error of encoding/json.
+func readError(text []byte, err error) *ReadError {
+	offset := int64(-1)
+	what := err.Error()
+	var syntax *json.SyntaxError
+	var wrongType *json.UnmarshalTypeError
+	switch {
+	case errors.As(err, &syntax):
+		offset, what = syntax.Offset, "is not JSON: "+syntax.Error()
+	case errors.As(err, &wrongType):
+		offset = wrongType.Offset
+		what = fmt.Sprintf("%s holds a %s where the program writes %s", keyName(wrongType.Field), wrongType.Value, wrongType.Type)
+	}
+	if offset < 0 || offset > int64(len(text)) {
+		return &ReadError{What: what, Remedy: remedyStored}
+	}
+	before := text[:offset]
+	line := bytes.Count(before, []byte{'\n'}) + 1
+	column := len(before) - bytes.LastIndexByte(before, '\n') - 1
+	return &ReadError{Line: line, Column: max(column, 1), What: what, Remedy: remedyStored}
+}
+
+func keyName(field string) string {
+	if field == "" {
+		return "a value"
+	}
+	return field
+}
+
+// compareWithSource makes sure that nothing was lost: what is read must be
+// written again as it stood.
+func compareWithSource(text []byte, result *calib.Result) error {
+	written, err := json.Marshal(result)
+	if err != nil {
+		return &ReadError{What: err.Error()}
+	}
+	var want, got any
+	if err := json.Unmarshal(text, &want); err != nil {
+		return readError(text, err)
+	}
+	if err := json.Unmarshal(written, &got); err != nil {
+		return &ReadError{What: err.Error()}
+	}
+	if place, what := difference("", want, got); what != "" {
+		return &ReadError{What: keyName(place) + " " + what, Remedy: remedyStored}
+	}
+	return checkKeys(text)
+}
+
+// difference finds the first place where a value read back differs from its
+// source. An optional key whose value is empty may be left out.
+func difference(place string, source, back any) (where, what string) {
+	switch s := source.(type) {
+	case map[string]any:
+		b, ok := back.(map[string]any)
+		if !ok {
+			return place, "is an object where the program writes none"
+		}
+		return differentKeys(place, s, b)
+	case []any:
+		b, ok := back.([]any)
+		if !ok || len(b) != len(s) {
+			return place, fmt.Sprintf("is a list of %d where the program writes another length", len(s))
+		}
+		for i := range s {
+			if where, what := difference(fmt.Sprintf("%s[%d]", place, i), s[i], b[i]); what != "" {
+				return where, what
+			}
+		}
+	default:
+		if source != back {
+			return place, fmt.Sprintf("is %v, which the program would not write", source)
+		}
+	}
+	return "", ""
+}
+
+func differentKeys(place string, source, back map[string]any) (where, what string) {
+	for _, key := range sortedKeys(source) {
+		value, ok := back[key]
+		if !ok {
+			if isEmpty(source[key]) {
+				continue
+			}
+			return join(place, key), "is not a key of a result"
+		}
+		if where, what := difference(join(place, key), source[key], value); what != "" {
+			return where, what
+		}
+	}
+	for _, key := range sortedKeys(back) {
+		if _, ok := source[key]; !ok {
+			return join(place, key), "is missing"
+		}
+	}
+	return "", ""
+}
+
+func isEmpty(value any) bool {
+	switch v := value.(type) {
+	case nil:
+		return true
+	case string:
+		return v == ""
+	case bool:
+		return !v
+	case []any:
+		return len(v) == 0
+	case map[string]any:
+		return len(v) == 0
+	}
+	return false
+}
+
+func sortedKeys(object map[string]any) []string {
+	keys := make([]string, 0, len(object))
+	for key := range object {
+		keys = append(keys, key)
+	}
+	sort.Strings(keys)
+	return keys
+}
+
+func join(place, key string) string {
+	if place == "" {
+		return key
+	}
+	return place + "." + key
+}
+
+// checkKeys refuses a key that stands twice in one object: a reader would
+// keep one of the two without a word.
+func checkKeys(text []byte) error {
+	decoder := json.NewDecoder(bytes.NewReader(text))
+	var open []map[string]bool // of each open object its keys; nil for a list
+	expectKey := false
+	for {
+		token, err := decoder.Token()
+		if errors.Is(err, io.EOF) {
+			return nil
+		}
+		if err != nil {
+			return readError(text, err)
+		}
+		if key, ok := token.(string); ok && expectKey {
+			if keys := open[len(open)-1]; keys[key] {
+				at := readError(text, &json.SyntaxError{Offset: decoder.InputOffset()})
+				at.What = fmt.Sprintf("the key %q stands twice", key)
+				return at
+			}
+			open[len(open)-1][key] = true
+			expectKey = false
+			continue
+		}
+		switch token {
+		case json.Delim('{'):
+			open = append(open, map[string]bool{})
+		case json.Delim('['):
+			open = append(open, nil)
+		case json.Delim('}'), json.Delim(']'):
+			open = open[:len(open)-1]
+		}
+		expectKey = len(open) > 0 && open[len(open)-1] != nil
+	}
+}
+
+// storable returns a copy of the result in the form that JSON carries: no list
+// is nil, and the name of the input is UTF-8.
+func storable(r *calib.Result) *calib.Result {
+	stored := withLists(r)
+	if !utf8.ValidString(r.Input.Name) {
+		stored.Input.NameBytes = hex.EncodeToString([]byte(r.Input.Name))
+	}
+	return stored
+}
+
+// restore undoes storable.
+func restore(r *calib.Result) error {
+	if r.Input.NameBytes == "" {
+		return nil
+	}
+	name, err := hex.DecodeString(r.Input.NameBytes)
+	if err != nil || utf8.Valid(name) {
+		return &ReadError{What: fmt.Sprintf("input.name_bytes %q is not the hexadecimal form of a name", r.Input.NameBytes), Remedy: remedyStored}
+	}
+	r.Input.Name, r.Input.NameBytes = string(name), ""
+	return nil
+}

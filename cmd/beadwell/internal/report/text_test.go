@@ -1,0 +1,150 @@
+package report
+
+import (
+	"bytes"
+	"encoding/csv"
+	"math"
+	"os"
+	"path/filepath"
+	"strconv"
+	"strings"
+	"testing"
+	"unicode"
+
+	"github.com/google/go-cmp/cmp"
+
+	"beadwell/calib"
+)
+
+// golden compares with a file of testdata, or writes it with -update.
+func golden(t *testing.T, name string, got []byte) {
+	t.Helper()
+	path := filepath.Join("testdata", name)
+	if *update {
+		if err := os.WriteFile(path, got, 0o644); err != nil {
+			t.Fatal(err)
+		}
+	}
+	want, err := os.ReadFile(path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if diff := cmp.Diff(string(want), string(got)); diff != "" {
+		t.Errorf("%s differs; run go test -update ./cmd/beadwell/internal/report and review (-want +got):\n%s", path, diff)
+	}
+}
+
+func TestTextGolden(t *testing.T) {
+	var b bytes.Buffer
+	if err := Text(&b, storedSample(), TextOptions{}); err != nil {
+		t.Fatal(err)
+	}
+	golden(t, "sample.txt", b.Bytes())
+}
+
+func TestCSVGolden(t *testing.T) {
+	var b bytes.Buffer
+	set := Set{Results: []*calib.Result{storedSample()}, Failures: []Problem{{Input: "=bad.csv", Message: "line 3: is cut"}}}
+	if err := CSV(&b, set); err != nil {
+		t.Fatal(err)
+	}
+	golden(t, "sample.csv", b.Bytes())
+}
+
+// Each printer takes a result of which nothing is known.
+func TestTextOfNothing(t *testing.T) {
+	r := &calib.Result{Axes: []calib.Axis{{Name: "x"}}}
+	r.Axes[0].Adopted.Stiffness = calib.Withheld("N/m", "the recording is empty")
+	var b bytes.Buffer
+	if err := Text(&b, r, TextOptions{}); err != nil || !strings.Contains(b.String(), "x withheld: the recording is empty") {
+		t.Errorf("Text = %v, %q", err, b.String())
+	}
+}
+
+func TestNoControlCharacters(t *testing.T) {
+	var text, table bytes.Buffer
+	if err := Text(&text, hostileSample(), TextOptions{}); err != nil {
+		t.Fatal(err)
+	}
+	if err := CSV(&table, Set{Results: []*calib.Result{hostileSample()}}); err != nil {
+		t.Fatal(err)
+	}
+	for name, out := range map[string]string{"Text": text.String(), "CSV": table.String()} {
+		for _, r := range out {
+			if r != '\n' && !unicode.IsPrint(r) {
+				t.Errorf("%s lets %U through", name, r)
+			}
+		}
+	}
+	rows, err := csv.NewReader(&table).ReadAll()
+	if err != nil {
+		t.Fatal(err)
+	}
+	if got := rows[1][0]; !strings.HasPrefix(got, "'=cmd") {
+		t.Errorf("a name that starts a formula is the cell %q", got)
+	}
+	if got := rows[1][1]; !strings.HasPrefix(got, "'@sum") {
+		t.Errorf("a bead that starts a formula is the cell %q", got)
+	}
+}
+
+// A number in CSV reads back to the same bits, and no sign is taken for a formula.
+func TestCSVNumbers(t *testing.T) {
+	r := storedSample()
+	r.Axes[0].Adopted.Stiffness.Value = -1.0 / 3
+	var b bytes.Buffer
+	if err := CSV(&b, Set{Results: []*calib.Result{r}}); err != nil {
+		t.Fatal(err)
+	}
+	rows, err := csv.NewReader(&b).ReadAll()
+	if err != nil {
+		t.Fatal(err)
+	}
+	if got, err := strconv.ParseFloat(rows[1][5], 64); err != nil || got != -1.0/3 {
+		t.Errorf("stiffness cell %q = %v, %v, want -1/3", rows[1][5], got, err)
+	}
+}
+
+func TestNumber(t *testing.T) {
+	lopsided := normal(52.34e-6, 1.1e-6)
+	lopsided.Interval68 = [2]calib.Float{51.4e-6, 53.9e-6}
+	open := normal(52.34e-6, 1.1e-6)
+	open.Interval68[1] = unknown
+	noWidth := normal(52.34e-6, 1.1e-6)
+	noWidth.Standard = unknown
+	for _, test := range []struct {
+		u    *calib.Uncertainty
+		want string
+	}{
+		{normal(52.34e-6, 1.1e-6), "52.3(11)"}, // JCGM 100:2008, 7.2.2, two digits
+		{normal(52.34e-6, 0.31e-6), "52.34(31)"},
+		{lopsided, "52.3 [51.4, 53.9]"},
+		{open, "52.3 [51.24, unknown]"},
+		{noWidth, "52.34(?)"},
+		{nil, "52.34"},
+	} {
+		if got := number(52.34e-6, test.u, stiffnessUnit); got != test.want {
+			t.Errorf("number(52.34e-6 N/m, %+v) = %q, want %q", test.u, got, test.want)
+		}
+	}
+	if got := number(calib.Float(math.Inf(1)), nil, stiffnessUnit); got != dash {
+		t.Errorf("number of an unknown value = %q, want %q", got, dash)
+	}
+}
+
+func TestPlain(t *testing.T) {
+	for in, want := range map[string]string{
+		"run 7 µm.csv": "run 7 µm.csv",
+		"a\x1b[31mb":   `a\x1b[31mb`,
+		"a\nb":         `a\x0ab`,
+		"\u202e":       `\u202e`,
+		"\U000e0001":   `\U000e0001`,
+		"\xff":         `\xff`,
+		"\ufffd":       "\ufffd",
+		"tab\t":        `tab\x09`,
+	} {
+		if got := Plain(in); got != want {
+			t.Errorf("Plain(%q) = %q, want %q", in, got, want)
+		}
+	}
+}
