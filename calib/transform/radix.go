@@ -1,7 +1,5 @@
 package transform
 
-import "math"
-
 // In each of these, x and y have one length, a multiple of radix x stride. Group p
 // of x is read from the places p + q groups, q = 0 .. radix-1, and written to the
 // places radix p + q, where each place holds stride numbers. The reslicing at the
@@ -29,7 +27,6 @@ func radix4(y, x, roots []complex128, stride int) {
 	groups := len(x) / 4 / stride
 	for p := range groups {
 		w := (*[3]complex128)(roots[3*p:])
-		w1, w2, w3 := w[0], w[1], w[2]
 		x0 := x[p*stride:][:stride]
 		x1 := x[(p+groups)*stride:][:len(x0)]
 		x2 := x[(p+2*groups)*stride:][:len(x0)]
@@ -43,9 +40,9 @@ func radix4(y, x, roots []complex128, stride int) {
 			evenSum, evenDifference := a+c, a-c
 			oddSum, oddDifference := b+d, turn(b-d)
 			y0[q] = evenSum + oddSum
-			y1[q] = (evenDifference + oddDifference) * w1
-			y2[q] = (evenSum - oddSum) * w2
-			y3[q] = (evenDifference - oddDifference) * w3
+			y1[q] = (evenDifference + oddDifference) * w[0]
+			y2[q] = (evenSum - oddSum) * w[1]
+			y3[q] = (evenDifference - oddDifference) * w[2]
 		}
 	}
 }
@@ -109,6 +106,11 @@ func radix3(y, x, roots []complex128, stride int) {
 
 // radix5 is the stage of five inputs.
 func radix5(y, x, roots []complex128, stride int) {
+	const (
+		quarterRoot5  = 0.5590169943749474241022934171828190589 // sqrt(5)/4
+		sineFifth     = 0.9510565162951535721164393333793821434 // sin(2 pi/5)
+		sineTwoFifths = 0.5877852522924731291687059546390727685 // sin(4 pi/5)
+	)
 	groups := len(x) / 5 / stride
 	for p := range groups {
 		w := (*[4]complex128)(roots[4*p:])
@@ -123,36 +125,24 @@ func radix5(y, x, roots []complex128, stride int) {
 		y3 := y[(5*p+3)*stride:][:len(x0)]
 		y4 := y[(5*p+4)*stride:][:len(x0)]
 		for q := range x0 {
-			b := butterfly5(x0[q], x1[q], x2[q], x3[q], x4[q])
-			y0[q] = b[0]
-			y1[q] = b[1] * w[0]
-			y2[q] = b[2] * w[1]
-			y3[q] = b[3] * w[2]
-			y4[q] = b[4] * w[3]
+			a := x0[q]
+			outerSum, outer := x1[q]+x4[q], x1[q]-x4[q]
+			innerSum, inner := x2[q]+x3[q], x2[q]-x3[q]
+			sum := outerSum + innerSum
+			y0[q] = a + sum
+			// (cos(2 pi/5) + cos(4 pi/5))/2 = -1/4, and half their difference is sqrt(5)/4.
+			mean := complex(real(a)-0.25*real(sum), imag(a)-0.25*imag(sum))
+			spread := complex(quarterRoot5*(real(outerSum)-real(innerSum)), quarterRoot5*(imag(outerSum)-imag(innerSum)))
+			middle := mean + spread
+			side := complex(sineFifth*imag(outer)+sineTwoFifths*imag(inner), -sineFifth*real(outer)-sineTwoFifths*real(inner))
+			y1[q] = (middle + side) * w[0]
+			y4[q] = (middle - side) * w[3]
+			middle = mean - spread
+			side = complex(sineTwoFifths*imag(outer)-sineFifth*imag(inner), sineFifth*real(inner)-sineTwoFifths*real(outer))
+			y2[q] = (middle + side) * w[1]
+			y3[q] = (middle - side) * w[2]
 		}
 	}
-}
-
-var (
-	cosineFifth    = math.Cos(2 * math.Pi / 5)
-	cosineTwoFifth = math.Cos(4 * math.Pi / 5)
-	sineFifth      = math.Sin(2 * math.Pi / 5)
-	sineTwoFifth   = math.Sin(4 * math.Pi / 5)
-)
-
-// butterfly5 is the transform of five numbers.
-func butterfly5(a, b, c, d, e complex128) [5]complex128 {
-	outerSum, outerDifference := b+e, b-e
-	innerSum, innerDifference := c+d, c-d
-	m1 := complex(real(a)+cosineFifth*real(outerSum)+cosineTwoFifth*real(innerSum),
-		imag(a)+cosineFifth*imag(outerSum)+cosineTwoFifth*imag(innerSum))
-	m2 := complex(real(a)+cosineTwoFifth*real(outerSum)+cosineFifth*real(innerSum),
-		imag(a)+cosineTwoFifth*imag(outerSum)+cosineFifth*imag(innerSum))
-	s1 := complex(sineFifth*imag(outerDifference)+sineTwoFifth*imag(innerDifference),
-		-sineFifth*real(outerDifference)-sineTwoFifth*real(innerDifference))
-	s2 := complex(sineTwoFifth*imag(outerDifference)-sineFifth*imag(innerDifference),
-		-sineTwoFifth*real(outerDifference)+sineFifth*real(innerDifference))
-	return [5]complex128{a + outerSum + innerSum, m1 + s1, m2 + s2, m2 - s2, m1 - s1}
 }
 
 // turn multiplies by -i, a quarter turn.
