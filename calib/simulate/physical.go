@@ -1,9 +1,10 @@
 package simulate
 
-import "math"
+import (
+	"math"
 
-// boltzmann is the Boltzmann constant [J/K], exact since the SI of 2019.
-const boltzmann = 1.380649e-23
+	"beadwell/calib/medium"
+)
 
 // Physical states the truth of an axis in the terms of the laboratory.
 type Physical struct {
@@ -26,7 +27,7 @@ func (p Physical) Drag() float64 {
 // Axis returns the axis with the corner frequency kappa/(2 pi gamma) and the variance
 // kT/kappa of the trapped bead, or the diffusion coefficient kT/gamma of the free one.
 func (p Physical) Axis() Axis {
-	thermal := boltzmann * p.Temperature
+	thermal := medium.Boltzmann * p.Temperature
 	if p.Stiffness == 0 {
 		return Axis{Diffusion: thermal / p.Drag()}
 	}

@@ -5,6 +5,8 @@ import (
 	"math/cmplx"
 	"math/rand/v2"
 	"testing"
+
+	"beadwell/calib/medium"
 )
 
 // sampledDensity is the one-sided density [m²/Hz] of the sampled, blurred process without
@@ -82,7 +84,7 @@ var polystyrene = Hydrodynamics{Radius: 0.5e-6, Viscosity: 889.996774e-6, Densit
 func TestHydrodynamicDensityPublished(t *testing.T) {
 	drag := 6 * math.Pi * polystyrene.Viscosity * polystyrene.Radius
 	stiffness := 2 * math.Pi * drag * 500
-	a := Axis{Corner: 500, Variance: boltzmann * 298.15 / stiffness}
+	a := Axis{Corner: 500, Variance: medium.Boltzmann * 298.15 / stiffness}
 	for _, row := range []struct{ f, want float64 }{
 		{100, 1.93598798e-19}, {1000, 3.99719164e-20}, {10000, 4.53647319e-22}, {100000, 3.57109162e-24},
 	} {
