@@ -16,7 +16,7 @@ type decimal struct {
 }
 
 // maxDecade bounds a stated exponent, so that sums with the decade of a unit stay exact.
-const maxDecade = 400
+const maxDecade = 1000
 
 // float returns the number times 10^decade. It reports false when the result
 // overflows, or when digits other than 0 vanish to 0.
@@ -36,13 +36,17 @@ var (
 	positivePattern = regexp.MustCompile(`^((?:\d+\.?\d*|\.\d+))(?:[eE]([+-]?\d+))?`)
 )
 
-// decade reads the exponent of a number; "" is 0.
-func decade(text string) (int, bool) {
-	if text == "" {
-		return 0, true
-	}
+// decade reads the exponent of a number; "" is 0. One beyond maxDecade is cut
+// to it: the number overflows or vanishes all the same.
+func decade(text string) int {
 	value, err := strconv.Atoi(text)
-	return value, err == nil && value >= -maxDecade && value <= maxDecade
+	if err != nil && text != "" { // more digits than an int holds
+		value = maxDecade
+		if strings.HasPrefix(text, "-") {
+			value = -maxDecade
+		}
+	}
+	return max(-maxDecade, min(value, maxDecade))
 }
 
 // readNumber reads a number, with its bracketed uncertainty if it has one, from
@@ -53,10 +57,7 @@ func readNumber(text string) (number, uncertainty decimal, rest string, ok bool)
 	if match == nil {
 		return decimal{}, decimal{}, text, false
 	}
-	power, ok := decade(match[3])
-	if !ok {
-		return decimal{}, decimal{}, text, false
-	}
+	power := decade(match[3])
 	number = decimal{match[1], power}
 	if match[2] != "" {
 		uncertainty = decimal{match[2], power}
@@ -73,8 +74,7 @@ func readPositive(text string) (number decimal, rest string, ok bool) {
 	if match == nil {
 		return decimal{}, text, false
 	}
-	power, ok := decade(match[2])
-	return decimal{match[1], power}, text[len(match[0]):], ok
+	return decimal{match[1], decade(match[2])}, text[len(match[0]):], true
 }
 
 // decimalsOf counts the digits behind the point.

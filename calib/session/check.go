@@ -109,7 +109,7 @@ func checkFluid(s *Settings) []*Error {
 	if err == nil {
 		return nil
 	}
+	problem, hint, _ := cutLast(err.Error(), ": ")
 	return []*Error{{Where: temperature.Where, Key: temperature.Key, Text: temperature.Text,
-		Problem: "does not fit medium.fluid " + quoted(name.Text) + from(name) + ": " + err.Error(),
-		Hint:    "correct the temperature or the fluid, or give the viscosity instead of the fluid"}}
+		Problem: "does not fit medium.fluid " + quoted(name.Text) + from(name) + ": " + problem, Hint: hint}}
 }
