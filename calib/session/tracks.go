@@ -171,5 +171,9 @@ func fileName(text string) (string, *Error) {
 	if strings.Contains(text, "\n") {
 		return "", &Error{Key: "file", Text: text, Problem: "has a line break in it", Hint: "write the name of one file"}
 	}
-	return path.Clean(text), nil
+	clean := path.Clean(text)
+	if clean == "." {
+		return "", &Error{Key: "file", Text: text, Problem: "is a folder", Hint: "write the name of one file"}
+	}
+	return clean, nil
 }
