@@ -22,7 +22,6 @@ func displacement(a *calib.Axis) Figure {
 	fit := fitted(a.Displacement.Model, "fit")
 	plateau := a.Displacement.Plateau
 	values.showPositive(float64(plateau.Value))
-	values.showPositive(float64(plateau.Value) * 1.3) // room for its label
 	p := panel{name: "displacement", share: 1,
 		x: scale{quantity: "lag", unit: "s", factor: 1, log: true}.over(lags),
 		y: scale{quantity: "mean-square displacement", unit: "nm^{2}", factor: 1e18, log: true}.over(values)}
@@ -49,7 +48,7 @@ func displacement(a *calib.Axis) Figure {
 func lagPoints(a *calib.Axis) (used, unused series) {
 	used = series{name: "used", mark: dots, ink: data}
 	unused = series{name: "not in the fit", mark: rings, ink: left}
-	for _, i := range thinned(len(a.Displacement.Points)) {
+	for _, i := range thinned(len(a.Displacement.Points), maxMarks) {
 		p := a.Displacement.Points[i]
 		if !p.Lag.Known() || !p.MSD.Known() {
 			continue

@@ -36,14 +36,15 @@ func estimates(r *calib.Result) Figure {
 			continue
 		}
 		f.panels = append(f.panels, p)
-		f.height += 31
+		f.height += 34
 		described = append(described, words)
 	}
 	if len(f.panels) == 0 {
 		return f.empty("the result holds no stiffness estimate")
 	}
 	f.height += 6
-	f.key = []keyItem{{"through drag", dots, drag}, {"through amplitude", squares, ampl}, {"adopted, 95 %", span, adoptedTint}}
+	f.key = []keyItem{{"by drag", dots, drag}, {"by amplitude", squares, ampl}, {"adopted", span, adoptedTint},
+		{"68 %", bar68, text}, {"95 %", bar95, text}}
 	f.Description = "Stiffness estimates with intervals of 68 % (thick) and 95 % (thin), combined uncertainty. " +
 		strings.Join(described, " ")
 	return f
@@ -129,7 +130,7 @@ func adoptedBand(a calib.Adopted) ([]series, bool) {
 	}
 	return []series{
 		{name: "adopted, 95 %", mark: span, ink: adoptedTint, low: outer[:1], high: outer[1:]},
-		{name: "adopted", mark: upright, ink: adopted, x: []float64{value}},
+		{name: "adopted", mark: upright, ink: adopted, x: []float64{value}, label: "adopted " + measured(a.Stiffness, "pN/um")},
 	}, true
 }
 

@@ -21,6 +21,7 @@ const (
 	soft                   // minor marks, second-rank text
 	rule                   // reference lines
 	data                   // measured points
+	record                 // the trace
 	model                  // fitted curves
 	drag                   // the route through drag
 	ampl                   // the route through amplitude
@@ -45,6 +46,7 @@ var inks = [inkCount]struct {
 	soft:        {"soft", grey(0x5a), grey(0xb0)},
 	rule:        {"rule", grey(0x6e), grey(0x9c)},
 	data:        {"data", grey(0x1b), grey(0xec)},
+	record:      {"record", skyBlue, skyBlue},
 	model:       {"model", vermillion, orange},
 	drag:        {"drag", blue, skyBlue},
 	ampl:        {"amplitude", vermillion, orange},
@@ -53,7 +55,7 @@ var inks = [inkCount]struct {
 	band:        {"band", thin(skyBlue, 0x38), thin(skyBlue, 0x2c)},
 	left:        {"left", purple, purple},
 	alarm:       {"alarm", vermillion, orange},
-	doubt:       {"doubt", blue, skyBlue},
+	doubt:       {"doubt", purple, purple},
 	paper:       {"paper", grey(0xff), color.NRGBA{0x16, 0x18, 0x1b, 0xff}},
 }
 

@@ -21,6 +21,8 @@ const (
 	hairline     = 0.5  // axes
 	curveWidth   = 1.3  // fits
 	dotRadius    = 1.25 // measured points
+	thinBar      = 0.8  // 95 % intervals
+	thickBar     = 2.4  // 68 % intervals
 	pieceLength  = 100  // points of a polyline that is stroked at once
 	stripMinimum = 1.2  // width of the narrowest excluded strip
 )
@@ -62,35 +64,48 @@ func (b brush) paint(f Figure, w, h vg.Length) {
 		b.key(f.key, vg.Point{X: area.Min.X, Y: area.Max.Y - keyHeight/2 + 1}, area.Max.X)
 		area.Max.Y -= keyHeight
 	}
-	margin := vg.Length(0)
 	for _, p := range f.panels {
-		margin = max(margin, leftMargin(p))
+		area.Min.X = max(area.Min.X, edge+leftMargin(p))
 	}
-	for i, box := range stack(f.panels, area, margin) {
+	full := area.Max.X
+	for _, p := range f.panels {
+		area.Max.X = min(area.Max.X, full-rightMargin(p, full-area.Min.X))
+	}
+	for i, box := range stack(f.panels, area) {
 		b.panel(f.panels[i], box)
 	}
 }
 
 // stack divides the area among the panels, from the top down, and returns the
 // boxes inside their axes.
-func stack(panels []panel, area vg.Rectangle, margin vg.Length) []vg.Rectangle {
+func stack(panels []panel, area vg.Rectangle) []vg.Rectangle {
 	free, shares := area.Max.Y-area.Min.Y, 0.0
-	for _, p := range panels {
-		free -= bottomMargin(p)
+	for i, p := range panels {
+		free -= headroom(p, area.Min.X, area.Max.X) + bottomMargin(p)
+		if i > 0 {
+			free -= between
+		}
 		shares += p.share
 	}
-	free -= between * vg.Length(len(panels)-1)
 	boxes := make([]vg.Rectangle, len(panels))
 	top := area.Max.Y
 	for i, p := range panels {
+		top -= headroom(p, area.Min.X, area.Max.X)
 		height := free * vg.Length(p.share/shares)
-		boxes[i] = vg.Rectangle{
-			Min: vg.Point{X: area.Min.X + margin, Y: top - height},
-			Max: vg.Point{X: area.Max.X - 4, Y: top},
-		}
+		boxes[i] = vg.Rectangle{Min: vg.Point{X: area.Min.X, Y: top - height}, Max: vg.Point{X: area.Max.X, Y: top}}
 		top -= height + bottomMargin(p) + between
 	}
 	return boxes
+}
+
+// rightMargin is what the last label of the x axis reaches beyond the axis.
+func rightMargin(p panel, width vg.Length) vg.Length {
+	margin := vg.Length(2)
+	for _, t := range p.x.ticks(7) {
+		past := widthOf(t.label, smallSize)/2 - width*vg.Length(1-p.x.at(t.value))
+		margin = max(margin, past)
+	}
+	return margin
 }
 
 // leftMargin is the room that the y axis needs.
@@ -118,23 +133,26 @@ func bottomMargin(p panel) vg.Length {
 func (b brush) panel(p panel, box vg.Rectangle) {
 	c := draw.Canvas{Canvas: b.canvas, Rectangle: box}
 	for _, s := range p.series {
-		if behind(s.mark) {
+		if s.behind() {
 			b.series(c, p, s)
 		}
 	}
 	b.axes(c, p)
 	for _, s := range p.series {
-		if !behind(s.mark) {
+		if !s.behind() {
 			b.series(c, p, s)
 		}
 	}
+	b.head(c, p)
 	for _, n := range p.notes {
 		b.note(c, n)
 	}
 }
 
-// behind tells whether a mark lies under the axes.
-func behind(m mark) bool { return m == span || m == strip || m == envelope || m == columns }
+// behind tells whether a series lies under the axes.
+func (s series) behind() bool {
+	return !s.front && (s.mark == span || s.mark == strip || s.mark == envelope || s.mark == columns)
+}
 
 func (b brush) note(c draw.Canvas, n note) {
 	x := 0.0

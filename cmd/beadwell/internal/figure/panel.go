@@ -10,7 +10,6 @@ type panel struct {
 	series []series
 	notes  []note
 	linked bool // the panel below carries the labels of the x axis
-	wider  bool // at the right, for labels of levels
 }
 
 // mark is a way to draw a series.
@@ -25,23 +24,26 @@ const (
 	columns              // bars of a histogram: from low to high on the x axis, y tall
 	envelope             // the area between low and high over x
 	span                 // the stretch of the x axis from low to high, shaded
-	strip                // likewise, edged and with a mark at the top: left out of a fit
+	strip                // likewise, edged and hatched: left out of a fit, or found wanting
 	level                // a dashed line across at y
-	upright              // a dotted line up at x
+	upright              // a dotted line up at x, named above the panel
 	whisker              // a horizontal estimate: x at row y, bars low to high and inner
+	bar68                // in the key: the thick bar of a whisker
+	bar95                // in the key: the thin one
 )
 
 // series is one set of numbers that is drawn, in SI units.
 type series struct {
-	name              string
-	mark              mark
-	ink               ink
-	glyph             mark // of a whisker: dots, rings or squares
-	x, y              []float64
-	low, high         []float64
-	innerLow, inHigh  []float64
-	label             string // of a level, an upright or a span
-	labelLeft, ticked bool
+	name             string
+	mark             mark
+	ink              ink
+	glyph            mark // of a whisker: dots, rings or squares
+	x, y             []float64
+	low, high        []float64
+	innerLow, inHigh []float64
+	label            string // below a level at its right, above the panel otherwise
+	wedge            bool   // a wedge at the top of each strip
+	front            bool   // above the other series, not below the axes
 }
 
 // note is text at a place given as shares of the panel's width and height.

@@ -14,10 +14,10 @@ import (
 // more than a column has dots at 150 per inch, and keeps a figure below 150 kB.
 const maxPoints = 500
 
-// thinned returns at most maxPoints indices of a list of n, evenly spread and
-// with both ends.
-func thinned(n int) []int {
-	m := min(n, maxPoints)
+// thinned returns at most most indices of a list of n, evenly spread and with
+// both ends.
+func thinned(n, most int) []int {
+	m := min(n, most)
 	indices := make([]int, m)
 	for i := range indices {
 		indices[i] = i

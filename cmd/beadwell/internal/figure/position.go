@@ -42,7 +42,7 @@ func histogram(pot calib.Potential) (s series, reach, density extent) {
 	s = series{name: "positions", mark: columns, ink: band}
 	reach, density = newExtent(), newExtent()
 	half := float64(pot.BinWidth) / 2
-	for _, i := range thinned(len(pot.Bins)) {
+	for _, i := range thinned(len(pot.Bins), maxMarks) {
 		bin := pot.Bins[i]
 		if !bin.Centre.Known() || !bin.Density.Known() || !finite(half) {
 			continue
@@ -84,7 +84,7 @@ func potentialPanel(r *calib.Result, pot calib.Potential, x scale, peak float64)
 	energies := series{name: "potential", mark: dots, ink: data}
 	reach := newExtent()
 	reach.show(0, 1)
-	for _, i := range thinned(len(pot.Bins)) {
+	for _, i := range thinned(len(pot.Bins), maxMarks) {
 		bin := pot.Bins[i]
 		if !bin.Energy.Known() || !bin.Centre.Known() {
 			continue

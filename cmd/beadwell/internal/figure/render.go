@@ -5,6 +5,9 @@ import (
 	"context"
 	"encoding/xml"
 	"fmt"
+	"image"
+	"image/draw"
+	"image/png"
 	"runtime"
 	"strings"
 
@@ -137,7 +140,10 @@ func renderPNG(f Figure, theme Theme) ([]byte, error) {
 	canvas := vgimg.NewWith(vgimg.UseWH(w, h), vgimg.UseDPI(pngResolution), vgimg.UseBackgroundColor(paper.in(theme)))
 	brush{canvas, theme}.paint(f, w, h)
 	var out bytes.Buffer
-	if _, err := (vgimg.PngCanvas{Canvas: canvas}).WriteTo(&out); err != nil {
+	drawn := canvas.Image()
+	pixels := image.NewRGBA(drawn.Bounds())
+	draw.Draw(pixels, pixels.Bounds(), drawn, drawn.Bounds().Min, draw.Src)
+	if err := png.Encode(&out, fewColours(pixels)); err != nil {
 		return nil, fmt.Errorf("figure %s: %w", f.Name, err)
 	}
 	return out.Bytes(), nil

@@ -17,7 +17,6 @@ type scale struct {
 	low      float64 // in the unit
 	high     float64
 	rows     []string // labels of a nominal axis, row 0 at the top
-	decimals int      // of the labels of a linear axis, set by ticks
 }
 
 // The largest and smallest numbers an axis reaches to, in its unit. The room to
@@ -134,6 +133,8 @@ func logTicks(low, high float64, want int) []tick {
 
 func logLabel(m, decade, stride, inside int) string {
 	switch {
+	case inside < 2 && (m == 1 || m == 2 || m == 5) && decade >= -2 && decade < 4:
+		return strconv.FormatFloat(float64(m)*math.Pow10(decade), 'f', max(0, -decade), 64)
 	case m == 1 && decade%stride == 0:
 		return fmt.Sprintf("10^{%d}", decade)
 	case inside < 2 && (m == 2 || m == 5):

@@ -1,6 +1,7 @@
 package figure
 
 import (
+	"math"
 	"strings"
 
 	"gonum.org/v1/plot/vg"
@@ -58,10 +59,11 @@ func (b brush) points(c draw.Canvas, p panel, s series) {
 		}
 		glyph(&glyphs, s.mark, at, dotRadius)
 	}
-	b.canvas.SetColor(b.color(s.ink))
 	b.canvas.SetLineDash(nil, 0)
 	b.canvas.SetLineWidth(hairline)
+	b.canvas.SetColor(b.color(soft))
 	strokeIf(b.canvas, bars)
+	b.canvas.SetColor(b.color(s.ink))
 	if s.mark == rings {
 		strokeIf(b.canvas, glyphs)
 		return
@@ -88,19 +90,8 @@ func glyph(path *vg.Path, m mark, at vg.Point, r vg.Length) {
 		path.Close()
 		return
 	}
-	circle(path, at, r)
-}
-
-// circle appends a circle as four cubic curves, which every canvas draws alike;
-// their control points lie 0.5523 r along the tangent (error 0.03 % of r).
-func circle(path *vg.Path, at vg.Point, r vg.Length) {
-	k := 0.5523 * r
-	pt := func(x, y vg.Length) vg.Point { return vg.Point{X: at.X + x, Y: at.Y + y} }
-	path.Move(pt(r, 0))
-	path.CubeTo(pt(r, k), pt(k, r), pt(0, r))
-	path.CubeTo(pt(-k, r), pt(-r, k), pt(-r, 0))
-	path.CubeTo(pt(-r, -k), pt(-k, -r), pt(0, -r))
-	path.CubeTo(pt(k, -r), pt(r, -k), pt(r, 0))
+	path.Move(vg.Point{X: at.X + r, Y: at.Y})
+	path.Arc(at, r, 0, 2*math.Pi)
 	path.Close()
 }
 
@@ -176,35 +167,28 @@ func (b brush) envelope(c draw.Canvas, p panel, s series) {
 		up = append(up, vg.Point{X: x, Y: c.Y(bound(p.y, s.high[i])) + half})
 		down = append(down, vg.Point{X: x, Y: c.Y(bound(p.y, s.low[i])) - half})
 		if len(up) >= pieceLength {
-			last, lastDown := up[len(up)-1], down[len(down)-1]
+			// Pieces share a stretch, or a seam would show between them.
+			lastUp, lastDown := up[len(up)-2:], down[len(down)-2:]
 			flush()
-			up, down = append(up, last), append(down, lastDown)
+			up, down = append(up, lastUp...), append(down, lastDown...)
 		}
 	}
 	flush()
 }
 
-// lines draws levels across and uprights, each with its label.
+// lines draws levels across, each with its label below the right end, and
+// uprights, whose labels stand above the panel.
 func (b brush) lines(c draw.Canvas, p panel, s series) {
 	if s.mark == level {
 		if n := p.y.normalised(s.y[0]); n >= 0 && n <= 1 {
 			y := c.Y(n)
-			c.StrokeLine2(b.line(s.ink, 0.8, 5, 2.5), c.Min.X, y, c.Max.X, y)
-			b.write(s.label, vg.Point{X: c.Min.X + 4, Y: y + 1}, text, smallSize, 0, 0, 0)
+			c.StrokeLine2(b.line(s.ink, 0.7, 5, 2.5), c.Min.X, y, c.Max.X, y)
+			b.write(s.label, vg.Point{X: c.Max.X - 2, Y: y - 4}, text, smallSize, -1, -1, 0)
 		}
 		return
 	}
-	n := p.x.normalised(s.x[0])
-	if !(n >= 0 && n <= 1) {
-		return
-	}
-	x := c.X(n)
-	c.StrokeLine2(b.line(s.ink, 0.8, 1.2, 1.8), x, c.Min.Y, x, c.Max.Y)
-	// The label keeps to the side that has room.
-	if n < 0.5 {
-		b.write(s.label, vg.Point{X: x + 3, Y: c.Min.Y + 3}, text, smallSize, 0, 0, 0)
-	} else {
-		b.write(s.label, vg.Point{X: x - 3, Y: c.Min.Y + 3}, text, smallSize, -1, 0, 0)
+	if n := p.x.normalised(s.x[0]); n >= 0 && n <= 1 {
+		c.StrokeLine2(b.line(s.ink, 0.8, 1.2, 1.8), c.X(n), c.Min.Y, c.X(n), c.Max.Y+3)
 	}
 }
 

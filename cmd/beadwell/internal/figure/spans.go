@@ -5,42 +5,41 @@ import (
 	"gonum.org/v1/plot/vg/draw"
 )
 
-// spans shades stretches of the x axis. A strip, which marks what was left out,
-// is edged, at least a hairline wide, and has a wedge at its top.
+// spans shades stretches of the x axis. A strip is edged and hatched, at least a
+// hairline wide, and may have a wedge at its top: colour alone tells nothing.
 func (b brush) spans(c draw.Canvas, p panel, s series) {
 	for i := range s.low {
 		if !finite(s.low[i], s.high[i]) {
 			continue
 		}
 		left, right := c.X(bound(p.x, s.low[i])), c.X(bound(p.x, s.high[i]))
-		if s.mark == strip && right-left < stripMinimum {
+		if s.mark == span {
+			c.FillPolygon(b.color(s.ink), box(left, right, c.Min.Y, c.Max.Y))
+			continue
+		}
+		if right-left < stripMinimum {
 			middle := (left + right) / 2
 			left, right = middle-stripMinimum/2, middle+stripMinimum/2
 		}
-		b.shade(c, s, left, right)
-	}
-	if s.label != "" && len(s.low) > 0 {
-		b.spanLabel(c, p, s)
+		b.strip(c, s, left, right)
 	}
 }
 
-func (b brush) shade(c draw.Canvas, s series, left, right vg.Length) {
-	if s.mark == span && !s.ticked {
-		c.FillPolygon(b.color(s.ink), box(left, right, c.Min.Y, c.Max.Y))
-		return
-	}
+func (b brush) strip(c draw.Canvas, s series, left, right vg.Length) {
 	b.hatch(c, s.ink, left, right)
 	for _, x := range []vg.Length{left, right} {
-		c.StrokeLine2(b.line(s.ink, 0.6), x, c.Min.Y, x, c.Max.Y)
+		c.StrokeLine2(b.line(s.ink, 0.5), x, c.Min.Y, x, c.Max.Y)
 	}
-	middle := (left + right) / 2
-	c.FillPolygon(b.color(s.ink), []vg.Point{
-		{X: middle - 2.2, Y: c.Max.Y + 3}, {X: middle + 2.2, Y: c.Max.Y + 3}, {X: middle, Y: c.Max.Y - 0.6}})
+	if s.wedge {
+		middle := (left + right) / 2
+		c.FillPolygon(b.color(s.ink), []vg.Point{
+			{X: middle - 2, Y: c.Max.Y + 3}, {X: middle + 2, Y: c.Max.Y + 3}, {X: middle, Y: c.Max.Y - 0.4}})
+	}
 }
 
-// hatch fills a stretch with slanted lines, which tell it apart without colour.
+// hatch fills a stretch with slanted lines.
 func (b brush) hatch(c draw.Canvas, i ink, left, right vg.Length) {
-	const spacing = 4
+	const spacing = 5
 	height := c.Max.Y - c.Min.Y
 	inner := draw.Canvas{Canvas: c.Canvas, Rectangle: vg.Rectangle{
 		Min: vg.Point{X: left, Y: c.Min.Y}, Max: vg.Point{X: right, Y: c.Max.Y}}}
@@ -52,16 +51,9 @@ func (b brush) hatch(c draw.Canvas, i ink, left, right vg.Length) {
 		}
 	}
 	b.canvas.SetColor(b.color(i))
-	b.canvas.SetLineWidth(0.35)
+	b.canvas.SetLineWidth(0.25)
 	b.canvas.SetLineDash(nil, 0)
 	strokeIf(b.canvas, path)
-}
-
-func (b brush) spanLabel(c draw.Canvas, p panel, s series) {
-	left, right := c.X(bound(p.x, s.low[0])), c.X(bound(p.x, s.high[0]))
-	middle, half := (left+right)/2, widthOf(s.label, smallSize)/2
-	middle = min(max(middle, c.Min.X+half), c.Max.X-half)
-	b.write(s.label, vg.Point{X: middle, Y: c.Max.Y + 3.5}, text, smallSize, -0.5, 0, 0)
 }
 
 func box(left, right, bottom, top vg.Length) []vg.Point {
@@ -81,53 +73,11 @@ func (b brush) whiskers(c draw.Canvas, p panel, s series) {
 				c.StrokeLine2(b.line(s.ink, width), c.X(bound(p.x, low)), at.Y, c.X(bound(p.x, high)), at.Y)
 			}
 		}
-		bar(s.low[i], s.high[i], 0.8)
-		bar(s.innerLow[i], s.inHigh[i], 2.4)
+		bar(s.low[i], s.high[i], thinBar)
+		bar(s.innerLow[i], s.inHigh[i], thickBar)
 		var path vg.Path
-		glyph(&path, s.glyph, at, 3)
+		glyph(&path, s.glyph, at, 2.8)
 		b.canvas.SetColor(b.color(s.ink))
 		b.canvas.Fill(path)
-	}
-}
-
-// key draws the line above the panels that names the marks.
-func (b brush) key(items []keyItem, at vg.Point, right vg.Length) {
-	const sample, apart = 13, 9
-	for _, item := range items {
-		width := sample + gap + widthOf(item.text, smallSize)
-		if at.X+width > right {
-			return
-		}
-		b.sample(item, at, sample)
-		b.write(item.text, vg.Point{X: at.X + sample + gap, Y: at.Y}, text, smallSize, 0, -0.5, 0)
-		at.X += width + apart
-	}
-}
-
-// sample draws the mark of a key entry in a box of the given width.
-func (b brush) sample(item keyItem, at vg.Point, width vg.Length) {
-	c := draw.Canvas{Canvas: b.canvas, Rectangle: vg.Rectangle{
-		Min: vg.Point{X: at.X, Y: at.Y - 3}, Max: vg.Point{X: at.X + width, Y: at.Y + 3}}}
-	middle := c.Center()
-	switch item.mark {
-	case dots, rings, squares:
-		b.canvas.SetColor(b.color(item.ink))
-		b.canvas.SetLineWidth(hairline)
-		b.canvas.SetLineDash(nil, 0)
-		var path vg.Path
-		glyph(&path, item.mark, middle, 1.9)
-		if item.mark == rings {
-			b.canvas.Stroke(path)
-			return
-		}
-		b.canvas.Fill(path)
-	case curve:
-		c.StrokeLine2(b.line(item.ink, curveWidth), c.Min.X, middle.Y, c.Max.X, middle.Y)
-	case dashes, level:
-		c.StrokeLine2(b.line(item.ink, curveWidth*0.8, 4, 2), c.Min.X, middle.Y, c.Max.X, middle.Y)
-	case columns, envelope, span:
-		c.FillPolygon(b.color(item.ink), box(c.Min.X, c.Max.X, c.Min.Y, c.Max.Y))
-	case strip:
-		b.hatch(c, item.ink, c.Min.X, c.Max.X)
 	}
 }

@@ -13,7 +13,8 @@ func frequencyScale() scale { return scale{quantity: "frequency", unit: "Hz", fa
 // it the residuals in standard errors.
 func spectrum(a *calib.Axis) Figure {
 	f := Figure{Kind: Spectrum, Title: "Power spectrum, " + axisName(a), height: 82}
-	used, unused := spectrumPoints(a)
+	points := merged(a.Spectrum.Points)
+	used, unused := spectrumPoints(points)
 	frequencies, powers := newExtent(), newExtent()
 	for _, s := range []series{used, unused} {
 		frequencies.showPositive(s.x...)
@@ -28,7 +29,7 @@ func spectrum(a *calib.Axis) Figure {
 	bottom := panel{name: "residuals", share: 0.28, x: x}
 	for _, p := range []*panel{&top, &bottom} {
 		p.add(fitBand(a))
-		p.add(exclusions(a))
+		p.add(exclusions(a, p == &top))
 	}
 	top.add(unused)
 	top.add(used)
@@ -37,21 +38,20 @@ func spectrum(a *calib.Axis) Figure {
 		top.add(series{name: "corner frequency", mark: upright, ink: rule,
 			x: []float64{float64(corner.Value)}, label: "corner " + measured(corner, "Hz")})
 	}
-	residualPanel(&bottom, a)
+	residualPanel(&bottom, points)
 	f.panels = []panel{top, bottom}
 	f.key = spectrumKey(a, len(unused.x) > 0)
 	f.Description = describeSpectrum(a, used, x)
 	return f
 }
 
-// spectrumPoints returns the points in the fit and those left out, with bars of
-// one standard uncertainty.
-func spectrumPoints(a *calib.Axis) (used, unused series) {
+// spectrumPoints returns the points in the fit and those left out. The bars are
+// one standard uncertainty of the logarithm, which the model gives: they are as
+// long up as down on the axis, and do not run out of it where a block is small.
+func spectrumPoints(points []calib.SpectrumPoint) (used, unused series) {
 	used = series{name: "used", mark: dots, ink: data}
 	unused = series{name: "left out", mark: rings, ink: left}
-	points := thinned(len(a.Spectrum.Points))
-	for _, i := range points {
-		p := a.Spectrum.Points[i]
+	for _, p := range points {
 		if !p.Frequency.Known() || !p.Power.Known() {
 			continue
 		}
@@ -59,21 +59,21 @@ func spectrumPoints(a *calib.Axis) (used, unused series) {
 		if p.Used {
 			s = &used
 		}
+		factor := 1 + float64(p.Standard/p.Model)
 		s.x = append(s.x, float64(p.Frequency))
 		s.y = append(s.y, float64(p.Power))
-		s.low = append(s.low, float64(p.Power-p.Standard))
-		s.high = append(s.high, float64(p.Power+p.Standard))
+		s.low = append(s.low, float64(p.Power)/factor)
+		s.high = append(s.high, float64(p.Power)*factor)
 	}
 	return used, unused
 }
 
-func residualPanel(p *panel, a *calib.Axis) {
+func residualPanel(p *panel, points []calib.SpectrumPoint) {
 	used := series{name: "residual, used", mark: dots, ink: data}
 	unused := series{name: "residual, left out", mark: rings, ink: left}
 	reach := newExtent()
 	reach.show(-3, 3)
-	for _, i := range thinned(len(a.Spectrum.Points)) {
-		point := a.Spectrum.Points[i]
+	for _, point := range points {
 		if !point.Residual.Known() || !point.Frequency.Known() {
 			continue
 		}
@@ -102,8 +102,8 @@ func fitBand(a *calib.Axis) series {
 	return s
 }
 
-func exclusions(a *calib.Axis) series {
-	s := series{name: "excluded", mark: strip, ink: left}
+func exclusions(a *calib.Axis, wedge bool) series {
+	s := series{name: "excluded", mark: strip, ink: left, wedge: wedge}
 	for _, e := range a.Spectrum.Excluded {
 		if len(s.low) < 100 && e.Range[0].Known() && e.Range[1].Known() {
 			s.low, s.high = append(s.low, float64(e.Range[0])), append(s.high, float64(e.Range[1]))
@@ -115,7 +115,7 @@ func exclusions(a *calib.Axis) series {
 // fitted is a model curve of a result.
 func fitted(points []calib.Point, name string) series {
 	s := series{name: name, mark: curve, ink: model}
-	for _, i := range thinned(len(points)) {
+	for _, i := range thinned(len(points), maxPoints) {
 		s.x = append(s.x, float64(points[i].X))
 		s.y = append(s.y, float64(points[i].Y))
 	}

@@ -144,21 +144,22 @@ func (c *svgCanvas) path(p vg.Path) {
 	c.out.WriteString("\"/>\n")
 }
 
-// arc draws a circular arc in pieces of at most a quarter turn.
+// arc draws a circular arc, a full circle as two halves. Circles are what most
+// of a figure's bytes are, so they take the shortest form.
 func (c *svgCanvas) arc(arc vg.PathComp) {
 	on := func(angle float64) vg.Point {
 		sin, cos := math.Sincos(angle)
 		return vg.Point{X: arc.Pos.X + arc.Radius*vg.Length(cos), Y: arc.Pos.Y + arc.Radius*vg.Length(sin)}
 	}
-	c.step('L', on(arc.Start))
-	parts := max(1, int(math.Ceil(math.Abs(arc.Angle)/(math.Pi/2))))
-	sweep := arc.Angle / float64(parts)
-	reach := vg.Length(4. / 3 * math.Tan(sweep/4)) // of the control points, as a share of the radius
-	for i := range parts {
-		from, to := on(arc.Start+float64(i)*sweep), on(arc.Start+float64(i+1)*sweep)
-		c.step('C',
-			vg.Point{X: from.X - reach*(from.Y-arc.Pos.Y), Y: from.Y + reach*(from.X-arc.Pos.X)},
-			vg.Point{X: to.X + reach*(to.Y-arc.Pos.Y), Y: to.Y - reach*(to.X-arc.Pos.X)}, to)
+	// The map of a canvas that is not scaled keeps radii; none of ours is.
+	r := number(float64(arc.Radius))
+	for i := range 2 {
+		x, y := c.now.at.apply(on(arc.Start + arc.Angle*float64(i+1)/2))
+		sweep := "0" // counterclockwise on the page of vg
+		if arc.Angle < 0 {
+			sweep = "1"
+		}
+		c.out.WriteString("A" + r + " " + r + " 0 0 " + sweep + " " + number(x) + " " + number(y))
 	}
 }
 

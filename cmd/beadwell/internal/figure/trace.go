@@ -27,10 +27,10 @@ func trace(r *calib.Result, a *calib.Axis) Figure {
 	}
 	p.add(s)
 	f.panels = []panel{p}
-	f.key = []keyItem{{"smallest to largest position", envelope, drag}}
+	f.key = []keyItem{{"smallest to largest position", envelope, record}}
 	if len(marks) > 0 {
 		f.key = append(f.key, keyItem{"finding", strip, alarm})
-		f.height += 3
+		f.height += 3 // for their names
 	}
 	f.Description = describeTrace(a, times, reach, named)
 	return f
@@ -38,7 +38,7 @@ func trace(r *calib.Result, a *calib.Axis) Figure {
 
 // envelopeOf returns the trace in at most maxPoints stretches.
 func envelopeOf(a *calib.Axis) (s series, times, reach extent) {
-	s = series{name: "position", mark: envelope, ink: drag}
+	s = series{name: "position", mark: envelope, ink: record}
 	times, reach = newExtent(), newExtent()
 	t := a.Trace
 	n := min(len(t.Low), len(t.High))
@@ -100,7 +100,7 @@ func findingSpans(r *calib.Result, a *calib.Axis) (marks []series, named []strin
 			colour = alarm
 		}
 		label := clean(finding.Code)
-		marks = append(marks, series{name: label, mark: strip, ink: colour, label: label,
+		marks = append(marks, series{name: label, mark: strip, ink: colour, label: label, wedge: true, front: true,
 			low: []float64{low}, high: []float64{high}})
 		named = append(named, fmt.Sprintf("%s from %s to %s", label, plain(low, "s"), plain(high, "s")))
 	}

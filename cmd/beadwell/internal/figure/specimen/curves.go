@@ -33,7 +33,7 @@ func spectrumOf(x []float64, variance, corner float64) calib.Spectrum {
 	coefficients := fourier.NewFFT(len(x)).Coefficients(nil, x)
 	spacing := float64(rate) / float64(len(x))
 	for from := 1; from < len(coefficients)-1; {
-		to := min(max(from+1, int(float64(from)*1.055)), len(coefficients)-1)
+		to := min(max(from+6, int(float64(from)*1.055)), len(coefficients)-1)
 		s.Points = append(s.Points, block(coefficients[from:to], from, spacing, len(x), variance, corner))
 		from = to
 	}
@@ -99,7 +99,9 @@ func displacementOf(x []float64, variance, corner float64) calib.MeanSquareDispl
 		value := 2 * variance * (1 - math.Exp(-at/tau))
 		m.Points = append(m.Points, calib.MSDPoint{Lag: calib.Float(at), MSD: calib.Float(sum / float64(len(x)-lag)),
 			Standard: calib.Float(value * 0.011), Model: calib.Float(value), Used: lag < 2000})
-		m.Model = append(m.Model, calib.Point{X: calib.Float(at), Y: calib.Float(value)})
+	}
+	for at := 1 / rate; at < float64(len(x))/8/rate; at *= 1.04 {
+		m.Model = append(m.Model, calib.Point{X: calib.Float(at), Y: calib.Float(2 * variance * (1 - math.Exp(-at/tau)))})
 	}
 	return m
 }
