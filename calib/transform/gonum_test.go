@@ -12,7 +12,8 @@ import (
 // small multiple of eps log2(n), which is below 6e-15 here.
 func TestForwardGonum(t *testing.T) {
 	lengths := []int{8192, GoodLengthAbove(8193), 10000, 2 * 3 * 3125, 1 << 14, 2 * 6561, 2 * 15625,
-		1 << 15, 1 << 16, 2 * 59049, 2 * 78125, 100_000, 1 << 17, 1 << 18, 1_000_000, 1_166_400}
+		1 << 15, 1 << 16, 2 * 59049, 2 * 78125, 100_000, 1 << 17, 1 << 18, 1_000_000,
+		1_166_400, 2 * 5 * 59049, 2 * 390625}
 	for _, n := range lengths {
 		p, err := NewPlan(n)
 		if err != nil {

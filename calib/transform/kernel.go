@@ -39,36 +39,40 @@ func newKernel(n int) *kernel {
 	return k
 }
 
-// transform transforms src. The result lies in a or in b, whichever is returned
-// first; the other one is returned second. a and b have length n and do not overlap;
-// src may be b, and is kept if it is not.
-func (k *kernel) transform(src, a, b []complex128) (result, other []complex128) {
+// transform transforms width sequences at a time, which lie in src side by side:
+// element j of sequence b is src[j width + b]. The result lies likewise in a or in b,
+// whichever is returned first; the other one is returned second. All three have
+// length n width, a and b do not overlap; src may be b, and is kept if it is not.
+func (k *kernel) transform(src, a, b []complex128, width int) (result, other []complex128) {
 	if len(k.stages) == 0 {
 		copy(a, src)
 		return a, b
 	}
-	k.stages[0].run(a, src)
+	k.stages[0].run(a, src, width)
 	for i := range k.stages[1:] {
-		k.stages[i+1].run(b, a)
+		k.stages[i+1].run(b, a, width)
 		a, b = b, a
 	}
 	return a, b
 }
 
 // run performs the stage from x to y.
-func (s *stage) run(y, x []complex128) {
+func (s *stage) run(y, x []complex128, width int) {
+	stride := s.stride * width
 	switch {
 	case s.radix == 4 && s.groups == 1:
 		radix4Last(y, x)
-	case s.radix == 4 && s.stride == 1:
+	case s.radix == 4 && stride == 1:
 		radix4First(y, x, s.roots)
 	case s.radix == 4:
-		radix4(y, x, s.roots, s.stride)
+		radix4(y, x, s.roots, stride)
 	case s.radix == 5:
-		radix5(y, x, s.roots, s.stride)
+		radix5(y, x, s.roots, stride)
 	case s.radix == 3:
-		radix3(y, x, s.roots, s.stride)
+		radix3(y, x, s.roots, stride)
+	case s.groups == 1:
+		radix2Last(y, x)
 	default:
-		radix2(y, x, s.roots, s.stride)
+		radix2(y, x, s.roots, stride)
 	}
 }

@@ -80,6 +80,18 @@ func radix2(y, x, roots []complex128, stride int) {
 	}
 }
 
+// radix2Last is radix2 for a single group, whose root is 1.
+func radix2Last(y, x []complex128) {
+	stride := len(x) / 2
+	x0, x1 := x[:stride], x[stride:][:stride]
+	y0, y1 := y[:stride], y[stride:][:stride]
+	for q := range x0 {
+		a, b := x0[q], x1[q]
+		y0[q] = a + b
+		y1[q] = a - b
+	}
+}
+
 // radix3 is the stage of three inputs.
 func radix3(y, x, roots []complex128, stride int) {
 	const sine = 0.8660254037844386467637231707529361835 // sin(2 pi/3) = sqrt(3)/2

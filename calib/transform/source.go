@@ -4,8 +4,9 @@ import "unsafe"
 
 // source is a complex sequence z to be transformed.
 type source interface {
-	// gather sets columns[b][j] = z[first + b + j stride].
-	gather(columns [][]complex128, first, stride int)
+	// gather sets dst[j width + b] = z[first + b + j stride] for b < width, as far as
+	// dst reaches.
+	gather(dst []complex128, first, width, stride int)
 }
 
 // asComplex views pairs of neighbouring numbers as complex ones: element j is
@@ -21,52 +22,22 @@ func asComplex(x []float64) []complex128 {
 // series is the real series taken as half as many complex numbers, zeros after its end.
 type series []float64
 
-func (x series) gather(columns [][]complex128, first, stride int) {
+func (x series) gather(dst []complex128, first, width, stride int) {
 	z := asComplex(x)
-	whole := 0 // rows of the block that lie inside z
-	if last := first + len(columns) - 1; last < len(z) {
-		whole = min((len(z)-1-last)/stride+1, len(columns[0]))
-	}
-	gatherRows(columns, z, first, stride, whole)
-	for b, column := range columns {
-		for j := whole; j < len(column); j++ {
-			column[j] = x.at(first + b + j*stride)
+	for ; len(dst) > 0; first += stride {
+		row := dst[:width]
+		dst = dst[width:]
+		n := 0
+		if first < len(z) {
+			n = copy(row, z[first:])
 		}
-	}
-}
-
-// at returns element j of the complex sequence.
-func (x series) at(j int) complex128 {
-	switch {
-	case 2*j+1 < len(x):
-		return complex(x[2*j], x[2*j+1])
-	case 2*j < len(x):
-		return complex(x[2*j], 0)
-	default:
-		return 0
-	}
-}
-
-// gatherRows is gather for the first count rows, which lie inside z.
-func gatherRows(columns [][]complex128, z []complex128, first, stride, count int) {
-	if stride == 1 && len(columns) == 1 {
-		copy(columns[0][:count], z[first:])
-		return
-	}
-	if len(columns) != blockWidth {
-		for b, column := range columns {
-			for j := range column[:count] {
-				column[j] = z[first+b+j*stride]
-			}
+		if n == width {
+			continue
 		}
-		return
-	}
-	c0, c1, c2, c3 := columns[0][:count], columns[1][:count], columns[2][:count], columns[3][:count]
-	c4, c5, c6, c7 := columns[4][:count], columns[5][:count], columns[6][:count], columns[7][:count]
-	for j := range c0 {
-		from := (*[blockWidth]complex128)(z[first+j*stride:])
-		c0[j], c1[j], c2[j], c3[j] = from[0], from[1], from[2], from[3]
-		c4[j], c5[j], c6[j], c7[j] = from[4], from[5], from[6], from[7]
+		clear(row[n:])
+		if len(x)%2 == 1 && first+n == len(z) {
+			row[n] = complex(x[len(x)-1], 0)
+		}
 	}
 }
 
@@ -78,12 +49,14 @@ type spectrum struct {
 	roots *roots // exp(-2 pi i k/n)
 }
 
-func (s *spectrum) gather(columns [][]complex128, first, stride int) {
+func (s *spectrum) gather(dst []complex128, first, width, stride int) {
 	half := len(s.bins) - 1
 	scale := 0.5 / float64(half)
-	for b, column := range columns {
-		for j := range column {
-			k := first + b + j*stride
+	for ; len(dst) > 0; first += stride {
+		row := dst[:width]
+		dst = dst[width:]
+		for b := range row {
+			k := first + b
 			low, high := s.bins[k], s.bins[half-k]
 			if k == 0 {
 				low, high = complex(real(low), 0), complex(real(high), 0)
@@ -93,7 +66,7 @@ func (s *spectrum) gather(columns [][]complex128, first, stride int) {
 			odd := complex(real(low)-real(high), imag(low)+imag(high))
 			w := s.roots.at(k)
 			odd *= complex(real(w), -imag(w))
-			column[j] = complex(scale*(real(even)-imag(odd)), -scale*(imag(even)+real(odd)))
+			row[b] = complex(scale*(real(even)-imag(odd)), -scale*(imag(even)+real(odd)))
 		}
 	}
 }

@@ -29,8 +29,7 @@ const chunk = 32
 func rowBlock[T float64 | complex128](p *Plan, d *desk, dst []T, work []complex128, first int, pair pairing[T]) {
 	columns := p.half / p.rows
 	load := func(to [][]complex128, b, r int) {
-		d.spare = d.spare[:columns]
-		to[b], d.spare = p.row.transform(work[r*columns:][:columns], d.spare, to[b][:columns])
+		to[b], d.spare = p.row.transform(work[r*columns:][:columns], d.spare, to[b], 1)
 	}
 	middle := p.rows%2 == 0 && p.rows/2 >= first && p.rows/2 < first+blockWidth
 	end := min(first+blockWidth, (p.rows+1)/2)
@@ -95,6 +94,15 @@ func storeRows[T float64 | complex128](p *Plan, dst []T, block, mirror [][]compl
 
 // scatter sets dst[first + b + i stride] = results[b][i] for b < width and i < count.
 func scatter[T float64 | complex128](dst []T, results *[blockWidth][chunk]T, first, stride, width, count int) {
+	if width == blockWidth {
+		r := results
+		for i := range count {
+			to := (*[blockWidth]T)(dst[first+i*stride:])
+			to[0], to[1], to[2], to[3] = r[0][i], r[1][i], r[2][i], r[3][i]
+			to[4], to[5], to[6], to[7] = r[4][i], r[5][i], r[6][i], r[7][i]
+		}
+		return
+	}
 	for i := range count {
 		to := dst[first+i*stride:][:width]
 		for b := range to {

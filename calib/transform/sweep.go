@@ -14,23 +14,28 @@ const blockWidth = 8
 // below it, waking them costs a noticeable part of what they save.
 const parallelLimit = 1 << 15
 
-// desk is the working memory of one worker: blockWidth and as many mirror columns or
-// rows, and a spare one.
+// desk is the working memory of one worker.
 type desk struct {
-	block, mirror [][]complex128
-	spare         []complex128
+	columns       [2][]complex128 // blockWidth columns side by side, twice
+	block, mirror [][]complex128  // blockWidth rows each
+	spare         []complex128    // a row
 }
 
 func (p *Plan) newDesk() *desk {
-	length := p.half / p.rows
-	d := &desk{spare: make([]complex128, length)}
-	count := blockWidth
+	length, count := p.half/p.rows, blockWidth
 	if p.rows == 1 {
 		count = 1
 	}
+	d := &desk{spare: make([]complex128, length)}
 	for range count {
 		d.block = append(d.block, make([]complex128, length))
-		d.mirror = append(d.mirror, make([]complex128, length))
+	}
+	if p.rows > 1 {
+		for range count {
+			d.mirror = append(d.mirror, make([]complex128, length))
+		}
+		d.columns[0] = make([]complex128, blockWidth*p.rows)
+		d.columns[1] = make([]complex128, blockWidth*p.rows)
 	}
 	return d
 }
@@ -41,8 +46,8 @@ func run[T float64 | complex128](p *Plan, dst []T, from source, pair pairing[T])
 	if p.rows == 1 {
 		d := p.borrowDesk()
 		defer p.desks.Put(d)
-		from.gather(d.block, 0, 1)
-		z, _ := p.row.transform(d.block[0], d.spare, d.block[0])
+		from.gather(d.block[0], 0, p.half, p.half)
+		z, _ := p.row.transform(d.block[0], d.spare, d.block[0], 1)
 		storeWhole(p, dst, z, pair)
 		return
 	}
@@ -100,40 +105,32 @@ func (p *Plan) spread(blocks int, do func(d *desk, block int)) {
 // column c with exp(-2 pi i r c/half).
 func (p *Plan) columnBlock(d *desk, work []complex128, from source, first, width int) {
 	columns := p.half / p.rows
-	block := d.block[:width]
-	for b := range block {
-		block[b] = block[b][:p.rows]
-	}
-	d.spare = d.spare[:p.rows]
-	from.gather(block, first, columns)
-	for b := range block {
-		block[b], d.spare = p.column.transform(block[b], d.spare, block[b])
-	}
-	if width < blockWidth {
-		for b, column := range block {
-			for r, z := range column {
-				work[r*columns+first+b] = z * p.halfRoots.at(r*(first+b))
-			}
-		}
+	a, b := d.columns[0][:p.rows*width], d.columns[1][:p.rows*width]
+	from.gather(a, first, width, columns)
+	z, _ := p.column.transform(a, b, a, width)
+	if width == blockWidth {
+		p.turnColumns(work, z, first)
 		return
 	}
-	p.scatterColumns(work, block, first)
+	for i, v := range z {
+		r, c := i/width, first+i%width
+		work[r*columns+c] = v * p.halfRoots.at(r*c)
+	}
 }
 
-// scatterColumns is the end of columnBlock for a full block. The roots of a row's eight
+// turnColumns is the end of columnBlock for a full block. The roots of a row's eight
 // columns are products of the first one with powers of that of the row.
-func (p *Plan) scatterColumns(work []complex128, block [][]complex128, first int) {
+func (p *Plan) turnColumns(work, z []complex128, first int) {
 	columns := p.half / p.rows
-	c0, c1, c2, c3 := block[0], block[1], block[2], block[3]
-	c4, c5, c6, c7 := block[4], block[5], block[6], block[7]
 	for r := range p.rows {
+		in := (*[blockWidth]complex128)(z[blockWidth*r:])
 		to := (*[blockWidth]complex128)(work[r*columns+first:])
 		step := (*[3]complex128)(p.stepRoots[3*r:])
 		w0 := p.halfRoots.at(r * first)
 		w1, w2 := w0*step[0], w0*step[1]
 		w3 := w1 * step[1]
-		to[0], to[1], to[2], to[3] = c0[r]*w0, c1[r]*w1, c2[r]*w2, c3[r]*w3
-		to[4], to[5] = c4[r]*(w0*step[2]), c5[r]*(w1*step[2])
-		to[6], to[7] = c6[r]*(w2*step[2]), c7[r]*(w3*step[2])
+		to[0], to[1], to[2], to[3] = in[0]*w0, in[1]*w1, in[2]*w2, in[3]*w3
+		to[4], to[5] = in[4]*(w0*step[2]), in[5]*(w1*step[2])
+		to[6], to[7] = in[6]*(w2*step[2]), in[7]*(w3*step[2])
 	}
 }
