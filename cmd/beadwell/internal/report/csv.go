@@ -11,10 +11,11 @@ import (
 // legAdopted stands in the column leg for the adopted stiffness.
 const legAdopted = "adopted"
 
-// column is one column of the CSV table: its name with the unit, and its cell.
+// column is one column of the CSV table: its name with the unit, what it
+// holds, and its cell.
 type column struct {
-	name string
-	cell func(csvRow) string
+	name, meaning string
+	cell          func(csvRow) string
 }
 
 // csvRow is one stiffness of one axis, or a recording that has none.
@@ -27,32 +28,38 @@ type csvRow struct {
 	problem   string
 }
 
-// Columns of the CSV table, in order. docs/output.md describes them.
+// columns of the CSV table, in order.
 var columns = []column{
-	{"file", func(r csvRow) string { return cell(r.result.Input.Name) }},
-	{"bead", func(r csvRow) string { return cell(r.result.Input.Bead) }},
-	{"axis", func(r csvRow) string { return cell(r.axis.Name) }},
-	{"leg", func(r csvRow) string { return cell(r.leg) }},
-	{"route", func(r csvRow) string { return cell(r.route) }},
-	{"stiffness_N_per_m", func(r csvRow) string { return full(r.stiffness.Value) }},
-	{"statistical_u_N_per_m", uncertainty(statistical, func(u calib.Uncertainty) calib.Float { return u.Standard })},
-	{"statistical_68_low_N_per_m", uncertainty(statistical, func(u calib.Uncertainty) calib.Float { return u.Interval68[0] })},
-	{"statistical_68_high_N_per_m", uncertainty(statistical, func(u calib.Uncertainty) calib.Float { return u.Interval68[1] })},
-	{"statistical_95_low_N_per_m", uncertainty(statistical, func(u calib.Uncertainty) calib.Float { return u.Interval95[0] })},
-	{"statistical_95_high_N_per_m", uncertainty(statistical, func(u calib.Uncertainty) calib.Float { return u.Interval95[1] })},
-	{"combined_u_N_per_m", uncertainty(withInputs, func(u calib.Uncertainty) calib.Float { return u.Standard })},
-	{"combined_68_low_N_per_m", uncertainty(withInputs, func(u calib.Uncertainty) calib.Float { return u.Interval68[0] })},
-	{"combined_68_high_N_per_m", uncertainty(withInputs, func(u calib.Uncertainty) calib.Float { return u.Interval68[1] })},
-	{"combined_95_low_N_per_m", uncertainty(withInputs, func(u calib.Uncertainty) calib.Float { return u.Interval95[0] })},
-	{"combined_95_high_N_per_m", uncertainty(withInputs, func(u calib.Uncertainty) calib.Float { return u.Interval95[1] })},
-	{"drag_computed_N_s_per_m", func(r csvRow) string { return full(r.axis.Drag.Value) }},
-	{"drag_measured_N_s_per_m", func(r csvRow) string { return full(r.axis.MeasuredDrag.Value) }},
-	{"corner_frequency_Hz", func(r csvRow) string { return full(r.axis.Spectrum.Corner.Value) }},
-	{"p_routes_statistical", func(r csvRow) string { return full(r.axis.CrossCheck.Routes.PValue) }},
-	{"p_routes_combined", func(r csvRow) string { return full(r.axis.CrossCheck.Routes.PValueCombined) }},
-	{"verdict", func(r csvRow) string { return cell(r.result.Verdict.Status) }},
-	{"problem", func(r csvRow) string { return cell(r.problem) }},
+	{"file", "recording, as named on the command line", func(r csvRow) string { return cell(r.result.Input.Name) }},
+	{"bead", "bead, when the file holds several", func(r csvRow) string { return cell(r.result.Input.Bead) }},
+	{"axis", "x, y or z", func(r csvRow) string { return cell(r.axis.Name) }},
+	{"leg", "adopted, or the estimate, named as in JSON", func(r csvRow) string { return cell(r.leg) }},
+	{"route", "drag or amplitude; empty for the adopted value", func(r csvRow) string { return cell(r.route) }},
+	{"stiffness_N_per_m", "stiffness; empty when withheld", func(r csvRow) string { return full(r.stiffness.Value) }},
+	{"statistical_u_N_per_m", "standard uncertainty, inputs taken as exact", uncertainty(statistical, standardOf)},
+	{"statistical_68_low_N_per_m", "lower end of the 68 % interval, inputs taken as exact", uncertainty(statistical, low68)},
+	{"statistical_68_high_N_per_m", "its upper end", uncertainty(statistical, high68)},
+	{"statistical_95_low_N_per_m", "lower end of the 95 % interval, inputs taken as exact", uncertainty(statistical, low95)},
+	{"statistical_95_high_N_per_m", "its upper end", uncertainty(statistical, high95)},
+	{"combined_u_N_per_m", "standard uncertainty with the stated uncertainties of the inputs", uncertainty(withInputs, standardOf)},
+	{"combined_68_low_N_per_m", "lower end of the 68 % interval with the inputs", uncertainty(withInputs, low68)},
+	{"combined_68_high_N_per_m", "its upper end", uncertainty(withInputs, high68)},
+	{"combined_95_low_N_per_m", "lower end of the 95 % interval with the inputs", uncertainty(withInputs, low95)},
+	{"combined_95_high_N_per_m", "its upper end", uncertainty(withInputs, high95)},
+	{"drag_computed_N_s_per_m", "Stokes drag times wall factor", func(r csvRow) string { return full(r.axis.Drag.Value) }},
+	{"drag_measured_N_s_per_m", "kT over the diffusion coefficient of the spectrum", func(r csvRow) string { return full(r.axis.MeasuredDrag.Value) }},
+	{"corner_frequency_Hz", "corner frequency of the spectrum", func(r csvRow) string { return full(r.axis.Spectrum.Corner.Value) }},
+	{"p_routes_statistical", "p-value of the equality of the two routes, inputs taken as exact", func(r csvRow) string { return full(r.axis.CrossCheck.Routes.PValue) }},
+	{"p_routes_combined", "the same with the stated uncertainties of the inputs", func(r csvRow) string { return full(r.axis.CrossCheck.Routes.PValueCombined) }},
+	{"verdict", "consistent, inconsistent, unfit, or failed for a recording without a result", func(r csvRow) string { return cell(r.result.Verdict.Status) }},
+	{"problem", "why there is no stiffness; empty when there is one", func(r csvRow) string { return cell(r.problem) }},
 }
+
+func standardOf(u calib.Uncertainty) calib.Float { return u.Standard }
+func low68(u calib.Uncertainty) calib.Float      { return u.Interval68[0] }
+func high68(u calib.Uncertainty) calib.Float     { return u.Interval68[1] }
+func low95(u calib.Uncertainty) calib.Float      { return u.Interval95[0] }
+func high95(u calib.Uncertainty) calib.Float     { return u.Interval95[1] }
 
 func statistical(q calib.Quantity) *calib.Uncertainty { return q.Statistical }
 func withInputs(q calib.Quantity) *calib.Uncertainty  { return q.Combined }

@@ -38,6 +38,7 @@ func ReadJSON(r io.Reader) (*calib.Result, error) {
 
 // ReadError says why a stored result cannot be read.
 type ReadError struct {
+	File         string // set by the caller that knows it
 	Line, Column int    // from 1; 0 when the place is a key
 	What         string // what is wrong, in words
 	Remedy       string
