@@ -1,0 +1,319 @@
+package track
+
+import (
+	"fmt"
+	"math"
+	"slices"
+	"strconv"
+)
+
+// Tolerances of the time grid, as fractions of the sampling interval. Jitter of
+// 5 % rms blurs positions by less than a twentieth of an interval of motion;
+// beyond 45 % a stamp could belong to the next grid point.
+const (
+	jitterRMS = 0.05
+	jitterMax = 0.45
+)
+
+// grid places samples on a regular time grid.
+type grid struct {
+	interval float64 // sampling interval dt [s]
+	start    float64 // time of grid point 0 [s]
+	samples  int     // grid points
+	place    []int   // grid point of each row; nil when row i is point i
+	rms, max float64 // of the stamps about the grid [s]
+	slopeU   float64 // standard uncertainty of interval [s]
+	rounded  bool    // the stamps are off the grid by their rounding alone
+	longest  int     // longest run of points without a stamp
+}
+
+// gridFault is a row whose stamp does not fit.
+type gridFault struct {
+	row          int
+	what, remedy string
+}
+
+// resolution is the rounding of stamps as written.
+type resolution struct {
+	step  float64 // fixed step [s]; 0 when unknown
+	shift int     // unit of the file as a power of ten of a second
+}
+
+const timeRemedy = "repair the stamps, or leave out the time column and state the rate (--rate) if the samples are known to be evenly spaced"
+
+// fitGrid finds the regular grid of the stamps t [s].
+func fitGrid(t []float64, written resolution) (grid, *gridFault) {
+	for i, v := range t {
+		if v != v {
+			return grid{}, &gridFault{i, "the time is missing", "complete the time, or remove the row"}
+		}
+	}
+	g := fitLine(t, nil)
+	if g.interval > 0 && g.fits() {
+		g.samples = len(t)
+		g.rounded = written.step > 0 && g.max <= 0.55*written.step
+		return g, nil
+	}
+	if g.interval > 0 && g.isRounded(t, written) {
+		g.samples, g.rounded = len(t), true
+		return g, nil
+	}
+	for i := 1; i < len(t); i++ {
+		switch {
+		case t[i] < t[i-1]:
+			return g, &gridFault{i, fmt.Sprintf("time runs backwards: %s after %s", seconds(t[i]), seconds(t[i-1])),
+				"sort the rows by time; keep one recording in a file"}
+		case t[i] == t[i-1]:
+			return g, &gridFault{i, fmt.Sprintf("the time %s occurs twice", seconds(t[i])), "remove the repeated row, or export the time with more digits"}
+		}
+	}
+	return fitGaps(t, written)
+}
+
+// seconds prints a time for a message.
+func seconds(t float64) string { return strconv.FormatFloat(t, 'g', 10, 64) + " s" }
+
+// fits tells whether the stamps lie on the grid within the tolerance for jitter.
+func (g *grid) fits() bool {
+	return g.max <= jitterMax*g.interval && g.rms <= jitterRMS*g.interval
+}
+
+// fitLine fits t = start + interval*place by least squares (place is 0, 1, 2, ...
+// when nil). Sums run over blocks, which keeps rounding at the level of one block.
+func fitLine(t []float64, place []int) grid {
+	n := float64(len(t))
+	at := func(i int) float64 {
+		if place == nil {
+			return float64(i)
+		}
+		return float64(place[i])
+	}
+	first, centre := t[0], (n-1)/2
+	if place != nil {
+		centre = blockSum(len(t), at) / n
+	}
+	mean := blockSum(len(t), func(i int) float64 { return t[i] - first }) / n
+	xx := n * (n*n - 1) / 12
+	if place != nil {
+		xx = blockSum(len(t), func(i int) float64 { d := at(i) - centre; return d * d })
+	}
+	xt := blockSum(len(t), func(i int) float64 { return (at(i) - centre) * (t[i] - first - mean) })
+	g := grid{interval: xt / xx, place: place}
+	offset := mean - g.interval*centre
+	g.start = first + offset
+	squares := blockSum(len(t), func(i int) float64 {
+		r := math.Abs(t[i] - first - offset - g.interval*at(i))
+		g.max = max(g.max, r)
+		return r * r
+	})
+	g.rms = math.Sqrt(squares / n)
+	g.slopeU = math.Sqrt(squares / max(n-2, 1) / xx)
+	return g
+}
+
+// blockSum adds f(0) to f(n-1) in blocks.
+func blockSum(n int, f func(int) float64) float64 {
+	total := 0.0
+	for from := 0; from < n; from += 4096 {
+		part := 0.0
+		for i := from; i < min(from+4096, n); i++ {
+			part += f(i)
+		}
+		total += part
+	}
+	return total
+}
+
+// isRounded tells whether rounding alone explains the distance of every stamp
+// from an even grid. Rounding must show in at least ten uneven steps: a single
+// one is a gap or a repeated row. Where stamps are rounded to more than four
+// intervals, lost rows could no longer be seen.
+func (g *grid) isRounded(t []float64, written resolution) bool {
+	step := func(float64) float64 { return written.step }
+	if written.step <= 0 || g.max > 0.55*written.step {
+		if step = floatStep(t, written.shift); step == nil {
+			return false
+		}
+	}
+	uneven := 0
+	for i, v := range t {
+		q := step(v)
+		if q > 4*g.interval || math.Abs(v-g.start-g.interval*float64(i)) > 0.55*q {
+			return false
+		}
+		if i > 0 && math.Abs(v-t[i-1]-g.interval) > 0.4*g.interval {
+			uneven++
+		}
+	}
+	return uneven >= 10 || uneven == 0
+}
+
+// floatStep recognises stamps in single precision, and stamps with six or seven
+// significant digits, and returns their rounding step; nil for anything else.
+func floatStep(t []float64, shift int) func(v float64) float64 {
+	tail := "e" + strconv.Itoa(shift)
+	scale := math.Pow10(-shift)
+	same := func(digits, width int) bool {
+		for _, v := range t {
+			w, _ := strconv.ParseFloat(strconv.FormatFloat(v*scale, 'g', digits, width)+tail, 64)
+			if math.Abs(w-v) > 1e-15*math.Abs(v) {
+				return false
+			}
+		}
+		return true
+	}
+	single := func() bool {
+		for _, v := range t {
+			if w := float64(float32(v * scale)); math.Abs(w-v*scale) > 1e-15*math.Abs(w) {
+				return false
+			}
+		}
+		return true
+	}
+	digits := func(n int) func(float64) float64 {
+		return func(v float64) float64 {
+			return math.Pow(10, math.Floor(math.Log10(max(math.Abs(v), 1e-300)))+1-float64(n))
+		}
+	}
+	switch {
+	case same(6, 64):
+		return digits(6)
+	case same(7, 64):
+		return digits(7)
+	case single(), same(-1, 32):
+		return func(v float64) float64 {
+			f := float32(math.Abs(v * scale))
+			return float64(math.Nextafter32(f, math.MaxFloat32)-f) / scale
+		}
+	}
+	return nil
+}
+
+// fitGaps places stamps that skip whole multiples of the interval.
+func fitGaps(t []float64, written resolution) (grid, *gridFault) {
+	interval := usualStep(t)
+	if interval <= 0 || len(t) < 3 {
+		return grid{}, &gridFault{0, "the time does not advance", timeRemedy}
+	}
+	place := make([]int, len(t))
+	for i := 1; i < len(t); i++ {
+		k := math.Round((t[i] - t[i-1]) / interval)
+		if k > float64(len(t)) {
+			return grid{}, &gridFault{i, fmt.Sprintf("a gap of %s, longer than the record before and after it", seconds(t[i]-t[i-1])), "split the file at the gap"}
+		}
+		place[i] = place[i-1] + max(int(k), 1)
+	}
+	var g grid
+	for range 6 {
+		g = fitLine(t, place)
+		if g.interval <= 0 || !g.replace(t, place) {
+			break
+		}
+	}
+	last := place[len(place)-1]
+	if last > 4*len(t)+16 {
+		return g, &gridFault{0, fmt.Sprintf("more than three quarters of the samples are missing: %d of %d", last+1-len(t), last+1), timeRemedy}
+	}
+	rounding := written.step > 0 && g.max <= 0.55*written.step && written.step <= 0.9*g.interval
+	if !g.fits() && !rounding || !slices.IsSorted(place) {
+		return g, g.uneven(t, place)
+	}
+	g.rounded = rounding
+	g.samples = last + 1
+	for i := 1; i < len(place); i++ {
+		if place[i] == place[i-1] {
+			return g, g.uneven(t, place)
+		}
+		g.longest = max(g.longest, place[i]-place[i-1]-1)
+	}
+	if g.samples == len(t) {
+		g.place = nil
+	}
+	return g, nil
+}
+
+// replace puts every stamp on its nearest grid point and tells whether one moved.
+func (g *grid) replace(t []float64, place []int) bool {
+	moved := false
+	first := int(math.Round((t[0] - g.start) / g.interval))
+	for i, v := range t {
+		if k := int(math.Round((v-g.start)/g.interval)) - first; k != place[i] {
+			place[i] = k
+			moved = true
+		}
+	}
+	return moved
+}
+
+// usualStep is the mean of the steps that are within half of their median.
+func usualStep(t []float64) float64 {
+	stride := max(len(t)/200_000, 1)
+	var steps []float64
+	for i := 1; i < len(t); i += stride {
+		steps = append(steps, t[i]-t[i-1])
+	}
+	slices.Sort(steps)
+	if len(steps) == 0 {
+		return 0
+	}
+	median := steps[len(steps)/2]
+	sum, n := 0.0, 0
+	for _, s := range steps {
+		if math.Abs(s-median) <= 0.5*median {
+			sum += s
+			n++
+		}
+	}
+	if n == 0 {
+		return 0
+	}
+	return sum / float64(n)
+}
+
+// uneven names the first stamp beyond the tolerance, else the worst one.
+func (g *grid) uneven(t []float64, place []int) *gridFault {
+	worst, distance := 0, -1.0
+	for i, v := range t {
+		r := math.Abs(v - g.start - g.interval*float64(place[i]))
+		if r > distance {
+			worst, distance = i, r
+		}
+		if r > jitterMax*g.interval {
+			break
+		}
+	}
+	worst = max(worst, 1)
+	return &gridFault{worst, fmt.Sprintf("the time steps are uneven: %s here, %s on average; the stamps lie %.0f %% of a step off an even grid (root mean square), the limits are %.0f %% and %.0f %% at most",
+		seconds(t[worst]-t[worst-1]), seconds(g.interval), 100*g.rms/g.interval, 100*jitterRMS, 100*jitterMax), timeRemedy}
+}
+
+// fitFrames places samples by their frame numbers.
+func fitFrames(f []float64) (grid, *gridFault) {
+	g := grid{rms: math.NaN(), max: math.NaN()}
+	const remedy = "number the frames with whole numbers that rise; keep one recording in a file, or name the column of the bead"
+	for i, v := range f {
+		switch {
+		case v != math.Trunc(v) || math.Abs(v) > 1<<53:
+			return g, &gridFault{i, fmt.Sprintf("the frame number %s is not whole", strconv.FormatFloat(v, 'g', -1, 64)), remedy}
+		case i > 0 && v <= f[i-1]:
+			return g, &gridFault{i, fmt.Sprintf("frame %.0f comes after frame %.0f", v, f[i-1]), remedy}
+		case i > 0 && v-f[i-1] > float64(len(f)):
+			return g, &gridFault{i, fmt.Sprintf("a gap of %.0f frames, longer than the record", v-f[i-1]), "split the file at the gap"}
+		}
+	}
+	last := f[len(f)-1] - f[0]
+	if last > float64(4*len(f)+16) {
+		return g, &gridFault{0, fmt.Sprintf("more than three quarters of the frames are missing: %.0f of %.0f", last+1-float64(len(f)), last+1), remedy}
+	}
+	g.samples = int(last) + 1
+	if g.samples > len(f) {
+		g.place = make([]int, len(f))
+		for i, v := range f {
+			g.place[i] = int(v - f[0])
+			if i > 0 {
+				g.longest = max(g.longest, g.place[i]-g.place[i-1]-1)
+			}
+		}
+	}
+	return g, nil
+}

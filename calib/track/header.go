@@ -1,0 +1,325 @@
+package track
+
+import (
+	"fmt"
+	"slices"
+	"strconv"
+	"strings"
+)
+
+// headerRow is a line above the data that has one cell per column.
+type headerRow struct {
+	line  textLine
+	cells []string
+	roles int // cells with a known role
+	units int // cells that are units
+	texts int // cells that are neither empty nor numbers
+}
+
+// maxHeaderRows is the largest number of header rows.
+const maxHeaderRows = 4
+
+// newHeaderRow weighs the cells of a line.
+func newHeaderRow(line textLine, cells []string) headerRow {
+	h := headerRow{line: line, cells: cells}
+	for _, c := range cells {
+		if trimCell(c) == "" {
+			continue
+		}
+		if _, ok := findUnit(c); ok {
+			h.units++
+		}
+		if k := kindOf(cell{text: c}); k == textCell || k == missingCell {
+			h.texts++
+		}
+		info := parseName(c)
+		info.understand()
+		if info.role != otherRole && info.role != indexRole {
+			h.roles++
+		}
+	}
+	return h
+}
+
+// filled counts the cells that are not empty.
+func (h headerRow) filled() int {
+	n := 0
+	for _, c := range h.cells {
+		if trimCell(c) != "" {
+			n++
+		}
+	}
+	return n
+}
+
+// cellTexts returns the texts of a line cut at a delimiter.
+func cellTexts(text string, delimiter byte) []string {
+	cells, _ := splitLine(nil, text, delimiter)
+	list := make([]string, len(cells))
+	for i, c := range cells {
+		list[i] = c.text
+	}
+	return list
+}
+
+// isRule tells lines that only draw or mark a border: "-----", "===", "|---|".
+func isRule(text string) bool {
+	return strings.Trim(text, "-=+|*_~:,;# \t") == ""
+}
+
+// isMarker tells a line that ends a preamble: one or a few words without a cell.
+func isMarker(text string) bool {
+	t := strings.ToLower(strings.Trim(text, " \t[]<>*-=#%:,;\"_"))
+	t = strings.Join(strings.FieldsFunc(t, func(r rune) bool { return r == '_' || r == ' ' || r == '-' }), " ")
+	switch t {
+	case "data", "begin data", "start data", "data start", "begin", "end header", "end of header", "header end", "endheader", "end head", "values", "begin of data", "daten", "measurement", "measurements":
+		return true
+	}
+	return false
+}
+
+// findHeader collects the header rows above the data, nearest first.
+func (v *view) findHeader(fits func(width int) bool) (rows []headerRow) {
+	for i := v.first - 1; i >= 0 && len(rows) < maxHeaderRows; i-- {
+		text := v.lines[i].text
+		if isComment(text) || isRule(text) || isMarker(text) || isBlank(text) {
+			if len(rows) > 0 && isBlank(text) {
+				break
+			}
+			continue
+		}
+		cells := cellTexts(text, v.delimiter)
+		h := newHeaderRow(v.lines[i], cells)
+		if !fits(len(cells)) || h.texts == 0 || len(rows) > 0 && v.width == 1 && h.units == 0 && h.roles == 0 {
+			break
+		}
+		if len(rows) > 0 && h.texts < h.filled() && v.width <= 2 {
+			break // a key and its value
+		}
+		rows = append(rows, h)
+	}
+	if len(rows) == 0 {
+		rows = v.commentHeader(fits)
+	}
+	slices.Reverse(rows)
+	return rows
+}
+
+// commentHeader looks for names in the remarks above the data.
+func (v *view) commentHeader(fits func(width int) bool) []headerRow {
+	for i := v.first - 1; i >= 0; i-- {
+		text := v.lines[i].text
+		if !isComment(text) {
+			continue
+		}
+		text = strings.TrimLeft(trimCell(text), "#% \t")
+		for _, word := range []string{"columns:", "column names:", "fields:", "header:"} {
+			if len(text) > len(word) && strings.EqualFold(text[:len(word)], word) {
+				text = text[len(word):]
+			}
+		}
+		for _, d := range append([]byte{v.delimiter}, ',', '\t', ';', ' ') {
+			cells := cellTexts(text, d)
+			h := newHeaderRow(v.lines[i], cells)
+			if fits(len(cells)) && h.roles > 0 && h.roles*2 >= h.filled() {
+				return []headerRow{h}
+			}
+		}
+	}
+	return nil
+}
+
+// nameColumns merges the header rows into one description per column.
+func nameColumns(rows []headerRow, width, shift int) []columnInfo {
+	names := make([]columnInfo, width)
+	if len(rows) == 0 {
+		return names
+	}
+	best := -1
+	for i, h := range rows {
+		onlyUnits := h.units == h.filled() && len(rows) > 1
+		if !onlyUnits && (best < 0 || h.roles > rows[best].roles || h.roles == rows[best].roles && rows[best].roles == 0) {
+			best = i
+		}
+	}
+	if best < 0 {
+		best = 0
+	}
+	at := func(h headerRow, k int) string {
+		if k -= shift; k >= 0 && k < len(h.cells) {
+			return h.cells[k]
+		}
+		return ""
+	}
+	for k := range names {
+		names[k] = parseName(at(rows[best], k))
+		names[k].understand()
+	}
+	for i, h := range rows {
+		if i == best {
+			continue
+		}
+		if h.units*2 >= h.filled() {
+			for k := range names {
+				if u, ok := findUnit(at(h, k)); ok && !names[k].stated && trimCell(at(h, k)) != "" {
+					names[k].unit, names[k].stated = u, true
+				} else if text := strings.Trim(trimCell(at(h, k)), "()[]"); !ok && text != "" && !names[k].stated && h.units > 0 && i > best {
+					names[k].unknown = text
+				}
+			}
+		} else if i < best {
+			groupColumns(names, func(k int) string { return at(h, k) })
+		}
+	}
+	return names
+}
+
+// groupColumns takes the names of beads from a row above the names, where the
+// names repeat. A name holds until the next one.
+func groupColumns(names []columnInfo, at func(int) string) {
+	count := map[byte]int{}
+	for _, c := range names {
+		if c.role == axisRole {
+			count[c.axis]++
+		}
+	}
+	if count['x'] < 2 && count['y'] < 2 && count['z'] < 2 {
+		return
+	}
+	group := ""
+	for k := range names {
+		if text := trimCell(at(k)); text != "" {
+			group = text
+		}
+		if names[k].role == axisRole && names[k].bead == "" {
+			names[k].bead = group
+		}
+	}
+}
+
+// setNames finds the header and the columns of the table, and reconciles their
+// numbers: a trailing delimiter, or an index column without a name.
+func (lay *layout) setNames(name string, v *view, opt Options) error {
+	width := v.width
+	lastEmpty := v.alwaysEmpty(width - 1)
+	var rows []headerRow
+	if opt.Header != "none" {
+		rows = v.findHeader(func(n int) bool {
+			return n == width || n == width+1 || n == width-1 && (lastEmpty || v.isIndex(0))
+		})
+	}
+	cells := 0
+	for _, h := range rows {
+		n := len(h.cells)
+		if n > 0 && trimCell(h.cells[n-1]) == "" && n > 1 && (lastEmpty || n == width+1) {
+			n--
+		}
+		cells = max(cells, n)
+	}
+	shift := 0
+	switch {
+	case len(rows) == 0:
+		if err := v.checkCommas(name, v.headerWidth()); err != nil && opt.Delimiter == "" && opt.Decimal == "" {
+			return err
+		}
+		if err := v.checkNames(name, opt); err != nil {
+			return err
+		}
+		if lastEmpty && width > 1 {
+			width, lay.trailing = width-1, true
+		}
+	case cells == width:
+	case cells == width-1 && lastEmpty:
+		width, lay.trailing = width-1, true
+	case cells == width-1:
+		shift = 1
+	case cells > width:
+		return &Error{File: name, Line: rows[0].line.number, Code: CodeLayout,
+			What:   fmt.Sprintf("the header has %d names, the rows have %d cells", cells, width),
+			Remedy: "give every column one name; quote names that hold the delimiter"}
+	}
+	if len(rows) > 0 && opt.Delimiter == "" && opt.Decimal == "" {
+		if err := v.checkCommas(name, cells); err != nil {
+			return err
+		}
+	}
+	lay.names = nameColumns(rows, width, shift)
+	lay.repeats = map[string]bool{}
+	for _, h := range rows {
+		if !isComment(h.line.text) {
+			lay.repeats[strings.TrimSpace(h.line.text)] = true
+		}
+	}
+	lay.readPreamble(v, rows)
+	return nil
+}
+
+// readPreamble reads the keys in the lines above the data that are no header.
+func (lay *layout) readPreamble(v *view, rows []headerRow) {
+	for i := range v.first {
+		line := v.lines[i]
+		if slices.ContainsFunc(rows, func(h headerRow) bool { return h.line.number == line.number }) {
+			continue
+		}
+		lay.preamble.readKey(line.text, v.delimiter, line.number)
+		if i+1 < v.first {
+			names, values := cellTexts(line.text, v.delimiter), cellTexts(v.lines[i+1].text, v.delimiter)
+			for k := range min(len(names), len(values)) {
+				lay.preamble.set(parseName(names[k]), values[k], v.lines[i+1].number)
+			}
+		}
+	}
+}
+
+// headerWidth is the number of cells of the line above the data.
+func (v *view) headerWidth() int {
+	for i := v.first - 1; i >= 0; i-- {
+		if !isBlank(v.lines[i].text) {
+			return len(cellTexts(strings.TrimLeft(v.lines[i].text, "#% "), v.delimiter))
+		}
+	}
+	return 0
+}
+
+// checkNames refuses a header that is plainly one but does not fit the rows.
+func (v *view) checkNames(name string, opt Options) error {
+	if opt.Header == "none" || v.first == 0 || len(opt.Columns) > 0 {
+		return nil
+	}
+	line := v.lines[v.first-1]
+	cells := cellTexts(line.text, v.delimiter)
+	h := newHeaderRow(line, cells)
+	if isComment(line.text) || h.roles < 2 || h.roles*2 < h.filled() || len(cells) == v.width {
+		return nil
+	}
+	return &Error{File: name, Line: line.number, Code: CodeLayout,
+		What:   fmt.Sprintf("the header has %d names, the rows have %d cells", len(cells), v.width),
+		Remedy: "give every column one name, or say which columns to use (--columns with numbers)"}
+}
+
+// alwaysEmpty tells whether column k is empty in every row of the sample.
+func (v *view) alwaysEmpty(k int) bool {
+	for i := v.first; i < len(v.lines); i++ {
+		if len(v.cells[i]) == v.width && v.numbers(i) > 0 && v.cells[i][k].text != "" {
+			return false
+		}
+	}
+	return true
+}
+
+// isIndex tells whether column k counts the rows by ones.
+func (v *view) isIndex(k int) bool {
+	last, seen := 0, 0
+	for i := v.first; i < len(v.lines); i++ {
+		if len(v.cells[i]) != v.width || v.numbers(i) == 0 {
+			continue
+		}
+		n, err := strconv.Atoi(v.cells[i][k].text)
+		if err != nil || seen > 0 && n != last+1 {
+			return false
+		}
+		last = n
+		seen++
+	}
+	return seen > 1
+}

@@ -1,0 +1,233 @@
+package track
+
+import (
+	"context"
+	"errors"
+	"io"
+	"math"
+	"slices"
+	"sync"
+)
+
+// fieldKind is how the cells of a column are read.
+type fieldKind uint8
+
+const (
+	skipField   fieldKind = iota // not read
+	numberField                  // a number
+	clockField                   // date and time, or one of them, in seconds
+	beadField                    // identifier of a bead
+)
+
+// field is one column of the file.
+type field struct {
+	kind  fieldKind
+	out   int    // index of the kept column
+	shift int    // the unit as a power of ten
+	name  string // header, for messages
+}
+
+// parser turns blocks into rows. Each worker has its own.
+type parser struct {
+	lay    *layout
+	name   string
+	beads  *beadIndex
+	out    [][]float64
+	cells  []cell // room for the fields of a row
+	bad    []badLine
+	total  int   // bad lines, with those that are not in bad
+	skip   []int // rows that hold no sample
+	texty  int   // bad lines without a number, for footers
+	recent string
+	recall float64
+}
+
+// badLine is a line of the data that is no sample.
+type badLine struct {
+	err   *Error
+	row   int
+	texty bool // it begins with text: possibly part of a footer
+}
+
+// keptBad is the number of bad lines that are remembered.
+const keptBad = 64
+
+// parsed is the outcome of all parsers.
+type parsed struct {
+	columns [][]float64
+	rows    int   // samples
+	skip    []int // lines of data that hold no sample, ascending
+	lines   int   // lines of data
+	bad     []badLine
+	total   int
+}
+
+// parseRows reads all rows with the given number of workers. The result does
+// not depend on that number.
+func parseRows(ctx context.Context, in *feed, lay *layout, beads *beadIndex, workers int) (*parsed, error) {
+	parsers := make([]*parser, workers)
+	var wait sync.WaitGroup
+	for i := range parsers {
+		p := &parser{lay: lay, name: in.name, beads: beads}
+		parsers[i] = p
+		wait.Go(func() { p.run(in) })
+	}
+	wait.Wait()
+	if in.err != nil && !errors.Is(in.err, io.EOF) {
+		return nil, in.err
+	}
+	all := &parsed{columns: in.store.columns, lines: in.row}
+	for _, p := range parsers {
+		all.skip = append(all.skip, p.skip...)
+		all.bad = append(all.bad, p.bad...)
+		all.total += p.total
+	}
+	slices.Sort(all.skip)
+	slices.SortFunc(all.bad, func(a, b badLine) int { return a.err.Line - b.err.Line })
+	all.bad = all.bad[:min(len(all.bad), keptBad)]
+	all.rows = all.lines - len(all.skip)
+	all.compact()
+	return all, ctx.Err()
+}
+
+// compact closes the rows that hold no sample and cuts the columns to length.
+func (a *parsed) compact() {
+	for i, column := range a.columns {
+		to := 0
+		from := 0
+		for _, gap := range append(a.skip, a.lines) {
+			if to == from {
+				to = gap
+			} else {
+				to += copy(column[to:], column[from:gap])
+			}
+			from = gap + 1
+		}
+		a.columns[i] = column[:a.rows]
+	}
+}
+
+// lineOf returns the index among the lines of data of a sample.
+func (a *parsed) lineOf(row int) int {
+	for _, gap := range a.skip {
+		if gap > row {
+			break
+		}
+		row++
+	}
+	return row
+}
+
+// run parses blocks until the feed ends.
+func (p *parser) run(in *feed) {
+	buf := make([]byte, blockSize+pad+1)
+	for {
+		b, room, err := in.next(buf)
+		buf = room
+		if err != nil {
+			return
+		}
+		p.out = in.store.columns
+		p.block(b)
+		in.store.release()
+	}
+}
+
+// block parses the lines of b into the rows that belong to it.
+func (p *parser) block(b block) {
+	data := b.data[: len(b.data)+pad : len(b.data)+pad]
+	end := len(b.data)
+	row := b.row
+	for at := 0; at < end; row++ {
+		next, ok := p.fastRow(data, at, row)
+		if !ok {
+			next = at
+			for data[next] != '\n' {
+				next++
+			}
+			last := b.cut && next+1 == end
+			p.slowRow(data[at:next], b.line+row-b.row, row, last)
+			next++
+		}
+		at = next
+	}
+}
+
+// fastRow parses a row of plain numbers and reports false for any other. It
+// allocates nothing and knows nothing of quotes, comments and other dialects.
+func (p *parser) fastRow(b []byte, i, row int) (next int, ok bool) {
+	lay := p.lay
+	delimiter, mark, blanks := lay.delimiter, lay.mark, lay.padded
+	last := len(lay.fields) - 1
+	for k := range lay.fields {
+		f := &lay.fields[k]
+		if blanks {
+			i = skipBlanks(b, i, delimiter)
+		}
+		switch f.kind {
+		case numberField:
+			v, after, ok := fastNumber(b, i, mark, f.shift)
+			if !ok {
+				if v, after, ok = fastMissing(b, i, delimiter, last); !ok {
+					return 0, false
+				}
+			}
+			p.out[f.out][row] = v
+			i = after
+		case skipField:
+			for b[i] != delimiter && b[i] != '\n' {
+				if b[i] == '"' || b[i] == '\r' {
+					break
+				}
+				i++
+			}
+		default:
+			return 0, false
+		}
+		if k == last {
+			break
+		}
+		if blanks {
+			if delimiter == ' ' {
+				if b[i] != ' ' && b[i] != '\t' {
+					return 0, false
+				}
+				continue
+			}
+			i = skipBlanks(b, i, delimiter)
+		}
+		if b[i] != delimiter {
+			return 0, false
+		}
+		i++
+	}
+	if blanks {
+		i = skipBlanks(b, i, delimiter)
+	}
+	if lay.trailing && b[i] == delimiter {
+		i++
+	}
+	if b[i] == '\r' {
+		i++
+	}
+	return i + 1, b[i] == '\n'
+}
+
+// skipBlanks steps over spaces, and over tabs where they do not delimit.
+func skipBlanks(b []byte, i int, delimiter byte) int {
+	for b[i] == ' ' || b[i] == '\t' && delimiter != '\t' {
+		i++
+	}
+	return i
+}
+
+// fastMissing reads an empty cell or "nan" in any case.
+func fastMissing(b []byte, i int, delimiter byte, last int) (v float64, next int, ok bool) {
+	if b[i] == delimiter || last > 0 && (b[i] == '\n' || b[i] == '\r') {
+		return math.NaN(), i, delimiter != ' '
+	}
+	if b[i]|0x20 == 'n' && b[i+1]|0x20 == 'a' && b[i+2]|0x20 == 'n' {
+		return math.NaN(), i + 3, true
+	}
+	return 0, i, false
+}

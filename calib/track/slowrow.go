@@ -1,0 +1,288 @@
+package track
+
+import (
+	"bytes"
+	"fmt"
+	"math"
+	"strings"
+	"sync"
+	"unicode/utf8"
+)
+
+// cell is one field of a line.
+type cell struct {
+	text   string
+	at     int  // byte offset in the line
+	quoted bool // stood in quotes, which are not part of text
+}
+
+// splitLine cuts a line into cells and appends them to dst. A delimiter of ' '
+// stands for runs of spaces and tabs. It returns the offset of a quote that is
+// not closed, or -1.
+func splitLine(dst []cell, line string, delimiter byte) (cells []cell, openQuote int) {
+	cells = dst
+	i, n := 0, len(line)
+	for {
+		for i < n && (line[i] == ' ' || line[i] == '\t' && delimiter != '\t') {
+			i++
+		}
+		if delimiter == ' ' && i == n {
+			return cells, -1
+		}
+		c := cell{at: i}
+		if i < n && line[i] == '"' {
+			text, after := unquote(line, i)
+			if after < 0 {
+				return cells, i
+			}
+			c.text, c.quoted, i = text, true, after
+			for i < n && line[i] == ' ' && delimiter != ' ' {
+				i++
+			}
+			if i < n && !isDelimiter(line[i], delimiter) { // text goes on behind the quote: not a quoted cell
+				end := cellEnd(line, i, delimiter)
+				c.text, c.quoted, i = line[c.at:end], false, end
+			}
+		} else {
+			end := cellEnd(line, i, delimiter)
+			c.text, i = strings.TrimRight(line[i:end], " "), end
+		}
+		cells = append(cells, c)
+		if i >= n {
+			return cells, -1
+		}
+		if delimiter != ' ' {
+			i++
+			if i == n { // the line ends in a delimiter: an empty last cell
+				return append(cells, cell{at: i}), -1
+			}
+		}
+	}
+}
+
+func isDelimiter(c, delimiter byte) bool {
+	return c == delimiter || delimiter == ' ' && c == '\t'
+}
+
+// cellEnd returns the offset of the delimiter at or after i, or the length.
+func cellEnd(line string, i int, delimiter byte) int {
+	for i < len(line) && !isDelimiter(line[i], delimiter) {
+		i++
+	}
+	return i
+}
+
+// unquote returns the text of the quoted cell at line[i] and the offset behind
+// its closing quote, or -1 if there is none. A doubled quote is one quote.
+func unquote(line string, i int) (text string, after int) {
+	var b strings.Builder
+	for j := i + 1; j < len(line); j++ {
+		switch {
+		case line[j] != '"':
+			b.WriteByte(line[j])
+		case j+1 < len(line) && line[j+1] == '"':
+			b.WriteByte('"')
+			j++
+		default:
+			return b.String(), j + 1
+		}
+	}
+	return "", -1
+}
+
+// slowRow parses any line: a sample, a comment, a repeated header, or an error.
+// last tells that the line ends the file without a newline.
+func (p *parser) slowRow(line []byte, number, row int, last bool) {
+	line = bytes.TrimSuffix(line, []byte{'\r'})
+	text := p.lay.decode(line)
+	if p.lay.isIgnored(text) {
+		p.skip = append(p.skip, row)
+		return
+	}
+	cells, open := splitLine(p.cells[:0], text, p.lay.delimiter)
+	p.cells = cells
+	if open >= 0 {
+		p.reject(row, false, &Error{Line: number, Column: characters(text, open), Code: CodeRow,
+			What:   "a quote is opened here and not closed on this line",
+			Remedy: "close the quote, or remove it"})
+		return
+	}
+	texty := isText(cells, p.lay.mark)
+	if err := p.checkWidth(cells, text, number, last); err != nil {
+		p.reject(row, texty, err)
+		return
+	}
+	for k := range p.lay.fields {
+		f := &p.lay.fields[k]
+		if f.kind == skipField {
+			continue
+		}
+		v, err := p.value(f, cells[k].text)
+		if err != nil {
+			place := &Error{Line: number, Column: characters(text, cells[k].at), Code: CodeCell,
+				What: fmt.Sprintf("%s %s %s", f.name, quoted(cells[k].text), err.Error()), Remedy: correctCell}
+			if why, ok := err.(*fault); ok {
+				place.Remedy = why.remedy
+			}
+			if texty && !p.lay.knownText {
+				place.What = fmt.Sprintf("text where a row of numbers is expected: %s", quoted(strings.TrimSpace(text)))
+				place.Column, place.Code = 0, CodeRow
+				place.Remedy = "keep one table in the file; a second one, or a header inside the data, must be removed"
+			}
+			p.reject(row, texty, place)
+			return
+		}
+		p.out[f.out][row] = v
+	}
+	if last {
+		if err := p.checkCut(cells, text, number); err != nil {
+			p.reject(row, false, err)
+		}
+	}
+}
+
+// reject records a line that is no sample.
+func (p *parser) reject(row int, texty bool, err *Error) {
+	p.skip = append(p.skip, row)
+	p.total++
+	if len(p.bad) < keptBad {
+		err.File = p.name
+		p.bad = append(p.bad, badLine{err, row, texty})
+	}
+}
+
+// value reads one cell.
+func (p *parser) value(f *field, text string) (float64, error) {
+	switch f.kind {
+	case clockField:
+		return p.lay.clock.seconds(text)
+	case beadField:
+		return p.bead(text)
+	}
+	return generalNumber(text, p.lay.mark, p.lay.thousands, f.shift)
+}
+
+// bead returns the index of an identifier.
+func (p *parser) bead(text string) (float64, error) {
+	text = trimCell(text)
+	if text == p.recent && text != "" {
+		return p.recall, nil
+	}
+	if isMissing(text) && text != "-" {
+		return 0, &fault{"is no name of a bead", "name the bead in every row"}
+	}
+	index, err := p.beads.index(text)
+	if err == nil {
+		p.recent, p.recall = strings.Clone(text), index
+	}
+	return index, err
+}
+
+// checkWidth compares the number of cells with the table.
+func (p *parser) checkWidth(cells []cell, text string, number int, last bool) *Error {
+	want, have := len(p.lay.fields), len(cells)
+	if have == want || have == want+1 && cells[want].text == "" && (p.lay.trailing || p.lay.delimiter != ' ') {
+		return nil
+	}
+	err := &Error{Line: number, Code: CodeRow,
+		What:   fmt.Sprintf("the row has %d cells, the table has %d columns", have, want),
+		Remedy: "repair or remove the row; keep one table in the file"}
+	if have > want {
+		err.Column = characters(text, cells[want].at)
+	} else if last {
+		err.Code, err.Remedy = CodeCut, "the file seems to be cut off: export it again, or remove its last line"
+		err.What = fmt.Sprintf("the last line ends after %d of %d cells", have, want)
+	}
+	if p.lay.delimiter == ',' && have > want && p.lay.allWhole {
+		err.Remedy = "if the comma is the decimal mark, export with another delimiter (semicolon or tab)"
+	}
+	return err
+}
+
+// checkCut refuses a last line without a newline whose last number has fewer
+// decimals than every other row: most likely its end is lost.
+func (p *parser) checkCut(cells []cell, text string, number int) *Error {
+	k := len(p.lay.fields) - 1
+	want := p.lay.lastDecimals
+	if k >= len(cells) || want == 0 || cells[k].text == "" {
+		return nil
+	}
+	if have := decimalsOf(cells[k].text, p.lay.mark); have < want {
+		return &Error{Line: number, Column: characters(text, cells[k].at), Code: CodeCut,
+			What:   fmt.Sprintf("the last number %s has %d decimals, all others have %d, and the line has no end: the file seems to be cut off", quoted(cells[k].text), have, want),
+			Remedy: "export the file again, or remove its last line"}
+	}
+	return nil
+}
+
+// decimalsOf counts the digits behind the decimal mark; -1 for no plain number.
+func decimalsOf(text string, mark byte) int {
+	text = trimCell(text)
+	if isMissing(text) {
+		return -1
+	}
+	if strings.ContainsAny(text, "eEdD") {
+		return -1
+	}
+	at := strings.IndexByte(text, mark)
+	if at < 0 {
+		return 0
+	}
+	return len(text) - at - 1
+}
+
+// characters turns a byte offset into a column number from 1.
+func characters(line string, at int) int {
+	return utf8.RuneCountInString(line[:min(at, len(line))]) + 1
+}
+
+// isText tells whether a line begins with text rather than with a number.
+func isText(cells []cell, mark byte) bool {
+	for _, c := range cells {
+		if c.text == "" {
+			continue
+		}
+		if r := rune(c.text[0]); r >= '0' && r <= '9' || strings.ContainsRune("+-.,", r) {
+			return false
+		}
+		v, err := generalNumber(c.text, mark, 0, 0)
+		return err != nil || math.IsNaN(v) && len(cells) == 1
+	}
+	return true
+}
+
+// beadLimit is the largest number of beads in one file.
+const beadLimit = 10000
+
+// beadIndex numbers the identifiers of beads in the order in which they are met.
+type beadIndex struct {
+	lock  sync.RWMutex
+	known map[string]int
+	names []string
+}
+
+// index returns the number of an identifier, a new one for a new identifier.
+func (b *beadIndex) index(name string) (float64, error) {
+	b.lock.RLock()
+	i, ok := b.known[name]
+	b.lock.RUnlock()
+	if ok {
+		return float64(i), nil
+	}
+	b.lock.Lock()
+	defer b.lock.Unlock()
+	if i, ok = b.known[name]; ok {
+		return float64(i), nil
+	}
+	if len(b.names) >= beadLimit {
+		return 0, &fault{fmt.Sprintf("is the name of one bead more than %d", beadLimit), "is this the column that identifies the bead? say which columns to use (--columns)"}
+	}
+	if b.known == nil {
+		b.known = make(map[string]int)
+	}
+	name = strings.Clone(name)
+	i = len(b.names)
+	b.names = append(b.names, name)
+	b.known[name] = i
+	return float64(i), nil
+}

@@ -1,0 +1,246 @@
+package track
+
+import (
+	"bytes"
+	"strings"
+)
+
+// delimiters are the candidates in the order in which a tie is settled.
+var delimiters = []struct {
+	name string
+	char byte
+}{{"tab", '\t'}, {"semicolon", ';'}, {"pipe", '|'}, {"comma", ','}, {"space", ' '}}
+
+func delimiterName(c byte) string {
+	for _, d := range delimiters {
+		if d.char == c {
+			return d.name
+		}
+	}
+	return string(c)
+}
+
+// textLine is a line of the sample; a header cell in quotes may hold newlines.
+type textLine struct {
+	text   string
+	number int // line number, from 1
+	at     int // offset in the sample
+}
+
+// sampleLines cuts the sample into at most limit lines. A line that opens a
+// quote is joined with those up to the closing one, if that is near.
+func (lay *layout) sampleLines(sample []byte, limit int) []textLine {
+	var lines []textLine
+	number := 1
+	for at := 0; at < len(sample) && len(lines) < limit; {
+		end := lineEnd(sample, at)
+		count := 1
+		if bytes.Count(sample[at:end], []byte{'"'})%2 == 1 {
+			to := end
+			for more := 1; more <= 10 && to < len(sample); more++ {
+				from := to + 1
+				to = lineEnd(sample, from)
+				if bytes.Count(sample[min(from, to):to], []byte{'"'})%2 == 1 {
+					end, count = to, 1+more
+					break
+				}
+			}
+		}
+		text := lay.decode(bytes.TrimSuffix(sample[at:end], []byte{'\r'}))
+		lines = append(lines, textLine{strings.Clone(strings.TrimPrefix(text, "\ufeff")), number, at})
+		number += count
+		at = end + 1
+	}
+	return lines
+}
+
+// lineEnd returns the offset of the newline at or after at, or the length.
+func lineEnd(b []byte, at int) int {
+	if at >= len(b) {
+		return len(b)
+	}
+	if n := bytes.IndexByte(b[at:], '\n'); n >= 0 {
+		return at + n
+	}
+	return len(b)
+}
+
+// cellKind is what a cell of the sample looks like.
+type cellKind uint8
+
+const (
+	textCell cellKind = iota
+	numberCell
+	clockCell
+	missingCell
+)
+
+// kindOf classifies a cell without knowing the decimal mark.
+func kindOf(c cell) cellKind {
+	s := trimCell(c.text)
+	if isMissing(s) {
+		return missingCell
+	}
+	for _, mark := range []byte{'.', ','} {
+		_, err := generalNumber(s, mark, '.'+','-mark, 0)
+		if err == nil || err == twoMarks || err == tooLarge {
+			return numberCell
+		}
+		if s[0] >= '0' && s[0] <= '9' && (err == hexForm || err == scoreForm || err == percentage) {
+			return numberCell
+		}
+	}
+	if _, ok := parseClock(s); ok {
+		return clockCell
+	}
+	return textCell
+}
+
+// view is the sample as one delimiter cuts it.
+type view struct {
+	delimiter byte
+	lines     []textLine
+	cells     [][]cell
+	kinds     [][]cellKind
+	width     int // cells of most numeric lines
+	first     int // index of the first line of the data
+	score     int
+}
+
+// look cuts the lines at a delimiter and finds the rows of numbers: those with
+// the width that gives the most numbers, less the texts between them.
+func look(lines []textLine, delimiter byte) *view {
+	v := &view{delimiter: delimiter, lines: lines, cells: make([][]cell, len(lines)), kinds: make([][]cellKind, len(lines))}
+	scores := map[int]int{}
+	for i, line := range lines {
+		if isBlank(line.text) || isComment(line.text) {
+			continue
+		}
+		cells, _ := splitLine(nil, line.text, delimiter)
+		kinds := make([]cellKind, len(cells))
+		score := 0
+		for k, c := range cells {
+			kinds[k] = kindOf(c)
+			switch kinds[k] {
+			case numberCell, clockCell:
+				score += 2
+			case textCell:
+				score -= 2
+			}
+		}
+		v.cells[i], v.kinds[i] = cells, kinds
+		if v.numbers(i) > 0 {
+			scores[len(cells)] += max(score, 1)
+		}
+	}
+	for width, score := range scores {
+		if score > v.score || score == v.score && width > v.width {
+			v.score, v.width = score, width
+		}
+	}
+	v.first = v.findFirst()
+	return v
+}
+
+// numbers counts the numeric cells of a line.
+func (v *view) numbers(i int) int {
+	n := 0
+	for _, k := range v.kinds[i] {
+		if k == numberCell || k == clockCell {
+			n++
+		}
+	}
+	return n
+}
+
+// isRow tells whether line i has the width of the table and at least as many
+// numbers and gaps as the columns that are numeric in most lines.
+func (v *view) isRow(i int, numeric []bool) bool {
+	if len(v.kinds[i]) != v.width || v.numbers(i) == 0 {
+		return false
+	}
+	for k, kind := range v.kinds[i] {
+		if numeric[k] && kind == textCell {
+			return false
+		}
+	}
+	return true
+}
+
+// numericColumns tells which columns hold numbers or clock times in most rows.
+func (v *view) numericColumns() []bool {
+	numbers, texts := make([]int, v.width), make([]int, v.width)
+	for i := range v.lines {
+		if len(v.kinds[i]) != v.width || v.numbers(i) == 0 {
+			continue
+		}
+		for k, kind := range v.kinds[i] {
+			switch kind {
+			case numberCell, clockCell:
+				numbers[k]++
+			case textCell:
+				texts[k]++
+			}
+		}
+	}
+	numeric := make([]bool, v.width)
+	for k := range numeric {
+		numeric[k] = numbers[k] > texts[k]
+	}
+	return numeric
+}
+
+// findFirst returns the index of the first row, -1 if there is none. With text
+// columns a key and its value may look like a row, so there the longest run
+// counts.
+func (v *view) findFirst() int {
+	if v.width == 0 {
+		return -1
+	}
+	numeric := v.numericColumns()
+	text := false
+	for _, n := range numeric {
+		text = text || !n
+	}
+	best, bestLength, from, length := -1, 0, -1, 0
+	for i := range v.lines {
+		switch {
+		case v.isRow(i, numeric):
+			if !text {
+				return i
+			}
+			if length == 0 {
+				from = i
+			}
+			length++
+			if length > bestLength {
+				best, bestLength = from, length
+			}
+		case v.cells[i] != nil:
+			length = 0
+		}
+	}
+	return best
+}
+
+// sniff finds the delimiter and the first row. wanted restricts the search to
+// one delimiter; 0 tries all.
+func sniff(lay *layout, sample []byte, wanted byte) *view {
+	var best *view
+	for limit := 400; ; limit *= 8 {
+		lines := lay.sampleLines(sample, limit)
+		best = nil
+		for _, d := range delimiters {
+			if wanted != 0 && d.char != wanted {
+				continue
+			}
+			if v := look(lines, d.char); best == nil || v.score > best.score {
+				best = v
+			}
+		}
+		enough := best.first >= 0 && len(lines)-best.first >= 100
+		if enough || len(lines) < limit {
+			return best
+		}
+	}
+}

@@ -1,0 +1,283 @@
+package track
+
+import (
+	"bytes"
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"math"
+	"strings"
+)
+
+// Limits of a table.
+const (
+	columnLimit = 4096 // columns
+	footerLimit = 40   // lines of text behind the data
+)
+
+// readText reads a text: first the layout from a sample, then the rows.
+func readText(ctx context.Context, r io.Reader, opt Options, size int64) (*table, error) {
+	text, encoding, err := transcode(opt.Name, r)
+	if err != nil {
+		return nil, err
+	}
+	head := make([]byte, sampleSize)
+	n, err := io.ReadFull(text, head)
+	whole := errors.Is(err, io.EOF) || errors.Is(err, io.ErrUnexpectedEOF)
+	if err != nil && !whole {
+		return nil, err
+	}
+	head = head[:n]
+	if err := checkBinary(opt.Name, head); err != nil {
+		return nil, err
+	}
+	if hasLoneReturn(head) {
+		text = &newlines{reader: io.MultiReader(bytes.NewReader(head), text)}
+		fixed := make([]byte, len(head))
+		n, err := io.ReadFull(text, fixed)
+		if err != nil && !errors.Is(err, io.EOF) && !errors.Is(err, io.ErrUnexpectedEOF) {
+			return nil, err
+		}
+		head = fixed[:n]
+	}
+	lay := &layout{encoding: encoding, legacy: isLegacy(head, whole)}
+	if lay.legacy {
+		lay.encoding = "Windows-1252"
+	}
+	p, err := lay.find(opt, head, whole)
+	if err != nil {
+		return nil, err
+	}
+	return lay.readRows(ctx, p, io.MultiReader(bytes.NewReader(head[lay.start:]), text), opt, size)
+}
+
+// find settles the layout from the sample.
+func (lay *layout) find(opt Options, head []byte, whole bool) (*plan, error) {
+	name := opt.Name
+	sample := bytes.TrimRight(head, "\x00\x1a")
+	if len(bytes.TrimSpace(sample)) == 0 {
+		return nil, &Error{File: name, Code: CodeEmpty, What: "the file is empty", Remedy: "give a file with a header and one row per sample"}
+	}
+	if !whole {
+		at := bytes.LastIndexByte(sample, '\n')
+		if at < 0 {
+			return nil, &Error{File: name, Line: 1, Code: CodeLimit, What: "the line is longer than 1 MiB",
+				Remedy: "give a file with one row per sample; a table with one row per axis must be transposed"}
+		}
+		sample = sample[:at+1]
+	}
+	wanted, err := wantedDelimiter(opt, sample)
+	if err != nil {
+		return nil, err
+	}
+	v := sniff(lay, sample, wanted)
+	if err := v.useHeaderSetting(opt); err != nil {
+		return nil, err
+	}
+	if v.first < 0 {
+		return nil, v.noRows(name)
+	}
+	if err := v.checkShape(name); err != nil {
+		return nil, err
+	}
+	v = lay.commaColumn(v, sample, opt)
+	lay.delimiter = v.delimiter
+	if err := lay.setNames(name, v, opt); err != nil {
+		return nil, err
+	}
+	if err := lay.findMark(name, v, opt.Decimal); err != nil {
+		return nil, err
+	}
+	lay.start, lay.firstLine = v.lines[v.first].at, v.lines[v.first].number
+	if v.first == 0 && bytes.HasPrefix(head, []byte("\ufeff")) {
+		lay.start += len("\ufeff")
+	}
+	lay.headerLines = lay.firstLine - 1
+	lay.measure(v, len(sample))
+	line := 0
+	if v.first > 0 && len(lay.repeats) > 0 {
+		line = v.lines[v.first-1].number
+	}
+	p, err := makePlan(name, lay.names, line, opt, func(k int) bool { return lay.isTimeLike(v, k) })
+	if err != nil {
+		return nil, err
+	}
+	lay.setFields(p, v)
+	return p, nil
+}
+
+// wantedDelimiter takes the delimiter from the settings or from a sep= line.
+func wantedDelimiter(opt Options, sample []byte) (byte, error) {
+	if opt.Decimal != "" && opt.Decimal != "point" && opt.Decimal != "comma" {
+		return 0, &Error{File: opt.Name, Code: CodeSetting, What: fmt.Sprintf("the decimal mark %s is not known", quoted(opt.Decimal)), Remedy: "use point or comma"}
+	}
+	if opt.Delimiter != "" {
+		for _, d := range delimiters {
+			if d.name == opt.Delimiter {
+				return d.char, nil
+			}
+		}
+		return 0, &Error{File: opt.Name, Code: CodeSetting, What: fmt.Sprintf("the delimiter %s is not known", quoted(opt.Delimiter)), Remedy: "use comma, semicolon, tab, space or pipe"}
+	}
+	first := strings.Trim(string(bytes.TrimPrefix(sample[:min(lineEnd(sample, 0), 12)], []byte("\ufeff"))), "\r\"")
+	if len(first) == 5 && strings.EqualFold(first[:4], "sep=") {
+		for _, d := range delimiters {
+			if d.char == first[4] {
+				return d.char, nil
+			}
+		}
+	}
+	return 0, nil
+}
+
+// noRows is the error of a sample without a single row of numbers.
+func (v *view) noRows(name string) error {
+	for i := len(v.lines) - 1; i >= 0; i-- {
+		if isBlank(v.lines[i].text) {
+			continue
+		}
+		cells := cellTexts(v.lines[i].text, v.delimiter)
+		if h := newHeaderRow(v.lines[i], cells); h.roles > 0 {
+			return &Error{File: name, Line: v.lines[i].number, Code: CodeEmpty, What: "the file has a header but no data", Remedy: "check that the export is complete"}
+		}
+	}
+	return &Error{File: name, Line: 1, Code: CodeFormat, What: "no rows of numbers are found", Remedy: "give a table of text with one row per sample and a column for each axis"}
+}
+
+// checkShape refuses tables that are too wide, lie on their side, or follow
+// another table.
+func (v *view) checkShape(name string) error {
+	line := v.lines[v.first].number
+	rows := 0
+	for i := v.first; i < len(v.lines); i++ {
+		if v.cells[i] != nil {
+			rows++
+		}
+	}
+	if rows <= 12 && v.width >= 64 {
+		return &Error{File: name, Line: line, Code: CodeLayout, What: fmt.Sprintf("the table has %d rows of %d cells: it seems to lie on its side", rows, v.width),
+			Remedy: "transpose it: one row per sample, one column per axis"}
+	}
+	if v.width > columnLimit {
+		return &Error{File: name, Line: line, Code: CodeLimit, What: fmt.Sprintf("the table has %d columns, the limit is %d", v.width, columnLimit), Remedy: "export only the columns that are needed"}
+	}
+	run, from := 0, 0
+	for i := range v.first {
+		numbers := 0
+		for _, k := range v.kinds[i] {
+			if k == numberCell {
+				numbers++
+			}
+		}
+		if numbers < len(v.kinds[i]) || numbers < 2 {
+			run = 0
+			continue
+		}
+		if run++; run == 1 {
+			from = v.lines[i].number
+		}
+		if run >= 3 {
+			return &Error{File: name, Line: line, Code: CodeLayout,
+				What:   fmt.Sprintf("a second table starts here: rows of %d cells, after rows of %d cells from line %d on", v.width, len(v.kinds[i]), from),
+				Remedy: "keep one table in the file"}
+		}
+	}
+	return nil
+}
+
+// commaColumn reads a single column with decimal commas under one name, where a
+// comma would cut every number in two.
+func (lay *layout) commaColumn(v *view, sample []byte, opt Options) *view {
+	if v.delimiter != ',' || v.width != 2 || opt.Delimiter != "" || v.first == 0 || v.headerWidth() != 1 && opt.Decimal != "comma" {
+		return v
+	}
+	one := look(v.lines, ';')
+	if one.width != 1 || one.first != v.first {
+		return v
+	}
+	h := newHeaderRow(v.lines[v.first-1], cellTexts(v.lines[v.first-1].text, ';'))
+	if h.roles != 1 {
+		return v
+	}
+	return one
+}
+
+// readRows parses all rows and judges the lines that are none.
+func (lay *layout) readRows(ctx context.Context, p *plan, text io.Reader, opt Options, size int64) (*table, error) {
+	expected := int(float64(size)/max(lay.lineBytes, 1)*1.02) + 4096
+	beads := &beadIndex{}
+	in := &feed{ctx: ctx, name: opt.Name, reader: text, store: newStore(lay.kept, expected), line: lay.firstLine}
+	rows, err := parseRows(ctx, in, lay, beads, opt.Workers)
+	if err != nil {
+		return nil, err
+	}
+	if err := rows.judge(); err != nil {
+		return nil, err
+	}
+	tab := &table{plan: p, columns: rows.columns, rows: rows.rows, shifted: true, pre: lay.preamble, undated: lay.isUndated(p)}
+	if p.bead != nil {
+		tab.beads = beads.names
+	}
+	tab.written = lay.resolution(p)
+	tab.place = func(row int) *Error {
+		stamp := p.time
+		if stamp == nil {
+			stamp = p.frame
+		}
+		e := &Error{File: opt.Name, Line: lay.firstLine + rows.lineOf(row)}
+		if stamp != nil && stamp.column == 0 {
+			e.Column = 1
+		} else if stamp != nil {
+			e.Column = -1 - stamp.column // found by locate
+		}
+		return e
+	}
+	tab.readAs = lay.readAs(p, rows)
+	if footer := rows.total; footer > 0 {
+		tab.notes = note(tab.notes, "footer", "%d lines of text behind the data are left out, from line %d on", footer, rows.bad[0].err.Line)
+	}
+	return tab, nil
+}
+
+// judge accepts lines of text behind the last row as a footer and refuses the
+// file for any other line that is no sample.
+func (a *parsed) judge() error {
+	if a.total == 0 {
+		return nil
+	}
+	places := make([]*Error, len(a.bad))
+	footer := a.total <= footerLimit && a.total == len(a.bad)
+	last := -1 // line of the last sample
+	for line, i := a.lines-1, len(a.skip)-1; line >= 0; line, i = line-1, i-1 {
+		if i < 0 || a.skip[i] != line {
+			last = line
+			break
+		}
+	}
+	for i, b := range a.bad {
+		places[i] = b.err
+		footer = footer && b.texty && b.row > last
+	}
+	if footer {
+		return nil
+	}
+	return asError(places, a.total)
+}
+
+// resolution is the rounding of the time stamps as the sample shows it.
+func (lay *layout) resolution(p *plan) resolution {
+	if p.time == nil {
+		return resolution{}
+	}
+	out := resolution{shift: p.time.unit.siShift()}
+	if lay.decimals >= 0 {
+		out.step = math.Pow(10, float64(out.shift-lay.decimals))
+	}
+	return out
+}
+
+// isUndated tells whether the time is a time of day without a date.
+func (lay *layout) isUndated(p *plan) bool {
+	return p.time != nil && p.columns[p.time.column].clock && !lay.clock.dated && p.date == nil
+}
