@@ -1,0 +1,195 @@
+package report
+
+import (
+	"fmt"
+	"html/template"
+	"regexp"
+	"strings"
+
+	"beadwell/calib"
+	"beadwell/calib/quantity"
+	"beadwell/cmd/beadwell/internal/figure"
+)
+
+// page is what the template shows, all of it text for a reader.
+type page struct {
+	Policy   string
+	Style    template.CSS
+	Program  string
+	Name     string
+	Lead     string
+	Verdict  shownVerdict
+	Answers  []answer
+	Contents []link
+	Findings []shownFinding
+	Figures  []figureGroup
+	Sections []section
+	JSON     template.JS
+}
+
+type shownVerdict struct{ Status, Class, Mark, Word, Text, Reason string }
+
+// answer is the adopted stiffness of one axis.
+type answer struct {
+	Axis     string
+	Value    string
+	Withheld bool
+	Lines    []string
+}
+
+type link struct{ ID, Title string }
+
+type shownFinding struct{ Severity, Class, Code, Where, Text, Numbers, Remedy, Caution string }
+
+type figureGroup struct {
+	Heading string
+	Figures []shownFigure
+}
+
+type shownFigure struct {
+	Name, Title, Description string
+	SVG                      template.HTML
+}
+
+func pageOf(r *calib.Result) (page, error) {
+	encoded, err := embeddedJSON(r)
+	if err != nil {
+		return page{}, err
+	}
+	style := styleSheet()
+	p := page{
+		Policy: policy(style), Style: template.CSS(style), JSON: encoded,
+		Program: Plain(strings.TrimSpace(r.Program.Name + " " + r.Program.Version)),
+		Name:    Plain(InputName(r.Input)),
+		Lead:    lead(r),
+		Verdict: verdictOf(r.Verdict),
+		Figures: figureGroups(r),
+	}
+	for _, axis := range r.Axes {
+		p.Answers = append(p.Answers, answerOf(axis))
+	}
+	for _, f := range r.Findings {
+		p.Findings = append(p.Findings, findingOf(f))
+	}
+	p.Sections = sections(r)
+	p.Contents = []link{{"findings", fmt.Sprintf("Findings (%d)", len(p.Findings))}, {"figures", "Figures"}}
+	for _, s := range p.Sections {
+		p.Contents = append(p.Contents, link{s.ID, s.Title})
+	}
+	return p, nil
+}
+
+// lead is the recording in one line.
+func lead(r *calib.Result) string {
+	var parts []string
+	if r.Recording.Rate.Known() && r.Recording.Duration.Known() {
+		parts = append(parts, plainNumber(r.Recording.Duration, "s")+" at "+hertz(r.Recording.Rate))
+	}
+	p := newPrinter(r, TextOptions{})
+	if medium := p.medium(); medium != "" {
+		parts = append(parts, medium)
+	}
+	return typeset(strings.Join(parts, ", "))
+}
+
+func verdictOf(v calib.Verdict) shownVerdict {
+	shown := shownVerdict{Status: Plain(v.Status), Class: "other", Mark: "?", Word: Plain(v.Status),
+		Text: typeset(v.Text), Reason: typeset(v.Reason)}
+	switch v.Status {
+	case calib.Consistent:
+		shown.Class, shown.Mark, shown.Word = v.Status, "✓", "Yes: consistent"
+	case calib.Inconsistent:
+		shown.Class, shown.Mark, shown.Word = v.Status, "≠", "No: inconsistent"
+	case calib.Unfit:
+		shown.Class, shown.Mark, shown.Word = v.Status, "×", "No: unfit"
+	}
+	return shown
+}
+
+func answerOf(a calib.Axis) answer {
+	q := a.Adopted.Stiffness
+	shown := answer{Axis: Plain(a.Name)}
+	if !q.Known() {
+		shown.Withheld, shown.Value = true, "withheld"
+		if reason := withheldReason(a.Adopted); reason != "" {
+			shown.Lines = append(shown.Lines, typeset(reason))
+		}
+		return shown
+	}
+	shown.Value = typeset(withUnit(combined(q, stiffnessUnit), stiffnessUnit))
+	shown.Lines = append(shown.Lines, typeset("95 % interval "+withUnit(interval95(q), stiffnessUnit)))
+	if q.Statistical != nil {
+		shown.Lines = append(shown.Lines, typeset("statistical part alone "+withUnit(standard(q.Statistical), stiffnessUnit)))
+	}
+	if a.Adopted.Basis != "" {
+		shown.Lines = append(shown.Lines, typeset("rests on "+a.Adopted.Basis))
+	}
+	return shown
+}
+
+// laserCaution goes with every remedy that has a hand near the beam.
+const laserCaution = "A trapping laser injures eyes and skin, often unseen. Set the power, open the beam path or touch the optics " +
+	"only as the laser rules of your laboratory allow, with the eye protection they ask for, and with the shutter closed until you are done."
+
+var nearTheBeam = regexp.MustCompile(`(?i)\b(lasers?|beams?|trapping light|(trap|light|optical) power|power (of|at|in) the (trap|sample|laser)|objective|shutter)\b`)
+
+func findingOf(f calib.Finding) shownFinding {
+	shown := shownFinding{Severity: Plain(f.Severity), Class: "note", Code: Plain(f.Code), Text: typeset(f.Text), Remedy: typeset(f.Remedy)}
+	if f.Severity == calib.Bad || f.Severity == calib.Doubtful {
+		shown.Class = f.Severity
+	}
+	if f.Axis != "" {
+		shown.Where = "axis " + Plain(f.Axis)
+	}
+	var numbers []string
+	if f.Value.Known() {
+		numbers = append(numbers, "found "+inOwnUnit(f.Value, f.Unit))
+	}
+	if f.Limit.Known() {
+		numbers = append(numbers, "threshold "+inOwnUnit(f.Limit, f.Unit))
+	}
+	if f.Range != nil && f.Range[0].Known() && f.Range[1].Known() {
+		numbers = append(numbers, fmt.Sprintf("from %s to %s", plainNumber(f.Range[0], "s"), plainNumber(f.Range[1], "s")))
+	}
+	shown.Numbers = typeset(strings.Join(numbers, "; "))
+	if nearTheBeam.MatchString(f.Remedy) {
+		shown.Caution = laserCaution
+	}
+	return shown
+}
+
+// readable gives SI units the one that a reader expects.
+var readable = map[string]string{"m": "nm", "N/m": stiffnessUnit, "N s/m": dragUnit, "Pa s": "mPa s", "K": "K", "m2": "nm2", "m2/s": "um2/s"}
+
+// inOwnUnit prints a number in the reader's unit, or as it stands when the unit
+// is not known to the program.
+func inOwnUnit(v calib.Float, unit string) string {
+	if u, ok := readable[unit]; ok {
+		return plainNumber(v, u)
+	}
+	if _, err := quantity.Convert(float64(v), unit); err != nil {
+		return strings.TrimSpace(fmt.Sprintf("%.4g %s", float64(v), unit))
+	}
+	return plainNumber(v, unit)
+}
+
+// figureGroups puts the estimates first, and then the figures of each axis
+// under its name.
+func figureGroups(r *calib.Result) []figureGroup {
+	var groups []figureGroup
+	last := ""
+	for _, f := range figure.All(r) {
+		heading := ""
+		if f.Axis != "" {
+			heading = "Axis " + f.Axis
+		}
+		// The estimates begin an axis; two axes of one name stay one group.
+		if len(groups) == 0 || heading != last {
+			groups = append(groups, figureGroup{Heading: heading})
+			last = heading
+		}
+		group := &groups[len(groups)-1]
+		group.Figures = append(group.Figures, shownFigure{f.Name, f.Title, f.Description, template.HTML(figure.Inline(f))})
+	}
+	return groups
+}
