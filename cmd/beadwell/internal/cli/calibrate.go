@@ -1,0 +1,231 @@
+package cli
+
+import (
+	"context"
+
+	"github.com/spf13/cobra"
+
+	"beadwell/calib"
+	"beadwell/cmd/beadwell/internal/report"
+)
+
+// calibrateOptions is what the command line of calibrate says.
+type calibrateOptions struct {
+	tracks  []string
+	session string
+	format  string
+	out     string
+	force   bool
+	adopt   string
+	quiet   bool
+	flags   settingFlags
+}
+
+const calibrateLong = `calibrate reads recordings of a trapped bead, estimates the stiffness of the
+trap on every axis in several ways, compares them, and prints the stiffness to
+use, or why there is none.
+
+Settings come from session.toml and tracks.csv beside each track, and from
+flags, which go before both. The bead's diameter has no default. TRACK is a text
+file or a NumPy array, compressed by gzip or zstd or not; - is standard input.
+
+The table on standard output, for each axis:
+  stiffness            adopted value in pN/um; in brackets the combined standard
+                       uncertainty of its last digits: 52.3(11) is 52.3 with 1.1.
+                       A lopsided one is shown as its 68 % interval: 52.3 [51.4, 53.9]
+  95 % interval        of the adopted value, pN/um, with the inputs' uncertainties
+  statistical          standard uncertainty when the inputs are exact, pN/um
+  corner frequency     stiffness through drag: 2 pi x drag x corner frequency, pN/um
+  relaxation time      stiffness through drag: drag / relaxation time, pN/um
+  variance             stiffness through amplitude: kT / variance, pN/um
+  MSD plateau          stiffness through amplitude: 2 kT / plateau, pN/um
+  spectrum             stiffness through amplitude: kT / variance of the fitted spectrum, pN/um
+  computed, measured   drag coefficient: Stokes x wall factor, and kT / D, nN s/m
+  ratio                measured over computed drag
+  p                    chance of a larger disagreement: between the two routes, between
+                       the estimates through amplitude, between all`
+
+func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions) error) *cobra.Command {
+	var o calibrateOptions
+	cmd := &cobra.Command{
+		Use:   "calibrate TRACK...",
+		Short: "Stiffness of each axis, cross-checked",
+		Long:  calibrateLong,
+		Example: `  beadwell calibrate run7.csv
+  beadwell calibrate --diameter '1.02(3) um' --temperature '24.5(5) C' run7.csv
+  beadwell calibrate --format json run7.csv > run7.json
+  beadwell calibrate --out results run7.csv run8.csv`,
+		Args: someArguments("a track"),
+		RunE: func(cmd *cobra.Command, args []string) error {
+			o.tracks = args
+			if err := o.validate(); err != nil {
+				return err
+			}
+			return run(cmd.Context(), a, o)
+		},
+	}
+	flags := cmd.Flags()
+	flags.StringVar(&o.session, "session", "", "settings `FILE` in place of session.toml beside the track")
+	flags.StringVar(&o.format, "format", "text", "form of the result on standard output: `text|json|csv`")
+	flags.StringVar(&o.out, "out", "", "also write text, JSON, CSV, report and figures of each recording into `FOLDER`")
+	flags.BoolVar(&o.force, "force", false, "with --out: replace files of another recording")
+	flags.StringVar(&o.adopt, "adopt", "", "adopt this route alone, also when the two disagree: `drag|amplitude`")
+	flags.BoolVarP(&o.quiet, "quiet", "q", false, "no warnings on standard error")
+	addSettingFlags(flags, &o.flags)
+	return cmd
+}
+
+func (o calibrateOptions) validate() error {
+	if err := oneOf("format", o.format, "text", "json", "csv"); err != nil {
+		return err
+	}
+	if o.adopt != "" {
+		if err := oneOf("adopt", o.adopt, calib.RouteDrag, calib.RouteAmplitude); err != nil {
+			return err
+		}
+	}
+	if o.force && o.out == "" {
+		return usageError("leave it out, or add --out FOLDER", "--force has no effect without --out")
+	}
+	return checkTracks(o.tracks)
+}
+
+// checkTracks refuses a track that is given twice, and standard input beside others.
+func checkTracks(tracks []string) error {
+	seen := map[string]bool{}
+	for _, path := range tracks {
+		if seen[path] {
+			return usageError("give each track once", "%s is given twice", path)
+		}
+		seen[path] = true
+	}
+	return nil
+}
+
+// outcome is what became of one recording: a result, or an error.
+type outcome struct {
+	path     string
+	result   *calib.Result
+	warnings []string
+	err      error
+}
+
+func runCalibrate(ctx context.Context, a *app, o calibrateOptions) error {
+	created, err := a.created()
+	if err != nil {
+		return err
+	}
+	writer, err := newResultWriter(o.out, o.force, o.tracks)
+	if err != nil {
+		return err
+	}
+	defer writer.close()
+	src := &source{app: a, file: o.session, flags: &o.flags}
+	var outcomes []outcome
+	for _, path := range o.tracks {
+		outcomes = append(outcomes, a.calibrateTrack(ctx, src, path, o.adopt, created)...)
+		if err := ctx.Err(); err != nil {
+			return err
+		}
+	}
+	for i := range outcomes {
+		if one := &outcomes[i]; one.result != nil {
+			if err := writer.write(ctx, one.path, one.result); err != nil {
+				return err
+			}
+		}
+	}
+	if err := a.printOutcomes(outcomes, o); err != nil {
+		return err
+	}
+	return conclude(outcomes)
+}
+
+// calibrateTrack reads and calibrates the recordings of one file.
+func (a *app) calibrateTrack(ctx context.Context, src *source, path, adopt, created string) []outcome {
+	recordings, err := src.load(ctx, path)
+	if err != nil {
+		return []outcome{{path: path, err: err}}
+	}
+	outcomes := make([]outcome, len(recordings))
+	for i, one := range recordings {
+		outcomes[i] = outcome{path: path, warnings: one.warnings}
+		result, err := a.Calibrate(ctx, one.recording, one.settings, adopt)
+		if err != nil {
+			outcomes[i].err = err
+			continue
+		}
+		result.Program = calib.Program{Name: "beadwell", Version: a.Version, Command: append([]string{"beadwell"}, a.args...)}
+		result.Created = created
+		outcomes[i].result = result
+	}
+	return outcomes
+}
+
+// printOutcomes writes all results to standard output, and warnings to standard error.
+func (a *app) printOutcomes(outcomes []outcome, o calibrateOptions) error {
+	set := report.Set{}
+	for _, one := range outcomes {
+		if one.err != nil {
+			p := problemOf(one.err)
+			p.Input = one.path
+			set.Failures = append(set.Failures, p)
+			continue
+		}
+		set.Results = append(set.Results, one.result)
+		if !o.quiet {
+			a.warn(one, o.format)
+		}
+	}
+	single := len(outcomes) == 1
+	switch {
+	case single && len(set.Failures) == 1:
+		return nil // conclude returns its error
+	case o.format == "csv":
+		return report.CSV(a.Out, set)
+	case o.format == "json" && single:
+		return report.JSON(a.Out, set.Results[0])
+	case o.format == "json":
+		return report.SetJSON(a.Out, set)
+	case single:
+		return report.Text(a.Out, set.Results[0], report.TextOptions{Colour: a.Colour})
+	}
+	return report.SetText(a.Out, set, report.TextOptions{Colour: a.Colour})
+}
+
+// warn tells on standard error what the format of standard output has no room for.
+func (a *app) warn(one outcome, format string) {
+	for _, warning := range one.warnings {
+		a.say("beadwell: warning: %s", warning)
+	}
+	if format != "csv" {
+		return
+	}
+	for _, f := range one.result.Findings {
+		a.say("beadwell: %s: %s, %s: %s", report.InputName(one.result.Input), f.Severity, f.Code, f.Text)
+	}
+}
+
+// conclude turns the outcomes into the error of the whole run.
+func conclude(outcomes []outcome) error {
+	if len(outcomes) == 1 && outcomes[0].err != nil {
+		return outcomes[0].err
+	}
+	var failed []error
+	distrust := false
+	for _, one := range outcomes {
+		switch {
+		case one.err != nil:
+			failed = append(failed, one.err)
+		case one.result.Verdict.Status != calib.Consistent:
+			distrust = true
+		}
+	}
+	switch {
+	case len(failed) > 0:
+		return partial(failed, len(outcomes))
+	case distrust:
+		return quiet{StatusDistrust}
+	}
+	return nil
+}

@@ -1,0 +1,110 @@
+package cli
+
+import (
+	"context"
+	"fmt"
+	"strings"
+
+	"github.com/spf13/cobra"
+
+	"beadwell/calib/quantity"
+	"beadwell/calib/track"
+	"beadwell/cmd/beadwell/internal/report"
+)
+
+// checkOptions is what the command line of check says.
+type checkOptions struct {
+	tracks  []string
+	session string
+	flags   settingFlags
+}
+
+func (a *app) checkCommand(run func(context.Context, *app, checkOptions) error) *cobra.Command {
+	var o checkOptions
+	cmd := &cobra.Command{
+		Use:   "check TRACK...",
+		Short: "How a file is read, and whether the recording is fit to use",
+		Long: `check reads recordings and tells how: delimiter, decimal mark, columns, units,
+sampling rate, rows, what is missing, and which settings would be used. It fits
+nothing. A unit or a rate that nobody stated is a remark here, not an error.`,
+		Example: "  beadwell check run7.csv\n  beadwell check --unit nm run7.csv",
+		Args:    someArguments("a track"),
+		RunE: func(cmd *cobra.Command, args []string) error {
+			o.tracks = args
+			if err := checkTracks(args); err != nil {
+				return err
+			}
+			return run(cmd.Context(), a, o)
+		},
+	}
+	cmd.Flags().StringVar(&o.session, "session", "", "settings `FILE` in place of session.toml beside the track")
+	addSettingFlags(cmd.Flags(), &o.flags)
+	return cmd
+}
+
+func runCheck(ctx context.Context, a *app, o checkOptions) error {
+	src := &source{app: a, file: o.session, flags: &o.flags, inspect: true}
+	var failed []error
+	for i, path := range o.tracks {
+		recordings, err := src.load(ctx, path)
+		switch {
+		case ctx.Err() != nil:
+			return ctx.Err()
+		case err != nil && len(o.tracks) == 1:
+			return err
+		case err != nil:
+			failed = append(failed, err)
+			continue
+		}
+		for j, one := range recordings {
+			if i+j > 0 {
+				fmt.Fprintln(a.Out)
+			}
+			a.printCheck(one)
+		}
+	}
+	if len(failed) > 0 {
+		return partial(failed, len(o.tracks))
+	}
+	return nil
+}
+
+func (a *app) printCheck(one loaded) {
+	r := one.recording
+	fmt.Fprintf(a.Out, "%s\n", report.Plain(r.Name))
+	fmt.Fprintf(a.Out, "  read as: %s\n", report.Plain(r.ReadAs.String()))
+	fmt.Fprintf(a.Out, "  samples: %s\n", samples(r))
+	for _, axis := range r.Axes {
+		fmt.Fprintf(a.Out, "  axis %s: %s\n", report.Plain(axis.Name), report.Plain(axisFacts(axis)))
+	}
+	for _, note := range r.Notes {
+		fmt.Fprintf(a.Out, "  note: %s\n", report.Plain(note.Text))
+	}
+	for _, warning := range one.warnings {
+		fmt.Fprintf(a.Out, "  warning: %s\n", strings.ReplaceAll(report.PlainLines(warning), "\n", "\n  "))
+	}
+	fmt.Fprintln(a.Out, "  settings:")
+	for _, s := range one.settings.All() {
+		fmt.Fprintf(a.Out, "    %s\n", report.Plain(settingLine(s)))
+	}
+}
+
+// jitterShown is the jitter over the sampling interval from which on it is told:
+// below it is the rounding of the stamps.
+const jitterShown = 1e-4
+
+func samples(r *track.Recording) string {
+	text := fmt.Sprintf("%d", r.Samples)
+	if r.Missing > 0 {
+		text += fmt.Sprintf(", %d of them missing", r.Missing)
+	}
+	if r.Rate > 0 {
+		text += fmt.Sprintf(", %s, %s from the %s", quantity.Format(float64(r.Samples)/r.Rate, 0, "s"), quantity.Format(r.Rate, 0, "Hz"), r.RateOrigin)
+	} else {
+		text += ", at a rate that nobody stated"
+	}
+	if r.JitterRMS*r.Rate > jitterShown {
+		text += ", stamps off the grid by " + quantity.Format(r.JitterRMS, 0, "us") + " (rms)"
+	}
+	return text
+}

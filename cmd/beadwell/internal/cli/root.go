@@ -1,0 +1,142 @@
+package cli
+
+import (
+	"errors"
+	"fmt"
+	"strings"
+
+	"github.com/spf13/cobra"
+	"github.com/spf13/pflag"
+)
+
+const rootLong = `beadwell calibrates the stiffness of an optical trap from a recording of the
+position of a trapped bead, on every axis, with an uncertainty, and checks the
+estimates against each other and the recording for faults.
+
+Results go to standard output, all else to standard error.
+
+Exit status, the same for every command:
+  0    done, and consistent
+  1    something failed inside, or could not be written
+  2    the command line or the settings are wrong
+  3    calibrated, but the cross-check or a health check says not to trust it
+  4    the input data are bad
+  5    several recordings, and some failed
+  130  stopped by Ctrl-C or SIGTERM`
+
+// root builds the command tree.
+func (a *app) root() *cobra.Command {
+	root := &cobra.Command{
+		Use:           "beadwell",
+		Short:         "Stiffness of an optical trap, cross-checked",
+		Long:          rootLong,
+		Version:       a.Version,
+		SilenceUsage:  true,
+		SilenceErrors: true,
+		Args:          cobra.ArbitraryArgs,
+		RunE: func(cmd *cobra.Command, args []string) error {
+			if len(args) > 0 {
+				return unknownCommand(cmd, args[0])
+			}
+			return usageError("see beadwell --help; to start: beadwell calibrate TRACK", "no command was given")
+		},
+	}
+	root.SetIn(a.In)
+	root.SetOut(a.Out)
+	root.SetErr(a.Err)
+	root.SetVersionTemplate("beadwell {{.Version}}\n")
+	root.SetFlagErrorFunc(flagError)
+	root.SetUsageFunc(usage)
+	root.CompletionOptions.HiddenDefaultCmd = false
+	if a.Calibrate != nil {
+		root.AddCommand(a.calibrateCommand(runCalibrate))
+	}
+	root.AddCommand(
+		a.checkCommand(runCheck),
+		a.initCommand(runInit),
+		a.reportCommand(runReport),
+		a.dragCommand(runDrag),
+		a.schemaCommand(),
+		a.manCommand(),
+	)
+	return root
+}
+
+// unknownCommand suggests the commands that the word is near to.
+func unknownCommand(root *cobra.Command, name string) error {
+	var names []string
+	for _, c := range root.Commands() {
+		if c.IsAvailableCommand() {
+			names = append(names, c.Name())
+		}
+	}
+	remedy := "the commands are listed by beadwell --help"
+	if near := nearest(name, names); near != "" {
+		remedy = "did you mean beadwell " + near + "?"
+	}
+	return usageError(remedy, "%q is not a command", name)
+}
+
+// flagError turns an error of the flag parser into one with a next step.
+func flagError(cmd *cobra.Command, err error) error {
+	if errors.Is(err, pflag.ErrHelp) {
+		return err
+	}
+	remedy := fmt.Sprintf("see %s --help", cmd.CommandPath())
+	var missing *pflag.NotExistError
+	if errors.As(err, &missing) {
+		name := missing.GetSpecifiedName()
+		if missing.GetSpecifiedShortnames() != "" {
+			return usageError(remedy, "-%s is not a flag of %s", missing.GetSpecifiedShortnames(), cmd.CommandPath())
+		}
+		if near := nearest(name, flagNames(cmd)); near != "" {
+			remedy = "did you mean --" + near + "?"
+		}
+		return usageError(remedy, "--%s is not a flag of %s", name, cmd.CommandPath())
+	}
+	return usageError(remedy, "%w", err)
+}
+
+func flagNames(cmd *cobra.Command) []string {
+	var names []string
+	cmd.Flags().VisitAll(func(f *pflag.Flag) { names = append(names, f.Name) })
+	return names
+}
+
+// noArguments refuses positional arguments.
+func noArguments(cmd *cobra.Command, args []string) error {
+	if len(args) == 0 {
+		return nil
+	}
+	return usageError("see "+cmd.CommandPath()+" --help", "%s takes no argument, but was given %q", cmd.CommandPath(), args[0])
+}
+
+// someArguments refuses an empty list; what names the arguments.
+func someArguments(what string) cobra.PositionalArgs {
+	return func(cmd *cobra.Command, args []string) error {
+		if len(args) == 0 {
+			return usageError("write: "+cmd.UseLine(), "%s needs %s", cmd.CommandPath(), what)
+		}
+		return nil
+	}
+}
+
+// oneArgument refuses any number but one.
+func oneArgument(what string) cobra.PositionalArgs {
+	return func(cmd *cobra.Command, args []string) error {
+		if len(args) != 1 {
+			return usageError("write: "+cmd.UseLine(), "%s needs %s, but was given %d arguments", cmd.CommandPath(), what, len(args))
+		}
+		return nil
+	}
+}
+
+// oneOf checks the value of a flag that takes a word.
+func oneOf(flag, value string, words ...string) error {
+	for _, word := range words {
+		if value == word {
+			return nil
+		}
+	}
+	return usageError("write --"+flag+" "+strings.Join(words, " or --"+flag+" "), "--%s %q is not known", flag, value)
+}
