@@ -11,7 +11,7 @@ type EventKind string
 const (
 	// Jump moves the recorded position by Offset at once and leaves the motion about it as it was.
 	Jump EventKind = "jump"
-	// SecondBead changes the rest position by Offset, and stiffness and drag by their factors; the bead relaxes to the new place.
+	// SecondBead, of a bead that is still trapped, changes the rest position by Offset, and stiffness and drag by their factors; the bead relaxes to the new place.
 	SecondBead EventKind = "second bead"
 	// Escape lets the bead diffuse freely from where it is.
 	Escape EventKind = "escape"
@@ -117,7 +117,6 @@ func (e Event) apply(a Axis) Axis {
 		}
 		a.Variance /= stiffness
 		a.Corner *= stiffness / drag
-		a.Diffusion /= drag
 	}
 	return a
 }

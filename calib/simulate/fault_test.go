@@ -19,10 +19,10 @@ func TestRailAndRounding(t *testing.T) {
 			if want != v {
 				clipped++
 			}
-			if got := dirty[axis][i]; math.Abs(got-want) > 4.0001e-9 { // half a step, and rounding
+			if got := dirty[axis][i]; !(math.Abs(got-want) <= 4.0001e-9) { // half a step, and rounding
 				t.Fatalf("axis %d, sample %d: %v, want %v within half a step", axis, i, got, want)
 			}
-			if steps := dirty[axis][i] / 8e-9; math.Abs(steps-math.Round(steps)) > 1e-9 {
+			if steps := dirty[axis][i] / 8e-9; !(math.Abs(steps-math.Round(steps)) <= 1e-9) {
 				t.Fatalf("axis %d, sample %d: %v is no multiple of the step", axis, i, dirty[axis][i])
 			}
 		}
@@ -45,7 +45,7 @@ func TestJitter(t *testing.T) {
 		}
 	}
 	n := float64(len(r.Time))
-	if got := sum / n; math.Abs(got/1e-8-1) > limit*math.Sqrt(2/n) {
+	if got := sum / n; !(math.Abs(got/1e-8-1) <= limit*math.Sqrt(2/n)) {
 		t.Errorf("variance of the stamps %v s², want 1e-8", got)
 	}
 }
@@ -75,7 +75,7 @@ func TestLosses(t *testing.T) {
 	} {
 		r := Make(spoiled(row.f), 6)
 		n := float64(len(clean.Time))
-		if got := float64(row.count(r)); math.Abs(got-0.02*n) > limit*math.Sqrt(n*0.02*0.98) {
+		if got := float64(row.count(r)); !(math.Abs(got-0.02*n) <= limit*math.Sqrt(n*0.02*0.98)) {
 			t.Errorf("%s: %v samples, want %v", row.name, got, 0.02*n)
 		}
 		for i, time := range r.Time {
@@ -83,6 +83,17 @@ func TestLosses(t *testing.T) {
 			if v := r.Positions[1][i]; !math.IsNaN(v) && v != clean.Positions[1][at] {
 				t.Fatalf("%s: at %v s: %v, want %v", row.name, time, v, clean.Positions[1][at])
 			}
+		}
+	}
+}
+
+// The first sample always stays, so that a record has a beginning.
+func TestFirstSampleStays(t *testing.T) {
+	truth := spoiled(Faults{Blank: 0.9, Dropped: 0.9})
+	truth.Samples = 3
+	for seed := range uint64(20) {
+		if r := Make(truth, seed); len(r.Time) == 0 || r.Time[0] != 0 || math.IsNaN(r.Positions[0][0]) {
+			t.Fatalf("seed %d: %+v", seed, r)
 		}
 	}
 }

@@ -31,7 +31,7 @@ func TestDeviatesMoments(t *testing.T) {
 		{"mean", first, 0, 1, n}, {"variance", second, 1, 2, n}, {"third moment", third, 0, 15, n},
 		{"fourth moment", fourth, 3, 96, n}, {"within pairs", within, 0, 1, n / 2}, {"between pairs", between, 0, 1, n / 2},
 	} {
-		if z := (row.sum/row.count - row.want) / math.Sqrt(row.sd2/row.count); math.Abs(z) > limit {
+		if z := (row.sum/row.count - row.want) / math.Sqrt(row.sd2/row.count); !(math.Abs(z) <= limit) {
 			t.Errorf("%s: %v, want %v (%.1f standard deviations off)", row.name, row.sum/row.count, row.want, z)
 		}
 	}
@@ -46,7 +46,7 @@ func TestDeviatesTails(t *testing.T) {
 		z, y := random.pair()
 		for k := range counts {
 			for _, v := range []float64{z, y} {
-				if math.Abs(v) > float64(k) {
+				if !(math.Abs(v) <= float64(k)) {
 					counts[k]++
 				}
 			}
@@ -55,7 +55,7 @@ func TestDeviatesTails(t *testing.T) {
 	for k := 1; k < len(counts); k++ {
 		p := math.Erfc(float64(k) / math.Sqrt2)
 		sd := math.Sqrt(n * p * (1 - p))
-		if math.Abs(float64(counts[k])-n*p) > limit*sd {
+		if !(math.Abs(float64(counts[k])-n*p) <= limit*sd) {
 			t.Errorf("beyond %d: %d of %d, want %.0f within %.0f", k, counts[k], n, n*p, limit*sd)
 		}
 	}
@@ -71,7 +71,7 @@ func TestMixAvalanche(t *testing.T) {
 			total++
 		}
 	}
-	if math.Abs(float64(total)-64*32) > limit*4*8 {
+	if !(math.Abs(float64(total)-64*32) <= limit*4*8) {
 		t.Errorf("flipped bits %d of %d, want half", total, 64*64)
 	}
 }

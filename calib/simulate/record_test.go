@@ -54,7 +54,7 @@ func TestRecordAutocovariance(t *testing.T) {
 				spread += term * float64(pairs-max(d, -d))
 			}
 			sd := math.Sqrt(spread/float64(records)) / float64(pairs)
-			if want := covariance(lag); math.Abs(got-want) > limit*sd {
+			if want := covariance(lag); !(math.Abs(got-want) <= limit*sd) {
 				t.Errorf("regime %d, lag %d: covariance %v, want %v within %v", r, lag, got, want, limit*sd)
 			}
 		}
@@ -87,7 +87,7 @@ func TestRecordSpectrum(t *testing.T) {
 			if k == 0 {
 				relative *= math.Sqrt2 // one degree of freedom instead of two
 			}
-			if math.Abs(got/mean-1) > limit*relative {
+			if !(math.Abs(got/mean-1) <= limit*relative) {
 				t.Errorf("regime %d, bin %d: spectrum %v, want %v within %.3f of it", r, k, got, mean, limit*relative)
 			}
 		}
@@ -139,7 +139,7 @@ func TestRecordFreeBead(t *testing.T) {
 		}
 		got := sum / float64(count)
 		want := 2*axis.Diffusion*(float64(lag)/truth.Rate-truth.Exposure/3) + 2*axis.Noise*axis.Noise
-		if sd := 1.1 * math.Sqrt(2/float64(count)); math.Abs(got/want-1) > limit*sd {
+		if sd := 1.1 * math.Sqrt(2/float64(count)); !(math.Abs(got/want-1) <= limit*sd) {
 			t.Errorf("lag %d: mean-square displacement %v, want %v within %.4f of it", lag, got, want, limit*sd)
 		}
 	}
@@ -161,7 +161,11 @@ func TestPhysicalWorkedCase(t *testing.T) {
 	if got := math.Sqrt(axis.Variance); !near(got, 12.142480e-9, 1e-7) { // printed with 8 digits
 		t.Errorf("thermal rms %v m, want 12.142480e-9", got)
 	}
-	p.Stiffness = 0
+	p.WallFactor = 0                                    // far from walls
+	if got := p.Drag(); !near(got, 8.388022e-9, 1e-7) { // printed with 7 digits
+		t.Errorf("Drag() in bulk = %v, want 8.388022e-9", got)
+	}
+	p.WallFactor, p.Stiffness = 1.05948276, 0
 	if got := p.Axis().Diffusion; !near(got, 4.63195834e-13, 1e-8) {
 		t.Errorf("diffusion coefficient %v m²/s, want 4.63195834e-13", got)
 	}
@@ -178,7 +182,7 @@ func TestRecordDecoration(t *testing.T) {
 		time := float64(i) / 1000
 		want := x[i] + 3e-6 + 2e-7*(time-0.5) + 5e-9*math.Sin(2*math.Pi*50*time+0.3)
 		// 1e-20 m: a few units of rounding of 3e-6 m.
-		if math.Abs(y[i]-want) > 1e-20 {
+		if !(math.Abs(y[i]-want) <= 1e-20) {
 			t.Fatalf("sample %d: %v, want %v", i, y[i], want)
 		}
 	}
@@ -220,7 +224,7 @@ func TestRecordStreams(t *testing.T) {
 		for i := range y {
 			sum += first[0][i] * y[i]
 		}
-		if r := sum / float64(len(y)); math.Abs(r) > limit*sd {
+		if r := sum / float64(len(y)); !(math.Abs(r) <= limit*sd) {
 			t.Errorf("%s: correlation %v, want 0 within %v", name, r, limit*sd)
 		}
 	}
@@ -232,7 +236,7 @@ func TestRecordGolden(t *testing.T) {
 	truth := Truth{Samples: 4, Rate: 1000, Exposure: 1e-3, Axes: []Axis{{Corner: 100, Variance: 1, Noise: 0.1}}}
 	want := []float64{0.1046121, -0.4746715, 0.1530049, 0.8200588}
 	for i, x := range Record(truth, 1)[0] {
-		if math.Abs(x-want[i]) > 1e-6*math.Max(1, math.Abs(want[i])) {
+		if !(math.Abs(x-want[i]) <= 1e-6*math.Max(1, math.Abs(want[i]))) {
 			t.Errorf("sample %d = %.7g, want %.7g", i, x, want[i])
 		}
 	}

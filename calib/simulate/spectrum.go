@@ -26,18 +26,22 @@ type Spectrum struct {
 // Memory, and at least twice n, so the two ends of the cut do not know each other. It needs about
 // 100 ns a sample. The deviates come from source, by the polar method.
 func SpectralSynthesis(n int, s Spectrum, source *rand.PCG) []float64 {
-	length := transform.GoodLengthAbove(max(2*n, n+int(s.Memory*s.Rate), shortestCircle))
+	return newAliases(s).draw(n, deviates{source})
+}
+
+// draw returns n samples [m] of the motion.
+func (a aliases) draw(n int, random deviates) []float64 {
+	rate := a.spectrum.Rate
+	length := transform.GoodLengthAbove(max(2*n, n+int(a.spectrum.Memory*rate), shortestCircle))
 	plan, err := transform.NewPlan(length)
 	if err != nil {
 		panic("simulate: " + err.Error()) // GoodLengthAbove gives only lengths that have a plan
 	}
-	random := deviates{source}
-	folded := newAliases(s)
 	bins := make([]complex128, length/2+1)
 	for k := range bins {
-		f := float64(k) * s.Rate / float64(length)
+		f := float64(k) * rate / float64(length)
 		// E|X|² = length fs S with the two-sided density S, half of the one-sided one; half of that in each part.
-		size := math.Sqrt(float64(length) * s.Rate * folded.density(f) / 4)
+		size := math.Sqrt(float64(length) * rate * a.density(f) / 4)
 		z, y := random.pair()
 		bins[k] = complex(float64(size*z), float64(size*y))
 	}
@@ -78,8 +82,8 @@ type aliases struct {
 
 const (
 	aliasNodes = 24  // 5.8^-24 = 5e-19
-	aliasTerms = 400 // pairs summed one by one; the rest is an integral, with a midpoint error of order 1/aliasTerms³
-	tailNodes  = 200 // Gauss-Legendre points of that integral: enough to follow sinc² down to 1e-5 of its size
+	aliasTerms = 100 // pairs summed one by one; the rest is an integral, with a midpoint error of order 1/aliasTerms³
+	tailNodes  = 100 // Gauss-Legendre points of that integral: enough to follow sinc² down to 1e-5 of its size
 )
 
 func newAliases(s Spectrum) aliases {

@@ -43,7 +43,7 @@ func TestStageSteadyFlow(t *testing.T) {
 		sample int
 		want   float64
 	}{{2400, 39.789e-9}, {7400, -39.789e-9}, {9900, 39.789e-9}} {
-		if got := r.Positions[0][row.sample]; math.Abs(got-row.want) > 0.0005e-9 { // half of the last digit
+		if got := r.Positions[0][row.sample]; !(math.Abs(got-row.want) <= 0.0005e-9) { // half of the last digit
 			t.Errorf("sample %d: displacement %v m, want %v", row.sample, got, row.want)
 		}
 	}
@@ -89,7 +89,7 @@ func TestStageAgainstIntegration(t *testing.T) {
 		}
 		// 1e-4 x the speed of 36 um/s over the relaxation rate, and the left-hand sums of the mean: half a step.
 		tolerance := 1e-4*36e-6/relaxation + 36e-6*step
-		if math.Abs(r.Stage[i]-meanS/weight) > tolerance {
+		if !(math.Abs(r.Stage[i]-meanS/weight) <= tolerance) {
 			t.Fatalf("sample %d: stage %v m, want %v", i, r.Stage[i], meanS/weight)
 		}
 		if i >= forgotten && math.Abs(r.Positions[0][i]-meanX/weight) > 3*tolerance {
@@ -130,7 +130,7 @@ func TestStageStartsSteady(t *testing.T) {
 			truth.Stage.Phase = phase
 			r := Make(truth, 1)
 			for i := range 100 {
-				if math.Abs(r.Positions[0][i]-r.Positions[0][i+100]) > 1e-17 { // rounding of 1 um and the thermal 1e-20 m
+				if !(math.Abs(r.Positions[0][i]-r.Positions[0][i+100]) <= 1e-17) { // rounding of 1 um and the thermal 1e-20 m
 					t.Fatalf("%v, phase %v, sample %d: %v, a period later %v", d.Waveform, phase, i, r.Positions[0][i], r.Positions[0][i+100])
 				}
 			}
@@ -148,5 +148,17 @@ func TestStagePhotodiode(t *testing.T) {
 	}
 	if got := meanSquare(r.Stage); !near(got, 150e-9*150e-9/2, 1e-10) {
 		t.Errorf("stage power %v", got)
+	}
+}
+
+// At f3dB a diode without prompt light delays the line by an eighth of a period.
+func TestStagePhotodiodeDelays(t *testing.T) {
+	truth := driven(4000, 16000, 0, 400, Drive{Waveform: Sine, Amplitude: 150e-9, Frequency: 20})
+	plain := Make(truth, 1).Positions[0]
+	truth.Photodiode = &Photodiode{F3dB: 20}
+	for i, x := range Make(truth, 1).Positions[0][100:] {
+		if want := plain[i] / math.Sqrt2; !(math.Abs(x-want) <= 1e-19) { // the thermal 1e-20 m; 800 samples a period
+			t.Fatalf("sample %d: %v, want %v", i+100, x, want)
+		}
 	}
 }

@@ -62,7 +62,7 @@ func TestStepReproducesClosedForms(t *testing.T) {
 			}
 			lag := s.held * (s.decay*s.held*variance + s.kick*s.shared)
 			// c is known to a rounding unit of 1, which matters where nothing is left of it.
-			if want := variance * blurLag(a) * c; math.Abs(lag-want) > 3e-12*want+2e-16*variance {
+			if want := variance * blurLag(a) * c; !(math.Abs(lag-want) <= 3e-12*want+2e-16*variance) {
 				t.Errorf("theta %v, a %v: covariance at lag 1 %v, want %v", theta, a, lag, want)
 			}
 			if equilibrium := s.decay*s.decay*variance + s.kick*s.kick; !near(equilibrium, variance, 1e-14) {
@@ -82,7 +82,7 @@ func TestStepTendsToFreeBead(t *testing.T) {
 		free := freeStep(variance*theta, 0, 1, fraction)
 		// 1e-6: the next order in theta, with a coefficient of order 1 over the smallest ratio.
 		for _, pair := range [][2]float64{{trapped.kick, free.kick}, {trapped.held, free.held}, {trapped.shared, free.shared}, {trapped.own, free.own}} {
-			if math.Abs(pair[0]-pair[1]) > 1e-6*math.Abs(pair[1]) {
+			if !(math.Abs(pair[0]-pair[1]) <= 1e-6*math.Abs(pair[1])) {
 				t.Errorf("exposure %v: trapped %v, free %v", fraction, trapped, free)
 			}
 		}
