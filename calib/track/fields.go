@@ -33,6 +33,9 @@ func (lay *layout) measure(v *view, sampled int) {
 			}
 		}
 		lay.padded = lay.padded || v.delimiter == ' ' || hasBlanks(v.lines[i].text, v.delimiter)
+		if i == len(v.lines)-1 {
+			break // possibly cut off
+		}
 		if d := decimalsOf(v.cells[i][last].text, lay.mark); lay.lastDecimals == -1 || d == lay.lastDecimals {
 			lay.lastDecimals = d
 		} else {

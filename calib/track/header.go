@@ -250,17 +250,15 @@ func (lay *layout) setNames(name string, v *view, opt Options) error {
 			lay.repeats[strings.TrimSpace(h.line.text)] = true
 		}
 	}
-	lay.readPreamble(v, rows)
+	lay.readPreamble(v)
 	return nil
 }
 
-// readPreamble reads the keys in the lines above the data that are no header.
-func (lay *layout) readPreamble(v *view, rows []headerRow) {
+// readPreamble reads the keys in the lines above the data, on one line or as
+// names above their values.
+func (lay *layout) readPreamble(v *view) {
 	for i := range v.first {
 		line := v.lines[i]
-		if slices.ContainsFunc(rows, func(h headerRow) bool { return h.line.number == line.number }) {
-			continue
-		}
 		lay.preamble.readKey(line.text, v.delimiter, line.number)
 		if i+1 < v.first {
 			names, values := cellTexts(line.text, v.delimiter), cellTexts(v.lines[i+1].text, v.delimiter)
@@ -269,6 +267,31 @@ func (lay *layout) readPreamble(v *view, rows []headerRow) {
 			}
 		}
 	}
+}
+
+// takeFirstRow takes start and increment of the time from the row under those
+// names, where no other row has a value in those columns.
+func (lay *layout) takeFirstRow(v *view) {
+	isKey := func(c columnInfo) bool {
+		list := splitWords(c.header)
+		return matches(list, intervalKeys) || matches(list, startKeys)
+	}
+	found := false
+	for k, c := range lay.names {
+		if k >= len(v.cells[v.first]) || (v.kinds[v.first][k] == numberCell) != isKey(c) {
+			return
+		}
+		found = found || isKey(c)
+	}
+	if !found || v.first+1 >= len(v.lines) {
+		return
+	}
+	for k, c := range lay.names {
+		if isKey(c) {
+			lay.preamble.set(c, v.cells[v.first][k].text, v.lines[v.first].number)
+		}
+	}
+	v.first++
 }
 
 // headerWidth is the number of cells of the line above the data.

@@ -264,6 +264,9 @@ func arrayTable(h *arrayHeader, data [][]float64, rows int, opt Options) (*table
 	if err != nil {
 		return nil, err
 	}
+	if err := p.fillUnits(preamble{}, opt); err != nil {
+		return nil, err
+	}
 	tab := &table{plan: p, rows: rows}
 	for _, u := range p.uses {
 		tab.columns = append(tab.columns, data[u.column])

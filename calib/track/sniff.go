@@ -223,6 +223,19 @@ func (v *view) findFirst() int {
 	return best
 }
 
+// preferSpaces takes blanks as the delimiter of a table with tabs where only
+// that fits the line above the data.
+func preferSpaces(lines []textLine, best *view, wanted byte) *view {
+	if wanted != 0 || best.delimiter != '\t' || best.first < 1 || best.headerWidth() == best.width {
+		return best
+	}
+	v := look(lines, ' ')
+	if v.width == best.width && v.first == best.first && v.headerWidth() == v.width {
+		return v
+	}
+	return best
+}
+
 // sniff finds the delimiter and the first row. wanted restricts the search to
 // one delimiter; 0 tries all.
 func sniff(lay *layout, sample []byte, wanted byte) *view {
@@ -238,6 +251,7 @@ func sniff(lay *layout, sample []byte, wanted byte) *view {
 				best = v
 			}
 		}
+		best = preferSpaces(lines, best, wanted)
 		enough := best.first >= 0 && len(lines)-best.first >= 100
 		if enough || len(lines) < limit {
 			return best

@@ -32,9 +32,6 @@ func (tab *table) recordings(opt Options) ([]*Recording, error) {
 		}
 		return nil, &Error{File: name, Code: CodeEmpty, What: what, Remedy: "a recording needs at least two samples, and many more to be of use"}
 	}
-	if err := tab.plan.fillUnits(tab.pre, opt); err != nil {
-		return nil, err
-	}
 	tab.notes = append(tab.notes, tab.plan.notes...)
 	groups, err := tab.groups(opt)
 	if err != nil {

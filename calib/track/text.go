@@ -89,6 +89,7 @@ func (lay *layout) find(opt Options, head []byte, whole bool) (*plan, error) {
 	if err := lay.findMark(name, v, opt.Decimal); err != nil {
 		return nil, err
 	}
+	lay.takeFirstRow(v)
 	lay.start, lay.firstLine = v.lines[v.first].at, v.lines[v.first].number
 	if v.first == 0 && bytes.HasPrefix(head, []byte("\ufeff")) {
 		lay.start += len("\ufeff")
@@ -101,6 +102,9 @@ func (lay *layout) find(opt Options, head []byte, whole bool) (*plan, error) {
 	}
 	p, err := makePlan(name, lay.names, line, opt, func(k int) bool { return lay.isTimeLike(v, k) })
 	if err != nil {
+		return nil, err
+	}
+	if err := p.fillUnits(lay.preamble, opt); err != nil {
 		return nil, err
 	}
 	lay.setFields(p, v)
@@ -137,9 +141,10 @@ func (v *view) noRows(name string) error {
 		if isBlank(v.lines[i].text) {
 			continue
 		}
-		cells := cellTexts(v.lines[i].text, v.delimiter)
-		if h := newHeaderRow(v.lines[i], cells); h.roles > 0 {
-			return &Error{File: name, Line: v.lines[i].number, Code: CodeEmpty, What: "the file has a header but no data", Remedy: "check that the export is complete"}
+		for _, d := range delimiters {
+			if h := newHeaderRow(v.lines[i], cellTexts(v.lines[i].text, d.char)); h.roles > 0 {
+				return &Error{File: name, Line: v.lines[i].number, Code: CodeEmpty, What: "the file has a header but no data", Remedy: "check that the export is complete"}
+			}
 		}
 	}
 	return &Error{File: name, Line: 1, Code: CodeFormat, What: "no rows of numbers are found", Remedy: "give a table of text with one row per sample and a column for each axis"}
