@@ -5,7 +5,6 @@ import (
 	"errors"
 	"math"
 	"os"
-	"slices"
 	"strconv"
 	"strings"
 )
@@ -242,9 +241,4 @@ func locate(path string, err error) error {
 		break
 	}
 	return err
-}
-
-// roleIs tells whether a kept column has one of the roles.
-func (p *plan) roleIs(k int, roles ...string) bool {
-	return slices.ContainsFunc(p.uses, func(u use) bool { return u.column == k && slices.Contains(roles, u.role) })
 }

@@ -37,7 +37,6 @@ type parser struct {
 	bad    []badLine
 	total  int   // bad lines, with those that are not in bad
 	skip   []int // rows that hold no sample
-	texty  int   // bad lines without a number, for footers
 	recent string
 	recall float64
 }
@@ -140,7 +139,7 @@ func (p *parser) block(b block) {
 	row := b.row
 	for at := 0; at < end; row++ {
 		next, ok := p.fastRow(data, at, row)
-		if !ok {
+		if !ok || b.cut && next == end { // the last line may be cut off
 			next = at
 			for data[next] != '\n' {
 				next++
