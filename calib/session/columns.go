@@ -11,8 +11,15 @@ import (
 // headerCell is a column's name with a unit behind it: "height (um)".
 var headerCell = regexp.MustCompile(`^(.*?)\s*[(\[]\s*([^()\[\]]+?)\s*[)\]]$`)
 
+// maxColumns bounds the columns of a track list: every setting on every axis, and room.
+const maxColumns = 200
+
 // header reads the names of the columns.
 func (l *list) header(cells []cell) {
+	if len(cells) > maxColumns {
+		l.report(cells[0], &Error{Problem: "the header has more than " + itoa(maxColumns) + " columns", Hint: "is this a recording instead of a track list?"})
+		return
+	}
 	files := 0
 	for i, c := range cells {
 		col, problem := readColumn(strings.TrimSpace(c.text))

@@ -57,11 +57,18 @@ func readFile(path string) ([]byte, error) {
 	return data, nil
 }
 
+// maxSession bounds a session file [bytes]; the template has 4 kB, and the
+// library's check for keys given twice takes quadratic time.
+const maxSession = 64 << 10
+
 var byteOrderMark = []byte("\xef\xbb\xbf")
 
 // Read reads the content of a session file. name stands in messages; its last
 // part stands in the settings' places.
 func Read(name string, data []byte) (*Settings, error) {
+	if len(data) > maxSession {
+		return nil, &Error{Where: name, Problem: "is larger than 64 KiB", Hint: "is this a recording instead of its settings?"}
+	}
 	data = bytes.TrimPrefix(data, byteOrderMark)
 	if problem := validTOML(name, data); problem != nil {
 		return nil, problem
@@ -117,11 +124,19 @@ func (d *document) position(n *unstable.Node) (line, column int) {
 	return start.Line, start.Column
 }
 
+// report places a problem; of those that will not be shown it keeps the count
+// alone, since finding a line means counting from the top.
 func (d *document) report(n *unstable.Node, e *Error) {
+	if d.full() {
+		d.problems = append(d.problems, &Error{})
+		return
+	}
 	line, column := d.position(n)
 	e.Where = place(d.name, line, column)
 	d.problems = append(d.problems, e)
 }
+
+func (d *document) full() bool { return len(d.problems) >= maxShown }
 
 func (d *document) expression(n *unstable.Node) {
 	switch n.Kind {
@@ -186,6 +201,8 @@ func (d *document) keyValue(prefix []string, n *unstable.Node) {
 				d.keyValue(path, it.Node())
 			}
 		}
+	case !ok && d.full():
+		d.report(first, nil)
 	case !ok:
 		d.report(first, unknown(strings.Join(path, "."), ""))
 	case key.TrackOnly:

@@ -98,6 +98,7 @@ func TestReadErrors(t *testing.T) {
 		{"[recording]\nnoise.y = \"4 nm\"\nbackground = \"b.csv\"", "recording.background \"b.csv\" is given beside recording.noise"},
 		{"[recording]\nrate = \"2 kHz\"\nexposure.x = \"0.6 ms\"", "s.toml:3:14: recording.exposure.x \"0.6 ms\" is longer than the 0.5 ms between samples at recording.rate \"2 kHz\" (s.toml:2:8)"},
 		{"[chamber]\nheight = \"8 um\"\ndepth = \"5 um\"", "s.toml:2:10: chamber.height \"8 um\" is not below chamber.depth"},
+		{strings.Repeat("#", maxSession+1), "s.toml: is larger than 64 KiB"},
 		{"role = \"free\"", "s.toml:1:1: role belongs to one recording\n  hint: give it in the column role of tracks.csv, or with --role"},
 		{"[bead]\ndiameter = \"1 um\"\ndiameter = \"2 um\"", "s.toml:3:1: "},
 		{"[bead]\ndiameter = 1.02 um", "s.toml:2:"},

@@ -9,7 +9,12 @@ import (
 // Tracks is a track list: one row for each recording of a folder.
 type Tracks struct {
 	Rows []Row
+
+	index map[recording]int // where in Rows
 }
+
+// recording is what a row is about.
+type recording struct{ file, bead string }
 
 // Row is what a track list says of one recording.
 type Row struct {
@@ -28,10 +33,8 @@ func (t *Tracks) Row(file, bead string) (Row, bool) {
 	}
 	file = path.Clean(filepath.ToSlash(file))
 	for _, wanted := range []string{bead, ""} {
-		for _, row := range t.Rows {
-			if row.File == file && row.Bead == wanted {
-				return row, true
-			}
+		if i, ok := t.index[recording{file, wanted}]; ok {
+			return t.Rows[i], true
 		}
 	}
 	return Row{}, false
@@ -60,7 +63,7 @@ func ReadTracks(name string, data []byte) (*Tracks, error) {
 	if err != nil {
 		return nil, err
 	}
-	l := list{name: name, base: filepath.Base(name), commas: table.delimiter != ',', tracks: &Tracks{}}
+	l := list{name: name, base: filepath.Base(name), commas: table.delimiter != ',', tracks: &Tracks{index: map[recording]int{}}}
 	l.header(table.rows[0])
 	if len(l.problems) > 0 {
 		return nil, joined(l.problems)
@@ -127,13 +130,13 @@ func (l *list) row(cells []cell) {
 	if bead, ok := row.Settings.Lookup("recording.bead", ""); ok {
 		row.Bead = bead.Word
 	}
-	for _, other := range l.tracks.Rows {
-		if other.File == row.File && other.Bead == row.Bead {
-			l.report(cells[0], &Error{Key: "file", Text: row.File, Problem: "has a row already, in line " + itoa(other.Line), Hint: "keep one row for each recording; two beads of one file need the column bead"})
-			return
-		}
+	about := recording{row.File, row.Bead}
+	if i, twice := l.tracks.index[about]; twice {
+		l.report(cells[0], &Error{Key: "file", Text: row.File, Problem: "has a row already, in line " + itoa(l.tracks.Rows[i].Line), Hint: "keep one row for each recording; two beads of one file need the column bead"})
+		return
 	}
 	l.problems = append(l.problems, checkPairs(row.Settings)...)
+	l.tracks.index[about] = len(l.tracks.Rows)
 	l.tracks.Rows = append(l.tracks.Rows, row)
 }
 

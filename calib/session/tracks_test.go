@@ -121,6 +121,7 @@ func TestTracksErrors(t *testing.T) {
 		{"role,height\nfree,1 um", "t.csv:1:1: the header has no column file"},
 		{"file,hieght\na.csv,1 um", "t.csv:1:6: \"hieght\" is neither file, note nor a setting\n  hint: did you mean height?"},
 		{"file,density\na.csv,1 g/cm3", "t.csv:1:6: \"density\" may mean more than one setting\n  hint: write bead.density or medium.density"},
+		{"file" + strings.Repeat(",", 200), "t.csv:1:1: the header has more than 200 columns"},
 		{"file,height.x\na.csv,1 um", "holds for the whole recording"},
 		{"file,height,chamber.height\na.csv,1 um,1 um", "t.csv:1:13: \"chamber.height\" is a second column for the same"},
 		{"file,file\na.csv,b.csv", "t.csv:1:6: \"file\" is a second column"},
