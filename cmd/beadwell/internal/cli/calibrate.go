@@ -128,15 +128,12 @@ func runCalibrate(ctx context.Context, a *app, o calibrateOptions) error {
 			return err
 		}
 	}
-	for i := range outcomes {
-		if one := &outcomes[i]; one.result != nil {
-			if err := writer.write(ctx, one.path, one.result); err != nil {
-				return err
-			}
-		}
-	}
+	unwritten := writer.writeAll(ctx, outcomes)
 	if err := a.printOutcomes(outcomes, o); err != nil {
 		return err
+	}
+	if unwritten != nil {
+		return unwritten
 	}
 	return conclude(outcomes)
 }

@@ -108,7 +108,7 @@ func classified(f *failure) []report.Problem {
 	all := problems(f.err)
 	for i := range all {
 		all[i].Code, all[i].Status = f.code, f.status
-		if all[i].Remedy == "" {
+		if f.remedy != "" {
 			all[i].Remedy = f.remedy
 		}
 	}

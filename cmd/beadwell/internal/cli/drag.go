@@ -84,7 +84,7 @@ func runDrag(_ context.Context, a *app, o dragOptions) error {
 	}
 	for _, s := range settings.All() {
 		if s.Assumed && o.format != "json" {
-			a.say("beadwell: assumed, for nobody stated it: %s", settingLine(s))
+			a.say("beadwell: assumed, for nobody stated it: %s = %s", s.Key, s.Text)
 		}
 	}
 	switch o.format {

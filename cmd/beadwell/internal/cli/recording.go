@@ -72,10 +72,16 @@ func (s *source) load(ctx context.Context, path string) ([]loaded, error) {
 }
 
 func (s *source) read(ctx context.Context, path string, options track.Options) ([]*track.Recording, error) {
+	read := func() ([]*track.Recording, error) { return track.ReadFile(ctx, path, options) }
 	if path == "-" {
-		return track.Read(ctx, s.app.In, options)
+		read = func() ([]*track.Recording, error) { return track.Read(ctx, s.app.In, options) }
 	}
-	return track.ReadFile(ctx, path, options)
+	recordings, err := read()
+	var one *track.Error
+	if err != nil && ctx.Err() == nil && !errors.As(err, &one) {
+		return nil, inputError("check the name, and that the file may be read", err)
+	}
+	return recordings, err
 }
 
 // folder reads session.toml and tracks.csv beside a track, once for each folder.

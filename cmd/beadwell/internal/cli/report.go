@@ -58,13 +58,13 @@ func runReport(ctx context.Context, a *app, o reportOptions) error {
 		return err
 	}
 	defer writer.close()
-	writeError := writer.write(ctx, result.Input.Name, result)
-	outcomes := []outcome{{path: o.result, result: result}}
+	outcomes := []outcome{{path: result.Input.Name, result: result}}
+	unwritten := writer.writeAll(ctx, outcomes)
 	if err := a.printOutcomes(outcomes, calibrateOptions{format: o.format, quiet: true}); err != nil {
 		return err
 	}
-	if writeError != nil {
-		return writeError
+	if unwritten != nil {
+		return unwritten
 	}
 	return conclude(outcomes)
 }

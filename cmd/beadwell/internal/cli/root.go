@@ -7,6 +7,8 @@ import (
 
 	"github.com/spf13/cobra"
 	"github.com/spf13/pflag"
+
+	"beadwell/calib/session"
 )
 
 const rootLong = `beadwell calibrates the stiffness of an optical trap from a recording of the
@@ -81,6 +83,10 @@ func unknownCommand(root *cobra.Command, name string) error {
 func flagError(cmd *cobra.Command, err error) error {
 	if errors.Is(err, pflag.ErrHelp) {
 		return err
+	}
+	var setting *session.Error
+	if errors.As(err, &setting) {
+		return settingsError(setting) // without what the flag parser puts in front
 	}
 	remedy := fmt.Sprintf("see %s --help", cmd.CommandPath())
 	var missing *pflag.NotExistError

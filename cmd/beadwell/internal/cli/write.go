@@ -3,6 +3,7 @@ package cli
 import (
 	"bytes"
 	"context"
+	"errors"
 	"fmt"
 	"os"
 	"path/filepath"
@@ -26,6 +27,7 @@ const (
 	resultJSON = "result.json"
 	resultText = "result.txt"
 	resultCSV  = "result.csv"
+	reportHTML = "report.html"
 )
 
 // newResultWriter opens the folder and makes sure that it can be written to, before
@@ -63,6 +65,18 @@ func (w *resultWriter) folder(name string) outputFolder {
 	return outputFolder{root: w.root, parent: w.parent, name: name}
 }
 
+// writeAll writes the outputs of every recording that has a result. It goes on
+// after one that cannot be written, and returns all errors.
+func (w *resultWriter) writeAll(ctx context.Context, outcomes []outcome) error {
+	var all []error
+	for _, one := range outcomes {
+		if one.result != nil && w.root != nil {
+			all = append(all, w.write(ctx, one.path, one.result))
+		}
+	}
+	return errors.Join(all...)
+}
+
 // file is one output of a recording.
 type file struct {
 	name    string
@@ -72,9 +86,6 @@ type file struct {
 // write writes all outputs of a recording. The result as JSON comes first: it
 // tells a later run whose outputs these are.
 func (w *resultWriter) write(ctx context.Context, path string, r *calib.Result) error {
-	if w.root == nil {
-		return nil
-	}
 	name := w.names[path]
 	if r.Input.Bead != "" {
 		name += "-" + safeName(r.Input.Bead)
@@ -129,7 +140,7 @@ func (f outputFolder) belongsTo(r *calib.Result) bool {
 
 // outputs makes the content of every file from the result alone.
 func outputs(ctx context.Context, r *calib.Result) ([]file, error) {
-	var stored, text, table bytes.Buffer
+	var stored, text, table, page bytes.Buffer
 	if err := report.JSON(&stored, r); err != nil {
 		return nil, err
 	}
@@ -139,7 +150,10 @@ func outputs(ctx context.Context, r *calib.Result) ([]file, error) {
 	if err := report.CSV(&table, report.Set{Results: []*calib.Result{r}}); err != nil {
 		return nil, err
 	}
-	files := []file{{resultJSON, stored.Bytes()}, {resultText, text.Bytes()}, {resultCSV, table.Bytes()}}
+	if err := report.HTML(&page, r); err != nil {
+		return nil, err
+	}
+	files := []file{{resultJSON, stored.Bytes()}, {resultText, text.Bytes()}, {resultCSV, table.Bytes()}, {reportHTML, page.Bytes()}}
 	drawn, err := figureFiles(ctx, r, figure.SVG, figure.PNG)
 	return append(files, drawn...), err
 }
