@@ -16,7 +16,9 @@ type Plan struct {
 	rowRoots  []complex128 // exp(-2 pi i k rows/n), k < half/rows
 	roots     roots        // exp(-2 pi i k/n), k < n
 
-	work, desks sync.Pool // *[]complex128 of length half; *desk
+	work  pool[complex128] // buffers of length half; only if rows > 1
+	reals pool[float64]    // buffers of length half+1
+	desks sync.Pool        // *desk
 }
 
 // wholeLimit is the longest complex length that is done in one piece. Its two buffers and

@@ -70,3 +70,23 @@ func (s *spectrum) gather(dst []complex128, first, width, stride int) {
 		}
 	}
 }
+
+// powerSpectrum is spectrum for bins that are real.
+type powerSpectrum struct {
+	power []float64
+	roots *roots // exp(-2 pi i k/n)
+}
+
+func (s *powerSpectrum) gather(dst []complex128, first, width, stride int) {
+	half := len(s.power) - 1
+	scale := 0.5 / float64(half)
+	for ; len(dst) > 0; first += stride {
+		row := dst[:width]
+		dst = dst[width:]
+		for b := range row {
+			k := first + b
+			low, high, w := s.power[k], s.power[half-k], s.roots.at(k)
+			row[b] = complex(scale*(low+high+(low-high)*imag(w)), -scale*(low-high)*real(w))
+		}
+	}
+}

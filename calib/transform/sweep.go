@@ -1,11 +1,5 @@
 package transform
 
-import (
-	"runtime"
-	"sync"
-	"sync/atomic"
-)
-
 // blockWidth is the number of columns or rows that are worked on together: eight
 // real results fill a cache line of 64 bytes, eight complex points two.
 const blockWidth = 8
@@ -51,12 +45,8 @@ func run[T float64 | complex128](p *Plan, dst []T, from source, pair pairing[T])
 		storeWhole(p, dst, z, pair)
 		return
 	}
-	work, ok := p.work.Get().(*[]complex128)
-	if !ok {
-		w := make([]complex128, p.half)
-		work = &w
-	}
-	defer p.work.Put(work)
+	work := p.work.get(p.half)
+	defer p.work.put(work)
 	columns := p.half / p.rows
 	p.spread((columns+blockWidth-1)/blockWidth, func(d *desk, block int) {
 		first := block * blockWidth
@@ -74,31 +64,19 @@ func (p *Plan) borrowDesk() *desk {
 	return p.newDesk()
 }
 
-// spread calls do for every block, from several goroutines when the length is worth
-// it. Blocks touch separate parts of the results, so their order does not matter.
+// spread calls do for every block, from several goroutines when the length is worth it.
 func (p *Plan) spread(blocks int, do func(d *desk, block int)) {
-	workers := min(runtime.GOMAXPROCS(0), blocks)
-	if p.half < parallelLimit {
-		workers = 1
+	limit := 1
+	if p.half >= parallelLimit {
+		limit = blocks
 	}
-	var next atomic.Int64
-	work := func() {
+	spread(blocks, limit, func(next func() (int, bool)) {
 		d := p.borrowDesk()
 		defer p.desks.Put(d)
-		for {
-			block := int(next.Add(1)) - 1
-			if block >= blocks {
-				return
-			}
+		for block, ok := next(); ok; block, ok = next() {
 			do(d, block)
 		}
-	}
-	var group sync.WaitGroup
-	for range workers - 1 {
-		group.Go(work)
-	}
-	work()
-	group.Wait()
+	})
 }
 
 // columnBlock transforms width columns from column first on, and multiplies row r of
