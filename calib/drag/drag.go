@@ -16,7 +16,7 @@ import (
 	"math"
 )
 
-//go:generate go run ./gen -o twowall_table.go
+//go:generate go run ./gen
 
 // Stokes returns 6 pi eta R [N s/m], the drag coefficient far from walls of a
 // sphere of radius R [m] in a fluid of viscosity eta [Pa s] (Stokes 1851).
