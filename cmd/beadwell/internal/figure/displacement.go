@@ -23,8 +23,8 @@ func displacement(a *calib.Axis) Figure {
 	plateau := a.Displacement.Plateau
 	values.showPositive(float64(plateau.Value))
 	p := panel{name: "displacement", share: 1,
-		x: scale{quantity: "lag", unit: "s", factor: 1, log: true}.over(lags),
-		y: scale{quantity: "mean-square displacement", unit: "nm^{2}", factor: 1e18, log: true}.over(values)}
+		x: scale{quantity: "lag", unit: "s", si: "s", factor: 1, log: true}.over(lags),
+		y: scale{quantity: "mean-square displacement", unit: "nm^{2}", si: "m2", factor: 1e18, log: true}.over(values)}
 	if plateau.Known() {
 		p.add(series{name: "plateau", mark: level, ink: rule, y: []float64{float64(plateau.Value)},
 			label: "plateau " + measured(plateau, "nm2")})
@@ -41,8 +41,7 @@ func displacement(a *calib.Axis) Figure {
 	if len(unused.x) > 0 {
 		f.key = append(f.key, keyItem{"not in the fit", rings, left})
 	}
-	f.Description = describeDisplacement(a, len(used.x)+len(unused.x))
-	return f
+	return f.described(describeDisplacement(a, len(used.x)+len(unused.x)))
 }
 
 func lagPoints(a *calib.Axis) (used, unused series) {

@@ -45,9 +45,8 @@ func estimates(r *calib.Result) Figure {
 	f.height += 6
 	f.key = []keyItem{{"by drag", dots, drag}, {"by amplitude", squares, ampl}, {"adopted", span, adoptedTint},
 		{"68 %", bar68, text}, {"95 %", bar95, text}}
-	f.Description = "Stiffness estimates with intervals of 68 % (thick) and 95 % (thin), combined uncertainty. " +
-		strings.Join(described, " ")
-	return f
+	return f.described("Stiffness estimates with intervals of 68 % (thick) and 95 % (thin), combined uncertainty. " +
+		strings.Join(described, " "))
 }
 
 // ordered returns the estimates of one axis, drag route first.
@@ -85,7 +84,7 @@ func estimatePanel(a *calib.Axis) (p panel, words string, ok bool) {
 	if reach.empty() {
 		return p, "", false
 	}
-	p.x = scale{quantity: "stiffness along " + clean(a.Name), unit: "pN/µm", factor: 1e6}.over(reach)
+	p.x = scale{quantity: "stiffness along " + clean(a.Name), unit: "pN/µm", si: "N/m", factor: 1e6}.over(reach)
 	p.y = scale{factor: 1, rows: rows, low: -float64(len(rows)) + 0.4, high: 0.6}
 	return p, describeEstimates(a, list), true
 }

@@ -2,6 +2,7 @@ package figure
 
 import (
 	"fmt"
+	"strings"
 
 	"beadwell/calib"
 )
@@ -24,7 +25,8 @@ type Figure struct {
 	Kind        Kind
 	Axis        string // "x", "y", "z"; empty for the estimates of all axes
 	Title       string
-	Description string // what it shows, in words, for those who cannot see it
+	Caption     string // one sentence for below the figure
+	Description string // what it shows, in words, for those who cannot see it; begins with the caption
 	Reason      string // why it could not be drawn, in which case it is an empty frame; else empty
 
 	panels []panel
@@ -78,7 +80,16 @@ func fileSafe(name string) string {
 // empty makes f a frame that shows the reason why it could not be drawn.
 func (f Figure) empty(reason string) Figure {
 	f.Reason = clean(reason)
-	f.Description = "Not drawn: " + f.Reason + "."
+	f = f.described("Not drawn: " + f.Reason + ".")
 	f.panels, f.key = nil, nil
+	return f
+}
+
+// described sets the description, whose first sentence is the caption.
+func (f Figure) described(s string) Figure {
+	f.Description, f.Caption = s, s
+	if first, _, more := strings.Cut(s, ". "); more {
+		f.Caption = first + "."
+	}
 	return f
 }

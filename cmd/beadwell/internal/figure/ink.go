@@ -37,7 +37,8 @@ const (
 
 // inks gives every ink its name and its colours. Colours other than greys are
 // those of Okabe and Ito 2008; the dark theme takes the lighter neighbour of a
-// hue, for contrast above 4.5 on paper (TestContrast).
+// hue. Text has a contrast of 4.5 and marks one of 3 or more on paper (WCAG 2.2,
+// 1.4.3 and 1.4.11; TestContrast).
 var inks = [inkCount]struct {
 	name        string
 	light, dark color.NRGBA
@@ -55,7 +56,7 @@ var inks = [inkCount]struct {
 	band:        {"band", thin(skyBlue, 0x38), thin(skyBlue, 0x2c)},
 	left:        {"left", purple, purple},
 	alarm:       {"alarm", vermillion, orange},
-	doubt:       {"doubt", purple, purple},
+	doubt:       {"doubt", grey(0x1b), grey(0xec)},
 	paper:       {"paper", grey(0xff), color.NRGBA{0x16, 0x18, 0x1b, 0xff}},
 }
 

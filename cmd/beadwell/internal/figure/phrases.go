@@ -29,7 +29,8 @@ func thinned(n, most int) []int {
 }
 
 // measured prints a quantity with its combined standard uncertainty, or the
-// statistical one, typeset for a figure: "52.3(11) pN/µm".
+// statistical one, typeset for a figure: "52.3(11) pN/µm", or with its 68 %
+// interval where that is lopsided: "48.1 [47.5, 49.6] pN/µm".
 func measured(q calib.Quantity, unit string) string {
 	if !q.Known() {
 		return "unknown"
@@ -38,11 +39,21 @@ func measured(q calib.Quantity, unit string) string {
 	if u == nil {
 		u = q.Statistical
 	}
-	standard := math.NaN()
+	value, standard := float64(q.Value), math.NaN()
 	if u != nil {
 		standard = float64(u.Standard)
+		if low, high := float64(u.Interval68[0]), float64(u.Interval68[1]); lopsided(value, standard, low, high) {
+			number, _, _ := strings.Cut(quantity.Format(value, standard, unit), "(")
+			return typeset(number + " " + quantity.FormatInterval(low, high, unit))
+		}
 	}
-	return typeset(quantity.Format(float64(q.Value), standard, unit))
+	return typeset(quantity.Format(value, standard, unit))
+}
+
+// lopsided tells whether the arms of an interval differ by more than a tenth of
+// a standard uncertainty, which two digits of it would not show.
+func lopsided(value, standard, low, high float64) bool {
+	return finite(standard, low, high) && math.Abs(low+high-2*value) > 0.1*standard
 }
 
 // typeset replaces the plain spellings of a printed quantity: "um" by "µm",
@@ -65,9 +76,9 @@ func typeset(s string) string {
 // plain prints a number of three digits with its unit, for a description.
 func plain(v float64, unit string) string {
 	if math.Abs(v) >= 100 && math.Abs(v) < 1e6 {
-		return strconv.FormatFloat(v, 'f', 0, 64) + " " + unit
+		return minus(strconv.FormatFloat(v, 'f', 0, 64)) + " " + unit
 	}
-	return strconv.FormatFloat(v, 'g', 3, 64) + " " + unit
+	return minus(strconv.FormatFloat(v, 'g', 3, 64)) + " " + unit
 }
 
 func count(n int, one, many string) string {
@@ -77,4 +88,8 @@ func count(n int, one, many string) string {
 	return fmt.Sprintf("%d %s", n, many)
 }
 
-func axisName(a *calib.Axis) string { return clean(a.Name) }
+// axisName is the name of an axis, short enough for a title.
+func axisName(a *calib.Axis) string {
+	name := []rune(clean(a.Name))
+	return string(name[:min(len(name), 24)])
+}

@@ -26,7 +26,7 @@ func position(r *calib.Result, a *calib.Axis) Figure {
 	x := positionScale("displacement from the mean", reach)
 	density.show(0)
 	top := panel{name: "histogram", share: 0.5, linked: true, x: x,
-		y: scale{quantity: "density", unit: "1/" + x.unit, factor: 1 / x.factor}.over(density)}
+		y: scale{quantity: "density", unit: "1/" + x.unit, si: "1/m", factor: 1 / x.factor}.over(density)}
 	top.y.low = 0
 	top.add(columns)
 	top.add(gaussian(pot, reach))
@@ -34,8 +34,7 @@ func position(r *calib.Result, a *calib.Axis) Figure {
 	f.panels = []panel{top, bottom}
 	f.key = []keyItem{{"positions", columns.mark, columns.ink}, {"Gaussian", curve, model},
 		{"potential", dots, data}, {"harmonic", dashes, model}}
-	f.Description = describePosition(a, len(columns.y))
-	return f
+	return f.described(describePosition(a, len(columns.y)))
 }
 
 func histogram(pot calib.Potential) (s series, reach, density extent) {
@@ -96,7 +95,7 @@ func potentialPanel(r *calib.Result, pot calib.Potential, x scale, peak float64)
 		reach.show(float64(bin.Energy))
 	}
 	p := panel{name: "potential", share: 0.5, x: x,
-		y: scale{quantity: "energy", unit: "kT", factor: 1}.over(reach)}
+		y: scale{quantity: "energy", unit: "kT", si: "kT", factor: 1}.over(reach)}
 	p.add(harmonic(r, pot, x, peak))
 	p.add(energies)
 	return p
@@ -123,7 +122,7 @@ func harmonic(r *calib.Result, pot calib.Potential, x scale, peak float64) serie
 
 // positionScale is a scale in nm, or in um when it reaches far.
 func positionScale(quantity string, reach extent) scale {
-	s := scale{quantity: quantity, unit: "nm", factor: 1e9}
+	s := scale{quantity: quantity, unit: "nm", si: "m", factor: 1e9}
 	if reach.magnitude() > 3e-6 {
 		s.unit, s.factor = "µm", 1e6
 	}

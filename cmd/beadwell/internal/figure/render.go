@@ -111,17 +111,13 @@ func renderSVG(f Figure, theme Theme, alone bool) []byte {
 	brush{canvas, theme}.paint(f, w, h)
 	id := "figure-" + fileSafe(strings.ReplaceAll(f.Name, "-", "")) + "-"
 	var out bytes.Buffer
-	labelled := id + "title"
-	if alone {
-		labelled += " " + id + "desc" // in a page the caption says it
-	}
 	out.WriteString("<svg")
 	if alone {
 		fmt.Fprintf(&out, ` xmlns="http://www.w3.org/2000/svg" width="%smm" height="%smm"`,
 			number(float64(w/millimetre)), number(float64(h/millimetre)))
 	}
-	fmt.Fprintf(&out, ` viewBox="0 0 %s %s" role="img" aria-labelledby="%s"`,
-		number(float64(w)), number(float64(h)), labelled)
+	fmt.Fprintf(&out, ` viewBox="0 0 %s %s" role="img" aria-labelledby="%stitle %sdesc"`,
+		number(float64(w)), number(float64(h)), id, id)
 	out.WriteString(" font-family=\"'Liberation Sans',Arial,Helvetica,sans-serif\">\n")
 	element(&out, "title", id+"title", f.Title)
 	element(&out, "desc", id+"desc", f.Description)

@@ -12,6 +12,7 @@ import (
 type scale struct {
 	quantity string  // "frequency"
 	unit     string  // as set on the label, "nm^{2}/Hz"
+	si       string  // the unit of the series, "m2/Hz"
 	factor   float64 // of the unit per SI unit
 	log      bool
 	low      float64 // in the unit

@@ -153,7 +153,7 @@ func (b brush) envelope(c draw.Canvas, p panel, s series) {
 			for i := len(down) - 1; i >= 0; i-- {
 				up = append(up, down[i])
 			}
-			c.FillPolygon(b.color(s.ink), up)
+			b.fillBetween(c, s, up, len(down))
 		}
 		up, down = nil, nil
 	}
@@ -174,6 +174,21 @@ func (b brush) envelope(c draw.Canvas, p panel, s series) {
 		}
 	}
 	flush()
+}
+
+// fillBetween fills an outline whose first n points are its upper edge, and
+// draws both edges, which stand out where the fill is pale against the paper.
+func (b brush) fillBetween(c draw.Canvas, s series, outline []vg.Point, n int) {
+	c.FillPolygon(b.color(s.ink), outline)
+	c.StrokeLines(b.line(edgeOf(s.ink), 0.5), outline[:n], outline[n:])
+}
+
+// edgeOf is the ink for the edge of an area.
+func edgeOf(i ink) ink {
+	if i == record {
+		return drag
+	}
+	return i
 }
 
 // lines draws levels across, each with its label below the right end, and

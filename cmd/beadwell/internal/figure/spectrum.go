@@ -6,8 +6,10 @@ import (
 	"beadwell/calib"
 )
 
-// frequency is the scale of a frequency axis.
-func frequencyScale() scale { return scale{quantity: "frequency", unit: "Hz", factor: 1, log: true} }
+// frequencyScale is the scale of a frequency axis.
+func frequencyScale() scale {
+	return scale{quantity: "frequency", unit: "Hz", si: "Hz", factor: 1, log: true}
+}
 
 // spectrum draws the blocked one-sided power spectrum with its fit, and below
 // it the residuals in standard errors.
@@ -25,7 +27,7 @@ func spectrum(a *calib.Axis) Figure {
 	}
 	x := frequencyScale().over(frequencies)
 	top := panel{name: "spectrum", share: 0.72, linked: true, x: x,
-		y: scale{quantity: "power spectral density", unit: "nm^{2}/Hz", factor: 1e18, log: true}.over(powers)}
+		y: scale{quantity: "power spectral density", unit: "nm^{2}/Hz", si: "m2/Hz", factor: 1e18, log: true}.over(powers)}
 	bottom := panel{name: "residuals", share: 0.28, x: x}
 	for _, p := range []*panel{&top, &bottom} {
 		p.add(fitBand(a))
@@ -41,8 +43,7 @@ func spectrum(a *calib.Axis) Figure {
 	residualPanel(&bottom, points)
 	f.panels = []panel{top, bottom}
 	f.key = spectrumKey(a, len(unused.x) > 0)
-	f.Description = describeSpectrum(a, used, x)
-	return f
+	return f.described(describeSpectrum(a, used))
 }
 
 // spectrumPoints returns the points in the fit and those left out. The bars are
@@ -85,7 +86,7 @@ func residualPanel(p *panel, points []calib.SpectrumPoint) {
 		s.x = append(s.x, float64(point.Frequency))
 		s.y = append(s.y, float64(point.Residual))
 	}
-	p.y = scale{quantity: "residual", unit: "s.e.", factor: 1}.over(reach)
+	p.y = scale{quantity: "residual", unit: "s.e.", si: "standard errors", factor: 1}.over(reach)
 	p.add(series{name: "zero", mark: level, ink: rule, y: []float64{0}})
 	p.add(unused)
 	p.add(used)
@@ -133,9 +134,11 @@ func spectrumKey(a *calib.Axis, leftOut bool) []keyItem {
 	return items
 }
 
-func describeSpectrum(a *calib.Axis, used series, x scale) string {
-	s := fmt.Sprintf("One-sided power spectrum of the position along %s on logarithmic axes, %d blocked points from %s to %s, with the fitted spectrum",
-		clean(a.Name), len(used.x), plain(x.low, "Hz"), plain(x.high, "Hz"))
+func describeSpectrum(a *calib.Axis, used series) string {
+	over := newExtent()
+	over.showPositive(used.x...)
+	s := fmt.Sprintf("One-sided power spectrum of the position along %s on logarithmic axes, %d blocked points from %s to %s in the fit, with the fitted spectrum",
+		clean(a.Name), len(used.x), plain(over.low, "Hz"), plain(over.high, "Hz"))
 	if a.Spectrum.Corner.Known() {
 		s += "; the corner frequency is " + measured(a.Spectrum.Corner, "Hz")
 	}

@@ -3,6 +3,7 @@ package figure
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 
 	"beadwell/calib"
@@ -16,7 +17,7 @@ func trace(r *calib.Result, a *calib.Axis) Figure {
 	if len(s.x) == 0 {
 		return f.empty("the result holds no trace of this axis")
 	}
-	unit := scale{quantity: "time", unit: "s", factor: 1}
+	unit := scale{quantity: "time", unit: "s", si: "s", factor: 1}
 	if times.high-times.low < 0.2 {
 		unit.unit, unit.factor = "ms", 1e3
 	}
@@ -28,12 +29,15 @@ func trace(r *calib.Result, a *calib.Axis) Figure {
 	p.add(s)
 	f.panels = []panel{p}
 	f.key = []keyItem{{"smallest to largest position", envelope, record}}
+	for _, kind := range []keyItem{{"doubtful", strip, doubt}, {"bad", strip, alarm}} {
+		if slices.ContainsFunc(marks, func(s series) bool { return s.ink == kind.ink }) {
+			f.key = append(f.key, kind)
+		}
+	}
 	if len(marks) > 0 {
-		f.key = append(f.key, keyItem{"finding", strip, alarm})
 		f.height += 3 // for their names
 	}
-	f.Description = describeTrace(a, times, reach, named)
-	return f
+	return f.described(describeTrace(a, times, reach, named))
 }
 
 // envelopeOf returns the trace in at most maxPoints stretches.
@@ -59,7 +63,7 @@ func envelopeOf(a *calib.Axis) (s series, times, reach extent) {
 			low, high = math.NaN(), math.NaN()
 		}
 		middle := start + (float64(from)+float64(min(group, n-from))/2)*step
-		s.x, s.y = append(s.x, middle), append(s.y, (low+high)/2)
+		s.x = append(s.x, middle)
 		s.low, s.high = append(s.low, low), append(s.high, high)
 	}
 	if reach.empty() {

@@ -60,11 +60,6 @@ func pieces(label string) []piece {
 	return out
 }
 
-// plainText is a label without its markup, for SVG readers and CSV: "nm^2/Hz".
-func plainText(label string) string {
-	return strings.NewReplacer("^{", "^", "}", "").Replace(label)
-}
-
 // minus sets a hyphen that stands before a digit, at the start or after a
 // space or bracket, as a minus sign.
 func minus(s string) string {

@@ -5,6 +5,7 @@ import (
 	"crypto/sha256"
 	_ "embed"
 	"encoding/base64"
+	"encoding/json"
 	"fmt"
 	"html/template"
 	"io"
@@ -63,5 +64,9 @@ func embeddedJSON(r *calib.Result) (template.JS, error) {
 	if err := JSON(&b, r); err != nil {
 		return "", err
 	}
-	return template.JS("\n" + strings.NewReplacer("<", `\u003c`, ">", `\u003e`, "&", `\u0026`).Replace(b.String())), nil
+	var compact bytes.Buffer
+	if err := json.Compact(&compact, b.Bytes()); err != nil {
+		return "", fmt.Errorf("JSON of %s: %w", Plain(InputName(r.Input)), err)
+	}
+	return template.JS(strings.NewReplacer("<", `\u003c`, ">", `\u003e`, "&", `\u0026`).Replace(compact.String())), nil
 }

@@ -47,8 +47,8 @@ type figureGroup struct {
 }
 
 type shownFigure struct {
-	Name, Title, Description string
-	SVG                      template.HTML
+	Name, Title, Caption string
+	SVG                  template.HTML
 }
 
 func pageOf(r *calib.Result) (page, error) {
@@ -189,7 +189,7 @@ func figureGroups(r *calib.Result) []figureGroup {
 			last = heading
 		}
 		group := &groups[len(groups)-1]
-		group.Figures = append(group.Figures, shownFigure{f.Name, f.Title, f.Description, template.HTML(figure.Inline(f))})
+		group.Figures = append(group.Figures, shownFigure{f.Name, f.Title, f.Caption, template.HTML(figure.Inline(f))})
 	}
 	return groups
 }

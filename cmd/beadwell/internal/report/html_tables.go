@@ -2,6 +2,7 @@ package report
 
 import (
 	"fmt"
+	"math"
 	"strings"
 
 	"beadwell/calib"
@@ -177,7 +178,7 @@ func budgetRow(line calib.BudgetLine) tableRow {
 	value := dash
 	if line.Value.Known() {
 		unit := budgetUnit(line.Unit)
-		value = typeset(withUnit(number(line.Value, &calib.Uncertainty{Standard: line.StandardUncertainty}, unit), unit))
+		value = typeset(withUnit(withStandard(line.Value, line.StandardUncertainty, unit), unit))
 	}
 	sensitivity := dash
 	if line.Sensitivity.Known() {
@@ -189,6 +190,16 @@ func budgetRow(line calib.BudgetLine) tableRow {
 	}
 	return tableRow{Name: typeset(line.Input), Cells: []cellText{{Text: value, Number: true}, {Text: sensitivity, Number: true},
 		{Text: percent(line.Contribution), Number: true}, share}}
+}
+
+// withStandard prints a value with the standard uncertainty that was stated for
+// it, if one was, without the unit.
+func withStandard(value, standard calib.Float, unit string) string {
+	if !standard.Known() {
+		return number(value, nil, unit)
+	}
+	nowhere := [2]calib.Float{calib.Float(math.NaN()), calib.Float(math.NaN())}
+	return number(value, &calib.Uncertainty{Standard: standard, Interval68: nowhere, Interval95: nowhere}, unit)
 }
 
 // budgetUnit is the unit in which an input is read.

@@ -1,9 +1,6 @@
 package report
 
-import (
-	"regexp"
-	"strings"
-)
+import "regexp"
 
 // The plain spellings of units and minus signs in printed quantities, and what
 // a page shows instead. A unit counts only behind a number, a space or a slash
@@ -14,12 +11,13 @@ var (
 	squareUnit  = regexp.MustCompile(`\b([nµ]?m)2\b`)
 	cubicUnit   = regexp.MustCompile(`\b(kg/m|g/cm)3\b`)
 	celsius     = regexp.MustCompile(`([\d)\]]) C\b`)
+	joined      = regexp.MustCompile(`([\d)\]]) (%|°C|[pnµmk]?[mNsVWKJ]\b|[mk]?Hz|mPa|nm²|µm²|pN/µm)`)
 	minusBefore = regexp.MustCompile(`(^|[\s(\[])-(\d)`)
 )
 
 // typeset makes text safe to show and spells its units as print does: "um" as
 // "µm", "nm2" as "nm²", "C" behind a number as "°C", a hyphen before a number
-// as a minus sign.
+// as a minus sign. A number and its unit stay on one line.
 func typeset(s string) string {
 	s = Plain(s)
 	s = microUnit.ReplaceAllString(s, "${1}µ${2}")
@@ -28,5 +26,5 @@ func typeset(s string) string {
 	s = cubicUnit.ReplaceAllString(s, "${1}³")
 	s = celsius.ReplaceAllString(s, "${1} °C")
 	s = minusBefore.ReplaceAllString(s, "${1}−${2}")
-	return strings.ReplaceAll(s, " %", "\u00a0%")
+	return joined.ReplaceAllString(s, "${1}\u00a0${2}")
 }
