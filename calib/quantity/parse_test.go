@@ -66,6 +66,9 @@ func TestParse(t *testing.T) {
 		{"500 s-1", Frequency, 500, -1},
 		{"400 fps", Frequency, 400, -1},
 		{"2 min", Time, 120, -1},
+		{"2 min +- 0.5 min", Time, 120, 30},
+		{"2 min +- 5 %", Time, 120, 6},
+		{"3 1/min", Frequency, 0.05, -1},
 		{"0.95(2) mPa s", Viscosity, 0.95e-3, 0.02e-3},
 		{"0.95(2) mPa·s", Viscosity, 0.95e-3, 0.02e-3},
 		{"0.95 cP", Viscosity, 0.95e-3, -1}, // 1 P = 0.1 Pa s, SI brochure (CGS units)
@@ -133,6 +136,18 @@ func TestParsePicksDimension(t *testing.T) {
 	}
 }
 
+// The SI prefixes, from the SI brochure (9th edition, Table 7).
+func TestPrefixes(t *testing.T) {
+	for prefix, want := range map[string]float64{"a": 1e-18, "f": 1e-15, "p": 1e-12, "n": 1e-9, "u": 1e-6, "m": 1e-3, "c": 1e-2, "d": 1e-1, "k": 1e3, "M": 1e6, "G": 1e9} {
+		if got, err := Parse("1 "+prefix+"m", Length); err != nil || got.SI != want {
+			t.Errorf("1 %sm = %v, %v; want %v m", prefix, got.SI, err, want)
+		}
+	}
+	if got, err := Parse("1 um2/s", Diffusion); err != nil || got.SI != 1e-12 {
+		t.Errorf("1 um2/s = %v, %v; want 1e-12: a power takes the prefix with it", got.SI, err)
+	}
+}
+
 func TestParseUnitIsPlain(t *testing.T) {
 	for text, want := range map[string]string{"1 \u00b5m": "um", "1 \u03bcm": "um", "1um": "um"} {
 		if got, _ := Parse(text, Length); got.Unit != want {
@@ -191,6 +206,8 @@ func TestParseErrors(t *testing.T) {
 		{"(1.02 +- 0.03 um", Length, "is not a number with a unit"},
 		{"24.5 C +- 2 %", Temperature, "natural zero"},
 		{"24.5 C/1", Temperature, "unknown unit"},
+		{"24.5 C2", Temperature, "unknown unit"},
+		{"2 kfps", Frequency, "unknown unit"},
 		{"24.5 F", Temperature, "unknown unit"},
 		{"1 N/m W", StiffnessPerPower, "unknown unit"},
 		{"1 um//V", LengthPerVoltage, "unknown unit"},

@@ -197,9 +197,7 @@ func (d *document) keyValue(prefix []string, n *unstable.Node) {
 	switch {
 	case inner && (len(path) == 1 && knownTable(path) || ok && axis == "" && key.PerAxis):
 		for it := value.Children(); it.Next(); {
-			if it.Node().Kind == unstable.KeyValue {
-				d.keyValue(path, it.Node())
-			}
+			d.keyValue(path, it.Node())
 		}
 	case !ok && d.full():
 		d.report(first, nil)
@@ -270,9 +268,6 @@ func (d *document) list(value *unstable.Node) (string, *unstable.Node, *Error) {
 	var parts []string
 	for it := value.Children(); it.Next(); {
 		item := it.Node()
-		if item.Kind == unstable.Comment {
-			continue
-		}
 		if item.Kind != unstable.String {
 			return "", nil, &Error{Problem: "has an item that is not a text", Hint: `write every item in quotation marks, such as ["49 Hz to 51 Hz"]`}
 		}

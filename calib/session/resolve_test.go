@@ -82,6 +82,27 @@ func TestForTrackExclusive(t *testing.T) {
 	}
 }
 
+// The axis of the highest origin decides between the two of a pair.
+func TestForTrackExclusiveByAxis(t *testing.T) {
+	s, err := ForTrack(Sources{Session: given(t, FromSession, "", "recording.noise", "", "4 nm"),
+		Row: given(t, FromTracks, "", "recording.background", "", "b.csv"), Flags: given(t, FromFlag, "", "recording.noise", "x", "5 nm")})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if noise, _ := s.Lookup("recording.noise", "x"); noise.Text != "5 nm" || text(t, s, "recording.background") != "" {
+		t.Errorf("a flag's noise leaves %+v", s.All())
+	}
+}
+
+// An exposure that is overridden for all axes is reported once.
+func TestExposureOnce(t *testing.T) {
+	_, err := ForTrack(Sources{Session: given(t, FromSession, "", "recording.rate", "", "2 kHz", "recording.exposure", "x", "0.1 ms"),
+		Flags: given(t, FromFlag, "--exposure", "recording.exposure", "", "1 ms")})
+	if err == nil || strings.Count(err.Error(), "is longer") != 1 {
+		t.Errorf("%v, want one problem", err)
+	}
+}
+
 func TestForTrackErrors(t *testing.T) {
 	tests := []struct {
 		name    string
@@ -91,6 +112,7 @@ func TestForTrackErrors(t *testing.T) {
 		{"both", Sources{Flags: given(t, FromFlag, "--viscosity", "medium.fluid", "", "water", "medium.viscosity", "", "1 mPa s")}, "--viscosity \"1 mPa s\" is given beside medium.fluid \"water\""},
 		{"density alone", Sources{Session: given(t, FromSession, "s.toml:2:1", "medium.density", "", "1 g/cm3")}, "s.toml:2:1: medium.density \"1 g/cm3\" has no effect without medium.viscosity"},
 		{"heating alone", Sources{Session: given(t, FromSession, "s.toml:2:1", "laser.heating", "", "36 K/W")}, "laser.heating \"36 K/W\" has no effect without laser.power"},
+		{"heating, driven", Sources{Row: given(t, FromTracks, "t.csv:2:1", "laser.heating", "", "36 K/W", "role", "", "driven")}, "has no effect without laser.power"},
 		{"exposure of a row", Sources{Session: given(t, FromSession, "s.toml:2:1", "recording.rate", "", "2 kHz"), Row: given(t, FromTracks, "t.csv:2:1", "recording.exposure", "", "1 ms")}, "t.csv:2:1: recording.exposure \"1 ms\" is longer than the 0.5 ms"},
 		{"exposure and header", Sources{Header: given(t, FromHeader, "a.csv", "recording.rate", "", "2000 Hz"), Flags: given(t, FromFlag, "--exposure", "recording.exposure", "", "1 ms")}, "--exposure \"1 ms\" is longer than the 0.5 ms"},
 		{"cold saline", Sources{Session: given(t, FromSession, "s.toml:2:1", "medium.fluid", "", "saline 0.15 mol/kg", "medium.temperature", "", "5 C")}, "s.toml:2:1: medium.temperature \"5 C\" does not fit medium.fluid \"saline 0.15 mol/kg\""},
@@ -108,7 +130,8 @@ func TestForTrackErrors(t *testing.T) {
 }
 
 func TestContradictions(t *testing.T) {
-	header := given(t, FromHeader, "a.csv:1:1", "recording.rate", "", "1998.0(5) Hz", "recording.unit", "x", "um", "recording.unit", "z", "V", "recording.pixel", "", "65 nm")
+	header := given(t, FromHeader, "a.csv:1:1", "recording.rate", "", "1998.0(5) Hz", "recording.unit", "x", "um", "recording.unit", "z", "V", "recording.pixel", "", "65 nm",
+		"recording.sensitivity", "", "1 um/V")
 	tests := []struct {
 		name       string
 		origin     Origin
@@ -126,11 +149,13 @@ func TestContradictions(t *testing.T) {
 		{"unit for another", FromSession, []string{"recording.unit", "y", "nm"}, "", false},
 		{"scale", FromSession, []string{"recording.pixel", "x", "80 nm"}, "recording.pixel.x \"80 nm\" contradicts", false},
 		{"scale for all", FromSession, []string{"recording.pixel", "", "80 nm"}, "recording.pixel \"80 nm\" contradicts", false},
+		{"scale per other unit", FromSession, []string{"recording.sensitivity", "", "1 um/count"}, "recording.sensitivity \"1 um/count\" contradicts", false},
 		{"not of the file", FromSession, []string{"chamber.height", "", "8 um"}, "", false},
 	}
 	for _, tt := range tests {
 		s := given(t, tt.origin, "here", tt.triples...)
 		s.merge(header)
+		s.merge(given(t, FromDefault, "", "recording.pixel", "y", "1 um")) // a lower origin's axis adds no second report
 		got := s.Contradictions()
 		if (tt.want != "") != (len(got) == 1) {
 			t.Errorf("%s: %d contradictions: %v", tt.name, len(got), got)

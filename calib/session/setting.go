@@ -35,7 +35,8 @@ type Settings struct {
 // Set reads the text of one setting and keeps it under its origin, in place of
 // one that this origin gave before. where is the place for messages and
 // results: "session.toml:4:12", or "--diameter". A setting that may differ between axes
-// takes an axis, or a text that names them: "x=4(1) nm, y=5 nm".
+// takes an axis, or a text that names them: "x=4(1) nm, y=5 nm". A flag that is
+// repeated is set once for each value, but a list (fit.exclude) once, joined by semicolons.
 //
 // The error is an *Error; the settings are unchanged then.
 func (s *Settings) Set(key, axis, text string, origin Origin, where string) error {

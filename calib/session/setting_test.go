@@ -119,6 +119,7 @@ func TestSetErrors(t *testing.T) {
 		{"detector.alpha", "", "1.2", "outside the possible range, 0 to 1"},
 		{"fit.band", "", "10 Hz", "is not a range"},
 		{"fit.band", "", "8 kHz to 10 Hz", "does not rise"},
+		{"fit.band", "", "10 Hz to 10 Hz", "does not rise"},
 		{"fit.band", "", "10 to 20", "has no unit"},
 		{"fit.band", "", "-1 Hz to 20 Hz", "starts below zero"},
 		{"fit.band", "", "10(1) Hz to 20 Hz", "has an uncertainty"},
@@ -187,6 +188,9 @@ func TestWordsAndBands(t *testing.T) {
 	exclude, _ := s.Lookup("fit.exclude", "")
 	if diff := cmp.Diff([]Interval{{49, 51}, {100, 110}}, exclude.Bands); diff != "" {
 		t.Errorf("exclude (-want +got):\n%s", diff)
+	}
+	if err := s.Set("recording.noise", "", "4(5) nm", FromFlag, ""); err != nil {
+		t.Errorf("a noise that may be zero: %v", err)
 	}
 	exposure, ok := s.Lookup("recording.exposure", "x")
 	if !ok || exposure.Value.SI != 0 || exposure.Value.Unit != "s" || exposure.Word != "" {

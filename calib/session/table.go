@@ -106,14 +106,16 @@ func tableError(name string, skipped int, err error) *Error {
 	e := &Error{Where: name, Problem: err.Error()}
 	var parse *csv.ParseError
 	if errors.As(err, &parse) {
-		line := parse.Line
+		line, column := parse.Line, parse.Column
 		e.Problem = parse.Err.Error()
 		if errors.Is(err, csv.ErrQuote) || errors.Is(err, csv.ErrBareQuote) {
-			line = parse.StartLine
+			if parse.StartLine != line {
+				line, column = parse.StartLine, 1 // where it opened, not where the file ended
+			}
 			e.Problem = "a quotation mark is not closed, or stands inside a cell"
 			e.Hint = "close it, or write two for one that belongs to the text"
 		}
-		e.Where = place(name, line+skipped, parse.Column)
+		e.Where = place(name, line+skipped, column)
 	}
 	return e
 }

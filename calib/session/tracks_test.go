@@ -142,6 +142,7 @@ func TestTracksErrors(t *testing.T) {
 		{"file\nday\\a.csv", "has a backslash"},
 		{"file\n\"a\nb.csv\"", "has a line break"},
 		{"file,height\n\"a.csv,1 um\n", "t.csv:2:"},
+		{"file,height\na.csv,\"1 um\nb.csv,2 um\n", "t.csv:2:1: a quotation mark is not closed"},
 		{"file;power\na.csv;2,000 mW", "t.csv:2:7: laser.power \"2,000 mW\" may have a decimal comma or a mark between thousands"},
 		{"file,power\na.csv,\"2,000 mW\"", "has a comma in its number"},
 		{"file,noise,background\na.csv,1 nm,b.csv", "recording.background \"b.csv\" is given beside recording.noise"},
