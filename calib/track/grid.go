@@ -79,49 +79,54 @@ func (g *grid) fits() bool {
 }
 
 // fitLine fits t = start + interval*place by least squares (place is 0, 1, 2, ...
-// when nil). Sums run over blocks, which keeps rounding at the level of one block.
+// when nil).
 func fitLine(t []float64, place []int) grid {
 	n := float64(len(t))
+	first, centre, xx := t[0], (n-1)/2, n*(n*n-1)/12
+	if place != nil {
+		centre = blockSums(len(t), func(lo, hi int) (s sums) {
+			for _, k := range place[lo:hi] {
+				s.a += float64(k)
+			}
+			return s
+		}).a / n
+		xx = blockSums(len(t), func(lo, hi int) (s sums) {
+			for _, k := range place[lo:hi] {
+				d := float64(k) - centre
+				s.a += d * d
+			}
+			return s
+		}).a
+	}
 	at := func(i int) float64 {
 		if place == nil {
 			return float64(i)
 		}
 		return float64(place[i])
 	}
-	first, centre := t[0], (n-1)/2
-	if place != nil {
-		centre = blockSum(len(t), at) / n
-	}
-	mean := blockSum(len(t), func(i int) float64 { return t[i] - first }) / n
-	xx := n * (n*n - 1) / 12
-	if place != nil {
-		xx = blockSum(len(t), func(i int) float64 { d := at(i) - centre; return d * d })
-	}
-	xt := blockSum(len(t), func(i int) float64 { return (at(i) - centre) * (t[i] - first - mean) })
-	g := grid{interval: xt / xx, place: place}
-	offset := mean - g.interval*centre
-	g.start = first + offset
-	squares := blockSum(len(t), func(i int) float64 {
-		r := math.Abs(t[i] - first - offset - g.interval*at(i))
-		g.max = max(g.max, r)
-		return r * r
-	})
-	g.rms = math.Sqrt(squares / n)
-	g.slopeU = math.Sqrt(squares / max(n-2, 1) / xx)
-	return g
-}
-
-// blockSum adds f(0) to f(n-1) in blocks.
-func blockSum(n int, f func(int) float64) float64 {
-	total := 0.0
-	for from := 0; from < n; from += 4096 {
-		part := 0.0
-		for i := from; i < min(from+4096, n); i++ {
-			part += f(i)
+	moments := blockSums(len(t), func(lo, hi int) (s sums) {
+		for i := lo; i < hi; i++ {
+			d := t[i] - first
+			s.a += d
+			s.b += (at(i) - centre) * d
 		}
-		total += part
-	}
-	return total
+		return s
+	})
+	g := grid{interval: moments.b / xx, place: place}
+	offset := moments.a/n - g.interval*centre
+	g.start = first + offset
+	residuals := blockSums(len(t), func(lo, hi int) (s sums) {
+		for i := lo; i < hi; i++ {
+			r := math.Abs(t[i] - first - offset - g.interval*at(i))
+			s.a += r * r
+			s.max = max(s.max, r)
+		}
+		return s
+	})
+	g.max = residuals.max
+	g.rms = math.Sqrt(residuals.a / n)
+	g.slopeU = math.Sqrt(residuals.a / max(n-2, 1) / xx)
+	return g
 }
 
 // isRounded tells whether rounding alone explains the distance of every stamp

@@ -18,7 +18,7 @@ var tens = [...]float64{1e0, 1e1, 1e2, 1e3, 1e4, 1e5, 1e6, 1e7, 1e8, 1e9, 1e10, 
 	1e12, 1e13, 1e14, 1e15, 1e16, 1e17, 1e18, 1e19, 1e20, 1e21, 1e22}
 
 // wholeTens holds the powers of ten by which up to eight digits are appended.
-var wholeTens = [...]uint64{1, 10, 100, 1000, 10000, 100000, 1000000, 10000000, 100000000}
+var wholeTens = [16]uint64{1, 10, 100, 1000, 10000, 100000, 1000000, 10000000, 100000000}
 
 // eightDigits reads the run of decimal digits at the start of the eight bytes
 // of w (first byte lowest) and returns its value and its length, 0 to 8.
@@ -31,6 +31,40 @@ func eightDigits(w uint64) (value uint64, n int) {
 	x = (x * (1 + 10<<8)) >> 8 & 0x00ff00ff00ff00ff
 	x = (x * (1 + 100<<16)) >> 16 & 0x0000ffff0000ffff
 	return (x * (1 + 10000<<32)) >> 32, n
+}
+
+// plainNumber reads the commonest form: an optional minus, digits, a decimal
+// mark with at most eight digits behind it, fifteen digits in all, no exponent.
+// It is fastNumber without the rare cases, and reports false for them.
+func plainNumber(b []byte, i int, mark byte, shift int) (v float64, next int, ok bool) {
+	var negative uint64
+	if b[i] == '-' {
+		negative = 1
+	}
+	i += int(negative) // without a branch: the sign of a trace is a coin toss
+	start := i
+	var m uint64
+	for {
+		d := uint64(b[i]) - '0'
+		if d > 9 {
+			break
+		}
+		m = m*10 + d
+		i++
+	}
+	digits, decimals := i-start, 0
+	if b[i] == mark {
+		var more uint64
+		more, decimals = eightDigits(binary.LittleEndian.Uint64(b[i+1:]))
+		m = m*wholeTens[decimals&15] + more
+		i += 1 + decimals
+	}
+	power := decimals - shift
+	if uint(digits+decimals-1) >= 15 || uint(power) > 22 || b[i]-'0' <= 9 || b[i]|0x20 == 'e' {
+		return 0, i, false
+	}
+	v = float64(m) / tens[power]
+	return math.Float64frombits(math.Float64bits(v) | negative<<63), i, true
 }
 
 // fastNumber reads a plain decimal number that starts at b[i]: an optional
@@ -48,7 +82,7 @@ func fastNumber(b []byte, i int, mark byte, shift int) (v float64, next int, ok 
 	if b[i] == '-' {
 		negative = 1
 	}
-	i += int(negative) // without a branch: the sign of a trace is a coin toss
+	i += int(negative)
 	m, n := eightDigits(binary.LittleEndian.Uint64(b[i:]))
 	i += n
 	digits := n

@@ -60,6 +60,9 @@ func TestNumbersEqualParseFloat(t *testing.T) {
 			t.Fatalf("ParseFloat(%q): %v", text, err)
 		}
 		v, next, ok := fastNumber(padded(text), 0, '.', 0)
+		if p, at, easy := plainNumber(padded(text), 0, '.', 0); easy && (!ok || at != next || math.Float64bits(p) != math.Float64bits(v)) {
+			t.Fatalf("plainNumber(%q) = %v, fastNumber says %v", text, p, v)
+		}
 		if !ok {
 			declined++
 			if v, err = generalNumber(text, '.', 0, 0); err != nil {

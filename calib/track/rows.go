@@ -33,7 +33,8 @@ type parser struct {
 	name   string
 	beads  *beadIndex
 	out    [][]float64
-	cells  []cell // room for the fields of a row
+	fast   [][]float64 // the same by field
+	cells  []cell      // room for the fields of a row
 	bad    []badLine
 	total  int   // bad lines, with those that are not in bad
 	skip   []int // rows that hold no sample
@@ -126,9 +127,22 @@ func (p *parser) run(in *feed) {
 		if err != nil {
 			return
 		}
-		p.out = in.store.columns
+		p.setColumns(in.store.columns)
 		p.block(b)
 		in.store.release()
+	}
+}
+
+// setColumns takes the columns to write to.
+func (p *parser) setColumns(columns [][]float64) {
+	p.out, p.fast = columns, p.fast[:0]
+	for k := range p.lay.fields {
+		f := &p.lay.fields[k]
+		if f.kind == skipField {
+			p.fast = append(p.fast, nil)
+		} else {
+			p.fast = append(p.fast, columns[f.out])
+		}
 	}
 }
 
@@ -157,21 +171,22 @@ func (p *parser) block(b block) {
 func (p *parser) fastRow(b []byte, i, row int) (next int, ok bool) {
 	lay := p.lay
 	delimiter, mark, blanks := lay.delimiter, lay.mark, lay.padded
-	last := len(lay.fields) - 1
-	for k := range lay.fields {
-		f := &lay.fields[k]
+	fields := lay.fields
+	last := len(fields) - 1
+	for k := range fields {
+		f := &fields[k]
 		if blanks {
 			i = skipBlanks(b, i, delimiter)
 		}
 		switch f.kind {
 		case numberField:
-			v, after, ok := fastNumber(b, i, mark, f.shift)
+			v, after, ok := plainNumber(b, i, mark, f.shift)
 			if !ok {
-				if v, after, ok = fastMissing(b, i, delimiter, last); !ok {
+				if v, after, ok = p.rareNumber(b, i, f.shift); !ok {
 					return 0, false
 				}
 			}
-			p.out[f.out][row] = v
+			p.fast[k][row] = v
 			i = after
 		case skipField:
 			for b[i] != delimiter && b[i] != '\n' {
@@ -218,6 +233,14 @@ func skipBlanks(b []byte, i int, delimiter byte) int {
 		i++
 	}
 	return i
+}
+
+// rareNumber reads what plainNumber declines and is still a number or a gap.
+func (p *parser) rareNumber(b []byte, i, shift int) (v float64, next int, ok bool) {
+	if v, next, ok = fastNumber(b, i, p.lay.mark, shift); ok {
+		return v, next, true
+	}
+	return fastMissing(b, i, p.lay.delimiter, len(p.lay.fields)-1)
 }
 
 // fastMissing reads an empty cell or "nan" in any case.

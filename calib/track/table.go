@@ -170,8 +170,7 @@ func (tab *table) recording(g group, opt Options, several bool) (*Recording, err
 	for _, u := range g.axes {
 		axis := Axis{Name: string(u.axis), Header: tab.plan.columns[u.column].header, Unit: u.unit.name, ToMetre: u.unit.toMetre()}
 		axis.Values = grid.scatter(tab.si(u, g.pick(tab.columns[u.out])))
-		axis.count()
-		if why := constant(&axis); why != "" {
+		if why := axis.survey(); why != "" {
 			if _, named := opt.Columns[axis.Name]; named {
 				return nil, &Error{File: rec.Name, Code: CodeEmpty, What: fmt.Sprintf("column %s for %s %s", quoted(axis.Header), axis.Name, why), Remedy: "name another column (--columns)"}
 			}
@@ -234,22 +233,34 @@ func (g *grid) scatter(values []float64) []float64 {
 	return out
 }
 
-// constant says why an axis carries no motion; empty if it does.
-func constant(a *Axis) string {
-	if a.Missing == len(a.Values) {
-		return "holds no number"
-	}
-	first := math.NaN()
-	for _, v := range a.Values {
-		switch {
-		case v != v || v == first:
-		case first != first:
-			first = v
-		default:
-			return ""
+// survey counts the missing values and says why an axis carries no motion; empty
+// if it does.
+func (a *Axis) survey() string {
+	values := a.Values
+	found := blockSums(len(values), func(lo, hi int) (s sums) {
+		low, high := math.Inf(1), math.Inf(-1)
+		missing := 0
+		for _, v := range values[lo:hi] {
+			switch {
+			case v != v:
+				missing++
+			case v < low:
+				low = v
+				high = max(high, v)
+			case v > high:
+				high = v
+			}
 		}
+		return sums{a: float64(missing), max: high, min: low}
+	})
+	a.Missing = int(found.a)
+	switch {
+	case a.Missing == len(values):
+		return "holds no number"
+	case found.min == found.max:
+		return "has one value in every row"
 	}
-	return "has one value in every row"
+	return ""
 }
 
 // countMissing counts the grid points without a value on any axis.

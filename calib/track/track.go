@@ -89,13 +89,3 @@ type Note struct {
 	Code string // short and stable, for programs
 	Text string
 }
-
-// count sets Missing from Values.
-func (a *Axis) count() {
-	a.Missing = 0
-	for _, v := range a.Values {
-		if v != v {
-			a.Missing++
-		}
-	}
-}
