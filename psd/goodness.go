@@ -1,0 +1,165 @@
+package psd
+
+import (
+	"math"
+
+	"beadwell/calib/relaxation"
+
+	"gonum.org/v1/gonum/stat/distuv"
+)
+
+// Goodness is a chi-square test of the fitted spectrum.
+type Goodness struct {
+	ChiSquare        float64
+	DegreesOfFreedom int
+	PValue           float64
+	Points           []Point
+}
+
+// Point is a block of the spectrum.
+type Point struct {
+	Frequency float64 // Hz
+	Power     float64 // one-sided [m2/Hz]
+	Model     float64 // one-sided [m2/Hz]
+	Standard  float64 // standard uncertainty of Power, from the model [m2/Hz]
+	Residual  float64 // standard normal deviate of Power
+	Bins      int
+}
+
+// leastWeight is the number of complex periodogram values in a block of the test: from
+// 12 on, the cube root of their mean is normal to within 0.3 % of probability
+// (Wilson and Hilferty, Proc. Natl. Acad. Sci. 17 (1931) 684).
+const leastWeight = 12
+
+// mostPoints bounds the number of blocks of the test: it is meant to see broad
+// misfits, which many narrow blocks would drown.
+const mostPoints = 60
+
+// goodness groups the blocks of a fit. Each group's mean ratio of data to model is
+// gamma distributed with its weight as shape; its cube root is turned into a normal
+// deviate, and the squares are added. As many degrees of freedom as parameters were
+// fitted are taken off.
+func goodness(f *Fit) Goodness {
+	g := Goodness{Points: group(f)}
+	for _, p := range g.Points {
+		g.ChiSquare += p.Residual * p.Residual
+	}
+	fitted := 3
+	if f.Problem.Directions != nil {
+		fitted = len(f.Problem.Directions)
+	}
+	g.DegreesOfFreedom = len(g.Points) - fitted
+	g.PValue = math.NaN()
+	if g.DegreesOfFreedom > 0 {
+		g.PValue = distuv.ChiSquared{K: float64(g.DegreesOfFreedom)}.Survival(g.ChiSquare)
+	}
+	return g
+}
+
+func group(f *Fit) []Point {
+	b := f.Blocks
+	model := f.modelAt
+	first, last := b.Frequency[0], b.Frequency[len(b.Frequency)-1]
+	growth := math.Pow(last/first*1.0001, 1.0/mostPoints)
+	var points []Point
+	var weight, freq, ratio float64
+	bins := 0
+	next := first * growth
+	flush := func() {
+		if weight == 0 {
+			return
+		}
+		at := freq / weight
+		r := ratio / weight
+		// Wilson and Hilferty: cube root of chi-square over its 2 w degrees of freedom
+		v := 1 / (9 * weight)
+		z := (math.Cbrt(r) - (1 - v)) / math.Sqrt(v)
+		rate := 1 / f.Interval
+		m := 2 * model(at) / rate
+		points = append(points, Point{Frequency: at * rate, Power: r * m, Model: m,
+			Standard: m / math.Sqrt(weight), Residual: z, Bins: bins})
+		weight, freq, ratio, bins = 0, 0, 0, 0
+	}
+	for i, w := range b.Weight {
+		if weight >= leastWeight && b.Frequency[i] >= next {
+			flush()
+			next = b.Frequency[i] * growth
+		}
+		weight += w
+		freq += w * b.Frequency[i]
+		ratio += w * b.Power[i] / f.modelBlock(i)
+		bins += b.Bins[i]
+	}
+	if weight < leastWeight && len(points) > 0 { // too small a rest is not tested
+		return points
+	}
+	flush()
+	return points
+}
+
+// modelAt returns P/dt, two-sided [m2], at a frequency in units of the rate.
+func (f *Fit) modelAt(x float64) float64 {
+	return f.Spectrum(x/f.Interval) / 2 / f.Interval
+}
+
+// Spectrum returns the fitted one-sided spectrum [m2/Hz] at a frequency [Hz].
+func (f *Fit) Spectrum(hz float64) float64 {
+	if s, ok := f.Problem.Likelihood.(interface {
+		Density(p relaxation.Parameters, hz float64) float64
+	}); ok {
+		return s.Density(f.Maximum.At, hz)
+	}
+	return 2 * f.Process().Spectrum(hz)
+}
+
+// modelBlock returns P/dt [m2] of a block.
+func (f *Fit) modelBlock(i int) float64 { return f.modelAt(f.Blocks.Frequency[i]) }
+
+// SpectrumPoints returns the blocked spectrum over the whole band, kept frequencies
+// and others, in at most about count blocks of equal width on a logarithmic scale.
+func (f *Fit) SpectrumPoints(r *Record, count int) (points []Point, used []bool) {
+	n := len(r.Power) - 1
+	skip := r.skip(f.givenBand(r), f.Excluded)
+	growth := math.Pow(float64(n), 1/float64(count))
+	scale := 2 / r.Rate / float64(r.Length)
+	if r.Missing > 0 {
+		scale *= float64(len(r.X)) / float64(r.Observed())
+	}
+	for k := 1; k <= n; {
+		end := min(n, max(k, int(float64(k)*growth)))
+		var sum, model, freq [2]float64
+		var bins [2]int
+		for j := k; j <= end; j++ {
+			which := 0
+			if skip(j) {
+				which = 1
+			}
+			hz := float64(j) * r.Rate / float64(r.Length)
+			sum[which] += r.Power[j] * scale
+			freq[which] += hz
+			bins[which]++
+		}
+		for which, b := range bins {
+			if b == 0 {
+				continue
+			}
+			p := Point{Frequency: freq[which] / float64(b), Power: sum[which] / float64(b), Bins: b}
+			model[which] = f.Spectrum(p.Frequency)
+			p.Model = model[which]
+			p.Standard = p.Model / math.Sqrt(float64(b))
+			v := 1 / (9 * float64(b))
+			p.Residual = (math.Cbrt(p.Power/p.Model) - (1 - v)) / math.Sqrt(v)
+			points = append(points, p)
+			used = append(used, which == 0)
+		}
+		k = end + 1
+	}
+	return points, used
+}
+
+func (f *Fit) givenBand(r *Record) Range {
+	if f.Band.Low <= r.Rate/float64(r.Length) && f.Band.High >= r.Rate/2 {
+		return Range{}
+	}
+	return f.Band
+}
