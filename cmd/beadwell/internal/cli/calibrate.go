@@ -2,6 +2,7 @@ package cli
 
 import (
 	"context"
+	"errors"
 
 	"github.com/spf13/cobra"
 
@@ -30,20 +31,21 @@ flags, which go before both. The bead's diameter has no default. TRACK is a text
 file or a NumPy array, compressed by gzip or zstd or not; - is standard input.
 
 The table on standard output, for each axis:
-  stiffness            adopted value in pN/um; in brackets the combined standard
-                       uncertainty of its last digits: 52.3(11) is 52.3 with 1.1.
-                       A lopsided one is shown as its 68 % interval: 52.3 [51.4, 53.9]
-  95 % interval        of the adopted value, pN/um, with the inputs' uncertainties
-  statistical          standard uncertainty when the inputs are exact, pN/um
-  corner frequency     stiffness through drag: 2 pi x drag x corner frequency, pN/um
-  relaxation time      stiffness through drag: drag / relaxation time, pN/um
-  variance             stiffness through amplitude: kT / variance, pN/um
-  MSD plateau          stiffness through amplitude: 2 kT / plateau, pN/um
-  spectrum             stiffness through amplitude: kT / variance of the fitted spectrum, pN/um
-  computed, measured   drag coefficient: Stokes x wall factor, and kT / D, nN s/m
-  ratio                measured over computed drag
-  p                    chance of a larger disagreement: between the two routes, between
-                       the estimates through amplitude, between all`
+
+    stiffness            adopted value in pN/um; in brackets the combined standard
+                         uncertainty of its last digits: 52.3(11) is 52.3 with 1.1.
+                         A lopsided one is shown as its 68 % interval: 52.3 [51.4, 53.9]
+    95 % interval        of the adopted value, pN/um, with the inputs' uncertainties
+    statistical          standard uncertainty when the inputs are exact, pN/um
+    corner frequency     stiffness through drag: 2 pi x drag x corner frequency, pN/um
+    relaxation time      stiffness through drag: drag / relaxation time, pN/um
+    variance             stiffness through amplitude: kT / variance, pN/um
+    MSD plateau          stiffness through amplitude: 2 kT / plateau, pN/um
+    spectrum             stiffness through amplitude: kT / variance of the fitted spectrum, pN/um
+    computed, measured   drag coefficient: Stokes x wall factor, and kT / D, nN s/m
+    ratio                measured over computed drag
+    p                    chance of a larger disagreement: between the two routes, between
+                         the estimates through amplitude, between all`
 
 func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions) error) *cobra.Command {
 	var o calibrateOptions
@@ -122,18 +124,20 @@ func runCalibrate(ctx context.Context, a *app, o calibrateOptions) error {
 	defer writer.close()
 	src := &source{app: a, file: o.session, flags: &o.flags}
 	var outcomes []outcome
+	var unwritten []error
 	for _, path := range o.tracks {
-		outcomes = append(outcomes, a.calibrateTrack(ctx, src, path, o.adopt, created)...)
+		found := a.calibrateTrack(ctx, src, path, o.adopt, created)
 		if err := ctx.Err(); err != nil {
 			return err
 		}
+		unwritten = append(unwritten, writer.writeAll(ctx, found))
+		outcomes = append(outcomes, found...)
 	}
-	unwritten := writer.writeAll(ctx, outcomes)
 	if err := a.printOutcomes(outcomes, o); err != nil {
 		return err
 	}
-	if unwritten != nil {
-		return unwritten
+	if err := errors.Join(unwritten...); err != nil {
+		return err
 	}
 	return conclude(outcomes)
 }

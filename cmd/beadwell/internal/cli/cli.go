@@ -8,6 +8,7 @@ package cli
 import (
 	"bufio"
 	"context"
+	"errors"
 	"fmt"
 	"io"
 	"os"
@@ -95,6 +96,10 @@ func execute(ctx context.Context, args []string, w World) error {
 	root := a.root()
 	root.SetArgs(args)
 	err := root.ExecuteContext(ctx)
+	var known *failure
+	if err != nil && !a.started && !errors.As(err, &known) {
+		err = usageError("see beadwell --help", "%w", err) // the command library refused the command line
+	}
 	if flushed := out.Flush(); flushed != nil {
 		return outputError("standard output", flushed)
 	}
@@ -104,7 +109,8 @@ func execute(ctx context.Context, args []string, w World) error {
 // app carries the world and the command line to the commands.
 type app struct {
 	World
-	args []string
+	args    []string
+	started bool // the command line was understood, and the command runs
 }
 
 // say writes one line to standard error.

@@ -29,11 +29,11 @@ the fluid, Stokes drag, and for each height the wall factor, the drag and the
 diffusion coefficient, for motion parallel and perpendicular to the surface. With a
 stiffness it gives the corner frequency to expect.
 
-  height      of the bead's centre above the nearer surface, um
-  wall factor drag over Stokes drag
-  drag        6 pi x viscosity x radius x wall factor, nN s/m
-  D           kT / drag, um2/s
-  corner      stiffness / (2 pi x drag), Hz`,
+    height       of the bead's centre above the nearer surface, um
+    wall factor  drag over Stokes drag
+    drag         6 pi x viscosity x radius x wall factor, nN s/m
+    D            kT / drag, um2/s
+    corner       stiffness / (2 pi x drag), Hz`,
 		Example: `  beadwell drag --diameter '1.02(3) um' --temperature '24.5(5) C' --height '8.0(5) um' --height far
   beadwell drag --diameter '2 um' --fluid 'glycerol 20 %' --height '5 um' --stiffness '50(1) pN/um'`,
 		Args: noArguments,

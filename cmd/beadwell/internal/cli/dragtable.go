@@ -96,7 +96,7 @@ func (in dragInput) row(height measure, perpendicular bool) (dragRow, error) {
 	chamber := drag.Chamber{Radius: in.diameter.value / 2, Height: height.value, Depth: in.depth.value, Perpendicular: perpendicular}
 	wall, err := chamber.Wall()
 	if err != nil {
-		return dragRow{}, settingsError(err)
+		return dragRow{}, usageError("height and depth are measured to the centre of the bead and from surface to surface", "%w", err)
 	}
 	r := dragRow{height: height, perpendicular: perpendicular, method: wall.Method}
 	lengths := 0.0

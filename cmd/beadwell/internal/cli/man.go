@@ -1,8 +1,6 @@
 package cli
 
 import (
-	"time"
-
 	"github.com/spf13/cobra"
 	"github.com/spf13/cobra/doc"
 )
@@ -18,7 +16,11 @@ there: beadwell.1, beadwell-calibrate.1 and so on.`,
 		RunE: func(cmd *cobra.Command, args []string) error {
 			root := cmd.Root()
 			root.DisableAutoGenTag = true // it carries the date of today
-			header := &doc.GenManHeader{Section: "1", Source: "beadwell", Manual: "beadwell", Date: new(time.Time)}
+			date, err := a.clock()
+			if err != nil {
+				return err
+			}
+			header := &doc.GenManHeader{Section: "1", Source: "beadwell", Manual: "beadwell", Date: &date}
 			if err := doc.GenManTree(root, header, args[0]); err != nil {
 				return outputError(args[0], err)
 			}

@@ -18,13 +18,13 @@ estimates against each other and the recording for faults.
 Results go to standard output, all else to standard error.
 
 Exit status, the same for every command:
-  0    done, and consistent
-  1    something failed inside, or could not be written
-  2    the command line or the settings are wrong
-  3    calibrated, but the cross-check or a health check says not to trust it
-  4    the input data are bad
-  5    several recordings, and some failed
-  130  stopped by Ctrl-C or SIGTERM`
+    0    done, and consistent
+    1    something failed inside, or could not be written
+    2    the command line or the settings are wrong
+    3    calibrated, but the cross-check or a health check says not to trust it
+    4    the input data are bad
+    5    several recordings, and some failed
+    130  stopped by Ctrl-C or SIGTERM`
 
 // root builds the command tree.
 func (a *app) root() *cobra.Command {
@@ -49,6 +49,8 @@ func (a *app) root() *cobra.Command {
 	root.SetVersionTemplate("beadwell {{.Version}}\n")
 	root.SetFlagErrorFunc(flagError)
 	root.SetUsageFunc(usage)
+	root.SetHelpCommand(helpCommand(root))
+	root.PersistentPreRun = func(*cobra.Command, []string) { a.started = true }
 	root.CompletionOptions.HiddenDefaultCmd = false
 	if a.Calibrate != nil {
 		root.AddCommand(a.calibrateCommand(runCalibrate))
@@ -62,6 +64,25 @@ func (a *app) root() *cobra.Command {
 		a.manCommand(),
 	)
 	return root
+}
+
+// helpCommand is help COMMAND, the same as COMMAND --help.
+func helpCommand(root *cobra.Command) *cobra.Command {
+	return &cobra.Command{
+		Use:   "help [COMMAND]",
+		Short: "How a command is called, and what it prints",
+		RunE: func(_ *cobra.Command, args []string) error {
+			if len(args) == 0 {
+				return root.Help()
+			}
+			cmd, rest, err := root.Find(args)
+			if err != nil || cmd == root || len(rest) > 0 {
+				return unknownCommand(root, args[0])
+			}
+			cmd.InitDefaultHelpFlag()
+			return cmd.Help()
+		},
+	}
 }
 
 // unknownCommand suggests the commands that the word is near to.

@@ -1,0 +1,130 @@
+package cli
+
+import (
+	"context"
+	"errors"
+	"os"
+	"path/filepath"
+	"strings"
+	"testing"
+)
+
+// Each file of --out in turn cannot be replaced: the status is not 0, the file
+// that is in the way is untouched, and every other file is whole, old or new.
+func TestFaultWalk(t *testing.T) {
+	folder := t.TempDir()
+	track := writeTrack(t, folder, "run.csv")
+	out := filepath.Join(folder, "out")
+	calibrate := func() (int, string) {
+		w, _, errs := testWorld("")
+		return run(context.Background(), []string{"calibrate", "--diameter", "1 um", "--out", out, track}, w), errs.String()
+	}
+	if got, message := calibrate(); got != StatusDone {
+		t.Fatalf("status %d: %s", got, message)
+	}
+	before := contents(t, filepath.Join(out, "run"))
+	for name := range before {
+		blocked := filepath.Join(out, "run", name)
+		os.Remove(blocked)
+		if err := os.MkdirAll(filepath.Join(blocked, "inside"), 0o777); err != nil {
+			t.Fatal(err)
+		}
+		got, message := calibrate()
+		if got == StatusDone || !strings.Contains(message, name) {
+			t.Errorf("%s is a folder: status %d, %q", name, got, message)
+		}
+		if err := os.RemoveAll(blocked); err != nil {
+			t.Fatal(err)
+		}
+		if err := os.WriteFile(blocked, []byte(before[name]), 0o666); err != nil {
+			t.Fatal(err)
+		}
+		after := contents(t, filepath.Join(out, "run"))
+		if len(after) != len(before) {
+			t.Errorf("%s is a folder: %d files are left, want %d", name, len(after), len(before))
+		}
+		for other, text := range after {
+			if text != before[other] {
+				t.Errorf("%s is a folder: %s is torn", name, other)
+			}
+		}
+	}
+}
+
+func contents(t *testing.T, folder string) map[string]string {
+	t.Helper()
+	entries, err := os.ReadDir(folder)
+	if err != nil {
+		t.Fatal(err)
+	}
+	files := map[string]string{}
+	for _, entry := range entries {
+		text, err := os.ReadFile(filepath.Join(folder, entry.Name()))
+		if err != nil {
+			t.Fatal(err)
+		}
+		files[entry.Name()] = string(text)
+	}
+	return files
+}
+
+// brokenWriter takes a number of bytes, then fails.
+type brokenWriter struct{ left int }
+
+func (w *brokenWriter) Write(p []byte) (int, error) {
+	if len(p) > w.left {
+		n := w.left
+		w.left = 0
+		return n, errors.New("no space left on device")
+	}
+	w.left -= len(p)
+	return len(p), nil
+}
+
+// Standard output that fails anywhere is a message and exit status 1.
+func TestBrokenOutput(t *testing.T) {
+	track := writeTrack(t, t.TempDir(), "run.csv")
+	for _, format := range []string{"text", "json", "csv"} {
+		w, whole, _ := testWorld("")
+		args := []string{"calibrate", "--diameter", "1 um", "--format", format, track}
+		if got := run(context.Background(), args, w); got != StatusDone {
+			t.Fatalf("%s: status %d", format, got)
+		}
+		for _, left := range []int{0, 1, whole.Len() / 2, whole.Len() - 1} {
+			w, _, errs := testWorld("")
+			w.Out = &brokenWriter{left}
+			if got := run(context.Background(), args, w); got != StatusFailed || !strings.Contains(errs.String(), "cannot be written: no space left") {
+				t.Errorf("%s after %d bytes: status %d, %q", format, left, got, errs)
+			}
+		}
+	}
+}
+
+func TestFolderNames(t *testing.T) {
+	for _, test := range []struct{ path, want string }{
+		{"run7.csv", "run7"},
+		{"tonight/run7.csv.gz", "run7"},
+		{"run.7.txt", "run.7"},
+		{"-", "stdin"},
+		{".csv", "_.csv"},
+		{"-rf.csv", "_-rf"},
+		{"a b/\x1b[2J\xff.csv", "__2J_"},
+		{"Messung µ.csv", "Messung_µ"},
+	} {
+		if got, err := folderNames([]string{test.path}); err != nil || got[0] != test.want {
+			t.Errorf("folderNames(%q) = %q, %v, want %q", test.path, got, err, test.want)
+		}
+	}
+}
+
+func TestSourceDateEpoch(t *testing.T) {
+	for text, want := range map[string]string{"": "2026-01-02T03:04:05Z", "0": "1970-01-01T00:00:00Z", "253402300799": "9999-12-31T23:59:59Z",
+		"-1": "", "1e3": "", "253402300800": "", "now": ""} {
+		w, _, _ := testWorld("")
+		w.Getenv = func(string) string { return text }
+		got, err := (&app{World: w}).created()
+		if (err == nil) != (want != "") || err == nil && got != want {
+			t.Errorf("SOURCE_DATE_EPOCH=%q: %q, %v, want %q", text, got, err, want)
+		}
+	}
+}

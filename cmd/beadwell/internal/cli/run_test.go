@@ -1,0 +1,218 @@
+package cli
+
+import (
+	"bytes"
+	"context"
+	"encoding/json"
+	"errors"
+	"fmt"
+	"os"
+	"path/filepath"
+	"strings"
+	"testing"
+	"time"
+
+	"github.com/google/go-cmp/cmp"
+	"github.com/google/go-cmp/cmp/cmpopts"
+	"github.com/spf13/cobra"
+
+	"beadwell/calib/session"
+	"beadwell/cmd/beadwell/internal/report"
+)
+
+// testWorld is a world in memory.
+func testWorld(in string) (World, *bytes.Buffer, *bytes.Buffer) {
+	out, errs := &bytes.Buffer{}, &bytes.Buffer{}
+	w := inventedWorld()
+	w.In, w.Out, w.Err, w.Colour = strings.NewReader(in), out, errs, false
+	w.Getenv = func(string) string { return "" }
+	return w, out, errs
+}
+
+// writeTrack writes a recording of a few samples, and returns its path.
+func writeTrack(t *testing.T, folder, name string) string {
+	t.Helper()
+	text := "t (s),x (um)\n"
+	for i := range 30 {
+		text += fmt.Sprintf("%.3f,%.4f\n", float64(i)/1000, float64(i*7919%31)/1000)
+	}
+	path := filepath.Join(folder, name)
+	if err := os.MkdirAll(filepath.Dir(path), 0o777); err != nil {
+		t.Fatal(err)
+	}
+	if err := os.WriteFile(path, []byte(text), 0o666); err != nil {
+		t.Fatal(err)
+	}
+	return path
+}
+
+// Ctrl-C ends a run with 130 within a second, also when the calibration does
+// not look at the context, and leaves no file behind.
+func TestInterrupted(t *testing.T) {
+	for _, name := range []string{"slow.csv", "deaf.csv"} {
+		folder := t.TempDir()
+		path := writeTrack(t, folder, name)
+		w, out, errs := testWorld("")
+		ctx, cancel := context.WithCancel(context.Background())
+		time.AfterFunc(50*time.Millisecond, cancel)
+		start := time.Now()
+		got := run(ctx, []string{"calibrate", "--diameter", "1 um", "--out", filepath.Join(folder, "out"), path}, w)
+		if took := time.Since(start); got != StatusInterrupted || took > 2*time.Second {
+			t.Errorf("%s: status %d after %v, want %d within a second", name, got, took, StatusInterrupted)
+		}
+		if out.Len() > 0 || !strings.HasPrefix(errs.String(), "beadwell: stopped before the end") {
+			t.Errorf("%s: stdout %q, stderr %q", name, out, errs)
+		}
+		if left, _ := os.ReadDir(filepath.Join(folder, "out")); len(left) > 0 {
+			t.Errorf("%s: left %v", name, left)
+		}
+	}
+}
+
+// Each error gets the exit status that is documented for its kind.
+func TestProblemOf(t *testing.T) {
+	for _, test := range []struct {
+		err  error
+		want report.Problem
+	}{
+		{usageError("do", "what %d", 1), report.Problem{Code: "usage", Status: 2, Message: "what 1", Remedy: "do"}},
+		{outputError("f", &os.PathError{Op: "open", Path: "/x/f", Err: os.ErrPermission}), report.Problem{Code: "output", Status: 1,
+			Message: "f: cannot be written: permission denied", Remedy: "make room or choose another place, then run the same command again"}},
+		{&session.Error{Where: "a:b.toml:4:1", Key: "k", Problem: "is odd", Hint: "even it"},
+			report.Problem{Code: "settings", Status: 2, File: "a:b.toml", Line: 4, Column: 1, Message: "k is odd", Remedy: "even it"}},
+		{fmt.Errorf("reading: %w", context.Canceled), report.Problem{Code: "interrupted", Status: 130, Message: errInterrupted.Error()}},
+		{&report.ReadError{File: "r.json", Line: 2, Column: 3, What: "is cut"}, report.Problem{Code: "input", Status: 4, File: "r.json", Line: 2, Column: 3, Message: "is cut"}},
+		{errors.New("odd\n  hint: even"), report.Problem{Code: "internal", Status: 1, Message: "odd", Remedy: "even"}},
+		{partial([]error{errors.New("a")}, 3), report.Problem{Code: "partial", Status: 5, Message: "1 of 3 recordings failed",
+			Others: []report.Problem{{Code: "internal", Status: 1, Message: "a"}}}},
+	} {
+		if diff := cmp.Diff(test.want, problemOf(test.err), cmpopts.EquateEmpty()); diff != "" {
+			t.Errorf("problemOf(%v) (-want +got):\n%s", test.err, diff)
+		}
+	}
+}
+
+// An error as JSON is one object on one line, whatever is in it.
+func TestErrorAsJSON(t *testing.T) {
+	w, out, errs := testWorld("")
+	if got := run(context.Background(), []string{"calibrate", "--format=json", "\x1b[2J\u202e\xff.csv"}, w); got != StatusInput {
+		t.Errorf("status %d, want %d", got, StatusInput)
+	}
+	var p report.Problem
+	if err := json.Unmarshal(errs.Bytes(), &p); err != nil || p.Status != StatusInput || strings.Count(errs.String(), "\n") != 1 || out.Len() > 0 {
+		t.Errorf("stderr %q, stdout %q, %v", errs, out, err)
+	}
+	if strings.ContainsAny(strings.TrimSuffix(errs.String(), "\n"), "\x1b\u202e\n") {
+		t.Errorf("stderr steers the terminal: %q", errs)
+	}
+}
+
+// The flags reach the command as they are written.
+func TestCalibrateFlags(t *testing.T) {
+	var got calibrateOptions
+	a := &app{}
+	cmd := a.calibrateCommand(func(_ context.Context, _ *app, o calibrateOptions) error { got = o; return nil })
+	cmd.SetArgs([]string{"--format", "csv", "--out", "o", "--force", "--adopt", "drag", "-q", "--session", "s", "--diameter", "1.02(3) um", "--noise", "x=4 nm", "a", "b"})
+	if err := cmd.Execute(); err != nil {
+		t.Fatal(err)
+	}
+	if got.format != "csv" || got.out != "o" || !got.force || got.adopt != "drag" || !got.quiet || got.session != "s" || !cmp.Equal(got.tracks, []string{"a", "b"}) {
+		t.Errorf("options %+v", got)
+	}
+	noise, ok := got.flags.settings.Lookup("recording.noise", "x")
+	if !ok || noise.Value.SI != 4e-9 || noise.Origin != session.FromFlag || noise.Where != "--noise" {
+		t.Errorf("--noise x=4 nm gives %+v", noise)
+	}
+}
+
+// Every setting is a flag of calibrate, and no flag of a setting hides one of the command.
+func TestEverySettingIsAFlag(t *testing.T) {
+	cmd := (&app{}).calibrateCommand(nil)
+	for _, key := range session.Keys() {
+		if f := cmd.Flags().Lookup(key.Flag); f == nil || f.Annotations[settingGroup] == nil {
+			t.Errorf("%s has no flag --%s", key.Name, key.Flag)
+		}
+	}
+}
+
+// The examples in the help do what they say.
+func TestExamples(t *testing.T) {
+	for _, cmd := range (&app{World: inventedWorld()}).root().Commands() {
+		if cmd.Name() == "help" || cmd.Name() == "completion" {
+			continue
+		}
+		if !cmd.HasExample() || cmd.Short == "" {
+			t.Errorf("%s has no example or no purpose", cmd.Name())
+		}
+		for line := range strings.Lines(cmd.Example) {
+			t.Run(strings.TrimSpace(line), func(t *testing.T) { runExample(t, strings.TrimSpace(line)) })
+		}
+	}
+}
+
+func runExample(t *testing.T, line string) {
+	folder := t.TempDir()
+	t.Chdir(folder)
+	for _, name := range []string{"run7.csv", "run8.csv", "tonight/run7.csv"} {
+		writeTrack(t, folder, name)
+	}
+	if err := os.WriteFile("session.toml", []byte("[bead]\ndiameter = \"1 um\"\n"), 0o666); err != nil {
+		t.Fatal(err)
+	}
+	if strings.HasPrefix(line, "beadwell init .") {
+		os.Remove("session.toml")
+	}
+	w, _, _ := testWorld("")
+	if run(context.Background(), []string{"calibrate", "--out", "results", "run7.csv"}, w) != StatusDone && !strings.HasPrefix(line, "beadwell init") {
+		t.Fatal("the result that examples start from cannot be made")
+	}
+	w, _, errs := testWorld("")
+	if got := run(context.Background(), words(line)[1:], w); got != StatusDone {
+		t.Errorf("%s: status %d, %s", line, got, errs)
+	}
+}
+
+// words splits a command line as a shell does, as far as the examples need it,
+// and drops a redirection of the output.
+func words(line string) []string {
+	line, _, _ = strings.Cut(line, " > ")
+	var all []string
+	for i, part := range strings.Split(line, "'") {
+		if i%2 == 1 {
+			all = append(all, part)
+		} else {
+			all = append(all, strings.Fields(part)...)
+		}
+	}
+	return all
+}
+
+// Commands say what they are given, not how they are made: no placeholder of
+// the flag library remains in a help text.
+func TestHelpPlaceholders(t *testing.T) {
+	root := (&app{World: inventedWorld()}).root()
+	for _, cmd := range append(root.Commands(), root) {
+		var out bytes.Buffer
+		cmd.SetOut(&out)
+		if err := cmd.Help(); err != nil {
+			t.Fatal(err)
+		}
+		for _, bad := range []string{"stringArray", "--format string", "`"} {
+			if strings.Contains(out.String(), bad) && cmd.Name() != "completion" {
+				t.Errorf("help of %s holds %q", cmd.Name(), bad)
+			}
+		}
+		checkWidth(t, cmd, out.String())
+	}
+}
+
+// checkWidth holds the written part of a help text to a terminal's width.
+func checkWidth(t *testing.T, cmd *cobra.Command, text string) {
+	t.Helper()
+	text, _, _ = strings.Cut(text, "Usage:")
+	for line := range strings.Lines(text) {
+		if n := len([]rune(line)); n > 100 && cmd.Name() != "completion" {
+			t.Errorf("help of %s has a line of %d characters: %s", cmd.Name(), n, line)
+		}
+	}
+}
