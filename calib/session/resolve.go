@@ -66,8 +66,7 @@ func (s *Settings) addDefaults() {
 		if problem != nil {
 			continue // the registry's test holds that every default can be read
 		}
-		_, given := s.Lookup(key.Name, "")
-		setting.Assumed = key.Assumed && !given
+		setting.Assumed = key.Assumed
 		s.put(setting)
 	}
 }

@@ -107,6 +107,16 @@ func TestTracksDialects(t *testing.T) {
 			t.Errorf("%s: %+v", name, height)
 		}
 	}
+	for _, cells := range []string{"25", "25 %", "25(0) %"} {
+		tracks, err := ReadTracks("tracks.csv", []byte("file,alpha (%)\na.csv,"+cells+"\n"))
+		if err != nil {
+			t.Errorf("alpha in %%: %v", err)
+			continue
+		}
+		if alpha, _ := tracks.Rows[0].Settings.Lookup("detector.alpha", ""); alpha.Value.SI != 0.25 {
+			t.Errorf("alpha of %q = %v, want 0.25", cells, alpha.Value.SI)
+		}
+	}
 	tracks, err := ReadTracks("tracks.csv", []byte("sep=;\nfile;height\n\na.csv;1 um\n"))
 	if err != nil || tracks.Rows[0].Line != 4 {
 		t.Errorf("lines are counted wrong behind sep= and an empty line: %+v, %v", tracks, err)
