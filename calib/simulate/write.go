@@ -13,7 +13,7 @@ type Column struct {
 	Name     string    // such as x
 	Unit     Unit      // of the written numbers
 	Values   []float64 // in SI units; NaN is written as nothing
-	Decimals int       // decimals of the written numbers; 0 chooses as many as leave the largest CSV.Digits significant digits
+	Decimals int       // decimals of the written numbers; 0 is what Decimals returns for the column alone
 }
 
 // Unit is what numbers in SI units are written in.
@@ -74,7 +74,9 @@ func WriteCSV(w io.Writer, columns []Column, o CSV) error {
 	out.WriteString(o.preamble(columns))
 	decimals := make([]int, len(columns))
 	for i, c := range columns {
-		decimals[i] = c.decimals(o.Digits)
+		if decimals[i] = c.Decimals; decimals[i] == 0 {
+			decimals[i] = Decimals(o.Digits, c)
+		}
 	}
 	var line []byte
 	for row := range columns[0].Values {
@@ -171,16 +173,15 @@ func (o CSV) appendNumber(line []byte, value float64, decimals int) []byte {
 	return line
 }
 
-// decimals returns the number of decimals that leaves the largest value of a column the
-// given number of significant digits.
-func (c Column) decimals(digits int) int {
-	if c.Decimals > 0 {
-		return c.Decimals
-	}
+// Decimals returns the number of decimals that leaves the largest value of all the columns,
+// in their units, the given number of significant digits.
+func Decimals(digits int, columns ...Column) int {
 	largest := 0.0
-	for _, v := range c.Values {
-		if size := math.Abs(v * c.Unit.PerSI); size > largest && finite(size) {
-			largest = size
+	for _, c := range columns {
+		for _, v := range c.Values {
+			if size := math.Abs(v * c.Unit.PerSI); size > largest && finite(size) {
+				largest = size
+			}
 		}
 	}
 	if largest == 0 {

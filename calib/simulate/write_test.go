@@ -54,6 +54,14 @@ func TestWriteCSVDigits(t *testing.T) {
 	}
 }
 
+// Columns that share their decimals take those of the largest.
+func TestDecimalsOfSeveral(t *testing.T) {
+	small, large := Column{Unit: Nanometre, Values: []float64{1e-9}}, Column{Unit: Nanometre, Values: []float64{math.NaN(), 123e-9}}
+	if got := Decimals(5, small, large); got != 2 {
+		t.Errorf("Decimals(5, 1 nm, 123 nm) = %d, want 2", got)
+	}
+}
+
 func TestTimeColumnDecimals(t *testing.T) {
 	for _, row := range []struct {
 		rate float64

@@ -60,6 +60,7 @@ func (a *app) root() *cobra.Command {
 		a.initCommand(runInit),
 		a.reportCommand(runReport),
 		a.dragCommand(runDrag),
+		a.simulateCommand(runSimulate),
 		a.schemaCommand(),
 		a.manCommand(),
 	)
