@@ -2,6 +2,7 @@ package quantity
 
 import (
 	"fmt"
+	"math"
 	"regexp"
 	"strconv"
 	"strings"
@@ -228,14 +229,7 @@ func (r reader) uncertainty(p parts, unit scale, number float64) (float64, *Erro
 	}
 	u *= own.factor
 	if relative {
-		u *= abs(float64(number * unit.factor))
+		u *= math.Abs(float64(number * unit.factor))
 	}
 	return u, nil
-}
-
-func abs(x float64) float64 {
-	if x < 0 {
-		return -x
-	}
-	return x
 }
