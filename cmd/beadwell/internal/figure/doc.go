@@ -7,5 +7,5 @@
 //
 // Width: one journal column, 85 mm. Colours: Okabe and Ito, "Color Universal
 // Design", 2008; nothing is told by colour alone, shapes, dashes and labels
-// repeat it. The same input gives the same bytes in SVG and PNG.
+// repeat it. The same input gives the same bytes.
 package figure

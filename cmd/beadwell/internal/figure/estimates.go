@@ -81,7 +81,7 @@ func estimatePanel(a *calib.Axis) (p panel, words string, ok bool) {
 			p.notes = append(p.notes, note{text: "withheld", x: 0.5, y: share, ink: soft, middle: true})
 		}
 	}
-	if reach.empty() {
+	if len(list) == 0 || reach.empty() {
 		return p, "", false
 	}
 	p.x = scale{quantity: "stiffness along " + clean(a.Name), unit: "pN/µm", si: "N/m", factor: 1e6}.over(reach)

@@ -25,6 +25,7 @@ const (
 	thickBar     = 2.4  // 68 % intervals
 	pieceLength  = 100  // points of a polyline that is stroked at once
 	stripMinimum = 1.2  // width of the narrowest excluded strip
+	hatchMinimum = 4    // width from which on a strip is hatched
 )
 
 // brush paints in one theme.

@@ -1,8 +1,10 @@
 package figure
 
 import (
+	"bytes"
 	"image/color"
 	"math"
+	"regexp"
 
 	"golang.org/x/image/font/sfnt"
 	"golang.org/x/image/math/fixed"
@@ -14,6 +16,14 @@ import (
 // pdfCanvas sets text as outlines. vgpdf would embed the whole typeface, 200 kB
 // a figure, and can spell only what Windows-1252 holds, which has no minus sign.
 type pdfCanvas struct{ *vgpdf.Canvas }
+
+var clock = regexp.MustCompile(`/(CreationDate|ModDate) \(D:[^)]*\)`)
+
+// withoutClock blanks the dates in a PDF, which are the only bytes that differ
+// from run to run. The length stays, for the file holds offsets into itself.
+func withoutClock(pdf []byte) []byte {
+	return clock.ReplaceAllFunc(pdf, func(date []byte) []byte { return bytes.Repeat([]byte(" "), len(date)) })
+}
 
 // straight is a colour whose components are not multiplied by its opacity.
 type straight color.NRGBA

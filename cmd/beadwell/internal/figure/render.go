@@ -157,5 +157,5 @@ func renderPDF(f Figure, theme Theme) ([]byte, error) {
 	if _, err := canvas.WriteTo(&out); err != nil {
 		return nil, fmt.Errorf("figure %s: %w", f.Name, err)
 	}
-	return out.Bytes(), nil
+	return withoutClock(out.Bytes()), nil
 }

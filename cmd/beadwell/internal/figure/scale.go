@@ -48,7 +48,7 @@ func logRange(low, high float64) (float64, float64) {
 }
 
 func linearRange(low, high float64) (float64, float64) {
-	low, high = math.Max(low, -largest), math.Min(high, largest)
+	low, high = math.Min(math.Max(low, -largest), largest), math.Max(math.Min(high, largest), -largest)
 	margin := 0.04 * (high - low)
 	// A range that is lost in the rounding of its ends cannot be ticked.
 	if tiny := 1e-9 * math.Max(math.Abs(low), math.Abs(high)); margin <= tiny {
@@ -108,40 +108,65 @@ func rowTicks(rows []string) []tick {
 }
 
 // logTicks marks whole decades, every one or every few, with 2 to 9 between
-// them as minor marks while there is room. A range of less than two decades
-// also labels 2 and 5.
+// them as minor marks while there is room. Where fewer than two decades lie in
+// the range 2 and 5 are labelled too, and in a range that is shorter still
+// every digit.
 func logTicks(low, high float64, want int) []tick {
 	first, last := int(math.Floor(math.Log10(low))), int(math.Ceil(math.Log10(high)))
-	inside := 0
+	within := func(v float64) bool { return v >= low && v <= high }
+	decades, ones := 0, 0 // of decades, and of 1, 2 and 5 times a decade
 	for d := first; d <= last; d++ {
-		if v := math.Pow10(d); v >= low && v <= high {
-			inside++
+		for _, m := range []float64{1, 2, 5} {
+			if within(m * math.Pow10(d)) {
+				ones++
+				if m == 1 {
+					decades++
+				}
+			}
 		}
 	}
-	stride := max(1, int(math.Ceil(float64(inside)/float64(max(want, 1)))))
+	label := digitLabel
+	if decades >= 2 {
+		stride := (decades + max(want, 1) - 1) / max(want, 1)
+		label = func(m, d int) string { return decadeLabel(m, d, stride) }
+	} else if ones >= 2 {
+		label = oneTwoFiveLabel
+	}
 	var ticks []tick
 	for d := first; d <= last; d++ {
 		for m := 1; m <= 9; m++ {
-			v := float64(m) * math.Pow10(d)
-			if v < low || v > high || (m > 1 && inside > 10) {
-				continue
+			if v := float64(m) * math.Pow10(d); within(v) && (m == 1 || decades <= 10) {
+				ticks = append(ticks, tick{v, label(m, d)})
 			}
-			ticks = append(ticks, tick{v, logLabel(m, d, stride, inside)})
 		}
 	}
 	return ticks
 }
 
-func logLabel(m, decade, stride, inside int) string {
-	switch {
-	case inside < 2 && (m == 1 || m == 2 || m == 5) && decade >= -2 && decade < 4:
-		return strconv.FormatFloat(float64(m)*math.Pow10(decade), 'f', max(0, -decade), 64)
-	case m == 1 && decade%stride == 0:
-		return fmt.Sprintf("10^{%d}", decade)
-	case inside < 2 && (m == 2 || m == 5):
-		return fmt.Sprintf("%d×10^{%d}", m, decade)
+// decadeLabel labels every stride-th decade as a power of ten.
+func decadeLabel(m, decade, stride int) string {
+	if m != 1 || decade%stride != 0 {
+		return ""
 	}
-	return ""
+	return fmt.Sprintf("10^{%d}", decade)
+}
+
+func oneTwoFiveLabel(m, decade int) string {
+	if m != 1 && m != 2 && m != 5 {
+		return ""
+	}
+	return digitLabel(m, decade)
+}
+
+// digitLabel prints m times a decade, plainly from 0.01 to 9000.
+func digitLabel(m, decade int) string {
+	switch {
+	case decade >= -2 && decade < 4:
+		return strconv.FormatFloat(float64(m)*math.Pow10(decade), 'f', max(0, -decade), 64)
+	case m == 1:
+		return fmt.Sprintf("10^{%d}", decade)
+	}
+	return fmt.Sprintf("%d×10^{%d}", m, decade)
 }
 
 // linearTicks marks multiples of 1, 2 or 5 times a power of ten.

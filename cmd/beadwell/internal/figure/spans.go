@@ -26,7 +26,9 @@ func (b brush) spans(c draw.Canvas, p panel, s series) {
 }
 
 func (b brush) strip(c draw.Canvas, s series, left, right vg.Length) {
-	b.hatch(c, s.ink, left, right)
+	if right-left > hatchMinimum {
+		b.hatch(c, s.ink, left, right)
+	}
 	for _, x := range []vg.Length{left, right} {
 		c.StrokeLine2(b.line(s.ink, 0.5), x, c.Min.Y, x, c.Max.Y)
 	}
