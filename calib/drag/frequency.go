@@ -13,13 +13,17 @@ const (
 	// Recommended is Published for parallel and PointForce for perpendicular motion.
 	Recommended Shape = iota
 	// Published is the form of Berg-Sorensen and Flyvbjerg, Rev. Sci. Instrum. 75
-	// (2004) 594, to first order in R/h, for parallel motion alone.
+	// (2004) 594, to first order in R/h, for parallel motion alone. Against the exact
+	// flow Re g is 6 % low at h/R = 2 and R/delta = 0.1 (f = f_nu/100), 5 % low at
+	// h/R = 5 and 1.2 % low at 20 (TestOscillating).
 	Published
 	// PointForce is the exact reaction of the wall on an oscillating point force, with
-	// the finite size of the sphere to the order that gives the right added mass.
+	// the finite size of the sphere to the order that gives the right added mass. It is
+	// off by at most 0.15 % at h/R = 5, 0.9 % at 3 and 3 % at 2 over all frequencies, and
+	// for parallel motion up to R/delta = 0.1 by 0.4 % at 2 (TestOscillating).
 	PointForce
 	// BulkShape multiplies the drag of bulk by the static wall factor. It does not
-	// tend to bulk at high frequency.
+	// tend to bulk at high frequency, and is 10 % high at R/delta = 0.1 and h/R <= 5.
 	BulkShape
 )
 
@@ -95,22 +99,20 @@ func (d Frequency) Factor(f float64) complex128 {
 
 // ModelU returns the standard model uncertainty of Factor at f [Hz], relative to
 // its modulus, apart from that of StaticFactor. It is 0 in bulk and at f = 0. For
-// PointForce it is the gap between two ways to carry the reaction beyond first
-// order in w; for the other shapes it is their gap to PointForce.
+// PointForce it is half the gap between two ways to carry the reaction beyond first
+// order in w; for the other shapes it is their gap to PointForce. The error against the
+// exact flow is within 2.4 times this wherever it was computed (TestOscillating).
 func (d Frequency) ModelU(f float64) float64 {
 	if d.bulk() {
 		return 0
 	}
 	alpha := d.alpha(math.Abs(f))
-	w := complex(1-1/d.StaticFactor, 0)
 	best := d.near(PointForce, alpha)
-	other := d.near(d.shape(), alpha)
-	if d.shape() == PointForce {
-		bulk := bulkFactor(alpha)
-		part := w * d.pointForce(alpha)
-		other = bulk * (1 + part*complex(d.StaticFactor, 0))
+	if d.shape() != PointForce {
+		return cmplx.Abs(d.near(d.shape(), alpha)-best) / cmplx.Abs(best)
 	}
-	return cmplx.Abs(other-best) / cmplx.Abs(best)
+	other := bulkFactor(alpha) * (1 + complex(d.StaticFactor-1, 0)*d.pointForce(alpha))
+	return cmplx.Abs(other-best) / cmplx.Abs(best) / 2
 }
 
 // bulk reports whether there is no wall.

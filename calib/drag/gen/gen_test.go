@@ -2,6 +2,7 @@ package main
 
 import (
 	"math"
+	"math/cmplx"
 	"testing"
 )
 
@@ -110,5 +111,52 @@ func TestChebyshev(t *testing.T) {
 				t.Errorf("coefficient %d %d = %g, want %g", a, b, got[a][b], want[a][b])
 			}
 		}
+	}
+}
+
+// TestOscillatingBulk checks the oscillating sphere far from the wall against the exact
+// 1 + alpha + alpha^2/9 (Stokes 1851); the wall, (9/16) (R/h) times a reaction of 2e-5, is worth 1e-7 there.
+func TestOscillatingBulk(t *testing.T) {
+	alpha := complex(0.3, -0.3)
+	o := oscillating{newSphere(300, math.Inf(1), standard), alpha}
+	want := 1 + alpha + alpha*alpha/9
+	for _, factor := range []func(oscillating) (complex128, float64, error){oscillating.parallel, oscillating.perpendicular} {
+		got, _, err := factor(o)
+		if err != nil || cmplx.Abs(got-want) > 3e-7 {
+			t.Errorf("oscillating sphere in bulk: %.9g, %v, want %.9g", got, err, want)
+		}
+	}
+}
+
+// TestOscillatingStatic checks the limit of low frequency near a wall against the exact
+// series (O'Neill 1964, Brenner 1961): what is left is of order alpha^2 = 2e-6.
+func TestOscillatingStatic(t *testing.T) {
+	o := oscillating{newSphere(2, math.Inf(1), standard), complex(1e-3, -1e-3)}
+	for _, row := range []struct {
+		factor func(oscillating) (complex128, float64, error)
+		want   complex128
+	}{{oscillating.parallel, 1.3827523824}, {oscillating.perpendicular, 2.1255355668}} {
+		got, _, err := row.factor(o)
+		if err != nil || cmplx.Abs(got-row.want) > 2e-5 {
+			t.Errorf("oscillating sphere at low frequency: %.9g, %v, want %.9g", got, err, row.want)
+		}
+	}
+}
+
+// TestReactions compares with an independent Hankel integral of the unsteady flow of a point
+// force parallel to a wall, and with the steady limit 1 of both directions.
+func TestReactions(t *testing.T) {
+	for y, want := range map[float64]complex128{
+		1.0 / 30: complex(0.9408630016634141, 0.05494518575673992),
+		1.0 / 3:  complex(0.4848345652737712, 0.26528478282193924),
+		2:        complex(0.042369874196558834, 0.09242076322672572),
+	} {
+		if got, _ := reactions(y); cmplx.Abs(got-want) > 1e-9 {
+			t.Errorf("parallel reaction at h/delta = %g = %.10g, want %.10g", y, got, want)
+		}
+	}
+	parallel, perpendicular := reactions(1e-9)
+	if cmplx.Abs(parallel-1) > 1e-8 || cmplx.Abs(perpendicular-1) > 1e-8 {
+		t.Errorf("steady reactions %v and %v, want 1", parallel, perpendicular)
 	}
 }

@@ -1,6 +1,7 @@
 // Command gen computes two tables of Chebyshev coefficients for the package drag: what
 // two parallel walls do to the drag of a sphere beyond the superposition of each of them
-// alone, and what one wall sends back to an oscillating force (reaction.go).
+// alone, and what one wall sends back to an oscillating force (reaction.go). It also
+// computes the drag of an oscillating sphere near a wall, for a test (oscillating.go).
 //
 // The flow about the sphere is that of rings of point forces inside it. Each point
 // force carries the reflections of both walls, from its two-dimensional Fourier transform
@@ -46,8 +47,14 @@ func run(folder string) error {
 	if err := write(folder, "reaction_table.go", reactionTable()); err != nil {
 		return err
 	}
-	table, err := twoWallTable()
+	table, err := oscillatingTable()
 	if err != nil {
+		return err
+	}
+	if err := os.WriteFile(filepath.Join(folder, "testdata", "oscillating.csv"), []byte(table), 0o644); err != nil {
+		return err
+	}
+	if table, err = twoWallTable(); err != nil {
 		return err
 	}
 	return write(folder, "twowall_table.go", table)
