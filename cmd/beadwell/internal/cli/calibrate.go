@@ -10,6 +10,9 @@ import (
 	"beadwell/cmd/beadwell/internal/report"
 )
 
+// formats are the forms in which results are printed.
+var formats = []string{"text", "json", "csv"}
+
 // calibrateOptions is what the command line of calibrate says.
 type calibrateOptions struct {
 	tracks  []string
@@ -60,6 +63,9 @@ func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions)
 		Args: someArguments("a track"),
 		RunE: func(cmd *cobra.Command, args []string) error {
 			o.tracks = args
+			if err := notEmpty(cmd, "out", "session", "adopt"); err != nil {
+				return err
+			}
 			if err := o.validate(); err != nil {
 				return err
 			}
@@ -74,11 +80,14 @@ func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions)
 	flags.StringVar(&o.adopt, "adopt", "", "adopt this route alone, also when the two disagree: `drag|amplitude`")
 	flags.BoolVarP(&o.quiet, "quiet", "q", false, "no warnings on standard error")
 	addSettingFlags(flags, &o.flags)
+	completeSettings(cmd)
+	completeWords(cmd, "format", formats...)
+	completeWords(cmd, "adopt", calib.RouteDrag, calib.RouteAmplitude)
 	return cmd
 }
 
 func (o calibrateOptions) validate() error {
-	if err := oneOf("format", o.format, "text", "json", "csv"); err != nil {
+	if err := oneOf("format", o.format, formats...); err != nil {
 		return err
 	}
 	if o.adopt != "" {
@@ -158,6 +167,7 @@ func (a *app) calibrateTrack(ctx context.Context, src *source, path, adopt, crea
 		}
 		result.Program = calib.Program{Name: "beadwell", Version: a.Version, Command: append([]string{"beadwell"}, a.args...)}
 		result.Created = created
+		result.Input.Name = path // the bead stands beside it
 		outcomes[i].result = result
 	}
 	return outcomes

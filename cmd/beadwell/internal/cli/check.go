@@ -31,6 +31,9 @@ nothing. A unit or a rate that nobody stated is a remark here, not an error.`,
 		Args:    someArguments("a track"),
 		RunE: func(cmd *cobra.Command, args []string) error {
 			o.tracks = args
+			if err := notEmpty(cmd, "session"); err != nil {
+				return err
+			}
 			if err := checkTracks(args); err != nil {
 				return err
 			}
@@ -39,6 +42,7 @@ nothing. A unit or a rate that nobody stated is a remark here, not an error.`,
 	}
 	cmd.Flags().StringVar(&o.session, "session", "", "settings `FILE` in place of session.toml beside the track")
 	addSettingFlags(cmd.Flags(), &o.flags)
+	completeSettings(cmd)
 	return cmd
 }
 

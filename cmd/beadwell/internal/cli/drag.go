@@ -38,7 +38,7 @@ stiffness it gives the corner frequency to expect.
   beadwell drag --diameter '2 um' --fluid 'glycerol 20 %' --height '5 um' --stiffness '50(1) pN/um'`,
 		Args: noArguments,
 		RunE: func(cmd *cobra.Command, args []string) error {
-			if err := oneOf("format", o.format, "text", "json", "csv"); err != nil {
+			if err := oneOf("format", o.format, formats...); err != nil {
 				return err
 			}
 			return run(cmd.Context(), a, o)
@@ -48,6 +48,7 @@ stiffness it gives the corner frequency to expect.
 	cmd.Flags().StringVar(&o.stiffness, "stiffness", "", "stiffness of the trap, for its corner frequency: `50(1) pN/um`")
 	cmd.Flags().StringVar(&o.format, "format", "text", "form of the result on standard output: `text|json|csv`")
 	addSettingFlags(cmd.Flags(), &o.flags, "bead.diameter", "medium.fluid", "medium.viscosity", "medium.density", "medium.temperature", "chamber.depth")
+	completeWords(cmd, "format", formats...)
 	return cmd
 }
 

@@ -40,6 +40,7 @@ flags are filled in.`,
 	}
 	cmd.Flags().BoolVar(&o.force, "force", false, "replace a session.toml that is there")
 	addSettingFlags(cmd.Flags(), &o.flags)
+	completeSettings(cmd)
 	return cmd
 }
 

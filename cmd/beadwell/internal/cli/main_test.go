@@ -19,9 +19,17 @@ import (
 
 // In scripts the program is this test binary with a calibration that is
 // invented, so that they test the command line and not the estimates.
+//
+// With asProgram in the environment the binary is the program too, for tests
+// that send it signals.
 func TestMain(m *testing.M) {
+	if os.Getenv(asProgram) != "" {
+		os.Exit(Main(os.Args[1:], inventedWorld()))
+	}
 	testscript.Main(m, map[string]func(){"beadwell": func() { os.Exit(Main(os.Args[1:], inventedWorld())) }})
 }
+
+const asProgram = "BEADWELL_TEST_AS_PROGRAM"
 
 func inventedWorld() World {
 	w := Process()

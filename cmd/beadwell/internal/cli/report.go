@@ -33,7 +33,10 @@ standard input. The exit status is that of the calibration.`,
 		Args:    oneArgument("one stored result"),
 		RunE: func(cmd *cobra.Command, args []string) error {
 			o.result = args[0]
-			if err := oneOf("format", o.format, "text", "json", "csv"); err != nil {
+			if err := notEmpty(cmd, "out"); err != nil {
+				return err
+			}
+			if err := oneOf("format", o.format, formats...); err != nil {
 				return err
 			}
 			if o.force && o.out == "" {
@@ -45,6 +48,8 @@ standard input. The exit status is that of the calibration.`,
 	cmd.Flags().StringVar(&o.format, "format", "text", "form of the result on standard output: `text|json|csv`")
 	cmd.Flags().StringVar(&o.out, "out", "", "also write text, JSON, CSV, report and figures into `FOLDER`")
 	cmd.Flags().BoolVar(&o.force, "force", false, "with --out: replace files of another recording")
+	completeWords(cmd, "format", formats...)
+	completeEndings(cmd, "json")
 	return cmd
 }
 

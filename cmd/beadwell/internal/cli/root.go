@@ -159,6 +159,17 @@ func oneArgument(what string) cobra.PositionalArgs {
 	}
 }
 
+// notEmpty refuses an empty text for flags that take a name, which would be as
+// if they were not there: the mistake of a variable without a value.
+func notEmpty(cmd *cobra.Command, flags ...string) error {
+	for _, name := range flags {
+		if f := cmd.Flags().Lookup(name); f != nil && f.Changed && f.Value.String() == "" {
+			return usageError("give a value, or leave it out", "--%s is empty", name)
+		}
+	}
+	return nil
+}
+
 // oneOf checks the value of a flag that takes a word.
 func oneOf(flag, value string, words ...string) error {
 	for _, word := range words {

@@ -35,7 +35,7 @@ var columns = []column{
 	{"axis", "x, y or z", func(r csvRow) string { return cell(r.axis.Name) }},
 	{"leg", "adopted, or the estimate, named as in JSON", func(r csvRow) string { return cell(r.leg) }},
 	{"route", "drag or amplitude; empty for the adopted value", func(r csvRow) string { return cell(r.route) }},
-	{"stiffness_N_per_m", "stiffness; empty when withheld", func(r csvRow) string { return full(r.stiffness.Value) }},
+	{"stiffness_N_per_m", "stiffness; empty when withheld", func(r csvRow) string { return exactCell(r.stiffness.Value) }},
 	{"statistical_u_N_per_m", "standard uncertainty, inputs taken as exact", uncertainty(statistical, standardOf)},
 	{"statistical_68_low_N_per_m", "lower end of the 68 % interval, inputs taken as exact", uncertainty(statistical, low68)},
 	{"statistical_68_high_N_per_m", "its upper end", uncertainty(statistical, high68)},
@@ -46,11 +46,11 @@ var columns = []column{
 	{"combined_68_high_N_per_m", "its upper end", uncertainty(withInputs, high68)},
 	{"combined_95_low_N_per_m", "lower end of the 95 % interval with the inputs", uncertainty(withInputs, low95)},
 	{"combined_95_high_N_per_m", "its upper end", uncertainty(withInputs, high95)},
-	{"drag_computed_N_s_per_m", "Stokes drag times wall factor", func(r csvRow) string { return full(r.axis.Drag.Value) }},
-	{"drag_measured_N_s_per_m", "kT over the diffusion coefficient of the spectrum", func(r csvRow) string { return full(r.axis.MeasuredDrag.Value) }},
-	{"corner_frequency_Hz", "corner frequency of the spectrum", func(r csvRow) string { return full(r.axis.Spectrum.Corner.Value) }},
-	{"p_routes_statistical", "p-value of the equality of the two routes, inputs taken as exact", func(r csvRow) string { return full(r.axis.CrossCheck.Routes.PValue) }},
-	{"p_routes_combined", "the same with the stated uncertainties of the inputs", func(r csvRow) string { return full(r.axis.CrossCheck.Routes.PValueCombined) }},
+	{"drag_computed_N_s_per_m", "Stokes drag times wall factor", func(r csvRow) string { return exactCell(r.axis.Drag.Value) }},
+	{"drag_measured_N_s_per_m", "kT over the diffusion coefficient of the spectrum", func(r csvRow) string { return exactCell(r.axis.MeasuredDrag.Value) }},
+	{"corner_frequency_Hz", "corner frequency of the spectrum", func(r csvRow) string { return exactCell(r.axis.Spectrum.Corner.Value) }},
+	{"p_routes_statistical", "p-value of the equality of the two routes, inputs taken as exact", func(r csvRow) string { return exactCell(r.axis.CrossCheck.Routes.PValue) }},
+	{"p_routes_combined", "the same with the stated uncertainties of the inputs", func(r csvRow) string { return exactCell(r.axis.CrossCheck.Routes.PValueCombined) }},
 	{"verdict", "consistent, inconsistent, unfit, or failed for a recording without a result", func(r csvRow) string { return cell(r.result.Verdict.Status) }},
 	{"problem", "why there is no stiffness; empty when there is one", func(r csvRow) string { return cell(r.problem) }},
 }
@@ -70,13 +70,13 @@ func uncertainty(part func(calib.Quantity) *calib.Uncertainty, number func(calib
 		if u == nil {
 			return ""
 		}
-		return full(number(*u))
+		return exactCell(number(*u))
 	}
 }
 
-// full prints a number so that it reads back to the same bits; an unknown
+// exactCell prints a number so that it reads back to the same bits; an unknown
 // number is an empty cell.
-func full(f calib.Float) string {
+func exactCell(f calib.Float) string {
 	if !f.Known() {
 		return ""
 	}

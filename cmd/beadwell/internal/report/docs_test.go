@@ -22,7 +22,8 @@ func TestOutputPageIsCurrent(t *testing.T) {
 		t.Fatal(err)
 	}
 	want := string(page)
-	for mark, table := range map[string]string{"keys": keyTables(newGenerator(t)), "columns": columnTable()} {
+	for mark, table := range map[string]string{
+		"keys": keyTables(newGenerator(t)), "columns": columnTable(), "drag": keyTables(generatorOf(t, "drag.go"))} {
 		begin, end := "<!-- "+mark+": made by go test -update -->\n", "<!-- end of "+mark+" -->"
 		before, rest, found := strings.Cut(want, begin)
 		_, after, closed := strings.Cut(rest, end)
@@ -83,7 +84,9 @@ func typeName(expression ast.Expr) string {
 		case "string":
 			return "text"
 		}
-		return "[" + e.Name + "](#" + strings.ToLower(e.Name) + ")"
+		return typeLink(e.Name)
+	case *ast.SelectorExpr:
+		return typeLink(e.Sel.Name)
 	case *ast.StarExpr:
 		return typeName(e.X)
 	case *ast.ArrayType:
@@ -96,3 +99,5 @@ func typeName(expression ast.Expr) string {
 	}
 	return "?"
 }
+
+func typeLink(name string) string { return "[" + name + "](#" + strings.ToLower(name) + ")" }

@@ -91,13 +91,13 @@ func DragCSV(w io.Writer, d Drag) error {
 	out.Write([]string{"height_m", "direction", "wall_factor", "wall_factor_u", "drag_N_s_per_m", "drag_u_N_s_per_m",
 		"diffusion_m2_per_s", "diffusion_u_m2_per_s", "corner_Hz", "corner_u_Hz", "method"}) // errors stay until Flush
 	for _, r := range d.Rows {
-		cells := []string{full(r.Height.Value), r.Direction}
+		cells := []string{exactCell(r.Height.Value), r.Direction}
 		for _, q := range []calib.Quantity{r.Factor, r.Drag, r.Diffusion, r.Corner} {
 			u := ""
 			if q.Combined != nil {
-				u = full(q.Combined.Standard)
+				u = exactCell(q.Combined.Standard)
 			}
-			cells = append(cells, full(q.Value), u)
+			cells = append(cells, exactCell(q.Value), u)
 		}
 		out.Write(append(cells, cell(r.Method)))
 	}

@@ -60,11 +60,16 @@ type generator struct {
 	order   []string
 }
 
+// newGenerator reads the type calib.Result and what it is made of.
 func newGenerator(t *testing.T) *generator {
+	return generatorOf(t, filepath.Join(resultSource, "result.go"), filepath.Join(resultSource, "number.go"))
+}
+
+func generatorOf(t *testing.T, paths ...string) *generator {
 	t.Helper()
 	g := &generator{structs: map[string]*ast.StructType{}, docs: map[string]string{}}
-	for _, name := range []string{"result.go", "number.go"} {
-		file, err := parser.ParseFile(token.NewFileSet(), filepath.Join(resultSource, name), nil, parser.ParseComments)
+	for _, path := range paths {
+		file, err := parser.ParseFile(token.NewFileSet(), path, nil, parser.ParseComments)
 		if err != nil {
 			t.Fatal(err)
 		}
