@@ -20,7 +20,7 @@ type page struct {
 	Lead     string
 	Verdict  shownVerdict
 	Answers  []answer
-	Contents []link
+	Contents []jump
 	Findings []shownFinding
 	Figures  []figureGroup
 	Sections []section
@@ -37,7 +37,7 @@ type answer struct {
 	Lines    []string
 }
 
-type link struct{ ID, Title string }
+type jump struct{ ID, Title string }
 
 type shownFinding struct{ Severity, Class, Code, Where, Text, Numbers, Remedy, Caution string }
 
@@ -72,9 +72,9 @@ func pageOf(r *calib.Result) (page, error) {
 		p.Findings = append(p.Findings, findingOf(f))
 	}
 	p.Sections = sections(r)
-	p.Contents = []link{{"findings", fmt.Sprintf("Findings (%d)", len(p.Findings))}, {"figures", "Figures"}}
+	p.Contents = []jump{{"findings", fmt.Sprintf("Findings (%d)", len(p.Findings))}, {"figures", "Figures"}}
 	for _, s := range p.Sections {
-		p.Contents = append(p.Contents, link{s.ID, s.Title})
+		p.Contents = append(p.Contents, jump{s.ID, s.Title})
 	}
 	return p, nil
 }

@@ -2,21 +2,314 @@ package report
 
 import (
 	"bytes"
-	"os"
+	"encoding/xml"
+	"errors"
+	"io"
+	"math"
+	"regexp"
+	"strings"
 	"testing"
 
+	"beadwell/calib"
 	"beadwell/cmd/beadwell/internal/figure/specimen"
+
+	"github.com/google/go-cmp/cmp"
 )
 
-func TestLookHTML(t *testing.T) {
+func htmlOf(t *testing.T, r *calib.Result) string {
+	t.Helper()
 	var b bytes.Buffer
-	if err := HTML(&b, specimen.Result()); err != nil {
+	if err := HTML(&b, r); err != nil {
 		t.Fatal(err)
 	}
-	if dir := os.Getenv("LOOK"); dir != "" {
-		os.WriteFile(dir+"/page.html", b.Bytes(), 0o644)
-		b.Reset()
-		HTML(&b, storedSample())
-		os.WriteFile(dir+"/bad.html", b.Bytes(), 0o644)
+	return b.String()
+}
+
+// htmlTokens reads a page with the tolerance that XML readers have for HTML.
+func htmlTokens(t *testing.T, page string) []xml.Token {
+	t.Helper()
+	d := xml.NewDecoder(strings.NewReader(page))
+	d.Strict, d.AutoClose, d.Entity = false, xml.HTMLAutoClose, xml.HTMLEntity
+	var tokens []xml.Token
+	for {
+		token, err := d.Token()
+		if errors.Is(err, io.EOF) {
+			return tokens
+		}
+		if err != nil {
+			t.Fatalf("page is not well-formed: %v", err)
+		}
+		tokens = append(tokens, xml.CopyToken(token))
+	}
+}
+
+// elements returns the start tags of a page.
+func elements(t *testing.T, page string) []xml.StartElement {
+	t.Helper()
+	var found []xml.StartElement
+	for _, token := range htmlTokens(t, page) {
+		if e, ok := token.(xml.StartElement); ok {
+			found = append(found, e)
+		}
+	}
+	return found
+}
+
+func attribute(e xml.StartElement, name string) string {
+	for _, a := range e.Attr {
+		if a.Name.Local == name {
+			return a.Value
+		}
+	}
+	return ""
+}
+
+func TestHTMLSameBytes(t *testing.T) {
+	one, again := htmlOf(t, specimen.Result()), htmlOf(t, specimen.Result())
+	if one != again {
+		t.Error("the page differs from one time to the next")
+	}
+}
+
+func TestHTMLAnswersFirst(t *testing.T) {
+	page := htmlOf(t, storedSample())
+	last := -1
+	for _, part := range []string{"<h1>tonight/run7.csv</h1>", "No: inconsistent", "do not use z before its cause is known",
+		"52.3(11)\u00a0pN/µm", "48.1 [47.5, 49.6]\u00a0pN/µm", ">withheld</dd>", "the drag route is 31(6)\u00a0% above",
+		`id="findings"`, "slow-drift", "let the stage settle", `id="figures"`, `id="figure-estimates"`, `id="estimates"`, `id="drag"`, `id="budget"`,
+		`id="fits"`, `id="reading"`, `id="settings"`, `id="provenance"`, `id="result"`} {
+		at := strings.Index(page, part)
+		if at <= last {
+			t.Errorf("%q stands at %d, want it behind %d", part, at, last)
+		}
+		last = max(last, at)
+	}
+}
+
+func TestHTMLIsSelfContained(t *testing.T) {
+	page := htmlOf(t, specimen.Result())
+	for _, e := range elements(t, page) {
+		for _, a := range e.Attr {
+			if a.Name.Local == "style" || strings.HasPrefix(a.Name.Local, "on") {
+				t.Errorf("element %s has the attribute %s, which the policy forbids", e.Name.Local, a.Name.Local)
+			}
+			if a.Name.Local == "src" || (a.Name.Local == "href" && !strings.HasPrefix(a.Value, "#") && a.Value != "data:,") {
+				t.Errorf("element %s points to %q", e.Name.Local, a.Value)
+			}
+		}
+		if e.Name.Local == "script" && attribute(e, "type") != "application/json" {
+			t.Error("the page has a script")
+		}
+	}
+	start, end := strings.Index(page, "<style>")+len("<style>"), strings.Index(page, "</style>")
+	want, policies := policy(page[start:end]), 0
+	for _, e := range elements(t, page) {
+		if attribute(e, "http-equiv") != "Content-Security-Policy" {
+			continue
+		}
+		policies++
+		if got := attribute(e, "content"); got != want {
+			t.Errorf("policy %s, want %s with the hash of the style sheet", got, want)
+		}
+	}
+	if policies != 1 {
+		t.Errorf("%d policies, want 1", policies)
+	}
+	if strings.Contains(page, "ZgotmplZ") {
+		t.Error("the template refused a value")
+	}
+}
+
+// TestHTMLForScreenReaders checks what a reader that hears the page needs; a
+// browser run of axe-core found no violation on the same page.
+func TestHTMLForScreenReaders(t *testing.T) {
+	ids, level, captions, tables := map[string]bool{}, 0, 0, 0
+	var wanted []string
+	landmarks := map[string]int{}
+	for _, e := range elements(t, htmlOf(t, specimen.Result())) {
+		name := e.Name.Local
+		if id := attribute(e, "id"); id != "" {
+			if ids[id] {
+				t.Errorf("two elements have the id %s", id)
+			}
+			ids[id] = true
+		}
+		if href := attribute(e, "href"); strings.HasPrefix(href, "#") {
+			wanted = append(wanted, href[1:])
+		}
+		wanted = append(wanted, strings.Fields(attribute(e, "aria-labelledby"))...)
+		switch name {
+		case "html":
+			if attribute(e, "lang") != "en" {
+				t.Error("the page has no language")
+			}
+		case "h1", "h2", "h3", "h4":
+			if next := int(name[1] - '0'); next > level+1 {
+				t.Errorf("heading %s follows level %d", name, level)
+			} else {
+				level = next
+			}
+		case "table":
+			tables++
+		case "caption":
+			captions++
+		case "th":
+			if attribute(e, "scope") == "" {
+				t.Error("a header cell has no scope")
+			}
+		case "header", "main", "nav", "footer":
+			landmarks[name]++
+		}
+	}
+	if captions != tables || tables < 6 {
+		t.Errorf("%d captions for %d tables", captions, tables)
+	}
+	for _, id := range wanted {
+		if !ids[id] {
+			t.Errorf("nothing has the id %s", id)
+		}
+	}
+	if diff := cmp.Diff(map[string]int{"header": 1, "main": 1, "nav": 1, "footer": 1}, landmarks); diff != "" {
+		t.Error(diff)
+	}
+}
+
+var embedded = regexp.MustCompile(`(?s)<script type="application/json" id="result">(.*?)</script>`)
+
+func TestHTMLHoldsTheResult(t *testing.T) {
+	r := storedSample()
+	r.Input.Name = "</script><script>alert(1)</script><!--\u2028"
+	page := htmlOf(t, r)
+	match := embedded.FindAllStringSubmatch(page, -1)
+	if len(match) != 1 {
+		t.Fatalf("%d results in the page, want 1", len(match))
+	}
+	got, err := ReadJSON(strings.NewReader(match[0][1]))
+	if err != nil {
+		t.Fatal(err)
+	}
+	var want, again bytes.Buffer
+	if err := JSON(&want, r); err != nil {
+		t.Fatal(err)
+	}
+	if err := JSON(&again, got); err != nil {
+		t.Fatal(err)
+	}
+	if want.String() != again.String() {
+		t.Error(cmp.Diff(want.String(), again.String()))
+	}
+}
+
+func TestHTMLHostileNames(t *testing.T) {
+	const name = "<img src=x onerror=alert(1)>\x1b[31m\u202e\x00\"'`{{.}}"
+	r := storedSample()
+	clean := len(elements(t, htmlOf(t, r)))
+	r.Input.Name, r.Input.Bead = name, name
+	r.Findings[0].Text, r.Findings[0].Code, r.Findings[0].Remedy = name, name, name
+	r.Settings[0].Text, r.Settings[0].Key, r.Settings[0].Where = name, name, name
+	r.ReadAs.Line, r.ReadAs.Columns[0].Header = name, name
+	r.Program.Command = []string{"beadwell", name}
+	r.Verdict.Text = name
+	page := htmlOf(t, r)
+	if got := len(elements(t, page)); got != clean {
+		t.Errorf("%d elements, want %d: a name became markup", got, clean)
+	}
+	for _, bad := range []string{"<img", "\x1b", "\u202e", "\x00"} {
+		if strings.Contains(page, bad) {
+			t.Errorf("the page holds %q", bad)
+		}
+	}
+}
+
+func TestHTMLOfLittle(t *testing.T) {
+	for name, r := range map[string]*calib.Result{
+		"nothing": {}, "one empty axis": {Axes: []calib.Axis{{Name: "x"}}}, "no findings": {Verdict: calib.Verdict{Status: calib.Unfit}},
+	} {
+		if page := htmlOf(t, r); !strings.Contains(page, "Nothing was found that you need to know.") {
+			t.Errorf("%s: the page does not say that there is nothing to know", name)
+		}
+	}
+}
+
+func TestLaserCaution(t *testing.T) {
+	for remedy, want := range map[string]bool{
+		"lower the laser power and repeat":            true,
+		"let the Laser warm up for half an hour":      true,
+		"realign the beam":                            true,
+		"use less trapping light":                     true,
+		"reduce the trap power":                       true,
+		"close the shutter between recordings":        true,
+		"let the stage settle and repeat":             false,
+		"state the exposure: --exposure 0.4ms":        false,
+		"raise the statistical power by a longer run": false,
+		"": false,
+	} {
+		if got := findingOf(calib.Finding{Remedy: remedy}).Caution != ""; got != want {
+			t.Errorf("caution for %q: %t, want %t", remedy, got, want)
+		}
+	}
+	page := htmlOf(t, specimen.Result())
+	if n := strings.Count(page, laserCaution); n != 1 {
+		t.Errorf("%d cautions, want one for the one remedy that names the laser", n)
+	}
+}
+
+func TestTypesetUnits(t *testing.T) {
+	for in, want := range map[string]string{
+		"52.3(11) pN/um":            "52.3(11)\u00a0pN/µm",
+		"bead of 1.02(3) um, 22 C":  "bead of 1.02(3)\u00a0µm, 22\u00a0°C",
+		"155.8(17) nm2":             "155.8(17)\u00a0nm²",
+		"stiffness in pN/um":        "stiffness in pN/µm",
+		"time in s, x in um, 10 Hz": "time in s, x in um, 10\u00a0Hz",
+		"-39 nm to 4 nm":            "−39\u00a0nm to 4\u00a0nm",
+		"run-3 of 2026-01-02":       "run-3 of 2026-01-02",
+		"5 %":                       "5\u00a0%",
+		"use --unit um":             "use --unit um",
+		"997.77(50) kg/m3":          "997.77(50) kg/m³",
+		"drum 2 um":                 "drum 2\u00a0µm",
+		"3 sum":                     "3 sum",
+		"0.43(2) um2/s":             "0.43(2)\u00a0µm²/s",
+	} {
+		if got := typeset(in); got != want {
+			t.Errorf("typeset(%q) = %q, want %q", in, got, want)
+		}
+	}
+}
+
+func TestCommandLineQuotes(t *testing.T) {
+	got := commandLine([]string{"beadwell", "calibrate", "--diameter", "1.02(3) um", "it's.csv", ""})
+	if want := `beadwell calibrate --diameter '1.02(3) um' 'it'\''s.csv' ''`; got != want {
+		t.Errorf("commandLine = %s, want %s", got, want)
+	}
+}
+
+func TestBudgetRow(t *testing.T) {
+	row := budgetRow(calib.BudgetLine{Input: "temperature", Value: 295.15, Unit: "K", StandardUncertainty: 2, Sensitivity: 1.2, Contribution: 0.0081, Share: 0.34})
+	var got []string
+	for _, c := range row.Cells {
+		got = append(got, c.Text)
+	}
+	want := []string{"22.0(20)\u00a0°C", "1.2", "0.81\u00a0%", "34\u00a0%"}
+	if diff := cmp.Diff(want, got); diff != "" {
+		t.Error(diff)
+	}
+	if row.Cells[3].Bar != "34.0" {
+		t.Errorf("bar of %s percent, want 34.0", row.Cells[3].Bar)
+	}
+	if row := budgetRow(calib.BudgetLine{Value: calib.Float(math.NaN())}); row.Cells[0].Text != dash {
+		t.Errorf("value %q of an input without one, want %q", row.Cells[0].Text, dash)
+	}
+}
+
+// fullDevice is a writer to a full device.
+type fullDevice struct{}
+
+var errFull = errors.New("no space left")
+
+func (fullDevice) Write([]byte) (int, error) { return 0, errFull }
+
+func TestHTMLTellsWhenItCannotWrite(t *testing.T) {
+	if err := HTML(fullDevice{}, storedSample()); !errors.Is(err, errFull) {
+		t.Errorf("error %v, want %v", err, errFull)
 	}
 }
