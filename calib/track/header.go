@@ -22,6 +22,9 @@ const maxHeaderRows = 4
 // newHeaderRow weighs the cells of a line.
 func newHeaderRow(line textLine, cells []string) headerRow {
 	h := headerRow{line: line, cells: cells}
+	if len(cells) > columnLimit {
+		return h
+	}
 	for _, c := range cells {
 		if trimCell(c) == "" {
 			continue

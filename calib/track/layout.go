@@ -39,8 +39,11 @@ func (lay *layout) decode(line []byte) string {
 	if lay.legacy {
 		for _, c := range line {
 			if c >= utf8.RuneSelf {
-				text, _ := charmap.Windows1252.NewDecoder().Bytes(line)
-				return string(text)
+				var b strings.Builder
+				for _, c := range line {
+					b.WriteRune(charmap.Windows1252.DecodeByte(c))
+				}
+				return b.String()
 			}
 		}
 	}

@@ -108,6 +108,10 @@ func (p *parser) slowRow(line []byte, number, row int, last bool) {
 		return
 	}
 	texty := isText(cells, p.lay.mark)
+	if len(p.bad) == keptBad && len(cells) != len(p.lay.fields) {
+		p.reject(row, texty, nil) // only counted
+		return
+	}
 	if err := p.checkWidth(cells, text, number, last); err != nil {
 		p.reject(row, texty, err)
 		return

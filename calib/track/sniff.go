@@ -116,10 +116,14 @@ func look(lines []textLine, delimiter byte) *view {
 		if isBlank(line.text) || isComment(line.text) {
 			continue
 		}
+		if !strings.ContainsAny(line.text, "0123456789") {
+			v.cells[i] = []cell{} // no row; not worth cutting up
+			continue
+		}
 		cells, _ := splitLine(nil, line.text, delimiter)
 		kinds := make([]cellKind, len(cells))
 		score := 0
-		for k, c := range cells {
+		for k, c := range cells[:min(len(cells), columnLimit+1)] {
 			kinds[k] = kindOf(c)
 			switch kinds[k] {
 			case numberCell, clockCell:
@@ -236,6 +240,9 @@ func preferSpaces(lines []textLine, best *view, wanted byte) *view {
 	return best
 }
 
+// preambleLimit is the number of lines in which the first row must be found.
+const preambleLimit = 25_600
+
 // sniff finds the delimiter and the first row. wanted restricts the search to
 // one delimiter; 0 tries all.
 func sniff(lay *layout, sample []byte, wanted byte) *view {
@@ -253,7 +260,7 @@ func sniff(lay *layout, sample []byte, wanted byte) *view {
 		}
 		best = preferSpaces(lines, best, wanted)
 		enough := best.first >= 0 && len(lines)-best.first >= 100
-		if enough || len(lines) < limit {
+		if enough || len(lines) < limit || limit >= preambleLimit {
 			return best
 		}
 	}

@@ -137,7 +137,7 @@ func wantedDelimiter(opt Options, sample []byte) (byte, error) {
 
 // noRows is the error of a sample without a single row of numbers.
 func (v *view) noRows(name string) error {
-	for i := len(v.lines) - 1; i >= 0; i-- {
+	for i := len(v.lines) - 1; i >= max(0, len(v.lines)-50); i-- {
 		if isBlank(v.lines[i].text) {
 			continue
 		}
