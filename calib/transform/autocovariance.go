@@ -37,38 +37,20 @@ func Autocovariance(x []float64, maxLag int) []float64 {
 	return sums
 }
 
-// wholeSums sets sums[k] = sum_j x_j x_{j+k} for all k < len(sums) <= len(x).
-func wholeSums(sums, x []float64) {
-	p := recentPlans.get(GoodLengthAbove(len(x) + len(sums) - 1))
-	power := p.reals.get(p.half + 1)
-	defer p.reals.put(power)
-	copy(sums, p.fromPower(nil, p.Power(*power, x)))
-}
-
 // PowerAndAutocovariance returns |X_k|^2 for k = 0 .. n/2, where n is the length of
-// x, and sum_j x_j x_{j+k} for k = 0 .. n-1 [both: unit of x, squared], from one
-// transform of x padded with zeros to exactly 2n: the bins of x itself are every other
-// one of it. It returns the error of NewPlan when n is not a good length. The
-// accuracy of the sums is that of Autocovariance.
+// x, and sum_j x_j x_{j+k} for k = 0 .. n-1 [both: unit of x, squared]. Together they cost
+// little more than the sums alone: these need the transform of x padded with zeros to twice
+// its length, and every other bin of that is one of x itself. The powers are those of
+// Power to the last bit; the accuracy of the sums is that of Autocovariance. The error is
+// that of NewPlan when n is not a good length.
 func PowerAndAutocovariance(x []float64) (power, sums []float64, err error) {
-	if err := checkLength(len(x)); err != nil {
+	p, err := NewPlan(len(x))
+	if err != nil {
 		return nil, nil, err
 	}
-	p := recentPlans.get(2 * len(x))
-	padded := p.reals.get(p.half + 1)
-	defer p.reals.put(padded)
-	p.Power(*padded, x)
-	power = make([]float64, len(x)/2+1)
-	for k := range power {
-		power[k] = (*padded)[2*k]
+	if p.half%2 == 0 {
+		power, sums = p.powerAndSums(x)
+		return power, sums, nil
 	}
-	return power, p.fromPower(nil, *padded)[:len(x):len(x)], nil
-}
-
-// fromPower returns the n cyclic autocovariance sums of the series of which power is
-// |X_k|^2, in dst if that has the capacity.
-func (p *Plan) fromPower(dst, power []float64) []float64 {
-	dst = sized(dst, p.n)
-	run(p, asComplex(dst), &powerSpectrum{power, &p.roots}, conjugatePairs)
-	return dst
+	return p.Power(nil, x), Autocovariance(x, len(x)-1), nil
 }

@@ -40,3 +40,17 @@ func BenchmarkPowerGonum(b *testing.B) {
 		})
 	}
 }
+
+// BenchmarkAutocovariance takes the direct sums, the blocks and the whole.
+func BenchmarkAutocovariance(b *testing.B) {
+	const n = 1_000_000
+	x := noise(1, n)
+	for _, maxLag := range []int{16, 200, 5000, n - 1} {
+		b.Run(fmt.Sprint(maxLag), func(b *testing.B) {
+			b.SetBytes(8 * n)
+			for b.Loop() {
+				Autocovariance(x, maxLag)
+			}
+		})
+	}
+}

@@ -46,5 +46,14 @@ func conjugatePairs(low, high, z, mirror []complex128, _ complex128, _ []complex
 	}
 }
 
+// squarePairs gives |Z_k|^2.
+func squarePairs(low, high []float64, z, mirror []complex128, _ complex128, _ []complex128) {
+	mirror, high, low = mirror[:len(z)], high[:len(z)], low[:len(z)]
+	for i := range z {
+		j := len(z) - 1 - i
+		low[i], high[j] = square(z[i]), square(mirror[j])
+	}
+}
+
 // square returns |z|^2.
 func square(z complex128) float64 { return real(z)*real(z) + imag(z)*imag(z) }

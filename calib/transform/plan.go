@@ -17,7 +17,7 @@ type Plan struct {
 	roots     roots        // exp(-2 pi i k/n), k < n
 
 	work  pool[complex128] // buffers of length half; only if rows > 1
-	reals pool[float64]    // buffers of length half+1
+	reals pool[float64]    // buffers of length half
 	desks sync.Pool        // *desk
 }
 
@@ -86,7 +86,7 @@ func (p *Plan) Length() int { return p.n }
 func (p *Plan) Power(dst, x []float64) []float64 {
 	p.checkSeries(x)
 	dst = sized(dst, p.half+1)
-	run(p, dst, series(x), powerPairs)
+	run(p, dst, seriesSource(x, p.n), powerPairs)
 	return dst
 }
 
@@ -96,7 +96,7 @@ func (p *Plan) Power(dst, x []float64) []float64 {
 func (p *Plan) Forward(dst []complex128, x []float64) []complex128 {
 	p.checkSeries(x)
 	dst = sized(dst, p.half+1)
-	run(p, dst, series(x), binPairs)
+	run(p, dst, seriesSource(x, p.n), binPairs)
 	return dst
 }
 
@@ -115,7 +115,7 @@ func (p *Plan) Inverse(dst []float64, c []complex128) []float64 {
 		panic("transform: spectrum does not have the length of the plan, n/2+1")
 	}
 	dst = sized(dst, p.n)
-	run(p, asComplex(dst), &spectrum{c, &p.roots}, conjugatePairs)
+	run(p, asComplex(dst), spectrumSource(c, &p.roots), conjugatePairs)
 	return dst
 }
 

@@ -40,22 +40,39 @@ func run[T float64 | complex128](p *Plan, dst []T, from source, pair pairing[T])
 	if p.rows == 1 {
 		d := p.borrowDesk()
 		defer p.desks.Put(d)
-		from.gather(d.block[0], 0, p.half, p.half)
-		z, _ := p.row.transform(d.block[0], d.spare, d.block[0], 1)
+		z := from.z
+		if z == nil {
+			z = d.block[0]
+			from.fill(z, 0)
+		}
+		z, _ = p.row.transform(z, d.spare, d.block[0], 1)
 		storeWhole(p, dst, z, pair)
 		return
 	}
 	work := p.work.get(p.half)
 	defer p.work.put(work)
+	z := from.z
+	if z == nil {
+		z = *work
+		p.spread((p.half+fillLength-1)/fillLength, func(_ *desk, block int) {
+			first := block * fillLength
+			from.fill(z[first:min(first+fillLength, p.half)], first)
+		})
+	}
 	columns := p.half / p.rows
 	p.spread((columns+blockWidth-1)/blockWidth, func(d *desk, block int) {
 		first := block * blockWidth
-		p.columnBlock(d, *work, from, first, min(blockWidth, columns-first))
+		p.columnBlock(d, *work, z, first, min(blockWidth, columns-first))
 	})
 	p.spread(p.rows/2/blockWidth+1, func(d *desk, block int) {
 		rowBlock(p, d, dst, *work, block*blockWidth, pair)
 	})
 }
+
+// fillLength is the number of points of a source that are made at a time. They are made in
+// their order and not as the columns need them: numbers far apart have to be waited
+// for, which cost three times what the additional sweep over memory does.
+const fillLength = 1 << 14
 
 func (p *Plan) borrowDesk() *desk {
 	if d, ok := p.desks.Get().(*desk); ok {
@@ -80,17 +97,19 @@ func (p *Plan) spread(blocks int, do func(d *desk, block int)) {
 }
 
 // columnBlock transforms width columns from column first on, and multiplies row r of
-// column c with exp(-2 pi i r c/half).
-func (p *Plan) columnBlock(d *desk, work []complex128, from source, first, width int) {
+// column c with exp(-2 pi i r c/half). z and work may be the same.
+func (p *Plan) columnBlock(d *desk, work, z []complex128, first, width int) {
 	columns := p.half / p.rows
 	a, b := d.columns[0][:p.rows*width], d.columns[1][:p.rows*width]
-	from.gather(a, first, width, columns)
-	z, _ := p.column.transform(a, b, a, width)
+	for r := range p.rows {
+		copy(a[r*width:][:width], z[r*columns+first:])
+	}
+	a, _ = p.column.transform(a, b, a, width)
 	if width == blockWidth {
-		p.turnColumns(work, z, first)
+		p.turnColumns(work, a, first)
 		return
 	}
-	for i, v := range z {
+	for i, v := range a {
 		r, c := i/width, first+i%width
 		work[r*columns+c] = v * p.halfRoots.at(r*c)
 	}
