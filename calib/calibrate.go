@@ -1,0 +1,143 @@
+// Package calib calibrates one recording of a trapped bead: it estimates the
+// stiffness of each axis by three methods, compares them with what the drag of the bead
+// should be, says whether they agree, and adopts one value.
+//
+// The estimators are packages psd, equipartition and calib/msd. This package turns
+// their corner frequencies and variances into stiffnesses by two routes: through drag (2 pi
+// gamma fc, gamma by Stokes and the wall) and through amplitude (kT over variance). The
+// routes fail for different reasons, and are compared with the covariance that
+// estimates from one record have.
+package calib
+
+import (
+	"context"
+	"fmt"
+	"math"
+	"runtime"
+	"strings"
+	"sync"
+
+	"beadwell/calib/session"
+	"beadwell/calib/track"
+)
+
+// Options are choices that are not settings of the recording.
+type Options struct {
+	// Adopt names the route to adopt, RouteDrag or RouteAmplitude, whatever the
+	// cross-check says. Empty: the combination, withheld when the routes disagree.
+	Adopt string
+	// Program and its version, and the command line, for the record.
+	Program Program
+}
+
+// DataError says that a recording cannot carry a calibration.
+type DataError struct {
+	Name    string // of the recording
+	Axis    string
+	Problem string
+	Remedy  string
+}
+
+// Error gives the name, the axis and the problem, and the hint on a line of its own.
+func (e *DataError) Error() string {
+	text := e.Name + ": "
+	if e.Axis != "" {
+		text += "axis " + e.Axis + ": "
+	}
+	text += e.Problem
+	if e.Remedy != "" {
+		text += "\n  hint: " + e.Remedy
+	}
+	return text
+}
+
+// Calibrate calibrates one recording with the settings in force.
+//
+// The error is a *SettingError when a setting is missing or impossible, a *DataError
+// when the recording cannot carry an estimate, and that of the context when it is
+// cancelled. The result does not depend on the number of processors.
+func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings, opt Options) (*Result, error) {
+	if opt.Adopt != "" && opt.Adopt != RouteDrag && opt.Adopt != RouteAmplitude {
+		return nil, &SettingError{Key: "adopt", Problem: fmt.Sprintf("%q is neither %q nor %q", opt.Adopt, RouteDrag, RouteAmplitude)}
+	}
+	if role, ok := set.Lookup("role", ""); ok && role.Word != "trapped" && role.Word != "" {
+		return nil, &SettingError{Key: "role", Where: role.Where, Problem: fmt.Sprintf("%q is not a recording that can be calibrated on its own", role.Word),
+			Remedy: "calibrate recordings of the role trapped"}
+	}
+	works := make([]*work, len(rec.Axes))
+	for i := range rec.Axes {
+		w, err := newWork(rec, i, set, opt)
+		if err != nil {
+			return nil, err
+		}
+		works[i] = w
+	}
+	if err := runAll(ctx, works); err != nil {
+		return nil, err
+	}
+	r := &Result{Schema: SchemaVersion, Program: opt.Program, Settings: listSettings(set), Findings: []Finding{}}
+	r.describe(rec, works)
+	for _, w := range works {
+		r.Axes = append(r.Axes, w.axis)
+	}
+	r.judge(works, opt)
+	r.collectFindings(rec, set, works)
+	return r, nil
+}
+
+// runAll analyses the axes at the same time; the first error in the order of the
+// axes is returned.
+func runAll(ctx context.Context, works []*work) error {
+	errs := make([]error, len(works))
+	limit := make(chan struct{}, runtime.GOMAXPROCS(0))
+	var group sync.WaitGroup
+	for i, w := range works {
+		group.Go(func() {
+			limit <- struct{}{}
+			defer func() { <-limit }()
+			if errs[i] = ctx.Err(); errs[i] == nil {
+				errs[i] = w.run(ctx)
+			}
+		})
+	}
+	group.Wait()
+	for _, err := range errs {
+		if err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+// describe fills in what was read.
+func (r *Result) describe(rec *track.Recording, works []*work) {
+	r.Input = Input{Name: rec.Name, Bead: rec.Bead, Size: rec.Size, SHA256: rec.SHA256}
+	r.ReadAs = ReadAs{Line: rec.ReadAs.String()}
+	for _, c := range rec.ReadAs.Columns {
+		r.ReadAs.Columns = append(r.ReadAs.Columns, Column{Header: c.Header, Role: c.Role, Unit: c.Unit})
+	}
+	for _, n := range rec.Notes {
+		r.ReadAs.Notes = append(r.ReadAs.Notes, n.Text)
+	}
+	start := Float(rec.Start)
+	if math.IsNaN(rec.JitterRMS) {
+		start = Float(math.NaN())
+	}
+	r.Recording = Recording{Rate: Float(rec.Rate), RateOrigin: rec.RateOrigin, Samples: rec.Samples, Missing: rec.Missing,
+		Duration: Float(float64(rec.Samples) / rec.Rate), Exposure: Float(math.NaN()), Jitter: Float(rec.JitterRMS), Start: start}
+	if len(works) > 0 {
+		r.Medium, r.Bead = works[0].phys.medium, works[0].phys.bead
+		r.Recording.Exposure = Float(works[0].exposure)
+	}
+}
+
+// pN formats a stiffness in pN/um for sentences.
+func pN(kappa float64) string { return fmt.Sprintf("%.4g pN/um", kappa*1e6) }
+
+// join lists words: "x", "x and y", "x, y and z".
+func join(words []string) string {
+	if len(words) < 2 {
+		return strings.Join(words, "")
+	}
+	return strings.Join(words[:len(words)-1], ", ") + " and " + words[len(words)-1]
+}

@@ -1,0 +1,300 @@
+package calib
+
+import (
+	"fmt"
+	"math"
+
+	"gonum.org/v1/gonum/stat/distuv"
+
+	"beadwell/calib/msd"
+	"beadwell/calib/relaxation"
+	"beadwell/equipartition"
+	"beadwell/psd"
+)
+
+// hopeless is the Cramer-Rao bound of a logarithm above which a leg is withheld: beyond
+// it the likelihood is so far from normal that neither the estimate nor its interval
+// means what it says.
+const hopeless = 0.5
+
+// smallEnough is the relative uncertainty below which an interval is taken as
+// normal in the logarithm: the skewness of a variance estimate of relative uncertainty
+// s moves the ends of its 95 % interval by about s^2, here 1e-4.
+const smallEnough = 0.01
+
+// estimate fills the legs: values, intervals and covariances.
+func (w *work) estimate() {
+	l := &w.legs
+	for i := range l.value {
+		l.value[i] = math.NaN()
+	}
+	w.spectrumLegs()
+	process, total, data, drawn := w.bestProcess()
+	w.equipartitionLeg(process, total, data, drawn)
+	w.displacementLegs(process, total, drawn)
+	w.covariances()
+	w.influences()
+	w.exposureInfluence()
+	w.totals()
+}
+
+// bestProcess returns the drag-free fit, or, where that has no maximum, the one that
+// knows the drag. The covariance is drag-free as long as that can be computed; drawn
+// tells that it could not.
+func (w *work) bestProcess() (p relaxation.Process, total, data relaxation.Matrix, drawn bool) {
+	if w.fitErr == nil {
+		return w.fit.Process(), w.fit.Total, w.fit.Data, false
+	}
+	at, scale := w.pooled.maximum.At, w.fit.Scale()
+	p = relaxation.Process{Corner: math.Exp(at[0]) * w.rate, Variance: scale * math.Exp(at[1]), Noise: scale * at[2],
+		Interval: 1 / w.rate, Exposure: w.exposure}
+	total, data, err := w.fit.Problem.Covariance(w.pooled.maximum.Information)
+	if err != nil {
+		return p, w.pooled.total, w.pooled.data, true
+	}
+	return p, total, data, false
+}
+
+func (w *work) spectrumLegs() {
+	l, p := &w.legs, &w.pooled
+	switch {
+	case w.fitErr != nil:
+		reason := "corner frequency, variance and noise cannot be told apart in this recording; the likelihood has no maximum"
+		l.reason[spectrumLeg], l.reason[amplitudeLeg] = reason, reason
+		return
+	}
+	sdC, _ := w.fit.SD(alongCorner)
+	sdV, _ := w.fit.SD(alongVariance)
+	if p.regimeFC > hopeless || sdC > 2*hopeless {
+		l.reason[spectrumLeg] = tooUncertain(math.Max(p.regimeFC, sdC))
+	} else {
+		l.value[spectrumLeg] = math.Log(2 * math.Pi * w.phys.gamma * w.fit.Corner)
+		l.offsets[spectrumLeg] = w.profile(alongCorner, sdC)
+	}
+	if p.regimeV > hopeless || sdV > 2*hopeless {
+		l.reason[amplitudeLeg] = tooUncertain(math.Max(p.regimeV, sdV))
+	} else {
+		l.value[amplitudeLeg] = math.Log(w.phys.kT / w.fit.Variance)
+		l.offsets[amplitudeLeg] = w.profile(alongVariance, sdV).Mirrored()
+	}
+}
+
+func tooUncertain(bound float64) string {
+	if math.IsInf(bound, 0) {
+		return "the recording does not determine it: noise, blur and relaxation cannot be told apart"
+	}
+	return fmt.Sprintf("no estimate from this recording can be better than %.0f %% (Cramer-Rao bound)", 100*bound)
+}
+
+// profile returns the statistical interval of a combination of the fit's parameters. Where the noise was stated
+// with an uncertainty, the profile covers that too and is scaled to the record's part.
+func (w *work) profile(weights relaxation.Parameters, data float64) relaxation.Offsets {
+	_, total := w.fit.SD(weights)
+	if data < smallEnough || total == 0 {
+		return relaxation.Normal(data)
+	}
+	return w.fit.Problem.Profile(w.fit.Maximum, weights, total).Scaled(data / total)
+}
+
+func (w *work) equipartitionLeg(p relaxation.Process, total, data relaxation.Matrix, drawn bool) {
+	l := &w.legs
+	if drawn {
+		l.reason[equipartitionLeg] = "the noise is not stated, and the recording does not determine it"
+		return
+	}
+	lost := 0.0
+	for _, line := range w.record.Lines {
+		lost += 3 * p.Spectrum(line.Frequency) * w.rate
+	}
+	eq, err := equipartition.Estimate(equipartition.Input{MeanSquare: w.record.MeanSquare(), Samples: len(w.record.X), Observed: w.record.Observed(),
+		Process: p, Lost: lost, Scale: w.fit.Scale(), Total: total, Data: data})
+	l.eq = eq
+	if err != nil {
+		l.reason[equipartitionLeg] = err.Error()
+		return
+	}
+	if eq.SD > hopeless {
+		l.reason[equipartitionLeg] = tooUncertain(eq.SD)
+		return
+	}
+	// kT/V is biased by the square of the relative uncertainty, its logarithm by half that
+	l.value[equipartitionLeg] = math.Log(w.phys.kT/eq.Variance) - eq.SD*eq.SD/2
+	l.offsets[equipartitionLeg] = w.shaped(amplitudeLeg, eq.SD)
+}
+
+// shaped returns the interval of an estimate that is nearly the same statistic as a leg
+// of the spectrum: its shape, at the scale of the estimate's own uncertainty.
+func (w *work) shaped(like int, sd float64) relaxation.Offsets {
+	if !math.IsNaN(w.legs.value[like]) {
+		weights := alongVariance
+		if like == spectrumLeg {
+			weights = alongCorner
+		}
+		if own, _ := w.fit.SD(weights); own > 0 && !math.IsInf(w.legs.offsets[like].Low95, 0) && !math.IsInf(w.legs.offsets[like].High95, 0) {
+			return w.legs.offsets[like].Scaled(sd / own)
+		}
+	}
+	if like == amplitudeLeg {
+		return chiSquareOffsets(sd).Mirrored()
+	}
+	return relaxation.Normal(sd)
+}
+
+// chiSquareOffsets are the offsets of ln V for a variance that is distributed as a
+// chi-square with 2/sd^2 degrees of freedom (Satterthwaite, Biometrics Bull. 2 (1946) 110).
+func chiSquareOffsets(sd float64) relaxation.Offsets {
+	nu := math.Max(1, 2/(sd*sd))
+	d := distuv.ChiSquared{K: nu}
+	end := func(p float64) float64 { return math.Abs(math.Log(d.Quantile(p) / nu)) }
+	return relaxation.Offsets{Low68: end(0.84134), High68: end(0.15866), Low95: end(0.975), High95: end(0.025)}
+}
+
+func (w *work) displacementLegs(p relaxation.Process, total relaxation.Matrix, drawn bool) {
+	l := &w.legs
+	m, err := msd.Estimate(msd.Input{X: w.record.X, Missing: w.record.Missing > 0, Guess: p, Scale: w.fit.Scale(), FitCovariance: total,
+		Noise: msd.Noise{Known: w.noise.Known, Variance: w.noise.Variance, VarianceU: w.noise.VarianceU}})
+	if err != nil {
+		l.reason[displacementLeg], l.reason[timeLeg] = err.Error(), err.Error()
+		return
+	}
+	l.msd = m
+	sdV, sdC := math.Sqrt(m.Covariance[1][1]), math.Sqrt(m.Covariance[0][0])
+	bound := w.pooled.regimeV
+	if sdV > hopeless || bound > hopeless || drawn {
+		l.reason[displacementLeg] = tooUncertain(math.Max(sdV, bound))
+	} else {
+		l.value[displacementLeg] = math.Log(w.phys.kT / m.Variance)
+		l.offsets[displacementLeg] = w.shaped(amplitudeLeg, sdV)
+	}
+	if bound = w.pooled.regimeFC; sdC > hopeless || bound > hopeless || drawn {
+		l.reason[timeLeg] = tooUncertain(math.Max(sdC, bound))
+	} else {
+		l.value[timeLeg] = math.Log(2 * math.Pi * w.phys.gamma * m.Corner)
+		l.offsets[timeLeg] = w.shaped(spectrumLeg, sdC)
+	}
+}
+
+// covariances fills the joint covariance of the legs, inputs taken as exact.
+func (w *work) covariances() {
+	l := &w.legs
+	type row = [legCount]float64
+	s := &l.stat
+	if w.fitErr == nil {
+		f := w.fit.Data
+		s[spectrumLeg] = row{spectrumLeg: f[0][0], amplitudeLeg: -f[0][1]}
+		s[amplitudeLeg] = row{spectrumLeg: -f[0][1], amplitudeLeg: f[1][1]}
+		with := l.eq.WithFit // with ln V of equipartition; kappa changes the sign
+		set(s, equipartitionLeg, spectrumLeg, -with[0])
+		set(s, equipartitionLeg, amplitudeLeg, with[1])
+	}
+	set(s, equipartitionLeg, equipartitionLeg, l.eq.SD*l.eq.SD)
+	if m := l.msd; m != nil {
+		c := m.Covariance
+		set(s, displacementLeg, displacementLeg, c[1][1])
+		set(s, timeLeg, timeLeg, c[0][0])
+		set(s, displacementLeg, timeLeg, -c[0][1])
+		if w.fitErr == nil {
+			set(s, spectrumLeg, displacementLeg, -m.WithFit[1][0])
+			set(s, amplitudeLeg, displacementLeg, m.WithFit[1][1])
+			set(s, spectrumLeg, timeLeg, m.WithFit[0][0])
+			set(s, amplitudeLeg, timeLeg, -m.WithFit[0][1])
+		}
+		s2 := w.record.MeanSquare()
+		for leg, k := range map[int]int{displacementLeg: 1, timeLeg: 0} {
+			cov := l.eq.Gain * m.WithMeanSquare[k] / s2
+			for j, b := range l.eq.Slope {
+				cov += b * m.WithFit[k][j]
+			}
+			if leg == timeLeg {
+				cov = -cov
+			}
+			set(s, equipartitionLeg, leg, cov)
+		}
+	}
+}
+
+func set(m *[legCount][legCount]float64, i, j int, v float64) { m[i][j], m[j][i] = v, v }
+
+// influences fills what one standard uncertainty of each input does to each leg; after
+// the inputs of physics follow noise and exposure.
+func (w *work) influences() {
+	l := &w.legs
+	n := len(w.phys.influences)
+	for leg := range l.grad {
+		l.grad[leg] = make([]float64, n+2)
+		for i, in := range w.phys.influences {
+			if dragLeg[leg] {
+				l.grad[leg][i] = in.drag
+			} else {
+				l.grad[leg][i] = in.energy - 2*in.length
+			}
+		}
+	}
+	if !w.noise.Known || w.noise.VarianceU == 0 || w.fitErr != nil {
+		return
+	}
+	sd := w.noise.VarianceU / w.fit.Scale()
+	move := relaxation.Parameters{w.fit.Total[0][2] / sd, w.fit.Total[1][2] / sd, w.fit.Total[2][2] / sd}
+	l.grad[spectrumLeg][n] = move[0]
+	l.grad[amplitudeLeg][n] = -move[1]
+	for j, b := range l.eq.Slope {
+		l.grad[equipartitionLeg][n] -= b * move[j]
+	}
+	if l.msd != nil {
+		l.grad[displacementLeg][n] = -l.msd.NoiseSlope[1] * w.noise.VarianceU
+		l.grad[timeLeg][n] = l.msd.NoiseSlope[0] * w.noise.VarianceU
+	}
+}
+
+// exposureInfluence repeats the estimates with the exposure changed by its standard
+// uncertainty (to the other side where it would exceed the sampling interval).
+func (w *work) exposureInfluence() {
+	if w.exposureU == 0 || w.fitErr != nil {
+		return
+	}
+	l, n := &w.legs, len(w.phys.influences)+1
+	u := w.exposureU
+	if (w.exposure+u)*w.rate > 1 {
+		u = -math.Min(u, w.exposure)
+	}
+	if u == 0 {
+		return
+	}
+	shifted := *w
+	shifted.exposure, shifted.exposureU = w.exposure+u, 0
+	shifted.legs = legs{}
+	options := shifted.fitOptions()
+	options.KeepLines = true
+	var err error
+	if shifted.fit, err = psd.Estimate(w.record, options); err != nil {
+		return
+	}
+	for i := range shifted.legs.value {
+		shifted.legs.value[i] = math.NaN()
+	}
+	if shifted.pool() != nil {
+		return
+	}
+	shifted.spectrumLegs()
+	process, total, data, drawn := shifted.bestProcess()
+	shifted.equipartitionLeg(process, total, data, drawn)
+	shifted.displacementLegs(process, total, drawn)
+	for leg := range l.grad {
+		if d := shifted.legs.value[leg] - l.value[leg]; !math.IsNaN(d) {
+			l.grad[leg][n] = d * w.exposureU / u
+		}
+	}
+}
+
+// totals adds the inputs to the covariance.
+func (w *work) totals() {
+	l := &w.legs
+	l.total = l.stat
+	for i := range l.total {
+		for j := range l.total {
+			for k := range l.grad[i] {
+				l.total[i][j] += l.grad[i][k] * l.grad[j][k]
+			}
+		}
+	}
+}

@@ -1,0 +1,96 @@
+package calib
+
+import (
+	"math"
+
+	"beadwell/calib/relaxation"
+)
+
+// pooled is the fit that knows the computed drag: the prior says that ln fc + ln V is
+// what Stokes, wall and kT make it, within the uncertainty of the inputs.
+type pooled struct {
+	problem         relaxation.Problem
+	maximum         relaxation.Maximum
+	expected        float64 // ln fc + ln V in the parameters of the fit, computed
+	u               float64 // its standard uncertainty
+	along           float64 // rho: part of the routes' difference that is the drag's error
+	rest            float64 // variance of ln gamma that the difference does not tell
+	weights         relaxation.Parameters
+	total           relaxation.Matrix // covariance with the prior
+	data            relaxation.Matrix // the record's part of it
+	sdData, sdTotal float64           // of ln kappa, without rest
+	value           float64           // ln kappa
+	drag            float64           // weight of the drag route
+	regimeFC        float64           // Cramer-Rao bound of ln fc, drag and scale unknown; +Inf when singular
+	regimeV         float64           // the same of ln V
+}
+
+// leastPrior keeps the prior regular when every input is exact: 1e-5 is far below the
+// statistical uncertainty of any record (1e10 samples have 1.4e-5 in ln D).
+const leastPrior = 1e-5
+
+// pool fits with the computed drag as a prior. Its maximum exists also where drag-free
+// fits are hopeless, and tells how hopeless they are.
+func (w *work) pool() error {
+	p := &w.pooled
+	scale := w.fit.Scale()
+	dt := 1 / w.rate
+	p.expected = math.Log(w.phys.kT / w.phys.gamma / (2 * math.Pi) * dt / scale)
+	gg, ga, aa := w.phys.systematics()
+	difference := gg + aa - 2*ga // variance of e_a - e_g
+	p.u = math.Max(math.Sqrt(math.Max(difference, 0)), leastPrior)
+	p.along = -0.5
+	if difference > leastPrior*leastPrior {
+		p.along = (ga - gg) / difference
+	}
+	p.along = math.Max(-1, math.Min(0, p.along))
+	// variance of e_g (1 + rho) - rho e_a, the error of the combination at a known difference
+	k := p.along
+	p.rest = math.Max(0, (1+k)*(1+k)*gg+k*k*aa-2*k*(1+k)*ga)
+
+	p.problem = w.fit.Problem
+	p.problem.Priors = append([]relaxation.Prior{{Weights: alongDrag, Mean: p.expected, SD: p.u}}, w.fit.Problem.Priors...)
+	var err error
+	p.maximum, err = p.problem.Maximise(w.poolStart())
+	if err != nil {
+		return err
+	}
+	if p.total, p.data, err = p.problem.Covariance(p.maximum.Information); err != nil {
+		return err
+	}
+	// ln kappa = k1 + rho (k1 - k2), k1 = ln fc + ln 2 pi gamma, k2 = ln kT - ln V
+	p.weights = relaxation.Parameters{1 + k, k, 0}
+	k1 := p.maximum.At[0] + math.Log(w.rate*2*math.Pi*w.phys.gamma)
+	k2 := math.Log(w.phys.kT/scale) - p.maximum.At[1]
+	p.value = k1 + k*(k1-k2)
+	p.sdData = math.Sqrt(math.Max(0, p.data.Form(p.weights, p.weights)))
+	p.sdTotal = math.Sqrt(math.Max(0, p.total.Form(p.weights, p.weights)))
+	p.drag = (1 + k) - p.total.Form(p.weights, alongDrag)/(p.u*p.u)
+	p.regimeFC, p.regimeV = math.Inf(1), math.Inf(1)
+	if c, _, err := w.fit.Problem.Covariance(p.maximum.Information); err == nil {
+		p.regimeFC, p.regimeV = math.Sqrt(c[0][0]), math.Sqrt(c[1][1])
+	}
+	return nil
+}
+
+// poolStart starts from the drag-free fit where there is one, moved onto the computed
+// drag half by corner frequency and half by variance, else from the record's variance.
+func (w *work) poolStart() relaxation.Parameters {
+	p := &w.pooled
+	at := w.fit.Maximum.At
+	if w.fitErr != nil {
+		at = relaxation.Parameters{p.expected, 0, 0}
+		if w.noise.Known {
+			at[2] = w.noise.Variance / w.fit.Scale()
+			at[1] = math.Log(math.Max(0.05, 1-at[2]))
+		}
+		at[0] = math.Min(p.expected-at[1], math.Log(2))
+	}
+	gap := p.expected - at[0] - at[1]
+	shrink := math.Max(-2, math.Min(2, gap)) / 2
+	if p.u < 1 {
+		at[0] += shrink
+		at[1] += shrink
+	}
+	return at
+}

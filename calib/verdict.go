@@ -1,0 +1,136 @@
+package calib
+
+import (
+	"fmt"
+	"math"
+	"strings"
+
+	"beadwell/calib/session"
+	"beadwell/calib/track"
+)
+
+// familyLevel is the family-wise combined p-value below which the estimates are
+// called inconsistent.
+const familyLevel = 0.005
+
+// judge compares all axes and withholds what cannot be adopted.
+func (r *Result) judge(works []*work, opt Options) {
+	lowest, tested := 1.0, 0
+	var worst *work
+	for _, w := range works {
+		p := float64(w.axis.CrossCheck.Equality.PValueCombined)
+		if math.IsNaN(p) {
+			continue
+		}
+		tested++
+		if p <= lowest {
+			lowest, worst = p, w
+		}
+	}
+	v := &r.Verdict
+	v.Status = Consistent
+	if tested == 0 {
+		v.FamilyWiseP = Float(math.NaN())
+		v.Text = "No cross-check was possible: the recording does not determine drag and amplitude apart."
+		v.Reason = "the adopted stiffness rests on the computed drag and the temperature together"
+		return
+	}
+	v.FamilyWiseP = Float(math.Min(1, lowest*float64(tested))) // Bonferroni: axes share their inputs
+	if float64(v.FamilyWiseP) >= familyLevel {
+		v.Text = "The estimates agree within their uncertainties."
+		v.Reason = fmt.Sprintf("smallest p-value over %d %s, corrected for their number: %s (inconsistent below %g)",
+			tested, plural(tested, "axis", "axes"), pText(float64(v.FamilyWiseP)), familyLevel)
+		return
+	}
+	v.Status = Inconsistent
+	v.Text = "The estimates disagree: do not use this calibration before the cause is found."
+	v.Reason = fmt.Sprintf("axis %s: %s; family-wise p %s, inconsistent below %g", worst.axisName, worst.axis.CrossCheck.Text, pText(float64(v.FamilyWiseP)), familyLevel)
+	if opt.Adopt != "" {
+		return
+	}
+	for i := range r.Axes {
+		reason := "the drag route and the amplitude route disagree; --adopt drag or --adopt amplitude takes one of them"
+		a := &r.Axes[i].Adopted
+		a.Stiffness, a.Withheld = Withheld("N/m", reason), reason
+		a.Basis, a.Weights, a.Budget = "", nil, nil
+	}
+}
+
+func plural(n int, one, many string) string {
+	if n == 1 {
+		return one
+	}
+	return many
+}
+
+// Codes of the findings of a calibration; those of the recording itself are in package health.
+const (
+	CodeAssumed       = "assumed-setting"
+	CodeNoHeight      = "height-not-stated"
+	CodeNoExposure    = "exposure-not-stated"
+	CodeMissing       = "missing-samples"
+	CodeShort         = "short-recording"
+	CodeMisfit        = "spectrum-misfit"
+	CodeLine          = "narrow-line"
+	CodeInconsistent  = "routes-disagree"
+	CodeWithheld      = "estimate-withheld"
+	CodeNoiseUnknown  = "noise-not-separable"
+	CodeHydrodynamics = "frequency-dependent-drag"
+)
+
+func (r *Result) collectFindings(rec *track.Recording, set *session.Settings, works []*work) {
+	add := func(f Finding) {
+		r.Findings = append(r.Findings, f)
+	}
+	nan := Float(math.NaN())
+	if r.Verdict.Status == Inconsistent {
+		add(Finding{Code: CodeInconsistent, Severity: Bad, Text: r.Verdict.Text + " " + capital(r.Verdict.Reason) + ".",
+			Remedy: "check length scale, temperature, bead diameter and height; repeat the recording", Value: r.Verdict.FamilyWiseP, Limit: familyLevel, Unit: "1"})
+	}
+	for _, s := range set.All() {
+		if s.Assumed {
+			add(Finding{Code: CodeAssumed, Severity: Doubtful, Text: fmt.Sprintf("%s was not stated; %s was assumed.", s.Key, s.Text),
+				Remedy: fmt.Sprintf("state it with --%s or in session.toml", flagOf(s.Key)), Value: nan, Limit: nan})
+		}
+	}
+	if len(works) > 0 {
+		w := works[0]
+		if _, ok := set.Lookup("chamber.height", ""); !ok {
+			near, _ := nearFactor(w.phys.radius, 5*w.phys.radius*2)
+			add(Finding{Code: CodeNoHeight, Severity: Doubtful, Text: fmt.Sprintf("The height of the bead was not stated; no surface was assumed to be near. At a height of ten radii the drag would be %.1f %% larger.", 100*(near-1)),
+				Remedy: `state it with --height "8.0(5) um", or --height far`, Value: nan, Limit: nan})
+		}
+		if _, ok := set.Lookup("recording.exposure", ""); !ok {
+			add(Finding{Code: CodeNoExposure, Severity: Note, Text: "The exposure was not stated; each sample was taken as instantaneous, as of a fast detector.",
+				Remedy: `of a camera, state it with --exposure "0.4 ms"`, Value: nan, Limit: nan})
+		}
+	}
+	if rec.Missing > 0 {
+		share := float64(rec.Missing) / float64(rec.Samples)
+		severity := Note
+		if share > 0.01 {
+			severity = Doubtful
+		}
+		add(Finding{Code: CodeMissing, Severity: severity, Text: fmt.Sprintf("%d of %d samples are missing; the fits allow for the gaps.", rec.Missing, rec.Samples),
+			Remedy: "look for dropped frames or a full disk if this is unexpected", Value: Float(share), Limit: 0.01, Unit: "1"})
+	}
+	for _, w := range works {
+		for _, f := range w.findings() {
+			add(f)
+		}
+	}
+}
+
+func flagOf(key string) string {
+	if k, ok := session.Find(key); ok {
+		return k.Flag
+	}
+	return key
+}
+
+func capital(s string) string {
+	if s == "" {
+		return s
+	}
+	return strings.ToUpper(s[:1]) + s[1:]
+}

@@ -1,0 +1,202 @@
+package calib
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"math"
+
+	"beadwell/calib/msd"
+	"beadwell/calib/relaxation"
+	"beadwell/calib/session"
+	"beadwell/calib/track"
+	"beadwell/equipartition"
+	"beadwell/psd"
+)
+
+// work is the analysis of one axis.
+type work struct {
+	name      string // of the recording
+	axisName  string
+	set       *session.Settings
+	opt       Options
+	phys      *physics
+	source    track.Axis
+	rate      float64 // Hz
+	start     float64 // s
+	exposure  float64 // s
+	exposureU float64 // s
+	noise     psd.Noise
+	volts     bool // positions are in detector units: no absolute length
+
+	record *psd.Record
+	fit    *psd.Fit
+	fitErr error
+	legs   legs
+	pooled pooled
+	axis   Axis
+	notes  []Finding
+}
+
+// newWork reads what the settings say of one axis and converts its positions.
+func newWork(rec *track.Recording, index int, set *session.Settings, opt Options) (*work, error) {
+	a := rec.Axes[index]
+	w := &work{name: rec.Name, axisName: a.Name, set: set, opt: opt, source: a, rate: rec.Rate, start: rec.Start}
+	var err error
+	if w.phys, err = newPhysics(set, a.Name); err != nil {
+		return nil, err
+	}
+	if err := w.setExposure(); err != nil {
+		return nil, err
+	}
+	if err := w.setLength(); err != nil {
+		return nil, err
+	}
+	w.setNoise()
+	return w, nil
+}
+
+func (w *work) setExposure() error {
+	e, ok := number(w.set, "recording.exposure", w.axisName)
+	if !ok {
+		return nil
+	}
+	w.exposure, w.exposureU = e.Value.SI, e.Value.U
+	if w.exposure*w.rate > 1+1e-6 {
+		return &SettingError{Key: "recording.exposure", Axis: w.axisName, Where: e.Where,
+			Problem: fmt.Sprintf("%g s is longer than the sampling interval of %g s", w.exposure, 1/w.rate),
+			Remedy:  "give the time that the shutter is open for one frame"}
+	}
+	w.exposure = math.Min(w.exposure, 1/w.rate)
+	return nil
+}
+
+// setLength finds the length of the recorded unit.
+func (w *work) setLength() error {
+	a := w.source
+	if !math.IsNaN(a.ToMetre) {
+		return nil
+	}
+	key := "recording.sensitivity"
+	if a.Unit == "px" {
+		key = "recording.pixel"
+	}
+	s, ok := number(w.set, key, a.Name)
+	if !ok && key == "recording.pixel" {
+		return &SettingError{Key: key, Axis: a.Name, Problem: "is not given, but the positions are in pixels",
+			Remedy: `give the length of a pixel in the sample with --pixel "65.0(3) nm"`}
+	}
+	if !ok {
+		w.volts = true
+		return &SettingError{Key: key, Axis: a.Name, Problem: fmt.Sprintf("is not given, but the positions are in %s", a.Unit),
+			Remedy: `give the length per unit of the detector with --sensitivity "1.31(4) um/V"`}
+	}
+	scale := s.Value.SI
+	values := make([]float64, len(a.Values))
+	for i, v := range a.Values {
+		values[i] = v * scale
+	}
+	w.source.Values = values
+	name, unit := "sensitivity", s.Value.Dimension.SIUnit()
+	if key == "recording.pixel" {
+		name = "pixel size"
+	}
+	if s.Axis != "" {
+		name += " of " + s.Axis
+	}
+	w.phys.withLength(name, unit, scale, s.Value.U)
+	return nil
+}
+
+func (w *work) setNoise() {
+	n, ok := number(w.set, "recording.noise", w.axisName)
+	if !ok {
+		return
+	}
+	sd, u := n.Value.SI, n.Value.U
+	// E[sigma^2] = sd^2 + u^2, and its standard deviation, for a normal sigma
+	w.noise = psd.Noise{Known: true, Variance: sd*sd + u*u, VarianceU: math.Sqrt(4*sd*sd*u*u + 2*u*u*u*u)}
+}
+
+// run makes all estimates of the axis.
+func (w *work) run(ctx context.Context) error {
+	var err error
+	w.record, err = psd.Prepare(w.source.Values, w.rate)
+	if err != nil {
+		return w.dataError(err, "record longer, or check the columns")
+	}
+	w.fit, w.fitErr = psd.Estimate(w.record, w.fitOptions())
+	if w.fitErr != nil && !errors.Is(w.fitErr, relaxation.ErrNoMaximum) {
+		return w.dataError(w.fitErr, "record longer, or widen the band")
+	}
+	if err := ctx.Err(); err != nil {
+		return err
+	}
+	if err := w.pool(); err != nil {
+		return w.dataError(err, "check the unit, the diameter and the exposure; state the noise if it is known")
+	}
+	w.estimate()
+	w.compare()
+	w.adopt()
+	w.describe()
+	return ctx.Err()
+}
+
+func (w *work) dataError(err error, remedy string) error {
+	return &DataError{Name: w.name, Axis: w.axisName, Problem: err.Error(), Remedy: remedy}
+}
+
+func (w *work) fitOptions() psd.Options {
+	o := psd.Options{Exposure: w.exposure, Noise: w.noise}
+	if s, ok := w.set.Lookup("fit.band", ""); ok && len(s.Bands) == 1 {
+		o.Band = psd.Range{Low: s.Bands[0].Low, High: s.Bands[0].High}
+	}
+	if s, ok := w.set.Lookup("fit.exclude", ""); ok {
+		for _, b := range s.Bands {
+			o.Exclude = append(o.Exclude, psd.Range{Low: b.Low, High: b.High})
+		}
+	}
+	return o
+}
+
+// The parameters of a fit.
+var (
+	alongCorner   = relaxation.Parameters{1, 0, 0}
+	alongVariance = relaxation.Parameters{0, 1, 0}
+	alongDrag     = relaxation.Parameters{1, 1, 0} // ln fc + ln V = ln(D/2 pi)
+)
+
+// legs are the stiffness estimates of one axis in logarithms, in the order of the Leg
+// constants.
+type legs struct {
+	value   [legCount]float64 // ln kappa; NaN when withheld
+	reason  [legCount]string
+	offsets [legCount]relaxation.Offsets // of ln kappa, statistical
+	stat    [legCount][legCount]float64  // covariance of ln kappa, inputs exact
+	total   [legCount][legCount]float64  // with the uncertainties of the inputs
+	// grad[i] is the change of ln kappa for one standard uncertainty of each influence; the last entries are
+	// exposure and noise.
+	grad [legCount][]float64
+	eq   equipartition.Result
+	msd  *msd.Result
+}
+
+const (
+	spectrumLeg = iota
+	equipartitionLeg
+	displacementLeg
+	amplitudeLeg
+	timeLeg
+	legCount
+)
+
+var legNames = [legCount]string{LegSpectrum, LegEquipartition, LegDisplacement, LegSpectrumAmplitude, LegDisplacementTime}
+
+var dragLeg = [legCount]bool{spectrumLeg: true, timeLeg: true}
+
+func routeOf(leg int) string {
+	if dragLeg[leg] {
+		return RouteDrag
+	}
+	return RouteAmplitude
+}
