@@ -14,7 +14,8 @@ import (
 
 // simulateOptions is what the command line of simulate says, as texts.
 type simulateOptions struct {
-	axes, stiffness, duration, centre, drift      string
+	axes, stiffness, quartic                      string
+	duration, centre, drift                       string
 	lines                                         []string
 	seed                                          uint64
 	jump, secondBead, escape, stuck               string
@@ -71,6 +72,7 @@ func (a *app) simulateCommand(run func(context.Context, *app, simulateOptions) e
 	}
 	f := cmd.Flags()
 	f.StringVar(&o.stiffness, "stiffness", "", "stiffness of the trap, by axis as x=... or y=...: `52 pN/um`")
+	f.StringVar(&o.quartic, "quartic", "", "anharmonic trap, potential kT(u^2/2 + quartic u^4/4) with u in thermal rms, from -0.01 to 1: `0.005`")
 	f.StringVar(&o.axes, "axes", "x,y", "recorded axes, when the stiffness does not name them: `x,y,z`")
 	f.StringVar(&o.duration, "duration", "10 s", "length of the record: `10 s`")
 	f.StringVar(&o.centre, "centre", "", "rest position of the bead, by axis as x=... or y=...: `1.2 um`")

@@ -145,7 +145,7 @@ func (p *simulation) addAxis(name, role string, stiffness float64, in dragInput,
 	return nil
 }
 
-// addDecoration adds centre, drift and lines.
+// addDecoration adds centre, drift, lines and anharmonicity.
 func (p *simulation) addDecoration(o simulateOptions) error {
 	centre, err := p.parseFor("centre", o.centre, quantity.Length)
 	if err != nil {
@@ -155,13 +155,17 @@ func (p *simulation) addDecoration(o simulateOptions) error {
 	if err != nil {
 		return err
 	}
+	quartic, err := parseOne("quartic", o.quartic, quantity.Dimensionless)
+	if err != nil {
+		return err
+	}
 	lines, err := parseLines(o.lines)
 	if err != nil {
 		return err
 	}
 	for i := range p.Truth.Axes {
 		a := &p.Truth.Axes[i]
-		a.Mean, a.Drift, a.Lines = centre.of(a.Name), drift.of(a.Name), lines
+		a.Mean, a.Drift, a.Lines, a.Quartic = centre.of(a.Name), drift.of(a.Name), lines, quartic
 	}
 	return nil
 }
