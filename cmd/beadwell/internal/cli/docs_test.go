@@ -35,6 +35,6 @@ func TestSettingsPageIsCurrent(t *testing.T) {
 		return
 	}
 	if diff := cmp.Diff(want, string(page)); diff != "" {
-		t.Errorf("%s is not what the registry says; run go test -update ./cmd/beadwell/internal/cli (-want +got):\n%s", settingsPage, diff)
+		t.Errorf("%s is not what the registry says; run go test ./cmd/beadwell/internal/cli -update (-want +got):\n%s", settingsPage, diff)
 	}
 }

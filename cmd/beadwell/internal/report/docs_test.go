@@ -39,7 +39,7 @@ func TestOutputPageIsCurrent(t *testing.T) {
 		return
 	}
 	if diff := cmp.Diff(want, string(page)); diff != "" {
-		t.Errorf("%s is not what the types say; run go test -update ./cmd/beadwell/internal/report (-want +got):\n%s", outputPage, diff)
+		t.Errorf("%s is not what the types say; run go test ./cmd/beadwell/internal/report -update (-want +got):\n%s", outputPage, diff)
 	}
 }
 

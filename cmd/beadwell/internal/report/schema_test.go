@@ -179,7 +179,7 @@ func TestSchemaIsCurrent(t *testing.T) {
 			t.Fatal(err)
 		}
 		if diff := cmp.Diff(string(want), string(got)); diff != "" {
-			t.Errorf("%s is not what calib.Result says; run go test -update ./cmd/beadwell/internal/report (-want +got):\n%s", path, diff)
+			t.Errorf("%s is not what calib.Result says; run go test ./cmd/beadwell/internal/report -update (-want +got):\n%s", path, diff)
 		}
 	}
 }

@@ -30,7 +30,7 @@ func golden(t *testing.T, name string, got []byte) {
 		t.Fatal(err)
 	}
 	if diff := cmp.Diff(string(want), string(got)); diff != "" {
-		t.Errorf("%s differs; run go test -update ./cmd/beadwell/internal/report and review (-want +got):\n%s", path, diff)
+		t.Errorf("%s differs; run go test ./cmd/beadwell/internal/report -update and review (-want +got):\n%s", path, diff)
 	}
 }
 
