@@ -49,18 +49,41 @@ func parseClock(s string) (stamp, bool) {
 	if len(s) < 5 || len(s) > 40 || s[0] < '0' || s[0] > '9' {
 		return stamp{}, false
 	}
+	afternoon := byte(0)
+	if n := len(s); s[n-1]|0x20 == 'm' && (s[n-2]|0x20 == 'a' || s[n-2]|0x20 == 'p') {
+		afternoon, s = s[n-2]|0x20, strings.TrimRight(s[:n-2], " \u00a0\u202f")
+	}
 	at := strings.IndexAny(s, "T _")
 	if at < 0 {
 		if strings.Contains(s, ":") {
 			var out stamp
-			return out, out.clock(s)
+			ok := out.clock(s)
+			return out, ok && out.halve(afternoon)
 		}
 		var out stamp
-		return out, out.date(s)
+		ok := out.date(s)
+		return out, ok && afternoon == 0
 	}
 	var out stamp
 	ok := out.date(s[:at]) && out.clock(strings.TrimLeft(s[at+1:], " "))
-	return out, ok
+	return out, ok && out.halve(afternoon)
+}
+
+// halve applies a.m. ('a') or p.m. ('p') to a time of day on the 12-hour clock.
+func (s *stamp) halve(afternoon byte) bool {
+	if afternoon == 0 {
+		return true
+	}
+	if s.second < 3600 || s.second >= 13*3600 {
+		return false
+	}
+	if s.second >= 12*3600 {
+		s.second -= 12 * 3600
+	}
+	if afternoon == 'p' {
+		s.second += 12 * 3600
+	}
+	return true
 }
 
 // date reads a date. Where day and month could change places the day comes
@@ -113,6 +136,9 @@ func (s *stamp) clock(text string) bool {
 			return false
 		}
 		parts = []string{parts[0], parts[1], parts[2] + "." + parts[3]}
+	}
+	if len(parts) == 2 && strings.ContainsAny(parts[1], ".,") { // mm:ss.fff
+		parts = []string{"0", parts[0], parts[1]}
 	}
 	if len(parts) != 3 {
 		return false

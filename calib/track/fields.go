@@ -14,7 +14,7 @@ import (
 func (lay *layout) measure(v *view, sampled int) {
 	numeric := v.numericColumns()
 	for k := range lay.names {
-		lay.names[k].numeric, lay.names[k].whole = numeric[k], true
+		lay.names[k].numeric, lay.names[k].whole, lay.names[k].empty = numeric[k], true, true
 	}
 	last := len(lay.names) - 1
 	lay.lastDecimals = -1
@@ -26,6 +26,7 @@ func (lay *layout) measure(v *view, sampled int) {
 		rows++
 		for k := range lay.names {
 			c, kind := v.cells[i][k], v.kinds[i][k]
+			lay.names[k].empty = lay.names[k].empty && kind == missingCell
 			lay.names[k].clock = lay.names[k].clock || kind == clockCell
 			if kind == numberCell && strings.IndexByte(c.text, lay.mark) >= 0 {
 				lay.names[k].whole = false

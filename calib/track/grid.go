@@ -136,7 +136,7 @@ func fitLine(t []float64, place []int) grid {
 func (g *grid) isRounded(t []float64, written resolution) bool {
 	step := func(float64) float64 { return written.step }
 	if written.step <= 0 || g.max > 0.55*written.step {
-		if step = floatStep(t, written.shift); step == nil {
+		if step = floatStep(t, written); step == nil {
 			return false
 		}
 	}
@@ -155,12 +155,12 @@ func (g *grid) isRounded(t []float64, written resolution) bool {
 
 // floatStep recognises stamps in single precision, and stamps with six or seven
 // significant digits, and returns their rounding step; nil for anything else.
-func floatStep(t []float64, shift int) func(v float64) float64 {
-	tail := "e" + strconv.Itoa(shift)
-	scale := math.Pow10(-shift)
-	same := func(digits, width int) bool {
+func floatStep(t []float64, written resolution) func(v float64) float64 {
+	tail := "e" + strconv.Itoa(written.shift)
+	scale := math.Pow10(-written.shift)
+	same := func(digits int) bool {
 		for _, v := range t {
-			w, _ := strconv.ParseFloat(strconv.FormatFloat(v*scale, 'g', digits, width)+tail, 64)
+			w, _ := strconv.ParseFloat(strconv.FormatFloat(v*scale, 'g', digits, 64)+tail, 64)
 			if math.Abs(w-v) > 1e-15*math.Abs(v) {
 				return false
 			}
@@ -169,7 +169,8 @@ func floatStep(t []float64, shift int) func(v float64) float64 {
 	}
 	single := func() bool {
 		for _, v := range t {
-			if w := float64(float32(v * scale)); math.Abs(w-v*scale) > 1e-15*math.Abs(w) {
+			// As text a single has nine digits or fewer: half of their last one is free.
+			if w := float64(float32(v * scale)); math.Abs(w-v*scale) > 1e-15*math.Abs(w)+0.51*written.step*scale {
 				return false
 			}
 		}
@@ -181,11 +182,11 @@ func floatStep(t []float64, shift int) func(v float64) float64 {
 		}
 	}
 	switch {
-	case same(6, 64):
+	case same(6):
 		return digits(6)
-	case same(7, 64):
+	case same(7):
 		return digits(7)
-	case single(), same(-1, 32):
+	case single():
 		return func(v float64) float64 {
 			f := float32(math.Abs(v * scale))
 			return float64(math.Nextafter32(f, math.MaxFloat32)-f) / scale

@@ -65,6 +65,31 @@ func cellTexts(text string, delimiter byte) []string {
 	return list
 }
 
+// headerCells cuts a header line. Where blanks delimit, units in brackets belong
+// to the name before them, and names of several words are told by wide blanks.
+func headerCells(text string, delimiter byte, width int) []string {
+	list := cellTexts(text, delimiter)
+	if delimiter != ' ' || len(list) <= width {
+		return list
+	}
+	var merged []string
+	for _, c := range list {
+		if len(merged) > 0 && c != "" && strings.IndexByte("([{/", c[0]) >= 0 {
+			merged[len(merged)-1] += " " + c
+		} else {
+			merged = append(merged, c)
+		}
+	}
+	if len(merged) == width {
+		return merged
+	}
+	wide := strings.FieldsFunc(strings.ReplaceAll(strings.TrimSpace(text), "  ", "\t"), func(r rune) bool { return r == '\t' })
+	if len(wide) == width {
+		return wide
+	}
+	return list
+}
+
 // isRule tells lines that only draw or mark a border: "-----", "===", "|---|".
 func isRule(text string) bool {
 	return strings.Trim(text, "-=+|*_~:,;# \t") == ""
@@ -91,12 +116,12 @@ func (v *view) findHeader(fits func(width int) bool) (rows []headerRow) {
 			}
 			continue
 		}
-		cells := cellTexts(text, v.delimiter)
+		cells := headerCells(text, v.delimiter, v.width)
 		h := newHeaderRow(v.lines[i], cells)
 		if !fits(len(cells)) || h.texts == 0 || len(rows) > 0 && v.width == 1 && h.units == 0 && h.roles == 0 {
 			break
 		}
-		if len(rows) > 0 && h.texts < h.filled() && v.width <= 2 {
+		if len(rows) > 0 && h.texts < h.filled() && (v.width <= 2 || trimCell(cells[0]) != "" && !beadWords[strings.ToLower(trimCell(cells[0]))]) {
 			break // a key and its value
 		}
 		rows = append(rows, h)
@@ -121,8 +146,8 @@ func (v *view) commentHeader(fits func(width int) bool) []headerRow {
 				text = text[len(word):]
 			}
 		}
-		for _, d := range append([]byte{v.delimiter}, ',', '\t', ';', ' ') {
-			cells := cellTexts(text, d)
+		ways := [][]string{cellTexts(text, v.delimiter), cellTexts(text, ','), cellTexts(text, '\t'), cellTexts(text, ';'), headerCells(text, ' ', v.width)}
+		for _, cells := range ways {
 			h := newHeaderRow(v.lines[i], cells)
 			if fits(len(cells)) && h.roles > 0 && h.roles*2 >= h.filled() {
 				return []headerRow{h}
@@ -141,7 +166,7 @@ func nameColumns(rows []headerRow, width, shift int) []columnInfo {
 	best := -1
 	for i, h := range rows {
 		onlyUnits := h.units == h.filled() && len(rows) > 1
-		if !onlyUnits && (best < 0 || h.roles > rows[best].roles || h.roles == rows[best].roles && rows[best].roles == 0) {
+		if !onlyUnits && (best < 0 || h.roles > rows[best].roles || h.roles == rows[best].roles) {
 			best = i
 		}
 	}
@@ -195,7 +220,7 @@ func groupColumns(names []columnInfo, at func(int) string) {
 			group = text
 		}
 		if names[k].role == axisRole && names[k].bead == "" {
-			names[k].bead = group
+			names[k].bead, names[k].named = group, true
 		}
 	}
 }
@@ -312,15 +337,28 @@ func (v *view) checkNames(name string, opt Options) error {
 	if opt.Header == "none" || v.first == 0 || len(opt.Columns) > 0 {
 		return nil
 	}
-	line := v.lines[v.first-1]
-	cells := cellTexts(line.text, v.delimiter)
+	i := v.first - 1
+	for i > 0 && isBlank(v.lines[i].text) {
+		i--
+	}
+	line := v.lines[i]
+	cells := cellTexts(strings.TrimLeft(line.text, "#% "), v.delimiter)
 	h := newHeaderRow(line, cells)
-	if isComment(line.text) || h.roles < 2 || h.roles*2 < h.filled() || len(cells) == v.width {
+	if h.roles == 0 || isComment(line.text) && (h.roles < 2 || h.roles*2 < h.filled()) || isMarker(line.text) || isKeyLine(line.text) {
 		return nil
 	}
 	return &Error{File: name, Line: line.number, Code: CodeLayout,
 		What:   fmt.Sprintf("the header has %d names, the rows have %d cells", len(cells), v.width),
 		Remedy: "give every column one name, or say which columns to use (--columns with numbers)"}
+}
+
+// isKeyLine tells a line of the form "key: value" or "key = value".
+func isKeyLine(text string) bool {
+	key, value, found := strings.Cut(strings.TrimLeft(text, "#% "), ":")
+	if !found {
+		key, value, found = strings.Cut(key, "=")
+	}
+	return found && trimCell(key) != "" && trimCell(value) != ""
 }
 
 // alwaysEmpty tells whether column k is empty in every row of the sample.

@@ -28,7 +28,9 @@ type columnInfo struct {
 	role    role
 	axis    byte   // 'x', 'y' or 'z'
 	bead    string // identifier of the bead, or of the variant, that the name holds
+	named   bool   // bead surely names a bead: beside a word such as "bead", or in a row of its own
 	numeric bool
+	empty   bool // no cell of the sample holds anything
 	clock   bool
 	whole   bool // every number of the sample is whole
 }
@@ -52,7 +54,7 @@ var (
 	beadExtras = words("id no nr num number index name label ids #")
 	// A column with one of these words is no position of a bead.
 	foreignWords = words("err error errors std sd sem sigma unc uncertainty var variance fwhm width intensity velocity speed vel v force power stage piezo target setpoint command drive laser mirror sum total mass size amplitude amp background bg snr quality corr correlation ref acceleration rms mean min max angle rotation phase gradient dx dy dz fit residual")
-	axisExtras   = words("position positions pos posn coord coordinate coordinates displacement disp centre center centroid location loc signal deflection axis trap lage ort auslenkung koordinate posición posicion posizione позиция координата 位置 坐标 座標 position_ measured voltage volt volts qpd psd det detector diff value values ch channel of the data com gravity subpixel um nm")
+	axisExtras   = words("position positions pos posn coord coordinate coordinates displacement disp centre center centroid location loc signal deflection axis trap lage ort auslenkung koordinate posición posicion posizione позиция координата 位置 坐标 座標 position_ measured voltage volt volts qpd psd det detector diff value values ch channel of the data com gravity subpixel")
 	axisJoined   = map[string]byte{"xpos": 'x', "ypos": 'y', "zpos": 'z', "posx": 'x', "posy": 'y', "posz": 'z', "xcoord": 'x', "ycoord": 'y', "zcoord": 'z',
 		"xposition": 'x', "yposition": 'y', "zposition": 'z', "positionx": 'x', "positiony": 'y', "positionz": 'z', "xdata": 'x', "ydata": 'y', "zdata": 'z',
 		"xc": 'x', "yc": 'y', "zc": 'z', "xcenter": 'x', "ycenter": 'y', "zcenter": 'z', "xcentre": 'x', "ycentre": 'y', "zcentre": 'z'}
@@ -116,10 +118,10 @@ func parseName(cell string) columnInfo {
 				info.unit, info.stated, info.header = u, true, trimCell(s[:at])
 				return info
 			}
-			if inner != "" && !slices.ContainsFunc(splitWords(inner), func(w string) bool {
+			if inner == "min" || inner == "h" || inner != "" && !slices.ContainsFunc(splitWords(inner), func(w string) bool {
 				return isIdentifier(w) || beadWords[w] || axisExtras[w] || foreignWords[w] || w == "x" || w == "y" || w == "z"
 			}) {
-				info.unknown = inner
+				info.unknown, info.header = inner, trimCell(s[:at])
 			}
 		}
 		return info
@@ -182,7 +184,7 @@ func (c *columnInfo) understand() {
 // understandAxis looks for exactly one of x, y and z among the words.
 func (c *columnInfo) understandAxis(list []string) {
 	var rest []string
-	for i, w := range list {
+	for _, w := range list {
 		axis := byte(0)
 		switch {
 		case w == "x" || w == "y" || w == "z":
@@ -196,7 +198,10 @@ func (c *columnInfo) understandAxis(list []string) {
 			return
 		}
 		if axis == 0 {
-			if !axisExtras[w] && !(beadWords[w] && i+1 < len(list)) && !beadWords[w] && w != "v" {
+			switch {
+			case beadWords[w]:
+				c.named = true
+			case !axisExtras[w] && w != "v":
 				rest = append(rest, w)
 			}
 			continue
@@ -216,5 +221,5 @@ func (c *columnInfo) understandAxis(list []string) {
 
 // numbered tells whether the part of the name beside the axis identifies a bead.
 func (c *columnInfo) numbered() bool {
-	return c.bead != "" && !slices.ContainsFunc(strings.Fields(c.bead), func(w string) bool { return !isIdentifier(w) })
+	return c.bead != "" && c.named || c.bead != "" && !slices.ContainsFunc(strings.Fields(c.bead), func(w string) bool { return !isIdentifier(w) })
 }

@@ -215,6 +215,11 @@ func (p *plan) recognise(opt Options, isGrid func(int) bool) error {
 				found = append(found, k)
 			}
 		}
+		if one.role == timeRole && len(found) == 0 && p.count(timeRole) > 0 && opt.Rate == 0 && !taken("time") {
+			k := slices.IndexFunc(p.columns, func(c columnInfo) bool { return c.role == timeRole })
+			return p.fail(CodeTime, fmt.Sprintf("the column %s holds neither numbers nor times of day", quoted(p.columns[k].header)),
+				"write time stamps as numbers, as 12:30:00.125 or as 2024-05-31T12:30:00.125")
+		}
 		if taken(one.name) || len(found) == 0 {
 			continue
 		}
@@ -247,6 +252,11 @@ func (p *plan) recogniseAxes() error {
 			axes = append(axes, k)
 		}
 	}
+	for _, c := range p.columns {
+		if c.role == axisRole && !c.numeric {
+			p.notes = note(p.notes, "axis-left-out", "column %s is left out: it holds no numbers", quoted(c.header))
+		}
+	}
 	if len(axes) == 0 {
 		for k, c := range p.columns {
 			if c.numeric && c.role == otherRole && len(splitWords(c.header)) > 0 && axisAlone[splitWords(c.header)[0]] {
@@ -266,19 +276,21 @@ func (p *plan) recogniseAxes() error {
 	}
 	several := p.repeats(axes, func(columnInfo) string { return "" })
 	if several {
-		var plainNames, numbered []int
+		var plainNames, numbered, variants []int
 		for _, k := range axes {
 			if p.columns[k].bead == "" {
 				plainNames = append(plainNames, k)
-			} else if p.columns[k].numbered() || p.line == 0 {
+			} else if p.columns[k].numbered() {
 				numbered = append(numbered, k)
+			} else {
+				variants = append(variants, k)
 			}
 		}
 		switch {
 		case len(plainNames) > 0 && len(numbered) == 0 && !p.repeats(plainNames, func(columnInfo) string { return "" }):
 			p.notes = note(p.notes, "columns-left-out", "%s are used; the other columns named like positions are not", p.names(plainNames))
 			axes, several = plainNames, false
-		case len(plainNames) > 0 && len(numbered) > 0:
+		case len(variants) > 0 || len(plainNames) > 0 && len(numbered) > 0:
 			return p.fail(CodeColumns, "it is not clear which columns are positions: "+p.names(axes), "say which columns to use (--columns x=NAME,y=NAME)")
 		}
 	}
@@ -326,7 +338,7 @@ func (p *plan) numberSets(axes []int) error {
 			}
 		}
 		for i, k := range axes {
-			p.columns[k].bead = strconv.Itoa(i/size + 1)
+			p.columns[k].bead, p.columns[k].named = strconv.Itoa(i/size+1), true
 		}
 		p.notes = note(p.notes, "beads-numbered", "columns of one name repeat: the sets are taken as beads 1 to %d", len(axes)/size)
 		return nil
@@ -342,6 +354,9 @@ func (p *plan) recogniseShape(isGrid func(int) bool) error {
 	for k, c := range p.columns {
 		if c.numeric || c.clock {
 			numbers = append(numbers, k)
+		} else if !c.empty {
+			return &Error{File: p.name, Code: CodeColumns, What: fmt.Sprintf("the table has no names, and column %d holds text", k+1),
+				Remedy: "give the columns names, or say which to use (--columns time=1,x=2)"}
 		}
 	}
 	has := func(role string) bool {

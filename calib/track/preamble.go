@@ -36,6 +36,12 @@ func matches(list []string, keys [][]string) bool {
 // "key<delimiter>value".
 func (p *preamble) readKey(text string, delimiter byte, number int) {
 	text = strings.TrimLeft(trimCell(text), "#%;/! \t")
+	if strings.Count(text, "=")+strings.Count(text, ":") > 1 && strings.Contains(text, ";") {
+		for part := range strings.SplitSeq(text, ";") {
+			p.readKey(part, delimiter, number)
+		}
+		return
+	}
 	at := strings.IndexAny(text, ":=")
 	if at < 0 && delimiter != ' ' {
 		at = strings.IndexByte(text, delimiter)

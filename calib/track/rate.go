@@ -11,7 +11,7 @@ import (
 // rates rounded for a form are within it.
 const rateTolerance = 1e-3
 
-// slowest is the rate below which a time column without a unit is not taken as
+// slowest is the rate up to which a time column without a unit is not taken as
 // seconds: a trapped particle is sampled faster, so the stamps are more likely
 // milliseconds.
 const slowest = 20 // Hz
@@ -124,7 +124,7 @@ func (tab *table) checkTimeUnit(rec *Recording, t []float64, opt Options) (frame
 			return false, nil
 		}
 	}
-	if step > 0 && 1/step < slowest {
+	if step > 0 && 1/step <= slowest*(1+1e-9) {
 		if opt.Rate > 0 && math.Abs(step*opt.Rate-1) <= 0.01 {
 			return false, nil
 		}

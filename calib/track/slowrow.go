@@ -30,6 +30,9 @@ func splitLine(dst []cell, line string, delimiter byte) (cells []cell, openQuote
 			return cells, -1
 		}
 		c := cell{at: i}
+		if i+1 < n && line[i] == '=' && line[i+1] == '"' {
+			i++ // ="0.5", as spreadsheets write text
+		}
 		if i < n && line[i] == '"' {
 			text, after := unquote(line, i)
 			if after < 0 {
