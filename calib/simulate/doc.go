@@ -25,6 +25,14 @@
 // (S: Wong & Halvorsen, Opt. Express 14 (2006) 12517, Eq. 7.) A free bead is the
 // same process without a trap: mean-square displacement 2D(t - W/3) + 2q.
 //
+// # Further kinds
+//
+// A motion with any other spectrum (frequency-dependent drag, the low-pass of a photodiode)
+// comes from its spectrum with all aliases, see SpectralSynthesis. A slightly anharmonic trap is
+// integrated in steps of at most a twentieth of the relaxation time. A moving stage adds the exact
+// response of the bead. Then come cross-talk, noise, mean, drift and lines, and last the Faults of
+// detector and computer.
+//
 // # Random numbers
 //
 // Equal arguments give equal recordings. Every axis has a stream of its own, a

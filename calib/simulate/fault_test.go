@@ -124,6 +124,8 @@ func TestValidateFurtherKinds(t *testing.T) {
 		"wall factor":        func(t *Truth) { t.Axes[0].WallFactor = 0.9 },
 		"bead density":       func(t *Truth) { h := polystyrene; h.BeadDensity = 0; t.Hydrodynamics = &h },
 		"height":             func(t *Truth) { h := polystyrene; h.Height = 4e-7; t.Hydrodynamics = &h },
+		"wall shape":         func(t *Truth) { h := polystyrene; h.Shape = "round"; t.Hydrodynamics = &h },
+		"factor, no height":  func(t *Truth) { t.Axes[0].WallFactor = 1.1; t.Hydrodynamics = &polystyrene },
 		"hydrodynamic free":  func(t *Truth) { t.Axes[1] = Axis{Diffusion: 1e-13}; t.Hydrodynamics = &polystyrene },
 		"alpha":              func(t *Truth) { t.Photodiode = &Photodiode{Alpha: 1.1, F3dB: 8000} },
 		"f3dB":               func(t *Truth) { t.Photodiode = &Photodiode{Alpha: 0.3} },

@@ -3,6 +3,7 @@ package simulate
 import (
 	"math"
 
+	"beadwell/calib/drag"
 	"beadwell/calib/medium"
 )
 
@@ -21,7 +22,7 @@ func (p Physical) Drag() float64 {
 	if factor == 0 {
 		factor = 1
 	}
-	return 6 * math.Pi * p.Viscosity * p.Radius * factor
+	return drag.Stokes(p.Viscosity, p.Radius) * factor
 }
 
 // Axis returns the axis with the corner frequency kappa/(2 pi gamma) and the variance

@@ -100,7 +100,7 @@ func thermal(x []float64, s step, position float64, random deviates) float64 {
 func (t Truth) synthesise(a Axis, index int, seed uint64) []float64 {
 	density := func(f float64) float64 { return lorentzian(a, f) }
 	if h := t.Hydrodynamics; h != nil {
-		density = func(f float64) float64 { return h.density(a, f) }
+		density = h.spectrum(a)
 	}
 	if p := t.Photodiode; p != nil {
 		before := density

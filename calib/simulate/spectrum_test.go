@@ -89,34 +89,28 @@ func TestHydrodynamicDensityPublished(t *testing.T) {
 		{100, 1.93598798e-19}, {1000, 3.99719164e-20}, {10000, 4.53647319e-22}, {100000, 3.57109162e-24},
 	} {
 		// 1e-6: the density of water behind the printed values is known to seven digits.
-		if got := polystyrene.density(a, row.f); !near(got, row.want, 1e-6) {
+		if got := polystyrene.spectrum(a)(row.f); !near(got, row.want, 1e-6) {
 			t.Errorf("density(%v Hz) = %v, want %v (off by %.1g)", row.f, got, row.want, got/row.want-1)
 		}
-	}
-	if got := polystyrene.characteristic(); !near(got, 1136535, 1e-6) {
-		t.Errorf("characteristic() = %v Hz, want 1136535", got)
 	}
 }
 
 // Near a wall, with the static factor that the first-order reflection itself has, the
-// drag and the density are the published ones; fc = 500 Hz is that of the Stokes drag (Berg-Sorensen &
+// density is the published one; fc = 500 Hz is that of the Stokes drag (Berg-Sorensen &
 // Flyvbjerg 2004, formula recomputed; its limits f -> 0 and h -> infinity checked).
 func TestHydrodynamicWallPublished(t *testing.T) {
-	for _, row := range []struct{ ratio, f, re, im, density float64 }{
-		{2, 1000, 1.363211376813391, 0.020628208787655058, 3.183848305319994e-20},
-		{2, 100000, 1.2829618829066116, -0.1170354746348576, 3.821155773148431e-24},
-		{10, 10000, 1.0701384752252032, -0.0787293380894043, 4.642050024495897e-22},
+	for _, row := range []struct{ ratio, f, density float64 }{
+		{2, 1000, 3.183848305319994e-20},
+		{2, 100000, 3.821155773148431e-24},
+		{10, 10000, 4.642050024495897e-22},
 	} {
 		h := polystyrene
 		h.Height = row.ratio * h.Radius
 		factor := 1 / (1 - 9.0/16/row.ratio)
-		// 1e-6: the density of water, as above.
-		if got := h.drag(row.f, factor, false); !near(real(got), row.re, 1e-6) || !near(imag(got), row.im, 1e-6) {
-			t.Errorf("h/R = %v: drag(%v Hz) = %v, want %v, %v", row.ratio, row.f, got, row.re, row.im)
-		}
 		diffusion := medium.Boltzmann * 298.15 / (6 * math.Pi * h.Viscosity * h.Radius)
 		a := Axis{Corner: 500 / factor, Variance: diffusion / (2 * math.Pi * 500), WallFactor: factor}
-		if got := h.density(a, row.f); !near(got, row.density, 1e-6) {
+		// 1e-6: the density of water, as above.
+		if got := h.spectrum(a)(row.f); !near(got, row.density, 1e-6) {
 			t.Errorf("h/R = %v: density(%v Hz) = %v, want %v", row.ratio, row.f, got, row.density)
 		}
 	}
@@ -128,10 +122,29 @@ func TestHydrodynamicDensityStaticLimit(t *testing.T) {
 	h.Height = 1e-6
 	for _, a := range []Axis{{Corner: 300, Variance: 1, WallFactor: 1.382752}, {Corner: 300, Variance: 1, WallFactor: 2.125536, Perpendicular: true}} {
 		for _, f := range []float64{0, 1e-3} { // sqrt(f/f_nu) = 3e-5 at the second
-			if got, want := h.density(a, f), lorentzian(a, f); !near(got, want, 1e-4) {
+			if got, want := h.spectrum(a)(f), lorentzian(a, f); !near(got, want, 1e-4) {
 				t.Errorf("%+v: density(%v Hz) = %v, want %v", a, f, got, want)
 			}
 		}
+	}
+}
+
+// The shape of the wall's part reaches the density: at f_nu/100 the published form and the
+// shape of bulk stray from the reaction on a point force by several per cent (see package drag).
+func TestHydrodynamicShapes(t *testing.T) {
+	h := polystyrene
+	h.Height = 1e-6
+	a := Axis{Corner: 300, Variance: 1, WallFactor: 1.382752}
+	density := map[WallShape]float64{}
+	for _, h.Shape = range []WallShape{"", PublishedShape, PointForceShape, BulkShape} {
+		density[h.Shape] = h.spectrum(a)(11365)
+	}
+	if density[""] != density[PublishedShape] {
+		t.Errorf("without a shape %v, want the published %v along a wall", density[""], density[PublishedShape])
+	}
+	low, middle, high := density[PublishedShape], density[PointForceShape], density[BulkShape]
+	if !(math.Abs(low/middle-1) > 0.02 && math.Abs(high/middle-1) > 0.02 && math.Abs(low/high-1) > 0.02) {
+		t.Errorf("densities %v, %v, %v: want them apart by more than 2 %%", low, middle, high)
 	}
 }
 
@@ -155,36 +168,11 @@ func TestHydrodynamicArea(t *testing.T) {
 		step := math.Log(1e16) / steps
 		for i := range steps {
 			f := 1e-4 * math.Exp((float64(i)+0.5)*step)
-			area += row.h.density(row.a, f) * f * step
+			area += row.h.spectrum(row.a)(f) * f * step
 		}
 		if !(math.Abs(area-1) <= row.tolerance) {
 			t.Errorf("area under %+v of %+v = %v, want 1 within %v", row.a, row.h, area, row.tolerance)
 		}
-	}
-}
-
-// At f = 0 the drag is the static wall factor; where vorticity no longer reaches the
-// wall and yet hardly leaves the bead's own radius, it is that of bulk.
-func TestHydrodynamicDragLimits(t *testing.T) {
-	h := polystyrene
-	h.Height = 5e-6
-	const factor = 1.059483 // exact parallel factor at h/R = 10 (Goldman, Cox & Brenner, Chem. Eng. Sci. 22 (1967) 637)
-	if got := h.drag(0, factor, false); cmplx.Abs(got-factor) > 1e-12 {
-		t.Errorf("drag at 0 = %v, want %v", got, factor)
-	}
-	if got := h.drag(0, 1.126194, true); cmplx.Abs(got-1.126194) > 1e-12 {
-		t.Errorf("perpendicular drag at 0 = %v, want 1.126194", got)
-	}
-	// Across a wall the excess over bulk does not grow with frequency.
-	if got, want := h.drag(1e5, 1.126194, true)-polystyrene.drag(1e5, 1, false), complex(0.126194, 0); cmplx.Abs(got-want) > 1e-12 {
-		t.Errorf("perpendicular excess at 100 kHz = %v, want %v", got, want)
-	}
-	f := h.characteristic() / 10 // penetration depth 3.2 R, gap 19 R
-	free := polystyrene.drag(f, 1, false)
-	// What is left of the published reflection is its algebraic part,
-	// (9/16)(R/h)|1 - 4/3 - (1-i)/3 sqrt(0.1) + 2i/90| = 0.026.
-	if got := h.drag(f, factor, false); cmplx.Abs(got-free)/cmplx.Abs(free) > 0.026 {
-		t.Errorf("drag at f_nu/10 = %v, want that of bulk %v within 2.6 %%", got, free)
 	}
 }
 
@@ -207,7 +195,7 @@ func TestRecordHydrodynamicSpectrum(t *testing.T) {
 	h.Height = 2e-6
 	a := Axis{Corner: 1000, Variance: 1e-16, WallFactor: 1.165}
 	truth := Truth{Samples: 8192, Rate: 65536, Axes: []Axis{a}, Hydrodynamics: &h, Photodiode: &p}
-	s := Spectrum{Density: func(f float64) float64 { return h.density(a, f) * p.power(f) }, Rate: truth.Rate}
+	s := Spectrum{Density: func(f float64) float64 { return h.spectrum(a)(f) * p.power(f) }, Rate: truth.Rate}
 	folded := newAliases(s)
 	bands := [][2]int{{20, 40}, {120, 140}, {1000, 1020}, {4000, 4020}}
 	sums := make([]float64, len(bands))

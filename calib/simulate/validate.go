@@ -92,10 +92,10 @@ func (t Truth) validateSpectrum() error {
 		if !a.trapped() {
 			return fmt.Errorf("axis %d: frequency-dependent drag and a photodiode need a harmonic trap", i+1)
 		}
-	}
-	if h := t.Hydrodynamics; h != nil {
-		if err := h.validate(); err != nil {
-			return err
+		if h := t.Hydrodynamics; h != nil {
+			if err := h.validate(a); err != nil {
+				return fmt.Errorf("axis %d: %w", i+1, err)
+			}
 		}
 	}
 	if p := t.Photodiode; p != nil {
