@@ -64,5 +64,10 @@ func isBlank(text string) bool {
 // isIgnored tells whether a line among the rows is blank, a remark or the
 // header once more.
 func (lay *layout) isIgnored(text string) bool {
-	return isBlank(text) || isComment(text) || len(lay.repeats) > 0 && lay.repeats[strings.TrimSpace(text)]
+	return isBlank(text) || isComment(text) || lay.isRepeat(text)
+}
+
+// isRepeat tells whether a line is a line of the header.
+func (lay *layout) isRepeat(text string) bool {
+	return len(lay.repeats) > 0 && lay.repeats[strings.TrimSpace(text)]
 }

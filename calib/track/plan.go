@@ -398,6 +398,9 @@ func (p *plan) keep(opt Options) error {
 		if !p.columns[k].numeric {
 			return p.fail(CodeColumns, fmt.Sprintf("the column %s to keep holds no numbers", quoted(name)), "keep numeric columns only")
 		}
+		if at := slices.IndexFunc(p.uses, func(u use) bool { return u.column == k }); at >= 0 {
+			return p.fail(CodeSetting, fmt.Sprintf("the column %s to keep is in use already, as %s", quoted(name), p.uses[at].role), "keep other columns only")
+		}
 		p.add(k, "kept", 0, "")
 	}
 	return nil

@@ -45,11 +45,20 @@ func ReadFile(ctx context.Context, path string, opt Options) ([]*Recording, erro
 	if err != nil {
 		return nil, locate(path, err)
 	}
-	after, err := os.Stat(path)
-	if err != nil || !os.SameFile(opened, after) || after.Size() != opened.Size() || !after.ModTime().Equal(opened.ModTime()) || list[0].Size != opened.Size() {
-		return nil, changed(opt.Name)
+	if err := unchanged(opt.Name, path, opened, list[0].Size); err != nil {
+		return nil, err
 	}
 	return list, nil
+}
+
+// unchanged compares a file with what it was when it was opened, and with the
+// number of bytes that were read.
+func unchanged(name, path string, before os.FileInfo, size int64) error {
+	after, err := os.Stat(path)
+	if err != nil || !os.SameFile(before, after) || after.Size() != before.Size() || !after.ModTime().Equal(before.ModTime()) || size != before.Size() {
+		return changed(name)
+	}
+	return nil
 }
 
 func changed(name string) error {

@@ -11,15 +11,6 @@ import (
 	"testing"
 )
 
-// readText reads a text with the given options.
-func readString(t *testing.T, text string, opt Options) ([]*Recording, error) {
-	t.Helper()
-	if opt.Name == "" {
-		opt.Name = "run7.csv"
-	}
-	return Read(context.Background(), strings.NewReader(text), opt)
-}
-
 // ordinary writes n rows of time, x, y, z with fixed decimals.
 func ordinary(n int) string {
 	rng := rand.New(rand.NewPCG(3, 4))
@@ -45,7 +36,6 @@ func TestOrdinaryFile(t *testing.T) {
 	if len(list) != 1 || len(rec.Axes) != 3 || rec.Samples != 30_000 || rec.Missing != 0 || rec.Rate != 10_000 {
 		t.Fatalf("got %d recordings, %d axes, %d samples, %v Hz", len(list), len(rec.Axes), rec.Samples, rec.Rate)
 	}
-	t.Log(rec.ReadAs, rec.Notes, rec.RateU, rec.JitterRMS, rec.SHA256, rec.Size)
 	rng := rand.New(rand.NewPCG(3, 4))
 	for i := range rec.Samples {
 		for k, scale := range []float64{0.05, 0.05, 0.1} {

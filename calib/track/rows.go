@@ -38,6 +38,7 @@ type parser struct {
 	bad    []badLine
 	total  int   // bad lines, with those that are not in bad
 	skip   []int // rows that hold no sample
+	again  []int // rows that repeat the header
 	recent string
 	recall float64
 }
@@ -57,6 +58,7 @@ type parsed struct {
 	columns [][]float64
 	rows    int   // samples
 	skip    []int // lines of data that hold no sample, ascending
+	again   []int // those that repeat the header
 	lines   int   // lines of data
 	bad     []badLine
 	total   int
@@ -79,10 +81,12 @@ func parseRows(ctx context.Context, in *feed, lay *layout, beads *beadIndex, wor
 	all := &parsed{columns: in.store.columns, lines: in.row}
 	for _, p := range parsers {
 		all.skip = append(all.skip, p.skip...)
+		all.again = append(all.again, p.again...)
 		all.bad = append(all.bad, p.bad...)
 		all.total += p.total
 	}
 	slices.Sort(all.skip)
+	slices.Sort(all.again)
 	slices.SortFunc(all.bad, func(a, b badLine) int { return a.err.Line - b.err.Line })
 	all.bad = all.bad[:min(len(all.bad), keptBad)]
 	all.rows = all.lines - len(all.skip)

@@ -99,6 +99,9 @@ func (p *parser) slowRow(line []byte, number, row int, last bool) {
 	line = bytes.TrimSuffix(line, []byte{'\r'})
 	text := p.lay.decode(line)
 	if p.lay.isIgnored(text) {
+		if p.lay.isRepeat(text) {
+			p.again = append(p.again, row)
+		}
 		p.skip = append(p.skip, row)
 		return
 	}

@@ -7,6 +7,7 @@ import (
 	"fmt"
 	"io"
 	"math"
+	"slices"
 	"strings"
 )
 
@@ -220,6 +221,9 @@ func (lay *layout) readRows(ctx context.Context, p *plan, text io.Reader, opt Op
 	if err := rows.judge(); err != nil {
 		return nil, err
 	}
+	if err := rows.checkRepeats(opt.Name, lay, p); err != nil {
+		return nil, err
+	}
 	tab := &table{plan: p, columns: rows.columns, rows: rows.rows, shifted: true, pre: lay.preamble, undated: lay.isUndated(p)}
 	if p.bead != nil {
 		tab.beads = beads.names
@@ -239,10 +243,28 @@ func (lay *layout) readRows(ctx context.Context, p *plan, text io.Reader, opt Op
 		return e
 	}
 	tab.readAs = lay.readAs(p, rows)
+	if len(rows.again) > 0 {
+		tab.notes = note(tab.notes, "header-repeated", "the header occurs again among the rows, first in line %d: the rows are read as one recording", lay.firstLine+rows.again[0])
+	}
 	if footer := rows.total; footer > 0 {
 		tab.notes = note(tab.notes, "footer", "%d lines of text behind the data are left out, from line %d on", footer, rows.bad[0].err.Line)
 	}
 	return tab, nil
+}
+
+// checkRepeats refuses a header that follows a blank line where no time column
+// can tell whether one recording goes on or another begins.
+func (a *parsed) checkRepeats(name string, lay *layout, p *plan) error {
+	if p.time != nil || p.date != nil || p.frame != nil {
+		return nil
+	}
+	for _, row := range a.again {
+		if _, found := slices.BinarySearch(a.skip, row-1); found {
+			return &Error{File: name, Line: lay.firstLine + row, Code: CodeLayout, What: "the header occurs again after a gap: a second table seems to start here",
+				Remedy: "keep one table in the file, or remove the blank line and the header"}
+		}
+	}
+	return nil
 }
 
 // judge accepts lines of text behind the last row as a footer and refuses the
