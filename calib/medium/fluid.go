@@ -40,7 +40,7 @@ var solutions = []*solution{
 	{name: "water", example: "water", low: 253.15, high: 383.15, evaluate: water,
 		source: "IAPWS SR6-08(2011), Patek et al. 2009"},
 	{name: "heavy water", example: "heavy water", low: 276.65, high: 373.15, evaluate: heavyWater,
-		source: "IAPWS 1984 revised 2007 (viscosity), Kell 1967 (density)"},
+		source: "IAPWS 1984 revised 2007, brought to IAPWS R17-20 (viscosity), Kell 1967 (density)"},
 	{name: "glycerol", unit: "%", most: 100, example: "glycerol 20 %",
 		low: zeroCelsius, high: 373.15, evaluate: glycerol,
 		source: "Cheng 2008 (viscosity), Volk and Kaehler 2018 (density)"},

@@ -4,20 +4,47 @@ import "math"
 
 // heavyWater returns the properties of liquid heavy water at atmospheric
 // pressure: viscosity by the IAPWS formulation of 1984 as revised in 2007 (Kestin et
-// al., J. Phys. Chem. Ref. Data 13 (1984) 601), at the density of Kell 1967,
-// 3.5 to 100 C.
+// al., J. Phys. Chem. Ref. Data 13 (1984) 601), at the density of Kell 1967, brought to
+// the newer IAPWS R17-20 from 20 to 37 C (heavyWaterShift), 3.5 to 100 C.
 //
-// The newer formulation IAPWS R17-20 differs by 0.25 % at 20 C, 0.14 % at 25 C and
-// 0.10 % at 37 C: 0.3 % is the standard uncertainty from 15 to 40 C and 1 %
-// elsewhere (they differ by 0.8 % at 100 C). Density: 2e-4, which leaves room for
-// 0.2 % of light water; the viscosity of 1 % light water is 0.2 % lower.
+// Standard uncertainty of the viscosity: 0.3 % from 20 to 37 C, where the two
+// formulations differ by up to 0.25 %; 1 % elsewhere (they differ by 0.8 % at 100 C).
+// Density: 2e-4, which leaves room for 0.2 % of light water; the viscosity with 1 % of
+// light water is 0.2 % lower.
 func heavyWater(kelvin, _ float64) state {
 	density := heavyWaterDensity(kelvin)
-	s := state{viscosity: heavyWaterViscosity(kelvin, density), viscosityU: 0.01, density: density, densityU: 2e-4}
-	if kelvin > 288.15-slack && kelvin < 313.15+slack {
+	s := state{
+		viscosity:  heavyWaterViscosity(kelvin, density) * math.Exp(heavyWaterShift(kelvin)),
+		viscosityU: 0.01,
+		density:    density,
+		densityU:   2e-4,
+	}
+	if kelvin > 293.15-slack && kelvin < 310.15+slack {
 		s.viscosityU = 0.003
 	}
 	return s
+}
+
+// heavyWaterShift is the logarithm of the viscosity of IAPWS R17-20 over that of the
+// formulation of 1984 at the density of Kell: the cubic through 20, 25, 30 and 37 C, where
+// R17-20 gives 1243.001, 1092.774, 970.210 and 832.924 uPa s, and its end values outside.
+func heavyWaterShift(kelvin float64) float64 {
+	anchors := []struct{ celsius, viscosity float64 }{
+		{20, 1243.00128e-6}, {25, 1092.77379e-6}, {30, 970.209810e-6}, {37, 832.923592e-6}, // Pa s
+	}
+	t := min(max(kelvin-zeroCelsius, 20), 37)
+	sum := 0.0
+	for i, a := range anchors {
+		at := a.celsius + zeroCelsius
+		term := math.Log(a.viscosity / heavyWaterViscosity(at, heavyWaterDensity(at)))
+		for j, b := range anchors {
+			if i != j {
+				term *= (t - b.celsius) / (a.celsius - b.celsius)
+			}
+		}
+		sum += term
+	}
+	return sum
 }
 
 // heavyWaterDensity is the equation of Kell 1967 [kg/m3]; coefficients from

@@ -12,8 +12,9 @@
 //
 //   - water: IAPWS SR6-08(2011), Patek et al., J. Phys. Chem. Ref. Data 38
 //     (2009) 21;
-//   - heavy water: IAPWS viscosity release of 1984 as revised in 2007, with the
-//     density of Kell, J. Chem. Eng. Data 12 (1967) 66;
+//   - heavy water: IAPWS viscosity release of 1984 as revised in 2007, brought to
+//     IAPWS R17-20 around room temperature, with the density of Kell, J. Chem. Eng.
+//     Data 12 (1967) 66;
 //   - glycerol: Cheng, Ind. Eng. Chem. Res. 47 (2008) 3285, with the density of
 //     Volk and Kaehler, Exp. Fluids 59 (2018) 75;
 //   - sucrose: Barber, Natl. Cancer Inst. Monogr. 21 (1966) 219;

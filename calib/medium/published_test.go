@@ -53,8 +53,8 @@ func TestPublished(t *testing.T) {
 	}
 }
 
-// TestHeavyWaterRelease compares with the verification table of IAPWS R17-20
-// (2020): the newer formulation, so the tolerance is the uncertainty stated there.
+// TestHeavyWaterRelease compares the formulation of 1984, before its shift, with the
+// verification table of IAPWS R17-20 (2020), within the uncertainties stated there.
 func TestHeavyWaterRelease(t *testing.T) {
 	for _, row := range []struct{ kelvin, density, want, tolerance float64 }{
 		{298.15, 0, 10.035938e-6, 0.015},
