@@ -41,8 +41,7 @@ func perpendicular(ratio float64) float64 {
 func perpendicularSlope(ratio float64) float64 {
 	switch {
 	case ratio > veryFarRatio:
-		s := 1 / ratio
-		return s * (-9.0/8 + 3*s*s/2) * perpendicular(ratio)
+		return -9.0 / 8 / ratio * perpendicular(ratio) // the next term is 1.3e-6 of this
 	case ratio < contactRatio:
 		gap := ratio - 1
 		return -ratio * (1/(gap*gap) + 1/(5*gap)) / perpendicular(ratio)

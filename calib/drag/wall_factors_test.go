@@ -41,8 +41,8 @@ func publishedRows(t *testing.T) []publishedRow {
 		}
 		rows = append(rows, row)
 	}
-	if len(rows) != 106 {
-		t.Fatalf("wall_factors.csv has %d rows, want 106", len(rows))
+	if len(rows) != 108 {
+		t.Fatalf("wall_factors.csv has %d rows, want 108", len(rows))
 	}
 	return rows
 }
