@@ -2,9 +2,9 @@ package transform
 
 import "fmt"
 
-// maxLength bounds the lengths that are searched and planned; beyond it the
-// buffers would pass 2^40 bytes.
-const maxLength = 1 << 36
+// maxLength bounds the lengths that are searched and planned, to 2^36 (2^27 where int has 32
+// bits): products with small numbers then fit an int.
+const maxLength = 1 << (27 + 9*(^uint(0)>>63))
 
 // GoodLength returns the largest even length not above n that has no prime factor
 // above 5. It returns 0 when there is none, which is when n < 2.
