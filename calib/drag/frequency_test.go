@@ -209,3 +209,21 @@ func BenchmarkFactor(b *testing.B) {
 		d.Factor(1e4)
 	}
 }
+
+// TestRecommended pins which form the zero Shape stands for, near a wall.
+func TestRecommended(t *testing.T) {
+	for perpendicularly, want := range map[bool]Shape{false: Published, true: PointForce} {
+		d := example(0.5)
+		d.Perpendicular = perpendicularly
+		named := d
+		named.Shape = want
+		if got := d.Factor(1e4); got != named.Factor(1e4) || d.Approximate() {
+			t.Errorf("perpendicular %v: recommended factor %v, want that of shape %d", perpendicularly, got, want)
+		}
+	}
+	d := example(0.5)
+	d.Shape = BulkShape
+	if !d.Approximate() {
+		t.Error("the shape of bulk near a wall is not reported as approximate")
+	}
+}
