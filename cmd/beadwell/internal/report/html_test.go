@@ -6,6 +6,7 @@ import (
 	"errors"
 	"io"
 	"math"
+	"os"
 	"regexp"
 	"strings"
 	"testing"
@@ -311,5 +312,67 @@ func (fullDevice) Write([]byte) (int, error) { return 0, errFull }
 func TestHTMLTellsWhenItCannotWrite(t *testing.T) {
 	if err := HTML(fullDevice{}, storedSample()); !errors.Is(err, errFull) {
 		t.Errorf("error %v, want %v", err, errFull)
+	}
+}
+
+// readableText is what a page says without its figures: a line for each row of
+// a table, heading, paragraph and list entry.
+func readableText(t *testing.T, page string) string {
+	t.Helper()
+	var out strings.Builder
+	skip := 0
+	for _, token := range htmlTokens(t, page) {
+		switch e := token.(type) {
+		case xml.StartElement:
+			switch e.Name.Local {
+			case "style", "script", "svg":
+				skip++
+			case "td", "dd":
+				out.WriteString(" | ")
+			case "dt", "title":
+				out.WriteString("\n")
+			case "br":
+				out.WriteString("; ")
+			}
+		case xml.EndElement:
+			switch e.Name.Local {
+			case "style", "script", "svg":
+				skip--
+			case "th":
+				out.WriteString(" ")
+			case "tr", "p", "h1", "h2", "h3", "caption", "li", "div", "dl", "figcaption", "title":
+				out.WriteString("\n")
+			}
+		case xml.CharData:
+			if skip == 0 {
+				out.WriteString(strings.Trim(string(e), "\n"))
+			}
+		}
+	}
+	var lines []string
+	for line := range strings.SplitSeq(out.String(), "\n") {
+		if line = strings.TrimSpace(line); line != "" {
+			lines = append(lines, line)
+		}
+	}
+	return strings.Join(lines, "\n") + "\n"
+}
+
+// TestHTMLSays compares the words of a page with a file; every number in it is
+// rounded for a reader, so processors agree on it.
+func TestHTMLSays(t *testing.T) {
+	const name = "testdata/page.txt"
+	got := readableText(t, htmlOf(t, specimen.Result()))
+	if *update {
+		if err := os.WriteFile(name, []byte(got), 0o644); err != nil {
+			t.Fatal(err)
+		}
+	}
+	want, err := os.ReadFile(name)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if diff := cmp.Diff(string(want), got); diff != "" {
+		t.Errorf("the page differs from %s; review, then go test -update (-want +got):\n%s", name, diff)
 	}
 }
