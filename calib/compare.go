@@ -39,6 +39,9 @@ func (w *work) routes() Test {
 	if sd > 2*hopeless {
 		return noTest(tooUncertain(sd))
 	}
+	if w.poolErr != nil {
+		return noTest("the computed drag is too far from the measured one for a test")
+	}
 	fixed, _, err := w.fit.Problem.Ratio(w.fit.Maximum, alongDrag, p.expected)
 	if err != nil {
 		return noTest("the recording does not determine the drag")
@@ -55,9 +58,12 @@ func (w *work) dragExcess() float64 {
 	return w.fit.Maximum.At[0] + w.fit.Maximum.At[1] - w.pooled.expected
 }
 
-// leastVariance is the share of the variance of either estimate that their difference must
-// have to be tested: below it the difference is made of terms that the theory leaves out.
-const leastVariance = 0.01
+// leastVariance is the share of the variance of an estimate that its difference from
+// another must have to be tested. The estimates of one route are nearly one statistic, with
+// correlations of 0.95 and more: the small rest of their difference is made of terms of second
+// order, which the theory of their covariance leaves out, and a test of it would not
+// keep its level.
+const leastVariance = 0.2
 
 // contrast compares two legs of one route.
 func (w *work) contrast(a, b int) Test {
@@ -69,7 +75,7 @@ func (w *work) contrast(a, b int) Test {
 	v := l.stat[a][a] + l.stat[b][b] - 2*l.stat[a][b]
 	vt := l.total[a][a] + l.total[b][b] - 2*l.total[a][b]
 	if v < leastVariance*l.stat[b][b] {
-		return noTest("the two estimates are the same statistic here")
+		return noTest(fmt.Sprintf("the two estimates are nearly the same statistic (correlation %.2f): their agreement says little", l.stat[a][b]/math.Sqrt(l.stat[a][a]*l.stat[b][b])))
 	}
 	return Test{ChiSquare: Float(d * d / v), DegreesOfFreedom: 1, PValue: survival(d*d/v, 1),
 		ChiSquareCombined: Float(d * d / vt), PValueCombined: survival(d*d/vt, 1), MeanDifference: Float(d)}
@@ -148,13 +154,17 @@ func (w *work) adopt() {
 		w.adoptLeg(spectrumLeg, "corner frequency and computed drag")
 	case w.opt.Adopt == RouteAmplitude || w.opt.Adopt == "" && drag <= 0 && w.has(amplitudeLeg):
 		w.adoptLeg(amplitudeLeg, "amplitude of the spectrum and temperature")
+	case w.poolErr != nil:
+		reason := "the recording and the computed drag cannot be brought together"
+		a.Stiffness, a.Withheld = Withheld("N/m", reason), reason
+		return
 	default:
 		drag = math.Max(0, math.Min(1, drag))
 		a.Basis = "drag and amplitude route combined"
 		a.Weights = map[string]Float{RouteDrag: Float(drag), RouteAmplitude: Float(1 - drag)}
 		o := relaxation.Normal(p.sdTotal)
 		if p.sdTotal > smallEnough {
-			o = p.problem.Profile(p.maximum, p.weights, p.sdTotal)
+			o = p.problem.Profile(p.maximum, p.weights, p.sdTotal).Scaled(w.bartlett())
 		}
 		if math.IsInf(o.Low95, 0) || math.IsInf(o.High95, 0) || p.sdTotal > hopeless {
 			reason := tooUncertain(p.sdTotal)

@@ -50,6 +50,7 @@ func (w *work) pool() error {
 
 	p.problem = w.fit.Problem
 	p.problem.Priors = append([]relaxation.Prior{{Weights: alongDrag, Mean: p.expected, SD: p.u}}, w.fit.Problem.Priors...)
+	p.regimeFC, p.regimeV = math.Inf(1), math.Inf(1)
 	var err error
 	p.maximum, err = p.problem.Maximise(w.poolStart())
 	if err != nil {
@@ -66,31 +67,46 @@ func (w *work) pool() error {
 	p.sdData = math.Sqrt(math.Max(0, p.data.Form(p.weights, p.weights)))
 	p.sdTotal = math.Sqrt(math.Max(0, p.total.Form(p.weights, p.weights)))
 	p.drag = (1 + k) - p.total.Form(p.weights, alongDrag)/(p.u*p.u)
-	p.regimeFC, p.regimeV = math.Inf(1), math.Inf(1)
 	if c, _, err := w.fit.Problem.Covariance(p.maximum.Information); err == nil {
 		p.regimeFC, p.regimeV = math.Sqrt(c[0][0]), math.Sqrt(c[1][1])
 	}
 	return nil
 }
 
-// poolStart starts from the drag-free fit where there is one, moved onto the computed
-// drag half by corner frequency and half by variance, else from the record's variance.
+// poolGrid is the number of corner frequencies that are tried, in equal ratios, for a start.
+const poolGrid = 64
+
+// poolStart scans corner frequencies on the line of the computed drag, each with the
+// noise that fills up the recorded variance where that is not stated, and returns the
+// best of them and of the drag-free fit.
 func (w *work) poolStart() relaxation.Parameters {
 	p := &w.pooled
-	at := w.fit.Maximum.At
-	if w.fitErr != nil {
-		at = relaxation.Parameters{p.expected, 0, 0}
-		if w.noise.Known {
-			at[2] = w.noise.Variance / w.fit.Scale()
-			at[1] = math.Log(math.Max(0.05, 1-at[2]))
+	best, bestValue := relaxation.Parameters{}, math.Inf(-1)
+	try := func(at relaxation.Parameters) {
+		if v := p.problem.Value(at); v > bestValue {
+			best, bestValue = at, v
 		}
-		at[0] = math.Min(p.expected-at[1], math.Log(2))
 	}
-	gap := p.expected - at[0] - at[1]
-	shrink := math.Max(-2, math.Min(2, gap)) / 2
-	if p.u < 1 {
-		at[0] += shrink
-		at[1] += shrink
+	if w.fitErr == nil {
+		at := w.fit.Maximum.At
+		try(at)
+		gap := (p.expected - at[0] - at[1]) / 2
+		at[0] += gap
+		at[1] += gap
+		try(at)
 	}
-	return at
+	low, high := math.Log(0.1/float64(w.record.Observed())), math.Log(2)
+	for i := range poolGrid {
+		phi := low + (high-low)*float64(i)/(poolGrid-1)
+		v := p.expected - phi
+		s, _ := relaxation.BlurVariance(2 * math.Pi * math.Exp(phi) * w.exposure * w.rate)
+		if w.noise.Known {
+			try(relaxation.Parameters{phi, v, w.noise.Variance / w.fit.Scale()})
+			continue
+		}
+		for _, share := range []float64{0, 0.5, 1} {
+			try(relaxation.Parameters{phi, v, share * math.Max(0, 1-s*math.Exp(v))})
+		}
+	}
+	return best
 }

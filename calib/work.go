@@ -29,13 +29,14 @@ type work struct {
 	noise     psd.Noise
 	volts     bool // positions are in detector units: no absolute length
 
-	record *psd.Record
-	fit    *psd.Fit
-	fitErr error
-	legs   legs
-	pooled pooled
-	axis   Axis
-	notes  []Finding
+	record  *psd.Record
+	fit     *psd.Fit
+	fitErr  error
+	legs    legs
+	pooled  pooled
+	poolErr error
+	axis    Axis
+	notes   []Finding
 }
 
 // newWork reads what the settings say of one axis and converts its positions.
@@ -132,8 +133,9 @@ func (w *work) run(ctx context.Context) error {
 	if err := ctx.Err(); err != nil {
 		return err
 	}
-	if err := w.pool(); err != nil {
-		return w.dataError(err, "check the unit, the diameter and the exposure; state the noise if it is known")
+	if w.poolErr = w.pool(); w.poolErr != nil && w.fitErr != nil {
+		return w.dataError(fmt.Errorf("the positions do not look like those of a trapped bead: %w", w.fitErr),
+			"check the unit, the diameter and the exposure, and that the bead was trapped; state the noise if it is known")
 	}
 	w.estimate()
 	w.compare()

@@ -106,7 +106,7 @@ func (pr Problem) climb(at, step Parameters, value float64) (Parameters, bool) {
 		for a := range next {
 			next[a] += scale * step[a]
 		}
-		if v := pr.value(next); v > value {
+		if v := pr.Value(next); v > value {
 			return next, true
 		}
 		scale /= 2
@@ -114,7 +114,8 @@ func (pr Problem) climb(at, step Parameters, value float64) (Parameters, bool) {
 	return at, false
 }
 
-func (pr Problem) value(p Parameters) float64 {
+// Value returns the log-likelihood less the penalties of the priors.
+func (pr Problem) Value(p Parameters) float64 {
 	v := pr.Likelihood.Value(p)
 	for _, q := range pr.Priors {
 		z := (q.Weights.dot(p) - q.Mean) / q.SD

@@ -121,3 +121,13 @@ func (s shape) grad(v, q, sigma, sigmaVar float64) (p, dphi, dv float64) {
 	dg := (s.dpole*(1+r)+s.pole*dr)/d - s.pole*(1+r)*dd/(d*d) + s.dlevel
 	return v*g + q, v * dg, v * g
 }
+
+// MSDSlope returns the derivative of MSD(n) with respect to ln fc [m2].
+func (p Process) MSDSlope(n int) float64 {
+	a := 2 * math.Pi * p.Corner * p.Exposure
+	_, ds := BlurVariance(a)
+	b, db := BlurCovariance(a)
+	x := 2 * math.Pi * p.Corner * p.Interval * math.Abs(float64(n))
+	cn := math.Exp(-x)
+	return 2 * p.Variance * (a*ds - a*db*cn + b*x*cn)
+}
