@@ -241,6 +241,12 @@ func skipBlanks(b []byte, i int, delimiter byte) int {
 
 // rareNumber reads what plainNumber declines and is still a number or a gap.
 func (p *parser) rareNumber(b []byte, i, shift int) (v float64, next int, ok bool) {
+	if b[i] == '"' {
+		if v, next, ok = plainNumber(b, i+1, p.lay.mark, shift); !ok {
+			v, next, ok = fastNumber(b, i+1, p.lay.mark, shift)
+		}
+		return v, next + 1, ok && b[next] == '"'
+	}
 	if v, next, ok = fastNumber(b, i, p.lay.mark, shift); ok {
 		return v, next, true
 	}
