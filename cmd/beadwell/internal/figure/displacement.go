@@ -2,6 +2,7 @@ package figure
 
 import (
 	"fmt"
+	"math"
 
 	"beadwell/calib"
 )
@@ -22,14 +23,16 @@ func displacement(a *calib.Axis) Figure {
 	fit := fitted(a.Displacement.Model, "fit")
 	plateau := a.Displacement.Plateau
 	values.showPositive(float64(plateau.Value))
+	tau := a.Displacement.RelaxationTime
+	showNearby(&lags, float64(tau.Value))
 	p := panel{name: "displacement", share: 1,
 		x: scale{quantity: "lag", unit: "s", si: "s", factor: 1, log: true}.over(lags),
 		y: scale{quantity: "mean-square displacement", unit: "nm^{2}", si: "m2", factor: 1e18, log: true}.over(values)}
 	if plateau.Known() {
 		p.add(series{name: "plateau", mark: level, ink: rule, y: []float64{float64(plateau.Value)},
-			label: "plateau " + measured(plateau, "nm2")})
+			label: plateauLabel(plateau, fit)})
 	}
-	if tau := a.Displacement.RelaxationTime; tau.Known() {
+	if tau.Known() {
 		p.add(series{name: "relaxation time", mark: upright, ink: rule, x: []float64{float64(tau.Value)},
 			label: "relaxation time " + measured(tau, timeUnit(float64(tau.Value)))})
 	}
@@ -42,6 +45,26 @@ func displacement(a *calib.Axis) Figure {
 		f.key = append(f.key, keyItem{"not in the fit", rings, left})
 	}
 	return f.described(describeDisplacement(a, len(used.x)+len(unused.x)))
+}
+
+// showNearby lets a range reach to a value that lies less than a factor of 30
+// outside: the relaxation time of a slow camera is shorter than its first lag.
+func showNearby(e *extent, v float64) {
+	const reach = 30
+	if v > e.low/reach && v < e.high*reach {
+		e.showPositive(v)
+	}
+}
+
+// plateauLabel names the plateau. Blur and noise are removed from it, which is
+// said where the recorded curve, with them, ends visibly elsewhere.
+func plateauLabel(plateau calib.Quantity, fit series) string {
+	const visible = 0.03 // a few line widths on the axis
+	label := "plateau " + measured(plateau, "nm2")
+	if n := len(fit.y); n > 0 && math.Abs(fit.y[n-1]/float64(plateau.Value)-1) > visible {
+		label += ", blur and noise removed"
+	}
+	return label
 }
 
 func lagPoints(a *calib.Axis) (used, unused series) {

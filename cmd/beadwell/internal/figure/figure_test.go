@@ -3,6 +3,7 @@ package figure
 import (
 	"math"
 	"slices"
+	"strings"
 	"testing"
 
 	"beadwell/calib"
@@ -253,5 +254,27 @@ func TestUnitsOfAxes(t *testing.T) {
 	}
 	if checked < 20 {
 		t.Errorf("only %d axes had a unit to check", checked)
+	}
+}
+
+func TestPlateauLabelSaysWhatWasRemoved(t *testing.T) {
+	a := specimen.Result().Axes[0]
+	if _, s := find(t, displacement(&a), "displacement", "plateau"); strings.Contains(s.label, "removed") {
+		t.Errorf("label %q though the curve ends on the plateau", s.label)
+	}
+	a.Displacement.Plateau.Value *= 1.4
+	if _, s := find(t, displacement(&a), "displacement", "plateau"); !strings.Contains(s.label, "blur and noise removed") {
+		t.Errorf("label %q though the curve ends below the plateau", s.label)
+	}
+}
+
+func TestRelaxationTimeBelowTheFirstLagIsShown(t *testing.T) {
+	a := specimen.Result().Axes[0]
+	for factor, want := range map[calib.Float]bool{0.2: true, 1e-9: false} {
+		a.Displacement.RelaxationTime = calib.Exact(float64(a.Displacement.Points[0].Lag*factor), "s")
+		f := displacement(&a)
+		if n := f.panels[0].x.normalised(float64(a.Displacement.RelaxationTime.Value)); (n >= 0) != want {
+			t.Errorf("a relaxation time of %g first lags stands at %g of the axis", factor, n)
+		}
 	}
 }

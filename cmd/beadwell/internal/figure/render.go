@@ -109,7 +109,7 @@ func renderSVG(f Figure, theme Theme, alone bool) []byte {
 	w, h := f.size()
 	canvas := newSVG(w, h)
 	brush{canvas, theme}.paint(f, w, h)
-	id := "figure-" + fileSafe(strings.ReplaceAll(f.Name, "-", "")) + "-"
+	id := "figure-" + f.Name + "-" // a name is safe in an attribute
 	var out bytes.Buffer
 	out.WriteString("<svg")
 	if alone {
