@@ -3,10 +3,13 @@ package cli
 import (
 	"context"
 	"errors"
+	"path/filepath"
+	"slices"
 
 	"github.com/spf13/cobra"
 
 	"beadwell/calib"
+	"beadwell/calib/session"
 	"beadwell/cmd/beadwell/internal/report"
 )
 
@@ -69,6 +72,7 @@ func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions)
 			if err := o.validate(); err != nil {
 				return err
 			}
+			o.tracks = withoutLists(o.tracks)
 			return run(cmd.Context(), a, o)
 		},
 	}
@@ -78,7 +82,7 @@ func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions)
 	flags.StringVar(&o.out, "out", "", "also write text, JSON, CSV, report and figures of each recording into `FOLDER`")
 	flags.BoolVar(&o.force, "force", false, "with --out: replace files of another recording")
 	flags.StringVar(&o.adopt, "adopt", "", "adopt this route alone, also when the two disagree: `drag|amplitude`")
-	flags.BoolVarP(&o.quiet, "quiet", "q", false, "no warnings on standard error")
+	flags.BoolVarP(&o.quiet, "quiet", "q", false, "no progress and no warnings on standard error")
 	addSettingFlags(flags, &o.flags)
 	completeSettings(cmd)
 	completeWords(cmd, "format", formats...)
@@ -101,10 +105,13 @@ func (o calibrateOptions) validate() error {
 	return checkTracks(o.tracks)
 }
 
-// checkTracks refuses a track that is given twice, and standard input beside others.
+// checkTracks refuses a track that is given twice, and a track list alone.
 func checkTracks(tracks []string) error {
 	seen := map[string]bool{}
 	for _, path := range tracks {
+		if filepath.Base(path) == session.TracksName && len(tracks) == 1 {
+			return usageError("give the recordings that it lists", "%s is the track list, not a recording", path)
+		}
 		if seen[path] {
 			return usageError("give each track once", "%s is given twice", path)
 		}
@@ -113,12 +120,16 @@ func checkTracks(tracks []string) error {
 	return nil
 }
 
+// withoutLists leaves out track lists, which a pattern such as *.csv brings along.
+func withoutLists(tracks []string) []string {
+	return slices.DeleteFunc(slices.Clone(tracks), func(path string) bool { return filepath.Base(path) == session.TracksName })
+}
+
 // outcome is what became of one recording: a result, or an error.
 type outcome struct {
-	path     string
-	result   *calib.Result
-	warnings []string
-	err      error
+	path   string
+	result *calib.Result
+	err    error
 }
 
 func runCalibrate(ctx context.Context, a *app, o calibrateOptions) error {
@@ -134,6 +145,8 @@ func runCalibrate(ctx context.Context, a *app, o calibrateOptions) error {
 	src := &source{app: a, file: o.session, flags: &o.flags}
 	var outcomes []outcome
 	var unwritten []error
+	progress := a.newProgress(len(o.tracks), o.quiet)
+	defer progress.end()
 	for _, path := range o.tracks {
 		found := a.calibrateTrack(ctx, src, path, o.adopt, created)
 		if err := ctx.Err(); err != nil {
@@ -141,7 +154,9 @@ func runCalibrate(ctx context.Context, a *app, o calibrateOptions) error {
 		}
 		unwritten = append(unwritten, writer.writeAll(ctx, found))
 		outcomes = append(outcomes, found...)
+		progress.step()
 	}
+	progress.end()
 	if err := a.printOutcomes(outcomes, o); err != nil {
 		return err
 	}
@@ -157,15 +172,15 @@ func (a *app) calibrateTrack(ctx context.Context, src *source, path, adopt, crea
 	if err != nil {
 		return []outcome{{path: path, err: err}}
 	}
+	options := calib.Options{Adopt: adopt, Program: calib.Program{Name: "beadwell", Version: a.Version, Command: append([]string{"beadwell"}, a.args...)}}
 	outcomes := make([]outcome, len(recordings))
 	for i, one := range recordings {
-		outcomes[i] = outcome{path: path, warnings: one.warnings}
-		result, err := a.Calibrate(ctx, one.recording, one.settings, adopt)
+		outcomes[i] = outcome{path: path}
+		result, err := a.Calibrate(ctx, one.recording, one.settings, options)
 		if err != nil {
 			outcomes[i].err = err
 			continue
 		}
-		result.Program = calib.Program{Name: "beadwell", Version: a.Version, Command: append([]string{"beadwell"}, a.args...)}
 		result.Created = created
 		result.Input.Name = path // the bead stands beside it
 		outcomes[i].result = result
@@ -184,8 +199,8 @@ func (a *app) printOutcomes(outcomes []outcome, o calibrateOptions) error {
 			continue
 		}
 		set.Results = append(set.Results, one.result)
-		if !o.quiet {
-			a.warn(one, o.format)
+		if o.format == "csv" && !o.quiet {
+			a.warn(one.result)
 		}
 	}
 	single := len(outcomes) == 1
@@ -204,16 +219,13 @@ func (a *app) printOutcomes(outcomes []outcome, o calibrateOptions) error {
 	return report.SetText(a.Out, set, report.TextOptions{Colour: a.Colour})
 }
 
-// warn tells on standard error what the format of standard output has no room for.
-func (a *app) warn(one outcome, format string) {
-	for _, warning := range one.warnings {
-		a.say("beadwell: warning: %s", warning)
+// warn tells on standard error what CSV has no room for.
+func (a *app) warn(r *calib.Result) {
+	for _, note := range r.ReadAs.Notes {
+		a.say("beadwell: %s: %s", report.InputName(r.Input), note)
 	}
-	if format != "csv" {
-		return
-	}
-	for _, f := range one.result.Findings {
-		a.say("beadwell: %s: %s, %s: %s", report.InputName(one.result.Input), f.Severity, f.Code, f.Text)
+	for _, f := range r.Findings {
+		a.say("beadwell: %s: %s, %s: %s", report.InputName(r.Input), f.Severity, f.Code, f.Text)
 	}
 }
 

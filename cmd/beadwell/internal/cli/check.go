@@ -3,7 +3,6 @@ package cli
 import (
 	"context"
 	"fmt"
-	"strings"
 
 	"github.com/spf13/cobra"
 
@@ -30,13 +29,13 @@ nothing. A unit or a rate that nobody stated is a remark here, not an error.`,
 		Example: "  beadwell check run7.csv\n  beadwell check --unit nm run7.csv",
 		Args:    someArguments("a track"),
 		RunE: func(cmd *cobra.Command, args []string) error {
-			o.tracks = args
 			if err := notEmpty(cmd, "session"); err != nil {
 				return err
 			}
 			if err := checkTracks(args); err != nil {
 				return err
 			}
+			o.tracks = withoutLists(args)
 			return run(cmd.Context(), a, o)
 		},
 	}
@@ -83,9 +82,6 @@ func (a *app) printCheck(one loaded) {
 	}
 	for _, note := range r.Notes {
 		fmt.Fprintf(a.Out, "  note: %s\n", report.Plain(note.Text))
-	}
-	for _, warning := range one.warnings {
-		fmt.Fprintf(a.Out, "  warning: %s\n", strings.ReplaceAll(report.PlainLines(warning), "\n", "\n  "))
 	}
 	fmt.Fprintln(a.Out, "  settings:")
 	for _, s := range one.settings.All() {

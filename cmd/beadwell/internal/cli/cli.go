@@ -31,9 +31,10 @@ type World struct {
 	Now      func() time.Time
 	Version  string // of the program, as results record it
 	Colour   bool   // Out is a terminal that shows colours
+	Watched  bool   // Err is a terminal, on which a progress bar can move
 
-	// Calibrate calibrates one recording; adopt is "", "drag" or "amplitude".
-	Calibrate func(ctx context.Context, recording *track.Recording, settings *session.Settings, adopt string) (*calib.Result, error)
+	// Calibrate calibrates one recording, as calib.Calibrate does.
+	Calibrate func(context.Context, *track.Recording, *session.Settings, calib.Options) (*calib.Result, error)
 }
 
 // Process is the world of the running process.
@@ -41,6 +42,7 @@ func Process() World {
 	return World{
 		In: os.Stdin, Out: os.Stdout, Err: os.Stderr,
 		Getenv: os.Getenv, Now: time.Now, Version: version(), Colour: showsColour(os.Stdout, os.Getenv),
+		Watched: isTerminal(os.Stderr), Calibrate: calib.Calibrate,
 	}
 }
 

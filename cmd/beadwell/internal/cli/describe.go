@@ -8,6 +8,7 @@ import (
 	"io/fs"
 	"strings"
 
+	"beadwell/calib"
 	"beadwell/calib/quantity"
 	"beadwell/calib/session"
 	"beadwell/calib/track"
@@ -122,6 +123,8 @@ func problem(err error) report.Problem {
 		setting    *session.Error
 		text       *quantity.Error
 		stored     *report.ReadError
+		missing    *calib.SettingError
+		unfit      *calib.DataError
 		path       *fs.PathError
 	)
 	switch {
@@ -129,6 +132,11 @@ func problem(err error) report.Problem {
 		return trackProblem(unreadable)
 	case errors.As(err, &setting):
 		return settingProblem(setting)
+	case errors.As(err, &missing):
+		key := strings.TrimSuffix(missing.Key+"."+missing.Axis, ".")
+		return settingProblem(&session.Error{Where: missing.Where, Key: key, Problem: missing.Problem, Hint: missing.Remedy})
+	case errors.As(err, &unfit):
+		return unfitProblem(unfit)
 	case errors.As(err, &text):
 		return withHint(report.Problem{Code: codeSettings, Status: StatusUsage}, text.Error())
 	case errors.As(err, &stored):
@@ -143,6 +151,14 @@ func trackProblem(e *track.Error) report.Problem {
 	p := report.Problem{Code: codeInput, Status: StatusInput, File: e.File, Line: e.Line, Column: e.Column, Message: e.What, Remedy: e.Remedy}
 	if e.Code == track.CodeSetting {
 		p.Code, p.Status = codeSettings, StatusUsage
+	}
+	return p
+}
+
+func unfitProblem(e *calib.DataError) report.Problem {
+	p := report.Problem{Code: codeInput, Status: StatusInput, File: e.Name, Message: e.Problem, Remedy: e.Remedy}
+	if e.Axis != "" {
+		p.Message = "axis " + e.Axis + ": " + e.Problem
 	}
 	return p
 }

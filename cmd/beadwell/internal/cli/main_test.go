@@ -41,7 +41,7 @@ func inventedWorld() World {
 // invented is a calibration that depends on the name of the recording alone:
 // "doubt" in it makes the routes disagree, "panic" panics, "slow" waits for the
 // end of ctx, "deaf" does not even look at it.
-func invented(ctx context.Context, r *track.Recording, set *session.Settings, adopt string) (*calib.Result, error) {
+func invented(ctx context.Context, r *track.Recording, set *session.Settings, opt calib.Options) (*calib.Result, error) {
 	switch {
 	case strings.Contains(r.Name, "panic"):
 		panic("an index out of range\x1b[2J")
@@ -56,7 +56,7 @@ func invented(ctx context.Context, r *track.Recording, set *session.Settings, ad
 		return nil, &session.Error{Key: "bead.diameter", Problem: "is not given, and has no default", Hint: "state it: --diameter '1.02(3) um'"}
 	}
 	result := &calib.Result{
-		Schema: calib.SchemaVersion,
+		Schema: calib.SchemaVersion, Program: opt.Program,
 		Input:  calib.Input{Name: r.Name, Bead: r.Bead, Size: r.Size, SHA256: r.SHA256},
 		ReadAs: calib.ReadAs{Line: r.ReadAs.String()},
 		Bead:   calib.Bead{Diameter: calib.Exact(diameter.Value.SI, "m"), Height: calib.Withheld("m", "far")},
@@ -69,7 +69,7 @@ func invented(ctx context.Context, r *track.Recording, set *session.Settings, ad
 		result.Findings = []calib.Finding{{Code: "routes-differ", Severity: calib.Bad, Text: "by 30 %", Remedy: "look at the bead"}}
 	}
 	for _, axis := range r.Axes {
-		result.Axes = append(result.Axes, inventedAxis(axis.Name, adopt))
+		result.Axes = append(result.Axes, inventedAxis(axis.Name, opt.Adopt))
 	}
 	return result, nil
 }

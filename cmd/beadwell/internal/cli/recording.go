@@ -34,7 +34,6 @@ type loaded struct {
 	path      string // as on the command line
 	recording *track.Recording
 	settings  *session.Settings
-	warnings  []string
 }
 
 // load reads the recordings of one file: one, or one for each bead in it.
@@ -59,9 +58,6 @@ func (s *source) load(ctx context.Context, path string) ([]loaded, error) {
 	for i, recording := range recordings {
 		all[i] = loaded{path: path, recording: recording}
 		if all[i].settings, err = s.merged(folder, path, recording.Bead, headerSettings(recording, before)); err != nil {
-			return nil, err
-		}
-		if all[i].warnings, err = contradictions(all[i].settings); err != nil {
 			return nil, err
 		}
 		if err := checkEffects(recording, all[i].settings); err != nil && !s.inspect {
@@ -195,18 +191,6 @@ func headerSettings(recording *track.Recording, before *session.Settings) *sessi
 		keep("recording.rate", "", strconv.FormatFloat(recording.Rate, 'g', -1, 64)+" Hz", recording.RateOrigin)
 	}
 	return header
-}
-
-// contradictions returns those that a flag overrides as warnings, and any
-// other as an error.
-func contradictions(settings *session.Settings) (warnings []string, err error) {
-	for _, c := range settings.Contradictions() {
-		if !c.Overridden {
-			return nil, &failure{status: StatusUsage, code: codeSettings, err: errors.New(c.Error())}
-		}
-		warnings = append(warnings, c.Error())
-	}
-	return warnings, nil
 }
 
 // settingsError gives an error of the settings its exit status. A settings

@@ -52,10 +52,8 @@ func (a *app) root() *cobra.Command {
 	root.SetHelpCommand(helpCommand(root))
 	root.PersistentPreRun = func(*cobra.Command, []string) { a.started = true }
 	root.CompletionOptions.HiddenDefaultCmd = false
-	if a.Calibrate != nil {
-		root.AddCommand(a.calibrateCommand(runCalibrate))
-	}
 	root.AddCommand(
+		a.calibrateCommand(runCalibrate),
 		a.checkCommand(runCheck),
 		a.initCommand(runInit),
 		a.reportCommand(runReport),

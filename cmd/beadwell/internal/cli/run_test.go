@@ -16,7 +16,9 @@ import (
 	"github.com/google/go-cmp/cmp/cmpopts"
 	"github.com/spf13/cobra"
 
+	"beadwell/calib"
 	"beadwell/calib/session"
+	"beadwell/calib/track"
 	"beadwell/cmd/beadwell/internal/report"
 )
 
@@ -82,6 +84,12 @@ func TestProblemOf(t *testing.T) {
 			report.Problem{Code: "settings", Status: 2, File: "a:b.toml", Line: 4, Column: 1, Message: "k is odd", Remedy: "even it"}},
 		{fmt.Errorf("reading: %w", context.Canceled), report.Problem{Code: "interrupted", Status: 130, Message: errInterrupted.Error()}},
 		{&report.ReadError{File: "r.json", Line: 2, Column: 3, What: "is cut"}, report.Problem{Code: "input", Status: 4, File: "r.json", Line: 2, Column: 3, Message: "is cut"}},
+		{&track.Error{File: "f", Code: track.CodeSetting, What: "no", Remedy: "yes"}, report.Problem{Code: "settings", Status: 2, File: "f", Message: "no", Remedy: "yes"}},
+		{&track.Errors{Places: []*track.Error{{File: "f", Line: 1, What: "a"}, {File: "f", Line: 2, What: "b"}}, More: 3}, report.Problem{Code: "input", Status: 4, File: "f", Line: 1, Message: "a",
+			Others: []report.Problem{{Code: "input", Status: 4, File: "f", Line: 2, Message: "b"}, {Code: "input", Status: 4, Message: "and 3 more"}}}},
+		{&calib.SettingError{Key: "k", Axis: "x", Where: "s:1:2", Problem: "is not", Remedy: "be"},
+			report.Problem{Code: "settings", Status: 2, File: "s", Line: 1, Column: 2, Message: "k.x is not", Remedy: "be"}},
+		{&calib.DataError{Name: "f", Axis: "x", Problem: "is short", Remedy: "more"}, report.Problem{Code: "input", Status: 4, File: "f", Message: "axis x: is short", Remedy: "more"}},
 		{errors.New("odd\n  hint: even"), report.Problem{Code: "internal", Status: 1, Message: "odd", Remedy: "even"}},
 		{partial([]error{errors.New("a")}, 3), report.Problem{Code: "partial", Status: 5, Message: "1 of 3 recordings failed",
 			Others: []report.Problem{{Code: "internal", Status: 1, Message: "a"}}}},
@@ -232,6 +240,35 @@ func checkWidth(t *testing.T, cmd *cobra.Command, text string) {
 	for line := range strings.Lines(text) {
 		if n := len([]rune(line)); n > 100 && cmd.Name() != "completion" {
 			t.Errorf("help of %s has a line of %d characters: %s", cmd.Name(), n, line)
+		}
+	}
+}
+
+// Several recordings tell their progress: a bar on a terminal, a line every
+// quarter of a minute elsewhere, nothing with --quiet or for one recording.
+func TestProgress(t *testing.T) {
+	for _, test := range []struct {
+		all            int
+		watched, quiet bool
+		want           string
+	}{
+		{4, false, false, "beadwell: 2 of 4 recordings done\n"},
+		{1, false, false, ""},
+		{1, true, false, ""},
+		{4, false, true, ""},
+		{4, true, true, ""},
+		{4, true, false, "recordings"},
+	} {
+		w, _, errs := testWorld("")
+		now := time.Unix(0, 0)
+		w.Now, w.Watched = func() time.Time { now = now.Add(9 * time.Second); return now }, test.watched
+		p := (&app{World: w}).newProgress(test.all, test.quiet)
+		for range test.all {
+			p.step()
+		}
+		p.end()
+		if got := errs.String(); test.want == "" && got != "" || !strings.Contains(got, test.want) {
+			t.Errorf("%+v: %q", test, got)
 		}
 	}
 }

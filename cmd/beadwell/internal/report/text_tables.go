@@ -60,17 +60,54 @@ func estimateRow(axis calib.Axis, title string, part func(calib.Quantity) *calib
 // dragUnit is the unit in which a drag coefficient is printed.
 const dragUnit = "nN s/m"
 
-// drag prints the measured against the computed drag, and the tests of equality.
+// drag prints the measured against the computed drag, and the tests of equality
+// that were made.
 func (p *printer) drag() {
+	tests := testsMade(p.result.Axes)
 	p.table(func(row func(...string)) {
-		row("drag, "+dragUnit, "computed", "measured", "ratio", "p, routes", "p, amplitudes", "p, all estimates")
+		titles := []string{"drag, " + dragUnit, "computed", "measured", "ratio"}
+		for _, test := range tests {
+			titles = append(titles, test.title)
+		}
+		row(titles...)
 		for _, axis := range p.result.Axes {
-			check := axis.CrossCheck
-			row(axis.Name, combined(axis.Drag, dragUnit), combined(axis.MeasuredDrag, dragUnit), combined(axis.DragRatio, "1"),
-				twoProbabilities(check.Routes), twoProbabilities(check.Amplitudes), twoProbabilities(check.Equality))
+			cells := []string{axis.Name, combined(axis.Drag, dragUnit), combined(axis.MeasuredDrag, dragUnit), combined(axis.DragRatio, "1")}
+			for _, test := range tests {
+				cells = append(cells, twoProbabilities(test.of(axis.CrossCheck)))
+			}
+			row(cells...)
 		}
 	})
-	p.WriteString("p-values: inputs taken as exact / with their stated uncertainties\n\n")
+	if len(tests) > 0 {
+		p.WriteString("p-values: inputs taken as exact / with their stated uncertainties\n")
+	}
+	p.WriteString("\n")
+}
+
+// equalityTest is one test of the cross-check and its column.
+type equalityTest struct {
+	title string
+	of    func(calib.CrossCheck) calib.Test
+}
+
+var equalityTests = []equalityTest{
+	{"p, routes", func(c calib.CrossCheck) calib.Test { return c.Routes }},
+	{"p, amplitudes", func(c calib.CrossCheck) calib.Test { return c.Amplitudes }},
+	{"p, all estimates", func(c calib.CrossCheck) calib.Test { return c.Equality }},
+}
+
+// testsMade returns the tests that any axis has a p-value of.
+func testsMade(axes []calib.Axis) []equalityTest {
+	var made []equalityTest
+	for _, test := range equalityTests {
+		for _, axis := range axes {
+			if t := test.of(axis.CrossCheck); t.PValue.Known() || t.PValueCombined.Known() {
+				made = append(made, test)
+				break
+			}
+		}
+	}
+	return made
 }
 
 func twoProbabilities(t calib.Test) string {

@@ -132,6 +132,14 @@ func TestNumber(t *testing.T) {
 	}
 }
 
+func TestProbability(t *testing.T) {
+	for p, want := range map[calib.Float]string{1: "1.0", 0.5412: "0.54", 0.7: "0.70", 0.0455: "0.045", 0.00123: "0.0012", 0.001: "0.001", 0.00099: "<0.001", 0: "<0.001", unknown: dash} {
+		if got := probability(p); got != want {
+			t.Errorf("probability(%v) = %q, want %q", p, got, want)
+		}
+	}
+}
+
 func TestPlain(t *testing.T) {
 	for in, want := range map[string]string{
 		"run 7 µm.csv": "run 7 µm.csv",
@@ -146,5 +154,20 @@ func TestPlain(t *testing.T) {
 		if got := Plain(in); got != want {
 			t.Errorf("Plain(%q) = %q, want %q", in, got, want)
 		}
+	}
+}
+
+// A test of equality that was made on no axis has no column.
+func TestTextLeavesOutTests(t *testing.T) {
+	r := storedSample()
+	for i := range r.Axes {
+		r.Axes[i].CrossCheck.Routes = calib.Test{PValue: unknown, PValueCombined: unknown}
+	}
+	var b bytes.Buffer
+	if err := Text(&b, r, TextOptions{}); err != nil {
+		t.Fatal(err)
+	}
+	if text := b.String(); strings.Contains(text, "p, routes") || strings.Contains(text, "p, amplitudes") || !strings.Contains(text, "p, all estimates") {
+		t.Errorf("Text = %s", text)
 	}
 }
