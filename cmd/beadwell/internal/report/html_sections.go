@@ -130,7 +130,7 @@ func settingsTable(r *calib.Result) table {
 		if s.Assumed {
 			from.Part = "assumed, for nobody stated it"
 		}
-		rows = append(rows, tableRow{Name: Plain(s.Key), Cells: []cellText{{Text: Plain(axis)}, {Text: value}, from, {Text: Plain(s.Where)}}})
+		rows = append(rows, tableRow{Name: Plain(s.Key), Cells: []cellText{{Text: Plain(axis)}, {Text: value}, from, {Text: orDash(s.Where)}}})
 	}
 	t.Groups = []rowGroup{{Rows: rows}}
 	return t
@@ -186,7 +186,7 @@ func heads(titles ...string) []cellText {
 func texts(values ...string) []cellText {
 	cells := make([]cellText, len(values))
 	for i, v := range values {
-		cells[i] = cellText{Text: Plain(v)}
+		cells[i] = cellText{Text: orDash(v)}
 	}
 	return cells
 }
