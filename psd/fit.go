@@ -121,7 +121,7 @@ func estimate(r *Record, opt Options) (*Fit, error) {
 	f.Corner = math.Exp(m.At[0]) * r.Rate
 	f.Variance = scale * math.Exp(m.At[1])
 	f.NoiseQ = scale * m.At[2]
-	f.Goodness = goodness(f)
+	f.Goodness = goodness(f, r)
 	return f, nil
 }
 

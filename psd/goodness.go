@@ -39,8 +39,8 @@ const mostPoints = 60
 // gamma distributed with its weight as shape; its cube root is turned into a normal
 // deviate, and the squares are added. As many degrees of freedom as parameters were
 // fitted are taken off.
-func goodness(f *Fit) Goodness {
-	g := Goodness{Points: group(f)}
+func goodness(f *Fit, r *Record) Goodness {
+	g := Goodness{Points: group(f, f.leakage(r))}
 	for _, p := range g.Points {
 		g.ChiSquare += p.Residual * p.Residual
 	}
@@ -56,9 +56,19 @@ func goodness(f *Fit) Goodness {
 	return g
 }
 
-func group(f *Fit) []Point {
+// leakage returns the share by which the relaxing part of the periodogram exceeds the spectrum,
+// given the ends of the record.
+func (f *Fit) leakage(r *Record) float64 {
+	if _, plain := f.Problem.Likelihood.(interface{ RelaxationProcess() }); !plain {
+		return 0
+	}
+	return f.Process().EndExcess(r.X) / float64(len(r.X))
+}
+
+func group(f *Fit, leakage float64) []Point {
 	b := f.Blocks
 	model := f.modelAt
+	floor := f.Process().Floor()
 	first, last := b.Frequency[0], b.Frequency[len(b.Frequency)-1]
 	growth := math.Pow(last/first*1.0001, 1.0/mostPoints)
 	var points []Point
@@ -87,7 +97,11 @@ func group(f *Fit) []Point {
 		}
 		weight += w
 		freq += w * b.Frequency[i]
-		ratio += w * b.Power[i] / f.modelBlock(i)
+		m := f.modelBlock(i)
+		if leakage != 0 {
+			m += leakage * (m - floor)
+		}
+		ratio += w * b.Power[i] / m
 		bins += b.Bins[i]
 	}
 	if weight < leastWeight && len(points) > 0 { // too small a rest is not tested

@@ -105,3 +105,30 @@ func (e ends) logRatio(sh shape, v, q float64) (value float64, ok bool) {
 	logE := -quad/2 - math.Log(det)/2 - math.Log1p(-sh.c*sh.c)/2
 	return -logE, true
 }
+
+// EndExcess returns how much the step from the last sample of a record back to its
+// first exceeds a step of the process: the squared innovation over its variance, less one. The
+// periodogram takes the record for a ring; the relaxing part of its expectation, given the
+// two ends, is (1 + EndExcess/N) times the spectrum, which is the leakage of the record. x [m] has mean and
+// drift removed; NaN within the ends gives 0.
+func (p Process) EndExcess(x []float64) float64 {
+	b, _ := BlurCovariance(2 * math.Pi * p.Corner * p.Exposure)
+	c, vb := p.Decay(), p.Variance*b
+	f := stationary(c, vb, p.RecordedVariance()-vb)
+	e := newEnds(x)
+	d := f.average(e.head) - c*f.average(e.tail)
+	link := vb * (1 - c*c)
+	// the filtered states are uncertain: their variance is part of the squared step
+	excess := (d*d+f.variance*(1+c*c))/link - 1
+	if !f.ok || math.IsNaN(excess) {
+		return 0
+	}
+	return excess
+}
+
+// Floor returns the part of P/dt [m2] that does not depend on frequency: noise, less
+// what the exposure takes from neighbouring samples' correlation.
+func (p Process) Floor() float64 {
+	b, _ := BlurCovariance(2 * math.Pi * p.Corner * p.Exposure)
+	return p.RecordedVariance() - p.Variance*b
+}

@@ -36,6 +36,9 @@ func NewExact(x []float64, removed Removed, restrict bool, exposure, scale float
 // Scale returns the unit of variance [m2].
 func (e *Exact) Scale() float64 { return e.scale }
 
+// RelaxationProcess marks the likelihoods of the relaxation process itself.
+func (e *Exact) RelaxationProcess() {}
+
 // Value returns the log-likelihood.
 func (e *Exact) Value(p Parameters) float64 {
 	if !inDomain(p) {

@@ -65,6 +65,9 @@ func NewSpectral(b Blocks, x []float64, exposure, scale float64) *Spectral {
 // Scale returns the unit of variance [m2].
 func (s *Spectral) Scale() float64 { return s.scale }
 
+// RelaxationProcess marks the likelihoods of the relaxation process itself.
+func (s *Spectral) RelaxationProcess() {}
+
 // Blocks returns the blocked periodogram behind the likelihood.
 func (s *Spectral) Blocks() Blocks { return s.blocks }
 
