@@ -41,8 +41,10 @@ type resolution struct {
 
 const timeRemedy = "repair the stamps, or leave out the time column and state the rate (--rate) if the samples are known to be evenly spaced"
 
-// fitGrid finds the regular grid of the stamps t [s].
-func fitGrid(t []float64, written resolution) (grid, *gridFault) {
+// fitGrid finds the regular grid of the stamps t [s]. Steps of one and of two
+// units of rounding can come from rounding or from lost rows; likely, the rate
+// that is expected [Hz], decides, and without one (0) such stamps are refused.
+func fitGrid(t []float64, written resolution, likely float64) (grid, *gridFault) {
 	for i, v := range t {
 		if v != v {
 			return grid{}, &gridFault{i, "the time is missing", "complete the time, or remove the row"}
@@ -55,8 +57,16 @@ func fitGrid(t []float64, written resolution) (grid, *gridFault) {
 		return g, nil
 	}
 	if g.interval > 0 && g.isRounded(t, written) {
-		g.samples, g.rounded = len(t), true
-		return g, nil
+		ratio := g.interval / written.step
+		doubtful := ratio > 1.001 && ratio < 1.999 && g.max <= 0.55*written.step
+		if doubtful && likely == 0 {
+			return g, &gridFault{1, fmt.Sprintf("the stamps are rounded to %s: their uneven steps can be rounding (%.6g Hz) or lost rows (%.6g Hz)", seconds(written.step), 1/g.interval, 1/written.step),
+				"state the rate (--rate), or export the time with more digits"}
+		}
+		if !doubtful || math.Abs(likely*g.interval-1) < math.Abs(likely*written.step-1) {
+			g.samples, g.rounded = len(t), true
+			return g, nil
+		}
 	}
 	for i := 1; i < len(t); i++ {
 		switch {

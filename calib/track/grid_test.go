@@ -30,7 +30,7 @@ func TestGridOfRoundedStamps(t *testing.T) {
 		{123.456, 0, 20000, 4}, // odd rate
 	} {
 		q := math.Pow(10, -float64(c.decimals))
-		g, fault := fitGrid(stampsAt(c.n, c.rate, c.start, c.decimals), resolution{step: q})
+		g, fault := fitGrid(stampsAt(c.n, c.rate, c.start, c.decimals), resolution{step: q}, c.rate)
 		if fault != nil {
 			t.Errorf("%v Hz with %d decimals: %s", c.rate, c.decimals, fault.what)
 			continue
@@ -58,7 +58,7 @@ func TestGridOfSinglePrecision(t *testing.T) {
 			if digits > 0 {
 				written.step = 1e-5 // nine digits of 5000.00049
 			}
-			g, fault := fitGrid(stamps, written)
+			g, fault := fitGrid(stamps, written, 0)
 			if fault != nil {
 				t.Fatalf("start %v: %s", start, fault.what)
 			}
@@ -88,7 +88,7 @@ func TestGridFindsGaps(t *testing.T) {
 			stamps = append(stamps, start+(float64(i)+0.03*rng.NormFloat64())/rate)
 			want = append(want, i)
 		}
-		g, fault := fitGrid(stamps, resolution{})
+		g, fault := fitGrid(stamps, resolution{}, 0)
 		if fault != nil {
 			t.Fatalf("trial %d, %.0f %% lost: row %d: %s", trial, 100*loss, fault.row, fault.what)
 		}
@@ -134,9 +134,9 @@ func TestGridRefuses(t *testing.T) {
 		}), -1, "uneven"},
 		{"constant", make([]float64, 10), 1, "twice"},
 	} {
-		_, fault := fitGrid(c.stamps, resolution{step: 1e-3})
+		_, fault := fitGrid(c.stamps, resolution{step: 1e-3}, 0)
 		if c.name == "jitter" || c.name == "half a step" {
-			_, fault = fitGrid(c.stamps, resolution{step: 1e-6})
+			_, fault = fitGrid(c.stamps, resolution{step: 1e-6}, 0)
 		}
 		if fault == nil {
 			t.Errorf("%s: accepted", c.name)
@@ -145,6 +145,25 @@ func TestGridRefuses(t *testing.T) {
 		if c.row >= 0 && fault.row != c.row || !strings.Contains(fault.what, c.words) || fault.remedy == "" {
 			t.Errorf("%s: row %d: %s; want row %d and %q", c.name, fault.row, fault.what, c.row, c.words)
 		}
+	}
+}
+
+// Every tenth row lost at 1 kHz and a rate of 900 Hz look the same in stamps of
+// whole milliseconds: only the expected rate tells them apart.
+func TestRoundingOrLoss(t *testing.T) {
+	stamps := stampsAt(900, 900, 0, 3)
+	if _, fault := fitGrid(stamps, resolution{step: 1e-3}, 0); fault == nil || !strings.Contains(fault.what, "lost rows") {
+		t.Errorf("without a rate: %v, want a refusal", fault)
+	}
+	for rate, samples := range map[float64]int{900: 900, 1000: 1000} {
+		g, fault := fitGrid(stamps, resolution{step: 1e-3}, rate)
+		if fault != nil || g.samples != samples || math.Abs(g.interval*rate-1) > 1e-4 {
+			t.Errorf("expecting %v Hz: %d samples at %v Hz, %v; want %d", rate, g.samples, 1/g.interval, fault, samples)
+		}
+	}
+	// Repeated stamps cannot be lost rows.
+	if _, fault := fitGrid(stampsAt(900, 1500, 0, 3), resolution{step: 1e-3}, 0); fault != nil {
+		t.Errorf("1500 Hz in whole milliseconds: %s", fault.what)
 	}
 }
 

@@ -100,6 +100,12 @@ func (lay *layout) findMark(name string, v *view, wanted string) error {
 		return nil
 	}
 	const remedy = "state the decimal mark (--decimal point or comma)"
+	// One mark in twenty or fewer is a slip: its cell is refused at its place.
+	if few := (m.point + m.comma) / 20; m.point <= few {
+		m.point = 0
+	} else if m.comma <= few {
+		m.comma = 0
+	}
 	switch {
 	case m.point > 0 && m.comma > 0:
 		return &Error{File: name, Line: m.commaAt.line, Column: m.commaAt.column, Code: CodeLayout,

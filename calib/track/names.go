@@ -57,7 +57,7 @@ var (
 	axisExtras   = words("position positions pos posn coord coordinate coordinates displacement disp centre center centroid location loc signal deflection axis trap lage ort auslenkung koordinate posición posicion posizione позиция координата 位置 坐标 座標 position_ measured voltage volt volts qpd psd det detector diff value values ch channel of the data com gravity subpixel")
 	axisJoined   = map[string]byte{"xpos": 'x', "ypos": 'y', "zpos": 'z', "posx": 'x', "posy": 'y', "posz": 'z', "xcoord": 'x', "ycoord": 'y', "zcoord": 'z',
 		"xposition": 'x', "yposition": 'y', "zposition": 'z', "positionx": 'x', "positiony": 'y', "positionz": 'z', "xdata": 'x', "ydata": 'y', "zdata": 'z',
-		"xc": 'x', "yc": 'y', "zc": 'z', "xcenter": 'x', "ycenter": 'y', "zcenter": 'z', "xcentre": 'x', "ycentre": 'y', "zcentre": 'z'}
+		"xc": 'x', "yc": 'y', "zc": 'z', "xcenter": 'x', "ycenter": 'y', "zcenter": 'z', "xcentre": 'x', "ycentre": 'y', "zcentre": 'z', "х": 'x', "у": 'y'}
 	axisAlone = words("position displacement deflection auslenkung ort lage")
 )
 
@@ -162,7 +162,7 @@ func (c *columnInfo) understand() {
 	}
 	digits := words("0 1 2 3 4 5 6 7 8 9")
 	switch {
-	case has(timeWords) && only(timeWords, timeExtras, dateWords):
+	case has(timeWords) && only(timeWords, timeExtras, dateWords, digits):
 		c.role = timeRole
 	case has(dateWords) && only(dateWords, timeExtras):
 		c.role = dateRole

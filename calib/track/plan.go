@@ -248,12 +248,13 @@ func (p *plan) names(list []int) string {
 func (p *plan) recogniseAxes() error {
 	var axes []int
 	for k, c := range p.columns {
-		if c.role == axisRole && c.numeric {
+		// A named axis that holds text is read all the same: every cell is an error.
+		if c.role == axisRole && !c.empty {
 			axes = append(axes, k)
 		}
 	}
 	for _, c := range p.columns {
-		if c.role == axisRole && !c.numeric {
+		if c.role == axisRole && c.empty {
 			p.notes = note(p.notes, "axis-left-out", "column %s is left out: it holds no numbers", quoted(c.header))
 		}
 	}

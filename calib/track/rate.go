@@ -49,7 +49,7 @@ func (tab *table) grid(rec *Recording, g group, rows int, opt Options) (grid, er
 			fitted, fault = fitFrames(t)
 			break
 		}
-		fitted, fault = fitGrid(t, tab.written)
+		fitted, fault = fitGrid(t, tab.written, tab.likelyRate(g, opt))
 		if fault == nil {
 			tab.takeRate(rec, &fitted)
 		}
@@ -66,6 +66,31 @@ func (tab *table) grid(rec *Recording, g group, rows int, opt Options) (grid, er
 	}
 	tab.noteGrid(rec, &fitted)
 	return fitted, nil
+}
+
+// likelyRate is the rate [Hz] that decides between rounded stamps and lost rows
+// where the stamps of one bead leave both open: a stated one, or that of another
+// bead of the file; 0 when there is none.
+func (tab *table) likelyRate(g group, opt Options) float64 {
+	switch {
+	case opt.Rate > 0:
+		return opt.Rate
+	case tab.pre.rate > 0 || g.rows == nil:
+		return tab.pre.rate
+	case tab.rate > 0:
+		return tab.rate
+	}
+	all, err := tab.groups(Options{})
+	for _, other := range all {
+		if err != nil || len(other.rows) < 2 {
+			continue
+		}
+		if fitted, fault := fitGrid(tab.stamps(other), tab.written, 0); fault == nil {
+			tab.rate = 1 / fitted.interval
+			break
+		}
+	}
+	return tab.rate
 }
 
 // stamps returns the times of a group [s]: one column, or date plus time of day.
@@ -144,11 +169,18 @@ func (tab *table) checkTimeUnit(rec *Recording, t []float64, opt Options) (frame
 func (tab *table) takeRate(rec *Recording, g *grid) {
 	rate := 1 / g.interval
 	rec.RateU = g.slopeU / (g.interval * g.interval)
-	// Nine digits, where the true digits beyond are the rounding of the stamps.
-	if text, err := strconv.ParseFloat(strconv.FormatFloat(rate, 'e', 8, 64), 64); err == nil && math.Abs(text-rate) <= max(1e-10*rate, 2*rec.RateU) {
-		rate = text
+	// Digits that the rounding of the stamps made up are left out.
+	for digits := 4; digits <= 9; digits++ {
+		short, err := strconv.ParseFloat(strconv.FormatFloat(rate, 'e', digits-1, 64), 64)
+		if err == nil && math.Abs(short-rate) <= max(1e-10*rate, min(rec.RateU, 1e-6*rate)) {
+			rate = short
+			break
+		}
 	}
 	rec.Rate, rec.RateOrigin, rec.Start = rate, "time column", g.start
+	if math.Abs(rec.Start) < 1e-9*g.interval {
+		rec.Start = 0
+	}
 }
 
 // settleRate weighs the rates from the stamps, the preamble and the setting.

@@ -16,6 +16,7 @@ type table struct {
 	shifted bool // columns are in SI units already (text); otherwise in file units (npy)
 	written resolution
 	pre     preamble
+	rate    float64              // of a bead whose stamps leave no doubt, for the others [Hz]; 0 until needed
 	undated bool                 // the time is a time of day without a date
 	place   func(row int) *Error // position of a row's time stamp in the file
 	readAs  ReadAs
