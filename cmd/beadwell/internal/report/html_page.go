@@ -7,7 +7,6 @@ import (
 	"strings"
 
 	"beadwell/calib"
-	"beadwell/calib/quantity"
 	"beadwell/cmd/beadwell/internal/figure"
 )
 
@@ -156,21 +155,6 @@ func findingOf(f calib.Finding) shownFinding {
 		shown.Caution = laserCaution
 	}
 	return shown
-}
-
-// readable gives SI units the one that a reader expects.
-var readable = map[string]string{"m": "nm", "N/m": stiffnessUnit, "N s/m": dragUnit, "Pa s": "mPa s", "K": "K", "m2": "nm2", "m2/s": "um2/s"}
-
-// inOwnUnit prints a number in the reader's unit, or as it stands when the unit
-// is not known to the program.
-func inOwnUnit(v calib.Float, unit string) string {
-	if u, ok := readable[unit]; ok {
-		return plainNumber(v, u)
-	}
-	if _, err := quantity.Convert(float64(v), unit); err != nil {
-		return strings.TrimSpace(fmt.Sprintf("%.4g %s", float64(v), unit))
-	}
-	return plainNumber(v, unit)
 }
 
 // figureGroups puts the estimates first, and then the figures of each axis

@@ -78,9 +78,9 @@ func budgetNotes(r *calib.Result) []string {
 
 // readSection tells how the file was understood.
 func readSection(r *calib.Result) section {
-	s := section{ID: "reading", Title: "How the file was read", Paragraphs: []string{typeset(r.ReadAs.Line)}}
+	s := section{ID: "reading", Title: "How the file was read", Paragraphs: []string{Plain(r.ReadAs.Line)}}
 	for _, note := range r.ReadAs.Notes {
-		s.Paragraphs = append(s.Paragraphs, typeset(note))
+		s.Paragraphs = append(s.Paragraphs, Plain(note))
 	}
 	rec := r.Recording
 	s.Facts = []fact{
@@ -88,8 +88,8 @@ func readSection(r *calib.Result) section {
 		{Term: "Samples", Text: fmt.Sprintf("%d, of which %d missing", rec.Samples, rec.Missing)},
 		{Term: "Duration", Text: plainNumber(rec.Duration, "s")},
 		{Term: "Exposure", Text: typeset(plainNumber(rec.Exposure, "ms"))},
-		{Term: "Jitter of the time stamps", Text: typeset(plainNumber(rec.Jitter, "us"))},
-		{Term: "First time stamp", Text: plainNumber(rec.Start, "s")},
+		{Term: "Jitter of the time stamps", Text: moment(rec.Jitter, "us")},
+		{Term: "First time stamp", Text: moment(rec.Start, "s")},
 	}
 	t := table{Caption: "Columns of the file", Head: heads("header", "used as", "unit")}
 	var rows []tableRow
@@ -125,7 +125,7 @@ func settingsTable(r *calib.Result) table {
 		if axis == "" {
 			axis = "all"
 		}
-		value := typeset(settingText(s))
+		value := Plain(settingText(s)) // as it was given, to be copied
 		from := cellText{Text: Plain(s.Origin)}
 		if s.Assumed {
 			from.Part = "assumed, for nobody stated it"

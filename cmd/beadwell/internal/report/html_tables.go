@@ -52,7 +52,7 @@ func quantityCell(q calib.Quantity, unit string) cellText {
 }
 
 func numberRow(r *calib.Result, name, unit string, f func(calib.Axis) calib.Float) tableRow {
-	return rowOf(r, name, func(a calib.Axis) cellText { return cellText{Text: typeset(bare(plainNumber(f(a), unit), unit))} })
+	return rowOf(r, name, func(a calib.Axis) cellText { return cellText{Text: typeset(bare(rounded(f(a), 5, unit), unit))} })
 }
 
 // estimatesTable puts the stiffness estimates side by side, the routes apart.
@@ -128,14 +128,6 @@ func agreementTable(r *calib.Result) table {
 		rowOf(r, "in words", func(a calib.Axis) cellText { return cellText{Text: typeset(orDash(a.CrossCheck.Text))} }),
 	}
 	return perAxis(r, "Do the estimates agree? p-values with the stated uncertainties of the inputs; a small one speaks against it", "hypothesis", rowGroup{Rows: rows})
-}
-
-// percent prints a relative number.
-func percent(f calib.Float) string {
-	if !f.Known() {
-		return dash
-	}
-	return typeset(fmt.Sprintf("%.2g %%", 100*float64(f)))
 }
 
 // dragTable compares the drag that was measured with the one that was computed.

@@ -302,6 +302,20 @@ func TestBudgetRow(t *testing.T) {
 	}
 }
 
+func TestNumbersForReaders(t *testing.T) {
+	for _, c := range []struct{ got, want string }{
+		{percent(0.999), "100\u00a0%"}, {percent(0.0138), "1.4\u00a0%"}, {percent(-0.155), "−16\u00a0%"}, {percent(1.9e-9), "below 0.01\u00a0%"},
+		{percent(0), "0\u00a0%"}, {percent(unknown), "-"},
+		{inOwnUnit(0.0467773, "1"), "0.0468"}, {inOwnUnit(12.3456e-9, "m"), "12.3 nm"}, {inOwnUnit(2.3456, "sigma"), "2.35 sigma"},
+		{rounded(1.050139, 5, "1"), "1.0501"}, {rounded(unknown, 5, "1"), "-"},
+		{moment(-8e-15, "s"), "0\u00a0s"}, {moment(2.5e-6, "us"), "2.5\u00a0µs"},
+	} {
+		if c.got != c.want {
+			t.Errorf("got %q, want %q", c.got, c.want)
+		}
+	}
+}
+
 // fullDevice is a writer to a full device.
 type fullDevice struct{}
 
