@@ -1,0 +1,129 @@
+package msd
+
+import (
+	"math"
+
+	"beadwell/calib/transform"
+)
+
+// Choice of lags. The longest lag sets the efficiency of the plateau: 0.75, 0.90 and
+// 0.96 of the Cramer-Rao bound at 6, 20 and 60 relaxation times (computed with
+// Covariance). A quarter of the record is the limit beyond which the ends of
+// the record matter to the covariance.
+const (
+	longestRelaxations = 60
+	longestShare       = 0.25
+	shortestRelaxation = 0.002 // first lag, in relaxation times; 1 sample if that is longer
+	perDecade          = 14
+	fewestLags         = 24
+)
+
+// Lags returns the lags [samples], ascending, at which a record of n samples with the
+// relaxation time tau [samples] is fitted.
+func Lags(n int, tau float64) []int {
+	last := int(math.Min(longestShare*float64(n), math.Max(longestRelaxations*tau, fewestLags)))
+	last = max(last, min(3, n-1))
+	first := max(1, int(shortestRelaxation*tau))
+	lags := []int{}
+	if first > 1 {
+		lags = append(lags, 1)
+	}
+	growth := math.Pow(10, 1.0/perDecade)
+	if ratio := float64(last) / float64(first); math.Log(ratio)/math.Log(growth) < fewestLags && ratio > 1 {
+		growth = math.Pow(ratio, 1.0/fewestLags)
+	}
+	next := float64(first)
+	for lag := first; lag <= last; {
+		lags = append(lags, lag)
+		next = math.Max(next*growth, float64(lag+1))
+		lag = int(math.Round(next))
+	}
+	if lags[len(lags)-1] < last {
+		lags = append(lags, last)
+	}
+	return lags
+}
+
+// Displacements returns the mean-square displacements [m2] of x [m] (mean removed, NaN
+// where missing) at the lags, and the number of pairs behind each.
+func Displacements(x []float64, missing bool, lags []int) (msd []float64, pairs []int) {
+	msd, pairs = make([]float64, len(lags)), make([]int, len(lags))
+	if missing {
+		for i, lag := range lags {
+			msd[i], pairs[i] = direct(x, lag)
+		}
+		return msd, pairs
+	}
+	// A lag is worth a pass of its own while the increments are small against the
+	// positions: there the sums of products would cancel. All others come from
+	// one set of autocovariance sums.
+	last := lags[len(lags)-1]
+	var products []float64
+	head := prefixSquares(x, last)
+	tail := suffixSquares(x, last)
+	total := head.total
+	for i, lag := range lags {
+		pairs[i] = len(x) - lag
+		if lag <= closeLag {
+			msd[i], _ = direct(x, lag)
+			continue
+		}
+		if products == nil {
+			products = transform.Autocovariance(x, last)
+		}
+		msd[i] = (2*total - head.at(lag) - tail.at(lag) - 2*products[lag]) / float64(pairs[i])
+	}
+	return msd, pairs
+}
+
+// closeLag is the longest lag that is summed pair by pair.
+const closeLag = 3
+
+func direct(x []float64, lag int) (float64, int) {
+	var s0, s1 float64
+	n := 0
+	a, b := x[:len(x)-lag], x[lag:]
+	for i, v := range a {
+		d := b[i] - v
+		if d != d {
+			continue
+		}
+		n++
+		if i&1 == 0 {
+			s0 += d * d
+		} else {
+			s1 += d * d
+		}
+	}
+	return (s0 + s1) / float64(max(n, 1)), n
+}
+
+// squares holds cumulated squares of the first samples from one end.
+type squares struct {
+	sums  []float64
+	total float64
+}
+
+func (s squares) at(n int) float64 { return s.sums[n] }
+
+func prefixSquares(x []float64, last int) squares {
+	s := squares{sums: make([]float64, last+1)}
+	sum := 0.0
+	for i, v := range x {
+		if i <= last {
+			s.sums[i] = sum
+		}
+		sum += v * v
+	}
+	s.total = sum
+	return s
+}
+
+func suffixSquares(x []float64, last int) squares {
+	s := squares{sums: make([]float64, last+1)}
+	for k := 1; k <= last; k++ {
+		v := x[len(x)-k]
+		s.sums[k] = s.sums[k-1] + v*v
+	}
+	return s
+}
