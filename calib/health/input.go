@@ -1,0 +1,73 @@
+package health
+
+import (
+	"fmt"
+
+	"beadwell/calib/relaxation"
+)
+
+// Input is a recording with what a fit has found out about it. All slices are read only.
+type Input struct {
+	Axes       []Axis
+	Rate       float64 // sampling rate [Hz]
+	Exposure   float64 // exposure of each sample [s]
+	Missing    int     // samples that are missing on every axis
+	Duplicates int     // samples that came twice and were left out by the reader
+	JitterRMS  float64 // root mean square of the time stamps about even sampling [s]; NaN or 0 without stamps
+}
+
+// Axis is one coordinate. All axes have the same number of samples.
+type Axis struct {
+	Name      string
+	Unit      string             // of X; empty is m. Process, Lines and texts use the same
+	X         []float64          // positions [m], the mean included; NaN is a missing sample
+	Process   relaxation.Process // the fitted process
+	Known     bool               // Process holds a fit; false when none could be made
+	CornerSD  float64            // standard uncertainty of ln(Process.Corner) from the fit; 0: not given
+	Lines     []Line             // narrow lines that the fit has removed
+	GoodnessP float64            // p-value of the fitted spectrum; NaN, or 0 with Known false, when there is none
+}
+
+// Line is a narrow line in the spectrum.
+type Line struct {
+	Frequency float64 // [Hz]
+	Amplitude float64 // half of the peak-to-peak excursion [m]
+}
+
+// Level is the outcome of a check.
+type Level int
+
+const (
+	OK       Level = iota // nothing to worry about, or not judged
+	Doubtful              // usable with the caution that the text gives
+	Bad                   // not to be trusted as it stands
+)
+
+// String returns "ok", "doubtful" or "bad".
+func (l Level) String() string {
+	switch l {
+	case OK:
+		return "ok"
+	case Doubtful:
+		return "doubtful"
+	case Bad:
+		return "bad"
+	}
+	return fmt.Sprintf("Level(%d)", int(l))
+}
+
+// Check is the outcome of one check.
+type Check struct {
+	Code      string       // stable word for programs, see Codes
+	Name      string       // a few words for a table
+	Axis      string       // name of the axis, two names joined by "-" for a pair, empty for the recording
+	Level     Level        //
+	Judged    bool         // false: the check could not be made; Text says why
+	Value     float64      // the number that was judged; NaN when there is none
+	Threshold float64      // the value at which it becomes doubtful; NaN when there is none
+	Unit      string       // of Value and Threshold; "1" for a ratio
+	Text      string       // what was found
+	Reason    string       // why it matters
+	Remedy    string       // what to do; empty when Level is OK
+	Ranges    [][2]float64 // where in the record, from and to [s]; nil: everywhere or nowhere in particular
+}

@@ -1,0 +1,167 @@
+package health
+
+import (
+	"math"
+
+	"beadwell/calib/relaxation"
+)
+
+// Run makes every check, those of the recording first, then those of each axis, then
+// those of each pair of axes, in a fixed order: the order of Codes within each
+// group. Checks that find nothing are returned too, with the level OK. The same
+// input gives the same result to the last bit.
+//
+// It does not modify the input. Axes of different lengths are a caller's error
+// and panic.
+func Run(in Input) []Check {
+	for _, a := range in.Axes {
+		if len(a.X) != len(in.Axes[0].X) {
+			panic("health: axes of different lengths")
+		}
+	}
+	checks := in.clock()
+	views := make([]*view, len(in.Axes))
+	for i, a := range in.Axes {
+		views[i] = newView(in, a)
+		checks = append(checks, views[i].checks()...)
+	}
+	for i := range views {
+		for j := i + 1; j < len(views); j++ {
+			checks = append(checks, crossTalk(in, views[i], views[j], len(views)))
+		}
+	}
+	return checks
+}
+
+// view is one axis with what the passes over it have found. Positions are in units
+// of the scale about the centre unless their comment says otherwise.
+type view struct {
+	Axis
+	summary
+	rate     float64 // [Hz]
+	exposure float64 // [s]
+	h        null
+	values   values
+	line     line
+	rms      float64 // standard deviation of the samples by the null hypothesis [unit of X]
+	mean     meanFindings
+	spell    spell
+	per      int     // fine blocks in one block of the spell
+	escapeAt int     // fine block, -1 when there is none
+	beyond   float64 // farthest position from the beginning of the record, in standard deviations of that
+}
+
+// newView reads an axis and makes the decisions that several checks share.
+func newView(in Input, a Axis) *view {
+	v := &view{Axis: a, summary: summarise(a.X), rate: in.Rate, exposure: in.Exposure, escapeAt: -1}
+	v.values = survey(a.X, v.summary)
+	n := int(v.total.n)
+	if a.Known {
+		v.h = newNull(a.Process, n, len(a.X))
+	}
+	if !a.Known || !v.h.usable() {
+		v.Known = false
+		v.h = newNull(v.rough(), n, len(a.X))
+	}
+	v.line = fitLine(points(v.blocks, v.length, v.samples))
+	v.rms = math.Sqrt(v.h.r0)
+	if !v.judgeable() {
+		return v
+	}
+	at, beyond, ok := escaped(v.blocks)
+	if v.beyond = beyond; ok {
+		v.escapeAt = at
+	}
+	coarse, per := v.joined(128)
+	v.per = per
+	v.spell = loudest(coarse, v.h, math.Max(8*v.h.memory(), 16))
+	v.mean = v.judgeMean()
+	return v
+}
+
+// judgeable tells whether there are enough samples that move for any statistics.
+func (v *view) judgeable() bool { return v.total.n >= 64 && v.h.usable() }
+
+// rough returns a process that was not fitted: the variance of the samples about
+// their mean, and the memory that makes the scatter of the means of 64 blocks, from their
+// successive differences so that drift does not count.
+func (v *view) rough() relaxation.Process {
+	const blocks = 64
+	coarse, _ := v.joined(blocks)
+	r0 := v.total.variance()
+	var d2, count, n float64
+	for i := 1; i < len(coarse); i++ {
+		if coarse[i].n == 0 || coarse[i-1].n == 0 {
+			continue
+		}
+		d := coarse[i].mean() - coarse[i-1].mean()
+		d2 += d * d / 2
+		n += coarse[i].n
+		count++
+	}
+	dt := 1 / v.rate
+	p := relaxation.Process{Interval: dt, Variance: r0 * v.scale * v.scale, Corner: 1 / dt}
+	if count > 0 && r0 > 0 {
+		// (1+c)/(1-c) is the long-run variance over r0; at least 1, as for white samples
+		k := math.Max(d2/count*(n/count)/r0, 1.0001)
+		p.Corner = -math.Log((k-1)/(k+1)) / (2 * math.Pi * dt)
+	}
+	return p
+}
+
+// second returns the time in the record of a sample [s].
+func (v *view) second(sample float64) float64 { return sample / v.rate }
+
+// duration returns the length of the record [s].
+func (v *view) duration() float64 { return float64(v.samples) / v.rate }
+
+// upset names what has happened to the bead that keeps the record from being one
+// process, or returns an empty string. Checks that would only see the same event
+// once more are not made then.
+func (v *view) upset() string {
+	switch {
+	case v.escapeAt >= 0:
+		return "the bead escaped"
+	case v.stuck().found:
+		return "the bead was held fast for a while"
+	case v.mean.jump:
+		return "the position jumped"
+	case v.mean.wander && v.mean.wanderRMS > wanderBad:
+		return "the position wandered"
+	}
+	return ""
+}
+
+// check starts the outcome of a check on an axis.
+func (v *view) check(code string) Check {
+	c := start(code)
+	c.Axis = v.Name
+	return c
+}
+
+// start returns an outcome that is OK and judged.
+func start(code string) Check {
+	e := explained(code)
+	return Check{Code: code, Name: e.Title, Judged: true, Value: math.NaN(), Threshold: math.NaN(), Unit: e.unit, Reason: e.reason}
+}
+
+// spared marks a check as not made.
+func (c Check) spared(why string) Check {
+	c.Level, c.Judged, c.Text = OK, false, "Not judged: "+why+"."
+	return c
+}
+
+// checks makes all checks of the axis.
+func (v *view) checks() []Check {
+	made := []func(*view) Check{
+		(*view).rail, (*view).coarse, (*view).frozenSamples,
+		(*view).escape, (*view).held, (*view).jump, (*view).drift, (*view).slowWander, (*view).unsteady,
+		(*view).roughSteps, (*view).distribution, (*view).tone,
+		(*view).short, (*view).blurred, (*view).slow, (*view).misfit,
+	}
+	out := make([]Check, 0, len(made))
+	for _, f := range made {
+		out = append(out, f(v))
+	}
+	return out
+}

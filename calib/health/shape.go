@@ -1,0 +1,141 @@
+package health
+
+import (
+	"fmt"
+	"math"
+)
+
+const (
+	kurtosisDoubtful = 0.06 // excess kurtosis; the stiffness of a quartic trap is then off by 3 %
+	kurtosisBad      = 0.8  // 40 %
+	skewDoubtful     = 0.08
+	skewBad          = 0.6
+)
+
+// moments returns skewness and excess kurtosis of the positions about the fitted
+// line, and step.
+func (v *view) moments() (skew, excess float64) {
+	var n, m2, m3, m4 float64
+	for i, b := range v.blocks {
+		if b.n == 0 {
+			continue
+		}
+		mid := math.Min((float64(i)+0.5)*float64(v.length), float64(v.samples))
+		t := mid/float64(v.samples) - 0.5
+		a := v.line.at(t)
+		n += b.n
+		m2 += b.s2 - 2*a*b.s1 + a*a*b.n
+		m3 += b.s3 - 3*a*b.s2 + 3*a*a*b.s1 - a*a*a*b.n
+		m4 += b.s4 - 4*a*b.s3 + 6*a*a*b.s2 - 4*a*a*a*b.s1 + a*a*a*a*b.n
+	}
+	m2, m3, m4 = m2/n, m3/n, m4/n
+	if m2 <= 0 {
+		return 0, 0
+	}
+	return m3 / math.Pow(m2, 1.5), m4/(m2*m2) - 3
+}
+
+// distribution compares the histogram of the positions with a Gaussian by its
+// skewness and kurtosis.
+//
+// Blur and noise of a harmonic trap leave the positions Gaussian. In the potential
+// kT(u^2/2 + e u^4/4), u = x/sqrt(V), the variance is V(1 - 3e) and the excess kurtosis
+// -6e, to first order: the stiffness at the centre is wrong by half the kurtosis.
+func (v *view) distribution() Check {
+	c := v.check("not-gaussian")
+	c.Threshold = kurtosisDoubtful
+	if !v.judgeable() {
+		return c.spared("too few samples")
+	}
+	if why := v.upset(); why != "" {
+		return c.spared(why)
+	}
+	skew, excess := v.moments()
+	c.Value = excess
+	odd := v.skewBeyondChance(skew) && math.Abs(skew) > skewDoubtful
+	heavy := v.kurtosisBeyondChance(excess) && math.Abs(excess) > kurtosisDoubtful
+	if !odd && !heavy {
+		c.Text = "The positions are distributed as in a harmonic trap."
+		return c
+	}
+	c.Level = Doubtful
+	if odd && math.Abs(skew) > skewBad || heavy && math.Abs(excess) > kurtosisBad {
+		c.Level = Bad
+	}
+	c.Text = fmt.Sprintf("The positions are not distributed as in a harmonic trap: excess kurtosis %s, skewness %s.", digits(excess), digits(skew))
+	if heavy && excess < 0 {
+		c.Remedy = "The detector may be at the end of its linear range or the trap may steepen outwards: centre the bead on the detector, and calibrate with a stiffer trap." + caution
+	} else {
+		c.Remedy = "Look for glitches of the tracking, for a trap that softens outwards and for a second bead nearby. A stiffer trap keeps the bead where it is harmonic." + caution
+	}
+	return c
+}
+
+// skewBeyondChance uses the normal transformation of D'Agostino (Biometrika 57 (1970)
+// 679) with the effective number of samples of the third Hermite order.
+func (v *view) skewBeyondChance(g float64) bool {
+	n := math.Max(v.h.effective(3, v.h.n), 9)
+	y := g * math.Sqrt((n+1)*(n+3)/(6*(n-2)))
+	b := 3 * (n*n + 27*n - 70) * (n + 1) * (n + 3) / ((n - 2) * (n + 5) * (n + 7) * (n + 9))
+	w2 := math.Sqrt(2*(b-1)) - 1
+	alpha := math.Sqrt(2 / (w2 - 1))
+	z := math.Asinh(y/alpha) / math.Sqrt(math.Log(w2)/2)
+	return twoSided(z) < chance/2
+}
+
+// kurtosisBeyondChance uses the normal transformation of Anscombe and Glynn (Biometrika
+// 70 (1983) 227) with the effective number of samples of the fourth Hermite order.
+func (v *view) kurtosisBeyondChance(g float64) bool {
+	n := math.Max(v.h.effective(4, v.h.n), 20)
+	sd := math.Sqrt(24 * n * (n - 2) * (n - 3) / ((n + 1) * (n + 1) * (n + 3) * (n + 5)))
+	y := (g + 6/(n+1)) / sd
+	b := 6 * (n*n - 5*n + 2) / ((n + 7) * (n + 9)) * math.Sqrt(6*(n+3)*(n+5)/(n*(n-2)*(n-3)))
+	a := 6 + 8/b*(2/b+math.Sqrt(1+4/(b*b)))
+	z := ((1 - 2/(9*a)) - math.Cbrt((1-2/a)/(1+y*math.Sqrt(2/(a-4))))) / math.Sqrt(2/(9*a))
+	return twoSided(z) < chance/2
+}
+
+const (
+	stepsDoubtful = 0.1 // excess kurtosis of the steps between neighbours: 3 % of steps over two intervals make 0.09
+	stepsBad      = 5.0
+)
+
+// roughSteps compares the steps from sample to sample with Gaussian ones. Single
+// wrong positions and samples lost without a trace make some steps too large.
+func (v *view) roughSteps() Check {
+	c := v.check("rough-steps")
+	c.Threshold = stepsDoubtful
+	if !v.judgeable() || v.total.d2 == 0 {
+		return c.spared("too few samples")
+	}
+	if why := v.upset(); why != "" {
+		return c.spared(why)
+	}
+	n := v.total.steps
+	m2, m4 := v.total.d2/n, v.total.d4/n
+	c.Value = m4/(m2*m2) - 3
+	// rho of the steps: 2 rho(k) - rho(k-1) - rho(k+1) over 2 - 2 rho(1)
+	share := v.h.vb / v.h.r0
+	decay := math.Exp(-v.h.rho)
+	one := 2 - 2*share*decay
+	first := (2*share*decay - 1 - share*decay*decay) / one
+	later := share * decay * (2 - 1/decay - decay) / one // at lag 2, decays with c from there
+	inflation := 1 + 2*math.Pow(first, 4) + 2*math.Pow(later*decay, 4)/-math.Expm1(-4*v.h.rho)
+	z := c.Value / math.Sqrt(24*inflation/n)
+	if !(z > stepsBeyond) || c.Value < stepsFloor {
+		c.Text = "The steps from sample to sample are those of a bead."
+		return c
+	}
+	c.Level = Doubtful
+	if c.Value > stepsBad {
+		c.Level = Bad
+	}
+	c.Text = fmt.Sprintf("Some steps from one sample to the next are too large: their excess kurtosis is %s. Samples lost without a trace, or single wrong positions, do this.", digits(c.Value))
+	c.Remedy = "Compare the frame numbers of camera and file, and look at the largest steps in the track; record with time stamps."
+	return c
+}
+
+const (
+	stepsBeyond = 4.2  // deviates; the kurtosis of few steps is skewed, and 4.2 is rare for 100 of them too
+	stepsFloor  = 0.02 // 1 % of steps over two intervals make 0.03
+)

@@ -1,0 +1,173 @@
+package health
+
+import "math"
+
+// spell is an interval of the record that differs in variance from the rest.
+type spell struct {
+	from, to     int     // blocks, to exclusive
+	z            float64 // significance of the ratio as a normal deviate; positive when the spell is louder
+	ratio        float64 // variance within over variance in the rest, each about its own mean
+	inside, rest block   // sums
+}
+
+// loudest returns the interval whose variance differs most significantly from
+// that of the rest of the record. Each is taken about its own mean, so that a step
+// between them does not count. No part is shorter than least samples.
+func loudest(blocks []block, h null, least float64) spell {
+	sums := make([]block, len(blocks)+1) // only n, s1 and s2 are used
+	for i, b := range blocks {
+		sums[i+1] = block{n: sums[i].n + b.n, s1: sums[i].s1 + b.s1, s2: sums[i].s2 + b.s2}
+	}
+	total := sums[len(blocks)]
+	var best spell
+	for i := range blocks {
+		for j := i + 1; j <= len(blocks); j++ {
+			in := block{n: sums[j].n - sums[i].n, s1: sums[j].s1 - sums[i].s1, s2: sums[j].s2 - sums[i].s2}
+			out := block{n: total.n - in.n, s1: total.s1 - in.s1, s2: total.s2 - in.s2}
+			if in.n < least || out.n < least {
+				continue
+			}
+			z, ratio := compare(in, out, h)
+			if math.Abs(z) > math.Abs(best.z) {
+				best = spell{from: i, to: j, z: z, ratio: ratio}
+			}
+		}
+	}
+	best.inside, best.rest = emptyBlock(), emptyBlock()
+	for i, b := range blocks {
+		if i >= best.from && i < best.to {
+			best.inside.add(b)
+		} else {
+			best.rest.add(b)
+		}
+	}
+	return best
+}
+
+// compare returns the ratio of two variances, each corrected for the part that its
+// own mean takes, and its significance as a normal deviate.
+//
+// The effective degrees of freedom of each come from the second Hermite order, and
+// the cube root of the ratio is taken as normal (Paulson, Ann. Math. Stat. 13
+// (1942) 233).
+func compare(a, b block, h null) (z, ratio float64) {
+	va, na := unbiased(a, h)
+	vb, nb := unbiased(b, h)
+	if va <= 0 && vb <= 0 {
+		return 0, 1
+	}
+	// A constant stretch has the ratio 0; the floor keeps logarithms finite.
+	ratio = math.Max(va, 1e-12*vb) / math.Max(vb, 1e-12*va)
+	r := math.Cbrt(ratio)
+	ka, kb := 2/(9*na), 2/(9*nb)
+	z = ((1-kb)*r - (1 - ka)) / math.Sqrt(kb*r*r+ka)
+	return z, ratio
+}
+
+// unbiased returns the variance about the own mean, corrected for the variance of
+// that mean, and its effective degrees of freedom.
+func unbiased(b block, h null) (variance, freedom float64) {
+	taken := math.Min(1/h.effective(1, b.n), 0.9)
+	return b.variance() / (1 - taken), math.Max(h.effective(2, b.n)*(1-taken), 1)
+}
+
+// whiteness returns half the mean square step between neighbours over the variance
+// about the own mean, 1 - rho(1): 1 for white noise, near 0 for a slow bead sampled fast.
+func whiteness(b block) float64 {
+	v := b.variance()
+	if v == 0 || b.steps == 0 || b.equal > 0.9*b.steps { // nothing moves at all
+		return 1
+	}
+	return b.d2 / b.steps / 2 / v
+}
+
+// Bounds of an escape. A bead in a harmonic trap goes beyond 8 standard deviations
+// once in 1e15 independent positions; 9 leaves room for the error of the standard
+// deviation, which comes from a fifth of the record at least.
+const escapeDeviations = 9
+
+// escaped returns the block at which the bead leaves, if it does: from there on its
+// mean wanders as that of a free bead does, and it reaches beyond escapeDeviations of
+// the beginning of the record. The beginning is a fifth of the record or, when that
+// does not show it, more. It needs no model, for a fit to a record with an escape has none.
+// The excursion is the largest seen, in standard deviations of the beginning.
+func escaped(blocks []block) (at int, excursion float64, ok bool) {
+	const steps = 20
+	sum := emptyBlock()
+	for k := range steps - 1 {
+		from, to := k*len(blocks)/steps, (k+1)*len(blocks)/steps
+		for _, b := range blocks[from:to] {
+			sum.add(b)
+		}
+		sd := math.Sqrt(sum.variance())
+		if k < steps/5-1 || sum.n == 0 || sd == 0 {
+			continue
+		}
+		i, reach := farthest(blocks[to:], sum.mean(), sd)
+		if k == steps/5-1 {
+			excursion = reach
+		}
+		if reach <= escapeDeviations {
+			continue
+		}
+		if start := onset(blocks, to+i, sum.mean(), sd); walks(blocks[start:]) {
+			return start, reach, true
+		}
+	}
+	return 0, excursion, false
+}
+
+// farthest returns the first block that reaches beyond escapeDeviations of a mean, and
+// the largest reach of all [standard deviations].
+func farthest(blocks []block, mean, sd float64) (first int, reach float64) {
+	first = -1
+	for i, b := range blocks {
+		if b.n == 0 {
+			continue
+		}
+		r := math.Max(b.high-mean, mean-b.low) / sd
+		if r > escapeDeviations && first < 0 {
+			first = i
+		}
+		reach = math.Max(reach, r)
+	}
+	return first, reach
+}
+
+// onset goes back from the block of the excursion to the last one whose mean is
+// still near the centre of the trap.
+func onset(blocks []block, i int, m, sd float64) int {
+	for i > 0 && !(math.Abs(blocks[i-1].mean()-m) < 2*sd) {
+		i--
+	}
+	return max(i-1, 0)
+}
+
+// walks tells whether the means of sixteen parts scatter more than the positions
+// within the parts. The ratio of the two variances is about 8 for free diffusion,
+// and 32 tau/T for a trapped bead in a stretch of length T.
+func walks(blocks []block) bool {
+	const parts = 16
+	if len(blocks) < parts {
+		return false
+	}
+	var within, m1, m2, count float64
+	for k := range parts {
+		b := emptyBlock()
+		for _, o := range blocks[k*len(blocks)/parts : (k+1)*len(blocks)/parts] {
+			b.add(o)
+		}
+		if b.n == 0 {
+			continue
+		}
+		within += b.variance()
+		m1 += b.mean()
+		m2 += b.mean() * b.mean()
+		count++
+	}
+	if count < 4 {
+		return false
+	}
+	means := m2/count - m1*m1/(count*count)
+	return means > 1.5*within/count
+}
