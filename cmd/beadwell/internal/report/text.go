@@ -3,6 +3,7 @@ package report
 import (
 	"fmt"
 	"io"
+	"slices"
 	"strings"
 	"text/tabwriter"
 
@@ -36,13 +37,38 @@ type printer struct {
 	strings.Builder
 	result *calib.Result
 	colour bool
+	notes  []footnote
 	marks  map[string]string // of each axis, and of "" for the recording: "[1] [3]"
 }
 
+// footnote is a finding, and the axes that share it.
+type footnote struct {
+	calib.Finding
+	axes []string
+}
+
+// footnotes gathers the findings; one that says the same of several axes is one.
+func footnotes(findings []calib.Finding) []footnote {
+	var notes []footnote
+	for _, f := range findings {
+		same := slices.IndexFunc(notes, func(n footnote) bool {
+			return f.Axis != "" && n.Axis != "" && n.Code == f.Code && n.Severity == f.Severity && n.Text == f.Text && n.Remedy == f.Remedy
+		})
+		if same >= 0 {
+			notes[same].axes = append(notes[same].axes, f.Axis)
+			continue
+		}
+		notes = append(notes, footnote{f, []string{f.Axis}})
+	}
+	return notes
+}
+
 func newPrinter(r *calib.Result, opt TextOptions) *printer {
-	p := &printer{result: r, colour: opt.Colour, marks: map[string]string{}}
-	for i, finding := range r.Findings {
-		p.marks[finding.Axis] = strings.TrimSpace(fmt.Sprintf("%s [%d]", p.marks[finding.Axis], i+1))
+	p := &printer{result: r, colour: opt.Colour, notes: footnotes(r.Findings), marks: map[string]string{}}
+	for i, note := range p.notes {
+		for _, axis := range note.axes {
+			p.marks[axis] = strings.TrimSpace(fmt.Sprintf("%s [%d]", p.marks[axis], i+1))
+		}
 	}
 	return p
 }

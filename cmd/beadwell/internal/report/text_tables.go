@@ -215,17 +215,17 @@ func settingText(s calib.Setting) string {
 
 // footnotes prints the findings with their remedies.
 func (p *printer) footnotes() {
-	if len(p.result.Findings) > 0 {
+	if len(p.notes) > 0 {
 		p.WriteString("\n")
 	}
-	for i, f := range p.result.Findings {
+	for i, note := range p.notes {
 		where := ""
-		if f.Axis != "" {
-			where = " on " + f.Axis
+		if note.Axis != "" {
+			where = " on " + strings.Join(note.axes, ", ")
 		}
-		p.paragraph("", fmt.Sprintf("[%d] %s, %s%s: %s", i+1, f.Severity, f.Code, where, f.Text))
-		if f.Remedy != "" {
-			p.paragraph("    ", f.Remedy)
+		p.paragraph("", fmt.Sprintf("[%d] %s, %s%s: %s", i+1, note.Severity, note.Code, where, note.Text))
+		if note.Remedy != "" {
+			p.paragraph("    ", "remedy: "+note.Remedy)
 		}
 	}
 }

@@ -171,3 +171,23 @@ func TestTextLeavesOutTests(t *testing.T) {
 		t.Errorf("Text = %s", text)
 	}
 }
+
+// One footnote for what several axes share, with a mark on each of them.
+func TestSharedFootnote(t *testing.T) {
+	r := storedSample()
+	shared := r.Findings[0]
+	shared.Axis = "z"
+	r.Findings = append(r.Findings, shared)
+	var b bytes.Buffer
+	if err := Text(&b, r, TextOptions{}); err != nil {
+		t.Fatal(err)
+	}
+	for _, want := range []string{"[1] doubtful, slow-drift on x, z: ", "withheld [1]\n", "pN/um [1] "} {
+		if !strings.Contains(b.String(), want) {
+			t.Errorf("Text lacks %q:\n%s", want, b.String())
+		}
+	}
+	if strings.Contains(b.String(), "[3]") {
+		t.Error("a shared finding has two footnotes")
+	}
+}
