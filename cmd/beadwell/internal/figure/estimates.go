@@ -84,7 +84,11 @@ func estimatePanel(a *calib.Axis) (p panel, words string, ok bool) {
 	if len(list) == 0 || reach.empty() {
 		return p, "", false
 	}
-	p.x = scale{quantity: "stiffness along " + clean(a.Name), unit: "pN/µm", si: "N/m", factor: 1e6}.over(reach)
+	quantity := "stiffness along " + axisName(a)
+	if !a.Adopted.Stiffness.Known() {
+		quantity += ", none adopted"
+	}
+	p.x = scale{quantity: quantity, unit: "pN/µm", si: "N/m", factor: 1e6}.over(reach)
 	p.y = scale{factor: 1, rows: rows, low: -float64(len(rows)) + 0.4, high: 0.6}
 	return p, describeEstimates(a, list), true
 }

@@ -194,6 +194,9 @@ func TestEstimatesShowEveryLegAndBothIntervals(t *testing.T) {
 	if len(f.panels[2].notes) != 1 {
 		t.Errorf("%d notes on z, want one for the withheld estimate", len(f.panels[2].notes))
 	}
+	if got, want := f.panels[2].x.label(), "stiffness along z, none adopted (pN/µm)"; got != want {
+		t.Errorf("label %q, want %q", got, want)
+	}
 	for _, s := range f.panels[2].series {
 		if s.name == "adopted" {
 			t.Error("a withheld value is drawn as adopted")

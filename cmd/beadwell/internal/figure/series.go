@@ -132,17 +132,21 @@ func strokePieces(c draw.Canvas, style draw.LineStyle, line []vg.Point) {
 	}
 }
 
-// columns draws a histogram as one filled outline.
+// columns draws a histogram: filled bars and the steps of their tops.
 func (b brush) columns(c draw.Canvas, p panel, s series) {
+	var steps []vg.Point
 	for i := range s.y {
 		left, right := c.X(bound(p.x, s.low[i])), c.X(bound(p.x, s.high[i]))
 		top := c.Y(bound(p.y, s.y[i]))
-		if top <= c.Min.Y || right <= left {
+		if right <= left {
 			continue
 		}
-		c.FillPolygon(b.color(s.ink), []vg.Point{
-			{X: left, Y: c.Min.Y}, {X: left, Y: top}, {X: right, Y: top}, {X: right, Y: c.Min.Y}})
+		steps = append(steps, vg.Point{X: left, Y: top}, vg.Point{X: right, Y: top})
+		if top > c.Min.Y {
+			c.FillPolygon(b.color(s.ink), box(left, right, c.Min.Y, top))
+		}
 	}
+	strokePieces(c, b.line(soft, 0.4), steps)
 }
 
 // envelope fills between low and high, stretch by stretch of known values.
