@@ -39,6 +39,10 @@ func (p Process) SampleVariance(n int, removed Removed) (mean, variance float64)
 	return tr / nn, 2 * tr2 / (nn * nn)
 }
 
+// fewestCoarse is the least number of steps of a coarse-grained record: the sums over steps
+// differ from those over samples by its inverse squared.
+const fewestCoarse = 1 << 12
+
 // project returns u' C u and u' C^2 u for a removed direction. A record of very
 // many samples is coarse-grained first: as long as m samples are within 0.05
 // relaxation times, one in m with m times the covariance gives the same sums to
@@ -51,8 +55,10 @@ func (p Process) project(d Removed, n int, vb, white float64) (uCu, uC2u float64
 			long := white + vb/math.Tanh(rho/2)
 			return long, long * long
 		}
-		if m := int(0.05 / rho); m > 1 {
-			n, rho, vb = n/m, rho*float64(m), vb*float64(m)
+		if m := min(int(0.05/rho), n/fewestCoarse); m > 1 {
+			coarse := n / m
+			ratio := float64(n) / float64(coarse) // m, but for the rest of the division
+			n, rho, vb = coarse, rho*ratio, vb*ratio
 		}
 	}
 	u := direction(d, n)

@@ -1,0 +1,82 @@
+package relaxation
+
+import (
+	"math"
+	"math/rand/v2"
+	"testing"
+
+	"gonum.org/v1/gonum/mat"
+)
+
+// gaussian returns the log density, without -(n/2) ln 2 pi, of y for the Toeplitz or
+// circulant covariance with the first row r.
+func gaussian(t *testing.T, y, r []float64) float64 {
+	t.Helper()
+	n := len(y)
+	c := mat.NewSymDense(n, nil)
+	for i := range n {
+		for j := i; j < n; j++ {
+			c.SetSym(i, j, r[j-i])
+		}
+	}
+	var chol mat.Cholesky
+	if !chol.Factorize(c) {
+		t.Fatal("covariance matrix is not positive definite")
+	}
+	v := mat.NewVecDense(n, y)
+	var s mat.VecDense
+	if err := chol.SolveVecTo(&s, v); err != nil {
+		t.Fatal(err)
+	}
+	return -(chol.LogDet() + mat.Dot(v, &s)) / 2
+}
+
+// ln p_line - ln p_ring from dense matrices: the ring's covariance is the mean of the
+// spectrum at the N Fourier frequencies, times cosines. fc T = 12 leaves terms of
+// exp(-pi fc T) = 4e-17 from the halves that the two filters see, so that rounding of the
+// two log densities (of order 100, with condition numbers up to 1e4) is what remains.
+func TestEndsOpenTheRing(t *testing.T) {
+	for i, p := range append([]Process{{Corner: 0.1, Variance: 2, Noise: 0, Interval: 1, Exposure: 0.5}}, processes...) {
+		n := 2 * int(math.Ceil(6/p.Corner))
+		line, ring := make([]float64, n), make([]float64, n)
+		for d := range n {
+			line[d] = p.Autocovariance(d)
+			for k := range n {
+				ring[d] += p.Spectrum(float64(k)/float64(n)) / p.Interval * math.Cos(2*math.Pi*float64(k*d%n)/float64(n)) / float64(n)
+			}
+		}
+		rng := rand.New(rand.NewPCG(uint64(i), 7))
+		for _, size := range []float64{0.3, 1, 5} { // the identity holds for any y
+			y := make([]float64, n)
+			for j := range y {
+				y[j] = size * math.Sqrt(p.RecordedVariance()) * rng.NormFloat64()
+			}
+			got, ok := newEnds(y).logRatio(newShape(p.Corner*p.Interval, p.Exposure), p.Variance, p.Noise)
+			want := gaussian(t, y, line) - gaussian(t, y, ring)
+			if !ok || math.Abs(got-want) > 1e-8*math.Max(1, size*size*10) {
+				t.Errorf("process %d, size %g: ln p(line) - ln p(ring) = %.12g, want %.12g (dense matrices)", i, size, got, want)
+			}
+		}
+	}
+}
+
+// Without a link there is nothing to open: at fc/fs = 3 the samples are independent.
+func TestEndsOfIndependentSamples(t *testing.T) {
+	y := []float64{1, -2, 0.5, 3, -1, 0.3}
+	got, ok := newEnds(y).logRatio(newShape(2.99, 0), 1, 0)
+	if !ok || math.Abs(got) > 1e-7 { // c = 7e-9, times products of the ends up to 3
+		t.Errorf("ln p(line) - ln p(ring) = %g, want 0", got)
+	}
+}
+
+// The filtered state of a noise-free, unblurred bead is its last position; parameters for
+// which the innovation has no positive variance are outside the domain.
+func TestStationaryFilterLimits(t *testing.T) {
+	f := stationary(0.9, 2, 0)
+	if !f.ok || f.gain != 1 || f.variance != 0 || math.Abs(f.innovation-2*(1-0.81)) > 1e-15 {
+		t.Errorf("noise-free filter = %+v, want gain 1, variance 0, innovation 0.38", f)
+	}
+	if f := stationary(0.9, 2, -1.9); f.ok {
+		t.Errorf("filter with more blur than motion = %+v, want none", f)
+	}
+}
