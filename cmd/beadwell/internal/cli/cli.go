@@ -49,8 +49,9 @@ func Process() World {
 // Main runs the command line args (without the program's name) and returns
 // the exit status: one of the Status constants. It never panics.
 func Main(args []string, w World) int {
-	// A closed pipe is to be an error of the write, not the silent end of the process.
-	signal.Ignore(syscall.SIGPIPE)
+	// A closed pipe and a limit of the file size are to be errors of the write, not
+	// the end of the process.
+	signal.Ignore(syscall.SIGPIPE, syscall.SIGXFSZ)
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
 	defer stop()
 	return run(ctx, args, w)
