@@ -26,6 +26,7 @@ const (
 type meanFindings struct {
 	step      step
 	jump      bool
+	h         null    // by which the mean was judged
 	line      line    // about which the rest is judged, the step taken off
 	driftZ    float64 // slope in standard deviations, as a normal deviate
 	driftSD   float64 // standard deviation of the slope, in units of the scale
@@ -34,35 +35,65 @@ type meanFindings struct {
 	wanderRMS float64 // beyond expectation, over the rms of the samples
 }
 
-// judgeMean tells drift, jump and wander from each other.
+// judgeMean tells drift, jump and wander from each other. Where an event may have
+// misled the fit, a jump is looked for without it: one that is twice as clear, and far
+// larger than any other change from one block to the next.
 func (v *view) judgeMean() meanFindings {
-	var m meanFindings
 	p := points(v.blocks, v.length, v.samples)
-	long := v.h.longRun() / (v.scale * v.scale)
-	nu := v.h.freedom()
-	m.step = fitStep(p, long, nu, 4*v.h.memory())
-	unit := v.rms / v.scale // one rms in units of the scale
-	m.jump = math.Abs(m.step.z) > scanBeyond && math.Abs(m.step.height) > jumpDoubtful*unit && v.sudden(p, m.step, long)
+	m := v.findJump(p, v.h, scanBeyond, 0)
+	h := v.h
+	if !m.jump && v.misled() {
+		_, difference, _ := v.within()
+		if other := v.findJump(p, v.local, 2*scanBeyond, 8*difference); other.jump {
+			m, h = other, v.local
+		}
+	}
 	if m.jump {
 		p = without(p, m.step)
 	}
+	m.h = h
+	unit := math.Sqrt(h.r0) / v.scale // one rms in units of the scale
 	m.line = fitLine(p)
-	m.driftSD = math.Sqrt(long / math.Max(m.line.tt, 1e-300))
-	m.driftZ = normal(m.line.slope/m.driftSD, nu)
-	ratio, pValue, excess := wander(p, v.h, v.scale)
+	m.driftSD = math.Sqrt(h.longRun() / (v.scale * v.scale) / math.Max(m.line.tt, 1e-300))
+	m.driftZ = normal(m.line.slope/m.driftSD, h.freedom())
+	ratio, pValue, excess := wander(p, h, v.scale)
 	m.ratio = ratio
 	m.wanderRMS = math.Sqrt(excess) / unit
 	m.wander = pValue < chance && m.wanderRMS > wanderDoubtful
 	return m
 }
 
+// findJump looks for a step of at least a height [units of the scale] that is beyond
+// a deviate.
+func (v *view) findJump(p []point, h null, beyond, height float64) meanFindings {
+	long := h.longRun() / (v.scale * v.scale)
+	m := meanFindings{step: fitStep(p, long, h.freedom(), 4*h.memory())}
+	size := math.Abs(m.step.height)
+	m.jump = math.Abs(m.step.z) > beyond && size > height && size > jumpDoubtful*math.Sqrt(h.r0)/v.scale && v.sudden(p, m.step, long, h.memory())
+	return m
+}
+
+// judgeSpell looks for a stretch of unusual variance. Where an event may have misled
+// the fit, a bead that is held fast is looked for without it.
+func (v *view) judgeSpell(coarse []block) spell {
+	s := loudest(coarse, v.h, math.Max(8*v.h.memory(), 16))
+	if !v.misled() {
+		return s
+	}
+	other := loudest(coarse, v.local, math.Max(8*v.local.memory(), 16))
+	if math.Abs(other.z) > 1.5*spellBeyond && v.stuckIn(other).found {
+		return other
+	}
+	return s
+}
+
 // sudden tells a step from the steepest part of a slow wave: of a step, the means of
 // short stretches before and after it differ by its height. The stretches are as
 // long as it takes to know the difference to a fifth of the height.
-func (v *view) sudden(p []point, s step, long float64) bool {
-	w := math.Max(50*long/(s.height*s.height), 3*v.h.memory())
+func (v *view) sudden(p []point, s step, long, memory float64) bool {
+	w := math.Max(50*long/(s.height*s.height), 3*memory)
 	w = math.Max(w, 2*float64(v.length))
-	d, ok := local(p, s, w, math.Max(float64(v.length), 2*v.h.memory()))
+	d, ok := local(p, s, w, math.Max(float64(v.length), 2*memory))
 	if !ok || w > 0.08*float64(v.samples) {
 		return math.Abs(s.z) > 2*scanBeyond // too long to tell; what is this clear is no wave of small height
 	}
@@ -104,14 +135,15 @@ const heldRatio = 0.33
 // stuck tells whether the spell of unusual variance is one of a bead held fast. The
 // quiet part is the held one if it is whiter than the other, as localisation noise
 // is, or if both are white. Otherwise the loud part is the unusual one.
-func (v *view) stuck() heldSpell {
-	s := v.spell
+func (v *view) stuck() heldSpell { return v.stuckIn(v.spell) }
+
+func (v *view) stuckIn(s spell) heldSpell {
 	quiet, loud := s.inside, s.rest
 	ratio := s.ratio
 	if s.ratio > 1 {
 		quiet, loud, ratio = s.rest, s.inside, 1/s.ratio
 	}
-	if v.escapeAt >= 0 || math.Abs(s.z) < spellBeyond || ratio > heldRatio || !(whiteness(quiet) > math.Min(0.7, 2*whiteness(loud))) {
+	if v.escapeAt >= 0 || math.Abs(s.z) < spellBeyond || ratio > heldRatio || !(quiet.whiteness() > math.Min(0.7, 2*loud.whiteness())) {
 		return heldSpell{ratio: ratio}
 	}
 	out := heldSpell{found: true, from: s.from, to: s.to, ratio: ratio}

@@ -117,7 +117,9 @@ func (v *view) white(c Check) Check {
 	if !v.judgeable() || v.upset() != "" {
 		return c.spared("no corner frequency was found")
 	}
-	if seen := 1 - whiteness(v.total); seen*math.Sqrt(v.total.steps) > 1.5 {
+	var all part
+	all.add(v.total)
+	if seen := 1 - all.whiteness(); seen*math.Sqrt(v.total.steps) > 1.5 {
 		return c.spared("no corner frequency was found")
 	}
 	c.Level = Bad

@@ -34,6 +34,17 @@ func (b *block) add(o block) {
 	b.high = math.Max(b.high, o.high)
 }
 
+// shift subtracts a from all y.
+func (b *block) shift(a float64) {
+	n, s1, s2, s3, s4 := b.n, b.s1, b.s2, b.s3, b.s4
+	b.s1 = s1 - a*n
+	b.s2 = s2 - 2*a*s1 + a*a*n
+	b.s3 = s3 - 3*a*s2 + 3*a*a*s1 - a*a*a*n
+	b.s4 = s4 - 4*a*s3 + 6*a*a*s2 - 4*a*a*a*s1 + a*a*a*a*n
+	b.low -= a
+	b.high -= a
+}
+
 // mean returns the mean of y; NaN without samples.
 func (b block) mean() float64 { return b.s1 / b.n }
 

@@ -60,6 +60,9 @@ func trials() []trial {
 		add("second bead at 0.4", "jump", Bad, event(simulate.SecondBead, 0.4, func(e *simulate.Event) {
 			e.Offset, e.Stiffness, e.Drag = []float64{1.5 * rms, -1.2 * rms, 1 * rms}, 1.4, 1.6
 		}))
+		add("second bead of 5 rms", "jump", Bad, event(simulate.SecondBead, 0.6, func(e *simulate.Event) {
+			e.Offset, e.Stiffness, e.Drag = []float64{5 * rms, -1.2 * rms, 1 * rms}, 1.4, 1.6
+		}))
 		add("clipped at 2.5 rms", "rail", Bad, func(t *simulate.Truth) { t.Faults.Rail = 2.5 * rms })
 		add("escape at 0.4", "lost-bead", Bad, event(simulate.Escape, 0.4, nil))
 		add("escape at 0.7", "lost-bead", Bad, event(simulate.Escape, 0.7, nil))

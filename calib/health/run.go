@@ -1,10 +1,6 @@
 package health
 
-import (
-	"math"
-
-	"beadwell/calib/relaxation"
-)
+import "math"
 
 // Run makes every check, those of the recording first, then those of each axis, then
 // those of each pair of axes, in a fixed order: the order of Codes within each
@@ -41,6 +37,7 @@ type view struct {
 	rate     float64 // [Hz]
 	exposure float64 // [s]
 	h        null
+	local    null // the same without a fit, from parts of the record
 	values   values
 	line     line
 	rms      float64 // standard deviation of the samples by the null hypothesis [unit of X]
@@ -63,6 +60,10 @@ func newView(in Input, a Axis) *view {
 		v.Known = false
 		v.h = newNull(v.rough(), n, len(a.X))
 	}
+	v.local = v.h
+	if v.Known {
+		v.local = newNull(v.rough(), n, len(a.X))
+	}
 	v.line = fitLine(points(v.blocks, v.length, v.samples))
 	v.rms = math.Sqrt(v.h.r0)
 	if !v.judgeable() {
@@ -72,42 +73,45 @@ func newView(in Input, a Axis) *view {
 	if v.beyond = beyond; ok {
 		v.escapeAt = at
 	}
-	coarse, per := v.joined(128)
-	v.per = per
-	v.spell = loudest(coarse, v.h, math.Max(8*v.h.memory(), 16))
 	v.mean = v.judgeMean()
+	v.spell = v.judgeSpell(v.levelledBlocks())
 	return v
+}
+
+// spellBlocks is the number of blocks from which stretches of unusual variance are
+// made; the number of stretches is half its square.
+const spellBlocks = 128
+
+// levelledBlocks returns the sums of coarse blocks with the fitted line, and the step if
+// there is one, taken off. The fine blocks at a step, where the bead is on its way,
+// are left out.
+func (v *view) levelledBlocks() []block {
+	v.per = max(1, (len(v.blocks)+spellBlocks-1)/spellBlocks)
+	coarse := make([]block, (len(v.blocks)+v.per-1)/v.per)
+	for i := range coarse {
+		coarse[i] = emptyBlock()
+	}
+	on := math.Max(1.5*float64(v.length), 3*v.local.memory())
+	for i, b := range v.blocks {
+		mid := (float64(i) + 0.5) * float64(v.length)
+		t := mid/float64(v.samples) - 0.5
+		a := v.mean.line.at(t)
+		if v.mean.jump {
+			if math.Abs(mid-v.mean.step.at) < on {
+				continue
+			}
+			if t > v.mean.step.t {
+				a += v.mean.step.height
+			}
+		}
+		b.shift(a)
+		coarse[i/v.per].add(b)
+	}
+	return coarse
 }
 
 // judgeable tells whether there are enough samples that move for any statistics.
 func (v *view) judgeable() bool { return v.total.n >= 64 && v.h.usable() }
-
-// rough returns a process that was not fitted: the variance of the samples about
-// their mean, and the memory that makes the scatter of the means of 64 blocks, from their
-// successive differences so that drift does not count.
-func (v *view) rough() relaxation.Process {
-	const blocks = 64
-	coarse, _ := v.joined(blocks)
-	r0 := v.total.variance()
-	var d2, count, n float64
-	for i := 1; i < len(coarse); i++ {
-		if coarse[i].n == 0 || coarse[i-1].n == 0 {
-			continue
-		}
-		d := coarse[i].mean() - coarse[i-1].mean()
-		d2 += d * d / 2
-		n += coarse[i].n
-		count++
-	}
-	dt := 1 / v.rate
-	p := relaxation.Process{Interval: dt, Variance: r0 * v.scale * v.scale, Corner: 1 / dt}
-	if count > 0 && r0 > 0 {
-		// (1+c)/(1-c) is the long-run variance over r0; at least 1, as for white samples
-		k := math.Max(d2/count*(n/count)/r0, 1.0001)
-		p.Corner = -math.Log((k-1)/(k+1)) / (2 * math.Pi * dt)
-	}
-	return p
-}
 
 // second returns the time in the record of a sample [s].
 func (v *view) second(sample float64) float64 { return sample / v.rate }

@@ -12,22 +12,16 @@ const (
 	skewBad          = 0.6
 )
 
-// moments returns skewness and excess kurtosis of the positions about the fitted
-// line, and step.
+// moments returns skewness and excess kurtosis of the positions about the
+// fitted line.
 func (v *view) moments() (skew, excess float64) {
-	var n, m2, m3, m4 float64
+	sum := emptyBlock()
 	for i, b := range v.blocks {
-		if b.n == 0 {
-			continue
-		}
 		mid := math.Min((float64(i)+0.5)*float64(v.length), float64(v.samples))
-		t := mid/float64(v.samples) - 0.5
-		a := v.line.at(t)
-		n += b.n
-		m2 += b.s2 - 2*a*b.s1 + a*a*b.n
-		m3 += b.s3 - 3*a*b.s2 + 3*a*a*b.s1 - a*a*a*b.n
-		m4 += b.s4 - 4*a*b.s3 + 6*a*a*b.s2 - 4*a*a*a*b.s1 + a*a*a*a*b.n
+		b.shift(v.line.at(mid/float64(v.samples) - 0.5))
+		sum.add(b)
 	}
+	n, m2, m3, m4 := sum.n, sum.s2, sum.s3, sum.s4
 	m2, m3, m4 = m2/n, m3/n, m4/n
 	if m2 <= 0 {
 		return 0, 0

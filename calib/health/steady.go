@@ -7,7 +7,37 @@ type spell struct {
 	from, to     int     // blocks, to exclusive
 	z            float64 // significance of the ratio as a normal deviate; positive when the spell is louder
 	ratio        float64 // variance within over variance in the rest, each about its own mean
-	inside, rest block   // sums
+	inside, rest part
+}
+
+// part is what tells noise from motion in a part of the record: half the mean square
+// step between neighbours, and the variance within the blocks, each about its own mean.
+type part struct {
+	n, steps, equal float64
+	half            float64 // sum of half the squared steps
+	within          float64 // sum of squares about the means of the blocks
+	blocks          float64
+}
+
+func (p *part) add(b block) {
+	if b.n == 0 {
+		return
+	}
+	p.n += b.n
+	p.steps += b.steps
+	p.equal += b.equal
+	p.half += b.d2 / 2
+	p.within += b.n * b.variance()
+	p.blocks++
+}
+
+// whiteness returns 1 - rho(1) as seen within blocks: 1 for white noise or when
+// nothing moves at all, near 0 for a slow bead sampled fast.
+func (p part) whiteness() float64 {
+	if p.within == 0 || p.steps == 0 || p.equal > 0.9*p.steps {
+		return 1
+	}
+	return p.half / p.steps * math.Max(p.n-p.blocks, 1) / p.within
 }
 
 // loudest returns the interval whose variance differs most significantly from
@@ -33,7 +63,6 @@ func loudest(blocks []block, h null, least float64) spell {
 			}
 		}
 	}
-	best.inside, best.rest = emptyBlock(), emptyBlock()
 	for i, b := range blocks {
 		if i >= best.from && i < best.to {
 			best.inside.add(b)
@@ -69,16 +98,6 @@ func compare(a, b block, h null) (z, ratio float64) {
 func unbiased(b block, h null) (variance, freedom float64) {
 	taken := math.Min(1/h.effective(1, b.n), 0.9)
 	return b.variance() / (1 - taken), math.Max(h.effective(2, b.n)*(1-taken), 1)
-}
-
-// whiteness returns half the mean square step between neighbours over the variance
-// about the own mean, 1 - rho(1): 1 for white noise, near 0 for a slow bead sampled fast.
-func whiteness(b block) float64 {
-	v := b.variance()
-	if v == 0 || b.steps == 0 || b.equal > 0.9*b.steps { // nothing moves at all
-		return 1
-	}
-	return b.d2 / b.steps / 2 / v
 }
 
 // Bounds of an escape. A bead in a harmonic trap goes beyond 8 standard deviations
