@@ -47,6 +47,8 @@ func (w *work) routes() Test {
 		return noTest("the recording does not determine the drag")
 	}
 	loose := math.Max(0, 2*(w.fit.Maximum.Value-p.maximum.Value))
+	excess := w.bartlett()
+	fixed, loose = fixed/(excess*excess), loose/(excess*excess)
 	t := Test{ChiSquare: Float(fixed), DegreesOfFreedom: 1, PValue: survival(fixed, 1),
 		ChiSquareCombined: Float(loose), PValueCombined: survival(loose, 1), MeanDifference: Float(w.dragExcess())}
 	return t

@@ -285,7 +285,12 @@ func (w *work) describeDisplacement() {
 	p := relaxation.Process{Corner: m.Corner, Variance: m.Variance, Noise: m.NoiseQ, Interval: dt, Exposure: w.exposure}
 	for _, q := range m.Points {
 		d.Points = append(d.Points, MSDPoint{Lag: Float(float64(q.Lag) * dt), MSD: Float(q.MSD), Standard: Float(q.Standard), Model: Float(q.Model), Used: true})
-		d.Model = append(d.Model, Point{X: Float(float64(q.Lag) * dt), Y: Float(p.MSD(q.Lag))})
+	}
+	const steps = 120
+	last := float64(m.Points[len(m.Points)-1].Lag)
+	for i := 0; i <= steps; i++ {
+		lag := math.Pow(last, float64(i)/steps)
+		d.Model = append(d.Model, Point{X: Float(lag * dt), Y: Float(p.MSDCurve(lag))})
 	}
 }
 

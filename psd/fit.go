@@ -80,8 +80,8 @@ func Estimate(r *Record, opt Options) (*Fit, error) {
 	if err != nil || opt.KeepLines || r.Missing > 0 || r.Observed() < 256 {
 		return f, err
 	}
-	p := f.Process()
-	if r.RemoveLines(func(k int) float64 { return p.Spectrum(float64(k)*r.Rate/float64(r.Length)) * r.Rate }) {
+	density := f.density()
+	if r.RemoveLines(func(k int) float64 { return density(float64(k)*r.Rate/float64(r.Length)) * r.Rate / 2 }) {
 		return estimate(r, opt)
 	}
 	return f, nil

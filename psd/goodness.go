@@ -67,7 +67,8 @@ func (f *Fit) leakage(r *Record) float64 {
 
 func group(f *Fit, leakage float64) []Point {
 	b := f.Blocks
-	model := f.modelAt
+	density := f.density()
+	model := func(x float64) float64 { return density(x/f.Interval) / 2 / f.Interval }
 	floor := f.Process().Floor()
 	first, last := b.Frequency[0], b.Frequency[len(b.Frequency)-1]
 	growth := math.Pow(last/first*1.0001, 1.0/mostPoints)
@@ -97,7 +98,7 @@ func group(f *Fit, leakage float64) []Point {
 		}
 		weight += w
 		freq += w * b.Frequency[i]
-		m := f.modelBlock(i)
+		m := model(b.Frequency[i])
 		if leakage != 0 {
 			m += leakage * (m - floor)
 		}
@@ -111,29 +112,26 @@ func group(f *Fit, leakage float64) []Point {
 	return points
 }
 
-// modelAt returns P/dt, two-sided [m2], at a frequency in units of the rate.
-func (f *Fit) modelAt(x float64) float64 {
-	return f.Spectrum(x/f.Interval) / 2 / f.Interval
-}
-
 // Spectrum returns the fitted one-sided spectrum [m2/Hz] at a frequency [Hz].
-func (f *Fit) Spectrum(hz float64) float64 {
+func (f *Fit) Spectrum(hz float64) float64 { return f.density()(hz) }
+
+// density returns Spectrum as a function, for many frequencies.
+func (f *Fit) density() func(hz float64) float64 {
 	if s, ok := f.Problem.Likelihood.(interface {
 		Density(p relaxation.Parameters, hz float64) float64
 	}); ok {
-		return s.Density(f.Maximum.At, hz)
+		return func(hz float64) float64 { return s.Density(f.Maximum.At, hz) }
 	}
-	return 2 * f.Process().Spectrum(hz)
+	p := f.Process().SpectrumFunc()
+	return func(hz float64) float64 { return 2 * p(hz) }
 }
-
-// modelBlock returns P/dt [m2] of a block.
-func (f *Fit) modelBlock(i int) float64 { return f.modelAt(f.Blocks.Frequency[i]) }
 
 // SpectrumPoints returns the blocked spectrum over the whole band, kept frequencies
 // and others, in at most about count blocks of equal width on a logarithmic scale.
 func (f *Fit) SpectrumPoints(r *Record, count int) (points []Point, used []bool) {
 	n := len(r.Power) - 1
 	skip := r.skip(f.givenBand(r), f.Excluded)
+	density := f.density()
 	growth := math.Pow(float64(n), 1/float64(count))
 	scale := 2 / r.Rate / float64(r.Length)
 	if r.Missing > 0 {
@@ -141,7 +139,7 @@ func (f *Fit) SpectrumPoints(r *Record, count int) (points []Point, used []bool)
 	}
 	for k := 1; k <= n; {
 		end := min(n, max(k, int(float64(k)*growth)))
-		var sum, model, freq [2]float64
+		var sum, freq [2]float64
 		var bins [2]int
 		for j := k; j <= end; j++ {
 			which := 0
@@ -158,8 +156,7 @@ func (f *Fit) SpectrumPoints(r *Record, count int) (points []Point, used []bool)
 				continue
 			}
 			p := Point{Frequency: freq[which] / float64(b), Power: sum[which] / float64(b), Bins: b}
-			model[which] = f.Spectrum(p.Frequency)
-			p.Model = model[which]
+			p.Model = density(p.Frequency)
 			p.Standard = p.Model / math.Sqrt(float64(b))
 			v := 1 / (9 * float64(b))
 			p.Residual = (math.Cbrt(p.Power/p.Model) - (1 - v)) / math.Sqrt(v)

@@ -58,14 +58,21 @@ func (r *Record) RemoveLines(model func(k int) float64) bool {
 func (r *Record) tallest(model func(int) float64, limit float64) int {
 	best, at := limit, 0
 	skip := r.skip(Range{}, nil)
-	for k := 4; k < len(r.Power)-1; k++ {
-		p := r.Power[k] / float64(r.Length)
-		if p < limit*1e-3 && p == 0 {
-			continue
+	last := len(r.Power) - 2
+	for from := 4; from <= last; {
+		to := min(last, from+from/64)
+		// a spectrum that falls or rises within a block is least at one of its ends; the
+		// factor leaves room for one that does neither
+		least := 0.9 * math.Min(model(from), model(to)) * float64(r.Length)
+		for k := from; k <= to; k++ {
+			if r.Power[k] < best*least || skip(k) {
+				continue
+			}
+			if ratio := r.Power[k] / float64(r.Length) / model(k); ratio > best {
+				best, at = ratio, k
+			}
 		}
-		if ratio := p / model(k); ratio > best && !skip(k) {
-			best, at = ratio, k
-		}
+		from = to + 1
 	}
 	return at
 }

@@ -160,10 +160,14 @@ func (s *Spectral) Start(noise float64, noiseFree bool) Parameters {
 	return startFromBlocks(s.blocks, s.exposure, s.scale, noise, noiseFree)
 }
 
+// startBlocks is the number of blocks that a start is sought from.
+const startBlocks = 80
+
 func startFromBlocks(b Blocks, exposure, scale, noise float64, noiseFree bool) Parameters {
 	shares := []float64{0, 0.003, 0.03, 0.3}
 	best, bestValue := Parameters{math.Log(0.05), 0, 0}, math.Inf(-1)
 	low := math.Max(0.1/float64(b.Samples), 2*lowestCorner)
+	b = b.thinned(startBlocks)
 	const steps = 48
 	for i := 0; i <= steps; i++ {
 		x := low * math.Pow(1.5/low, float64(i)/steps)

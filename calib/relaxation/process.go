@@ -36,19 +36,30 @@ func (p Process) MSD(n int) float64 {
 	if n == 0 {
 		return 0
 	}
+	return p.MSDCurve(float64(n))
+}
+
+// MSDCurve continues MSD to lags between whole samples, from one sample on, for drawing.
+func (p Process) MSDCurve(n float64) float64 {
 	a := 2 * math.Pi * p.Corner * p.Exposure
 	s, _ := BlurVariance(a)
 	b, _ := BlurCovariance(a)
 	// V (S - B c^n) = V [(S - B) + B (1 - c^n)], which keeps its digits for small lags
-	rise := -math.Expm1(-2 * math.Pi * p.Corner * p.Interval * math.Abs(float64(n)))
+	rise := -math.Expm1(-2 * math.Pi * p.Corner * p.Interval * math.Abs(n))
 	return 2*p.Variance*((s-b)+b*rise) + 2*p.Noise
 }
 
 // Spectrum returns the two-sided power spectrum of the samples at f [Hz], in
 // m2/Hz, aliasing included.
-func (p Process) Spectrum(f float64) float64 {
-	h := math.Sin(math.Pi * f * p.Interval)
-	return p.Interval * newShape(p.Corner*p.Interval, p.relativeExposure()).at(p.Variance, p.Noise, 4*h*h, 0)
+func (p Process) Spectrum(f float64) float64 { return p.SpectrumFunc()(f) }
+
+// SpectrumFunc returns Spectrum as a function, for many frequencies of one process.
+func (p Process) SpectrumFunc() func(f float64) float64 {
+	s := newShape(p.Corner*p.Interval, p.relativeExposure())
+	return func(f float64) float64 {
+		h := math.Sin(math.Pi * f * p.Interval)
+		return p.Interval * s.at(p.Variance, p.Noise, 4*h*h, 0)
+	}
 }
 
 // ExpectedPeriodogram returns the exact mean of the two-sided periodogram
