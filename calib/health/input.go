@@ -9,7 +9,7 @@ import (
 // Input is a recording with what a fit has found out about it. All slices are read only.
 type Input struct {
 	Axes       []Axis
-	Rate       float64 // sampling rate [Hz]
+	Rate       float64 // sampling rate [Hz]; without a positive one nothing that needs time is judged
 	Exposure   float64 // exposure of each sample [s]
 	Missing    int     // samples that are missing on every axis
 	Duplicates int     // samples that came twice and were left out by the reader

@@ -53,10 +53,11 @@ func newView(in Input, a Axis) *view {
 	v := &view{Axis: a, summary: summarise(a.X), rate: in.Rate, exposure: in.Exposure, escapeAt: -1}
 	v.values = survey(a.X, v.summary)
 	n := int(v.total.n)
-	if a.Known {
+	v.Known = a.Known && in.Rate > 0 && known(in.Rate)
+	if v.Known {
 		v.h = newNull(a.Process, n, len(a.X))
 	}
-	if !a.Known || !v.h.usable() {
+	if !v.Known || !v.h.usable() {
 		v.Known = false
 		v.h = newNull(v.rough(), n, len(a.X))
 	}

@@ -46,8 +46,10 @@ func (v *view) distribution() Check {
 	}
 	skew, excess := v.moments()
 	c.Value = excess
-	odd := v.skewBeyondChance(skew) && math.Abs(skew) > skewDoubtful
-	heavy := v.kurtosisBeyondChance(excess) && math.Abs(excess) > kurtosisDoubtful
+	skewZ := skewDeviate(skew, math.Max(v.h.effective(3, v.h.n), 9))
+	kurtosisZ := kurtosisDeviate(excess, math.Max(v.h.effective(4, v.h.n), 20))
+	odd := twoSided(skewZ) < chance/2 && math.Abs(skew) > skewDoubtful
+	heavy := twoSided(kurtosisZ) < chance/2 && math.Abs(excess) > kurtosisDoubtful
 	if !odd && !heavy {
 		c.Text = "The positions are distributed as in a harmonic trap."
 		return c
@@ -65,28 +67,24 @@ func (v *view) distribution() Check {
 	return c
 }
 
-// skewBeyondChance uses the normal transformation of D'Agostino (Biometrika 57 (1970)
-// 679) with the effective number of samples of the third Hermite order.
-func (v *view) skewBeyondChance(g float64) bool {
-	n := math.Max(v.h.effective(3, v.h.n), 9)
+// skewDeviate returns a skewness of n independent samples as a normal deviate, by
+// the transformation of D'Agostino (Biometrika 57 (1970) 679), n >= 8.
+func skewDeviate(g, n float64) float64 {
 	y := g * math.Sqrt((n+1)*(n+3)/(6*(n-2)))
 	b := 3 * (n*n + 27*n - 70) * (n + 1) * (n + 3) / ((n - 2) * (n + 5) * (n + 7) * (n + 9))
 	w2 := math.Sqrt(2*(b-1)) - 1
 	alpha := math.Sqrt(2 / (w2 - 1))
-	z := math.Asinh(y/alpha) / math.Sqrt(math.Log(w2)/2)
-	return twoSided(z) < chance/2
+	return math.Asinh(y/alpha) / math.Sqrt(math.Log(w2)/2)
 }
 
-// kurtosisBeyondChance uses the normal transformation of Anscombe and Glynn (Biometrika
-// 70 (1983) 227) with the effective number of samples of the fourth Hermite order.
-func (v *view) kurtosisBeyondChance(g float64) bool {
-	n := math.Max(v.h.effective(4, v.h.n), 20)
+// kurtosisDeviate returns an excess kurtosis of n independent samples as a normal
+// deviate, by the transformation of Anscombe and Glynn (Biometrika 70 (1983) 227), n >= 20.
+func kurtosisDeviate(g, n float64) float64 {
 	sd := math.Sqrt(24 * n * (n - 2) * (n - 3) / ((n + 1) * (n + 1) * (n + 3) * (n + 5)))
 	y := (g + 6/(n+1)) / sd
 	b := 6 * (n*n - 5*n + 2) / ((n + 7) * (n + 9)) * math.Sqrt(6*(n+3)*(n+5)/(n*(n-2)*(n-3)))
 	a := 6 + 8/b*(2/b+math.Sqrt(1+4/(b*b)))
-	z := ((1 - 2/(9*a)) - math.Cbrt((1-2/a)/(1+y*math.Sqrt(2/(a-4))))) / math.Sqrt(2/(9*a))
-	return twoSided(z) < chance/2
+	return ((1 - 2/(9*a)) - math.Cbrt((1-2/a)/(1+y*math.Sqrt(2/(a-4))))) / math.Sqrt(2/(9*a))
 }
 
 const (

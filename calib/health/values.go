@@ -86,7 +86,7 @@ func (r rail) struck(grid float64) bool {
 }
 
 // grid returns the spacing of which all values are whole multiples apart, or 0 when
-// there is none as large as 1e-4 of the scale.
+// there is none as large as 1e-5 of the scale.
 func grid(v []float64, scale float64) float64 {
 	if len(v) < 16 {
 		return 0
@@ -104,7 +104,7 @@ func grid(v []float64, scale float64) float64 {
 			smallest = min(smallest, d)
 		}
 	}
-	if smallest < 1e-4*scale || math.IsInf(smallest, 0) {
+	if smallest < 1e-5*scale || math.IsInf(smallest, 0) {
 		return 0
 	}
 	for i := 1; i < len(v); i++ {
