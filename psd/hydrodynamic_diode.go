@@ -1,0 +1,279 @@
+package psd
+
+import (
+	"math"
+
+	"beadwell/calib/relaxation"
+)
+
+// Diode is the fitted low-pass of a photodiode.
+type Diode struct {
+	Alpha, AlphaU float64 // prompt share of the signal; AlphaU is NaN when Alpha is at the end of its range
+	F3dB, F3dBU   float64 // [Hz]; F3dBU is NaN when F3dB is at the end of the search
+}
+
+// Diode returns the low-pass that was fitted together with the spectrum, with standard
+// uncertainties that count those of the other parameters; false if none was.
+func (f *Fit) Diode() (Diode, bool) {
+	l, ok := f.Problem.Likelihood.(*freeDiode)
+	if !ok {
+		return Diode{}, false
+	}
+	return l.fitted(f.Maximum.At, f.Total), true
+}
+
+// diode is a power response a + (1-a)/(1 + (f/f3dB)^2), a = alpha^2.
+type diode struct {
+	share float64 // a
+	log   float64 // ln f3dB, f3dB in Hz; +Inf without low-pass
+}
+
+func (h Hydrodynamic) diode() diode {
+	if h.F3dB == 0 {
+		return diode{1, math.Inf(1)}
+	}
+	return diode{h.Alpha * h.Alpha, math.Log(h.F3dB)}
+}
+
+func (d diode) prompt() float64 { return d.share }
+
+func (d diode) power(f float64) float64 { return d.share + (1-d.share)*d.slow(f) }
+
+// slow is the power response 1/(1 + (f/f3dB)^2) of the part that is not prompt.
+func (d diode) slow(f float64) float64 {
+	r := f / math.Exp(d.log)
+	return 1 / (1 + r*r)
+}
+
+// byLog is the derivative of power with respect to ln f3dB.
+func (d diode) byLog(f float64) float64 {
+	s := d.slow(f)
+	return 2 * (1 - d.share) * s * (1 - s)
+}
+
+// freeDiode is the likelihood maximised over the response of the photodiode at every
+// point, so that its maximum is that over all parameters, its information is what is left when
+// the response is unknown (the Schur complement), and its profiles are true ones.
+type freeDiode struct {
+	*whittle
+	given bool
+	from  diode                 // where the search for the response starts
+	drawn relaxation.Parameters // that Density was asked for last
+}
+
+func newFreeDiode(w *whittle, h Hydrodynamic) *freeDiode {
+	d := &freeDiode{whittle: w, given: h.F3dB > 0}
+	d.from = diode{0.1, math.Log(w.lattice.rate / 8)}
+	if d.given {
+		d.from = h.diode()
+	}
+	return d
+}
+
+// response is a detector with what the likelihood says of it at fixed parameters.
+type response struct {
+	diode diode
+	model *model
+	mean  expected
+	value float64
+	grad  [2]float64               // with respect to a and ln f3dB
+	info  [2][2]float64            // their Fisher information
+	cross [2]relaxation.Parameters // and that with the parameters
+}
+
+func (d *freeDiode) try(p relaxation.Parameters, at diode) *response {
+	r := &response{diode: at, model: d.lattice.model(at.power, at.prompt())}
+	r.mean = d.expected(r.model, math.Exp(p[0]), true)
+	r.value = d.sum(p, r.mean)
+	return r
+}
+
+// derive fills in the derivatives.
+func (d *freeDiode) derive(p relaxation.Parameters, r *response) {
+	x := math.Exp(p[0])
+	byShare := d.expected(d.lattice.model(func(f float64) float64 { return 1 - r.diode.slow(f) }, 1), x, false)
+	byLog := d.expected(d.lattice.model(r.diode.byLog, 0), x, false)
+	v, q := d.scale*math.Exp(p[1]), d.scale*p[2]
+	for i, weight := range d.blocks.Weight {
+		m := v*r.mean.value[i] + q
+		s := [2]float64{v * byShare.value[i] / m, v * byLog.value[i] / m}
+		t := relaxation.Parameters{v * r.mean.slope[i] / m, v * r.mean.value[i] / m, d.scale / m}
+		excess := weight * (d.blocks.Power[i]/m - 1)
+		for a := range s {
+			r.grad[a] += excess * s[a]
+			for b := range s {
+				r.info[a][b] += weight * s[a] * s[b]
+			}
+			for b := range t {
+				r.cross[a][b] += weight * s[a] * t[b]
+			}
+		}
+	}
+}
+
+// span is the range of f3dB in units of the sampling rate: outside, the response
+// would be flat over all frequencies of a record.
+const (
+	lowestF3dB  = 1e-3
+	highestF3dB = 30.0
+)
+
+// moved returns the detector after a step, within its range.
+func (d *freeDiode) moved(at diode, share, log float64) diode {
+	rate := math.Log(d.lattice.rate)
+	return diode{math.Max(0, math.Min(1, at.share+share)),
+		math.Max(rate+math.Log(lowestF3dB), math.Min(rate+math.Log(highestF3dB), at.log+log))}
+}
+
+// free tells which of the two can move along the gradient.
+func (d *freeDiode) free(r *response) (free [2]bool) {
+	up, down := d.moved(r.diode, 1e-9, 1e-9), d.moved(r.diode, -1e-9, -1e-9)
+	free[0] = !(up.share == r.diode.share && r.grad[0] >= 0) && !(down.share == r.diode.share && r.grad[0] <= 0)
+	free[1] = !(up.log == r.diode.log && r.grad[1] >= 0) && !(down.log == r.diode.log && r.grad[1] <= 0)
+	return free
+}
+
+// inverse returns the inverse of the information of those that are free, 0 elsewhere.
+func (r *response) inverse(free [2]bool, damping float64) (c [2][2]float64) {
+	a, b, m := r.info[0][0]*(1+damping), r.info[1][1]*(1+damping), r.info[0][1]
+	switch {
+	case free[0] && free[1]:
+		if det := a*b - m*m; det > 1e-13*a*b {
+			return [2][2]float64{{b / det, -m / det}, {-m / det, a / det}}
+		}
+		return [2][2]float64{{1 / a, 0}, {0, 0}}
+	case free[0] && a > 0:
+		c[0][0] = 1 / a
+	case free[1] && b > 0:
+		c[1][1] = 1 / b
+	}
+	return c
+}
+
+const (
+	diodeSteps = 60    // at most; 4 to 8 are usual
+	diodeGain  = 1e-11 // of the log-likelihood at which the search ends
+	diodeLimit = 1e8   // of the damping
+)
+
+// best maximises over the response at fixed parameters, by Fisher scoring.
+func (d *freeDiode) best(p relaxation.Parameters, from diode) *response {
+	r := d.try(p, from)
+	if math.IsInf(r.value, -1) {
+		return r
+	}
+	d.derive(p, r)
+	damping := 0.0
+	for range diodeSteps {
+		c := r.inverse(d.free(r), damping)
+		var step [2]float64
+		for a := range step {
+			step[a] = c[a][0]*r.grad[0] + c[a][1]*r.grad[1]
+		}
+		if gain := step[0]*r.grad[0] + step[1]*r.grad[1]; gain < diodeGain || damping > diodeLimit {
+			break
+		}
+		step[1] = math.Max(-1, math.Min(1, step[1]))
+		next := d.try(p, d.moved(r.diode, step[0], step[1]))
+		if !(next.value > r.value) {
+			damping = math.Max(1e-2, 10*damping)
+			continue
+		}
+		damping /= 10
+		d.derive(p, next)
+		r = next
+	}
+	return r
+}
+
+// Value returns the log-likelihood at the best response.
+func (d *freeDiode) Value(p relaxation.Parameters) float64 {
+	if !inDomain(p) {
+		return math.Inf(-1)
+	}
+	return d.best(p, d.from).value
+}
+
+// Score returns the log-likelihood at the best response, its gradient, and the
+// information that is left when the response is unknown.
+func (d *freeDiode) Score(p relaxation.Parameters) (float64, relaxation.Parameters, relaxation.Matrix) {
+	if !inDomain(p) {
+		return math.Inf(-1), relaxation.Parameters{}, relaxation.Matrix{}
+	}
+	r := d.best(p, d.from)
+	if math.IsInf(r.value, -1) {
+		return r.value, relaxation.Parameters{}, relaxation.Matrix{}
+	}
+	fixed := whittle{blocks: d.blocks, turns: d.turns, lattice: d.lattice, model: r.model, scale: d.scale}
+	value, g, f := fixed.Score(p)
+	c := r.inverse(d.free(r), 0)
+	for i := range g {
+		for j := range g {
+			for a := range c {
+				for b := range c {
+					f[i][j] -= r.cross[a][i] * c[a][b] * r.cross[b][j]
+				}
+			}
+		}
+	}
+	return value, g, f
+}
+
+// Start fits the other parameters with each of a net of responses, and keeps the best.
+func (d *freeDiode) Start(noise float64, noiseFree bool) relaxation.Parameters {
+	start := d.whittle.Start(noise, noiseFree)
+	var directions []relaxation.Parameters
+	if !noiseFree {
+		start[2] = noise / d.scale
+		directions = []relaxation.Parameters{{1, 0, 0}, {0, 1, 0}}
+	}
+	var net []diode
+	if d.given {
+		net = append(net, d.from)
+	}
+	for _, alpha := range []float64{0, 0.3, 0.6} {
+		for _, f3dB := range []float64{0.012, 0.04, 0.12, 0.4} { // of the rate
+			net = append(net, diode{alpha * alpha, math.Log(f3dB * d.lattice.rate)})
+		}
+	}
+	top, at := math.Inf(-1), start
+	for _, n := range net {
+		fixed := &whittle{blocks: d.blocks, turns: d.turns, lattice: d.lattice, scale: d.scale,
+			model: d.lattice.model(n.power, n.prompt())}
+		m, err := relaxation.Problem{Likelihood: fixed, Directions: directions}.Maximise(start)
+		if err == nil && m.Value > top {
+			top, at, d.from = m.Value, m.At, n
+		}
+	}
+	return at
+}
+
+// Density returns the one-sided spectrum of the samples [m2/Hz] at f [Hz] with the best
+// response.
+func (d *freeDiode) Density(p relaxation.Parameters, hz float64) float64 {
+	if m := d.recent.Load(); m != nil && m.corner == math.Exp(p[0]) && d.drawn == p {
+		return d.density(m.model, p, hz)
+	}
+	d.drawn = p
+	return d.density(d.best(p, d.from).model, p, hz)
+}
+
+// fitted returns the best response at p, total being the covariance of the parameters.
+func (d *freeDiode) fitted(p relaxation.Parameters, total relaxation.Matrix) Diode {
+	r := d.best(p, d.from)
+	free := d.free(r)
+	c := r.inverse(free, 0)
+	var u [2]float64
+	for a := range u {
+		var along relaxation.Parameters // change of the response with the parameters
+		for i := range along {
+			along[i] = c[a][0]*r.cross[0][i] + c[a][1]*r.cross[1][i]
+		}
+		u[a] = math.Sqrt(c[a][a] + math.Max(0, total.Form(along, along)))
+		if !free[a] {
+			u[a] = math.NaN()
+		}
+	}
+	alpha, f3dB := math.Sqrt(r.diode.share), math.Exp(r.diode.log)
+	return Diode{Alpha: alpha, AlphaU: u[0] / (2 * alpha), F3dB: f3dB, F3dBU: u[1] * f3dB}
+}

@@ -1,0 +1,205 @@
+package psd
+
+import (
+	"math"
+	"sync/atomic"
+
+	"beadwell/calib/relaxation"
+)
+
+// whittle is the likelihood of a hydrodynamic spectrum.
+type whittle struct {
+	blocks  relaxation.Blocks
+	turns   []complex128 // 1 - exp(2 pi i f dt) of the blocks
+	lattice *lattice
+	model   *model
+	scale   float64
+	recent  atomic.Pointer[folded] // of the corner that Density was asked for last
+}
+
+func newWhittle(l *lattice, b relaxation.Blocks, scale float64) *whittle {
+	w := &whittle{blocks: b, lattice: l, scale: scale}
+	for _, s := range l.blocks {
+		sine, cosine := math.Sincos(math.Pi * s.hz / l.rate)
+		w.turns = append(w.turns, complex(2*sine*sine, -2*sine*cosine))
+	}
+	return w
+}
+
+// Scale returns the unit of variance [m2].
+func (w *whittle) Scale() float64 { return w.scale }
+
+// The domain of the search, that of package relaxation: corner frequencies in units of the
+// sampling rate, and logarithms of the variance.
+const (
+	lowestCorner  = 1e-9
+	highestCorner = 3.0
+	largestLog    = 60
+)
+
+func inDomain(p relaxation.Parameters) bool {
+	x := math.Exp(p[0])
+	return x > lowestCorner && x < highestCorner && math.Abs(p[1]) < largestLog && !math.IsNaN(p[2])
+}
+
+// expected is the mean of the blocked periodogram for V = 1 and q = 0, and its
+// derivative with respect to ln fc.
+type expected struct{ value, slope []float64 }
+
+// expected evaluates a model with the given response at infinite frequency.
+func (w *whittle) expected(m *model, x float64, finite bool) expected {
+	c := newClosed(x, w.lattice.exposure)
+	f := m.fold(x)
+	n := len(w.blocks.Sigma)
+	e := expected{make([]float64, n), make([]float64, n)}
+	for i, sigma := range w.blocks.Sigma {
+		d := c.gap + c.decay*sigma
+		dd := c.dgap + c.ddecay*sigma
+		// The mean over a block to second order in its width, as that of 1/d.
+		r := c.decay * c.decay * w.blocks.SigmaVar[i] / (d * d)
+		dr := 2 * r * (c.ddecay/c.decay - dd/d)
+		own, down := m.blocks[i].at(x)
+		other, dother := f.at(&w.lattice.rows[i])
+		inner := m.prompt*c.pole/d + own
+		dinner := m.prompt*(c.dpole/d-c.pole*dd/(d*d)) + down
+		e.value[i] = inner*(1+r) + m.prompt*c.level + other
+		e.slope[i] = dinner*(1+r) + inner*dr + m.prompt*c.dlevel + dother
+		if finite {
+			v, s := c.leakage(w.turns[i], w.blocks.Samples)
+			e.value[i] += v
+			e.slope[i] += s
+		}
+	}
+	return e
+}
+
+// Value returns the log-likelihood.
+func (w *whittle) Value(p relaxation.Parameters) float64 {
+	if !inDomain(p) {
+		return math.Inf(-1)
+	}
+	return w.sum(p, w.expected(w.model, math.Exp(p[0]), true))
+}
+
+func (w *whittle) sum(p relaxation.Parameters, e expected) float64 {
+	v, q := w.scale*math.Exp(p[1]), w.scale*p[2]
+	sum := 0.0
+	for i, weight := range w.blocks.Weight {
+		m := v*e.value[i] + q
+		if !(m > 0) {
+			return math.Inf(-1)
+		}
+		sum -= weight * (math.Log(m/w.scale) + w.blocks.Power[i]/m)
+	}
+	return sum
+}
+
+// Score returns the log-likelihood, its gradient and the Fisher information
+// sum w (d ln P)(d ln P)' (Whittle, Ark. Mat. 2 (1953) 423).
+func (w *whittle) Score(p relaxation.Parameters) (float64, relaxation.Parameters, relaxation.Matrix) {
+	var g relaxation.Parameters
+	var f relaxation.Matrix
+	if !inDomain(p) {
+		return math.Inf(-1), g, f
+	}
+	e := w.expected(w.model, math.Exp(p[0]), true)
+	value := w.sum(p, e)
+	if math.IsInf(value, -1) {
+		return value, g, f
+	}
+	v, q := w.scale*math.Exp(p[1]), w.scale*p[2]
+	for i, weight := range w.blocks.Weight {
+		m := v*e.value[i] + q
+		d := relaxation.Parameters{v * e.slope[i] / m, v * e.value[i] / m, w.scale / m}
+		r := weight * (w.blocks.Power[i]/m - 1)
+		for a := range d {
+			g[a] += r * d[a]
+			for b := range d {
+				f[a][b] += weight * d[a] * d[b]
+			}
+		}
+	}
+	return value, g, f
+}
+
+// Start returns where the relaxation process fits best on a coarse net.
+func (w *whittle) Start(noise float64, noiseFree bool) relaxation.Parameters {
+	return relaxation.NewSpectral(w.blocks, nil, w.lattice.exposure, w.scale).Start(noise, noiseFree)
+}
+
+// Density returns the one-sided spectrum of the samples [m2/Hz] at f [Hz], from 0 to
+// half the sampling rate: with detector, exposure, aliases and noise.
+func (w *whittle) Density(p relaxation.Parameters, hz float64) float64 {
+	return w.density(w.model, p, hz)
+}
+
+func (w *whittle) density(m *model, p relaxation.Parameters, hz float64) float64 {
+	x := math.Exp(p[0])
+	f := w.recent.Load()
+	if f == nil || f.corner != x || f.model != m {
+		f = m.fold(x)
+		w.recent.Store(f)
+	}
+	l := w.lattice
+	phi := hz / l.rate
+	c := newClosed(x, l.exposure)
+	half := math.Sin(math.Pi * phi)
+	t := m.term(l.at(phi, false, 1))
+	own, _ := t.at(x)
+	row := chebyshevRow(phi)
+	other, _ := f.at(&row)
+	unit := m.prompt*(c.pole/(c.gap+4*c.decay*half*half)+c.level) + own + other
+	return 2 * (w.scale*math.Exp(p[1])*unit + w.scale*p[2]) / l.rate
+}
+
+// closed holds what the spectrum of the relaxation process needs at one corner
+// frequency: with c = exp(-2 pi fc dt), d = (1-c)^2 + c sigma, sigma = 4 sin^2(pi f dt), and a = 2 pi fc W
+//
+//	P/dt = V [B (1-c^2)/d + S - B],
+//
+// S and B those of relaxation.BlurVariance and BlurCovariance. Derivatives are with
+// respect to ln fc.
+type closed struct {
+	step           float64 // 2 pi fc dt
+	decay, ddecay  float64 // c
+	fall           float64 // 1 - c
+	gap, dgap      float64 // (1-c)^2
+	pole, dpole    float64 // B (1-c^2)
+	level, dlevel  float64 // S - B
+	correl, dcorel float64 // B
+}
+
+// newClosed takes fc dt and W/dt.
+func newClosed(x, exposure float64) closed {
+	rho := 2 * math.Pi * x
+	a := rho * exposure
+	s, ds := relaxation.BlurVariance(a)
+	b, db := relaxation.BlurCovariance(a)
+	c := closed{step: rho, decay: math.Exp(-rho), fall: -math.Expm1(-rho), correl: b, dcorel: a * db}
+	c.ddecay = -rho * c.decay
+	c.gap, c.dgap = c.fall*c.fall, -2*c.fall*c.ddecay
+	two := -math.Expm1(-2 * rho)
+	c.pole, c.dpole = b*two, a*db*two-2*b*c.decay*c.ddecay
+	c.level, c.dlevel = s-b, a*(ds-db)
+	return c
+}
+
+// leakage returns by how much the mean periodogram of n samples differs from the
+// spectrum, for V = 1, and the derivative with respect to ln fc: with z = c exp(2 pi i f dt)
+//
+//	-(2 B/n) Re[z (1 - c^n)/(1 - z)^2],
+//
+// the exact mean periodogram of the sampled relaxation process. turn = 1 - exp(2 pi i f dt).
+func (c *closed) leakage(turn complex128, n int) (value, slope float64) {
+	decay := complex(c.decay, 0)
+	rest := complex(c.fall, 0) + decay*turn // 1 - z
+	z := decay * (1 - turn)
+	u := z / (rest * rest)
+	du := complex(-c.step, 0) * u * (1 + z) / rest
+	span := c.step * float64(n)
+	left := -math.Expm1(-span)
+	by := -2 / float64(n)
+	value = by * c.correl * left * real(u)
+	slope = by * (c.dcorel*left*real(u) + c.correl*span*math.Exp(-span)*real(u) + c.correl*left*real(du))
+	return value, slope
+}
