@@ -3,6 +3,7 @@ package figure
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 
 	"beadwell/calib"
@@ -43,8 +44,11 @@ func estimates(r *calib.Result) Figure {
 		return f.empty("the result holds no stiffness estimate")
 	}
 	f.height += 6
-	f.key = []keyItem{{"by drag", dots, drag}, {"by amplitude", squares, ampl}, {"adopted", span, adoptedTint},
-		{"68 %", bar68, text}, {"95 %", bar95, text}}
+	f.key = []keyItem{{"by drag", dots, drag}, {"by amplitude", squares, ampl}}
+	if slices.ContainsFunc(r.Axes, func(a calib.Axis) bool { return a.Adopted.Stiffness.Known() }) {
+		f.key = append(f.key, keyItem{"adopted", span, adoptedTint})
+	}
+	f.key = append(f.key, keyItem{"68 %", bar68, text}, keyItem{"95 %", bar95, text})
 	return f.described("Stiffness estimates with intervals of 68 % (thick) and 95 % (thin), combined uncertainty. " +
 		strings.Join(described, " "))
 }

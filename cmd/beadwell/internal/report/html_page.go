@@ -12,18 +12,19 @@ import (
 
 // page is what the template shows, all of it text for a reader.
 type page struct {
-	Policy   string
-	Style    template.CSS
-	Program  string
-	Name     string
-	Lead     string
-	Verdict  shownVerdict
-	Answers  []answer
-	Contents []jump
-	Findings []shownFinding
-	Figures  []figureGroup
-	Sections []section
-	JSON     template.JS
+	Policy     string
+	Style      template.CSS
+	Program    string
+	Name       string
+	Lead       string
+	Verdict    shownVerdict
+	Answers    []answer
+	AnswerNote string
+	Contents   []jump
+	Findings   []shownFinding
+	Figures    []figureGroup
+	Sections   []section
+	JSON       template.JS
 }
 
 type shownVerdict struct{ Status, Class, Mark, Word, Text, Reason string }
@@ -66,6 +67,9 @@ func pageOf(r *calib.Result) (page, error) {
 	}
 	for _, axis := range r.Axes {
 		p.Answers = append(p.Answers, answerOf(axis))
+		if axis.Adopted.Stiffness.Known() {
+			p.AnswerNote = "In brackets: the combined standard uncertainty of the last digits."
+		}
 	}
 	for _, f := range r.Findings {
 		p.Findings = append(p.Findings, findingOf(f))
