@@ -286,19 +286,21 @@ func usualStep(t []float64) float64 {
 	return sum / float64(n)
 }
 
-// uneven names the first stamp beyond the tolerance, else the worst one.
+// uneven names the first step that is far from a multiple of the usual one,
+// else the stamp that is farthest from the grid.
 func (g *grid) uneven(t []float64, place []int) *gridFault {
-	worst, distance := 0, -1.0
-	for i, v := range t {
-		r := math.Abs(v - g.start - g.interval*float64(place[i]))
-		if r > distance {
-			worst, distance = i, r
-		}
-		if r > jitterMax*g.interval {
+	worst, distance := 1, -1.0
+	usual := usualStep(t)
+	for i := 1; i < len(t); i++ {
+		steps := (t[i] - t[i-1]) / usual
+		if off := math.Abs(steps - max(math.Round(steps), 1)); off > 0.35 {
+			worst = i
 			break
 		}
+		if r := math.Abs(t[i] - g.start - g.interval*float64(place[i])); r > distance {
+			worst, distance = i, r
+		}
 	}
-	worst = max(worst, 1)
 	return &gridFault{worst, fmt.Sprintf("the time steps are uneven: %s here, %s on average; the stamps lie %.0f %% of a step off an even grid (root mean square), the limits are %.0f %% and %.0f %% at most",
 		seconds(t[worst]-t[worst-1]), seconds(g.interval), 100*g.rms/g.interval, 100*jitterRMS, 100*jitterMax), timeRemedy}
 }
