@@ -114,7 +114,7 @@ What to do: calibrate the parts apart; look at the sample.` + caution,
 	{
 		Code: "rough-steps", Title: "steps that are too large", unit: "1",
 		reason: "Lost samples that leave no gap, and single wrong positions, distort the fast part of the spectrum and the noise.",
-		Long: `Looked at: the excess kurtosis of the steps from each sample to the next, which is 0 for a trapped bead whatever its trap. If a share p of the steps span two intervals it is about 3p. Doubtful beyond 4.2 standard deviations and above 0.02, bad above 5.
+		Long: `Looked at: the excess kurtosis of the steps from each sample to the next, which is 0 for a trapped bead whatever its trap. If a share p of the steps span two intervals it is about 3p. Doubtful beyond 3.8 standard deviations and above 0.02, bad above 5.
 What to do: compare the frame numbers of camera and file, record with time stamps, look at the largest steps in the track.`,
 	},
 	{

@@ -113,9 +113,9 @@ func alarmed(checks []Check, code string, least Level) bool {
 }
 
 // TestDetection counts how often each fault is found. With a true rate of 99 % the
-// chance of fewer than 18 in 20 is 1e-3; the wanted rate is 90 %.
+// chance of fewer than 9 in 10 is 4e-3, with 50 % that of 9 or more is 1 %; the seeds are fixed.
 func TestDetection(t *testing.T) {
-	const repeats = 20
+	const repeats = 10
 	for _, tr := range trials() {
 		t.Run(tr.name, func(t *testing.T) {
 			t.Parallel()
@@ -129,40 +129,40 @@ func TestDetection(t *testing.T) {
 					found++
 				}
 			}
-			if found < repeats-2 {
-				t.Errorf("%s found in %d of %d, want at least %d", tr.code, found, repeats, repeats-2)
+			if found < repeats-1 {
+				t.Errorf("%s found in %d of %d, want at least %d", tr.code, found, repeats, repeats-1)
 			}
 		})
 	}
 }
 
-// TestFalseAlarms counts alarms on clean recordings of three axes. 300 recordings at
-// a true rate of 1 % give more than 9 with a probability of 1e-3.
+// TestFalseAlarms counts alarms on clean recordings of three axes. 180 recordings at
+// a true rate of 1 % give more than 6 with a probability of 3e-3.
 func TestFalseAlarms(t *testing.T) {
 	random := rand.New(rand.NewPCG(3, 14))
 	regimes := []regime{
 		{0.01, 30, 0, 0.5}, {0.01, 100, 1, 0}, {0.1, 30, 1, 0}, {0.1, 300, 0.3, 0.1}, {0.3, 300, 0, 0.2}, {1, 5000, 1, 0},
 	}
-	const repeats = 50
-	alarms := map[string]int{}
+	const repeats = 30
+	alarms := 0
 	for _, r := range regimes {
 		for range repeats {
 			truth := r.truth(3)
 			in := fitted(simulate.Record(truth, random.Uint64()), truth.Rate, truth.Exposure)
-			any := false
+			alarm := false
 			for _, c := range Run(in) {
 				if c.Level != OK {
-					any = true
+					alarm = true
 					t.Logf("%+v: %s %s: %s", r, c.Code, c.Axis, c.Text)
 				}
 			}
-			if any {
-				alarms["any"]++
+			if alarm {
+				alarms++
 			}
 		}
 	}
-	if alarms["any"] > 9 {
-		t.Errorf("%d of %d clean recordings raised an alarm, want at most 9", alarms["any"], repeats*len(regimes))
+	if alarms > 6 {
+		t.Errorf("%d of %d clean recordings raised an alarm, want at most 6", alarms, repeats*len(regimes))
 	}
 }
 

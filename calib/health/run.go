@@ -72,7 +72,7 @@ func newView(in Input, a Axis) *view {
 	}
 	at, beyond, ok := escaped(v.blocks)
 	if v.beyond = beyond; ok {
-		v.escapeAt = at
+		v.escapeAt = before(v.blocks, at, v.length)
 	}
 	v.mean = v.judgeMean()
 	v.spell = v.judgeSpell(v.levelledBlocks())

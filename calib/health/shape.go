@@ -103,6 +103,9 @@ func (v *view) roughSteps() Check {
 	if why := v.upset(); why != "" {
 		return c.spared(why)
 	}
+	if v.coarseSteps() {
+		return c.spared("the values are too coarse for single steps")
+	}
 	n := v.total.steps
 	m2, m4 := v.total.d2/n, v.total.d4/n
 	c.Value = m4/(m2*m2) - 3
@@ -113,7 +116,7 @@ func (v *view) roughSteps() Check {
 	first := (2*share*decay - 1 - share*decay*decay) / one
 	later := share * decay * (2 - 1/decay - decay) / one // at lag 2, decays with c from there
 	inflation := 1 + 2*math.Pow(first, 4) + 2*math.Pow(later*decay, 4)/-math.Expm1(-4*v.h.rho)
-	z := c.Value / math.Sqrt(24*inflation/n)
+	z := kurtosisDeviate(c.Value, math.Max(n/inflation, 20))
 	if !(z > stepsBeyond) || c.Value < stepsFloor {
 		c.Text = "The steps from sample to sample are those of a bead."
 		return c
@@ -128,6 +131,6 @@ func (v *view) roughSteps() Check {
 }
 
 const (
-	stepsBeyond = 4.2  // deviates; the kurtosis of few steps is skewed, and 4.2 is rare for 100 of them too
+	stepsBeyond = 3.8  // deviates, one-sided: 7e-5
 	stepsFloor  = 0.02 // 1 % of steps over two intervals make 0.03
 )

@@ -162,6 +162,19 @@ func onset(blocks []block, i int, m, sd float64) int {
 	return max(i-1, 0)
 }
 
+// before goes back further, by the time that a free bead may take from the trap to
+// the first excursion: it diffuses over 9 standard deviations in 40 relaxation times, and
+// seldom takes more than 100. The relaxation time comes from the motion before. At most a
+// fifth of what is there is given away.
+func before(blocks []block, onset, length int) int {
+	var p part
+	for _, b := range blocks[:onset] {
+		p.add(b)
+	}
+	margin := 100 / math.Max(p.whiteness(), 1e-9) / float64(length)
+	return onset - int(math.Min(math.Ceil(margin), float64(onset)/5))
+}
+
 // walks tells whether the means of sixteen parts scatter more than the positions
 // within the parts. The ratio of the two variances is about 8 for free diffusion,
 // and 32 tau/T for a trapped bead in a stretch of length T.

@@ -203,14 +203,14 @@ func (v *view) frozenSamples() Check {
 		return c.spared("no two neighbouring samples are there")
 	}
 	steps := v.total.steps
-	share := v.total.equal / steps
-	chance := v.equalByChance()
-	// on a grid, runs of equal samples are long: their number scatters more than that of single ones
-	c.Value = math.Max(share-chance, 0)
-	margin := 0.2*chance + 8*math.Sqrt(chance/steps)
-	switch {
-	case chance > 0.3:
+	if v.coarseSteps() {
 		return c.spared("the values are so coarse that neighbours are often equal by themselves")
+	}
+	chance := v.equalByChance()
+	c.Value = math.Max(v.total.equal/steps-chance, 0)
+	// on a grid, equal samples come in bunches: their number scatters more than that of single ones
+	margin := 0.1*chance + 8*math.Sqrt(chance/steps)
+	switch {
 	case c.Value < frozenDoubtful+margin:
 		c.Text = "Samples do not repeat more often than chance makes them."
 		return c
@@ -228,14 +228,22 @@ func (v *view) frozenSamples() Check {
 	return c
 }
 
+// coarseSteps tells whether the spacing of the values is so large, against the steps
+// between neighbours, that rounding has changed the distribution of the steps.
+func (v *view) coarseSteps() bool {
+	grid := v.values.grid / v.scale
+	return grid*grid > 0.5*v.total.d2/math.Max(v.total.steps, 1)
+}
+
 // equalByChance returns the share of neighbours that rounding to the grid makes
-// equal: the mean of max(0, 1 - |d|/grid) over normal steps d.
+// equal: the mean of max(0, 1 - |d|/grid) over normal steps d. Rounding has added
+// grid^2/6 to the mean square of the steps.
 func (v *view) equalByChance() float64 {
-	sd := math.Sqrt(v.total.d2/math.Max(v.total.steps-v.total.equal, 1)) * v.scale
-	if v.values.grid == 0 || sd == 0 {
+	if v.values.grid == 0 {
 		return 0
 	}
-	a := v.values.grid / sd
+	grid := v.values.grid / v.scale
+	a := grid / math.Sqrt(v.total.d2/v.total.steps-grid*grid/6)
 	density := func(x float64) float64 { return math.Exp(-x*x/2) / math.Sqrt(2*math.Pi) }
 	return math.Erf(a/math.Sqrt2) - 2/a*(density(0)-density(a))
 }
