@@ -1,0 +1,234 @@
+package calib
+
+import (
+	"fmt"
+	"math"
+	"strings"
+
+	"beadwell/calib/drag"
+	"beadwell/calib/relaxation"
+)
+
+// Codes of the findings of a plan, beside those of a calibration.
+const (
+	CodeSlowRate      = "corner-above-half-rate"
+	CodeBlurred       = "exposure-averages-motion"
+	CodeFloor         = "inputs-limit-uncertainty"
+	CodeCloseSurface  = "surface-close"
+	CodeDriftMatters  = "drift-limit"
+	CodeExactInputs   = "inputs-without-uncertainty"
+	CodeNoiseDominant = "noise-above-motion"
+)
+
+// Limits of the findings of a plan.
+const (
+	muchBlur     = 0.2 // share of the variance that the exposure takes away
+	closeSurface = 2.0 // height of the centre over the radius: the wall factor is 1.38 and rises by 5 % for 10 %
+)
+
+// findings says what to look out for.
+func (f *forecast) findings(p *Plan) []Finding {
+	var out []Finding
+	for _, one := range []func(*Plan) (Finding, bool){f.assumed, f.exactInputs, f.slowRate, f.blurred, f.noiseFindings, f.short, f.surface,
+		f.inertia, f.drift, f.limit} {
+		if finding, ok := one(p); ok {
+			finding.Axis = f.axis
+			out = append(out, finding)
+		}
+	}
+	return out
+}
+
+func planFinding(code, severity, text, remedy string, value, limit float64, unit string) (Finding, bool) {
+	return Finding{Code: code, Severity: severity, Text: text, Remedy: remedy, Value: Float(value), Limit: Float(limit), Unit: unit}, true
+}
+
+func (f *forecast) assumed(*Plan) (Finding, bool) {
+	var named []string
+	for _, s := range f.set.All() {
+		if s.Assumed {
+			named = append(named, fmt.Sprintf("%s = %s", s.Key, s.Text))
+		}
+	}
+	if len(named) == 0 {
+		return Finding{}, false
+	}
+	return planFinding(CodeAssumed, Note, "Not stated, and assumed: "+strings.Join(named, ", ")+".", "state it as it will be", math.NaN(), math.NaN(), "")
+}
+
+// exactInputs names inputs whose uncertainty is always there, and was not stated.
+func (f *forecast) exactInputs(*Plan) (Finding, bool) {
+	var named []string
+	for _, in := range f.phys.influences {
+		switch in.name {
+		case "temperature", "bead diameter", "height", "pixel size", "sensitivity":
+			if in.u == 0 {
+				named = append(named, in.name)
+			}
+		}
+	}
+	if len(named) == 0 {
+		return Finding{}, false
+	}
+	return planFinding(CodeExactInputs, Note, capital(join(named))+" "+plural(len(named), "is", "are")+" stated without an uncertainty and taken as exact; what the plan calls combined is too small by that.",
+		`state each with its standard uncertainty, such as "1.02(3) um"`, float64(len(named)), math.NaN(), "1")
+}
+
+func (f *forecast) slowRate(*Plan) (Finding, bool) {
+	if f.corner < f.rate/2 {
+		return Finding{}, false
+	}
+	return planFinding(CodeSlowRate, Doubtful, fmt.Sprintf("The corner frequency of %.4g Hz lies above half the sampling rate; %.2g of the correlation is left from one sample to the next, and the drag route lives on that.",
+		f.corner, math.Exp(-2*math.Pi*f.corner/f.rate)), fmt.Sprintf("record at %.2g Hz or more, or with less stiffness", 4*f.corner), f.corner, f.rate/2, "Hz")
+}
+
+func (f *forecast) blurred(*Plan) (Finding, bool) {
+	s, _ := relaxation.BlurVariance(2 * math.Pi * f.corner * f.exposure)
+	if 1-s < muchBlur {
+		return Finding{}, false
+	}
+	return planFinding(CodeBlurred, Doubtful, fmt.Sprintf("The exposure averages %.0f %% of the variance away; the correction rests on the exposure and the corner frequency.", 100*(1-s)),
+		fmt.Sprintf("expose for %.2g ms or less, and state the uncertainty of the exposure", 1e3*blurExposure(f.corner)), 1-s, muchBlur, "1")
+}
+
+// blurExposure is the exposure [s] that takes about a tenth of the variance: S = 1 - a/3.
+func blurExposure(corner float64) float64 { return 0.3 / (2 * math.Pi * corner) }
+
+func (f *forecast) noiseFindings(p *Plan) (Finding, bool) {
+	reference := f.at(f.rate, max(leastPlanned, f.samples(float64(p.Rates.Duration), f.rate))).routes
+	if !f.noise.Known && !(float64(reference.Amplitude.Statistical) <= hopeless && float64(reference.Drag.Statistical) <= hopeless) {
+		return planFinding(CodeNoiseUnknown, Doubtful, "The localisation noise is not stated, and at this rate it cannot be told from the motion of the bead: the stiffness will rest on the computed drag.",
+			`measure the noise with a stuck bead and state it with --noise "4(1) nm"`, float64(reference.Amplitude.Statistical), hopeless, "1")
+	}
+	s, _ := relaxation.BlurVariance(2 * math.Pi * f.corner * f.exposure)
+	if f.noise.Variance < s*f.variance {
+		return Finding{}, false
+	}
+	return planFinding(CodeNoiseDominant, Doubtful, fmt.Sprintf("The localisation noise of %.3g nm exceeds the recorded motion of %.3g nm (root mean square).",
+		1e9*math.Sqrt(f.noise.Variance), 1e9*math.Sqrt(s*f.variance)), "use more light, a brighter bead, or less stiffness", f.noise.Variance/(s*f.variance), 1, "1")
+}
+
+func (f *forecast) short(p *Plan) (Finding, bool) {
+	if p.Wanted == nil || !p.Wanted.Both.Known() {
+		return Finding{}, false
+	}
+	periods := float64(p.Wanted.Both.Value) * f.corner
+	if periods >= shortRelaxations {
+		return Finding{}, false
+	}
+	return planFinding(CodeShort, Note, fmt.Sprintf("The duration for the wanted uncertainty is %.3g times 1/fc; so short a recording does somewhat worse than the bound.", periods),
+		fmt.Sprintf("record for %.2g s or longer", shortRelaxations/f.corner), periods, shortRelaxations, "1")
+}
+
+func (f *forecast) surface(*Plan) (Finding, bool) {
+	if !f.phys.walled {
+		if s, ok := f.set.Lookup("chamber.height", ""); ok && s.Word == "far" {
+			return Finding{}, false
+		}
+		factor, err := nearFactor(f.phys.radius, 10*f.phys.radius)
+		if err != nil {
+			return Finding{}, false
+		}
+		return planFinding(CodeNoHeight, Note, fmt.Sprintf("No height is stated, and the bead is taken to be far from any surface; at ten radii the drag is already %.0f %% larger.", 100*(factor-1)),
+			`state it with --height "8.0(5) um", or --height far`, factor-1, math.NaN(), "1")
+	}
+	ratio := f.phys.height / f.phys.radius
+	if ratio >= closeSurface {
+		return Finding{}, false
+	}
+	return planFinding(CodeCloseSurface, Doubtful, fmt.Sprintf("The centre of the bead is %.3g radii above the surface: the wall factor is %.3g, and changes by %.2g %% for 1 %% in height.",
+		ratio, f.phys.wall.Factor, math.Abs(f.phys.wall.LogSlopeHeight)), "trap the bead higher, or measure the height well", ratio, closeSurface, "1")
+}
+
+// inertia computes how far a fit with constant drag would miss.
+func (f *forecast) inertia(p *Plan) (Finding, bool) {
+	bias, ok := f.inertialBias(max(leastPlanned, f.samples(float64(p.Rates.Duration), f.rate)))
+	limit := hydroBias * float64(f.at(f.rate, max(leastPlanned, f.samples(float64(p.Rates.Duration), f.rate))).routes.Drag.Statistical)
+	if !ok || math.Abs(bias) < limit {
+		return Finding{}, false
+	}
+	return planFinding(CodeHydrodynamics, Doubtful, fmt.Sprintf("The inertia of the liquid matters at this rate: a fit with constant drag up to half the rate would be off by %+.2g %% in corner frequency.", 100*math.Expm1(bias)),
+		"calibrate with frequency-dependent drag, or restrict the fit with --band to a few times the corner frequency", bias, limit, "1")
+}
+
+// foldedAliases is the number of aliases on either side that are summed: the ratio of two
+// spectra that both fall as 1/f^2 or faster needs no more.
+const foldedAliases = 20
+
+// inertialBias returns the shift of ln fc when the spectrum of a bead with the inertia of
+// the liquid (Berg-Sorensen and Flyvbjerg, Rev. Sci. Instrum. 75 (2004) 594) is fitted by
+// that of constant drag. A bead of unstated density is taken to float.
+func (f *forecast) inertialBias(n int) (float64, bool) {
+	if math.IsNaN(f.phys.density) || f.corner > f.rate/4 {
+		return 0, false
+	}
+	density := f.phys.beadDensity
+	if math.IsNaN(density) {
+		density = f.phys.density
+	}
+	g := drag.Frequency{Radius: f.phys.radius, Height: f.phys.height, Viscosity: f.phys.viscosity, Density: f.phys.density,
+		StaticFactor: f.phys.wall.Factor, Perpendicular: !f.phys.parallel}
+	if g.Check() != nil {
+		return 0, false
+	}
+	stokes := drag.Stokes(f.phys.viscosity, f.phys.radius)
+	inertial := stokes / (2 * math.Pi * 4 / 3 * math.Pi * math.Pow(f.phys.radius, 3) * density)
+	free := f.kappa / (2 * math.Pi * stokes)
+	inert := func(x float64) float64 {
+		c := g.Factor(x)
+		return real(c) / (square(free+x*imag(c)-x*x/inertial) + square(x*real(c)))
+	}
+	static := func(x float64) float64 {
+		return f.phys.wall.Factor / (free*free + square(x*f.phys.wall.Factor))
+	}
+	blocks := planBlocks(n)
+	process := relaxation.Process{Corner: f.corner, Variance: f.variance, Noise: f.noise.Variance, Interval: 1 / f.rate, Exposure: f.exposure}
+	for i, x := range blocks.Frequency {
+		white := f.noise.Variance
+		blocks.Power[i] = white + (process.Spectrum(x*f.rate)*f.rate-white)*f.folded(inert, x)/f.folded(static, x)
+	}
+	problem := relaxation.Problem{Likelihood: relaxation.NewSpectral(blocks, nil, f.exposure*f.rate, f.variance)}
+	if f.noise.Known {
+		problem.Directions = []relaxation.Parameters{{1, 0, 0}, {0, 1, 0}}
+	}
+	start := relaxation.Parameters{math.Log(f.corner / f.rate), 0, f.noise.Variance / f.variance}
+	m, err := problem.Maximise(start)
+	if err != nil {
+		return 0, false
+	}
+	return m.At[0] - start[0], true
+}
+
+// folded sums a two-sided spectrum over the aliases of x, in units of the rate, with the
+// blur of the exposure.
+func (f *forecast) folded(spectrum func(f float64) float64, x float64) float64 {
+	sum := 0.0
+	for m := -foldedAliases; m <= foldedAliases; m++ {
+		v := math.Abs(x+float64(m)) * f.rate
+		blur := 1.0
+		if a := math.Pi * v * f.exposure; a > 1e-6 {
+			blur = square(math.Sin(a) / a)
+		}
+		sum += blur * spectrum(v)
+	}
+	return sum
+}
+
+func (f *forecast) drift(p *Plan) (Finding, bool) {
+	n := max(leastPlanned, f.samples(float64(p.Rates.Duration), f.rate))
+	s := float64(f.at(f.rate, n).routes.Amplitude.Statistical)
+	if math.IsNaN(s) {
+		return Finding{}, false
+	}
+	limit := math.Sqrt(s * f.variance)
+	return planFinding(CodeDriftMatters, Note, fmt.Sprintf("A straight drift is removed. One that wanders by %.3g nm (root mean square) within %.3g s moves the amplitude route by its statistical uncertainty.",
+		1e9*limit, float64(p.Rates.Duration)), "let the stage settle, or cut long recordings into several", limit, math.NaN(), "m")
+}
+
+func (f *forecast) limit(p *Plan) (Finding, bool) {
+	if p.Floor.Dominant == "" || !p.Enough.Known() {
+		return Finding{}, false
+	}
+	return planFinding(CodeFloor, Note, fmt.Sprintf("Longer than %.2g s gains little: the inputs leave %.2g %%, and %s dominates.",
+		float64(p.Enough.Value), 100*float64(p.Floor.Both), p.Floor.Dominant), "measure the "+p.Floor.Dominant+" better", float64(p.Floor.Both), math.NaN(), "1")
+}
