@@ -7,7 +7,6 @@ import (
 	"fmt"
 	"io"
 	"math"
-	"slices"
 	"strings"
 )
 
@@ -136,62 +135,6 @@ func wantedDelimiter(opt Options, sample []byte) (byte, error) {
 	return 0, nil
 }
 
-// noRows is the error of a sample without a single row of numbers.
-func (v *view) noRows(name string) error {
-	for i := len(v.lines) - 1; i >= max(0, len(v.lines)-50); i-- {
-		if isBlank(v.lines[i].text) {
-			continue
-		}
-		for _, d := range delimiters {
-			if h := newHeaderRow(v.lines[i], cellTexts(v.lines[i].text, d.char)); h.roles > 0 {
-				return &Error{File: name, Line: v.lines[i].number, Code: CodeEmpty, What: "the file has a header but no data", Remedy: "check that the export is complete"}
-			}
-		}
-	}
-	return &Error{File: name, Line: 1, Code: CodeFormat, What: "no rows of numbers are found", Remedy: "give a table of text with one row per sample and a column for each axis"}
-}
-
-// checkShape refuses tables that are too wide, lie on their side, or follow
-// another table.
-func (v *view) checkShape(name string) error {
-	line := v.lines[v.first].number
-	rows := 0
-	for i := v.first; i < len(v.lines); i++ {
-		if v.cells[i] != nil {
-			rows++
-		}
-	}
-	if rows <= 12 && v.width >= 64 {
-		return &Error{File: name, Line: line, Code: CodeLayout, What: fmt.Sprintf("the table has %d rows of %d cells: it seems to lie on its side", rows, v.width),
-			Remedy: "transpose it: one row per sample, one column per axis"}
-	}
-	if v.width > columnLimit {
-		return &Error{File: name, Line: line, Code: CodeLimit, What: fmt.Sprintf("the table has %d columns, the limit is %d", v.width, columnLimit), Remedy: "export only the columns that are needed"}
-	}
-	run, from := 0, 0
-	for i := range v.first {
-		numbers := 0
-		for _, k := range v.kinds[i] {
-			if k == numberCell {
-				numbers++
-			}
-		}
-		if numbers < len(v.kinds[i]) || numbers < 2 {
-			run = 0
-			continue
-		}
-		if run++; run == 1 {
-			from = v.lines[i].number
-		}
-		if run >= 3 {
-			return &Error{File: name, Line: line, Code: CodeLayout,
-				What:   fmt.Sprintf("a second table starts here: rows of %d cells, after rows of %d cells from line %d on", v.width, len(v.kinds[i]), from),
-				Remedy: "keep one table in the file"}
-		}
-	}
-	return nil
-}
-
 // commaColumn reads a single column with decimal commas under one name, where a
 // comma would cut every number in two.
 func (lay *layout) commaColumn(v *view, sample []byte, opt Options) *view {
@@ -250,46 +193,6 @@ func (lay *layout) readRows(ctx context.Context, p *plan, text io.Reader, opt Op
 		tab.notes = note(tab.notes, "footer", "%d lines of text behind the data are left out, from line %d on", footer, rows.bad[0].err.Line)
 	}
 	return tab, nil
-}
-
-// checkRepeats refuses a header that follows a blank line where no time column
-// can tell whether one recording goes on or another begins.
-func (a *parsed) checkRepeats(name string, lay *layout, p *plan) error {
-	if p.time != nil || p.date != nil || p.frame != nil {
-		return nil
-	}
-	for _, row := range a.again {
-		if _, found := slices.BinarySearch(a.skip, row-1); found {
-			return &Error{File: name, Line: lay.firstLine + row, Code: CodeLayout, What: "the header occurs again after a gap: a second table seems to start here",
-				Remedy: "keep one table in the file, or remove the blank line and the header"}
-		}
-	}
-	return nil
-}
-
-// judge accepts lines of text behind the last row as a footer and refuses the
-// file for any other line that is no sample.
-func (a *parsed) judge() error {
-	if a.total == 0 {
-		return nil
-	}
-	places := make([]*Error, len(a.bad))
-	footer := a.total <= footerLimit && a.total == len(a.bad)
-	last := -1 // line of the last sample
-	for line, i := a.lines-1, len(a.skip)-1; line >= 0; line, i = line-1, i-1 {
-		if i < 0 || a.skip[i] != line {
-			last = line
-			break
-		}
-	}
-	for i, b := range a.bad {
-		places[i] = b.err
-		footer = footer && b.texty && b.row > last
-	}
-	if footer {
-		return nil
-	}
-	return asError(places, a.total)
 }
 
 // resolution is the rounding of the time stamps as the sample shows it.
