@@ -63,6 +63,7 @@ What to do: more range (a lower gain, a larger field), with the bead in the cent
 		reason: "Rounding adds variance that is not motion, a twelfth of the squared step.",
 		Long: `Looked at: the common spacing of all values, over the rms of the positions. Doubtful above 0.5, where rounding adds 2 % to the variance; bad above 1.5, where it adds 19 %.
 Whole-pixel positions, too few digits in the file and an unused range of the digitiser make coarse values. The noise of rounding is white, and the fit of a noise floor takes most of it up, only while the bead moves by more than a step from sample to sample.
+When the values are fine, a regular pattern in their distribution is looked for, with a period below 1.4 times the rms, as tracking methods make that prefer the centres of pixels. Doubtful above 0.05, bad above 0.5 (the mean of a unit vector that turns once in each period).
 What to do: write more digits, use more of the digitiser's range, or track with sub-pixel resolution.`,
 	},
 	{

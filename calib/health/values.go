@@ -3,13 +3,13 @@ package health
 import (
 	"fmt"
 	"math"
-	"slices"
 )
 
 // values is what the second pass finds about the exact values of the samples.
 type values struct {
 	grid      float64 // spacing of the values that occur, when it is coarse enough to be seen [unit of X]; 0 when there is none
 	low, high rail
+	comb      histogram
 }
 
 // rail counts samples at an extreme value.
@@ -39,9 +39,11 @@ func survey(x []float64, s summary) values {
 		}
 	}
 	v.low, v.high = rail{value: low}, rail{value: high}
+	v.comb = newHistogram(s.total.mean()*s.scale+s.centre, sd)
 	nearLow, nearHigh := low+width, high-width
 	lastLow, lastHigh := -2, -2
 	for i, y := range x {
+		v.comb.add(y)
 		if y <= nearLow {
 			v.low.hit(i, y == low, &lastLow)
 		}
@@ -83,37 +85,6 @@ func (r rail) struck(grid float64) bool {
 	each := float64(r.at) / float64(r.visits)
 	excess := float64(r.at) - 1.2*float64(r.beside)
 	return r.visits >= 4 && excess/each > 4*math.Sqrt(float64(r.visits))
-}
-
-// grid returns the spacing of which all values are whole multiples apart, or 0 when
-// there is none as large as 1e-5 of the scale.
-func grid(v []float64, scale float64) float64 {
-	if len(v) < 16 {
-		return 0
-	}
-	v = slices.Clone(v)
-	slices.Sort(v)
-	v = slices.Compact(v)
-	if len(v) < 2 {
-		return 0
-	}
-	smallest := math.Inf(1)
-	tiny := 1e-12 * math.Max(math.Abs(v[0]), math.Abs(v[len(v)-1])) // rounding of the values themselves
-	for i := 1; i < len(v); i++ {
-		if d := v[i] - v[i-1]; d > 100*tiny {
-			smallest = min(smallest, d)
-		}
-	}
-	if smallest < 1e-5*scale || math.IsInf(smallest, 0) {
-		return 0
-	}
-	for i := 1; i < len(v); i++ {
-		k := (v[i] - v[i-1]) / smallest
-		if math.Abs(k-math.Round(k)) > 0.02 {
-			return 0
-		}
-	}
-	return smallest
 }
 
 const (
@@ -159,91 +130,4 @@ func (v *view) rail() Check {
 		c.Ranges = [][2]float64{{v.second(float64(from)), v.second(float64(to + 1))}}
 	}
 	return c
-}
-
-const (
-	gridDoubtful = 0.5 // grid over rms: rounding adds grid^2/12, 2 % of the variance
-	gridBad      = 1.5 // 19 %
-)
-
-// coarse looks for steps of quantisation, and for positions that prefer some places
-// of a regular pattern.
-func (v *view) coarse() Check {
-	c := v.check("coarse-steps")
-	if v.total.low == v.total.high {
-		return c.spared("all samples have the same value")
-	}
-	sd := math.Sqrt(v.total.variance()) * v.scale
-	c.Value, c.Threshold = v.values.grid/sd, gridDoubtful
-	switch {
-	case c.Value > gridBad:
-		c.Level = Bad
-	case c.Value > gridDoubtful:
-		c.Level = Doubtful
-	default:
-		c.Text = "The values are fine enough."
-		return c
-	}
-	c.Text = fmt.Sprintf("The positions come in steps of %s, %s of their rms: rounding alone adds %s to the variance.",
-		length(v.values.grid, v.Unit), digits(c.Value), percent(c.Value*c.Value/12))
-	c.Remedy = "Write more digits, use more of the digitiser's range, or track with sub-pixel resolution."
-	return c
-}
-
-const (
-	frozenDoubtful = 1e-3 // share of samples that repeat the one before
-	frozenBad      = 0.05
-)
-
-// frozenSamples looks for samples that repeat their predecessor.
-func (v *view) frozenSamples() Check {
-	c := v.check("frozen-samples")
-	c.Threshold = frozenDoubtful
-	if v.total.steps == 0 {
-		return c.spared("no two neighbouring samples are there")
-	}
-	steps := v.total.steps
-	if v.coarseSteps() {
-		return c.spared("the values are so coarse that neighbours are often equal by themselves")
-	}
-	chance := v.equalByChance()
-	c.Value = math.Max(v.total.equal/steps-chance, 0)
-	// on a grid, equal samples come in bunches: their number scatters more than that of single ones
-	margin := 0.1*chance + 8*math.Sqrt(chance/steps)
-	switch {
-	case c.Value < frozenDoubtful+margin:
-		c.Text = "Samples do not repeat more often than chance makes them."
-		return c
-	case c.Value > frozenBad+margin:
-		c.Level = Bad
-	default:
-		c.Level = Doubtful
-	}
-	c.Text = fmt.Sprintf("%s of the samples repeat the one before exactly, the longest time for %d samples from %s on.",
-		percent(c.Value), v.frozen, moment(v.second(float64(v.frozenAt)), v.duration()))
-	c.Remedy = "Find out whether the program that records writes old values when a new one is late; record slower or to a faster disk."
-	if v.frozen > 10 {
-		c.Ranges = [][2]float64{{v.second(float64(v.frozenAt)), v.second(float64(v.frozenAt + v.frozen))}}
-	}
-	return c
-}
-
-// coarseSteps tells whether the spacing of the values is so large, against the steps
-// between neighbours, that rounding has changed the distribution of the steps.
-func (v *view) coarseSteps() bool {
-	grid := v.values.grid / v.scale
-	return grid*grid > 0.5*v.total.d2/math.Max(v.total.steps, 1)
-}
-
-// equalByChance returns the share of neighbours that rounding to the grid makes
-// equal: the mean of max(0, 1 - |d|/grid) over normal steps d. Rounding has added
-// grid^2/6 to the mean square of the steps.
-func (v *view) equalByChance() float64 {
-	if v.values.grid == 0 {
-		return 0
-	}
-	grid := v.values.grid / v.scale
-	a := grid / math.Sqrt(v.total.d2/v.total.steps-grid*grid/6)
-	density := func(x float64) float64 { return math.Exp(-x*x/2) / math.Sqrt(2*math.Pi) }
-	return math.Erf(a/math.Sqrt2) - 2/a*(density(0)-density(a))
 }
