@@ -39,12 +39,16 @@ func (w *work) routes() Test {
 	if sd > 2*hopeless {
 		return noTest(tooUncertain(sd))
 	}
-	if w.poolErr != nil {
-		return noTest("the computed drag is too far from the measured one for a test")
+	if w.poolErr != nil { // too far apart for a fit of both: the normal approximation will do
+		d := w.dragExcess()
+		near, far := d*d/(sd*sd), d*d/(sd*sd+p.u*p.u)
+		return Test{ChiSquare: Float(near), DegreesOfFreedom: 1, PValue: survival(near, 1),
+			ChiSquareCombined: Float(far), PValueCombined: survival(far, 1), MeanDifference: Float(d)}
 	}
 	fixed, _, err := w.fit.Problem.Ratio(w.fit.Maximum, alongDrag, p.expected)
 	if err != nil {
-		return noTest("the recording does not determine the drag")
+		fixed = w.dragExcess() / sd
+		fixed *= fixed
 	}
 	loose := math.Max(0, 2*(w.fit.Maximum.Value-p.maximum.Value))
 	excess := w.bartlett()
@@ -152,14 +156,17 @@ func (w *work) adopt() {
 	p := &w.pooled
 	drag := p.drag
 	switch {
+	case w.opt.Adopt == "" && w.poolErr != nil:
+		reason := "the recording and the computed drag cannot be brought together"
+		if w.fitErr != nil {
+			reason = "noise and motion of the bead cannot be told apart in this recording"
+		}
+		a.Stiffness, a.Withheld = Withheld("N/m", reason), reason
+		return
 	case w.opt.Adopt == RouteDrag || w.opt.Adopt == "" && drag >= 1 && w.has(spectrumLeg):
 		w.adoptLeg(spectrumLeg, "corner frequency and computed drag")
 	case w.opt.Adopt == RouteAmplitude || w.opt.Adopt == "" && drag <= 0 && w.has(amplitudeLeg):
 		w.adoptLeg(amplitudeLeg, "amplitude of the spectrum and temperature")
-	case w.poolErr != nil:
-		reason := "the recording and the computed drag cannot be brought together"
-		a.Stiffness, a.Withheld = Withheld("N/m", reason), reason
-		return
 	default:
 		drag = math.Max(0, math.Min(1, drag))
 		a.Basis = "drag and amplitude route combined"

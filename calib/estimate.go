@@ -48,6 +48,9 @@ func (w *work) bestProcess() (p relaxation.Process, total, data relaxation.Matri
 	at, scale := w.pooled.maximum.At, w.fit.Scale()
 	p = relaxation.Process{Corner: math.Exp(at[0]) * w.rate, Variance: scale * math.Exp(at[1]), Noise: scale * at[2],
 		Interval: 1 / w.rate, Exposure: w.exposure}
+	if w.poolErr != nil {
+		return p, total, data, true
+	}
 	total, data, err := w.fit.Problem.Covariance(w.pooled.maximum.Information)
 	if err != nil {
 		return p, w.pooled.total, w.pooled.data, true
@@ -105,7 +108,7 @@ const bartlettExcess = 3
 // are widened (Bartlett, Proc. R. Soc. A 160 (1937) 268).
 func (w *work) bartlett() float64 {
 	at := w.pooled.maximum.At
-	if w.poolErr != nil {
+	if w.poolErr != nil && w.fitErr == nil {
 		at = w.fit.Maximum.At
 	}
 	return math.Sqrt(1 + bartlettExcess/math.Max(3, math.Pi*math.Exp(at[0])*float64(w.record.Observed())))
@@ -166,6 +169,11 @@ func chiSquareOffsets(sd float64) relaxation.Offsets {
 
 func (w *work) displacementLegs(p relaxation.Process, total relaxation.Matrix, drawn bool) {
 	l := &w.legs
+	if w.poolErr != nil && w.fitErr != nil {
+		reason := tooUncertain(math.Inf(1))
+		l.reason[displacementLeg], l.reason[timeLeg] = reason, reason
+		return
+	}
 	m, err := msd.Estimate(msd.Input{X: w.record.X, Missing: w.record.Missing > 0, Guess: p, Scale: w.fit.Scale(), FitCovariance: total,
 		Noise: msd.Noise{Known: w.noise.Known, Variance: w.noise.Variance, VarianceU: w.noise.VarianceU}})
 	if err != nil {

@@ -50,12 +50,31 @@ func (w *work) pool() error {
 
 	p.problem = w.fit.Problem
 	p.problem.Priors = append([]relaxation.Prior{{Weights: alongDrag, Mean: p.expected, SD: p.u}}, w.fit.Problem.Priors...)
-	p.regimeFC, p.regimeV = math.Inf(1), math.Inf(1)
+	err := w.settlePool()
+	if !w.noise.Known && (err != nil || p.sdTotal > looseNoise && (p.regimeFC > hopeless || p.regimeV > hopeless)) {
+		// the record says so little of the noise that its sign, which is known, counts
+		p.problem.NonNegative = true
+		err = w.settlePool()
+	}
+	return err
+}
+
+// looseNoise is the relative uncertainty of the pooled stiffness above which an unstated
+// noise is kept from turning negative. Below it the unbounded noise keeps the estimate unbiased.
+const looseNoise = 0.2
+
+// settlePool searches the maximum of the pooled problem and evaluates it.
+func (w *work) settlePool() error {
+	p := &w.pooled
+	scale, k := w.fit.Scale(), p.along
+	p.regimeFC, p.regimeV, p.sdTotal = math.Inf(1), math.Inf(1), 0
+	start := w.poolStart()
 	var err error
-	p.maximum, err = p.problem.Maximise(w.poolStart())
-	if err != nil {
+	if p.maximum, err = p.problem.Maximise(start); err != nil {
+		p.maximum.At = start
 		return err
 	}
+	w.setRegime()
 	if p.total, p.data, err = p.problem.Covariance(p.maximum.Information); err != nil {
 		return err
 	}
@@ -67,10 +86,16 @@ func (w *work) pool() error {
 	p.sdData = math.Sqrt(math.Max(0, p.data.Form(p.weights, p.weights)))
 	p.sdTotal = math.Sqrt(math.Max(0, p.total.Form(p.weights, p.weights)))
 	p.drag = (1 + k) - p.total.Form(p.weights, alongDrag)/(p.u*p.u)
+	return nil
+}
+
+// setRegime computes the Cramer-Rao bounds of a drag-free fit at the pooled maximum.
+func (w *work) setRegime() {
+	p := &w.pooled
+	p.regimeFC, p.regimeV = math.Inf(1), math.Inf(1)
 	if c, _, err := w.fit.Problem.Covariance(p.maximum.Information); err == nil {
 		p.regimeFC, p.regimeV = math.Sqrt(c[0][0]), math.Sqrt(c[1][1])
 	}
-	return nil
 }
 
 // poolGrid is the number of corner frequencies that are tried, in equal ratios, for a start.

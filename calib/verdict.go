@@ -29,6 +29,12 @@ func (r *Result) judge(works []*work, opt Options) {
 	}
 	v := &r.Verdict
 	v.Status = Consistent
+	if !r.anyAdopted() {
+		v.Status, v.FamilyWiseP = Unfit, Float(math.NaN())
+		v.Text = "No stiffness can be given from this recording."
+		v.Reason = r.Axes[0].Adopted.Withheld
+		return
+	}
 	if tested == 0 {
 		v.FamilyWiseP = Float(math.NaN())
 		v.Text = "No cross-check was possible: the recording does not determine drag and amplitude apart."
@@ -54,6 +60,15 @@ func (r *Result) judge(works []*work, opt Options) {
 		a.Stiffness, a.Withheld = Withheld("N/m", reason), reason
 		a.Basis, a.Weights, a.Budget = "", nil, nil
 	}
+}
+
+func (r *Result) anyAdopted() bool {
+	for _, a := range r.Axes {
+		if a.Adopted.Stiffness.Known() {
+			return true
+		}
+	}
+	return len(r.Axes) == 0
 }
 
 func plural(n int, one, many string) string {

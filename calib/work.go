@@ -133,7 +133,7 @@ func (w *work) run(ctx context.Context) error {
 	if err := ctx.Err(); err != nil {
 		return err
 	}
-	if w.poolErr = w.pool(); w.poolErr != nil && w.fitErr != nil {
+	if w.poolErr = w.pool(); w.poolErr != nil && w.fitErr != nil && w.noise.Known {
 		return w.dataError(fmt.Errorf("the positions do not look like those of a trapped bead: %w", w.fitErr),
 			"check the unit, the diameter and the exposure, and that the bead was trapped; state the noise if it is known")
 	}

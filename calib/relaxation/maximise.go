@@ -20,6 +20,9 @@ type Problem struct {
 	Likelihood Likelihood
 	Directions []Parameters // directions in which to search; nil: all three
 	Priors     []Prior
+	// NonNegative keeps the noise at zero or above. Directions must then contain {0, 0, 1}
+	// alone for it.
+	NonNegative bool
 }
 
 // Maximum is the point of greatest (penalised) likelihood.
@@ -62,7 +65,7 @@ func (pr Problem) Maximise(from Parameters) (Maximum, error) {
 	}
 	damping := 0.0
 	for m.Iterations = 1; m.Iterations <= maxIterations; m.Iterations++ {
-		step, gain, err := pr.step(grad, info, damping)
+		step, gain, err := pr.within(m.At, grad).step(grad, info, damping)
 		if err != nil {
 			return m, ErrNoMaximum
 		}
@@ -94,6 +97,22 @@ func (pr Problem) Maximise(from Parameters) (Maximum, error) {
 	return m, nil
 }
 
+// within leaves out the direction of the noise where it lies at zero and the likelihood
+// would rise below.
+func (pr Problem) within(at, grad Parameters) Problem {
+	if !pr.NonNegative || at[2] > 0 || grad[2] > 0 {
+		return pr
+	}
+	inner := pr
+	inner.Directions = []Parameters{}
+	for _, u := range pr.directions() {
+		if u != (Parameters{0, 0, 1}) {
+			inner.Directions = append(inner.Directions, u)
+		}
+	}
+	return inner
+}
+
 // climb halves the step until the value rises; steps are bounded to one e-fold in
 // the logarithms first.
 func (pr Problem) climb(at, step Parameters, value float64) (Parameters, bool) {
@@ -105,6 +124,9 @@ func (pr Problem) climb(at, step Parameters, value float64) (Parameters, bool) {
 		next := at
 		for a := range next {
 			next[a] += scale * step[a]
+		}
+		if pr.NonNegative {
+			next[2] = math.Max(0, next[2])
 		}
 		if v := pr.Value(next); v > value {
 			return next, true

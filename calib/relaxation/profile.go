@@ -116,7 +116,7 @@ func (pr Problem) constrained(near, weights Parameters, value float64) (Problem,
 	for k := range from {
 		from[k] += t * u[along][k]
 	}
-	sub := Problem{Likelihood: pr.Likelihood, Priors: pr.Priors, Directions: []Parameters{}}
+	sub := Problem{Likelihood: pr.Likelihood, Priors: pr.Priors, Directions: []Parameters{}, NonNegative: pr.NonNegative}
 	for i := range u {
 		if i == along {
 			continue
