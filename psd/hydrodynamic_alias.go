@@ -165,13 +165,11 @@ func (t *term) at(x float64) (value, slope float64) {
 // folded are the values and the derivatives with respect to ln x of the sum over the aliases
 // k != 0 at the Chebyshev points, for one corner x.
 type folded struct {
-	model        *model
-	corner       float64
 	value, slope [aliasNodes]float64
 }
 
 func (m *model) fold(x float64) *folded {
-	f := &folded{model: m, corner: x}
+	f := &folded{}
 	var rest, drest, edge, dedge float64
 	for i := range m.tail {
 		v, s := m.tail[i].at(x)
@@ -196,6 +194,27 @@ func (m *model) fold(x float64) *folded {
 		f.value[j], f.slope[j] = sum, dsum
 	}
 	return f
+}
+
+// coefficients returns those of the Chebyshev series of the sum over 0..1/2.
+func (f *folded) coefficients() (c [aliasNodes]float64) {
+	for k := range c {
+		for j, v := range f.value {
+			c[k] += 2.0 / aliasNodes * v * math.Cos(math.Pi*float64(k)*(float64(j)+0.5)/aliasNodes)
+		}
+	}
+	c[0] /= 2
+	return c
+}
+
+// series sums a Chebyshev series over 0..1/2 at phi, by Clenshaw's recurrence.
+func series(c *[aliasNodes]float64, phi float64) float64 {
+	t := 4*phi - 1
+	var next, last float64
+	for k := aliasNodes - 1; k > 0; k-- {
+		next, last = c[k]+2*t*next-last, next
+	}
+	return c[0] + t*next - last
 }
 
 // at returns the interpolated sum over the aliases.

@@ -74,41 +74,24 @@ func newFreeDiode(w *whittle, h Hydrodynamic) *freeDiode {
 type response struct {
 	diode diode
 	model *model
-	mean  expected
+	mean  *expected
 	value float64
-	grad  [2]float64               // with respect to a and ln f3dB
-	info  [2][2]float64            // their Fisher information
-	cross [2]relaxation.Parameters // and that with the parameters
+	*derived
 }
 
 func (d *freeDiode) try(p relaxation.Parameters, at diode) *response {
 	r := &response{diode: at, model: d.lattice.model(at.power, at.prompt())}
 	r.mean = d.expected(r.model, math.Exp(p[0]), true)
-	r.value = d.sum(p, r.mean)
+	r.value = d.settle(p, r.mean)
 	return r
 }
 
-// derive fills in the derivatives.
-func (d *freeDiode) derive(p relaxation.Parameters, r *response) {
+// deriveAll fills in the derivatives, those of a and ln f3dB last.
+func (d *freeDiode) deriveAll(p relaxation.Parameters, r *response) {
 	x := math.Exp(p[0])
 	byShare := d.expected(d.lattice.model(func(f float64) float64 { return 1 - r.diode.slow(f) }, 1), x, false)
 	byLog := d.expected(d.lattice.model(r.diode.byLog, 0), x, false)
-	v, q := d.scale*math.Exp(p[1]), d.scale*p[2]
-	for i, weight := range d.blocks.Weight {
-		m := v*r.mean.value[i] + q
-		s := [2]float64{v * byShare.value[i] / m, v * byLog.value[i] / m}
-		t := relaxation.Parameters{v * r.mean.slope[i] / m, v * r.mean.value[i] / m, d.scale / m}
-		excess := weight * (d.blocks.Power[i]/m - 1)
-		for a := range s {
-			r.grad[a] += excess * s[a]
-			for b := range s {
-				r.info[a][b] += weight * s[a] * s[b]
-			}
-			for b := range t {
-				r.cross[a][b] += weight * s[a] * t[b]
-			}
-		}
-	}
+	r.derived = d.derive(p, r.mean, []*expected{byShare, byLog})
 }
 
 // span is the range of f3dB in units of the sampling rate: outside, the response
@@ -128,14 +111,14 @@ func (d *freeDiode) moved(at diode, share, log float64) diode {
 // free tells which of the two can move along the gradient.
 func (d *freeDiode) free(r *response) (free [2]bool) {
 	up, down := d.moved(r.diode, 1e-9, 1e-9), d.moved(r.diode, -1e-9, -1e-9)
-	free[0] = !(up.share == r.diode.share && r.grad[0] >= 0) && !(down.share == r.diode.share && r.grad[0] <= 0)
-	free[1] = !(up.log == r.diode.log && r.grad[1] >= 0) && !(down.log == r.diode.log && r.grad[1] <= 0)
+	free[0] = !(up.share == r.diode.share && r.grad[3] >= 0) && !(down.share == r.diode.share && r.grad[3] <= 0)
+	free[1] = !(up.log == r.diode.log && r.grad[4] >= 0) && !(down.log == r.diode.log && r.grad[4] <= 0)
 	return free
 }
 
 // inverse returns the inverse of the information of those that are free, 0 elsewhere.
 func (r *response) inverse(free [2]bool, damping float64) (c [2][2]float64) {
-	a, b, m := r.info[0][0]*(1+damping), r.info[1][1]*(1+damping), r.info[0][1]
+	a, b, m := r.info[3][3]*(1+damping), r.info[4][4]*(1+damping), r.info[3][4]
 	switch {
 	case free[0] && free[1]:
 		if det := a*b - m*m; det > 1e-13*a*b {
@@ -162,15 +145,15 @@ func (d *freeDiode) best(p relaxation.Parameters, from diode) *response {
 	if math.IsInf(r.value, -1) {
 		return r
 	}
-	d.derive(p, r)
+	d.deriveAll(p, r)
 	damping := 0.0
 	for range diodeSteps {
 		c := r.inverse(d.free(r), damping)
 		var step [2]float64
 		for a := range step {
-			step[a] = c[a][0]*r.grad[0] + c[a][1]*r.grad[1]
+			step[a] = c[a][0]*r.grad[3] + c[a][1]*r.grad[4]
 		}
-		if gain := step[0]*r.grad[0] + step[1]*r.grad[1]; gain < diodeGain || damping > diodeLimit {
+		if gain := step[0]*r.grad[3] + step[1]*r.grad[4]; gain < diodeGain || damping > diodeLimit {
 			break
 		}
 		step[1] = math.Max(-1, math.Min(1, step[1]))
@@ -180,7 +163,7 @@ func (d *freeDiode) best(p relaxation.Parameters, from diode) *response {
 			continue
 		}
 		damping /= 10
-		d.derive(p, next)
+		d.deriveAll(p, next)
 		r = next
 	}
 	return r
@@ -204,19 +187,18 @@ func (d *freeDiode) Score(p relaxation.Parameters) (float64, relaxation.Paramete
 	if math.IsInf(r.value, -1) {
 		return r.value, relaxation.Parameters{}, relaxation.Matrix{}
 	}
-	fixed := whittle{blocks: d.blocks, turns: d.turns, lattice: d.lattice, model: r.model, scale: d.scale}
-	value, g, f := fixed.Score(p)
+	g, f := r.own(), r.ownInfo()
 	c := r.inverse(d.free(r), 0)
 	for i := range g {
 		for j := range g {
 			for a := range c {
 				for b := range c {
-					f[i][j] -= r.cross[a][i] * c[a][b] * r.cross[b][j]
+					f[i][j] -= r.info[3+a][i] * c[a][b] * r.info[3+b][j]
 				}
 			}
 		}
 	}
-	return value, g, f
+	return r.value, g, f
 }
 
 // Start fits the other parameters with each of a net of responses, and keeps the best.
@@ -267,7 +249,7 @@ func (d *freeDiode) fitted(p relaxation.Parameters, total relaxation.Matrix) Dio
 	for a := range u {
 		var along relaxation.Parameters // change of the response with the parameters
 		for i := range along {
-			along[i] = c[a][0]*r.cross[0][i] + c[a][1]*r.cross[1][i]
+			along[i] = c[a][0]*r.info[3][i] + c[a][1]*r.info[4][i]
 		}
 		u[a] = math.Sqrt(c[a][a] + math.Max(0, total.Form(along, along)))
 		if !free[a] {

@@ -14,7 +14,7 @@ type whittle struct {
 	lattice *lattice
 	model   *model
 	scale   float64
-	recent  atomic.Pointer[folded] // of the corner that Density was asked for last
+	recent  atomic.Pointer[curve] // what Density was asked for last
 }
 
 func newWhittle(l *lattice, b relaxation.Blocks, scale float64) *whittle {
@@ -44,14 +44,20 @@ func inDomain(p relaxation.Parameters) bool {
 
 // expected is the mean of the blocked periodogram for V = 1 and q = 0, and its
 // derivative with respect to ln fc.
-type expected struct{ value, slope []float64 }
+type expected struct {
+	value, slope []float64
+	jump, djump  []float64 // what a chance of 1 in the ends adds, see settle; nil without leakage
+}
 
-// expected evaluates a model with the given response at infinite frequency.
-func (w *whittle) expected(m *model, x float64, finite bool) expected {
+// expected evaluates a model, with the leakage of a finite record or without.
+func (w *whittle) expected(m *model, x float64, finite bool) *expected {
 	c := newClosed(x, w.lattice.exposure)
 	f := m.fold(x)
 	n := len(w.blocks.Sigma)
-	e := expected{make([]float64, n), make([]float64, n)}
+	e := &expected{value: make([]float64, n), slope: make([]float64, n)}
+	if finite {
+		e.jump, e.djump = make([]float64, n), make([]float64, n)
+	}
 	for i, sigma := range w.blocks.Sigma {
 		d := c.gap + c.decay*sigma
 		dd := c.dgap + c.ddecay*sigma
@@ -68,22 +74,59 @@ func (w *whittle) expected(m *model, x float64, finite bool) expected {
 			v, s := c.leakage(w.turns[i], w.blocks.Samples)
 			e.value[i] += v
 			e.slope[i] += s
+			e.jump[i], e.djump[i] = c.jump(d, dd, w.blocks.Samples)
 		}
 	}
 	return e
 }
 
-// Value returns the log-likelihood.
-func (w *whittle) Value(p relaxation.Parameters) float64 {
-	if !inDomain(p) {
-		return math.Inf(-1)
-	}
-	return w.sum(p, w.expected(w.model, math.Exp(p[0]), true))
-}
+// jumpVariance is the variance of the chance in the ends: the square of a normal
+// deviate over its mean, less 1.
+const jumpVariance = 2
 
-func (w *whittle) sum(p relaxation.Parameters, e expected) float64 {
+const (
+	settleSteps = 30
+	settleGain  = 1e-12 // of the log-likelihood
+)
+
+// settle returns the log-likelihood at its best chance in the ends, and works that
+// into the expectation.
+//
+// Leakage comes from the jump between the two ends of a record. Its mean square is part of the
+// expectation; what chance makes of it in one record adds the same spectrum, (J^2 - E J^2)/(N |1-z|^2),
+// to all frequencies, which shifts the amplitude by sqrt(2)/(2 pi fc T). For a record of
+// few correlation times at a high rate that is more than the statistical error sqrt(2/N).
+// It is fitted with its variance as prior knowledge, so that the uncertainties count it.
+func (w *whittle) settle(p relaxation.Parameters, e *expected) float64 {
 	v, q := w.scale*math.Exp(p[1]), w.scale*p[2]
-	sum := 0.0
+	chance := 0.0
+	for range settleSteps {
+		grad, info := -chance/jumpVariance, 1.0/jumpVariance
+		for i, weight := range w.blocks.Weight {
+			m := v*e.value[i] + q
+			if !(m > 0) {
+				return math.Inf(-1)
+			}
+			s := v * e.jump[i] / m
+			grad += weight * (w.blocks.Power[i]/m - 1) * s
+			info += weight * s * s
+		}
+		step := grad / info
+		if step*grad < settleGain {
+			break
+		}
+		for i := range e.value { // all means stay positive
+			if fall := v * e.jump[i] * step; fall < 0 {
+				step = math.Max(step, -(v*e.value[i]+q)/(2*v*e.jump[i]))
+			}
+		}
+		chance += step
+		for i := range e.value {
+			e.value[i] += step * e.jump[i]
+			e.slope[i] += step * e.djump[i]
+		}
+	}
+	sum := -chance * chance / (2 * jumpVariance)
 	for i, weight := range w.blocks.Weight {
 		m := v*e.value[i] + q
 		if !(m > 0) {
@@ -94,32 +137,76 @@ func (w *whittle) sum(p relaxation.Parameters, e expected) float64 {
 	return sum
 }
 
-// Score returns the log-likelihood, its gradient and the Fisher information
-// sum w (d ln P)(d ln P)' (Whittle, Ark. Mat. 2 (1953) 423).
-func (w *whittle) Score(p relaxation.Parameters) (float64, relaxation.Parameters, relaxation.Matrix) {
-	var g relaxation.Parameters
-	var f relaxation.Matrix
+// Value returns the log-likelihood.
+func (w *whittle) Value(p relaxation.Parameters) float64 {
 	if !inDomain(p) {
-		return math.Inf(-1), g, f
+		return math.Inf(-1)
+	}
+	return w.settle(p, w.expected(w.model, math.Exp(p[0]), true))
+}
+
+// Score returns the log-likelihood, its gradient and the Fisher information
+// sum w (d ln P)(d ln P)' (Whittle, Ark. Mat. 2 (1953) 423), less what is not known of the ends.
+func (w *whittle) Score(p relaxation.Parameters) (float64, relaxation.Parameters, relaxation.Matrix) {
+	if !inDomain(p) {
+		return math.Inf(-1), relaxation.Parameters{}, relaxation.Matrix{}
 	}
 	e := w.expected(w.model, math.Exp(p[0]), true)
-	value := w.sum(p, e)
+	value := w.settle(p, e)
 	if math.IsInf(value, -1) {
-		return value, g, f
+		return value, relaxation.Parameters{}, relaxation.Matrix{}
 	}
+	d := w.derive(p, e, nil)
+	return value, d.own(), d.ownInfo()
+}
+
+// derived are the derivatives of a settled log-likelihood: of the three parameters, and of up
+// to two more.
+type derived struct {
+	grad [5]float64
+	info [5][5]float64
+}
+
+func (d *derived) own() relaxation.Parameters { return relaxation.Parameters(d.grad[:3]) }
+
+func (d *derived) ownInfo() (m relaxation.Matrix) {
+	for a := range m {
+		copy(m[a][:], d.info[a][:3])
+	}
+	return m
+}
+
+// derive takes a settled expectation, and the derivatives of the mean for V = 1 with
+// respect to further parameters.
+func (w *whittle) derive(p relaxation.Parameters, e *expected, further []*expected) *derived {
+	var r derived
+	var ends [5]float64
+	endsInfo := 1.0 / jumpVariance
 	v, q := w.scale*math.Exp(p[1]), w.scale*p[2]
+	n := 3 + len(further)
 	for i, weight := range w.blocks.Weight {
 		m := v*e.value[i] + q
-		d := relaxation.Parameters{v * e.slope[i] / m, v * e.value[i] / m, w.scale / m}
-		r := weight * (w.blocks.Power[i]/m - 1)
-		for a := range d {
-			g[a] += r * d[a]
-			for b := range d {
-				f[a][b] += weight * d[a] * d[b]
+		d := [5]float64{v * e.slope[i] / m, v * e.value[i] / m, w.scale / m}
+		for k, f := range further {
+			d[3+k] = v * f.value[i] / m
+		}
+		s := v * e.jump[i] / m
+		excess := weight * (w.blocks.Power[i]/m - 1)
+		endsInfo += weight * s * s
+		for a := range n {
+			r.grad[a] += excess * d[a]
+			ends[a] += weight * s * d[a]
+			for b := range n {
+				r.info[a][b] += weight * d[a] * d[b]
 			}
 		}
 	}
-	return value, g, f
+	for a := range n {
+		for b := range n {
+			r.info[a][b] -= ends[a] * ends[b] / endsInfo
+		}
+	}
+	return &r
 }
 
 // Start returns where the relaxation process fits best on a coarse net.
@@ -135,21 +222,26 @@ func (w *whittle) Density(p relaxation.Parameters, hz float64) float64 {
 
 func (w *whittle) density(m *model, p relaxation.Parameters, hz float64) float64 {
 	x := math.Exp(p[0])
-	f := w.recent.Load()
-	if f == nil || f.corner != x || f.model != m {
-		f = m.fold(x)
-		w.recent.Store(f)
+	c := w.recent.Load()
+	if c == nil || c.corner != x || c.model != m {
+		c = &curve{model: m, corner: x, closed: newClosed(x, w.lattice.exposure), aliases: m.fold(x).coefficients()}
+		w.recent.Store(c)
 	}
 	l := w.lattice
 	phi := hz / l.rate
-	c := newClosed(x, l.exposure)
 	half := math.Sin(math.Pi * phi)
 	t := m.term(l.at(phi, false, 1))
 	own, _ := t.at(x)
-	row := chebyshevRow(phi)
-	other, _ := f.at(&row)
-	unit := m.prompt*(c.pole/(c.gap+4*c.decay*half*half)+c.level) + own + other
+	unit := m.prompt*(c.closed.pole/(c.closed.gap+4*c.closed.decay*half*half)+c.closed.level) + own + series(&c.aliases, phi)
 	return 2 * (w.scale*math.Exp(p[1])*unit + w.scale*p[2]) / l.rate
+}
+
+// curve is what Density needs at one corner x.
+type curve struct {
+	model   *model
+	corner  float64
+	closed  closed
+	aliases [aliasNodes]float64
 }
 
 // closed holds what the spectrum of the relaxation process needs at one corner
@@ -201,5 +293,14 @@ func (c *closed) leakage(turn complex128, n int) (value, slope float64) {
 	by := -2 / float64(n)
 	value = by * c.correl * left * real(u)
 	slope = by * (c.dcorel*left*real(u) + c.correl*span*math.Exp(-span)*real(u) + c.correl*left*real(du))
+	return value, slope
+}
+
+// jump returns the mean square of the jump between the ends over n |1 - z|^2, for V = 1, and
+// its derivative: (1 + c^2) B/(n d).
+func (c *closed) jump(d, dd float64, n int) (value, slope float64) {
+	square := 1 + c.decay*c.decay
+	value = square * c.correl / (float64(n) * d)
+	slope = (2*c.decay*c.ddecay*c.correl+square*c.dcorel)/(float64(n)*d) - value*dd/d
 	return value, slope
 }
