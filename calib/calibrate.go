@@ -80,8 +80,9 @@ func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings,
 	for _, w := range works {
 		r.Axes = append(r.Axes, w.axis)
 	}
+	r.examine(rec, works)
 	r.judge(works, opt)
-	r.collectFindings(rec, set, works)
+	r.collectFindings(set, works)
 	return r, nil
 }
 

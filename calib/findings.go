@@ -12,9 +12,8 @@ func nearFactor(radius, height float64) (float64, error) { return drag.Parallel(
 
 // Limits of the findings of one axis.
 const (
-	shortRelaxations = 30    // T fc below which a record is called short: relative uncertainty of 1/sqrt(pi T fc) = 10 %
-	misfitLevel      = 0.001 // p-value of the goodness of fit
-	hydroBias        = 0.25  // share of the statistical uncertainty that a neglected bias may have
+	shortRelaxations = 30   // T fc below which a record is called short: relative uncertainty of 1/sqrt(pi T fc) = 10 %
+	hydroBias        = 0.25 // share of the statistical uncertainty that a neglected bias may have
 )
 
 // findings lists what the user should know of one axis.
@@ -32,17 +31,6 @@ func (w *work) findings() []Finding {
 		out = append(out, Finding{Code: CodeNoiseUnknown, Severity: Doubtful, Axis: w.axisName,
 			Text:   "The localisation noise is not stated, and at this sampling rate it cannot be told from the motion of the bead; the adopted stiffness rests on the computed drag.",
 			Remedy: `measure the noise with a stuck bead and state it with --noise "4(1) nm"`, Value: nan, Limit: nan})
-	}
-	process, _, _, _ := w.bestProcess()
-	if tfc := w.record.Duration() * process.Corner; tfc < shortRelaxations {
-		out = append(out, Finding{Code: CodeShort, Severity: Doubtful, Axis: w.axisName,
-			Text:   fmt.Sprintf("The recording lasts %.3g times 1/fc, which leaves a statistical uncertainty of about %.0f %%.", tfc, 100/math.Sqrt(math.Pi*tfc)),
-			Remedy: "record longer", Value: Float(tfc), Limit: shortRelaxations, Unit: "1"})
-	}
-	if g := w.axis.Spectrum.Goodness; g.PValue.Known() && float64(g.PValue) < misfitLevel {
-		out = append(out, Finding{Code: CodeMisfit, Severity: Doubtful, Axis: w.axisName,
-			Text:   fmt.Sprintf("The spectrum does not have the shape of the model (chi-square %.3g for %d degrees of freedom).", float64(g.ChiSquare), g.DegreesOfFreedom),
-			Remedy: "look at the residuals of the spectrum: lines, drift, a detector's low-pass, or a wrong exposure", Value: g.PValue, Limit: misfitLevel, Unit: "1"})
 	}
 	for _, l := range w.record.Lines {
 		out = append(out, Finding{Code: CodeLine, Severity: Note, Axis: w.axisName,

@@ -24,6 +24,7 @@ type Result struct {
 	Axes      []Axis    `json:"axes"`
 	Verdict   Verdict   `json:"verdict"`
 	Findings  []Finding `json:"findings"` // never null
+	Checks    []Check   `json:"checks"`   // of the recording, those that found nothing too
 }
 
 // Program says what made the result.

@@ -6,7 +6,6 @@ import (
 	"strings"
 
 	"beadwell/calib/session"
-	"beadwell/calib/track"
 )
 
 // familyLevel is the family-wise combined p-value below which the estimates are
@@ -29,6 +28,7 @@ func (r *Result) judge(works []*work, opt Options) {
 	}
 	v := &r.Verdict
 	v.Status = Consistent
+	defer r.judgeHealth()
 	if !r.anyAdopted() {
 		v.Status, v.FamilyWiseP = Unfit, Float(math.NaN())
 		v.Text = "No stiffness can be given from this recording."
@@ -62,6 +62,22 @@ func (r *Result) judge(works []*work, opt Options) {
 	}
 }
 
+// judgeHealth lets a bad check overrule the verdict of the cross-check.
+func (r *Result) judgeHealth() {
+	c, found := r.worst()
+	if !found {
+		return
+	}
+	v := &r.Verdict
+	v.Status = Unfit
+	v.Text = "The recording is not fit for a calibration: do not use it before the cause is found."
+	reason := c.Text
+	if c.Axis != "" {
+		reason = "axis " + c.Axis + ": " + reason
+	}
+	v.Reason = strings.TrimSuffix(reason, ".") + "; cross-check: " + v.Reason
+}
+
 func (r *Result) anyAdopted() bool {
 	for _, a := range r.Axes {
 		if a.Adopted.Stiffness.Known() {
@@ -83,9 +99,7 @@ const (
 	CodeAssumed       = "assumed-setting"
 	CodeNoHeight      = "height-not-stated"
 	CodeNoExposure    = "exposure-not-stated"
-	CodeMissing       = "missing-samples"
-	CodeShort         = "short-recording"
-	CodeMisfit        = "spectrum-misfit"
+	CodeShort         = "short-record" // also a check of package health
 	CodeLine          = "narrow-line"
 	CodeInconsistent  = "routes-disagree"
 	CodeWithheld      = "estimate-withheld"
@@ -93,7 +107,7 @@ const (
 	CodeHydrodynamics = "frequency-dependent-drag"
 )
 
-func (r *Result) collectFindings(rec *track.Recording, set *session.Settings, works []*work) {
+func (r *Result) collectFindings(set *session.Settings, works []*work) {
 	add := func(f Finding) {
 		r.Findings = append(r.Findings, f)
 	}
@@ -120,20 +134,12 @@ func (r *Result) collectFindings(rec *track.Recording, set *session.Settings, wo
 				Remedy: `of a camera, state it with --exposure "0.4 ms"`, Value: nan, Limit: nan})
 		}
 	}
-	if rec.Missing > 0 {
-		share := float64(rec.Missing) / float64(rec.Samples)
-		severity := Note
-		if share > 0.01 {
-			severity = Doubtful
-		}
-		add(Finding{Code: CodeMissing, Severity: severity, Text: fmt.Sprintf("%d of %d samples are missing; the fits allow for the gaps.", rec.Missing, rec.Samples),
-			Remedy: "look for dropped frames or a full disk if this is unexpected", Value: Float(share), Limit: 0.01, Unit: "1"})
-	}
 	for _, w := range works {
 		for _, f := range w.findings() {
 			add(f)
 		}
 	}
+	r.checkFindings()
 }
 
 func flagOf(key string) string {

@@ -1,0 +1,80 @@
+package calib
+
+import (
+	"math"
+
+	"beadwell/calib/health"
+	"beadwell/calib/track"
+)
+
+// Check is one check of the recording, also when it found nothing.
+type Check struct {
+	Code   string     `json:"code"`
+	Name   string     `json:"name"`
+	Axis   string     `json:"axis,omitempty"`
+	Level  string     `json:"level"`  // "ok", "doubtful", "bad"
+	Judged bool       `json:"judged"` // false: the check could not be made, and the text says why
+	Value  Float      `json:"value"`
+	Limit  Float      `json:"threshold"`
+	Unit   string     `json:"unit"`
+	Text   string     `json:"text"`
+	Reason string     `json:"reason,omitempty"` // why it matters
+	Remedy string     `json:"remedy,omitempty"`
+	Ranges [][2]Float `json:"time_ranges_s,omitempty"` // on the clock of the recording
+}
+
+// examine checks the recording with what the fits know of it.
+func (r *Result) examine(rec *track.Recording, works []*work) {
+	in := health.Input{Rate: rec.Rate, Missing: rec.Missing, JitterRMS: rec.JitterRMS}
+	for _, w := range works {
+		in.Exposure = w.exposure
+		process, _, _, _ := w.bestProcess()
+		a := health.Axis{Name: w.axisName, X: w.source.Values, Process: process, Known: w.fitErr == nil || w.poolErr == nil, GoodnessP: math.NaN()}
+		if w.fitErr == nil {
+			a.CornerSD, _ = w.fit.SD(alongCorner)
+			a.GoodnessP = w.fit.Goodness.PValue
+		}
+		for _, l := range w.record.Lines {
+			a.Lines = append(a.Lines, health.Line{Frequency: l.Frequency, Amplitude: l.Amplitude})
+		}
+		in.Axes = append(in.Axes, a)
+	}
+	start := 0.0
+	if !math.IsNaN(rec.JitterRMS) {
+		start = rec.Start
+	}
+	r.Checks = []Check{}
+	for _, c := range health.Run(in) {
+		out := Check{Code: c.Code, Name: c.Name, Axis: c.Axis, Level: c.Level.String(), Judged: c.Judged, Value: Float(c.Value), Limit: Float(c.Threshold),
+			Unit: c.Unit, Text: c.Text, Reason: c.Reason, Remedy: c.Remedy}
+		for _, s := range c.Ranges {
+			out.Ranges = append(out.Ranges, [2]Float{Float(start + s[0]), Float(start + s[1])})
+		}
+		r.Checks = append(r.Checks, out)
+	}
+}
+
+// worst returns the first bad check.
+func (r *Result) worst() (Check, bool) {
+	for _, c := range r.Checks {
+		if c.Level == Bad {
+			return c, true
+		}
+	}
+	return Check{}, false
+}
+
+// checkFindings turns the checks that found something into findings.
+func (r *Result) checkFindings() {
+	for _, c := range r.Checks {
+		if c.Level != Doubtful && c.Level != Bad {
+			continue
+		}
+		f := Finding{Code: c.Code, Severity: c.Level, Axis: c.Axis, Text: c.Text, Remedy: c.Remedy, Value: c.Value, Limit: c.Limit, Unit: c.Unit}
+		if len(c.Ranges) > 0 {
+			first, last := c.Ranges[0], c.Ranges[len(c.Ranges)-1]
+			f.Range = &[2]Float{first[0], last[1]}
+		}
+		r.Findings = append(r.Findings, f)
+	}
+}

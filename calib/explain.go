@@ -1,0 +1,38 @@
+package calib
+
+import "beadwell/calib/health"
+
+// Explanation is the long form of the code of a finding.
+type Explanation struct{ Code, Title, Long string }
+
+// Explanations lists all codes: those of the calibration first, then those of the
+// checks of the recording.
+func Explanations() []Explanation {
+	all := append([]Explanation(nil), explanations...)
+	for _, e := range health.Codes() {
+		all = append(all, Explanation{e.Code, e.Title, e.Long})
+	}
+	return all
+}
+
+// caution stands where a remedy touches the laser.
+const caution = " If this means to touch the laser or the beam path: trained and authorised users only, with eyewear for the wavelength and power and the beam enclosed; local laser-safety rules and the laser safety officer decide."
+
+var explanations = []Explanation{
+	{CodeInconsistent, "the routes disagree", `The stiffness by drag (corner frequency times 2 pi times the drag of the bead) and the stiffness by amplitude (kT over the variance) are two routes to one number. They fail for different reasons: drag needs bead diameter, viscosity and height; amplitude needs the length scale and is spoilt by noise and blur. When they differ by more than the stated uncertainties allow (family-wise p below 0.005), nothing is adopted.
+What to do: check the length scale (pixel size, sensitivity), the temperature, the bead's diameter and the height, in the order of how surely each is known. A free bead (laser off) tests drag and length scale together; a second height tests the wall.` + caution},
+	{CodeAssumed, "a setting was assumed", `A setting that changes the answer was not stated, and a default was used. The result marks it as assumed. Temperature changes the viscosity of water by 2.3 % a kelvin, and with it the stiffness by drag.
+What to do: state it on the command line or in session.toml.`},
+	{CodeNoHeight, "the height was not stated", `A surface near the bead raises its drag: parallel to it by 6 % at ten radii, 13 % at five, 38 % at two. Without a height the drag is taken as that far from any surface, and the stiffness by drag is too low if one is near. The amplitude route does not need the height.
+What to do: state the height of the bead's centre above the nearer surface, or "far".`},
+	{CodeNoExposure, "the exposure was not stated", `A camera averages the position over its exposure, which lowers the variance: by 3 % when 2 pi fc W is 0.1, by 26 % when it is 1. Without an exposure every sample is taken as instantaneous, which is right for a fast detector and wrong for a camera.
+What to do: state the exposure; 0 for a detector.`},
+	{CodeLine, "a narrow line was removed", `The spectrum has a value that chance does not make more than once in a thousand recordings. The sinusoid was fitted and subtracted, and the frequencies around it were left out of the fit; the estimates allow for what was taken out.
+What to do: look for mains pickup, a fan, a stage controller.`},
+	{CodeWithheld, "an estimate was withheld", `The recording does not determine this estimate: by the Fisher information no method could give it to better than 35 %, or its likelihood has no maximum. The adopted stiffness does not rest on it.
+What to do: record longer or faster, shorten the exposure, or state the localisation noise.`},
+	{CodeNoiseUnknown, "noise cannot be told from motion", `When the bead relaxes within about three samples, white localisation noise, blur and relaxation all make the same change to the spectrum. Without knowledge of the noise, corner frequency and variance cannot be told apart, and only the computed drag keeps the stiffness determined.
+What to do: measure the noise with a stuck bead under the same illumination and state it, or sample faster.`},
+	{CodeHydrodynamics, "the inertia of the liquid matters", `The drag of a sphere grows with frequency as 1 + sqrt(f/f_nu), f_nu = nu/(pi R^2) (1.1 MHz for a bead of 1 um in water). A fit with constant drag over a wide band is low in corner frequency and diffusion coefficient together: by 3.5 % up to 5 kHz and 8.5 % up to 20 kHz for a bead of 1 um with a corner of 500 Hz.
+What to do: let the fit use frequency-dependent drag (the setting fit.drag), or restrict the band to a few times the corner frequency.`},
+}
