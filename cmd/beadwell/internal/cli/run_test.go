@@ -272,3 +272,12 @@ func TestProgress(t *testing.T) {
 		}
 	}
 }
+
+// A hint that several places share stands once, behind the last of them.
+func TestProblemText(t *testing.T) {
+	err := &track.Errors{Places: []*track.Error{{File: "f", Line: 1, What: "a", Remedy: "do"}, {File: "f", Line: 2, Column: 3, What: "b", Remedy: "do"}, {File: "f", What: "c", Remedy: "else"}}}
+	want := "beadwell: f:1: a\nbeadwell: f:2:3: b\n  hint: do\nbeadwell: f: c\n  hint: else\n"
+	if got := problemText(problemOf(err)); got != want {
+		t.Errorf("problemText = %q, want %q", got, want)
+	}
+}

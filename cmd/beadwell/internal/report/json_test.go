@@ -136,3 +136,23 @@ func FuzzReadJSON(f *testing.F) {
 
 // sameFloat takes two unknown numbers as equal.
 var sameFloat = cmp.Comparer(func(a, b calib.Float) bool { return a == b || !a.Known() && !b.Known() })
+
+// Text in JSON can be read by eye: no character is escaped that needs not be.
+func TestJSONIsReadable(t *testing.T) {
+	r := storedSample()
+	r.Input.Name = "a<b>&\u00b5.csv"
+	if text := string(encoded(t, r)); !strings.Contains(text, `"name": "a<b>&µ.csv"`) {
+		t.Errorf("JSON writes the name otherwise than it is: %.300s", text)
+	}
+}
+
+// zeros is an endless file.
+type zeros struct{}
+
+func (zeros) Read(p []byte) (int, error) { return len(p), nil }
+
+func TestReadJSONIsBounded(t *testing.T) {
+	if _, err := ReadJSON(zeros{}); err == nil || !strings.Contains(err.Error(), "is larger than") {
+		t.Errorf("ReadJSON of an endless file = %v", err)
+	}
+}

@@ -191,3 +191,43 @@ func TestSharedFootnote(t *testing.T) {
 		t.Error("a shared finding has two footnotes")
 	}
 }
+
+func TestSetTextGolden(t *testing.T) {
+	other := storedSample()
+	other.Input.Name, other.Axes = "run8.csv", []calib.Axis{other.Axes[2], other.Axes[0]}
+	var b bytes.Buffer
+	set := Set{Results: []*calib.Result{other, storedSample()}, Failures: []Problem{{Input: "bad\x1b.csv"}}}
+	if err := SetText(&b, set, TextOptions{}); err != nil {
+		t.Fatal(err)
+	}
+	summary, _, _ := strings.Cut(b.String(), "\n\n")
+	want := `recording, pN/um   verdict        x          y                   z
+run8.csv           inconsistent   52.3(11)   -                   withheld
+tonight/run7.csv   inconsistent   52.3(11)   48.1 [47.5, 49.6]   withheld
+bad\x1b.csv        failed`
+	if diff := cmp.Diff(want, summary); diff != "" {
+		t.Errorf("SetText (-want +got):\n%s", diff)
+	}
+	if n := strings.Count(b.String(), "estimates, pN/um"); n != 2 {
+		t.Errorf("SetText holds %d results, want 2", n)
+	}
+}
+
+// Each verdict has a colour of its own beside its word, and the colour ends behind it.
+func TestColour(t *testing.T) {
+	seen := map[string]bool{}
+	for _, status := range []string{calib.Consistent, calib.Inconsistent, calib.Unfit} {
+		r := storedSample()
+		r.Verdict.Status = status
+		var b bytes.Buffer
+		if err := Text(&b, r, TextOptions{Colour: true}); err != nil {
+			t.Fatal(err)
+		}
+		before, after, found := strings.Cut(b.String(), status+"\x1b[0m")
+		_, colour, coloured := strings.Cut(before, "\x1b[")
+		if !found || !coloured || seen[colour] || strings.Contains(after, "\x1b") {
+			t.Errorf("%s is not coloured apart: %q", status, before)
+		}
+		seen[colour] = true
+	}
+}
