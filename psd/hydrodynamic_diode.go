@@ -56,17 +56,21 @@ func (d diode) byLog(f float64) float64 {
 // the response is unknown (the Schur complement), and its profiles are true ones.
 type freeDiode struct {
 	*whittle
-	given bool
-	from  diode                 // where the search for the response starts
-	drawn relaxation.Parameters // that Density was asked for last
+	given     bool
+	low, high float64               // range of ln f3dB
+	from      diode                 // where the search for the response starts
+	drawn     relaxation.Parameters // that Density was asked for last
 }
 
 func newFreeDiode(w *whittle, h Hydrodynamic) *freeDiode {
 	d := &freeDiode{whittle: w, given: h.F3dB > 0}
-	d.from = diode{0.1, math.Log(w.lattice.rate / 8)}
+	d.low, d.high = math.Log(lowestF3dB), math.Log(math.Max(lowestF3dB, highestF3dB*w.lattice.rate))
 	if d.given {
 		d.from = h.diode()
+		d.low, d.high = d.from.log-math.Log(givenWithin), d.from.log+math.Log(givenWithin)
+		return d
 	}
+	d.from = diode{0.1, (d.low + d.high) / 2}
 	return d
 }
 
@@ -94,18 +98,19 @@ func (d *freeDiode) deriveAll(p relaxation.Parameters, r *response) {
 	r.derived = d.derive(p, r.mean, []*expected{byShare, byLog})
 }
 
-// span is the range of f3dB in units of the sampling rate: outside, the response
-// would be flat over all frequencies of a record.
+// The range of the search for f3dB when none is given: silicon diodes in the near infrared have
+// several kHz (Berg-Sorensen et al., J. Appl. Phys. 93 (2003) 3167), and one below the corner of
+// the trap could pass for it; above the sampling rate only (1-alpha^2)/f3dB^2 could be told.
+// A given value is trusted within a factor.
 const (
-	lowestF3dB  = 1e-3
-	highestF3dB = 30.0
+	lowestF3dB  = 1000.0 // Hz
+	highestF3dB = 1.0    // of the sampling rate
+	givenWithin = 4.0
 )
 
 // moved returns the detector after a step, within its range.
 func (d *freeDiode) moved(at diode, share, log float64) diode {
-	rate := math.Log(d.lattice.rate)
-	return diode{math.Max(0, math.Min(1, at.share+share)),
-		math.Max(rate+math.Log(lowestF3dB), math.Min(rate+math.Log(highestF3dB), at.log+log))}
+	return diode{math.Max(0, math.Min(1, at.share+share)), math.Max(d.low, math.Min(d.high, at.log+log))}
 }
 
 // free tells which of the two can move along the gradient.
@@ -213,9 +218,10 @@ func (d *freeDiode) Start(noise float64, noiseFree bool) relaxation.Parameters {
 	if d.given {
 		net = append(net, d.from)
 	}
+	const places = 5 // of f3dB, evenly spaced in its logarithm
 	for _, alpha := range []float64{0, 0.3, 0.6} {
-		for _, f3dB := range []float64{0.012, 0.04, 0.12, 0.4} { // of the rate
-			net = append(net, diode{alpha * alpha, math.Log(f3dB * d.lattice.rate)})
+		for i := range places {
+			net = append(net, diode{alpha * alpha, d.low + (d.high-d.low)*(float64(i)+0.5)/places})
 		}
 	}
 	top, at := math.Inf(-1), start

@@ -99,7 +99,7 @@ func (c cell) fit(records int, seed uint64, intervals bool) (o outcome) {
 func cells() []cell {
 	diode := &simulate.Photodiode{Alpha: 0.3, F3dB: 8000}
 	return []cell{
-		{bead: bead{radius: 0.25e-6}, corner: 50, rate: 500e3, known: true},
+		{bead: bead{radius: 0.25e-6}, corner: 500, rate: 500e3, known: true},
 		{bead: bead{radius: 2.5e-6}, corner: 50, rate: 50e3, noise: 1e-3},
 		{bead: bead{radius: 2.5e-6}, corner: 500, rate: 500e3, noise: 1e-4},
 		{bead: bead{radius: 2.5e-6}, corner: 5000, rate: 500e3, noise: 1e-3},
