@@ -91,7 +91,7 @@ type PlanWanted struct {
 // PlanRates compares sampling rates at one duration.
 type PlanRates struct {
 	Duration Float      `json:"duration_s"`
-	Best     Quantity   `json:"best"` // lowest rate whose statistical uncertainty is within 5 % of the best of all, Hz
+	Best     Quantity   `json:"best"` // lowest rate whose combined uncertainty is within 5 % of the best of all, Hz
 	Rows     []PlanRate `json:"rows"`
 }
 

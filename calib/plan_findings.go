@@ -3,6 +3,7 @@ package calib
 import (
 	"fmt"
 	"math"
+	"strconv"
 	"strings"
 
 	"beadwell/calib/drag"
@@ -37,6 +38,11 @@ func (f *forecast) findings(p *Plan) []Finding {
 		}
 	}
 	return out
+}
+
+// compared is the number of samples of the duration at which rates are compared.
+func (f *forecast) compared(p *Plan) int {
+	return max(leastPlanned, f.samples(float64(p.Rates.Duration), f.rate))
 }
 
 func planFinding(code, severity, text, remedy string, value, limit float64, unit string) (Finding, bool) {
@@ -79,7 +85,7 @@ func (f *forecast) slowRate(*Plan) (Finding, bool) {
 		return Finding{}, false
 	}
 	return planFinding(CodeSlowRate, Doubtful, fmt.Sprintf("The corner frequency of %.4g Hz lies above half the sampling rate; %.2g of the correlation is left from one sample to the next, and the drag route lives on that.",
-		f.corner, math.Exp(-2*math.Pi*f.corner/f.rate)), fmt.Sprintf("record at %.2g Hz or more, or with less stiffness", 4*f.corner), f.corner, f.rate/2, "Hz")
+		f.corner, math.Exp(-2*math.Pi*f.corner/f.rate)), fmt.Sprintf("record at %s Hz or more, or with less stiffness", digits(4*f.corner, 2)), f.corner, f.rate/2, "Hz")
 }
 
 func (f *forecast) blurred(*Plan) (Finding, bool) {
@@ -88,14 +94,23 @@ func (f *forecast) blurred(*Plan) (Finding, bool) {
 		return Finding{}, false
 	}
 	return planFinding(CodeBlurred, Doubtful, fmt.Sprintf("The exposure averages %.0f %% of the variance away; the correction rests on the exposure and the corner frequency.", 100*(1-s)),
-		fmt.Sprintf("expose for %.2g ms or less, and state the uncertainty of the exposure", 1e3*blurExposure(f.corner)), 1-s, muchBlur, "1")
+		fmt.Sprintf("expose for %s ms or less, and state the uncertainty of the exposure", digits(1e3*blurExposure(f.corner), 2)), 1-s, muchBlur, "1")
+}
+
+// digits prints a number with n significant digits and without an exponent.
+func digits(v float64, n int) string {
+	rounded, err := strconv.ParseFloat(strconv.FormatFloat(v, 'g', n, 64), 64)
+	if err != nil {
+		rounded = v
+	}
+	return strconv.FormatFloat(rounded, 'f', -1, 64)
 }
 
 // blurExposure is the exposure [s] that takes about a tenth of the variance: S = 1 - a/3.
 func blurExposure(corner float64) float64 { return 0.3 / (2 * math.Pi * corner) }
 
 func (f *forecast) noiseFindings(p *Plan) (Finding, bool) {
-	reference := f.at(f.rate, max(leastPlanned, f.samples(float64(p.Rates.Duration), f.rate))).routes
+	reference := f.at(f.rate, f.compared(p)).routes
 	if !f.noise.Known && !(float64(reference.Amplitude.Statistical) <= hopeless && float64(reference.Drag.Statistical) <= hopeless) {
 		return planFinding(CodeNoiseUnknown, Doubtful, "The localisation noise is not stated, and at this rate it cannot be told from the motion of the bead: the stiffness will rest on the computed drag.",
 			`measure the noise with a stuck bead and state it with --noise "4(1) nm"`, float64(reference.Amplitude.Statistical), hopeless, "1")
@@ -117,7 +132,7 @@ func (f *forecast) short(p *Plan) (Finding, bool) {
 		return Finding{}, false
 	}
 	return planFinding(CodeShort, Note, fmt.Sprintf("The duration for the wanted uncertainty is %.3g times 1/fc; so short a recording does somewhat worse than the bound.", periods),
-		fmt.Sprintf("record for %.2g s or longer", shortRelaxations/f.corner), periods, shortRelaxations, "1")
+		fmt.Sprintf("record for %s s or longer", digits(shortRelaxations/f.corner, 2)), periods, shortRelaxations, "1")
 }
 
 func (f *forecast) surface(*Plan) (Finding, bool) {
@@ -142,8 +157,9 @@ func (f *forecast) surface(*Plan) (Finding, bool) {
 
 // inertia computes how far a fit with constant drag would miss.
 func (f *forecast) inertia(p *Plan) (Finding, bool) {
-	bias, ok := f.inertialBias(max(leastPlanned, f.samples(float64(p.Rates.Duration), f.rate)))
-	limit := hydroBias * float64(f.at(f.rate, max(leastPlanned, f.samples(float64(p.Rates.Duration), f.rate))).routes.Drag.Statistical)
+	n := f.compared(p)
+	bias, ok := f.inertialBias(n)
+	limit := hydroBias * float64(f.at(f.rate, n).routes.Drag.Statistical)
 	if !ok || math.Abs(bias) < limit {
 		return Finding{}, false
 	}
@@ -215,20 +231,19 @@ func (f *forecast) folded(spectrum func(f float64) float64, x float64) float64 {
 }
 
 func (f *forecast) drift(p *Plan) (Finding, bool) {
-	n := max(leastPlanned, f.samples(float64(p.Rates.Duration), f.rate))
-	s := float64(f.at(f.rate, n).routes.Amplitude.Statistical)
+	s := float64(f.at(f.rate, f.compared(p)).routes.Amplitude.Statistical)
 	if math.IsNaN(s) {
 		return Finding{}, false
 	}
 	limit := math.Sqrt(s * f.variance)
-	return planFinding(CodeDriftMatters, Note, fmt.Sprintf("A straight drift is removed. One that wanders by %.3g nm (root mean square) within %.3g s moves the amplitude route by its statistical uncertainty.",
-		1e9*limit, float64(p.Rates.Duration)), "let the stage settle, or cut long recordings into several", limit, math.NaN(), "m")
+	return planFinding(CodeDriftMatters, Note, fmt.Sprintf("A straight drift is removed. One that wanders by %.3g nm (root mean square) within %s s moves the amplitude route by its statistical uncertainty.",
+		1e9*limit, digits(float64(p.Rates.Duration), 3)), "let the stage settle, or cut long recordings into several", limit, math.NaN(), "m")
 }
 
 func (f *forecast) limit(p *Plan) (Finding, bool) {
 	if p.Floor.Dominant == "" || !p.Enough.Known() {
 		return Finding{}, false
 	}
-	return planFinding(CodeFloor, Note, fmt.Sprintf("Longer than %.2g s gains little: the inputs leave %.2g %%, and %s dominates.",
-		float64(p.Enough.Value), 100*float64(p.Floor.Both), p.Floor.Dominant), "measure the "+p.Floor.Dominant+" better", float64(p.Floor.Both), math.NaN(), "1")
+	return planFinding(CodeFloor, Note, fmt.Sprintf("Longer than %s s gains little: the inputs leave %.2g %%, and %s dominates.",
+		digits(float64(p.Enough.Value), 2), 100*float64(p.Floor.Both), p.Floor.Dominant), "measure the "+p.Floor.Dominant+" better", float64(p.Floor.Both), math.NaN(), "1")
 }

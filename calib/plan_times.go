@@ -14,6 +14,8 @@ const mostPlanned = 20_000_000_000
 // longestPlanned is the longest duration that is looked for [s], about four months.
 const longestPlanned = 1e7
 
+const notReached = "not reached in four months"
+
 // littleGain is the ratio to the floor at which a recording is long enough.
 const littleGain = 1.05
 
@@ -119,7 +121,7 @@ func (f *forecast) enough(floor float64) Quantity {
 	}
 	t := f.until(func(r PlanRoutes) float64 { return float64(r.Both.Combined) - littleGain*floor })
 	if math.IsInf(t, 1) {
-		return Withheld("s", fmt.Sprintf("not reached within %g s", longestPlanned))
+		return Withheld("s", notReached)
 	}
 	return Exact(t, "s")
 }
@@ -135,7 +137,7 @@ func (f *forecast) wanted(u float64) *PlanWanted {
 		}
 		t := f.until(func(r PlanRoutes) float64 { return float64(of(r).Combined) - u })
 		if math.IsInf(t, 1) {
-			return Withheld("s", fmt.Sprintf("not reached within %g s", longestPlanned))
+			return Withheld("s", notReached)
 		}
 		return Exact(t, "s")
 	}
@@ -178,8 +180,8 @@ func (f *forecast) rates(duration float64) PlanRates {
 		}
 		row := PlanRate{Rate: Float(rate), Samples: n, Planned: rate == f.rate, Routes: f.at(rate, n).routes}
 		planned = planned || row.Planned
-		if s := float64(row.Routes.Both.Statistical); s < best {
-			best = s
+		if u := float64(row.Routes.Both.Combined); u < best {
+			best = u
 		}
 		out.Rows = append(out.Rows, row)
 	}
@@ -196,7 +198,7 @@ func (f *forecast) rates(duration float64) PlanRates {
 		add(f.rate)
 	}
 	for _, row := range out.Rows {
-		if float64(row.Routes.Both.Statistical) <= littleGain*best {
+		if float64(row.Routes.Both.Combined) <= littleGain*best {
 			out.Best = Exact(float64(row.Rate), "Hz")
 			break
 		}

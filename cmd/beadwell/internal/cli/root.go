@@ -58,6 +58,8 @@ func (a *app) root() *cobra.Command {
 		a.initCommand(runInit),
 		a.reportCommand(runReport),
 		a.dragCommand(runDrag),
+		a.planCommand(runPlan),
+		a.forceCommand(runForce),
 		a.simulateCommand(runSimulate),
 		a.schemaCommand(),
 		a.manCommand(),
