@@ -164,6 +164,25 @@ func TestEstimateScales(t *testing.T) {
 	}
 }
 
+// With a quarter of the samples missing at random the mean square scatters as that of a record of
+// three quarters of the length: the convention for gaps, which long gaps meet exactly.
+func TestMissingSamplesWiden(t *testing.T) {
+	p := processes[2]
+	in := Input{MeanSquare: 0.8, Samples: 1000, Observed: 1000, Process: p, Scale: 1}
+	whole, err := Estimate(in)
+	if err != nil {
+		t.Fatal(err)
+	}
+	in.Observed = 750
+	gappy, err := Estimate(in)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if got := gappy.SD / whole.SD; math.Abs(got-math.Sqrt(4.0/3)) > 1e-12 {
+		t.Errorf("standard uncertainty with gaps is %.12g of that without, want sqrt(4/3)", got)
+	}
+}
+
 func TestEstimateRefuses(t *testing.T) {
 	p := processes[1]
 	for what, square := range map[string]float64{"nothing moves": 0, "less than the noise": 0.04, "NaN": math.NaN()} {

@@ -301,6 +301,18 @@ func TestStatedNoise(t *testing.T) {
 			}
 		}
 	}
+	// The information adds up: with C the covariance of a free noise and u the uncertainty of the stated one,
+	// the total is C - C e e' C/(u^2 + C_22), and the record's part is that less what u carries in.
+	u := 0.2 * p.Noise
+	c, partly := at(Noise{}).Covariance, at(Noise{true, p.Noise, u})
+	for k := range 2 {
+		total := c[k][k] - c[k][2]*c[k][2]/(u*u/f.scale/f.scale+c[2][2])
+		want := total - partly.NoiseSlope[k]*partly.NoiseSlope[k]*u*u
+		// the two fits end a fraction of a standard error apart, where the gradients differ by a few percent
+		if got := partly.Covariance[k][k]; math.Abs(got/want-1) > 0.03 {
+			t.Errorf("variance of parameter %d, of the record alone: %.5g, want %.5g (of %.5g in all)", k, got, want, total)
+		}
+	}
 	tight, vague := at(Noise{true, p.Noise, 1e-4 * p.Noise}), at(Noise{true, p.Noise, 1e4 * p.Noise})
 	exact, unknown := at(Noise{Known: true, Variance: p.Noise}), at(Noise{})
 	if math.Abs(tight.Corner/exact.Corner-1) > 1e-5 || math.Abs(vague.Corner/unknown.Corner-1) > 1e-5 {

@@ -149,6 +149,58 @@ func TestExactAgainstDenseMatrix(t *testing.T) {
 	}
 }
 
+// The mean at the middle of a record with gaps, which tilt the line against the mean, is that of
+// generalised least squares with the dense covariance matrix.
+func TestExactMean(t *testing.T) {
+	p := processes[1]
+	x := record(p, 60, 8)
+	var index []int
+	for i := range x {
+		x[i] += 3 + 0.1*float64(i)
+		if i%5 == 1 || i > 40 && i < 55 {
+			x[i] = math.NaN()
+			continue
+		}
+		index = append(index, i)
+	}
+	n := len(index)
+	cov := mat.NewSymDense(n, nil)
+	y := mat.NewVecDense(n, nil)
+	for i, k := range index {
+		y.SetVec(i, x[k])
+		for j := i; j < n; j++ {
+			cov.SetSym(i, j, p.Autocovariance(index[j]-k))
+		}
+	}
+	var chol mat.Cholesky
+	if !chol.Factorize(cov) {
+		t.Fatal("covariance matrix is not positive definite")
+	}
+	for removed := RemovedMean; removed <= RemovedLine; removed++ {
+		reg := mat.NewDense(n, int(removed), nil)
+		for i, k := range index {
+			reg.Set(i, 0, 1)
+			if removed == RemovedLine {
+				reg.Set(i, 1, float64(k)-29.5)
+			}
+		}
+		var weighted, normal mat.Dense
+		var right, beta mat.VecDense
+		if err := chol.SolveTo(&weighted, reg); err != nil {
+			t.Fatal(err)
+		}
+		normal.Mul(reg.T(), &weighted)
+		right.MulVec(weighted.T(), y)
+		if err := beta.SolveVec(&normal, &right); err != nil {
+			t.Fatal(err)
+		}
+		got, want := NewExact(x, removed, true, 0, 0.3).Mean(parameters(p, 0.3)), beta.AtVec(0)
+		if math.Abs(got/want-1) > 1e-10 { // a condition number of 1e3
+			t.Errorf("removed %d: mean = %.12g, want %.12g (dense matrix)", removed, got, want)
+		}
+	}
+}
+
 // The spectral form with its ends equals the exact likelihood: their difference
 // must not depend on the parameters by more than a small part of the statistical
 // unit (1/2). What remains is the difference between the ordinary and the

@@ -93,6 +93,7 @@ func TestScoreIsGradient(t *testing.T) {
 			if math.Abs(value-l.Value(at)) > 1e-9*math.Abs(value) {
 				t.Errorf("process %d, %s: Score and Value give %.10g and %.10g", i, name, value, l.Value(at))
 			}
+			sameMatrix(t, name+" information", f, fisher(NewBlocks(make([]float64, 251), 500, true, nil), p.Exposure, 1, at))
 			for k := range at {
 				const h = 1e-4
 				up, down := at, at
