@@ -134,20 +134,25 @@ func (w *work) crossCheckText() string {
 	if !t.PValue.Known() {
 		return "not tested: " + t.Reason
 	}
-	d := 100 * math.Expm1(float64(t.MeanDifference))
+	d := float64(t.MeanDifference)
 	relation := "above"
 	if d < 0 {
 		relation = "below"
 	}
-	return fmt.Sprintf("the drag route is %.1f %% %s the amplitude route (p = %s with inputs exact, %s with their uncertainties)",
-		math.Abs(d), relation, pText(float64(t.PValue)), pText(float64(t.PValueCombined)))
+	size := fmt.Sprintf("%.1f %%", 100*math.Abs(math.Expm1(d)))
+	if math.Abs(d) > math.Ln2 {
+		size = fmt.Sprintf("a factor of %.3g", math.Exp(math.Abs(d)))
+	}
+	return fmt.Sprintf("the drag route is %s %s the amplitude route (%s with inputs exact, %s with their uncertainties)",
+		size, relation, pText(float64(t.PValue)), pText(float64(t.PValueCombined)))
 }
 
+// pText writes a p-value for a sentence.
 func pText(p float64) string {
 	if p < 1e-4 {
-		return "under 0.0001"
+		return "p < 0.0001"
 	}
-	return fmt.Sprintf("%.2g", p)
+	return fmt.Sprintf("p = %.2g", p)
 }
 
 // adopt combines the routes into one stiffness.

@@ -77,7 +77,7 @@ const spectrumPoints = 160
 func (w *work) describeSpectrum() {
 	s := &w.axis.Spectrum
 	f := w.fit
-	s.Method, s.Drag = f.Method, "constant"
+	s.Method, s.Drag = f.Method, w.dragModel
 	s.Band = [2]Float{Float(f.Band.Low), Float(f.Band.High)}
 	s.Bins = f.Bins
 	for _, l := range w.record.Lines {

@@ -158,6 +158,10 @@ func (w *work) shaped(like int, sd float64) relaxation.Offsets {
 	return relaxation.Normal(sd)
 }
 
+// relaxationsOfInertia is the first lag, in relaxation times, of a fit of the mean-square
+// displacement where the drag depends on frequency: from there on it has all but reached its plateau.
+const relaxationsOfInertia = 2
+
 // chiSquareOffsets are the offsets of ln V for a variance that is distributed as a
 // chi-square with 2/sd^2 degrees of freedom (Satterthwaite, Biometrics Bull. 2 (1946) 110).
 func chiSquareOffsets(sd float64) relaxation.Offsets {
@@ -174,7 +178,11 @@ func (w *work) displacementLegs(p relaxation.Process, total relaxation.Matrix, d
 		l.reason[displacementLeg], l.reason[timeLeg] = reason, reason
 		return
 	}
-	m, err := msd.Estimate(msd.Input{X: w.record.X, Missing: w.record.Missing > 0, Guess: p, Scale: w.fit.Scale(), FitCovariance: total,
+	first := 0
+	if w.dragModel == FrequencyDependentDrag { // short lags follow the inertia of the liquid
+		first = int(math.Ceil(relaxationsOfInertia / (2 * math.Pi * p.Corner / w.rate)))
+	}
+	m, err := msd.Estimate(msd.Input{FirstLag: first, X: w.record.X, Missing: w.record.Missing > 0, Guess: p, Scale: w.fit.Scale(), FitCovariance: total,
 		Noise: msd.Noise{Known: w.noise.Known, Variance: w.noise.Variance, VarianceU: w.noise.VarianceU}})
 	if err != nil {
 		l.reason[displacementLeg], l.reason[timeLeg] = err.Error(), err.Error()
@@ -189,7 +197,9 @@ func (w *work) displacementLegs(p relaxation.Process, total relaxation.Matrix, d
 		l.value[displacementLeg] = math.Log(w.phys.kT / m.Variance)
 		l.offsets[displacementLeg] = w.shaped(amplitudeLeg, sdV)
 	}
-	if bound = w.pooled.regimeFC; sdC > hopeless || bound > hopeless || drawn {
+	if w.dragModel == FrequencyDependentDrag {
+		l.reason[timeLeg] = "the relaxation of the mean-square displacement is modelled with constant drag, and here the drag depends on frequency"
+	} else if bound = w.pooled.regimeFC; sdC > hopeless || bound > hopeless || drawn {
 		l.reason[timeLeg] = tooUncertain(math.Max(sdC, bound))
 	} else {
 		l.value[timeLeg] = math.Log(2 * math.Pi * w.phys.gamma * m.Corner)

@@ -12,8 +12,7 @@ func nearFactor(radius, height float64) (float64, error) { return drag.Parallel(
 
 // Limits of the findings of one axis.
 const (
-	shortRelaxations = 30   // T fc below which a record is called short: relative uncertainty of 1/sqrt(pi T fc) = 10 %
-	hydroBias        = 0.25 // share of the statistical uncertainty that a neglected bias may have
+	shortRelaxations = 30 // T fc below which a record is called short: relative uncertainty of 1/sqrt(pi T fc) = 10 %
 )
 
 // findings lists what the user should know of one axis.
@@ -37,27 +36,8 @@ func (w *work) findings() []Finding {
 			Text:   fmt.Sprintf("A narrow line at %.6g Hz with an amplitude of %.3g nm was removed.", l.Frequency, l.Amplitude*1e9),
 			Remedy: "look for mains pickup or a vibration", Value: Float(l.Frequency), Limit: nan, Unit: "Hz"})
 	}
-	if f, ok := w.hydrodynamics(); ok {
+	if f, ok := w.hydrodynamicFinding(); ok {
 		out = append(out, f)
 	}
 	return out
-}
-
-// hydrodynamics warns where the inertia of the liquid matters: drag grows with
-// frequency as 1 + sqrt(f/f_nu), f_nu = nu/(pi R^2), so that a constant-drag fit up to half
-// the sampling rate is low in fc and D by about (2/3) sqrt(f/f_nu) together.
-func (w *work) hydrodynamics() (Finding, bool) {
-	if math.IsNaN(w.phys.density) || w.fitErr != nil {
-		return Finding{}, false
-	}
-	nu := w.phys.viscosity / w.phys.density
-	fNu := nu / (math.Pi * w.phys.radius * w.phys.radius)
-	size := 0.5 * math.Sqrt(w.rate/2/fNu)
-	sd, _ := w.fit.SD(alongDrag)
-	if math.Pow(w.fit.Corner*2/w.rate, 1) > 0.5 || size < hydroBias*sd {
-		return Finding{}, false
-	}
-	return Finding{Code: CodeHydrodynamics, Severity: Doubtful, Axis: w.axisName,
-		Text:   fmt.Sprintf("The bandwidth is large enough for the inertia of the liquid to matter: the drag grows by up to %.1f %% within the band, and the fit with constant drag may be low by about half of that.", 200*size),
-		Remedy: "restrict the fit with --band to a few times the corner frequency", Value: Float(size), Limit: Float(hydroBias * sd), Unit: "1"}, true
 }

@@ -29,7 +29,7 @@ func (r *Result) judge(works []*work, opt Options) {
 	v := &r.Verdict
 	v.Status = Consistent
 	defer r.judgeHealth()
-	if !r.anyAdopted() {
+	if tested == 0 && !r.anyAdopted() || tested > 0 && !r.anyAdopted() && lowest*float64(tested) >= familyLevel {
 		v.Status, v.FamilyWiseP = Unfit, Float(math.NaN())
 		v.Text = "No stiffness can be given from this recording."
 		v.Reason = r.Axes[0].Adopted.Withheld
@@ -50,7 +50,7 @@ func (r *Result) judge(works []*work, opt Options) {
 	}
 	v.Status = Inconsistent
 	v.Text = "The estimates disagree: do not use this calibration before the cause is found."
-	v.Reason = fmt.Sprintf("axis %s: %s; family-wise p %s, inconsistent below %g", worst.axisName, worst.axis.CrossCheck.Text, pText(float64(v.FamilyWiseP)), familyLevel)
+	v.Reason = fmt.Sprintf("axis %s: %s; family-wise %s, inconsistent below %g", worst.axisName, worst.axis.CrossCheck.Text, pText(float64(v.FamilyWiseP)), familyLevel)
 	if opt.Adopt != "" {
 		return
 	}

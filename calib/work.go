@@ -29,14 +29,17 @@ type work struct {
 	noise     psd.Noise
 	volts     bool // positions are in detector units: no absolute length
 
-	record  *psd.Record
-	fit     *psd.Fit
-	fitErr  error
-	legs    legs
-	pooled  pooled
-	poolErr error
-	axis    Axis
-	notes   []Finding
+	record    *psd.Record
+	fit       *psd.Fit
+	fitErr    error
+	legs      legs
+	pooled    pooled
+	poolErr   error
+	dragModel string                                                 // ConstantDrag or FrequencyDependentDrag
+	form      func(relaxation.Blocks, float64) relaxation.Likelihood // of the fit; nil: the relaxation process
+	hydro     *psd.Bias                                              // of a fit with constant drag, where it matters
+	axis      Axis
+	notes     []Finding
 }
 
 // newWork reads what the settings say of one axis and converts its positions.
@@ -133,6 +136,9 @@ func (w *work) run(ctx context.Context) error {
 	if err := ctx.Err(); err != nil {
 		return err
 	}
+	if err := w.settleDrag(); err != nil {
+		return err
+	}
 	if w.poolErr = w.pool(); w.poolErr != nil && w.fitErr != nil && w.noise.Known {
 		return w.dataError(fmt.Errorf("the positions do not look like those of a trapped bead: %w", w.fitErr),
 			"check the unit, the diameter and the exposure, and that the bead was trapped; state the noise if it is known")
@@ -149,7 +155,7 @@ func (w *work) dataError(err error, remedy string) error {
 }
 
 func (w *work) fitOptions() psd.Options {
-	o := psd.Options{Exposure: w.exposure, Noise: w.noise}
+	o := psd.Options{Exposure: w.exposure, Noise: w.noise, Form: w.form}
 	if s, ok := w.set.Lookup("fit.band", ""); ok && len(s.Bands) == 1 {
 		o.Band = psd.Range{Low: s.Bands[0].Low, High: s.Bands[0].High}
 	}

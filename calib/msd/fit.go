@@ -26,11 +26,12 @@ type Noise struct {
 
 // Input is what the estimate is made from.
 type Input struct {
-	X       []float64          // positions, mean and drift removed [m]; NaN where missing
-	Missing bool               // whether there are NaNs
-	Guess   relaxation.Process // interval and exposure; the rest gives lags, covariance and start
-	Noise   Noise
-	Scale   float64 // unit of variance [m2] for q
+	X        []float64          // positions, mean and drift removed [m]; NaN where missing
+	Missing  bool               // whether there are NaNs
+	Guess    relaxation.Process // interval and exposure; the rest gives lags, covariance and start
+	Noise    Noise
+	FirstLag int     // shortest lag to fit [samples]; 0 or 1: all
+	Scale    float64 // unit of variance [m2] for q
 	// FitCovariance is the covariance of ln fc, ln V and q/Scale of an efficient fit of
 	// the same record, for the covariance of the two.
 	FitCovariance relaxation.Matrix
@@ -75,6 +76,7 @@ func Estimate(in Input) (*Result, error) {
 	}
 	g := in.Guess
 	lags := Lags(len(in.X), 1/(2*math.Pi*g.Corner*g.Interval))
+	lags = from(lags, in.FirstLag)
 	values, pairs := Displacements(in.X, in.Missing, lags)
 	lags, values, pairs = keepFull(lags, values, pairs)
 	if len(lags) < 3 {
@@ -88,6 +90,15 @@ func Estimate(in Input) (*Result, error) {
 		return nil, err
 	}
 	return f.result(), nil
+}
+
+// from drops the lags below first, but leaves at least four.
+func from(lags []int, first int) []int {
+	i := 0
+	for i < len(lags)-4 && lags[i] < first {
+		i++
+	}
+	return lags[i:]
 }
 
 // keepFull drops lags without pairs.

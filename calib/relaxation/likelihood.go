@@ -154,6 +154,23 @@ func addNumericGradient(g *Parameters, p Parameters, f func(Parameters) float64)
 	}
 }
 
+// amplitude returns the best variance for a spectrum of given corner frequency and noise
+// share q/V, and the log-likelihood with it.
+func (b Blocks) amplitude(sh shape, share float64) (v, value float64) {
+	var sum, weight, logs float64
+	for j, w := range b.Weight {
+		m := sh.at(1, share, b.Sigma[j], b.SigmaVar[j])
+		if !(m > 0) {
+			return math.NaN(), math.Inf(-1)
+		}
+		sum += w * b.Power[j] / m
+		logs += w * math.Log(m)
+		weight += w
+	}
+	v = sum / weight
+	return v, -weight*math.Log(v) - logs
+}
+
 // Start scans corner frequencies; for each, and for each of some noise shares, the
 // best amplitude is known in closed form.
 func (s *Spectral) Start(noise float64, noiseFree bool) Parameters {
@@ -164,7 +181,6 @@ func (s *Spectral) Start(noise float64, noiseFree bool) Parameters {
 const startBlocks = 80
 
 func startFromBlocks(b Blocks, exposure, scale, noise float64, noiseFree bool) Parameters {
-	shares := []float64{0, 0.003, 0.03, 0.3}
 	best, bestValue := Parameters{math.Log(0.05), 0, 0}, math.Inf(-1)
 	low := math.Max(0.1/float64(b.Samples), 2*lowestCorner)
 	b = b.thinned(startBlocks)
@@ -172,23 +188,20 @@ func startFromBlocks(b Blocks, exposure, scale, noise float64, noiseFree bool) P
 	for i := 0; i <= steps; i++ {
 		x := low * math.Pow(1.5/low, float64(i)/steps)
 		sh := newShape(x, exposure)
-		for _, share := range shares {
-			var sum, weight, logs float64
-			for j, w := range b.Weight {
-				m := sh.at(1, share, b.Sigma[j], b.SigmaVar[j])
-				sum += w * b.Power[j] / m
-				logs += w * math.Log(m)
-				weight += w
+		for _, share := range []float64{0, 0.003, 0.03, 0.3} {
+			v, value := b.amplitude(sh, share)
+			if !noiseFree { // the share that the stated noise has, to a few per cent
+				for range 3 {
+					v, value = b.amplitude(sh, noise/v)
+				}
+				share = noise / v
 			}
-			v := sum / weight
-			value := -weight*math.Log(v/scale) - logs
-			if !noiseFree {
-				// the share must fit the stated noise; compare on a log scale
-				value -= weight * 0.5 * math.Abs(math.Log((share+1e-4)/(noise/v+1e-4)))
-			}
-			if value > bestValue && v > 0 {
+			if value > bestValue && v > 0 && !math.IsInf(v, 1) {
 				bestValue = value
 				best = Parameters{math.Log(x), math.Log(v / scale), share * v / scale}
+			}
+			if !noiseFree {
+				break
 			}
 		}
 	}

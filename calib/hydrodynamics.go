@@ -1,0 +1,154 @@
+package calib
+
+import (
+	"fmt"
+	"math"
+
+	"beadwell/calib/drag"
+	"beadwell/psd"
+)
+
+// Names of the drag in a spectrum.
+const (
+	ConstantDrag           = "constant"
+	FrequencyDependentDrag = "frequency-dependent"
+)
+
+const (
+	// hydroBias is the bias of a fit with constant drag, in its statistical uncertainties, from which on
+	// the frequency dependence is looked at: a tenth of that in quadrature.
+	hydroBias = 0.25
+	// hydroGain is how much larger the log-likelihood with frequency-dependent drag must
+	// be for the automatic choice to take it; the two have equally many parameters.
+	hydroGain = 1.0
+)
+
+// hydrodynamic is the spectrum with the inertia of liquid and bead and the low-pass of
+// the detector; ok is false where neither is known. The mass of a bead of unstated density is that of
+// the liquid it displaces: it matters near f_m, megahertz for a bead of a micrometre.
+func (w *work) hydrodynamic(inertia bool) (psd.Hydrodynamic, bool) {
+	var h psd.Hydrodynamic
+	f3db, hasDiode := number(w.set, "detector.f3db", "")
+	if hasDiode {
+		h.F3dB = f3db.Value.SI
+		if alpha, ok := number(w.set, "detector.alpha", ""); ok {
+			h.Alpha = alpha.Value.SI
+		}
+	}
+	p := w.phys
+	if inertia && !math.IsNaN(p.density) {
+		d := drag.Frequency{Radius: p.radius, Height: p.height, Viscosity: p.viscosity, Density: p.density,
+			StaticFactor: math.Max(1, p.wall.Factor), Perpendicular: !p.parallel}
+		if d.Check() == nil {
+			static := complex(d.StaticFactor, 0)
+			h.Drag = func(f float64) complex128 { return d.Factor(f) / static }
+			density := p.beadDensity
+			if math.IsNaN(density) {
+				density = p.density
+			}
+			mass := 4.0 / 3 * math.Pi * p.radius * p.radius * p.radius * density
+			h.MassCorner = p.gamma / (2 * math.Pi * mass)
+		}
+	}
+	return h, hasDiode || h.Drag != nil
+}
+
+// settleDrag replaces the fit with constant drag by one with frequency-dependent drag or a
+// photodiode's low-pass, where that is set, or where it matters and the record shows it.
+func (w *work) settleDrag() error {
+	w.dragModel = ConstantDrag
+	choice := "auto"
+	if s, ok := w.set.Lookup("fit.drag", ""); ok && s.Word != "" {
+		choice = s.Word
+	}
+	diode, hasDiode := w.hydrodynamic(false)
+	if hasDiode {
+		if err := w.refit(diode); err != nil {
+			return err
+		}
+	}
+	if choice == ConstantDrag {
+		return nil
+	}
+	h, ok := w.hydrodynamic(true)
+	if !ok || h.Drag == nil {
+		if choice == FrequencyDependentDrag {
+			return &SettingError{Key: "fit.drag", Problem: "is frequency-dependent, but the density of the liquid is not known",
+				Remedy: `state it with --fluid-density "0.998 g/cm3"`}
+		}
+		return nil
+	}
+	if choice == FrequencyDependentDrag {
+		w.dragModel = FrequencyDependentDrag
+		return w.refit(h)
+	}
+	return w.chooseDrag(h)
+}
+
+// refit fits another spectrum to the record that is already free of lines.
+func (w *work) refit(h psd.Hydrodynamic) error {
+	if err := h.Check(); err != nil {
+		return &SettingError{Key: "detector.f3db", Problem: err.Error()}
+	}
+	options := w.fitOptions()
+	options.KeepLines = true
+	options.Form = h.Form(w.rate, w.exposure)
+	w.fit, w.fitErr = psd.Estimate(w.record, options)
+	w.form = options.Form
+	return nil
+}
+
+// chooseDrag takes frequency-dependent drag where a fit with constant drag would be
+// biased by more than a quarter of its uncertainty and the record's likelihood is larger with it.
+func (w *work) chooseDrag(h psd.Hydrodynamic) error {
+	if w.fitErr != nil || w.record.Missing > 0 {
+		return nil
+	}
+	sd, _ := w.fit.SD(alongCorner)
+	sdD, _ := w.fit.SD(alongDrag)
+	noise := math.Max(0, w.fit.NoiseQ/w.fit.Variance)
+	bias, err := h.Bias(psd.Design{Rate: w.rate, Exposure: w.exposure, Corner: w.fit.Corner, Noise: noise, NoiseFree: !w.noise.Known, Band: w.givenBand()})
+	if err != nil || math.Abs(bias.Corner) < hydroBias*sd && math.Abs(bias.Diffusion) < hydroBias*sdD {
+		return nil
+	}
+	w.hydro = &bias
+	plain, plainForm := w.fit, w.form
+	base := plain
+	if plain.Method == psd.Exact || plainForm == nil {
+		// the same form of the likelihood for both, so that their values compare
+		options := w.fitOptions()
+		options.KeepLines = true
+		constant := h
+		constant.Drag, constant.MassCorner = nil, 0
+		options.Form = constant.Form(w.rate, w.exposure)
+		if base, err = psd.Estimate(w.record, options); err != nil {
+			return nil
+		}
+	}
+	if err := w.refit(h); err != nil || w.fitErr != nil || w.fit.Maximum.Value < base.Maximum.Value+hydroGain {
+		w.fit, w.fitErr, w.form = plain, nil, plainForm
+		return nil
+	}
+	w.dragModel = FrequencyDependentDrag
+	return nil
+}
+
+func (w *work) givenBand() psd.Range { return w.fitOptions().Band }
+
+// hydrodynamicFinding says which drag was used where it matters.
+func (w *work) hydrodynamicFinding() (Finding, bool) {
+	if w.hydro == nil {
+		return Finding{}, false
+	}
+	f := Finding{Code: CodeHydrodynamics, Axis: w.axisName, Value: Float(w.hydro.Corner), Limit: Float(math.NaN()), Unit: "1"}
+	size := fmt.Sprintf("corner frequency and stiffness by drag would be %.1f %% off", 100*math.Abs(w.hydro.Corner))
+	if w.dragModel == FrequencyDependentDrag {
+		f.Severity = Note
+		f.Text = "The inertia of the liquid matters at this rate: with constant drag " + size + ". Frequency-dependent drag was fitted."
+		return f, true
+	}
+	f.Severity = Doubtful
+	f.Text = "The inertia of the liquid should matter at this rate, but the spectrum does not show it better than a constant drag; constant drag was fitted. If the inertia is there, " + size + "."
+	f.Remedy = "record longer, restrict the fit with --band to a few times the corner frequency, or decide with --drag constant or --drag frequency-dependent"
+	return f, true
+}
