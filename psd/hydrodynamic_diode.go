@@ -26,13 +26,16 @@ func (f *Fit) Diode() (Diode, bool) {
 type diode struct {
 	share float64 // a
 	log   float64 // ln f3dB, f3dB in Hz; +Inf without low-pass
+	f3dB  float64 // [Hz]
 }
+
+func newDiode(share, log float64) diode { return diode{share, log, math.Exp(log)} }
 
 func (h Hydrodynamic) diode() diode {
 	if h.F3dB == 0 {
-		return diode{1, math.Inf(1)}
+		return newDiode(1, math.Inf(1))
 	}
-	return diode{h.Alpha * h.Alpha, math.Log(h.F3dB)}
+	return newDiode(h.Alpha*h.Alpha, math.Log(h.F3dB))
 }
 
 func (d diode) prompt() float64 { return d.share }
@@ -41,7 +44,7 @@ func (d diode) power(f float64) float64 { return d.share + (1-d.share)*d.slow(f)
 
 // slow is the power response 1/(1 + (f/f3dB)^2) of the part that is not prompt.
 func (d diode) slow(f float64) float64 {
-	r := f / math.Exp(d.log)
+	r := f / d.f3dB
 	return 1 / (1 + r*r)
 }
 
@@ -70,7 +73,7 @@ func newFreeDiode(w *whittle, h Hydrodynamic) *freeDiode {
 		d.low, d.high = d.from.log-math.Log(givenWithin), d.from.log+math.Log(givenWithin)
 		return d
 	}
-	d.from = diode{0.1, (d.low + d.high) / 2}
+	d.from = newDiode(0.1, (d.low+d.high)/2)
 	return d
 }
 
@@ -110,7 +113,7 @@ const (
 
 // moved returns the detector after a step, within its range.
 func (d *freeDiode) moved(at diode, share, log float64) diode {
-	return diode{math.Max(0, math.Min(1, at.share+share)), math.Max(d.low, math.Min(d.high, at.log+log))}
+	return newDiode(math.Max(0, math.Min(1, at.share+share)), math.Max(d.low, math.Min(d.high, at.log+log)))
 }
 
 // free tells which of the two can move along the gradient.
@@ -221,7 +224,7 @@ func (d *freeDiode) Start(noise float64, noiseFree bool) relaxation.Parameters {
 	const places = 5 // of f3dB, evenly spaced in its logarithm
 	for _, alpha := range []float64{0, 0.3, 0.6} {
 		for i := range places {
-			net = append(net, diode{alpha * alpha, d.low + (d.high-d.low)*(float64(i)+0.5)/places})
+			net = append(net, newDiode(alpha*alpha, d.low+(d.high-d.low)*(float64(i)+0.5)/places))
 		}
 	}
 	top, at := math.Inf(-1), start
@@ -262,6 +265,6 @@ func (d *freeDiode) fitted(p relaxation.Parameters, total relaxation.Matrix) Dio
 			u[a] = math.NaN()
 		}
 	}
-	alpha, f3dB := math.Sqrt(r.diode.share), math.Exp(r.diode.log)
+	alpha, f3dB := math.Sqrt(r.diode.share), r.diode.f3dB
 	return Diode{Alpha: alpha, AlphaU: u[0] / (2 * alpha), F3dB: f3dB, F3dBU: u[1] * f3dB}
 }

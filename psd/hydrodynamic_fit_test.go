@@ -184,7 +184,7 @@ func TestHydrodynamicCheck(t *testing.T) {
 
 // Degenerate inputs give an error, or minus infinity, never a panic.
 func TestHydrodynamicDegenerate(t *testing.T) {
-	for _, h := range []Hydrodynamic{{}, {FitDiode: true}, {Drag: func(float64) complex128 { return complex(-1, 0) }}} {
+	for _, h := range []Hydrodynamic{{}, {FitDiode: true, F3dB: 200, Alpha: 0.5}, {Drag: func(float64) complex128 { return complex(-1, 0) }}} {
 		form := h.Form(1000, 0)
 		white := make([]float64, 200)
 		for i := range white {

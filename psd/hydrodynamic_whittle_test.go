@@ -174,3 +174,13 @@ func BenchmarkHydrodynamicForm(b *testing.B) {
 		h.Form(100e3, 0)(blocks, 1)
 	}
 }
+
+func BenchmarkHydrodynamicFreeDiode(b *testing.B) {
+	blocks := lorentzBlocks(1<<16, 0.01)
+	h := bead{radius: 1e-6}.spectrum()
+	h.FitDiode = true
+	l := h.Form(100e3, 0)(blocks, 1)
+	for b.Loop() {
+		l.Score(relaxation.Parameters{math.Log(0.01), 0, 0.01})
+	}
+}
