@@ -178,6 +178,30 @@ func TestStatedNoise(t *testing.T) {
 	}
 }
 
+// A stated noise adds its information: with C the covariance of the fit that knows nothing of the
+// noise and u its uncertainty, the covariance is C - C e e' C/(u^2 + C_22), and the record's part of it is
+// less by what u carries in. The fits end a fraction of a standard error apart, where the information
+// differs by a few percent.
+func TestStatedNoiseAddsInformation(t *testing.T) {
+	g := regime{corner: 0.03, noise: 0.3, turns: 300}
+	x := simulate.Record(g.truth(), 3)[0]
+	q := 0.09 * rms * rms
+	free := estimate(t, x, 1000, psd.Options{})
+	c, scale := free.Total, free.Scale()
+	for _, share := range []float64{0.02, 0.1} {
+		u := share * q
+		f := estimate(t, x, 1000, psd.Options{Noise: psd.Noise{Known: true, Variance: q, VarianceU: u}})
+		prior := u * u / scale / scale
+		for k := range 3 {
+			total := c[k][k] - c[k][2]*c[k][2]/(prior+c[2][2])
+			carried := f.Total[k][2] * f.Total[k][2] / prior
+			if math.Abs(f.Total[k][k]/total-1) > 0.05 || math.Abs(f.Data[k][k]/(f.Total[k][k]-carried)-1) > 1e-9 {
+				t.Errorf("noise known to %g: variance of parameter %d = %.5g, of the record alone %.5g, want %.5g, %.5g", share, k, f.Total[k][k], f.Data[k][k], total, f.Total[k][k]-carried)
+			}
+		}
+	}
+}
+
 // A band keeps what is in it; ranges that are left out are not looked at.
 func TestBandAndExclusion(t *testing.T) {
 	g := regime{corner: 0.02, turns: 200}
@@ -229,6 +253,78 @@ func TestMissingSamples(t *testing.T) {
 	}
 	if r := gappy.mean() / whole.mean(); r < 1 || r > 1.25 {
 		t.Errorf("standard error with gaps is %.3f of that without, want 1 to 1.25", r)
+	}
+}
+
+// The mean square is over the samples there are, and the spectrum of what is left has that
+// power, whatever is missing (Parseval, but for what the line takes from the first blocks, 1/N, and
+// for the highest frequency, which counts half).
+func TestMeanSquareOfGaps(t *testing.T) {
+	const n = 3000
+	x := simulate.Record(simulate.Truth{Samples: n, Rate: 1000, Axes: []simulate.Axis{{Corner: 50, Variance: rms * rms}}}, 9)[0]
+	for i := range x {
+		if i%3 == 1 {
+			x[i] = math.NaN()
+		}
+	}
+	r, err := psd.Prepare(x, 1000)
+	if err != nil {
+		t.Fatal(err)
+	}
+	sum := 0.0
+	for _, v := range r.X {
+		if v == v {
+			sum += v * v
+		}
+	}
+	if r.Missing != n/3 || math.Abs(r.MeanSquare()/(sum/(n-n/3))-1) > 1e-12 {
+		t.Errorf("mean square of %d samples = %.12g m2, want %.12g", r.Observed(), r.MeanSquare(), sum/(n-n/3))
+	}
+	f, err := psd.Estimate(r, psd.Options{Noise: psd.Noise{Known: true}})
+	if err != nil {
+		t.Fatal(err)
+	}
+	power, bins := 0.0, 0
+	for i, p := range f.Blocks.Power {
+		power += p * float64(f.Blocks.Bins[i])
+		bins += f.Blocks.Bins[i]
+	}
+	if got := power / float64(bins) / r.MeanSquare(); math.Abs(got-1) > 0.01 { // the first block's weight is 1-3/pi^2
+		t.Errorf("mean power = %.5f of the mean square, want 1", got)
+	}
+}
+
+// Mean and line are taken out to the rounding of what is left, not of what was recorded: of
+// positions a million rms from zero, and drifting by ten, each with a rounding of 1e-10 rms. Mean
+// and slope are reported.
+func TestPrepareRemovesLine(t *testing.T) {
+	const n, rate = 3000, 500.0
+	x := simulate.Record(simulate.Truth{Samples: n, Rate: rate, Axes: []simulate.Axis{{Fixed: true, Noise: rms}}}, 1)[0]
+	var mean, slope moments
+	for i := range x {
+		u := float64(i)/(n-1) - 0.5
+		mean.add(x[i])
+		slope.add(x[i] * u * 12)
+		x[i] += 1e6*rms + 10*rms*u
+	}
+	r, err := psd.Prepare(x, rate)
+	if err != nil {
+		t.Fatal(err)
+	}
+	var left, leaning moments
+	for i, v := range r.X {
+		left.add(v / rms)
+		leaning.add(v / rms * (float64(i)/(n-1) - 0.5))
+	}
+	if math.Abs(left.mean()) > 1e-14 || math.Abs(leaning.mean()) > 1e-14 {
+		t.Errorf("what is left has the mean %.2g rms and the first moment %.2g rms", left.mean(), leaning.mean())
+	}
+	if want := 1e6*rms + mean.mean(); math.Abs(r.Mean-want) > 1e-9*rms { // rounding of 1e6
+		t.Errorf("mean = %.16g m, want %.16g", r.Mean, want)
+	}
+	// per second: the record is (n-1)/rate long; the noise has its own slope
+	if want := (10*rms + slope.mean()) * rate / (n - 1); math.Abs(r.Slope/want-1) > 1e-3 {
+		t.Errorf("drift = %.8g m/s, want %.8g", r.Slope, want)
 	}
 }
 

@@ -24,7 +24,14 @@ func TestMainsLine(t *testing.T) {
 	const records = 60
 	extra := 0
 	for i := range records {
-		clean := estimate(t, simulate.Record(g.truth(), uint64(900+i))[0], 1000, psd.Options{})
+		whole, err := psd.Prepare(simulate.Record(g.truth(), uint64(900+i))[0], 1000)
+		if err != nil {
+			t.Fatal(err)
+		}
+		clean, err := psd.Estimate(whole, psd.Options{KeepLines: true})
+		if err != nil {
+			t.Fatal(err)
+		}
 		r, err := psd.Prepare(simulate.Record(truth, uint64(900+i))[0], 1000)
 		if err != nil {
 			t.Fatal(err)
@@ -45,6 +52,14 @@ func TestMainsLine(t *testing.T) {
 		f.add((l.Frequency - hz) / sdF)
 		if l.Low > hz || l.High < hz || l.High-l.Low > 1 {
 			t.Errorf("record %d: %g to %g Hz are left out for a line at %g Hz", i, l.Low, l.High, hz)
+		}
+		if want := r.Length/2 - 5; len(r.Lines) == 1 && fit.Bins != want { // two frequencies to either side
+			t.Errorf("record %d: %d frequencies are fitted, want %d", i, fit.Bins, want)
+		}
+		// The line had 4.5 % of the mean square; its removal takes three degrees of freedom of the
+		// record along, each 2 P(50 Hz)/T = 4e-4 of the variance at most.
+		if gap := r.MeanSquare()/whole.MeanSquare() - 1; math.Abs(gap) > 3e-3 {
+			t.Errorf("record %d: without its line the mean square is off by %.2g of itself", i, gap)
 		}
 		sd, _ := fit.SD(alongCorner)
 		corner.add(math.Log(fit.Corner/20) / sd)

@@ -313,6 +313,14 @@ func TestStatedNoise(t *testing.T) {
 			t.Errorf("variance of parameter %d, of the record alone: %.5g, want %.5g (of %.5g in all)", k, got, want, total)
 		}
 	}
+	// A noise that is stated three of its uncertainties off costs (q - q0)^2/(u^2 + C_22) in chi-square,
+	// to the order at which the model is not linear in q.
+	free, off := at(Noise{}), at(Noise{true, 0.4 * p.Noise, u})
+	gap := (free.NoiseQ - 0.4*p.Noise) / f.scale
+	want := gap * gap / (u*u/f.scale/f.scale + free.Covariance[2][2])
+	if got := off.ChiSquare - free.ChiSquare; math.Abs(got/want-1) > 0.1 {
+		t.Errorf("chi-square rises by %.4g for a stated noise that is off, want %.4g", got, want)
+	}
 	tight, vague := at(Noise{true, p.Noise, 1e-4 * p.Noise}), at(Noise{true, p.Noise, 1e4 * p.Noise})
 	exact, unknown := at(Noise{Known: true, Variance: p.Noise}), at(Noise{})
 	if math.Abs(tight.Corner/exact.Corner-1) > 1e-5 || math.Abs(vague.Corner/unknown.Corner-1) > 1e-5 {

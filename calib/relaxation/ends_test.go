@@ -5,6 +5,7 @@ import (
 	"math/rand/v2"
 	"testing"
 
+	"gonum.org/v1/gonum/dsp/fourier"
 	"gonum.org/v1/gonum/mat"
 )
 
@@ -56,6 +57,58 @@ func TestEndsOpenTheRing(t *testing.T) {
 			if !ok || math.Abs(got-want) > 1e-8*math.Max(1, size*size*10) {
 				t.Errorf("process %d, size %g: ln p(line) - ln p(ring) = %.12g, want %.12g (dense matrices)", i, size, got, want)
 			}
+		}
+	}
+}
+
+// For a bead without noise and blur, the ratios of the periodogram to the spectrum add up to the squared
+// steps round the ring over their variance (Parseval): those of the line and the one
+// from the end to the beginning, 1 + EndExcess.
+func TestEndExcessIsLastStep(t *testing.T) {
+	p := Process{Corner: 0.05, Variance: 0.4, Interval: 1}
+	const n = 64
+	c := p.Decay()
+	rng := rand.New(rand.NewPCG(3, 4))
+	x := make([]float64, n)
+	for i := range x {
+		x[i] = rng.NormFloat64()
+	}
+	sum := 0.0
+	for k, z := range fourier.NewFFT(n).Coefficients(nil, x) {
+		weight := 2.0
+		if k == 0 || k == n/2 {
+			weight = 1
+		}
+		sum += weight * (real(z)*real(z) + imag(z)*imag(z)) / n / p.Spectrum(float64(k)/n)
+	}
+	for i := 1; i < n; i++ {
+		step := x[i] - c*x[i-1]
+		sum -= step * step / (p.Variance * (1 - c*c))
+	}
+	if got := p.EndExcess(x); math.Abs(got-(sum-1)) > 1e-11*float64(n) { // 64 terms of up to 10
+		t.Errorf("EndExcess = %.12g, want %.12g", got, sum-1)
+	}
+	x[0] = math.NaN()
+	if got := p.EndExcess(x); got != 0 {
+		t.Errorf("EndExcess with the first sample missing = %g, want 0", got)
+	}
+}
+
+// The two ends of a record of fc T = 60 know nothing of each other: x_0 - c x_{N-1} has the variance
+// V B (1 + c^2), the filtered states and their uncertainty together, against V B (1 - c^2) of a step.
+func TestEndExcessMean(t *testing.T) {
+	for i, p := range processes[:4] {
+		c := p.Decay()
+		want := (1+c*c)/(1-c*c) - 1
+		sum, square := 0.0, 0.0
+		const records = 300
+		for j := range records {
+			e := p.EndExcess(record(p, int(60/p.Corner/20)*2+20, uint64(1000*i+j)))
+			sum += e / records
+			square += e * e / records
+		}
+		if sd := math.Sqrt((square - sum*sum) / records); math.Abs(sum-want) > 4*sd {
+			t.Errorf("process %d: mean of EndExcess = %.3f +- %.3f, want %.3f", i, sum, sd, want)
 		}
 	}
 }
