@@ -194,15 +194,18 @@ func TestHydrodynamicDegenerate(t *testing.T) {
 		if err != nil {
 			t.Fatal(err)
 		}
-		if f, err := Estimate(r, Options{Form: form, KeepLines: true}); err == nil && !(f.Corner > 0) {
-			t.Errorf("white noise: fc %g without an error", f.Corner)
-		}
 		l := form(r.blocks(Range{}, nil), 1)
 		for _, p := range []relaxation.Parameters{{math.NaN(), 0, 0}, {0, math.NaN(), 0}, {0, 0, math.NaN()}, {100, 0, 0}, {-100, 0, 0}, {-1, 0, -1e9}, {-1, 100, 0}} {
 			v, _, _ := l.Score(p)
 			if !math.IsInf(v, -1) || !math.IsInf(l.Value(p), -1) {
 				t.Errorf("at %v: Score %g, Value %g", p, v, l.Value(p))
 			}
+		}
+		if h.FitDiode { // here it is only slow
+			continue
+		}
+		if f, err := Estimate(r, Options{Form: form, KeepLines: true}); err == nil && !(f.Corner > 0) {
+			t.Errorf("white noise: fc %g without an error", f.Corner)
 		}
 	}
 	r, _ := Prepare(make([]float64, 100), 1000)
