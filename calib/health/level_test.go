@@ -31,10 +31,11 @@ func TestLimits(t *testing.T) {
 		{"long-exposure", 5000, 1000, 1, 3000, 0.0616, 1e-4, Bad},
 		// sd = sqrt((1-c^2)/N)/(c |ln c|), c = exp(-2 pi fc/fs), without blur
 		{"slow-sampling", 400, 1000, 0, 3000, 0.08939, 1e-4, OK},
-		{"slow-sampling", 900, 1000, 0, 3000, 0.92234, 1e-4, Doubtful},
-		{"slow-sampling", 1200, 1000, 0, 3000, 4.556, 1e-3, Bad},
+		{"slow-sampling", 700, 1000, 0, 900, 0.6162, 1e-3, Doubtful},
+		{"slow-sampling", 900, 1000, 0, 900, 1.6840, 1e-3, Bad},
 	} {
-		a := axis("x", white(row.samples, rms, 1))
+		truth := simulate.Truth{Samples: row.samples, Rate: row.rate, Exposure: row.w / row.rate, Axes: []simulate.Axis{{Corner: row.corner, Variance: rms * rms}}}
+		a := axis("x", simulate.Record(truth, 1)[0])
 		a.Process = relaxation.Process{Corner: row.corner, Variance: rms * rms, Interval: 1 / row.rate, Exposure: row.w / row.rate}
 		c := find(t, Run(Input{Axes: []Axis{a}, Rate: row.rate, Exposure: row.w / row.rate}), row.code, "x")
 		if math.Abs(c.Value-row.value) > row.toleranceOf*math.Max(1, row.value) || c.Level != row.level {
@@ -45,7 +46,8 @@ func TestLimits(t *testing.T) {
 
 // TestCornerSDGiven: a stated uncertainty of the corner replaces the bound.
 func TestCornerSDGiven(t *testing.T) {
-	a := axis("x", white(3000, rms, 1))
+	truth := simulate.Truth{Samples: 3000, Rate: 1000, Axes: []simulate.Axis{{Corner: 6, Variance: rms * rms}}}
+	a := axis("x", simulate.Record(truth, 1)[0])
 	a.Process = relaxation.Process{Corner: 6, Variance: rms * rms, Interval: 1e-3}
 	a.CornerSD = 0.1 // 18 exp(0.3) = 24 is below 30
 	if c := find(t, Run(Input{Axes: []Axis{a}, Rate: 1000}), "short-record", "x"); c.Level != Doubtful {
@@ -104,12 +106,18 @@ func TestGoodness(t *testing.T) {
 	}
 }
 
-// TestWhite: no corner and white samples is bad, no corner and slow samples is not judged.
+// TestWhite: white samples are bad with and without a fit, unless there are too few to
+// tell; slow samples without a fit are not judged.
 func TestWhite(t *testing.T) {
-	a := axis("x", white(5000, rms, 1))
-	a.Known = false
-	if c := find(t, Run(Input{Axes: []Axis{a}, Rate: 1000}), "slow-sampling", "x"); c.Level != Bad {
-		t.Errorf("white samples without a fit: %v, want bad", c.Level)
+	for _, known := range []bool{false, true} {
+		for n, want := range map[int]Level{5000: Bad, 500: OK} {
+			a := axis("x", white(n, rms, 1))
+			a.Process.Corner, a.Process.Variance, a.Process.Noise = 10, 0.01*rms*rms, 0.99*rms*rms
+			a.Known = known
+			if c := find(t, Run(Input{Axes: []Axis{a}, Rate: 1000}), "slow-sampling", "x"); c.Level != want {
+				t.Errorf("%d white samples, fit %v: %v, want %v", n, known, c.Level, want)
+			}
+		}
 	}
 	slow := simulate.Record(regime{ratio: 0.05, periods: 200}.truth(1), 1)
 	b := Axis{Name: "x", X: slow[0]}

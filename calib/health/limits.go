@@ -15,6 +15,9 @@ const (
 	slowDoubtful  = 0.6  // standard uncertainty of ln(fc) that the sampling allows at best
 	slowBad       = 1.5
 	misfitBeyond  = 1e-4 // p-value
+	// whiteMost is 1 - rho(1) above which a slow process cannot be the main motion: for a
+	// record of few relaxation times it is the share of the noise.
+	whiteMost = 0.6
 )
 
 // cornerSD returns the least standard uncertainty of ln(fc) that N samples of the
@@ -42,6 +45,9 @@ func (v *view) short() Check {
 	c.Threshold = shortDoubtful
 	if !v.Known {
 		return c.spared("no corner frequency was found")
+	}
+	if v.judgeable() && v.whole.whiteness() > whiteMost {
+		return c.spared("most of what is seen is noise or fast motion, which tells nothing of the length")
 	}
 	c.Value = v.Process.Corner * v.h.n / v.rate
 	// A record of just 30 is found shorter half of the time: it must be by three standard uncertainties.
@@ -88,8 +94,14 @@ func (v *view) blurred() Check {
 func (v *view) slow() Check {
 	c := v.check("slow-sampling")
 	c.Threshold = slowDoubtful
+	if v.white() {
+		c.Level = Bad
+		c.Text = "Neighbouring samples do not know of each other at all: either the bead relaxes much faster than the samples follow each other, or what is seen is noise and no bead that moves."
+		c.Remedy = "See whether the bead is there and moves freely. Sample faster, or use a softer trap." + caution
+		return c
+	}
 	if !v.Known {
-		return v.white(c)
+		return c.spared("no corner frequency was found")
 	}
 	ratio := v.Process.Corner / v.rate
 	c.Value = v.cornerSD()
@@ -110,22 +122,19 @@ func (v *view) slow() Check {
 	return c
 }
 
-// white looks for a reason why no corner frequency was found: samples that do not
-// know of each other, by the correlation coefficient of neighbours, whose standard
-// deviation is 1/sqrt(N) for white samples.
-func (v *view) white(c Check) Check {
-	if !v.judgeable() || v.upset() != "" {
-		return c.spared("no corner frequency was found")
+// whiteSamples is the least number of samples of which the lack of any correlation means
+// something: of a bead sampled at twice its corner frequency with a full exposure, a
+// thousand show a coefficient of neighbours of 6 standard deviations.
+const whiteSamples = 1000
+
+// white tells whether the samples do not know of each other, by the correlation
+// coefficient of neighbours about line and step, whose standard deviation is 1/sqrt(N) for
+// white samples.
+func (v *view) white() bool {
+	if !v.judgeable() || v.upset() != "" || v.total.steps < whiteSamples {
+		return false
 	}
-	var all part
-	all.add(v.total)
-	if seen := 1 - all.whiteness(); seen*math.Sqrt(v.total.steps) > 1.5 {
-		return c.spared("no corner frequency was found")
-	}
-	c.Level = Bad
-	c.Text = "Neighbouring samples do not know of each other at all, and no corner frequency was found: either the bead relaxes much faster than the samples follow each other, or what is seen is noise and no trapped bead."
-	c.Remedy = "See whether the bead is there and moves freely. Sample faster, or use a softer trap." + caution
-	return c
+	return (1-v.whole.whiteness())*math.Sqrt(v.whole.steps) < 1.5
 }
 
 // misfit reports a spectrum that the model does not describe.

@@ -23,7 +23,6 @@ const (
 type meanFindings struct {
 	step      step
 	jump      bool
-	h         null    // by which the mean was judged
 	line      line    // about which the rest is judged, the step taken off
 	driftZ    float64 // slope in standard deviations, as a normal deviate
 	driftSD   float64 // standard deviation of the slope, in units of the scale
@@ -48,7 +47,6 @@ func (v *view) judgeMean() meanFindings {
 	if m.jump {
 		p = without(p, m.step)
 	}
-	m.h = h
 	unit := math.Sqrt(h.r0) / v.scale // one rms in units of the scale
 	m.line = fitLine(p)
 	m.driftSD = math.Sqrt(h.longRun() / (v.scale * v.scale) / math.Max(m.line.tt, 1e-300))

@@ -43,6 +43,7 @@ type view struct {
 	rms      float64 // standard deviation of the samples by the null hypothesis [unit of X]
 	mean     meanFindings
 	spell    spell
+	whole    part    // the record, line and step taken off
 	per      int     // fine blocks in one block of the spell
 	escapeAt int     // fine block, -1 when there is none
 	beyond   float64 // farthest position from the beginning of the record, in standard deviations of that
@@ -75,7 +76,13 @@ func newView(in Input, a Axis) *view {
 		v.escapeAt = before(v.blocks, at, v.length)
 	}
 	v.mean = v.judgeMean()
-	v.spell = v.judgeSpell(v.levelledBlocks())
+	coarse := v.levelledBlocks()
+	sum := emptyBlock()
+	for _, b := range coarse {
+		sum.add(b)
+	}
+	v.whole.add(sum)
+	v.spell = v.judgeSpell(coarse)
 	return v
 }
 

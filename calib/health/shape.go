@@ -109,14 +109,7 @@ func (v *view) roughSteps() Check {
 	n := v.total.steps
 	m2, m4 := v.total.d2/n, v.total.d4/n
 	c.Value = m4/(m2*m2) - 3
-	// rho of the steps: 2 rho(k) - rho(k-1) - rho(k+1) over 2 - 2 rho(1)
-	share := v.h.vb / v.h.r0
-	decay := math.Exp(-v.h.rho)
-	one := 2 - 2*share*decay
-	first := (2*share*decay - 1 - share*decay*decay) / one
-	later := share * decay * (2 - 1/decay - decay) / one // at lag 2, decays with c from there
-	inflation := 1 + 2*math.Pow(first, 4) + 2*math.Pow(later*decay, 4)/-math.Expm1(-4*v.h.rho)
-	z := kurtosisDeviate(c.Value, math.Max(n/inflation, 20))
+	z := kurtosisDeviate(c.Value, math.Max(n/v.h.stepInflation(), 20))
 	if !(z > stepsBeyond) || c.Value < stepsFloor {
 		c.Text = "The steps from sample to sample are those of a bead."
 		return c
@@ -134,3 +127,15 @@ const (
 	stepsBeyond = 3.8  // deviates, one-sided: 7e-5
 	stepsFloor  = 0.02 // 1 % of steps over two intervals make 0.03
 )
+
+// stepInflation returns sum_k rho_d(k)^4 of the steps d between neighbours, whose
+// autocovariance is 2 r(k) - r(k-1) - r(k+1): the number of steps that count as one
+// in their kurtosis.
+func (h null) stepInflation() float64 {
+	share := h.vb / h.r0
+	decay := math.Exp(-h.rho)
+	one := 2 - 2*share*decay
+	first := (2*share*decay - 1 - share*decay*decay) / one
+	second := -share * decay * (1 - decay) * (1 - decay) / one // at lag 2; it decays with c from there
+	return 1 + 2*math.Pow(first, 4) + 2*math.Pow(second, 4)/-math.Expm1(-4*h.rho)
+}

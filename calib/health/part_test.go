@@ -1,0 +1,132 @@
+package health
+
+import (
+	"math"
+	"math/rand/v2"
+	"slices"
+	"testing"
+
+	"beadwell/calib/simulate"
+)
+
+// TestStepInflation compares the closed sum with a direct one. The sum is geometric: rounding only.
+func TestStepInflation(t *testing.T) {
+	h := newNull(process, 1000, 1000)
+	r := func(k int) float64 { return process.Autocovariance(k) }
+	want := 0.0
+	for k := -300; k <= 300; k++ {
+		want += math.Pow((2*r(k)-r(k-1)-r(k+1))/(2*r(0)-2*r(1)), 4)
+	}
+	if got := h.stepInflation(); math.Abs(got-want) > 1e-12*want {
+		t.Errorf("stepInflation() = %v, want %v (direct sum)", got, want)
+	}
+}
+
+// TestGapsThinOut: when half of the samples are there, a sample has half as many
+// neighbours, in the sums and in the spectral density.
+func TestGapsThinOut(t *testing.T) {
+	all, half := newNull(process, 1000, 1000), newNull(process, 500, 1000)
+	for power := 1; power <= 4; power++ {
+		got, want := half.inflation(power, 400)-1, (all.inflation(power, 400)-1)/2
+		if math.Abs(got-want) > 1e-12 { // rounding
+			t.Errorf("order %d: %v, want %v", power, got, want)
+		}
+	}
+	if got, want := half.density(0)-half.r0, (all.density(0)-all.r0)/2; math.Abs(got-want) > 1e-12*want {
+		t.Errorf("density: %v, want %v", got, want)
+	}
+}
+
+// TestUnbiased averages the corrected variance of short stretches of a slow process.
+// 4000 stretches of ten relaxation times have a standard error of 0.44/sqrt(4000) = 0.7 %
+// and the uncorrected variance would be 18 % low.
+func TestUnbiased(t *testing.T) {
+	const length, count = 100, 4000
+	p := process
+	p.Corner, p.Noise, p.Exposure = 1/(2*math.Pi*10*p.Interval), 0, 0
+	h := newNull(p, length*count, length*count)
+	truth := simulate.Truth{Samples: length * count, Rate: 1 / p.Interval, Axes: []simulate.Axis{{Corner: p.Corner, Variance: 1}}}
+	x := simulate.Record(truth, 4)[0]
+	sum := 0.0
+	for k := range count {
+		s := summary{scale: 1}
+		b, _, _ := s.read(x[k*length:(k+1)*length], 0, math.NaN(), 0)
+		v, _ := unbiased(b, h)
+		sum += v / count
+	}
+	if math.Abs(sum-1) > 0.03 {
+		t.Errorf("mean corrected variance %v, want 1", sum)
+	}
+}
+
+// TestWanderSize adds a cosine of two half-periods and known rms to white samples: the
+// excess is its mean square, within the scatter of 8 cosines, 4 sd of which are
+// 4 sqrt(2 x 8)/N = 0.0016, and that of the cross term, 4 x 2 x 0.5/sqrt(N) = 0.04.
+func TestWanderSize(t *testing.T) {
+	const n = 10000
+	x := white(n, 1, 6)
+	clean := summarise(x)
+	h := null{n: n, observed: 1, r0: 1, rho: 50}
+	if _, p, excess := wander(points(clean.blocks, clean.length, n), h, clean.scale); p < 1e-3 || excess*clean.scale*clean.scale > 0.0016 {
+		t.Errorf("white samples: p = %v, excess %v", p, excess)
+	}
+	for i := range x {
+		x[i] += 0.5 * math.Sqrt2 * math.Cos(math.Pi*2*(float64(i)+0.5)/n)
+	}
+	s := summarise(x)
+	if _, p, excess := wander(points(s.blocks, s.length, n), h, s.scale); p > 1e-10 || math.Abs(excess*s.scale*s.scale-0.25) > 0.04 {
+		t.Errorf("waves of 0.5 rms: p = %v, excess %v, want 0.25", p, excess*s.scale*s.scale)
+	}
+}
+
+// TestHeldPlace holds the bead from 0.7 on, then turns the record round: held until
+// 0.3. The place is known to a 128th of the record and what the bead does by itself.
+func TestHeldPlace(t *testing.T) {
+	tr := trial{regime: camera, spoil: event(simulate.Stuck, 0.7, nil)}
+	in, checks := tr.run(1, 2)
+	length := float64(len(in.Axes[0].X)) / in.Rate
+	near := func(name string, c Check, from, to float64) {
+		t.Helper()
+		if len(c.Ranges) != 1 || math.Abs(c.Ranges[0][0]-from*length) > 0.02*length || math.Abs(c.Ranges[0][1]-to*length) > 0.02*length {
+			t.Errorf("%s: held during %v of %v s, want %v to %v", name, c.Ranges, length, from*length, to*length)
+		}
+	}
+	near("forward", find(t, checks, "held-bead", "x"), 0.7, 1)
+	slices.Reverse(in.Axes[0].X)
+	near("backward", find(t, Run(in), "held-bead", "x"), 0, 0.3)
+}
+
+// TestQuieter halves the variance of white samples from the middle on: that is not a bead
+// held fast, though both parts are as white as noise.
+func TestQuieter(t *testing.T) {
+	x := white(10000, rms, 3)
+	for i := 5000; i < len(x); i++ {
+		x[i] *= math.Sqrt(0.5)
+	}
+	checks := Run(Input{Axes: []Axis{axis("x", x)}, Rate: 1000})
+	if c := find(t, checks, "held-bead", "x"); c.Level != OK {
+		t.Errorf("half the variance: %s", c.Text)
+	}
+	if c := find(t, checks, "unsteady-motion", "x"); c.Level != Bad {
+		t.Errorf("half the variance: %v %s, want bad", c.Level, c.Text)
+	}
+}
+
+// TestDriftLevels: the level follows the size and its uncertainty. The slope of N white
+// samples has the standard deviation sqrt(12/N) = 0.035 rms.
+func TestDriftLevels(t *testing.T) {
+	r := rand.New(rand.NewPCG(8, 8))
+	for _, row := range []struct {
+		drift float64 // rms
+		want  Level
+	}{{0, OK}, {0.1, OK}, {0.5, Doubtful}, {1, Doubtful}, {1.3, Bad}} {
+		x := white(10000, rms, r.Uint64())
+		for i := range x {
+			x[i] += row.drift * rms * float64(i) / float64(len(x))
+		}
+		c := find(t, Run(Input{Axes: []Axis{axis("x", x)}, Rate: 1000}), "slow-drift", "x")
+		if c.Level != row.want || math.Abs(c.Value-row.drift) > 4*0.035 {
+			t.Errorf("drift of %v rms: %v %v, want %v", row.drift, c.Value, c.Level, row.want)
+		}
+	}
+}
