@@ -6,8 +6,8 @@ import (
 	"strconv"
 	"strings"
 
-	"beadwell/calib/drag"
 	"beadwell/calib/relaxation"
+	"beadwell/psd"
 )
 
 // Codes of the findings of a plan, beside those of a calibration.
@@ -155,79 +155,26 @@ func (f *forecast) surface(*Plan) (Finding, bool) {
 		ratio, f.phys.wall.Factor, math.Abs(f.phys.wall.LogSlopeHeight)), "trap the bead higher, or measure the height well", ratio, closeSurface, "1")
 }
 
-// inertia computes how far a fit with constant drag would miss.
+// inertia says how far a fit with constant drag would miss.
 func (f *forecast) inertia(p *Plan) (Finding, bool) {
-	n := f.compared(p)
-	bias, ok := f.inertialBias(n)
-	limit := hydroBias * float64(f.at(f.rate, n).routes.Drag.Statistical)
+	bias, ok := f.inertialBias()
+	limit := hydroBias * float64(f.at(f.rate, f.compared(p)).routes.Drag.Combined)
 	if !ok || math.Abs(bias) < limit {
 		return Finding{}, false
 	}
-	return planFinding(CodeHydrodynamics, Doubtful, fmt.Sprintf("The inertia of the liquid matters at this rate: a fit with constant drag up to half the rate would be off by %+.2g %% in corner frequency.", 100*math.Expm1(bias)),
-		"calibrate with frequency-dependent drag, or restrict the fit with --band to a few times the corner frequency", bias, limit, "1")
+	return planFinding(CodeHydrodynamics, Note, fmt.Sprintf("The inertia of the liquid matters at this rate: a fit with constant drag up to half the rate would be off by %+.2g %% in corner frequency.", 100*bias),
+		"let the calibration take the frequency-dependent drag, as it does by itself, and state height and bead density", bias, limit, "1")
 }
 
-// foldedAliases is the number of aliases on either side that are summed: the ratio of two
-// spectra that both fall as 1/f^2 or faster needs no more.
-const foldedAliases = 20
-
-// inertialBias returns the shift of ln fc when the spectrum of a bead with the inertia of
-// the liquid (Berg-Sorensen and Flyvbjerg, Rev. Sci. Instrum. 75 (2004) 594) is fitted by
-// that of constant drag. A bead of unstated density is taken to float.
-func (f *forecast) inertialBias(n int) (float64, bool) {
-	if math.IsNaN(f.phys.density) || f.corner > f.rate/4 {
+// inertialBias returns the relative bias of the corner frequency by constant drag.
+func (f *forecast) inertialBias() (float64, bool) {
+	w := &work{set: f.set, phys: f.phys}
+	h, ok := w.hydrodynamic(true)
+	if !ok || h.Drag == nil {
 		return 0, false
 	}
-	density := f.phys.beadDensity
-	if math.IsNaN(density) {
-		density = f.phys.density
-	}
-	g := drag.Frequency{Radius: f.phys.radius, Height: f.phys.height, Viscosity: f.phys.viscosity, Density: f.phys.density,
-		StaticFactor: f.phys.wall.Factor, Perpendicular: !f.phys.parallel}
-	if g.Check() != nil {
-		return 0, false
-	}
-	stokes := drag.Stokes(f.phys.viscosity, f.phys.radius)
-	inertial := stokes / (2 * math.Pi * 4 / 3 * math.Pi * math.Pow(f.phys.radius, 3) * density)
-	free := f.kappa / (2 * math.Pi * stokes)
-	inert := func(x float64) float64 {
-		c := g.Factor(x)
-		return real(c) / (square(free+x*imag(c)-x*x/inertial) + square(x*real(c)))
-	}
-	static := func(x float64) float64 {
-		return f.phys.wall.Factor / (free*free + square(x*f.phys.wall.Factor))
-	}
-	blocks := planBlocks(n)
-	process := relaxation.Process{Corner: f.corner, Variance: f.variance, Noise: f.noise.Variance, Interval: 1 / f.rate, Exposure: f.exposure}
-	for i, x := range blocks.Frequency {
-		white := f.noise.Variance
-		blocks.Power[i] = white + (process.Spectrum(x*f.rate)*f.rate-white)*f.folded(inert, x)/f.folded(static, x)
-	}
-	problem := relaxation.Problem{Likelihood: relaxation.NewSpectral(blocks, nil, f.exposure*f.rate, f.variance)}
-	if f.noise.Known {
-		problem.Directions = []relaxation.Parameters{{1, 0, 0}, {0, 1, 0}}
-	}
-	start := relaxation.Parameters{math.Log(f.corner / f.rate), 0, f.noise.Variance / f.variance}
-	m, err := problem.Maximise(start)
-	if err != nil {
-		return 0, false
-	}
-	return m.At[0] - start[0], true
-}
-
-// folded sums a two-sided spectrum over the aliases of x, in units of the rate, with the
-// blur of the exposure.
-func (f *forecast) folded(spectrum func(f float64) float64, x float64) float64 {
-	sum := 0.0
-	for m := -foldedAliases; m <= foldedAliases; m++ {
-		v := math.Abs(x+float64(m)) * f.rate
-		blur := 1.0
-		if a := math.Pi * v * f.exposure; a > 1e-6 {
-			blur = square(math.Sin(a) / a)
-		}
-		sum += blur * spectrum(v)
-	}
-	return sum
+	bias, err := h.Bias(psd.Design{Rate: f.rate, Exposure: f.exposure, Corner: f.corner, Noise: f.noise.Variance / f.variance, NoiseFree: !f.noise.Known})
+	return bias.Corner, err == nil
 }
 
 func (f *forecast) drift(p *Plan) (Finding, bool) {

@@ -2,6 +2,7 @@ package calib_test
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"math"
 	"testing"
@@ -173,5 +174,184 @@ func TestForecastAgainstCalibrate(t *testing.T) {
 				near(t, "stated by "+name, calib.Float(mean[2*i+1]), float64(want.Combined), 0.05)
 			}
 		})
+	}
+}
+
+func findingOf(p *calib.Plan, code string) (calib.Finding, bool) {
+	for _, f := range p.Findings {
+		if f.Code == code {
+			return f, true
+		}
+	}
+	return calib.Finding{}, false
+}
+
+// Each finding comes when it should, and not when it should not.
+func TestForecastFindings(t *testing.T) {
+	full := []string{"bead.diameter", "1.02(3) um", "medium.fluid", "water", "medium.temperature", "25.0(5) C", "chamber.height", "8.0(5) um", "recording.noise", "1 nm"}
+	for _, c := range []struct {
+		code    string
+		with    []string // what brings it
+		without []string // what does not
+		corner  float64
+	}{
+		{calib.CodeSlowRate, []string{"recording.rate", "300 Hz"}, []string{"recording.rate", "2 kHz"}, 200},
+		{calib.CodeBlurred, []string{"recording.rate", "500 Hz", "recording.exposure", "2 ms"}, []string{"recording.rate", "500 Hz", "recording.exposure", "0.2 ms"}, 200},
+		{calib.CodeNoiseDominant, []string{"recording.rate", "2 kHz", "recording.noise", "50 nm"}, []string{"recording.rate", "2 kHz"}, 200},
+		{calib.CodeCloseSurface, []string{"recording.rate", "2 kHz", "chamber.height", "0.8(1) um"}, []string{"recording.rate", "2 kHz"}, 200},
+		{calib.CodeHydrodynamics, []string{"recording.rate", "100 kHz"}, []string{"recording.rate", "1 kHz"}, 200},
+		{calib.CodeExactInputs, []string{"recording.rate", "2 kHz", "bead.diameter", "1 um"}, []string{"recording.rate", "2 kHz"}, 200},
+	} {
+		if f, ok := findingOf(forecast(t, calib.PlanOptions{Corner: c.corner}, with(full, c.with...)...), c.code); !ok || f.Text == "" || f.Remedy == "" || f.Axis != "x" {
+			t.Errorf("%s does not come with %v: %+v", c.code, c.with, f)
+		}
+		if f, ok := findingOf(forecast(t, calib.PlanOptions{Corner: c.corner}, with(full, c.without...)...), c.code); ok {
+			t.Errorf("%s comes with %v: %+v", c.code, c.without, f)
+		}
+	}
+	p := forecast(t, calib.PlanOptions{Corner: 200}, "bead.diameter", "1 um", "recording.rate", "300 Hz")
+	for _, code := range []string{calib.CodeAssumed, calib.CodeNoHeight, calib.CodeNoiseUnknown} {
+		if _, ok := findingOf(p, code); !ok {
+			t.Errorf("%s does not come with nothing stated", code)
+		}
+	}
+}
+
+// A fit with constant drag is low in the corner frequency by what simulated recordings of 60 s show: 475.4 Hz
+// and 447.2 Hz for 500 Hz at 10 and 40 kHz (R = 0.5 um, water of 25 C, bulk; statistical uncertainty 0.4 %).
+func TestForecastInertia(t *testing.T) {
+	for rate, want := range map[string]float64{"10 kHz": 475.4, "40 kHz": 447.2} {
+		p := forecast(t, calib.PlanOptions{Corner: 500}, "bead.diameter", "1 um", "bead.density", "1.05 g/cm3", "medium.temperature", "25 C", "medium.fluid", "water",
+			"chamber.height", "far", "recording.noise", "0 nm", "recording.rate", rate)
+		f, ok := findingOf(p, calib.CodeHydrodynamics)
+		if got := 500 * (1 + float64(f.Value)); !ok || math.Abs(got-want) > 4 {
+			t.Errorf("%s: fitted corner frequency %.1f Hz, want %.1f (simulated), within 4", rate, got, want)
+		}
+	}
+}
+
+// The time for a wanted uncertainty gives that uncertainty; half of a purely statistical one takes four times as
+// long; what the inputs forbid is never reached; and the recording that is enough is 5 % above the floor.
+func TestForecastWanted(t *testing.T) {
+	plan := func(wanted float64, pairs ...string) *calib.Plan {
+		return forecast(t, calib.PlanOptions{Corner: 500, Wanted: wanted}, with([]string{"recording.rate", "20 kHz", "recording.noise", "0 nm"}, pairs...)...)
+	}
+	fine := plan(0.01, exactBead...)
+	half := plan(0.005, exactBead...)
+	// the line that is removed costs 1/(T fc) of the first, and the search ends at 1e-4
+	near(t, "time for half the uncertainty", half.Wanted.Drag.Value, 4*float64(fine.Wanted.Drag.Value), 3e-3)
+	c := math.Exp(-2 * math.Pi * 500 / 20e3) // the closed form of TestForecastClosedForm, with the line
+	near(t, "time for 1 % by drag", fine.Wanted.Drag.Value, (1-c*c)/(c*c*math.Log(c)*math.Log(c))/(1e-4*20e3), 3e-3)
+	if fine.Enough.Known() || fine.Enough.Reason == "" {
+		t.Errorf("with exact inputs a duration is enough: %+v", fine.Enough)
+	}
+	rough := plan(0.02, "bead.diameter", "1.00(3) um", "medium.temperature", "25(1) C", "medium.fluid", "water", "chamber.height", "far")
+	if q := rough.Wanted.Drag; q.Known() || q.Reason == "" {
+		t.Errorf("2 %% by drag with a bead of 3 %%: %+v", q)
+	}
+	if !rough.Wanted.Amplitude.Known() {
+		t.Errorf("2 %% by amplitude: %+v", rough.Wanted.Amplitude)
+	}
+	// u(T)/T of kT, and 3 % of the diameter with the viscosity of 1 K, 2.2 %/K at 25 C (IAPWS SR6-08, Eq. of viscosity)
+	near(t, "floor by amplitude", rough.Floor.Amplitude, 1/298.15, 1e-3)
+	near(t, "floor by drag", rough.Floor.Drag, math.Hypot(0.03, 0.0224), 0.02)
+	if rough.Floor.Dominant != "temperature" {
+		t.Errorf("dominant input %q, want temperature: the amplitude route carries the combination", rough.Floor.Dominant)
+	}
+	sum := 0.0
+	for _, line := range rough.Floor.Budget {
+		sum += float64(line.Share)
+	}
+	near(t, "sum of the shares", calib.Float(sum), 1, 1e-3)
+	again := forecast(t, calib.PlanOptions{Corner: 500, Wanted: 1.05 * float64(rough.Floor.Both)}, "recording.rate", "20 kHz", "recording.noise", "0 nm",
+		"bead.diameter", "1.00(3) um", "medium.temperature", "25(1) C", "medium.fluid", "water", "chamber.height", "far")
+	near(t, "enough", rough.Enough.Value, float64(again.Wanted.Both.Value), 1e-3)
+}
+
+// Lengths do not matter: a bead twice as large in the same relative terms, with the same corner
+// frequency, gives the same plan. The exposure's uncertainty does, where the exposure is long.
+func TestForecastScaling(t *testing.T) {
+	settings := func(diameter, exposure string) []string {
+		return []string{"bead.diameter", diameter, "medium.viscosity", "0.89(1) mPa s", "medium.temperature", "25.0(5) C", "chamber.height", "far", "recording.rate", "1 kHz",
+			"recording.exposure", exposure, "recording.noise", "0 nm"}
+	}
+	row := func(diameter, exposure string) calib.PlanRoutes {
+		return timeOf(t, forecast(t, calib.PlanOptions{Corner: 200}, settings(diameter, exposure)...), 10).Routes
+	}
+	one, two := row("1.00(2) um", "0.8 ms"), row("2.00(4) um", "0.8 ms")
+	near(t, "both", two.Both.Combined, float64(one.Both.Combined), 1e-9)
+	near(t, "drag", two.Drag.Combined, float64(one.Drag.Combined), 1e-9)
+	blur := row("1.00(2) um", "0.80(8) ms")
+	if !(blur.Amplitude.Combined > 1.2*one.Amplitude.Combined) || blur.Amplitude.Statistical != one.Amplitude.Statistical {
+		t.Errorf("an exposure known to 10 %%: amplitude %+v, known exactly %+v", blur.Amplitude, one.Amplitude)
+	}
+}
+
+// The influence of an uncertain exposure is that which Calibrate finds by repeating its estimates. Their mean over
+// eight recordings varies by less than 3 %, and first order in 10 % of the exposure is good to 5 %.
+func TestForecastExposure(t *testing.T) {
+	set := planSettings(t, with(exactBead, "recording.rate", "1 kHz", "recording.exposure", "0.70(7) ms", "recording.noise", "0 nm")...)
+	p, err := calib.Forecast(set, calib.PlanOptions{Corner: 200})
+	if err != nil {
+		t.Fatal(err)
+	}
+	row := timeOf(t, p, 20)
+	const runs = 8
+	var mean [2]float64
+	for seed := range runs {
+		nan := math.NaN()
+		x := simulated(p, row.Samples, uint64(seed))
+		rec := &track.Recording{Name: "simulated", Rate: float64(p.Rate), RateU: nan, RateOrigin: "setting", Samples: len(x), JitterRMS: nan, JitterMax: nan,
+			Axes: []track.Axis{{Name: "x", Header: "x", Unit: "m", ToMetre: 1, Values: x}}}
+		r, err := calib.Calibrate(context.Background(), rec, set, calib.Options{})
+		if err != nil {
+			t.Fatal(err)
+		}
+		for i, leg := range []int{0, 3} {
+			q := r.Axes[0].Estimates[leg].Stiffness
+			mean[i] += float64(q.Combined.Standard/q.Value) / runs
+		}
+	}
+	near(t, "by drag", calib.Float(mean[0]), float64(row.Routes.Drag.Combined), 0.08)
+	near(t, "by amplitude", calib.Float(mean[1]), float64(row.Routes.Amplitude.Combined), 0.08)
+}
+
+func TestForecastRefused(t *testing.T) {
+	for _, c := range []struct {
+		want  string
+		opt   calib.PlanOptions
+		pairs []string
+	}{
+		{"bead.diameter", calib.PlanOptions{Corner: 500}, []string{"recording.rate", "2 kHz"}},
+		{"recording.rate", calib.PlanOptions{Corner: 500}, []string{"bead.diameter", "1 um"}},
+		{"recording.rate", calib.PlanOptions{Corner: 500}, []string{"bead.diameter", "1 um", "recording.rate", "100 Hz"}},
+		{"stiffness", calib.PlanOptions{}, []string{"bead.diameter", "1 um", "recording.rate", "2 kHz"}},
+	} {
+		_, err := calib.Forecast(planSettings(t, c.pairs...), c.opt)
+		var wrong *calib.SettingError
+		if !errors.As(err, &wrong) || wrong.Key != c.want {
+			t.Errorf("%v: %v, want a SettingError of %s", c.pairs, err, c.want)
+		}
+	}
+}
+
+// The rates lie in order, with the planned one among them once, and none is faster than the exposure allows.
+func TestForecastRates(t *testing.T) {
+	p := forecast(t, calib.PlanOptions{Corner: 200}, with(exactBead, "recording.rate", "730 Hz", "recording.exposure", "0.5 ms", "recording.noise", "0 nm")...)
+	planned, before := 0, 0.0
+	for _, row := range p.Rates.Rows {
+		if row.Planned {
+			planned++
+		}
+		if float64(row.Rate) <= before || float64(row.Rate) > 2000.001 {
+			t.Errorf("rate %g after %g, at an exposure of 0.5 ms", float64(row.Rate), before)
+		}
+		before = float64(row.Rate)
+	}
+	if planned != 1 {
+		t.Errorf("the planned rate is there %d times", planned)
+	}
+	if !p.Rates.Best.Known() {
+		t.Error("no best rate")
 	}
 }
