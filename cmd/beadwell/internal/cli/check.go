@@ -24,8 +24,9 @@ func (a *app) checkCommand(run func(context.Context, *app, checkOptions) error) 
 		Use:   "check TRACK...",
 		Short: "How a file is read, and whether the recording is fit to use",
 		Long: `check reads recordings and tells how: delimiter, decimal mark, columns, units,
-sampling rate, rows, what is missing, and which settings would be used. It fits
-nothing. A unit or a rate that nobody stated is a remark here, not an error.`,
+sampling rate, rows, what is missing, which settings would be used, and what the
+health checks that need no fit say. A unit or a rate that nobody stated is a
+remark here, not an error. A bad check gives the exit status 3.`,
 		Example: "  beadwell check run7.csv\n  beadwell check --unit nm run7.csv",
 		Args:    someArguments("a track"),
 		RunE: func(cmd *cobra.Command, args []string) error {
@@ -48,6 +49,7 @@ nothing. A unit or a rate that nobody stated is a remark here, not an error.`,
 func runCheck(ctx context.Context, a *app, o checkOptions) error {
 	src := &source{app: a, file: o.session, flags: &o.flags, inspect: true}
 	var failed []error
+	distrust := false
 	for i, path := range o.tracks {
 		recordings, err := src.load(ctx, path)
 		switch {
@@ -63,16 +65,21 @@ func runCheck(ctx context.Context, a *app, o checkOptions) error {
 			if i+j > 0 {
 				fmt.Fprintln(a.Out)
 			}
-			a.printCheck(one)
+			distrust = a.printCheck(one) || distrust
 		}
 	}
 	if len(failed) > 0 {
 		return partial(failed, len(o.tracks))
 	}
+	if distrust {
+		return quiet{StatusDistrust}
+	}
 	return nil
 }
 
-func (a *app) printCheck(one loaded) {
+// printCheck prints what there is to say of one recording, and tells whether a
+// check says not to trust it.
+func (a *app) printCheck(one loaded) (bad bool) {
 	r := one.recording
 	fmt.Fprintf(a.Out, "%s\n", report.Plain(r.Name))
 	fmt.Fprintf(a.Out, "  read as: %s\n", report.Plain(r.ReadAs.String()))
@@ -83,10 +90,12 @@ func (a *app) printCheck(one loaded) {
 	for _, note := range r.Notes {
 		fmt.Fprintf(a.Out, "  note: %s\n", report.Plain(note.Text))
 	}
+	bad = a.printHealth(examine(r, one.settings))
 	fmt.Fprintln(a.Out, "  settings:")
 	for _, s := range one.settings.All() {
 		fmt.Fprintf(a.Out, "    %s\n", report.Plain(settingLine(s)))
 	}
+	return bad
 }
 
 // jitterShown is the jitter over the sampling interval from which on it is told:

@@ -61,6 +61,7 @@ func (a *app) root() *cobra.Command {
 		a.planCommand(runPlan),
 		a.forceCommand(runForce),
 		a.simulateCommand(runSimulate),
+		a.explainCommand(),
 		a.schemaCommand(),
 		a.manCommand(),
 	)

@@ -281,3 +281,14 @@ func TestProblemText(t *testing.T) {
 		t.Errorf("problemText = %q, want %q", got, want)
 	}
 }
+
+// Every code is explained, and explained once.
+func TestCodes(t *testing.T) {
+	seen := map[string]bool{}
+	for _, e := range calib.Explanations() {
+		if seen[e.Code] || e.Title == "" || e.Long == "" {
+			t.Errorf("the code %q is explained twice or not at all", e.Code)
+		}
+		seen[e.Code] = true
+	}
+}

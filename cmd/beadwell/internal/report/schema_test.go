@@ -10,6 +10,7 @@ import (
 	"os"
 	"path/filepath"
 	"reflect"
+	"slices"
 	"strconv"
 	"strings"
 	"testing"
@@ -60,9 +61,39 @@ type generator struct {
 	order   []string
 }
 
-// newGenerator reads the type calib.Result and what it is made of.
+// newGenerator reads the type calib.Result and the types that it is made of.
 func newGenerator(t *testing.T) *generator {
-	return generatorOf(t, filepath.Join(resultSource, "result.go"), filepath.Join(resultSource, "number.go"))
+	t.Helper()
+	paths, err := filepath.Glob(filepath.Join(resultSource, "*.go"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	paths = slices.DeleteFunc(paths, func(path string) bool { return strings.HasSuffix(path, "_test.go") })
+	first := filepath.Join(resultSource, "result.go")
+	slices.SortStableFunc(paths, func(a, b string) int {
+		return strings.Compare(strings.TrimPrefix(a, first), strings.TrimPrefix(b, first))
+	})
+	g := generatorOf(t, paths...)
+	used := map[string]bool{}
+	g.reach("Result", used)
+	g.order = slices.DeleteFunc(g.order, func(name string) bool { return !used[name] })
+	return g
+}
+
+// reach marks a type and all that it holds.
+func (g *generator) reach(name string, used map[string]bool) {
+	if used[name] || g.structs[name] == nil {
+		return
+	}
+	used[name] = true
+	for _, field := range g.structs[name].Fields.List {
+		ast.Inspect(field.Type, func(n ast.Node) bool {
+			if id, ok := n.(*ast.Ident); ok {
+				g.reach(id.Name, used)
+			}
+			return true
+		})
+	}
 }
 
 func generatorOf(t *testing.T, paths ...string) *generator {
@@ -74,24 +105,26 @@ func generatorOf(t *testing.T, paths ...string) *generator {
 			t.Fatal(err)
 		}
 		for _, declaration := range file.Decls {
-			general, ok := declaration.(*ast.GenDecl)
-			if !ok {
-				continue
-			}
-			for _, spec := range general.Specs {
-				typeSpec, ok := spec.(*ast.TypeSpec)
-				if !ok {
-					continue
-				}
-				if s, ok := typeSpec.Type.(*ast.StructType); ok {
-					g.structs[typeSpec.Name.Name] = s
-					g.docs[typeSpec.Name.Name] = oneLine(general.Doc.Text())
-					g.order = append(g.order, typeSpec.Name.Name)
-				}
+			if general, ok := declaration.(*ast.GenDecl); ok {
+				g.addStructs(general)
 			}
 		}
 	}
 	return g
+}
+
+func (g *generator) addStructs(general *ast.GenDecl) {
+	for _, spec := range general.Specs {
+		typeSpec, ok := spec.(*ast.TypeSpec)
+		if !ok {
+			continue
+		}
+		if s, ok := typeSpec.Type.(*ast.StructType); ok {
+			g.structs[typeSpec.Name.Name] = s
+			g.docs[typeSpec.Name.Name] = oneLine(general.Doc.Text())
+			g.order = append(g.order, typeSpec.Name.Name)
+		}
+	}
 }
 
 func oneLine(text string) string { return strings.Join(strings.Fields(text), " ") }
