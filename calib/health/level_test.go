@@ -2,6 +2,7 @@ package health
 
 import (
 	"math"
+	"math/rand/v2"
 	"strings"
 	"testing"
 
@@ -222,5 +223,74 @@ func TestOneSidedRail(t *testing.T) {
 	// Q(2) = 2.28 %, standard deviation 0.1 %
 	if c.Level != Bad || math.Abs(c.Value-0.0228) > 0.004 || !strings.Contains(c.Text, "highest value 40 nm") {
 		t.Errorf("clipped above 2 rms: %v %v %q", c.Value, c.Level, c.Text)
+	}
+}
+
+// TestFewAtRail: where values are on no grid, three separate visits to the same extreme are
+// enough, and so is one long stay.
+func TestFewAtRail(t *testing.T) {
+	x := white(1000, rms, 1)
+	for i := range x {
+		x[i] = math.Max(math.Min(x[i], 2.5*rms), -2.5*rms)
+	}
+	if c := find(t, Run(Input{Axes: []Axis{axis("x", x)}, Rate: 1000}), "rail", "x"); c.Level != Bad {
+		t.Errorf("a thousand samples clipped at 2.5 rms: %v %v", c.Level, c.Value)
+	}
+	y := white(1000, rms, 2)
+	for i := 400; i < 425; i++ {
+		y[i] = 5 * rms
+	}
+	if c := find(t, Run(Input{Axes: []Axis{axis("x", y)}, Rate: 1000}), "rail", "x"); c.Level != Bad || c.Value != 0.025 {
+		t.Errorf("25 samples at a rail in one stay: %v %v, want bad 0.025", c.Level, c.Value)
+	}
+	if c := find(t, Run(Input{Axes: []Axis{axis("x", white(1000, rms, 2))}, Rate: 1000}), "rail", "x"); c.Level != OK || c.Value != 0 {
+		t.Errorf("clean: %v %v", c.Level, c.Value)
+	}
+}
+
+// TestToneWithGaps: the amplitude does not depend on how many samples are there.
+func TestToneWithGaps(t *testing.T) {
+	x := white(20000, rms, 1)
+	r := rand.New(rand.NewPCG(1, 1))
+	for i := range x {
+		x[i] += 0.4 * rms * math.Sin(2*math.Pi*50*float64(i)/1000)
+		if r.Float64() < 0.3 {
+			x[i] = math.NaN()
+		}
+	}
+	c := find(t, Run(Input{Axes: []Axis{axis("x", x)}, Rate: 1000}), "tone", "x")
+	if math.Abs(c.Value-0.4) > 0.06 { // standard deviation sqrt(2/14000) = 0.012
+		t.Errorf("amplitude %v rms, want 0.4", c.Value)
+	}
+}
+
+// TestMixedLevels: correlation coefficients of 0, 0.2 and 0.7, known to 1/sqrt(N) = 0.01.
+func TestMixedLevels(t *testing.T) {
+	for share, want := range map[float64]Level{0: OK, 0.2: Doubtful, 0.7: Bad} {
+		x, y := white(10000, rms, 1), white(10000, rms, 2)
+		for i := range y {
+			y[i] = share*x[i] + math.Sqrt(1-share*share)*y[i]
+		}
+		c := find(t, Run(Input{Axes: []Axis{axis("x", x), axis("y", y)}, Rate: 1000}), "axes-mixed", "x-y")
+		if c.Level != want || math.Abs(c.Value-share) > 0.05 {
+			t.Errorf("share %v: %v %v, want %v", share, c.Value, c.Level, want)
+		}
+	}
+}
+
+// TestSkewed: y = x + 0.045 (x^2 - 1) has the skewness 6 x 0.045 = 0.27. With 300 periods
+// of 1/fc that of a Gaussian has the standard deviation sqrt(6 x 2/(3 x 2 pi x 300)) =
+// 0.046. If the samples decorrelated only as fast as for the mean it would be 0.08.
+func TestSkewed(t *testing.T) {
+	tr := regime{ratio: 0.01, periods: 300}
+	x := simulate.Record(tr.truth(1), 2)[0]
+	in := fitted([][]float64{x}, tr.rate(), 0)
+	for i, v := range x {
+		u := v / rms
+		x[i] = rms * (u + 0.045*(u*u-1))
+	}
+	c := find(t, Run(in), "not-gaussian", "x")
+	if c.Level != Doubtful {
+		t.Errorf("skewed positions: %v (%s)", c.Level, c.Text)
 	}
 }
