@@ -155,6 +155,7 @@ func (c Cell) settings(noise float64) (*session.Settings, error) {
 		"recording.pixel":    fmt.Sprintf("%g m", statedPixel),
 		"recording.exposure": fmt.Sprintf("%.15g s", c.Exposure/c.rate()),
 		"medium.fluid":       "water",
+		"fit.drag":           "constant",
 	}
 	if !c.Unknown {
 		text["recording.noise"] = fmt.Sprintf("%.15g m", noise)
@@ -192,6 +193,9 @@ func (c Cell) calibrate(ctx context.Context, seed uint64) (*calib.Result, world,
 	return r, w, rec, err
 }
 
+// hopeless stands for a singular information matrix.
+const hopeless = 1e9
+
 // Bounds are Cramer-Rao bounds of ln kappa for three states of knowledge.
 type Bounds struct{ Drag, Amplitude, Both float64 }
 
@@ -207,8 +211,7 @@ func (c Cell) bounds() Bounds {
 	if !c.Unknown {
 		pr.Directions = []relaxation.Parameters{{1, 0, 0}, {0, 1, 0}}
 	}
-	inf := math.Inf(1)
-	out := Bounds{inf, inf, inf}
+	out := Bounds{hopeless, hopeless, hopeless}
 	if cov, _, err := pr.Covariance(info); err == nil {
 		out.Drag, out.Amplitude = math.Sqrt(cov[0][0]), math.Sqrt(cov[1][1])
 	}

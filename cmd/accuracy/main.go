@@ -1,36 +1,107 @@
 // Command accuracy reruns the accuracy study: simulated recordings of known truth in
-// every regime, scored for bias, efficiency, coverage and the size of the tests.
+// every regime, calibrated by the whole program, and scored for bias, efficiency,
+// coverage and the size of the tests. It keeps the outcomes in a file, so that a study
+// can be run in parts, and writes docs/accuracy.md from it.
 package main
 
 import (
 	"context"
+	"encoding/json"
+	"errors"
 	"flag"
 	"fmt"
+	"io/fs"
 	"os"
 	"os/signal"
+	"strings"
+	"time"
+
+	"github.com/google/renameio/v2"
 )
 
 func main() {
-	runs := flag.Int("runs", 200, "recordings per cell")
-	ratio := flag.Float64("ratio", 0, "only this fc/fs")
-	periods := flag.Float64("periods", 0, "only this T fc")
-	drawn := flag.Bool("drawn", false, "draw true inputs from their stated uncertainties")
+	if err := run(); err != nil {
+		fmt.Fprintln(os.Stderr, "accuracy:", err)
+		os.Exit(1)
+	}
+}
+
+func run() error {
+	runs := flag.Int("runs", 0, "recordings per cell; 0: 2000 for main cells, 200 for others")
+	part := flag.String("part", "1/1", "which part of the cells to run, such as 2/4")
+	match := flag.String("match", "", "only cells whose name contains this text")
+	file := flag.String("results", "accuracy.json", "file of results, read and added to")
+	write := flag.String("write", "", "page to write from the file of results")
+	limit := flag.Duration("limit", 0, "start no further cell after this time")
 	flag.Parse()
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt)
 	defer stop()
-	for _, p := range []float64{30, 300, 3000} {
-		for _, x := range []float64{0.002, 0.02, 0.05, 0.15, 0.4, 1} {
-			if *ratio != 0 && x != *ratio || *periods != 0 && p != *periods {
-				continue
-			}
-			for _, w := range []float64{0, 1} {
-				for _, n := range []struct {
-					noise   float64
-					unknown bool
-				}{{0, false}, {0.1, false}, {0.5, false}, {0.1, true}} {
-					fmt.Print(study(ctx, Cell{Ratio: x, Periods: p, Exposure: w, Noise: n.noise, Unknown: n.unknown, Drawn: *drawn}, *runs))
-				}
-			}
+	var of, at int
+	if n, err := fmt.Sscanf(*part, "%d/%d", &at, &of); n != 2 || err != nil || at < 1 || at > of {
+		return fmt.Errorf("part %q is not of the form 2/4", *part)
+	}
+	known, err := load(*file)
+	if err != nil {
+		return err
+	}
+	list, counts := cells()
+	begin := time.Now()
+	for i, c := range list {
+		n := counts[i]
+		if *runs > 0 {
+			n = *runs
+		}
+		if i%of != at-1 || !strings.Contains(c.String(), *match) {
+			continue
+		}
+		if old := known[c.String()]; old != nil && old.Runs >= n {
+			continue
+		}
+		if ctx.Err() != nil || *limit > 0 && time.Since(begin) > *limit {
+			break
+		}
+		o := study(ctx, c, n)
+		if ctx.Err() != nil {
+			break
+		}
+		known[c.String()] = o
+		t := o.tally(adopted)
+		fmt.Printf("%v: %d recordings, adopted bias %+.2f, coverage %.1f %%, %s\n", c, n, t.Bias(), 100*t.Share(t.In95), time.Since(begin).Round(time.Second))
+		if err := save(*file, known); err != nil {
+			return err
 		}
 	}
+	if *write == "" {
+		return nil
+	}
+	var outcomes []*Outcome
+	for _, c := range list {
+		if o := known[c.String()]; o != nil {
+			outcomes = append(outcomes, o)
+		}
+	}
+	var page strings.Builder
+	writeTables(&page, outcomes)
+	return renameio.WriteFile(*write, []byte(page.String()), 0o644)
+}
+
+// load reads the file of results; one that does not exist is empty.
+func load(name string) (map[string]*Outcome, error) {
+	known := map[string]*Outcome{}
+	data, err := os.ReadFile(name)
+	if errors.Is(err, fs.ErrNotExist) {
+		return known, nil
+	}
+	if err != nil {
+		return nil, err
+	}
+	return known, json.Unmarshal(data, &known)
+}
+
+func save(name string, known map[string]*Outcome) error {
+	data, err := json.MarshalIndent(known, "", " ")
+	if err != nil {
+		return err
+	}
+	return renameio.WriteFile(name, data, 0o644)
 }

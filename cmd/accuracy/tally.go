@@ -2,7 +2,6 @@ package main
 
 import (
 	"context"
-	"fmt"
 	"math"
 	"runtime"
 	"sync"
@@ -10,12 +9,14 @@ import (
 	"beadwell/calib"
 )
 
-// Tally scores one estimate over the recordings of a cell.
+// Tally scores one estimate over the recordings of a cell. All fields are exported for
+// the file of results.
 type Tally struct {
-	Count, Withheld              int
-	sum, square                  float64
-	in68, in95, in68All, in95All int // statistical, combined
-	open                         int // intervals with an unbounded end
+	Count, Withheld int
+	Sum, Square     float64
+	In68, In95      int // statistical intervals that hold the truth
+	All68, All95    int // combined ones
+	Open            int // intervals with an unbounded end
 }
 
 func (t *Tally) add(q calib.Quantity, truth float64) {
@@ -23,64 +24,84 @@ func (t *Tally) add(q calib.Quantity, truth float64) {
 		t.Withheld++
 		return
 	}
-	t.Count++
-	e := math.Log(float64(q.Value) / truth)
-	t.sum += e
-	t.square += e * e
+	t.error(float64(q.Value), truth)
 	inside := func(i [2]calib.Float) int {
 		if truth < float64(i[0]) || truth > float64(i[1]) { // an unknown end excludes nothing
 			return 0
 		}
 		return 1
 	}
-	t.in68 += inside(q.Statistical.Interval68)
-	t.in95 += inside(q.Statistical.Interval95)
-	t.in68All += inside(q.Combined.Interval68)
-	t.in95All += inside(q.Combined.Interval95)
+	t.In68 += inside(q.Statistical.Interval68)
+	t.In95 += inside(q.Statistical.Interval95)
+	t.All68 += inside(q.Combined.Interval68)
+	t.All95 += inside(q.Combined.Interval95)
 	if !q.Statistical.Interval95[0].Known() || !q.Statistical.Interval95[1].Known() {
-		t.open++
+		t.Open++
+	}
+}
+
+func (t *Tally) error(value, truth float64) {
+	t.Count++
+	e := math.Log(value / truth)
+	t.Sum += e
+	t.Square += e * e
+}
+
+func (t *Tally) addNaive(n naive, truth float64) {
+	if !(n.value > 0) {
+		t.Withheld++
+		return
+	}
+	t.error(n.value, truth)
+	if truth >= n.low && truth <= n.high {
+		t.In95++
 	}
 }
 
 // Mean and Scatter are those of the error of ln kappa.
-func (t Tally) Mean() float64    { return t.sum / float64(t.Count) }
-func (t Tally) Scatter() float64 { m := t.Mean(); return math.Sqrt(t.square/float64(t.Count) - m*m) }
+func (t Tally) Mean() float64    { return t.Sum / float64(t.Count) }
+func (t Tally) Scatter() float64 { m := t.Mean(); return math.Sqrt(t.Square/float64(t.Count) - m*m) }
 
 // Bias is the mean error in units of the scatter.
 func (t Tally) Bias() float64 { return t.Mean() / t.Scatter() }
 
-func (t Tally) share(n int) float64 { return float64(n) / float64(t.Count) }
+// Share is a count over the recordings with an estimate.
+func (t Tally) Share(n int) float64 { return float64(n) / float64(t.Count) }
 
 // Outcome is the score of a cell.
 type Outcome struct {
-	Cell                                              Cell
-	Bounds                                            Bounds
-	Legs                                              map[string]*Tally
-	Reject, RejectAll, Tested                         int // equality test at the 5 % level
-	RouteReject, RouteRejectAll, AmpReject, AmpTested int
-	Failed                                            int
-	Verdicts                                          int // called inconsistent
-	Misfit, FitTested                                 int
-	Low                                               int
-	Error                                             error
+	Cell   Cell
+	Runs   int
+	Bounds Bounds
+	Legs   map[string]*Tally
+
+	Tested                int // recordings with an equality test
+	Rejected, RejectedAll int // at the 5 % level: inputs exact, inputs with their uncertainties
+	FitTested, Misfit     int // goodness of fit at the 5 % level
+	Inconsistent, Unfit   int // verdicts
+	Doubtful              int // recordings with a doubtful finding on the recording itself
+	Failed                int // recordings that were refused
+	Error                 string
 }
 
-const adopted = "adopted"
+const (
+	adopted            = "adopted"
+	naiveLorentzian    = "naive Lorentzian"
+	naiveRaw           = "naive variance"
+	naiveDisplacements = "naive MSD"
+)
 
 // study runs a number of recordings of a cell. Recordings are scored in the order of their
 // seeds, so that the outcome does not depend on the number of processors.
 func study(ctx context.Context, c Cell, runs int) *Outcome {
-	o := &Outcome{Cell: c, Bounds: c.bounds(), Legs: map[string]*Tally{}}
-	results := make([]*calib.Result, runs)
-	truths := make([]float64, runs)
-	errs := make([]error, runs)
+	o := &Outcome{Cell: c, Runs: runs, Bounds: c.bounds(), Legs: map[string]*Tally{}}
+	trials := make([]trial, runs)
 	var group sync.WaitGroup
 	next := make(chan int)
 	for range runtime.GOMAXPROCS(0) {
 		group.Go(func() {
 			for i := range next {
-				r, w, _, err := c.calibrate(ctx, uint64(i+1))
-				results[i], truths[i], errs[i] = slim(r), w.kappa, err
+				trials[i] = c.try(ctx, uint64(i+1))
 			}
 		})
 	}
@@ -89,22 +110,44 @@ func study(ctx context.Context, c Cell, runs int) *Outcome {
 	}
 	close(next)
 	group.Wait()
-	for i, r := range results {
-		if errs[i] != nil {
+	for _, t := range trials {
+		if t.err != nil {
 			o.Failed++
-			o.Error = errs[i]
+			o.Error = t.err.Error()
 			continue
 		}
-		o.score(r, truths[i])
+		o.score(t)
 	}
 	return o
 }
 
+// trial is the outcome of one recording.
+type trial struct {
+	result *calib.Result
+	truth  float64
+	naive  [3]naive
+	err    error
+}
+
+func (c Cell) try(ctx context.Context, seed uint64) trial {
+	r, w, rec, err := c.calibrate(ctx, seed)
+	if err != nil {
+		return trial{err: err}
+	}
+	t := trial{result: slim(r), truth: w.kappa}
+	if c.Gaps == 0 {
+		x := rec.Axes[0].Values
+		for i := range x {
+			x[i] *= statedPixel
+		}
+		gamma, kT := float64(r.Axes[0].Drag.Value), float64(r.Medium.ThermalEnergy.Value)
+		t.naive = [3]naive{naiveSpectrum(x, rec.Rate, gamma), naiveVariance(x, kT), naiveDisplacement(x, kT)}
+	}
+	return t
+}
+
 // slim drops the curves of a result.
 func slim(r *calib.Result) *calib.Result {
-	if r == nil {
-		return nil
-	}
 	for i := range r.Axes {
 		a := &r.Axes[i]
 		a.Spectrum.Points, a.Spectrum.Model, a.Trace = nil, nil, calib.Trace{}
@@ -120,12 +163,16 @@ func (o *Outcome) tally(name string) *Tally {
 	return o.Legs[name]
 }
 
-func (o *Outcome) score(r *calib.Result, truth float64) {
+func (o *Outcome) score(t trial) {
+	r, truth := t.result, t.truth
 	a := r.Axes[0]
 	for _, e := range a.Estimates {
 		o.tally(e.Leg).add(e.Stiffness, truth)
 	}
 	o.tally(adopted).add(a.Adopted.Stiffness, truth)
+	for i, name := range []string{naiveLorentzian, naiveRaw, naiveDisplacements} {
+		o.tally(name).addNaive(t.naive[i], truth)
+	}
 	count := func(p calib.Float, n *int) {
 		if float64(p) < 0.05 {
 			*n++
@@ -133,47 +180,23 @@ func (o *Outcome) score(r *calib.Result, truth float64) {
 	}
 	if p := a.CrossCheck.Equality.PValue; p.Known() {
 		o.Tested++
-		count(p, &o.Reject)
-		count(a.CrossCheck.Equality.PValueCombined, &o.RejectAll)
-		count(a.CrossCheck.Routes.PValue, &o.RouteReject)
-		count(a.CrossCheck.Routes.PValueCombined, &o.RouteRejectAll)
-	}
-	if p := a.CrossCheck.Amplitudes.PValue; p.Known() {
-		o.AmpTested++
-		count(p, &o.AmpReject)
+		count(p, &o.Rejected)
+		count(a.CrossCheck.Equality.PValueCombined, &o.RejectedAll)
 	}
 	if p := a.Spectrum.Goodness.PValue; p.Known() {
 		o.FitTested++
 		count(p, &o.Misfit)
 	}
-	if r.Verdict.Status != calib.Consistent {
-		o.Verdicts++
+	switch r.Verdict.Status {
+	case calib.Inconsistent:
+		o.Inconsistent++
+	case calib.Unfit:
+		o.Unfit++
 	}
-}
-
-// String is the outcome as lines for a terminal.
-func (o *Outcome) String() string {
-	s := fmt.Sprintf("%v: N %d, bounds drag %.4f amplitude %.4f both %.4f; failed %d (%v); reject %.3f/%.3f of %d (routes %.3f/%.3f, amplitudes %.3f of %d), inconsistent %d, misfit %.3f\n",
-		o.Cell, o.Cell.samples(), o.Bounds.Drag, o.Bounds.Amplitude, o.Bounds.Both, o.Failed, o.Error,
-		float64(o.Reject)/float64(o.Tested), float64(o.RejectAll)/float64(o.Tested), o.Tested,
-		float64(o.RouteReject)/float64(o.Tested), float64(o.RouteRejectAll)/float64(o.Tested),
-		float64(o.AmpReject)/float64(o.AmpTested), o.AmpTested, o.Verdicts, float64(o.Misfit)/float64(o.FitTested))
-	for _, name := range []string{calib.LegSpectrum, calib.LegEquipartition, calib.LegDisplacement, calib.LegSpectrumAmplitude, calib.LegDisplacementTime, adopted} {
-		t := o.tally(name)
-		if t.Count == 0 {
-			s += fmt.Sprintf("   %-30s withheld %d\n", name, t.Withheld)
-			continue
+	for _, c := range r.Checks {
+		if c.Level != "ok" {
+			o.Doubtful++
+			break
 		}
-		bound := o.Bounds.Amplitude
-		switch name {
-		case calib.LegSpectrum, calib.LegDisplacementTime:
-			bound = o.Bounds.Drag
-		case adopted:
-			bound = o.Bounds.Both
-		}
-		eff := bound / t.Scatter()
-		s += fmt.Sprintf("   %-30s bias %+.3f scatter %.4f efficiency %.3f  68: %.3f/%.3f 95: %.3f/%.3f withheld %d open %d\n", name, t.Bias(), t.Scatter(), eff*eff,
-			t.share(t.in68), t.share(t.in68All), t.share(t.in95), t.share(t.in95All), t.Withheld, t.open)
 	}
-	return s
 }
