@@ -146,7 +146,7 @@ What to do: a shorter exposure with more light, or a softer trap.` + caution,
 	{
 		Code: "slow-sampling", Title: "sampling rate", unit: "1",
 		reason: "When neighbouring samples no longer know of each other, the corner frequency cannot be seen.",
-		Long: `Looked at: the standard uncertainty of the logarithm of the corner frequency that samples at this rate allow at best, where the corner is above a fifth of the sampling rate. Doubtful above 0.6, bad above 1.5; bad, too, when a thousand samples or more do not know of each other at all, as is the case without a moving bead. Aliasing is part of the model, so that a corner near or above the sampling rate is no harm as long as the record is long enough.
+		Long: `Looked at: the standard uncertainty of the logarithm of the corner frequency that samples at this rate allow at best, where the corner is above a fifth of the sampling rate and there are a thousand samples. Doubtful above 0.6, bad above 1.5; bad, too, when a thousand samples or more do not know of each other at all, as is the case without a moving bead. Aliasing is part of the model, so that a corner near or above the sampling rate is no harm as long as the record is long enough.
 What to do: sample faster, or use a softer trap.` + caution,
 	},
 	{

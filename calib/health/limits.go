@@ -107,7 +107,7 @@ func (v *view) slow() Check {
 	c.Value = v.cornerSD()
 	c.Text = fmt.Sprintf("The corner frequency is %s of the sampling rate.", digits(ratio))
 	switch {
-	case ratio < 0.2: // what makes the corner uncertain here is length or noise, not the rate
+	case ratio < 0.2 || v.total.n < whiteSamples: // what makes the corner uncertain here is length or noise, not the rate
 		return c
 	case c.Value > slowBad:
 		c.Level = Bad

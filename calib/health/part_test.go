@@ -130,3 +130,36 @@ func TestDriftLevels(t *testing.T) {
 		}
 	}
 }
+
+// TestWanderIsNoJump: one and a half slow waves over the record are a wander, and neither
+// a jump nor a tone; a jump is neither a drift nor a wander.
+func TestWanderIsNoJump(t *testing.T) {
+	for _, r := range []regime{detector, camera} {
+		for seed := range uint64(4) {
+			duration := float64(r.truth(1).Samples) / r.rate()
+			wave := trial{regime: r, spoil: eachAxis(func(a *simulate.Axis) {
+				a.Lines = []simulate.Line{{Frequency: 1.5 / duration, Amplitude: 0.7 * rms, Phase: 1}}
+			})}
+			_, checks := wave.run(1, seed)
+			// 0.7/sqrt(2) = 0.5 of the rms, less what a straight line takes up
+			if c := find(t, checks, "slow-wander", "x"); c.Level != Bad {
+				t.Errorf("%+v wave: wander %v %v", r, c.Level, c.Value)
+			}
+			for _, code := range []string{"jump", "tone", "lost-bead", "held-bead"} {
+				if c := find(t, checks, code, "x"); c.Level != OK {
+					t.Errorf("%+v wave: %s", r, c.Text)
+				}
+			}
+			step := trial{regime: r, spoil: event(simulate.Jump, 0.35, func(e *simulate.Event) { e.Offset = []float64{rms} })}
+			_, checks = step.run(1, seed)
+			if c := find(t, checks, "jump", "x"); c.Level != Bad || math.Abs(c.Value-1) > 0.5 {
+				t.Errorf("%+v step: jump %v %v", r, c.Level, c.Value)
+			}
+			for _, code := range []string{"slow-drift", "slow-wander", "unsteady-motion", "held-bead", "lost-bead"} {
+				if c := find(t, checks, code, "x"); c.Level != OK {
+					t.Errorf("%+v step: %s", r, c.Text)
+				}
+			}
+		}
+	}
+}
