@@ -161,7 +161,7 @@ func newForecast(set *session.Settings, opt PlanOptions) (*forecast, error) {
 	if x := f.corner / f.rate; x < lowestRatio || x > highestRatio {
 		return nil, &SettingError{Key: "recording.rate", Where: rate.Where,
 			Problem: fmt.Sprintf("%g Hz cannot record a corner frequency of %.4g Hz", f.rate, f.corner),
-			Remedy:  fmt.Sprintf("choose a rate from %.3g Hz to %.3g Hz", f.corner/highestRatio, f.corner/lowestRatio)}
+			Remedy:  fmt.Sprintf("choose a rate from %s Hz to %s Hz", digits(f.corner/highestRatio, 3), digits(f.corner/lowestRatio, 3))}
 	}
 	for _, key := range []string{"recording.pixel", "recording.sensitivity"} {
 		if s, ok := number(set, key, opt.Axis); ok && s.Value.SI > 0 {

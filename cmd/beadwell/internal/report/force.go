@@ -99,11 +99,11 @@ func inUnit(f calib.Float, factor float64) string {
 	return strconv.FormatFloat(float64(f)*factor, 'g', 3, 64)
 }
 
-// ForceCSV writes the forces, one row a sample, in SI units at full precision: the time of
-// the sample, and for each axis displacement, force, the standard uncertainty of the force by
+// ForceCSV writes the forces, one row a sample, in SI units: the time of the sample, and for each axis displacement, force, the standard uncertainty of the force by
 // localisation noise (independent in each sample), and by stiffness and centre (one error
 // that all samples share). What is missing or not known is an empty cell. It writes as it
-// goes: memory does not grow with the recording.
+// goes: memory does not grow with the recording. Times have 15 significant digits and all
+// else 12, which is far below any noise and above the rounding of the last bits.
 func ForceCSV(w io.Writer, start, rate float64, traces []calib.ForceTrace) error {
 	out := bufio.NewWriterSize(w, 1<<16)
 	out.WriteString("time_s") // errors stay until Flush
@@ -118,7 +118,7 @@ func ForceCSV(w io.Writer, start, rate float64, traces []calib.ForceTrace) error
 	}
 	line := make([]byte, 0, 256)
 	for i := range samples {
-		line = strconv.AppendFloat(line[:0], start+float64(i)/rate, 'g', -1, 64)
+		line = strconv.AppendFloat(line[:0], start+float64(i)/rate, 'g', 15, 64)
 		for j := range traces {
 			displacement, force, calibration := traces[j].At(i)
 			line = appendCell(line, displacement)
@@ -143,5 +143,5 @@ func appendCell(line []byte, v float64) []byte {
 	if math.IsNaN(v) || math.IsInf(v, 0) {
 		return line
 	}
-	return strconv.AppendFloat(line, v, 'g', -1, 64)
+	return strconv.AppendFloat(line, v, 'g', 12, 64)
 }
