@@ -96,6 +96,11 @@ func runAll(ctx context.Context, works []*work) error {
 		group.Go(func() {
 			limit <- struct{}{}
 			defer func() { <-limit }()
+			defer func() { // a panic here would end the process with a stack trace
+				if v := recover(); v != nil {
+					errs[i] = fmt.Errorf("%s: axis %s: internal error: %v", w.name, w.axisName, v)
+				}
+			}()
 			if errs[i] = ctx.Err(); errs[i] == nil {
 				errs[i] = w.run(ctx)
 			}

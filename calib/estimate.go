@@ -158,6 +158,13 @@ func (w *work) shaped(like int, sd float64) relaxation.Offsets {
 	return relaxation.Normal(sd)
 }
 
+// Relative uncertainties above which the fit of the mean-square displacement is withheld:
+// its covariance is that of a linear fit, and its intervals no longer cover beyond.
+const (
+	linearPlateau = 0.25
+	linearTime    = 0.15
+)
+
 // relaxationsOfInertia is the first lag, in relaxation times, of a fit of the mean-square
 // displacement where the drag depends on frequency: from there on it has all but reached its plateau.
 const relaxationsOfInertia = 2
@@ -191,7 +198,7 @@ func (w *work) displacementLegs(p relaxation.Process, total relaxation.Matrix, d
 	l.msd = m
 	sdV, sdC := math.Sqrt(m.Covariance[1][1]), math.Sqrt(m.Covariance[0][0])
 	bound := w.pooled.regimeV
-	if sdV > hopeless || bound > hopeless || drawn {
+	if sdV > linearPlateau || bound > hopeless || drawn {
 		l.reason[displacementLeg] = tooUncertain(math.Max(sdV, bound))
 	} else {
 		l.value[displacementLeg] = math.Log(w.phys.kT / m.Variance)
@@ -199,7 +206,7 @@ func (w *work) displacementLegs(p relaxation.Process, total relaxation.Matrix, d
 	}
 	if w.dragModel == FrequencyDependentDrag {
 		l.reason[timeLeg] = "the relaxation of the mean-square displacement is modelled with constant drag, and here the drag depends on frequency"
-	} else if bound = w.pooled.regimeFC; sdC > hopeless || bound > hopeless || drawn {
+	} else if bound = w.pooled.regimeFC; sdC > linearTime || bound > hopeless || drawn {
 		l.reason[timeLeg] = tooUncertain(math.Max(sdC, bound))
 	} else {
 		l.value[timeLeg] = math.Log(2 * math.Pi * w.phys.gamma * m.Corner)
