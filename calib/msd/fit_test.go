@@ -293,7 +293,7 @@ func TestStatedNoise(t *testing.T) {
 	for _, u := range []float64{0, 0.2 * p.Noise} {
 		h := 1e-3 * p.Noise
 		base, up, down := at(Noise{true, p.Noise, u}), at(Noise{true, p.Noise + h, u}), at(Noise{true, p.Noise - h, u})
-		for k, move := range []float64{math.Log(up.Corner / down.Corner), math.Log(up.Variance / down.Variance)} {
+		for k, move := range []float64{math.Log(up.Corner / down.Corner), math.Log(up.Variance / down.Variance), (up.NoiseQ - down.NoiseQ) / f.scale} {
 			slope := move / (2 * h)
 			// the slope is that of the linearised problem; the search stops within 1e-5 standard errors
 			if math.Abs(base.NoiseSlope[k]-slope) > 0.02*math.Abs(slope)+1e-4*math.Sqrt(base.Covariance[k][k])/h {

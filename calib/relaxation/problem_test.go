@@ -132,6 +132,11 @@ func TestProblemWithPriorsAndDirections(t *testing.T) {
 	if m, err = pr.Maximise(Parameters{}); err != nil {
 		t.Fatal(err)
 	}
+	z := (w.dot(m.At) + 2) / 0.05
+	want := bowl.Value(m.At) - z*z/2
+	if v := pr.Value(m.At); math.Abs(v-want) > 1e-12*math.Abs(want) || math.Abs(m.Value-want) > 1e-12*math.Abs(want) {
+		t.Errorf("value with a prior = %.15g at the maximum, %.15g by the search, want %.15g", v, m.Value, want)
+	}
 	var precise Matrix
 	shift := Parameters{}
 	for a := range precise {

@@ -283,3 +283,17 @@ func TestStationaryFilterIsARMA(t *testing.T) {
 		}
 	}
 }
+
+// What is left of the spectrum without its floor is the spectrum of an unblurred, noise-free bead times B.
+func TestFloor(t *testing.T) {
+	for i, p := range processes {
+		bare := Process{Corner: p.Corner, Variance: p.Variance, Interval: p.Interval}
+		b, _ := BlurCovariance(2 * math.Pi * p.Corner * p.Exposure)
+		for _, f := range []float64{0, 0.1, 0.5} {
+			want := p.Spectrum(f)/p.Interval - b*bare.Spectrum(f)/p.Interval
+			if got := p.Floor(); math.Abs(got-want) > 1e-13*(b*p.Variance*100) { // the spectrum is up to 100 V at fc/fs = 0.02
+				t.Errorf("process %d: Floor = %.14g, want %.14g at f = %g", i, got, want, f)
+			}
+		}
+	}
+}
