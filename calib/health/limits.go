@@ -51,7 +51,7 @@ func (v *view) short() Check {
 	}
 	c.Value = v.Process.Corner * v.h.n / v.rate
 	// A record of just 30 is found shorter half of the time: it must be by three standard uncertainties.
-	sure := c.Value * math.Exp(3*math.Min(v.spread(), 0.35))
+	sure := c.Value * math.Exp(3*math.Min(v.spread(), 0.4))
 	c.Text = fmt.Sprintf("The record is %s times as long as 1/fc.", digits(c.Value))
 	switch {
 	case c.Value < shortBad:

@@ -6,6 +6,7 @@ import (
 	"slices"
 	"testing"
 
+	"beadwell/calib/relaxation"
 	"beadwell/calib/simulate"
 )
 
@@ -60,14 +61,15 @@ func TestUnbiased(t *testing.T) {
 }
 
 // TestWanderSize adds a cosine of two half-periods and known rms to white samples: the
-// excess is its mean square, within the scatter of 8 cosines, 4 sd of which are
-// 4 sqrt(2 x 8)/N = 0.0016, and that of the cross term, 4 x 2 x 0.5/sqrt(N) = 0.04.
+// excess is its mean square, within four standard deviations of the cross term,
+// 4 x 2 x 0.5/sqrt(N) = 0.04. Without it the excess is that of 8 squared cosines over
+// their expectation, with a standard deviation of sqrt(2 x 8)/N = 0.0004.
 func TestWanderSize(t *testing.T) {
 	const n = 10000
 	x := white(n, 1, 6)
 	clean := summarise(x)
 	h := null{n: n, observed: 1, r0: 1, rho: 50}
-	if _, p, excess := wander(points(clean.blocks, clean.length, n), h, clean.scale); p < 1e-3 || excess*clean.scale*clean.scale > 0.0016 {
+	if _, p, excess := wander(points(clean.blocks, clean.length, n), h, clean.scale); p < 1e-3 || excess*clean.scale*clean.scale > 0.0004 {
 		t.Errorf("white samples: p = %v, excess %v", p, excess)
 	}
 	for i := range x {
@@ -161,5 +163,15 @@ func TestWanderIsNoJump(t *testing.T) {
 				}
 			}
 		}
+	}
+}
+
+// TestFreedom: for a slow process the low-frequency power is known to a variance of
+// 4/(pi fc T), half of which information is given away: pi fc T/4 degrees of freedom,
+// 23.6 at T fc = 30. The rest of c -> 1 at fc dt = 1e-3 is 1 %.
+func TestFreedom(t *testing.T) {
+	p := relaxation.Process{Corner: 1, Variance: 1, Interval: 1e-3}
+	if got := newNull(p, 30000, 30000).freedom(); math.Abs(got-23.56) > 0.3 {
+		t.Errorf("freedom() = %v, want 23.56", got)
 	}
 }

@@ -48,8 +48,8 @@ func (v *view) distribution() Check {
 	c.Value = excess
 	skewZ := skewDeviate(skew, math.Max(v.h.effective(3, v.h.n), 9))
 	kurtosisZ := kurtosisDeviate(excess, math.Max(v.h.effective(4, v.h.n), 20))
-	odd := twoSided(skewZ) < chance/2 && math.Abs(skew) > skewDoubtful
-	heavy := twoSided(kurtosisZ) < chance/2 && math.Abs(excess) > kurtosisDoubtful
+	odd := twoSided(skewZ) < chance/4 && math.Abs(skew) > skewDoubtful
+	heavy := twoSided(kurtosisZ) < chance/4 // the transformations are a factor of three short at 200 samples && math.Abs(excess) > kurtosisDoubtful
 	if !odd && !heavy {
 		c.Text = "The positions are distributed as in a harmonic trap."
 		return c
