@@ -56,8 +56,16 @@ func (w *work) pool() error {
 		p.problem.NonNegative = true
 		err = w.settlePool()
 	}
+	if w.fitErr == nil && (err != nil || 2*(w.fit.Maximum.Value-p.maximum.Value) > farApart) {
+		// the computed drag is far from the record's: its fit tells nothing of the regime
+		p.regimeFC, p.regimeV = math.Sqrt(w.fit.Total[0][0]), math.Sqrt(w.fit.Total[1][1])
+	}
 	return err
 }
+
+// farApart is the likelihood-ratio statistic (5.5 standard deviations) beyond which the
+// record and the computed drag do not describe the same bead.
+const farApart = 30
 
 // looseNoise is the relative uncertainty of the pooled stiffness above which an unstated
 // noise is kept from turning negative. Below it the unbounded noise keeps the estimate unbiased.
