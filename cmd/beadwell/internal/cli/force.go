@@ -251,11 +251,26 @@ func forceSummary(rec *track.Recording, result *calib.Result, traces []calib.For
 	for i := range traces {
 		one := traces[i].Summary()
 		s.Axes = append(s.Axes, one)
-		if one.Beyond > 0 {
+		if farOut(one) {
 			s.Findings = append(s.Findings, beyondLinear(one))
 		}
 	}
 	return s
+}
+
+// Limits beyond which displacements outside of the linear range are told. A long recording
+// sees rarer thermal displacements than the calibration did; these are neither many nor far.
+const (
+	manyBeyond = 0.01 // share of the samples
+	farBeyond  = 2    // largest displacement over the end of the range
+)
+
+func farOut(a calib.ForceSummary) bool {
+	end := a.Linear[1]
+	if a.Furthest < 0 {
+		end = a.Linear[0]
+	}
+	return float64(a.Beyond) > manyBeyond*float64(a.Samples-a.Missing) || a.Beyond > 0 && a.Furthest/end > farBeyond
 }
 
 func beyondLinear(a calib.ForceSummary) calib.Finding {

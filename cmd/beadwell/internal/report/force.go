@@ -102,8 +102,9 @@ func inUnit(f calib.Float, factor float64) string {
 // ForceCSV writes the forces, one row a sample, in SI units: the time of the sample, and for each axis displacement, force, the standard uncertainty of the force by
 // localisation noise (independent in each sample), and by stiffness and centre (one error
 // that all samples share). What is missing or not known is an empty cell. It writes as it
-// goes: memory does not grow with the recording. Times have 15 significant digits and all
-// else 12, which is far below any noise and above the rounding of the last bits.
+// goes: memory does not grow with the recording. Times have 15 significant digits, displacements
+// and forces 12, which is far below any noise and above the rounding of the last bits, and
+// uncertainties 4.
 func ForceCSV(w io.Writer, start, rate float64, traces []calib.ForceTrace) error {
 	out := bufio.NewWriterSize(w, 1<<16)
 	out.WriteString("time_s") // errors stay until Flush
@@ -116,19 +117,23 @@ func ForceCSV(w io.Writer, start, rate float64, traces []calib.ForceTrace) error
 	for _, t := range traces {
 		samples = max(samples, len(t.Positions))
 	}
+	noise := make([][]byte, len(traces)) // the same in each row
+	for j := range traces {
+		noise[j] = appendCell(nil, traces[j].StatisticalU(), 4)
+	}
 	line := make([]byte, 0, 256)
 	for i := range samples {
 		line = strconv.AppendFloat(line[:0], start+float64(i)/rate, 'g', 15, 64)
 		for j := range traces {
 			displacement, force, calibration := traces[j].At(i)
-			line = appendCell(line, displacement)
-			line = appendCell(line, force)
-			if force == force {
-				line = appendCell(line, traces[j].StatisticalU())
-			} else {
-				line = append(line, ',')
+			if displacement != displacement { // missing
+				line = append(line, ",,,,"...)
+				continue
 			}
-			line = appendCell(line, calibration)
+			line = appendCell(line, displacement, 12)
+			line = appendCell(line, force, 12)
+			line = append(line, noise[j]...)
+			line = appendCell(line, calibration, 4)
 		}
 		line = append(line, '\n')
 		if _, err := out.Write(line); err != nil {
@@ -138,10 +143,10 @@ func ForceCSV(w io.Writer, start, rate float64, traces []calib.ForceTrace) error
 	return out.Flush()
 }
 
-func appendCell(line []byte, v float64) []byte {
+func appendCell(line []byte, v float64, digits int) []byte {
 	line = append(line, ',')
 	if math.IsNaN(v) || math.IsInf(v, 0) {
 		return line
 	}
-	return strconv.AppendFloat(line, v, 'g', 12, 64)
+	return strconv.AppendFloat(line, v, 'g', digits, 64)
 }
