@@ -35,4 +35,6 @@ What to do: record longer or faster, shorten the exposure, or state the localisa
 What to do: measure the noise with a stuck bead under the same illumination and state it, or sample faster.`},
 	{CodeHydrodynamics, "the inertia of the liquid matters", `The drag of a sphere grows with frequency as 1 + sqrt(f/f_nu), f_nu = nu/(pi R^2) (1.1 MHz for a bead of 1 um in water). A fit with constant drag over a wide band is low in corner frequency and diffusion coefficient together: by 3.5 % up to 5 kHz and 8.5 % up to 20 kHz for a bead of 1 um with a corner of 500 Hz.
 What to do: let the fit use frequency-dependent drag (the setting fit.drag), or restrict the band to a few times the corner frequency.`},
+	{CodeSelfScaled, "the sensitivity comes from the drag", `A detector speaks volts. Without a stated sensitivity the program takes the length scale at which the bead's diffusion coefficient is kT over its computed drag (Stokes and the wall). The stiffness is then 2 pi times drag times corner frequency; a stiffness through amplitude would be the same number again, so it is withheld, and there is no cross-check.
+What to do: record with a stage that moves by a known amplitude, or measure the sensitivity with a stuck bead, and state it.`},
 }

@@ -20,7 +20,7 @@ func (w *work) findings() []Finding {
 	var out []Finding
 	nan := Float(math.NaN())
 	for leg, reason := range w.legs.reason {
-		if reason == "" || leg > displacementLeg {
+		if reason == "" || reason == selfScaled || leg > displacementLeg {
 			continue
 		}
 		out = append(out, Finding{Code: CodeWithheld, Severity: Note, Axis: w.axisName, Text: fmt.Sprintf("The estimate %q is withheld: %s.", legNames[leg], reason),
@@ -35,6 +35,11 @@ func (w *work) findings() []Finding {
 		out = append(out, Finding{Code: CodeLine, Severity: Note, Axis: w.axisName,
 			Text:   fmt.Sprintf("A narrow line at %.6g Hz with an amplitude of %.3g nm was removed.", l.Frequency, l.Amplitude*1e9),
 			Remedy: "look for mains pickup or a vibration", Value: Float(l.Frequency), Limit: nan, Unit: "Hz"})
+	}
+	if w.takesDrag() {
+		out = append(out, Finding{Code: CodeSelfScaled, Severity: Note, Axis: w.axisName,
+			Text:   "No sensitivity is stated; it was found from the spectrum and the computed drag. The stiffness then rests on the corner frequency alone, and a wrong bead diameter, viscosity or height cannot show.",
+			Remedy: `drive the stage by a known amplitude (--role driven), or state the sensitivity with --sensitivity "1.31(4) um/V"`, Value: nan, Limit: nan})
 	}
 	if f, ok := w.hydrodynamicFinding(); ok {
 		out = append(out, f)

@@ -115,6 +115,7 @@ type Axis struct {
 	Equipartition Equipartition          `json:"equipartition"`
 	Displacement  MeanSquareDisplacement `json:"mean_square_displacement"`
 	Trace         Trace                  `json:"trace"`
+	Sensitivity   *Sensitivity           `json:"sensitivity,omitempty"` // of a recording in detector units
 }
 
 // Wall is the effect of the surface on the drag.

@@ -37,6 +37,11 @@ func (r *Result) judge(works []*work, opt Options) {
 	}
 	if tested == 0 {
 		v.FamilyWiseP = Float(math.NaN())
+		if works[0].takesDrag() {
+			v.Text = "Nothing to cross-check: the sensitivity of the detector was taken from the computed drag."
+			v.Reason = "corner frequency and computed drag are the only independent leg; the stiffness is as good as bead diameter, viscosity and height are"
+			return
+		}
 		v.Text = "No cross-check was possible: the recording does not determine drag and amplitude apart."
 		v.Reason = "the adopted stiffness rests on the computed drag and the temperature together"
 		return
@@ -105,6 +110,7 @@ const (
 	CodeWithheld      = "estimate-withheld"
 	CodeNoiseUnknown  = "noise-not-separable"
 	CodeHydrodynamics = "frequency-dependent-drag"
+	CodeSelfScaled    = "sensitivity-from-drag"
 )
 
 func (r *Result) collectFindings(set *session.Settings, works []*work) {

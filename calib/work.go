@@ -27,7 +27,11 @@ type work struct {
 	exposure  float64 // s
 	exposureU float64 // s
 	noise     psd.Noise
-	volts     bool // positions are in detector units: no absolute length
+	detector  bool // positions were recorded in detector units
+	unscaled  bool // no sensitivity is known beforehand
+	// perUnit is the length of the recorded unit [m], perUnitU its stated standard uncertainty.
+	perUnit, perUnitU float64
+	sensitivityOrigin string
 
 	record    *psd.Record
 	fit       *psd.Fit
@@ -90,12 +94,17 @@ func (w *work) setLength() error {
 		return &SettingError{Key: key, Axis: a.Name, Problem: "is not given, but the positions are in pixels",
 			Remedy: `give the length of a pixel in the sample with --pixel "65.0(3) nm"`}
 	}
-	if !ok {
-		w.volts = true
-		return &SettingError{Key: key, Axis: a.Name, Problem: fmt.Sprintf("is not given, but the positions are in %s", a.Unit),
-			Remedy: `give the length per unit of the detector with --sensitivity "1.31(4) um/V"`}
+	w.perUnit = 1
+	w.detector = key == "recording.sensitivity"
+	if w.unscaled = !ok; w.unscaled {
+		if w.opt.Adopt == RouteAmplitude {
+			return &SettingError{Key: "adopt", Axis: a.Name, Problem: fmt.Sprintf("is %q, but the positions are in %s and no sensitivity is stated", RouteAmplitude, a.Unit),
+				Remedy: `state the sensitivity with --sensitivity "1.31(4) um/V", or leave it out`}
+		}
+		return nil
 	}
 	scale := s.Value.SI
+	w.perUnit, w.perUnitU, w.sensitivityOrigin = scale, s.Value.U, SensitivityStated
 	values := make([]float64, len(a.Values))
 	for i, v := range a.Values {
 		values[i] = v * scale
@@ -124,19 +133,14 @@ func (w *work) setNoise() {
 
 // run makes all estimates of the axis.
 func (w *work) run(ctx context.Context) error {
-	var err error
-	w.record, err = psd.Prepare(w.source.Values, w.rate)
-	if err != nil {
-		return w.dataError(err, "record longer, or check the columns")
+	fit := w.fitPositions
+	if w.unscaled {
+		fit = w.scalePositions
 	}
-	w.fit, w.fitErr = psd.Estimate(w.record, w.fitOptions())
-	if w.fitErr != nil && !errors.Is(w.fitErr, relaxation.ErrNoMaximum) {
-		return w.dataError(w.fitErr, "record longer, or widen the band")
-	}
-	if err := ctx.Err(); err != nil {
+	if err := fit(); err != nil {
 		return err
 	}
-	if err := w.settleDrag(); err != nil {
+	if err := ctx.Err(); err != nil {
 		return err
 	}
 	if w.poolErr = w.pool(); w.poolErr != nil && w.fitErr != nil && w.noise.Known {
@@ -144,10 +148,28 @@ func (w *work) run(ctx context.Context) error {
 			"check the unit, the diameter and the exposure, and that the bead was trapped; state the noise if it is known")
 	}
 	w.estimate()
-	w.compare()
+	if w.takesDrag() {
+		w.withholdAmplitude()
+		w.opt.Adopt = RouteDrag
+	} else {
+		w.compare()
+	}
 	w.adopt()
 	w.describe()
 	return ctx.Err()
+}
+
+// fitPositions fits the spectrum of the positions, in their unit.
+func (w *work) fitPositions() error {
+	var err error
+	if w.record, err = psd.Prepare(w.source.Values, w.rate); err != nil {
+		return w.dataError(err, "record longer, or check the columns")
+	}
+	w.fit, w.fitErr = psd.Estimate(w.record, w.fitOptions())
+	if w.fitErr != nil && !errors.Is(w.fitErr, relaxation.ErrNoMaximum) {
+		return w.dataError(w.fitErr, "record longer, or widen the band")
+	}
+	return w.settleDrag()
 }
 
 func (w *work) dataError(err error, remedy string) error {
