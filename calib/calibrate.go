@@ -137,9 +137,6 @@ func (r *Result) describe(rec *track.Recording, works []*work) {
 	}
 }
 
-// pN formats a stiffness in pN/um for sentences.
-func pN(kappa float64) string { return fmt.Sprintf("%.4g pN/um", kappa*1e6) }
-
 // join lists words: "x", "x and y", "x, y and z".
 func join(words []string) string {
 	if len(words) < 2 {

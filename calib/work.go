@@ -43,7 +43,6 @@ type work struct {
 	form      func(relaxation.Blocks, float64) relaxation.Likelihood // of the fit; nil: the relaxation process
 	hydro     *psd.Bias                                              // of a fit with constant drag, where it matters
 	axis      Axis
-	notes     []Finding
 }
 
 // newWork reads what the settings say of one axis and converts its positions.
