@@ -5,10 +5,10 @@ import "beadwell/calib/health"
 // Explanation is the long form of the code of a finding.
 type Explanation struct{ Code, Title, Long string }
 
-// Explanations lists all codes: those of the calibration first, then those of the
+// Explanations lists all codes: those of the calibration first, then those of plans and forces, and of the
 // checks of the recording.
 func Explanations() []Explanation {
-	all := append([]Explanation(nil), explanations...)
+	all := append(append([]Explanation(nil), explanations...), UseExplanations()...)
 	for _, e := range health.Codes() {
 		all = append(all, Explanation{e.Code, e.Title, e.Long})
 	}

@@ -221,7 +221,7 @@ func inMetres(axis track.Axis, settings *session.Settings, result *calib.Result)
 	if stated, ok := settings.Lookup(key, axis.Name); ok {
 		scale = stated.Value.SI
 		if scale != calibrated && !math.IsNaN(calibrated) {
-			finding = &calib.Finding{Code: "other-length-scale", Severity: calib.Doubtful, Axis: axis.Name, Value: calib.Float(scale), Limit: calib.Float(calibrated),
+			finding = &calib.Finding{Code: calib.CodeOtherLengthUnit, Severity: calib.Doubtful, Axis: axis.Name, Value: calib.Float(scale), Limit: calib.Float(calibrated),
 				Text:   fmt.Sprintf("%s is %g m here and %g m in the calibration.", key, scale, calibrated),
 				Remedy: "use the same, unless the magnification was changed on purpose"}
 		}
@@ -241,11 +241,11 @@ func forceSummary(rec *track.Recording, result *calib.Result, traces []calib.For
 	s := report.Force{Input: calib.Input{Bead: rec.Bead, Size: rec.Size, SHA256: rec.SHA256}, Calibration: result.Input,
 		Verdict: result.Verdict, Centre: where.words(), Rate: calib.Float(rec.Rate), Start: calib.Float(rec.Start), Duration: calib.Float(float64(rec.Samples) / rec.Rate)}
 	if result.Verdict.Status != calib.Consistent {
-		s.Findings = append(s.Findings, calib.Finding{Code: "verdict-overruled", Severity: calib.Doubtful, Value: result.Verdict.FamilyWiseP, Limit: calib.Float(math.NaN()),
+		s.Findings = append(s.Findings, calib.Finding{Code: calib.CodeVerdictIgnored, Severity: calib.Doubtful, Value: result.Verdict.FamilyWiseP, Limit: calib.Float(math.NaN()),
 			Text: "The verdict on the calibration is " + result.Verdict.Status + ", and was overruled.", Remedy: "calibrate again before these forces are used"})
 	}
 	if where.kind == "calibration" {
-		s.Findings = append(s.Findings, calib.Finding{Code: "centre-of-calibration", Severity: calib.Note, Value: calib.Float(math.NaN()), Limit: calib.Float(math.NaN()),
+		s.Findings = append(s.Findings, calib.Finding{Code: calib.CodeOldCentre, Severity: calib.Note, Value: calib.Float(math.NaN()), Limit: calib.Float(math.NaN()),
 			Text: "The centre is the mean position of the calibration; a drift since then is a force that is not there.", Remedy: "take the mean of a stretch without a force"})
 	}
 	for i := range traces {
@@ -274,7 +274,7 @@ func farOut(a calib.ForceSummary) bool {
 }
 
 func beyondLinear(a calib.ForceSummary) calib.Finding {
-	return calib.Finding{Code: "beyond-linear-range", Severity: calib.Doubtful, Axis: a.Axis, Value: a.Furthest, Limit: a.Linear[1], Unit: "m",
+	return calib.Finding{Code: calib.CodeBeyondLinear, Severity: calib.Doubtful, Axis: a.Axis, Value: a.Furthest, Limit: a.Linear[1], Unit: "m",
 		Text: fmt.Sprintf("%d of %d samples lie beyond the displacements over which the calibration saw a harmonic potential, from %.3g nm to %.3g nm (%s); the furthest is %.3g nm from the centre.",
 			a.Beyond, a.Samples-a.Missing, 1e9*float64(a.Linear[0]), 1e9*float64(a.Linear[1]), a.LinearReason, 1e9*float64(a.Furthest)),
 		Remedy: "check with a larger known force, by moving the stage, that the trap is linear so far out"}
