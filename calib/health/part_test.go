@@ -121,7 +121,7 @@ func TestDriftLevels(t *testing.T) {
 	for _, row := range []struct {
 		drift float64 // rms
 		want  Level
-	}{{0, OK}, {0.1, OK}, {0.5, Doubtful}, {1, Doubtful}, {1.3, Bad}} {
+	}{{0, OK}, {0.1, OK}, {0.5, Doubtful}, {1, Doubtful}, {1.06, Doubtful}, {1.3, Bad}} {
 		x := white(10000, rms, r.Uint64())
 		for i := range x {
 			x[i] += row.drift * rms * float64(i) / float64(len(x))
@@ -157,6 +157,9 @@ func TestWanderIsNoJump(t *testing.T) {
 			if c := find(t, checks, "jump", "x"); c.Level != Bad || math.Abs(c.Value-1) > 0.5 {
 				t.Errorf("%+v step: jump %v %v", r, c.Level, c.Value)
 			}
+			if c := find(t, checks, "not-gaussian", "x"); c.Judged {
+				t.Errorf("%+v step: the distribution was judged in spite of it", r)
+			}
 			for _, code := range []string{"slow-drift", "slow-wander", "unsteady-motion", "held-bead", "lost-bead"} {
 				if c := find(t, checks, code, "x"); c.Level != OK {
 					t.Errorf("%+v step: %s", r, c.Text)
@@ -173,5 +176,31 @@ func TestFreedom(t *testing.T) {
 	p := relaxation.Process{Corner: 1, Variance: 1, Interval: 1e-3}
 	if got := newNull(p, 30000, 30000).freedom(); math.Abs(got-23.56) > 0.3 {
 		t.Errorf("freedom() = %v, want 23.56", got)
+	}
+}
+
+// TestMutual compares the sum over the product of two autocorrelations with a direct one:
+// rounding only.
+func TestMutual(t *testing.T) {
+	other := process
+	other.Corner, other.Noise = 30, 0
+	a, b := newNull(process, 1000, 1000), newNull(other, 1000, 1000)
+	want := 1.0
+	for k := 1; k < 2000; k++ {
+		want += 2 * process.Autocovariance(k) / process.Autocovariance(0) * other.Autocovariance(k) / other.Autocovariance(0)
+	}
+	if got := mutual(a, b); math.Abs(got-want) > 1e-12*want {
+		t.Errorf("mutual() = %v, want %v (direct sum)", got, want)
+	}
+}
+
+// TestEarlyJump: of a jump in the first tenth it is the beginning that is given up.
+func TestEarlyJump(t *testing.T) {
+	tr := trial{regime: detector, spoil: event(simulate.Jump, 0.06, func(e *simulate.Event) { e.Offset = []float64{3 * rms} })}
+	in, checks := tr.run(1, 1)
+	c := find(t, checks, "jump", "x")
+	length := float64(len(in.Axes[0].X)) / in.Rate
+	if len(c.Ranges) != 1 || c.Ranges[0][0] != 0 || math.Abs(c.Ranges[0][1]-0.06*length) > 0.01*length {
+		t.Errorf("jump at 0.06 of %v s: %v %v", length, c.Level, c.Ranges)
 	}
 }
