@@ -45,6 +45,9 @@ func (r *Result) examine(rec *track.Recording, works []*work) {
 	}
 	r.Checks = []Check{}
 	for _, c := range health.Run(in) {
+		if c.Code == slowSampling && c.Level == health.Bad && pooledFit(works, c.Axis) {
+			c.Level = health.Doubtful
+		}
 		out := Check{Code: c.Code, Name: c.Name, Axis: c.Axis, Level: c.Level.String(), Judged: c.Judged, Value: Float(c.Value), Limit: Float(c.Threshold),
 			Unit: c.Unit, Text: c.Text, Reason: c.Reason, Remedy: c.Remedy}
 		for _, s := range c.Ranges {
@@ -52,6 +55,20 @@ func (r *Result) examine(rec *track.Recording, works []*work) {
 		}
 		r.Checks = append(r.Checks, out)
 	}
+}
+
+// slowSampling is the check that white samples fail. They say nothing of the corner
+// frequency, but their variance still does of the stiffness, together with the computed drag: a
+// stiffness that rests on both is doubtful, not bad.
+const slowSampling = "slow-sampling"
+
+func pooledFit(works []*work, axis string) bool {
+	for _, w := range works {
+		if w.axisName == axis {
+			return w.poolErr == nil && w.axis.Adopted.Stiffness.Known()
+		}
+	}
+	return false
 }
 
 // worst returns the first bad check.
