@@ -57,9 +57,7 @@ func (h Hydrodynamic) Check() error {
 // Position returns the one-sided spectrum of the position itself [m2/Hz] at f [Hz], for
 // a corner frequency [Hz] and a variance V [m2]: neither detector, nor exposure, nor sampling.
 func (h Hydrodynamic) Position(f, corner, variance float64) float64 {
-	s := h.site(f, 1)
-	value, _ := s.moving(corner)
-	return 2 * variance * value
+	return 2 * variance * h.site(f, 1).moving(corner)
 }
 
 // Response returns the share of the power at f [Hz] that the detector passes.
@@ -117,11 +115,8 @@ func (h Hydrodynamic) site(f, rate float64) site {
 	return s
 }
 
-// moving returns the two-sided spectrum for V = 1, times pi and the weight, at the corner x,
-// and its derivative with respect to ln x.
-func (s site) moving(x float64) (value, slope float64) {
+// moving returns the two-sided spectrum for V = 1, times pi and the weight, at the corner x.
+func (s site) moving(x float64) float64 {
 	u := x + s.elastic
-	den := u*u + s.viscous
-	value = x * s.weight * s.drag / den
-	return value, value * (1 - 2*x*u/den)
+	return x * s.weight * s.drag / (u*u + s.viscous)
 }

@@ -83,6 +83,50 @@ func TestLeakage(t *testing.T) {
 	}
 }
 
+// The jump x_0 - c x_{N-1} between far ends of a relaxation process has the mean square
+// V (1 + c^2); by 1/(N |1-z|^2) it becomes a spectrum. Its slope by central differences.
+func TestJump(t *testing.T) {
+	const n, sigma, step = 100, 0.7, 1e-5
+	at := func(phi float64) (float64, float64) {
+		c := newClosed(math.Exp(phi), 0)
+		return c.jump(c.gap+c.decay*sigma, c.dgap+c.ddecay*sigma, n)
+	}
+	for _, x := range []float64{1e-3, 0.03, 0.5} {
+		decay := math.Exp(-2 * math.Pi * x)
+		want := (1 + decay*decay) / (n * ((1-decay)*(1-decay) + decay*sigma))
+		got, slope := at(math.Log(x))
+		if relative(got, want) > 1e-13 { // rounding
+			t.Errorf("fc dt %g: %g, want %g", x, got, want)
+		}
+		up, _ := at(math.Log(x) + step)
+		down, _ := at(math.Log(x) - step)
+		if want := (up - down) / (2 * step); math.Abs(slope-want) > 1e-9*got { // step^2, rounding/step
+			t.Errorf("fc dt %g: slope %g, want %g", x, slope, want)
+		}
+	}
+}
+
+// Mean and variance of sigma over the blocks of Bias, by a sum over each.
+func TestDesignBlocks(t *testing.T) {
+	b := Design{Rate: 1000, Corner: 20}.blocks()
+	low := 20.0 / 1000 / 1000
+	growth := math.Pow(0.5/low, 1.0/biasBlocks)
+	for _, i := range []int{100, 300, biasBlocks - 30} {
+		from := low * math.Pow(growth, float64(i))
+		const parts = 1000
+		var sum, square float64
+		for j := range parts {
+			s := math.Sin(math.Pi * from * (1 + (growth-1)*(float64(j)+0.5)/parts))
+			sum += 4 * s * s / parts
+			square += 16 * s * s * s * s / parts
+		}
+		// to first order in the width, of 2.5 %
+		if relative(b.Sigma[i], sum) > 1e-3 || relative(b.SigmaVar[i], square-sum*sum) > 1e-2 {
+			t.Errorf("block %d: sigma %g with variance %g, want %g, %g", i, b.Sigma[i], b.SigmaVar[i], sum, square-sum*sum)
+		}
+	}
+}
+
 // The information against the sum over single frequencies, with numerical derivatives of
 // Density: Whittle, Ark. Mat. 2 (1953) 423.
 func TestInformation(t *testing.T) {
