@@ -69,6 +69,9 @@ func (r *Result) Trap(axis, estimate string) (Trap, error) {
 		return Trap{}, &TrapError{axis, "the stiffness is withheld: " + t.Stiffness.Reason, "name an estimate to take instead: " + strings.Join(a.legs(), ", ")}
 	}
 	t.Relative = relativeForce(t.Stiffness, lengthPower, r.lengthU(axis))
+	if s := a.Sensitivity; s != nil && s.Origin == SensitivityDrag && estimate == EstimateAdopted {
+		t.Relative = selfScaledForce(t.Stiffness, s.Used)
+	}
 	if a.Spectrum.Noise.Known() {
 		t.Noise = float64(a.Spectrum.Noise.Value)
 	}
@@ -136,6 +139,23 @@ func relativeForce(q Quantity, power, u float64) float64 {
 	}
 	relative := square(float64(stated.Standard / q.Value))
 	return math.Sqrt(math.Max(0, relative-square(power*u)) + square((power+1)*u))
+}
+
+// selfScaledForce returns the relative standard uncertainty of a force when stiffness and
+// sensitivity both come from the computed drag: the stiffness goes with the drag, the sensitivity with one
+// over its root, so that their errors by the inputs oppose each other. Those by the statistics
+// of the recording add as if they were independent.
+func selfScaledForce(stiffness, sensitivity Quantity) float64 {
+	if stiffness.Statistical == nil || stiffness.Combined == nil || sensitivity.Statistical == nil || sensitivity.Combined == nil {
+		return math.NaN()
+	}
+	parts := func(q Quantity) (statistical, inputs float64) {
+		statistical = float64(q.Statistical.Standard / q.Value)
+		return statistical, math.Sqrt(math.Max(0, square(float64(q.Combined.Standard/q.Value))-square(statistical)))
+	}
+	statK, inputsK := parts(stiffness)
+	statS, inputsS := parts(sensitivity)
+	return math.Sqrt(square(statK) + square(statS) + square(inputsK-inputsS))
 }
 
 // Linear is the range of displacements from the mean over which the calibration saw

@@ -59,6 +59,21 @@ func TestTrapLengthScale(t *testing.T) {
 	near(t, "pixel of y", calib.Float(trapOf(t, r, "").Relative), 0.02, 1e-12)
 }
 
+// With the sensitivity from the drag, F = 2 pi gamma fc sqrt(kT/(gamma D)) x goes with the root of gamma: of a drag known
+// to 4 % the force has 2 %, and not the 4.5 % of stiffness and sensitivity apart.
+func TestTrapSelfScaled(t *testing.T) {
+	r := trapResult()
+	uncertain := func(v, stat, all float64) calib.Quantity {
+		return calib.Quantity{Value: calib.Float(v), Statistical: &calib.Uncertainty{Standard: calib.Float(v * stat)}, Combined: &calib.Uncertainty{Standard: calib.Float(v * all)}}
+	}
+	r.Axes[0].Adopted.Stiffness = uncertain(50e-6, 0, 0.04)
+	r.Axes[0].Sensitivity = &calib.Sensitivity{Used: uncertain(1e-6, 0, 0.02), Unit: "V", Origin: calib.SensitivityDrag}
+	near(t, "inputs alone", calib.Float(trapOf(t, r, "").Relative), 0.02, 1e-9)
+	r.Axes[0].Adopted.Stiffness = uncertain(50e-6, 0.01, 0.01)
+	r.Axes[0].Sensitivity.Used = uncertain(1e-6, 0.005, 0.005)
+	near(t, "statistics alone", calib.Float(trapOf(t, r, "").Relative), math.Hypot(0.01, 0.005), 1e-9)
+}
+
 func TestTrapRefused(t *testing.T) {
 	r := trapResult()
 	for _, c := range []struct{ axis, estimate string }{{"z", ""}, {"x", "guess"}, {"x", calib.LegDisplacement}} {

@@ -216,6 +216,11 @@ func inMetres(axis track.Axis, settings *session.Settings, result *calib.Result)
 			calibrated = float64(s.Value)
 		}
 	}
+	for _, a := range result.Axes {
+		if a.Name == axis.Name && a.Sensitivity != nil && a.Sensitivity.Used.Known() {
+			calibrated = float64(a.Sensitivity.Used.Value)
+		}
+	}
 	scale := calibrated
 	var finding *calib.Finding
 	if stated, ok := settings.Lookup(key, axis.Name); ok {
