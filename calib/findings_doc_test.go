@@ -57,17 +57,3 @@ func findingsReference() string {
 	}
 	return b.String()
 }
-
-// The page names the codes of plan and force too, which explain does not know.
-func TestFindingsPageNamesCodesOfPlanAndForce(t *testing.T) {
-	page, err := os.ReadFile(findingsPage)
-	if err != nil {
-		t.Fatal(err)
-	}
-	for _, code := range []string{calib.CodeSlowRate, calib.CodeBlurred, calib.CodeFloor, calib.CodeCloseSurface,
-		calib.CodeDriftMatters, calib.CodeExactInputs, calib.CodeNoiseDominant} {
-		if !strings.Contains(string(page), "| `"+code+"` |") {
-			t.Errorf("%s does not name %s", findingsPage, code)
-		}
-	}
-}
