@@ -25,6 +25,7 @@ type calibrateOptions struct {
 	force   bool
 	adopt   string
 	quiet   bool
+	drawing drawing
 	flags   settingFlags
 }
 
@@ -62,7 +63,8 @@ func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions)
 		Example: `  beadwell calibrate run7.csv
   beadwell calibrate --diameter '1.02(3) um' --temperature '24.5(5) C' run7.csv
   beadwell calibrate --format json run7.csv > run7.json
-  beadwell calibrate --out results run7.csv run8.csv`,
+  beadwell calibrate --out results run7.csv run8.csv
+  beadwell calibrate --out results --figures pdf --figure-data run7.csv`,
 		Args: someArguments("a track"),
 		RunE: func(cmd *cobra.Command, args []string) error {
 			o.tracks = args
@@ -70,6 +72,9 @@ func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions)
 				return err
 			}
 			if err := o.validate(); err != nil {
+				return err
+			}
+			if err := o.drawing.check(cmd, o.out); err != nil {
 				return err
 			}
 			o.tracks = withoutLists(o.tracks)
@@ -83,6 +88,7 @@ func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions)
 	flags.BoolVar(&o.force, "force", false, "with --out: replace files of another recording")
 	flags.StringVar(&o.adopt, "adopt", "", "adopt this route alone, also when the two disagree: `drag|amplitude`")
 	flags.BoolVarP(&o.quiet, "quiet", "q", false, "no progress and no warnings on standard error")
+	addDrawingFlags(cmd, &o.drawing)
 	addSettingFlags(flags, &o.flags)
 	completeSettings(cmd)
 	completeWords(cmd, "format", formats...)
@@ -142,6 +148,7 @@ func runCalibrate(ctx context.Context, a *app, o calibrateOptions) error {
 		return err
 	}
 	defer writer.close()
+	writer.files = o.drawing.outputs
 	src := &source{app: a, file: o.session, flags: &o.flags}
 	var outcomes []outcome
 	var unwritten []error

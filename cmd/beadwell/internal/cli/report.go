@@ -19,6 +19,8 @@ type reportOptions struct {
 	format string
 	out    string
 	force  bool
+
+	drawing drawing
 }
 
 func (a *app) reportCommand(run func(context.Context, *app, reportOptions) error) *cobra.Command {
@@ -42,12 +44,16 @@ standard input. The exit status is that of the calibration.`,
 			if o.force && o.out == "" {
 				return usageError("leave it out, or add --out FOLDER", "--force has no effect without --out")
 			}
+			if err := o.drawing.check(cmd, o.out); err != nil {
+				return err
+			}
 			return run(cmd.Context(), a, o)
 		},
 	}
 	cmd.Flags().StringVar(&o.format, "format", "text", "form of the result on standard output: `text|json|csv`")
 	cmd.Flags().StringVar(&o.out, "out", "", "also write text, JSON, CSV, report and figures into `FOLDER`")
 	cmd.Flags().BoolVar(&o.force, "force", false, "with --out: replace files of another recording")
+	addDrawingFlags(cmd, &o.drawing)
 	completeWords(cmd, "format", formats...)
 	completeEndings(cmd, "json")
 	return cmd
@@ -63,6 +69,7 @@ func runReport(ctx context.Context, a *app, o reportOptions) error {
 		return err
 	}
 	defer writer.close()
+	writer.files = o.drawing.outputs
 	outcomes := []outcome{{path: result.Input.Name, result: result}}
 	unwritten := writer.writeAll(ctx, outcomes)
 	if err := a.printOutcomes(outcomes, calibrateOptions{format: o.format, quiet: true}); err != nil {

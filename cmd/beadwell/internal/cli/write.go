@@ -20,6 +20,7 @@ type resultWriter struct {
 	parent string
 	force  bool
 	names  map[string]string // folder of each track
+	files  func(context.Context, *calib.Result) ([]file, error)
 }
 
 // The names of the files; figures have names of their own.
@@ -44,7 +45,7 @@ func newResultWriter(out string, force bool, tracks []string) (*resultWriter, er
 	if err != nil {
 		return nil, err
 	}
-	w := &resultWriter{root: root, parent: out, force: force, names: map[string]string{}}
+	w := &resultWriter{root: root, parent: out, force: force, names: map[string]string{}, files: outputs}
 	for i, path := range tracks {
 		w.names[path] = names[i]
 	}
@@ -91,7 +92,7 @@ func (w *resultWriter) write(ctx context.Context, path string, r *calib.Result) 
 		name += "-" + safeName(r.Input.Bead)
 	}
 	folder := w.folder(name)
-	files, err := outputs(ctx, r)
+	files, err := w.files(ctx, r)
 	if err != nil {
 		return err
 	}
@@ -138,8 +139,12 @@ func (f outputFolder) belongsTo(r *calib.Result) bool {
 	return err == nil && stored.Program.Name == r.Program.Name && stored.Input.SHA256 == r.Input.SHA256 && stored.Input.Bead == r.Input.Bead
 }
 
-// outputs makes the content of every file from the result alone.
-func outputs(ctx context.Context, r *calib.Result) ([]file, error) {
+// outputs makes the content of every file from the result alone, with figures in the
+// default forms.
+func outputs(ctx context.Context, r *calib.Result) ([]file, error) { return drawing{}.outputs(ctx, r) }
+
+// reports makes the content of every file but the figures.
+func reports(r *calib.Result) ([]file, error) {
 	var stored, text, table, page bytes.Buffer
 	if err := report.JSON(&stored, r); err != nil {
 		return nil, err
@@ -153,9 +158,7 @@ func outputs(ctx context.Context, r *calib.Result) ([]file, error) {
 	if err := report.HTML(&page, r); err != nil {
 		return nil, err
 	}
-	files := []file{{resultJSON, stored.Bytes()}, {resultText, text.Bytes()}, {resultCSV, table.Bytes()}, {reportHTML, page.Bytes()}}
-	drawn, err := figureFiles(ctx, r, figure.SVG, figure.PNG)
-	return append(files, drawn...), err
+	return []file{{resultJSON, stored.Bytes()}, {resultText, text.Bytes()}, {resultCSV, table.Bytes()}, {reportHTML, page.Bytes()}}, nil
 }
 
 // figureFiles draws every figure in each of the formats.
