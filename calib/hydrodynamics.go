@@ -62,6 +62,14 @@ func (w *work) settleDrag() error {
 		choice = s.Word
 	}
 	diode, hasDiode := w.hydrodynamic(false)
+	if w.record.Missing > 0 && (hasDiode || choice == FrequencyDependentDrag) {
+		key := "fit.drag"
+		if hasDiode {
+			key = "detector.f3db"
+		}
+		return &SettingError{Key: key, Axis: w.axisName, Problem: fmt.Sprintf("cannot be used where samples are missing, and %d are", w.record.Missing),
+			Remedy: "leave it out and restrict the fit with --band, or record without gaps"}
+	}
 	if hasDiode {
 		if err := w.refit(diode); err != nil {
 			return err
