@@ -29,7 +29,7 @@ func survival(chi2 float64, dof int) Float {
 
 // routes is the likelihood-ratio test that the measured drag is the computed one: twice
 // the log-likelihood lost by fixing ln fc + ln V, or by the prior that allows for the
-// uncertainty of the inputs (Wilks, Ann. Math. Stat. 9 (1938) 60).
+// uncertainty of the inputs (Wilks, Ann. Math. Stat. 9 (1938) 60; docs/method.md, Eq. 41).
 func (w *work) routes() Test {
 	if w.fitErr != nil || math.IsNaN(w.legs.value[spectrumLeg]) && math.IsNaN(w.legs.value[amplitudeLeg]) {
 		return noTest("the recording does not determine the drag")

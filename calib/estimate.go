@@ -14,7 +14,7 @@ import (
 
 // hopeless is the Cramer-Rao bound of a logarithm above which a leg is withheld: beyond
 // it the likelihood is so far from normal that neither the estimate nor its interval
-// means what it says.
+// means what it says (docs/method.md, Eq. 42).
 const hopeless = 0.35
 
 // smallEnough is the relative uncertainty below which an interval is taken as
@@ -105,7 +105,7 @@ func (w *work) profile(weights relaxation.Parameters, data float64) relaxation.O
 const bartlettExcess = 3
 
 // bartlett returns the factor by which profile-likelihood intervals of a short record
-// are widened (Bartlett, Proc. R. Soc. A 160 (1937) 268).
+// are widened (Bartlett, Proc. R. Soc. A 160 (1937) 268; docs/method.md, Eq. 22).
 func (w *work) bartlett() float64 {
 	at := w.pooled.maximum.At
 	if w.poolErr != nil && w.fitErr == nil {

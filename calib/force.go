@@ -128,7 +128,8 @@ func (r *Result) lengthU(axis string) float64 {
 }
 
 // relativeForce returns the relative standard uncertainty of stiffness times
-// displacement when both depend on a length scale of relative uncertainty u.
+// displacement when both depend on a length scale of relative uncertainty u (docs/method.md,
+// Eq. 51).
 func relativeForce(q Quantity, power, u float64) float64 {
 	stated := q.Combined
 	if stated == nil {
@@ -144,7 +145,7 @@ func relativeForce(q Quantity, power, u float64) float64 {
 // selfScaledForce returns the relative standard uncertainty of a force when stiffness and
 // sensitivity both come from the computed drag: the stiffness goes with the drag, the sensitivity with one
 // over its root, so that their errors by the inputs oppose each other. Those by the statistics
-// of the recording add as if they were independent.
+// of the recording add as if they were independent (docs/method.md, Eq. 53).
 func selfScaledForce(stiffness, sensitivity Quantity) float64 {
 	if stiffness.Statistical == nil || stiffness.Combined == nil || sensitivity.Statistical == nil || sensitivity.Combined == nil {
 		return math.NaN()

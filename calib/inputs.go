@@ -213,7 +213,7 @@ func (p *physics) withLength(name, unit string, value, u float64) {
 }
 
 // systematics returns the covariance of the errors of ln gamma (e_g) and of ln kT less
-// twice the logarithm of the length scale (e_a).
+// twice the logarithm of the length scale (e_a); docs/method.md, Eq. 35.
 func (p *physics) systematics() (gg, ga, aa float64) {
 	for _, i := range p.influences {
 		a := i.energy - 2*i.length

@@ -7,7 +7,8 @@ import (
 )
 
 // pooled is the fit that knows the computed drag: the prior says that ln fc + ln V is
-// what Stokes, wall and kT make it, within the uncertainty of the inputs.
+// what Stokes, wall and kT make it, within the uncertainty of the inputs (docs/method.md,
+// Eqs 35 to 40).
 type pooled struct {
 	problem         relaxation.Problem
 	maximum         relaxation.Maximum

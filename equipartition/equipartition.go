@@ -18,7 +18,7 @@
 // quadratic form in the autocovariance of the process (package relaxation,
 // SampleVariance). The relaxation time in S and L, and q where it was fitted, come from a fit of
 // the same record; what they share with s2 is counted by the covariance of an efficient
-// estimator with any other one (see Estimate).
+// estimator with any other one (see Estimate). docs/method.md, Eqs 26 to 30.
 package equipartition
 
 import (

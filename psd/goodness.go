@@ -37,7 +37,7 @@ const mostPoints = 60
 
 // goodness groups the blocks of a fit. Each group's mean ratio of data to model is
 // gamma distributed with its weight as shape; its cube root is turned into a normal
-// deviate, and the squares are added. As many degrees of freedom as parameters were
+// deviate, and the squares are added (docs/method.md, Eqs 24 and 25). As many degrees of freedom as parameters were
 // fitted are taken off.
 func goodness(f *Fit, r *Record) Goodness {
 	g := Goodness{Points: group(f, f.leakage(r))}

@@ -16,7 +16,7 @@ import (
 //	P(f) = (D/pi^2) Re g / [(fc + f Im g - f^2/f_m)^2 + (f Re g)^2],  D = 2 pi fc V,
 //
 // with g = gamma(f)/gamma(0), fc = kappa/(2 pi gamma(0)) and V = kT/kappa
-// (Berg-Sorensen and Flyvbjerg, Rev. Sci. Instrum. 75 (2004) 594). By equipartition
+// (Berg-Sorensen and Flyvbjerg, Rev. Sci. Instrum. 75 (2004) 594; docs/method.md, Eq. 43). By equipartition
 // its integral is V as long as Drag is the response of a causal system.
 //
 // A photodiode multiplies it by alpha^2 + (1 - alpha^2)/(1 + (f/f3dB)^2) (Berg-Sorensen

@@ -24,7 +24,7 @@ const halfGap = 2
 //
 // For a Gaussian record the ratio of the periodogram to the spectrum has an exponential
 // distribution, so that the largest of n values exceeds ln(n/p) with probability p
-// (Fisher, Proc. R. Soc. A 125 (1929) 54). Around a removed line the search goes on
+// (Fisher, Proc. R. Soc. A 125 (1929) 54; docs/method.md, Eq. 23). Around a removed line the search goes on
 // until what is left, of a line that wanders, is below that limit too; those frequencies
 // are left out of the fit.
 func (r *Record) RemoveLines(model func(k int) float64) bool {

@@ -88,7 +88,7 @@ func (d Frequency) Nu() float64 {
 // penetration depth lies between R and h. PointForce:
 // B = F (1 + alpha + alpha^2/3)^2/g_bulk, F the reaction of the wall, which reaches
 // bulk and then the added masses (3/16)(R/h)^3 and (3/8)(R/h)^3 of Lamb, Hydrodynamics, Sect. 99
-// (parallel, perpendicular).
+// (parallel, perpendicular). docs/method.md, Eqs 44 to 47.
 func (d Frequency) Factor(f float64) complex128 {
 	if f < 0 {
 		return cmplx.Conj(d.Factor(-f))

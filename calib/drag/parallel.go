@@ -20,7 +20,7 @@ const (
 //
 // It is the exact solution of O'Neill, Mathematika 11 (1964) 67, in the form of
 // Goldman, Cox and Brenner, Chem. Eng. Sci. 22 (1967) 637, up to h/R = 20, and Faxen's
-// series beyond. Its error is below 1e-6 for h/R > 1.001, and below 1e-5 down to
+// series beyond (docs/method.md, Eq. 48). Its error is below 1e-6 for h/R > 1.001, and below 1e-5 down to
 // contact, where the logarithmic asymptote of Chaoui and Feuillebois, Q. J. Mech. Appl.
 // Math. 56 (2003) 381 takes over (Goldman, Cox and Brenner print 0.9588 for its constant).
 // It returns an error if ratio is not above 1.

@@ -13,7 +13,7 @@
 //
 //	n!/N sum_k rho(k)^n,
 //
-// the sum running over all lags of both signs (Mehler's formula; for instance
+// the sum running over all lags of both signs (docs/method.md, Eq. 49; Mehler's formula; for instance
 // Taqqu, Z. Wahrscheinlichkeitstheorie 31 (1975) 287). The mean, n = 1, has the
 // fewest effective samples; the variance (n = 2), skewness (n = 3) and kurtosis
 // (n = 4) decorrelate n times as fast.

@@ -17,7 +17,7 @@
 // with the covariance that its lags really have. For a Gaussian process
 // the covariance of two products of increments is a sum of products of
 // autocovariances (Isserlis, Biometrika 12 (1918) 134), and for this one the sum over time is
-// elementary (see covariance.go). Neighbouring lags are almost the same statistic: the
+// elementary (see covariance.go; docs/method.md, Eqs 31 to 33). Neighbouring lags are almost the same statistic: the
 // correlation matrix gets ridge = 1e-9 on its diagonal, far above rounding and far below
 // any eigenvalue that carries information.
 package msd

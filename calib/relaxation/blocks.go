@@ -29,7 +29,8 @@ const blockWidth = 0.015
 // The zero frequency is always left out.
 //
 // The straight line takes 6/(pi^2 k^2) of the two real degrees of freedom at the
-// k-th frequency (the squared sine coefficients of a ramp), which Weight accounts for.
+// k-th frequency (the squared sine coefficients of a ramp), which Weight accounts for
+// (docs/method.md, Eq. 13).
 func NewBlocks(power []float64, n int, line bool, skip func(k int) bool) Blocks {
 	b := Blocks{Samples: n}
 	last := n / 2

@@ -23,7 +23,8 @@
 //
 //	P(f) = dt [V B (1-c^2)/(1 + c^2 - 2 c cos(2 pi f dt)) + V (S-B) + q],
 //
-// aliasing and blur included exactly. The one-sided spectrum is twice that.
+// aliasing and blur included exactly. The one-sided spectrum is twice that. (docs/method.md,
+// Eqs 4 to 11.)
 //
 // # Likelihoods
 //
@@ -34,7 +35,8 @@
 // frequencies (Whittle, Ark. Mat. 2 (1953) 423), times the factor that opens the
 // ring. That factor depends on the filtered states at the two ends only and is
 // known in closed form (see ends.go), so that Spectral too is exact up to terms of
-// exp(-2 pi fc T) and has none of the leakage bias of the plain Whittle form.
+// exp(-2 pi fc T) and has none of the leakage bias of the plain Whittle form. (docs/method.md,
+// Eqs 12 to 18.)
 //
 // Both are restricted likelihoods: the mean and, unless asked otherwise, a linear
 // drift are removed together with the degrees of freedom that they take.

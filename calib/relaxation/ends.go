@@ -13,7 +13,7 @@ import "math"
 // the line. Up to exp(-2 pi fc T) that posterior is the product of the two
 // stationary filtered states, Gaussian with the variance F and the means m_0 and m_N
 // that exponential averages from either end give, and the integral is elementary.
-// The derivation is ours; the idea that a boundary term turns the Whittle form into
+// The derivation is ours (docs/method.md, Eqs 14 to 17); the idea that a boundary term turns the Whittle form into
 // the Gaussian likelihood is that of Subba Rao and Yang, Ann. Stat. 49 (2021) 2762.
 type ends struct {
 	head, tail []float64 // first samples in order, last samples in reverse order

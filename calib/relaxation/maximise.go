@@ -231,7 +231,8 @@ func (m Matrix) Form(u, v Parameters) float64 {
 // Covariance returns the inverse of information plus prior precision within the
 // directions, as a covariance over all three parameters (zero outside the
 // directions), and the part of it that comes from the data: with C the inverse and
-// F the information of the data, that part is C F C, and the rest is due to the priors.
+// F the information of the data, that part is C F C, and the rest is due to the priors
+// (docs/method.md, Eq. 20).
 func (pr Problem) Covariance(info Matrix) (total, data Matrix, err error) {
 	u := pr.directions()
 	n := len(u)

@@ -37,7 +37,7 @@ func (o Offsets) Widened(sd float64) Offsets {
 // the information: the values at which twice the profiled log-likelihood falls by
 // the squared normal quantile. Unlike estimate plus or minus z sd they do not
 // depend on the scale in which the parameter is written, and they hold their
-// coverage for short records.
+// coverage for short records (docs/method.md, Eq. 21).
 func (pr Problem) Profile(m Maximum, weights Parameters, sd float64) Offsets {
 	return Offsets{
 		Low68: pr.side(m, weights, sd, -1, 1), High68: pr.side(m, weights, sd, 1, 1),
