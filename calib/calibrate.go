@@ -82,6 +82,7 @@ func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings,
 	}
 	r.examine(rec, works)
 	r.judge(works, opt)
+	r.findCause(works)
 	r.collectFindings(set, works)
 	return r, nil
 }

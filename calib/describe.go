@@ -33,7 +33,7 @@ func (w *work) describeDrag() {
 	factor, u := p.wall.Factor, 0.0
 	for _, in := range p.influences {
 		switch in.name {
-		case "height", "depth", "wall model":
+		case "height", "depth", wallModel:
 			u = math.Hypot(u, in.drag)
 		case "bead diameter":
 			u = math.Hypot(u, p.wall.LogSlopeRadius*in.u/in.base)

@@ -5,10 +5,11 @@ import "beadwell/calib/health"
 // Explanation is the long form of the code of a finding.
 type Explanation struct{ Code, Title, Long string }
 
-// Explanations lists all codes: those of the calibration first, then those of plans and forces, and of the
-// checks of the recording.
+// Explanations lists all codes: those of the calibration first, then the causes of a
+// disagreement, those of plans and forces, and of the checks of the recording.
 func Explanations() []Explanation {
-	all := append(append([]Explanation(nil), explanations...), UseExplanations()...)
+	all := append(append([]Explanation(nil), explanations...), causeExplanations...)
+	all = append(all, UseExplanations()...)
 	for _, e := range health.Codes() {
 		all = append(all, Explanation{e.Code, e.Title, e.Long})
 	}

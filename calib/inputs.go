@@ -38,6 +38,8 @@ type physics struct {
 	height      float64 // m, +Inf when far
 	beadDensity float64 // kg/m3; NaN when not stated
 	parallel    bool
+	fluid       medium.Fluid // zero when the viscosity was stated
+	chamber     drag.Chamber
 }
 
 // number returns a quantity setting for an axis; ok is false when it is not set.
@@ -145,7 +147,7 @@ func (p *physics) setLiquid(set *session.Settings, t kelvin) error {
 	if err != nil {
 		return &SettingError{Key: "medium.temperature", Problem: err.Error()}
 	}
-	p.viscosity, p.density = prop.Viscosity, prop.Density
+	p.viscosity, p.density, p.fluid = prop.Viscosity, prop.Density, fluid
 	p.medium.Fluid, p.medium.Source = fluidText(text), prop.Source
 	u := prop.ViscosityU
 	for i := range t.sources {
@@ -191,7 +193,7 @@ func (p *physics) setWall(set *session.Settings, axis string, diameter session.S
 		return &SettingError{Key: "chamber.height", Where: height.Where, Problem: err.Error(),
 			Remedy: "give the height of the bead's centre above the nearer surface; it must exceed the radius"}
 	}
-	p.wall = w
+	p.wall, p.chamber = w, c
 	d := diameter.Value
 	p.influences = append(p.influences, influence{name: "bead diameter", value: d.SI, unit: "m", u: d.U, base: d.SI, drag: (1 + w.LogSlopeRadius) * d.U / d.SI})
 	if hasHeight {
@@ -202,7 +204,7 @@ func (p *physics) setWall(set *session.Settings, axis string, diameter session.S
 		p.influences = append(p.influences, influence{name: "depth", value: c.Depth, unit: "m", u: depth.Value.U, base: c.Depth, drag: w.LogSlopeDepth * depth.Value.U / c.Depth})
 	}
 	if w.FactorU > 0 {
-		p.influences = append(p.influences, influence{name: "wall model", value: w.Factor, unit: "1", u: w.FactorU * w.Factor, base: w.Factor, drag: w.FactorU})
+		p.influences = append(p.influences, influence{name: wallModel, value: w.Factor, unit: "1", u: w.FactorU * w.Factor, base: w.Factor, drag: w.FactorU})
 	}
 	return nil
 }

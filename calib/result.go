@@ -12,19 +12,20 @@ const SchemaVersion = "beadwell-result/1"
 // made from, and the contract of the JSON file. It is a plain value that is
 // stored and read back without loss. All numbers are SI.
 type Result struct {
-	Schema    string    `json:"schema"`
-	Program   Program   `json:"program"`
-	Created   string    `json:"created,omitempty"` // RFC 3339; the only field that depends on the clock
-	Input     Input     `json:"input"`
-	ReadAs    ReadAs    `json:"read_as"`
-	Settings  []Setting `json:"settings"`
-	Recording Recording `json:"recording"`
-	Medium    Medium    `json:"medium"`
-	Bead      Bead      `json:"bead"`
-	Axes      []Axis    `json:"axes"`
-	Verdict   Verdict   `json:"verdict"`
-	Findings  []Finding `json:"findings"` // never null
-	Checks    []Check   `json:"checks"`   // of the recording, those that found nothing too
+	Schema    string     `json:"schema"`
+	Program   Program    `json:"program"`
+	Created   string     `json:"created,omitempty"` // RFC 3339; the only field that depends on the clock
+	Input     Input      `json:"input"`
+	ReadAs    ReadAs     `json:"read_as"`
+	Settings  []Setting  `json:"settings"`
+	Recording Recording  `json:"recording"`
+	Medium    Medium     `json:"medium"`
+	Bead      Bead       `json:"bead"`
+	Axes      []Axis     `json:"axes"`
+	Verdict   Verdict    `json:"verdict"`
+	Diagnosis *Diagnosis `json:"diagnosis,omitempty"` // single causes that would reconcile the routes; only when they disagree
+	Findings  []Finding  `json:"findings"`            // never null
+	Checks    []Check    `json:"checks"`              // of the recording, those that found nothing too
 }
 
 // Program says what made the result.

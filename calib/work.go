@@ -192,6 +192,7 @@ func (w *work) fitOptions() psd.Options {
 var (
 	alongCorner   = relaxation.Parameters{1, 0, 0}
 	alongVariance = relaxation.Parameters{0, 1, 0}
+	alongNoise    = relaxation.Parameters{0, 0, 1}
 	alongDrag     = relaxation.Parameters{1, 1, 0} // ln fc + ln V = ln(D/2 pi)
 )
 
