@@ -60,10 +60,6 @@ func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings,
 	if opt.Adopt != "" && opt.Adopt != RouteDrag && opt.Adopt != RouteAmplitude {
 		return nil, &SettingError{Key: "adopt", Problem: fmt.Sprintf("%q is neither %q nor %q", opt.Adopt, RouteDrag, RouteAmplitude)}
 	}
-	if role, ok := set.Lookup("role", ""); ok && role.Word != "trapped" && role.Word != "" {
-		return nil, &SettingError{Key: "role", Where: role.Where, Problem: fmt.Sprintf("%q is not a recording that can be calibrated on its own", role.Word),
-			Remedy: "calibrate recordings of the role trapped"}
-	}
 	works := make([]*work, len(rec.Axes))
 	for i := range rec.Axes {
 		w, err := newWork(rec, i, set, opt)
@@ -71,6 +67,17 @@ func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings,
 			return nil, err
 		}
 		works[i] = w
+	}
+	role := roleOf(set)
+	switch role {
+	case RoleTrapped:
+	case RoleDriven:
+		if err := assignDrive(rec, set, works); err != nil {
+			return nil, err
+		}
+	default:
+		return nil, &SettingError{Key: "role", Problem: fmt.Sprintf("%q is not a recording that can be calibrated on its own", role),
+			Remedy: "calibrate recordings of the role trapped or driven"}
 	}
 	if err := runAll(ctx, works); err != nil {
 		return nil, err

@@ -34,7 +34,13 @@ func (r *Result) examine(rec *track.Recording, works []*work) {
 			a.CornerSD, _ = w.fit.SD(alongCorner)
 			a.GoodnessP = w.fit.Goodness.PValue
 		}
+		if w.drive != nil {
+			a.X = w.undriven()
+		}
 		for _, l := range w.record.Lines {
+			if w.drive != nil && l.Frequency == w.drive.frequency {
+				continue
+			}
 			a.Lines = append(a.Lines, health.Line{Frequency: l.Frequency, Amplitude: l.Amplitude})
 		}
 		in.Axes = append(in.Axes, a)

@@ -25,6 +25,7 @@ func (w *work) describe() {
 	w.describeEquipartition()
 	w.describeDisplacement()
 	x.Trace = w.trace()
+	w.describeDriven()
 	w.describeSensitivity()
 }
 

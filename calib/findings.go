@@ -20,7 +20,7 @@ func (w *work) findings() []Finding {
 	var out []Finding
 	nan := Float(math.NaN())
 	for leg, reason := range w.legs.reason {
-		if reason == "" || reason == selfScaled || leg > displacementLeg {
+		if reason == "" || reason == selfScaled || reason == byDrive || leg > displacementLeg {
 			continue
 		}
 		out = append(out, Finding{Code: CodeWithheld, Severity: Note, Axis: w.axisName, Text: fmt.Sprintf("The estimate %q is withheld: %s.", legNames[leg], reason),
@@ -32,6 +32,9 @@ func (w *work) findings() []Finding {
 			Remedy: `measure the noise with a stuck bead and state it with --noise "4(1) nm"`, Value: nan, Limit: nan})
 	}
 	for _, l := range w.record.Lines {
+		if w.drive != nil && l.Frequency == w.drive.frequency {
+			continue
+		}
 		out = append(out, Finding{Code: CodeLine, Severity: Note, Axis: w.axisName,
 			Text:   fmt.Sprintf("A narrow line at %.6g Hz with an amplitude of %.3g nm was removed.", l.Frequency, l.Amplitude*1e9),
 			Remedy: "look for mains pickup or a vibration", Value: Float(l.Frequency), Limit: nan, Unit: "Hz"})

@@ -107,7 +107,7 @@ type Axis struct {
 	Wall          Wall                   `json:"wall"`
 	Drag          Quantity               `json:"drag"` // computed, Stokes times wall factor, N s/m
 	Adopted       Adopted                `json:"adopted"`
-	Estimates     []Estimate             `json:"estimates"`  // always in the order of the Leg constants
+	Estimates     []Estimate             `json:"estimates"`  // in the order of the Leg constants, those of a moving stage last
 	Covariance    Covariance             `json:"covariance"` // of the logarithms of the estimates
 	CrossCheck    CrossCheck             `json:"cross_check"`
 	MeasuredDrag  Quantity               `json:"measured_drag"` // kT / D of the spectrum, N s/m
@@ -116,6 +116,7 @@ type Axis struct {
 	Equipartition Equipartition          `json:"equipartition"`
 	Displacement  MeanSquareDisplacement `json:"mean_square_displacement"`
 	Trace         Trace                  `json:"trace"`
+	Driven        *Driven                `json:"driven,omitempty"`      // of the axis that follows a moving stage
 	Sensitivity   *Sensitivity           `json:"sensitivity,omitempty"` // of a recording in detector units
 }
 
@@ -168,6 +169,7 @@ type CrossCheck struct {
 	Equality   Test   `json:"equality"`
 	Routes     Test   `json:"routes"`
 	Amplitudes Test   `json:"amplitudes"`
+	Driven     *Test  `json:"driven,omitempty"` // driven estimate against drag leg and amplitude of the spectrum
 	Text       string `json:"text"`
 }
 

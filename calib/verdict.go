@@ -17,13 +17,20 @@ func (r *Result) judge(works []*work, opt Options) {
 	lowest, tested := 1.0, 0
 	var worst *work
 	for _, w := range works {
-		p := float64(w.axis.CrossCheck.Equality.PValueCombined)
-		if math.IsNaN(p) {
-			continue
+		c := w.axis.CrossCheck
+		tests := []Test{c.Equality}
+		if c.Driven != nil {
+			tests = append(tests, *c.Driven)
 		}
-		tested++
-		if p <= lowest {
-			lowest, worst = p, w
+		for _, t := range tests {
+			p := float64(t.PValueCombined)
+			if math.IsNaN(p) {
+				continue
+			}
+			tested++
+			if p <= lowest {
+				lowest, worst = p, w
+			}
 		}
 	}
 	v := &r.Verdict

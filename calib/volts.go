@@ -16,7 +16,7 @@ import (
 type Sensitivity struct {
 	Used     Quantity `json:"used"`      // m per unit of the detector, by which the positions were scaled
 	Unit     string   `json:"unit"`      // of the detector: "V", "counts", "1"; volts for V, mV and uV
-	Origin   string   `json:"origin"`    // "stated", "computed drag"
+	Origin   string   `json:"origin"`    // "stated", "computed drag", "driven stage"
 	FromDrag Quantity `json:"from_drag"` // what diffusion and computed drag make it, m per unit
 }
 
@@ -24,6 +24,7 @@ type Sensitivity struct {
 const (
 	SensitivityStated = "stated"
 	SensitivityDrag   = "computed drag"
+	SensitivityDriven = "driven stage"
 )
 
 // selfScaled is why the amplitude route is no independent leg of a recording in detector
@@ -122,6 +123,8 @@ func (w *work) describeSensitivity() {
 	case SensitivityDrag:
 		s.Used = s.FromDrag
 		w.describeSelfScaled()
+	case SensitivityDriven:
+		s.Used = w.drivenSensitivity(unit)
 	default:
 		s.Used = input(w.perUnit, w.perUnitU, unit)
 	}

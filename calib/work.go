@@ -32,6 +32,8 @@ type work struct {
 	// perUnit is the length of the recorded unit [m], perUnitU its stated standard uncertainty.
 	perUnit, perUnitU float64
 	sensitivityOrigin string
+	drive             *drive // of the axis that follows a moving stage; nil for others
+	reply             response
 
 	record    *psd.Record
 	fit       *psd.Fit
@@ -132,11 +134,7 @@ func (w *work) setNoise() {
 
 // run makes all estimates of the axis.
 func (w *work) run(ctx context.Context) error {
-	fit := w.fitPositions
-	if w.unscaled {
-		fit = w.scalePositions
-	}
-	if err := fit(); err != nil {
+	if err := w.fitInMetres(); err != nil {
 		return err
 	}
 	if err := ctx.Err(); err != nil {
@@ -147,15 +145,39 @@ func (w *work) run(ctx context.Context) error {
 			"check the unit, the diameter and the exposure, and that the bead was trapped; state the noise if it is known")
 	}
 	w.estimate()
-	if w.takesDrag() {
-		w.withholdAmplitude()
-		w.opt.Adopt = RouteDrag
-	} else {
-		w.compare()
-	}
-	w.adopt()
+	w.settle()
 	w.describe()
 	return ctx.Err()
+}
+
+// fitInMetres fits the positions in metres, whatever their length scale comes from.
+func (w *work) fitInMetres() error {
+	switch {
+	case w.unscaled && w.drive != nil:
+		return w.scaleByDrive()
+	case w.unscaled:
+		return w.scalePositions()
+	}
+	if err := w.fitPositions(); err != nil || w.drive == nil {
+		return err
+	}
+	return w.answer()
+}
+
+// settle compares the estimates and adopts one stiffness.
+func (w *work) settle() {
+	switch {
+	case w.takesDrag():
+		w.withholdAmplitude()
+		w.opt.Adopt = RouteDrag
+		w.adopt()
+	case w.scaledByDrive():
+		w.withholdScaled()
+		w.adoptDriven()
+	default:
+		w.compare()
+		w.adopt()
+	}
 }
 
 // fitPositions fits the spectrum of the positions, in their unit.
@@ -163,6 +185,11 @@ func (w *work) fitPositions() error {
 	var err error
 	if w.record, err = psd.Prepare(w.source.Values, w.rate); err != nil {
 		return w.dataError(err, "record longer, or check the columns")
+	}
+	if w.drive != nil {
+		if err := w.takeOutDrive(); err != nil {
+			return err
+		}
 	}
 	w.fit, w.fitErr = psd.Estimate(w.record, w.fitOptions())
 	if w.fitErr != nil && !errors.Is(w.fitErr, relaxation.ErrNoMaximum) {
