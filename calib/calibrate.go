@@ -30,6 +30,14 @@ type Options struct {
 	Program Program
 }
 
+// choices returns what of the options a result records; nil when nothing was chosen.
+func (o Options) choices() *Choices {
+	if o.Adopt == "" {
+		return nil
+	}
+	return &Choices{Adopt: o.Adopt}
+}
+
 // DataError says that a recording cannot carry a calibration.
 type DataError struct {
 	Name    string // of the recording
@@ -82,7 +90,7 @@ func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings,
 	if err := runAll(ctx, works); err != nil {
 		return nil, err
 	}
-	r := &Result{Schema: SchemaVersion, Program: opt.Program, Settings: listSettings(set), Findings: []Finding{}}
+	r := &Result{Schema: SchemaVersion, Program: opt.Program, Settings: ListSettings(set), Choices: opt.choices(), Findings: []Finding{}}
 	r.describe(rec, works)
 	for _, w := range works {
 		r.Axes = append(r.Axes, w.axis)

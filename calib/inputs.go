@@ -264,8 +264,8 @@ func (e *SettingError) Error() string {
 	return text
 }
 
-// listSettings turns the settings in force into the form of a result.
-func listSettings(set *session.Settings) []Setting {
+// ListSettings returns the settings in force in the form of a result.
+func ListSettings(set *session.Settings) []Setting {
 	var out []Setting
 	for _, s := range set.All() {
 		e := Setting{Key: s.Key, Axis: s.Axis, Text: s.Text, Value: Float(math.NaN()), StandardUncertainty: Float(math.NaN()),

@@ -120,7 +120,7 @@ func Forecast(set *session.Settings, opt PlanOptions) (*Plan, error) {
 	if err != nil {
 		return nil, err
 	}
-	p := &Plan{Schema: PlanVersion, Program: opt.Program, Settings: listSettings(set), Axis: opt.Axis, Findings: []Finding{}}
+	p := &Plan{Schema: PlanVersion, Program: opt.Program, Settings: ListSettings(set), Axis: opt.Axis, Findings: []Finding{}}
 	f.describe(p)
 	p.Floor = f.floor()
 	p.Times = f.times()

@@ -18,6 +18,7 @@ type Result struct {
 	Input     Input      `json:"input"`
 	ReadAs    ReadAs     `json:"read_as"`
 	Settings  []Setting  `json:"settings"`
+	Choices   *Choices   `json:"choices,omitempty"` // that are no settings; absent when none was made
 	Recording Recording  `json:"recording"`
 	Medium    Medium     `json:"medium"`
 	Bead      Bead       `json:"bead"`
@@ -69,6 +70,11 @@ type Setting struct {
 	Origin              string `json:"origin"`               // "flag", "track list", "session file", "header", "default"
 	Where               string `json:"where,omitempty"`      // e.g. "session.toml:4:1"
 	Assumed             bool   `json:"assumed,omitempty"`    // a default that matters
+}
+
+// Choices are what the user asked of the calibration beside the settings.
+type Choices struct {
+	Adopt string `json:"adopt,omitempty"` // the route to adopt, "drag" or "amplitude", whatever the cross-check says
 }
 
 // Recording describes the samples that were analysed.

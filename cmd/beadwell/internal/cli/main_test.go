@@ -56,7 +56,7 @@ func invented(ctx context.Context, r *track.Recording, set *session.Settings, op
 		return nil, &session.Error{Key: "bead.diameter", Problem: "is not given, and has no default", Hint: "state it: --diameter '1.02(3) um'"}
 	}
 	result := &calib.Result{
-		Schema: calib.SchemaVersion, Program: opt.Program,
+		Schema: calib.SchemaVersion, Program: opt.Program, Settings: calib.ListSettings(set),
 		Input:  calib.Input{Name: r.Name, Bead: r.Bead, Size: r.Size, SHA256: r.SHA256},
 		ReadAs: calib.ReadAs{Line: r.ReadAs.String()},
 		Bead:   calib.Bead{Diameter: calib.Exact(diameter.Value.SI, "m"), Height: calib.Withheld("m", "far")},
@@ -67,6 +67,9 @@ func invented(ctx context.Context, r *track.Recording, set *session.Settings, op
 	if strings.Contains(r.Name, "doubt") {
 		result.Verdict = calib.Verdict{Status: calib.Inconsistent, Text: "the routes disagree", FamilyWiseP: 1e-4}
 		result.Findings = []calib.Finding{{Code: "routes-differ", Severity: calib.Bad, Text: "by 30 %", Remedy: "look at the bead"}}
+	}
+	if opt.Adopt != "" {
+		result.Choices = &calib.Choices{Adopt: opt.Adopt}
 	}
 	for _, axis := range r.Axes {
 		result.Axes = append(result.Axes, inventedAxis(axis.Name, opt.Adopt))

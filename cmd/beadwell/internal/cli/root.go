@@ -60,6 +60,7 @@ func (a *app) root() *cobra.Command {
 		a.dragCommand(runDrag),
 		a.planCommand(runPlan),
 		a.forceCommand(runForce),
+		a.rerunCommand(runRerun),
 		a.simulateCommand(runSimulate),
 		a.explainCommand(),
 		a.schemaCommand(),
