@@ -55,7 +55,9 @@ type SurfaceFit struct {
 	Heights    []float64 // of the bead's centre at each point [m], from the readings as they are
 	Fitted     []float64 // the model at Heights, in the unit of the values
 	Residuals  []float64 // ln(value/model) over its uncertainty, that of the reading included
-	Outliers   []int     // points farther out than the chance of 5 % in the whole series allows, by the leave-one-out residual
+	Outliers   []int     // points that do not belong to the curve of the others, named in 5 % of clean series or fewer
+	// Without is the fit to the other points, nil when no outlier was named.
+	Without *SurfaceFit
 }
 
 // DragAgainstHeight fits the position of the surface to measured drag coefficients,

@@ -279,3 +279,38 @@ func TestReadingsFall(t *testing.T) {
 		t.Errorf("surfaces %+v, %+v", a.Surface, b.Surface)
 	}
 }
+
+// One recording far from the others is named, even next to the surface, and the fit without it
+// is right; clean series have one named in 5 % or fewer (4 standard errors of 150 series are 7 %).
+func TestDragAgainstHeightOutlier(t *testing.T) {
+	r := rand.New(rand.NewPCG(4, 4))
+	opt := SurfaceOptions{Radius: Input{Value: testRadius}}
+	for _, k := range []int{0, 1, 9} {
+		readings := heightSeries(r, 1, 0.005, 0, false)
+		readings[k].Value *= 1.06
+		fit, err := DragAgainstHeight(readings, opt)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if len(fit.Outliers) != 1 || fit.Outliers[0] != k {
+			t.Errorf("outlier %d: named %v", k, fit.Outliers)
+			continue
+		}
+		if z := (fit.Without.Surface.Value - testSurface) / fit.Without.Surface.Statistical; math.Abs(z) > 4 {
+			t.Errorf("outlier %d: surface without it %.2g standard uncertainties off", k, z)
+		}
+	}
+	named := 0
+	for range 150 {
+		fit, err := DragAgainstHeight(heightSeries(r, 1, 0.01, 0, false), opt)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if len(fit.Outliers) > 0 {
+			named++
+		}
+	}
+	if named > 150*12/100 {
+		t.Errorf("outliers in %d of 150 clean series", named)
+	}
+}

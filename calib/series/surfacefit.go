@@ -38,18 +38,38 @@ func (m *wall) fit(readings []Reading) (*SurfaceFit, error) {
 	if err := m.checkDegenerate(); err != nil {
 		return nil, err
 	}
-	for _, r := range readings {
-		m.perpendicular = append(m.perpendicular, r.Perpendicular)
-	}
-	data := points(readings)
-	s, err := m.search(data)
+	data, s, err := m.solve(readings)
 	if err == nil {
 		err = m.checkTold(s)
 	}
 	if err != nil {
 		return nil, m.explain(err, readings)
 	}
-	return m.result(readings, data, s), nil
+	fit := m.result(readings, data, s)
+	fit.Outliers = m.outliers(readings, s)
+	if len(fit.Outliers) > 0 {
+		rest := *m
+		kept := without(readings, fit.Outliers)
+		if data, s, err := rest.solve(kept); err == nil && rest.checkTold(s) == nil {
+			fit.Without = rest.result(kept, data, s)
+		}
+	}
+	return fit, nil
+}
+
+// solve fits to these readings.
+func (m *wall) solve(readings []Reading) ([]Point, *solution, error) {
+	m.orient(readings)
+	data := points(readings)
+	s, err := m.search(data)
+	return data, s, err
+}
+
+func (m *wall) orient(readings []Reading) {
+	m.perpendicular = make([]bool, len(readings))
+	for i, r := range readings {
+		m.perpendicular[i] = r.Perpendicular
+	}
 }
 
 func (m *wall) names() string {
@@ -229,21 +249,7 @@ func (m *wall) result(readings []Reading, data []Point, s *solution) *SurfaceFit
 		}
 		fit.Fitted = append(fit.Fitted, math.Exp(model))
 	}
-	fit.Outliers = farOut(s, fit.Goodness.Freedom)
 	return fit
-}
-
-// farOut names points whose leave-one-out residual is beyond 5 % over their number.
-func farOut(s *solution, freedom int) []int {
-	const level = 0.05
-	var far []int
-	h := leverages(s)
-	for i, r := range s.residuals {
-		if _, p := deletion(r, h[i], s.chiSquare, freedom, false); p < level/float64(len(h)) {
-			far = append(far, i)
-		}
-	}
-	return far
 }
 
 // sharedUncertainties carries the stated uncertainties of inputs on to the fitted
