@@ -43,7 +43,8 @@ type weighed struct {
 // shift, allowing for the uncertainties of all inputs but those that are freed.
 //
 // Inputs enter as normal priors and are maximised over, which for errors that are
-// linear in the logarithms gives -r' C^-1 r / 2 with C the covariance of the residuals r.
+// linear in the logarithms gives -r' C^-1 r / 2 with C the covariance of the residuals r
+// (docs/method.md, Eq. 58).
 func (b *bench) weigh(found []evidence, shift []float64, freed func(influence, int) bool) (weighed, bool) {
 	n := len(found)
 	c := mat.NewSymDense(n, nil)

@@ -25,7 +25,7 @@ const RouteDriven = "driven"
 // power W = A^2/(2 (1 + fc^2/f^2)) on its thermal spectrum, in metres (Tolic-Norrelykke et al., Rev.
 // Sci. Instrum. 77 (2006) 103101). The line of the recording over W is the square of the recorded unit
 // per metre; with it the diffusion coefficient is in metres too, the drag is kT/D and the stiffness 2 pi
-// fc kT/D: neither viscosity nor bead diameter nor length scale enters.
+// fc kT/D: neither viscosity nor bead diameter nor length scale enters (docs/method.md, Eqs 55 and 56).
 type Driven struct {
 	Waveform    string    `json:"waveform"`       // "sine", "triangle"
 	Frequency   Float     `json:"frequency_hz"`   // of the motion; null for a triangle that is known by its track alone

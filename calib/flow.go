@@ -12,7 +12,8 @@ import (
 )
 
 // FlowLine is the displacement of the bead against the speed of the stage: a straight line whose slope is drag
-// over stiffness, gamma/kappa (Stokes' law in a harmonic trap), with an intercept and a drift in time left free.
+// over stiffness, gamma/kappa (Stokes' law in a harmonic trap), with an intercept and a drift in time left free
+// (docs/method.md, Eq. 57).
 type FlowLine struct {
 	Slope     Quantity    `json:"slope"`     // of displacement against speed, as recorded [s]
 	Intercept Quantity    `json:"intercept"` // displacement at rest, from the mean of the record [m]

@@ -12,7 +12,7 @@ import (
 // The spectrum of a recording in detector units gives D_V, the diffusion coefficient in
 // units squared a second. That of the bead is kT/gamma, gamma by Stokes and the wall, so that
 // the sensitivity is sqrt(kT/(gamma D_V)) (Tolic-Norrelykke et al., Rev. Sci. Instrum. 77 (2006) 103101,
-// for the calibration of a detector by the diffusion of the bead).
+// for the calibration of a detector by the diffusion of the bead; docs/method.md, Eq. 52).
 type Sensitivity struct {
 	Used     Quantity `json:"used"`      // m per unit of the detector, by which the positions were scaled
 	Unit     string   `json:"unit"`      // of the detector: "V", "counts", "1"; volts for V, mV and uV
