@@ -13,6 +13,7 @@ type progress struct {
 	bar       *progressbar.ProgressBar // nil when there is none
 	lines     bool
 	done, all int
+	begun     time.Time
 	told      time.Time // when the last line was written
 }
 
@@ -20,7 +21,7 @@ type progress struct {
 const tellEvery = 15 * time.Second
 
 func (a *app) newProgress(all int, quiet bool) *progress {
-	p := &progress{app: a, all: all, told: a.Now()}
+	p := &progress{app: a, all: all, begun: a.Now(), told: a.Now()}
 	switch {
 	case quiet || all < 2:
 	case a.Watched:
@@ -39,7 +40,8 @@ func (p *progress) step() {
 		_ = p.bar.Add(1) // a bar that cannot be drawn is no reason to stop
 	}
 	if now := p.app.Now(); p.lines && p.done < p.all && now.Sub(p.told) >= tellEvery {
-		p.app.say("beadwell: %d of %d recordings done", p.done, p.all)
+		left := time.Duration(float64(now.Sub(p.begun)) / float64(p.done) * float64(p.all-p.done))
+		p.app.say("beadwell: %d of %d recordings done, about %s left", p.done, p.all, left.Round(time.Second))
 		p.told = now
 	}
 }

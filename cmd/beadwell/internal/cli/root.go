@@ -54,9 +54,11 @@ func (a *app) root() *cobra.Command {
 	root.CompletionOptions.HiddenDefaultCmd = false
 	root.AddCommand(
 		a.calibrateCommand(runCalibrate),
+		a.batchCommand(runBatch),
 		a.checkCommand(runCheck),
 		a.initCommand(runInit),
 		a.reportCommand(runReport),
+		a.collectCommand(runCollect),
 		a.dragCommand(runDrag),
 		a.planCommand(runPlan),
 		a.forceCommand(runForce),

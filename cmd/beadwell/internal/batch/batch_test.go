@@ -1,0 +1,340 @@
+package batch
+
+import (
+	"context"
+	"encoding/csv"
+	"errors"
+	"fmt"
+	"io/fs"
+	"math"
+	"os"
+	"path/filepath"
+	"reflect"
+	"slices"
+	"strings"
+	"sync/atomic"
+	"testing"
+
+	"beadwell/calib"
+	"beadwell/calib/series"
+	"beadwell/cmd/beadwell/internal/report"
+)
+
+func TestNatural(t *testing.T) {
+	want := []string{"a", "a1b", "a2", "a10", "a010", "b", "run7.csv", "run10.csv"}
+	got := slices.Clone(want)
+	slices.Reverse(got)
+	slices.SortFunc(got, natural)
+	// a010 and a10 are the same number: bytes decide.
+	want[3], want[4] = "a010", "a10"
+	if !reflect.DeepEqual(got, want) {
+		t.Errorf("sorted %q, want %q", got, want)
+	}
+}
+
+func TestFolderNames(t *testing.T) {
+	got := folderNames([]string{"a/run1.csv", "a/run1.txt", "b/run1.csv", "a/-x.csv", "a/summary.json.csv", "a/RUN2.csv", "a/run2.csv", "a/ä b.csv.gz"})
+	want := []string{"a-run1.csv", "run1.txt", "b-run1.csv", "_-x", "summary.json_", "RUN2.csv", "a-run2.csv", "ä_b"}
+	seen := map[string]bool{}
+	for i, name := range got {
+		if seen[strings.ToLower(name)] {
+			t.Errorf("%q twice", name)
+		}
+		seen[strings.ToLower(name)] = true
+		if i != 5 && i != 6 && name != want[i] {
+			t.Errorf("name %d = %q, want %q", i, name, want[i])
+		}
+	}
+}
+
+func TestFind(t *testing.T) {
+	folder := t.TempDir()
+	for _, name := range []string{"run10.csv", "run2.csv", "README.txt", "session.toml", "tracks.csv", ".hidden.csv", "x.npy", "y.csv.gz", "photo.png", "below/z.dat", "old/journal.jsonl", "old/run1.csv"} {
+		write(t, filepath.Join(folder, name), "1")
+	}
+	found, err := Find([]string{folder}, true)
+	if err != nil {
+		t.Fatal(err)
+	}
+	var names []string
+	for _, path := range found.Paths {
+		name, _ := filepath.Rel(folder, path)
+		names = append(names, filepath.ToSlash(name))
+	}
+	if want := []string{"below/z.dat", "run2.csv", "run10.csv", "x.npy", "y.csv.gz"}; !reflect.DeepEqual(names, want) {
+		t.Errorf("found %q, want %q", names, want)
+	}
+	if len(found.Aside) != 2 {
+		t.Errorf("left out %q", found.Aside)
+	}
+	if flat, _ := Find([]string{folder, filepath.Join(folder, "run*.csv")}, false); len(flat.Paths) != 4 {
+		t.Errorf("found %q", flat.Paths)
+	}
+	if _, err := Find([]string{filepath.Join(folder, "gone*")}, false); err == nil {
+		t.Error("a pattern that matches nothing was not refused")
+	}
+}
+
+func write(t *testing.T, path, content string) {
+	t.Helper()
+	if err := errors.Join(os.MkdirAll(filepath.Dir(path), 0o777), os.WriteFile(path, []byte(content), 0o666)); err != nil {
+		t.Fatal(err)
+	}
+}
+
+// invented makes a job over count files whose content is a power in mW; the stiffness is 1
+// pN/um for each mW. File 3 fails, file 5 panics, file 6 is of another role.
+func invented(t *testing.T, count int) (Job, *atomic.Int64) {
+	folder := t.TempDir()
+	var calls atomic.Int64
+	job := Job{Out: filepath.Join(t.TempDir(), "out"), Workers: 2, Fingerprint: func(string) string { return "settings" }}
+	for i := range count {
+		path := filepath.Join(folder, fmt.Sprintf("run%d.csv", i+1))
+		write(t, path, fmt.Sprint(10*(i+1)))
+		job.Files = append(job.Files, path)
+	}
+	job.Calibrate = func(ctx context.Context, path string) ([]Outcome, error) {
+		calls.Add(1)
+		switch filepath.Base(path) {
+		case "run3.csv":
+			return []Outcome{{Problem: &report.Problem{Code: "input", Status: 4, Message: "is no recording"}}}, nil
+		case "run5.csv":
+			panic("an index")
+		case "run6.csv":
+			return []Outcome{{Aside: "role free"}}, nil
+		}
+		return []Outcome{{Result: inventedResult(path)}}, ctx.Err()
+	}
+	job.Outputs = func(_ context.Context, r *calib.Result) ([]Output, error) {
+		return []Output{{ResultName, []byte(r.Input.Name + r.Input.SHA256)}}, nil
+	}
+	return job, &calls
+}
+
+func inventedResult(path string) *calib.Result {
+	text, _ := os.ReadFile(path)
+	var milliwatt float64
+	fmt.Sscan(string(text), &milliwatt)
+	k := milliwatt * 1e-6
+	q := calib.Quantity{Value: calib.Float(k), Unit: "N/m", Statistical: &calib.Uncertainty{Standard: calib.Float(0.01 * k)}, Combined: &calib.Uncertainty{Standard: calib.Float(0.02 * k)}}
+	none := calib.Withheld("", "not known")
+	return &calib.Result{Input: calib.Input{Name: filepath.Base(path), SHA256: hexSum(text)}, Verdict: calib.Verdict{Status: calib.Consistent},
+		Bead: calib.Bead{Diameter: calib.Exact(1e-6, "m"), Height: none}, Medium: calib.Medium{Temperature: none, Viscosity: none},
+		Settings: []calib.Setting{{Key: "laser.power", Value: calib.Float(milliwatt * 1e-3), StandardUncertainty: calib.Float(math.NaN())}},
+		Axes: []calib.Axis{{Name: "x", Orientation: "parallel", Adopted: calib.Adopted{Stiffness: q}, MeasuredDrag: none, DragRatio: none,
+			Spectrum: calib.Spectrum{Corner: none}, Wall: calib.Wall{Factor: none}}}}
+}
+
+// tree is every file of a folder with its content.
+func tree(t *testing.T, folder string) map[string]string {
+	t.Helper()
+	files := map[string]string{}
+	err := filepath.WalkDir(folder, func(path string, entry fs.DirEntry, err error) error {
+		if err != nil || entry.IsDir() {
+			return err
+		}
+		content, err := os.ReadFile(path)
+		name, _ := filepath.Rel(folder, path)
+		files[filepath.ToSlash(name)] = string(content)
+		return err
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	return files
+}
+
+func run(t *testing.T, job Job) *Summary {
+	t.Helper()
+	s, err := Run(context.Background(), job)
+	if err != nil {
+		t.Fatal(err)
+	}
+	return s
+}
+
+func TestRunGoesOn(t *testing.T) {
+	job, _ := invented(t, 8)
+	s := run(t, job)
+	var statuses []string
+	for _, row := range s.Rows {
+		statuses = append(statuses, row.Status)
+	}
+	if want := []string{"consistent", "consistent", "failed", "consistent", "failed", "set aside", "consistent", "consistent"}; !reflect.DeepEqual(statuses, want) {
+		t.Errorf("statuses %q, want %q", statuses, want)
+	}
+	rows, err := csv.NewReader(strings.NewReader(tree(t, job.Out)[SummaryCSV])).ReadAll()
+	if err != nil || len(rows) != 9 || !strings.Contains(strings.Join(rows[5], " "), "a mistake in the program") {
+		t.Errorf("summary.csv: %v %q", err, rows)
+	}
+	if len(s.Series) != 1 || s.Series[0].Kind != kindPower {
+		t.Fatalf("series %+v", s.Series)
+	}
+	// 1 pN/um for each mW: 1e-6 N/m over 1e-3 W. The digits of the decimal fractions remain.
+	if v := s.Series[0].Values[0]; math.Abs(float64(v.Value)/1e-3-1) > 1e-12 || math.Abs(float64(v.Shared/v.Value)-math.Sqrt(3)*0.01) > 1e-12 {
+		t.Errorf("stiffness per power %+v", v)
+	}
+}
+
+// The bytes do not depend on the workers, on an interruption, or on shards.
+func TestSameBytes(t *testing.T) {
+	job, calls := invented(t, 9)
+	run(t, job)
+	want := tree(t, job.Out)
+
+	again := job
+	again.Workers, again.Out = 5, filepath.Join(t.TempDir(), "workers")
+	run(t, again)
+	same(t, "five workers", tree(t, again.Out), want)
+
+	// Stopped after every single recording in turn.
+	stopped := job
+	stopped.Out = filepath.Join(t.TempDir(), "stopped")
+	stopped.Workers = 1
+	for range 20 {
+		ctx, cancel := context.WithCancel(context.Background())
+		stopped.Step = func() { cancel() }
+		if _, err := Run(ctx, stopped); err == nil {
+			break
+		}
+	}
+	same(t, "stopped", tree(t, stopped.Out), want)
+
+	before := calls.Load()
+	run(t, job)
+	if calls.Load() != before {
+		t.Errorf("a second run calibrated %d recordings again", calls.Load()-before)
+	}
+	same(t, "second run", tree(t, job.Out), want)
+
+	joined := filepath.Join(t.TempDir(), "joined")
+	var folders []string
+	for i := range 4 {
+		shard := job
+		shard.Shard, shard.Out = Shard{i + 1, 4}, filepath.Join(t.TempDir(), "shard")
+		run(t, shard)
+		folders = append([]string{shard.Out}, folders...)
+	}
+	if _, err := Collect(folders[1:], joined, SeriesOptions{}); err == nil {
+		t.Error("a missing shard was not noticed")
+	}
+	joined = filepath.Join(t.TempDir(), "joined2")
+	if _, err := Collect(folders, joined, SeriesOptions{}); err != nil {
+		t.Fatal(err)
+	}
+	same(t, "collected", tree(t, joined), want)
+
+	place := filepath.Join(t.TempDir(), "place")
+	for i := range 4 {
+		shard := job
+		shard.Shard, shard.Out = Shard{i + 1, 4}, place
+		run(t, shard)
+	}
+	if _, err := Collect([]string{place}, place, SeriesOptions{}); err != nil {
+		t.Fatal(err)
+	}
+	same(t, "collected in place", tree(t, place), want)
+}
+
+func same(t *testing.T, what string, got, want map[string]string) {
+	t.Helper()
+	for name := range want {
+		if got[name] != want[name] {
+			t.Errorf("%s: %s differs", what, name)
+		}
+	}
+	for name := range got {
+		if _, has := want[name]; !has {
+			t.Errorf("%s: %s is there", what, name)
+		}
+	}
+}
+
+// What changed is done again: content, settings, an output; a cut journal is read as far as it goes.
+func TestResumeRedoesWhatChanged(t *testing.T) {
+	job, calls := invented(t, 8)
+	run(t, job)
+	for _, c := range []struct {
+		name   string
+		change func()
+		want   int64
+	}{
+		{"nothing", func() {}, 0},
+		{"content", func() { write(t, job.Files[0], "77") }, 1},
+		{"an output", func() { write(t, filepath.Join(job.Out, "run2", ResultName), "spoilt") }, 1},
+		{"a lost output", func() { os.Remove(filepath.Join(job.Out, "run4", ResultName)) }, 1},
+		{"the end of the journal", func() {
+			text := tree(t, job.Out)[journalName]
+			write(t, filepath.Join(job.Out, journalName), text[:len(text)-30])
+		}, 1},
+		{"settings", func() { job.Fingerprint = func(string) string { return "others" } }, 8},
+	} {
+		c.change()
+		before := calls.Load()
+		run(t, job)
+		if got := calls.Load() - before; got != c.want {
+			t.Errorf("%s: %d done again, want %d", c.name, got, c.want)
+		}
+	}
+	tasks, err := Plan(context.Background(), job)
+	if err != nil || slices.ContainsFunc(tasks, func(t Task) bool { return !t.Done }) {
+		t.Errorf("plan after all is done: %+v, %v", tasks, err)
+	}
+}
+
+// A file that changes while it is read is set aside, and done by the next run.
+func TestGrowingFile(t *testing.T) {
+	job, _ := invented(t, 2)
+	plain := job.Calibrate
+	grow := true
+	job.Workers = 1
+	job.Calibrate = func(ctx context.Context, path string) ([]Outcome, error) {
+		outcomes, err := plain(ctx, path)
+		if grow && path == job.Files[1] {
+			write(t, path, "20 and more")
+		}
+		return outcomes, err
+	}
+	if s := run(t, job); s.Rows[1].Status != SetAside {
+		t.Errorf("a growing file: %+v", s.Rows[1])
+	}
+	grow = false
+	if s := run(t, job); s.Rows[1].Status != calib.Consistent {
+		t.Errorf("the same when it is whole: %+v", s.Rows[1])
+	}
+}
+
+func TestOutputsDoNotFollowLinks(t *testing.T) {
+	job, _ := invented(t, 1)
+	elsewhere := t.TempDir()
+	if err := errors.Join(os.MkdirAll(job.Out, 0o777), os.Symlink(elsewhere, filepath.Join(job.Out, "run1"))); err != nil {
+		t.Fatal(err)
+	}
+	if _, err := Run(context.Background(), job); !IsOutput(err) {
+		t.Errorf("a link out of the folder: %v", err)
+	}
+	if entries, _ := os.ReadDir(elsewhere); len(entries) > 0 {
+		t.Error("something was written through the link")
+	}
+}
+
+// A height series with a hidden offset gives the surface.
+func TestHeightSeries(t *testing.T) {
+	s := heightSummary(t)
+	s.addSeries(SeriesOptions{})
+	if len(s.Series) != 1 || s.Series[0].Kind != kindDrag || s.Series[0].Reason != "" {
+		t.Fatalf("series %+v", s.Series)
+	}
+	v := s.Series[0].Values[0]
+	if math.Abs(float64(v.Value)-0.3e-6) > 1e-9 { // the drags are exact
+		t.Errorf("surface at %g m, want 0.3e-6", v.Value)
+	}
+	if len(s.Notes) != 1 {
+		t.Errorf("notes %q: the assumed height scale must be told", s.Notes)
+	}
+	s.Series, s.Notes = nil, nil
+	s.addSeries(SeriesOptions{Scale: series.Input{Value: 1, Free: true}, FitDiameter: true})
+	if len(s.Notes) != 0 || len(s.Series) != 1 || len(s.Series[0].Relations) != 3 {
+		t.Errorf("with scale and diameter: %+v, %q", s.Series, s.Notes)
+	}
+}

@@ -1,0 +1,110 @@
+package batch
+
+import (
+	"math"
+
+	"beadwell/calib"
+	"beadwell/cmd/beadwell/internal/report"
+)
+
+// The statuses of a row beside those of a verdict.
+const (
+	Failed   = "failed"    // there is no result
+	SetAside = "set aside" // a recording of another role, or one that is still being written
+)
+
+// Row is one recording in the summary: one bead of one file.
+type Row struct {
+	File        string          `json:"file"`
+	Bead        string          `json:"bead,omitempty"`
+	Status      string          `json:"status"` // a verdict, "failed" or "set aside"
+	Reason      string          `json:"reason,omitempty"`
+	Folder      string          `json:"folder,omitempty"` // of its outputs, in the folder of results
+	Report      string          `json:"report,omitempty"` // its report, or its result, in the folder of results
+	SHA256      string          `json:"sha256,omitempty"` // of the file
+	Problem     *report.Problem `json:"problem,omitempty"`
+	Diameter    Number          `json:"diameter_m"`
+	Height      Number          `json:"height_m"`
+	Power       Number          `json:"power_W"`
+	Temperature Number          `json:"temperature_K"`
+	Viscosity   Number          `json:"viscosity_Pa_s"`
+	FamilyWiseP calib.Float     `json:"family_wise_p_value"`
+	Axes        []RowAxis       `json:"axes"`
+}
+
+// Number is a value with its uncertainties; null where there is none.
+type Number struct {
+	Value       calib.Float `json:"value"`
+	Statistical calib.Float `json:"statistical"` // standard uncertainty, inputs taken as exact
+	Combined    calib.Float `json:"combined"`    // standard uncertainty with the inputs'
+}
+
+// RowAxis is one axis of a row.
+type RowAxis struct {
+	Axis          string `json:"axis"`
+	Perpendicular bool   `json:"perpendicular"` // to the surface
+	Stiffness     Number `json:"stiffness_N_per_m"`
+	Corner        Number `json:"corner_frequency_Hz"`
+	Drag          Number `json:"measured_drag_N_s_per_m"`
+	DragRatio     Number `json:"drag_ratio"` // measured over computed
+	Sensitivity   Number `json:"sensitivity_m_per_V"`
+	WallFactor    Number `json:"wall_factor"` // computed
+}
+
+var unknown = Number{calib.Float(math.NaN()), calib.Float(math.NaN()), calib.Float(math.NaN())}
+
+func number(q calib.Quantity) Number {
+	n := Number{Value: q.Value, Statistical: unknown.Value, Combined: unknown.Value}
+	if !q.Known() {
+		return unknown
+	}
+	if q.Statistical != nil {
+		n.Statistical = q.Statistical.Standard
+	}
+	if q.Combined != nil {
+		n.Combined = q.Combined.Standard
+	}
+	return n
+}
+
+// emptyRow is a recording without a result.
+func emptyRow(file, status, reason string) Row {
+	return Row{File: file, Status: status, Reason: reason, Diameter: unknown, Height: unknown, Power: unknown, Temperature: unknown,
+		Viscosity: unknown, FamilyWiseP: unknown.Value, Axes: []RowAxis{}}
+}
+
+// failedRow is a recording with a problem.
+func failedRow(file string, p report.Problem) Row {
+	row := emptyRow(file, Failed, p.Message)
+	row.Problem = &p
+	return row
+}
+
+// resultRow is what the summary keeps of a result.
+func resultRow(file, folder string, r *calib.Result) Row {
+	row := emptyRow(file, r.Verdict.Status, r.Verdict.Reason)
+	row.Bead, row.Folder, row.SHA256, row.FamilyWiseP = r.Input.Bead, folder, r.Input.SHA256, r.Verdict.FamilyWiseP
+	row.Diameter, row.Height = number(r.Bead.Diameter), number(r.Bead.Height)
+	row.Temperature, row.Viscosity = number(r.Medium.Temperature), number(r.Medium.Viscosity)
+	row.Power = settingNumber(r, "laser.power", "")
+	for _, a := range r.Axes {
+		row.Axes = append(row.Axes, RowAxis{Axis: a.Name, Perpendicular: a.Orientation == "perpendicular",
+			Stiffness: number(a.Adopted.Stiffness), Corner: number(a.Spectrum.Corner), Drag: number(a.MeasuredDrag),
+			DragRatio: number(a.DragRatio), Sensitivity: settingNumber(r, "recording.sensitivity", a.Name), WallFactor: number(a.Wall.Factor)})
+	}
+	return row
+}
+
+// settingNumber is a setting of the result, that of the axis before that of all.
+func settingNumber(r *calib.Result, key, axis string) Number {
+	found := unknown
+	for _, s := range r.Settings {
+		if s.Key == key && (s.Axis == "" || s.Axis == axis) {
+			found = Number{Value: s.Value, Statistical: unknown.Value, Combined: s.StandardUncertainty}
+			if s.Axis == axis {
+				break
+			}
+		}
+	}
+	return found
+}

@@ -1,0 +1,182 @@
+package batch
+
+import (
+	"bytes"
+	"encoding/csv"
+	"encoding/json"
+	"math"
+	"os"
+	"slices"
+	"strconv"
+
+	"beadwell/calib"
+	"beadwell/cmd/beadwell/internal/report"
+)
+
+// SummarySchema names the layout of summary.json.
+const SummarySchema = "beadwell-summary/1"
+
+// Summary is what all recordings say together. Numbers are SI.
+type Summary struct {
+	Schema string   `json:"schema"`
+	Rows   []Row    `json:"rows"`   // in natural order of the files
+	Series []Series `json:"series"` // never null
+	// Notes say what the series assume.
+	Notes []string `json:"notes"`
+}
+
+func newSummary(entries []entry, growing []Growing, opt SeriesOptions) *Summary {
+	s := &Summary{Schema: SummarySchema, Rows: []Row{}, Series: []Series{}, Notes: []string{}}
+	for _, e := range entries {
+		s.Rows = append(s.Rows, e.Rows...)
+	}
+	for _, g := range growing {
+		s.Rows = append(s.Rows, emptyRow(g.Path, SetAside, g.Note))
+	}
+	slices.SortStableFunc(s.Rows, func(a, b Row) int { return natural(a.File, b.File) })
+	s.addSeries(opt)
+	return s
+}
+
+// Counts are the rows by what came of them.
+func (s *Summary) Counts() (good, distrusted, failed, aside int) {
+	for _, row := range s.Rows {
+		switch row.Status {
+		case calib.Consistent:
+			good++
+		case Failed:
+			failed++
+		case SetAside:
+			aside++
+		default:
+			distrusted++
+		}
+	}
+	return good, distrusted, failed, aside
+}
+
+// write writes the summary in its three forms.
+func (s *Summary) write(root *os.Root) error {
+	stored, err := s.JSON()
+	if err != nil {
+		return err
+	}
+	page, err := s.HTML()
+	if err != nil {
+		return err
+	}
+	table, err := s.CSV()
+	if err != nil {
+		return err
+	}
+	for _, o := range []Output{{SummaryJSON, stored}, {SummaryCSV, table}, {IndexName, page}} {
+		if err := writeFile(root, o.Name, o.Content); err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+// JSON is the content of summary.json.
+func (s *Summary) JSON() ([]byte, error) {
+	var b bytes.Buffer
+	e := json.NewEncoder(&b)
+	e.SetEscapeHTML(false)
+	e.SetIndent("", " ")
+	err := e.Encode(s)
+	return b.Bytes(), err
+}
+
+// summaryColumns are those of a row; the columns of each axis follow.
+var summaryColumns = []struct {
+	name string
+	cell func(Row) string
+}{
+	{"file", func(r Row) string { return report.Cell(r.File) }},
+	{"bead", func(r Row) string { return report.Cell(r.Bead) }},
+	{"status", func(r Row) string { return report.Cell(r.Status) }},
+	{"reason", func(r Row) string { return report.Cell(r.Reason) }},
+	{"family_wise_p_value", func(r Row) string { return exact(r.FamilyWiseP) }},
+	{"diameter_m", func(r Row) string { return exact(r.Diameter.Value) }},
+	{"height_m", func(r Row) string { return exact(r.Height.Value) }},
+	{"power_W", func(r Row) string { return exact(r.Power.Value) }},
+	{"temperature_K", func(r Row) string { return exact(r.Temperature.Value) }},
+	{"viscosity_Pa_s", func(r Row) string { return exact(r.Viscosity.Value) }},
+	{"folder", func(r Row) string { return report.Cell(r.Folder) }},
+	{"sha256", func(r Row) string { return r.SHA256 }},
+}
+
+// axisColumns are those of one axis.
+var axisColumns = []struct {
+	name string
+	cell func(RowAxis) calib.Float
+}{
+	{"stiffness_N_per_m", func(a RowAxis) calib.Float { return a.Stiffness.Value }},
+	{"stiffness_statistical_u_N_per_m", func(a RowAxis) calib.Float { return a.Stiffness.Statistical }},
+	{"stiffness_combined_u_N_per_m", func(a RowAxis) calib.Float { return a.Stiffness.Combined }},
+	{"corner_frequency_Hz", func(a RowAxis) calib.Float { return a.Corner.Value }},
+	{"corner_frequency_u_Hz", func(a RowAxis) calib.Float { return a.Corner.Statistical }},
+	{"measured_drag_N_s_per_m", func(a RowAxis) calib.Float { return a.Drag.Value }},
+	{"measured_drag_u_N_s_per_m", func(a RowAxis) calib.Float { return a.Drag.Statistical }},
+	{"drag_ratio", func(a RowAxis) calib.Float { return a.DragRatio.Value }},
+	{"drag_ratio_combined_u", func(a RowAxis) calib.Float { return a.DragRatio.Combined }},
+	{"sensitivity_m_per_V", func(a RowAxis) calib.Float { return a.Sensitivity.Value }},
+}
+
+var axisNames = []string{"x", "y", "z"}
+
+// CSV is the content of summary.csv: one row for each recording, in SI units at full
+// precision; numbers that are not known are empty cells.
+func (s *Summary) CSV() ([]byte, error) {
+	var b bytes.Buffer
+	w := csv.NewWriter(&b)
+	var head []string
+	for _, c := range summaryColumns {
+		head = append(head, c.name)
+	}
+	for _, name := range axisNames {
+		for _, c := range axisColumns {
+			head = append(head, name+"_"+c.name)
+		}
+	}
+	w.Write(head) // errors stay in the writer until Flush
+	for _, row := range s.Rows {
+		var cells []string
+		for _, c := range summaryColumns {
+			cells = append(cells, c.cell(row))
+		}
+		for _, name := range axisNames {
+			axis, has := row.axis(name)
+			for _, c := range axisColumns {
+				if has {
+					cells = append(cells, exact(c.cell(axis)))
+				} else {
+					cells = append(cells, "")
+				}
+			}
+		}
+		w.Write(cells)
+	}
+	w.Flush()
+	return b.Bytes(), w.Error()
+}
+
+func (r Row) axis(name string) (RowAxis, bool) {
+	for _, a := range r.Axes {
+		if a.Axis == name {
+			return a, true
+		}
+	}
+	return RowAxis{}, false
+}
+
+// exact prints a number so that it reads back to the same bits.
+func exact(f calib.Float) string {
+	if !f.Known() {
+		return ""
+	}
+	return strconv.FormatFloat(float64(f), 'g', -1, 64)
+}
+
+// known is a number that is there and above 0.
+func known(f calib.Float) bool { return f.Known() && f > 0 && !math.IsInf(float64(f), 0) }

@@ -1,0 +1,53 @@
+package batch
+
+import (
+	"errors"
+	"fmt"
+	"io/fs"
+	"os"
+	"path"
+)
+
+// writeFile writes under a name of its own and renames: a reader, or a kill, meets the old
+// file or the new one. Nothing is forced to the disk, which would cost milliseconds for
+// each of thousands of files: the journal holds the SHA-256 of each, and what a failing
+// machine lost is done again.
+func writeFile(root *os.Root, name string, content []byte) error {
+	if info, err := root.Lstat(name); err == nil && !info.Mode().IsRegular() {
+		return fmt.Errorf("%s: is no plain file; move it away, or choose another folder", name)
+	}
+	part := path.Join(path.Dir(name), "."+path.Base(name)+".part")
+	if err := root.Remove(part); err != nil && !errors.Is(err, fs.ErrNotExist) {
+		return err
+	}
+	file, err := root.OpenFile(part, os.O_WRONLY|os.O_CREATE|os.O_EXCL, 0o666)
+	if err != nil {
+		return err
+	}
+	_, err = file.Write(content)
+	if err = errors.Join(err, file.Close()); err != nil {
+		return errors.Join(err, root.Remove(part))
+	}
+	return root.Rename(part, name)
+}
+
+// Output is one file of a recording.
+type Output struct {
+	Name    string
+	Content []byte
+}
+
+// writeOutputs writes the files of a recording into its folder, and gives their sums.
+func writeOutputs(root *os.Root, folder string, outputs []Output, sums map[string]string) error {
+	if err := root.Mkdir(folder, 0o777); err != nil && !errors.Is(err, fs.ErrExist) {
+		return err
+	}
+	for _, o := range outputs {
+		name := path.Join(folder, o.Name)
+		if err := writeFile(root, name, o.Content); err != nil {
+			return err
+		}
+		sums[name] = hexSum(o.Content)
+	}
+	return nil
+}
