@@ -26,6 +26,8 @@ type Options struct {
 	// Adopt names the route to adopt, RouteDrag or RouteAmplitude, whatever the
 	// cross-check says. Empty: the combination, withheld when the routes disagree.
 	Adopt string
+	// MonteCarlo asks for a propagation of distributions through the adopted stiffness.
+	MonteCarlo MonteCarloOptions
 	// Program and its version, and the command line, for the record.
 	Program Program
 }
@@ -98,6 +100,9 @@ func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings,
 	r.examine(rec, works)
 	r.judge(works, opt)
 	r.findCause(works)
+	if err := r.propagate(ctx, works, opt.MonteCarlo); err != nil {
+		return nil, err
+	}
 	r.collectFindings(set, works)
 	return r, nil
 }

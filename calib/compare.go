@@ -185,8 +185,9 @@ func (w *work) adopt() {
 			a.Stiffness, a.Withheld = Withheld("N/m", reason), reason
 			return
 		}
-		stat := o.Scaled(p.sdData / p.sdTotal)
-		a.Stiffness = stiffness(p.value, p.sdData, stat, math.Hypot(p.sdTotal, math.Sqrt(p.rest)), o.Widened(math.Sqrt(p.rest)))
+		stat, rest := o.Scaled(p.sdData/p.sdTotal), math.Hypot(math.Sqrt(p.rest), p.exposure)
+		a.Stiffness = stiffness(p.value, p.sdData, stat, math.Hypot(p.sdTotal, rest), o.Widened(rest))
+		w.adoptedLeg = combinedLegs
 	}
 	w.budget()
 }
@@ -204,6 +205,7 @@ func (w *work) adoptLeg(leg int, basis string) {
 		return
 	}
 	a.Stiffness = w.legStiffness(leg)
+	w.adoptedLeg = leg
 }
 
 // legStiffness turns a leg into a quantity.
@@ -239,38 +241,4 @@ func end(logarithm float64) Float {
 		return Float(math.NaN())
 	}
 	return Float(math.Exp(logarithm))
-}
-
-// budget lists what the combined uncertainty of the adopted stiffness is made of.
-func (w *work) budget() {
-	a := &w.axis.Adopted
-	if !a.Stiffness.Known() {
-		return
-	}
-	drag := float64(a.Weights[RouteDrag])
-	var lines []BudgetLine
-	sum := 0.0
-	for _, in := range w.phys.influences {
-		c := drag*in.drag + (1-drag)*(in.energy-2*in.length)
-		line := BudgetLine{Input: in.name, Value: Float(in.value), Unit: in.unit, StandardUncertainty: Float(in.u),
-			Sensitivity: Float(math.NaN()), Contribution: Float(math.Abs(c))}
-		if in.u > 0 {
-			line.Sensitivity = Float(c / (in.u / in.base))
-		}
-		sum += c * c
-		lines = append(lines, line)
-	}
-	stat := float64(a.Stiffness.Statistical.Standard / a.Stiffness.Value)
-	lines = append(lines, BudgetLine{Input: "statistics of the recording", Value: a.Stiffness.Value, Unit: "N/m",
-		StandardUncertainty: a.Stiffness.Statistical.Standard, Sensitivity: 1, Contribution: Float(stat)})
-	total := float64(a.Stiffness.Combined.Standard / a.Stiffness.Value)
-	if other := total*total - sum - stat*stat; other > 1e-6*total*total {
-		lines = append(lines, BudgetLine{Input: "noise and exposure", Value: Float(math.NaN()), Unit: "1", StandardUncertainty: Float(math.NaN()),
-			Sensitivity: Float(math.NaN()), Contribution: Float(math.Sqrt(other))})
-	}
-	for i := range lines {
-		c := float64(lines[i].Contribution)
-		lines[i].Share = Float(c * c / (total * total))
-	}
-	a.Budget = lines
 }

@@ -79,10 +79,7 @@ func (b *bench) shared(freed func(influence, int) bool) [][]float64 {
 	var order []string
 	for i, w := range b.works {
 		for _, in := range w.phys.influences {
-			name := in.name
-			if name == wallModel && !w.phys.parallel {
-				name += " perpendicular" // the two solutions err on their own
-			}
+			name := w.sharedName(in)
 			if rows[name] == nil {
 				rows[name] = make([]float64, len(b.works))
 				order = append(order, name)

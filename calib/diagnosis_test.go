@@ -3,6 +3,7 @@ package calib
 import (
 	"context"
 	"fmt"
+	"maps"
 	"math"
 	"math/rand/v2"
 	"testing"
@@ -34,6 +35,12 @@ const trueCorner = 500.0 // Hz, of x in an ordinary stage
 // settings states what the user believes.
 func (s stage) settings(t testing.TB) *session.Settings {
 	t.Helper()
+	return s.settingsWith(t, nil)
+}
+
+// settingsWith replaces some of the settings.
+func (s stage) settingsWith(t testing.TB, more map[string]string) *session.Settings {
+	t.Helper()
 	text := map[string]string{
 		"bead.diameter":      fmt.Sprintf("%g m +- %g m", s.diameter, 0.02*s.diameter),
 		"medium.temperature": fmt.Sprintf("%g K +- 0.5 K", s.kelvin),
@@ -45,6 +52,7 @@ func (s stage) settings(t testing.TB) *session.Settings {
 		"fit.drag":           "constant",
 		"fit.perpendicular":  "z",
 	}
+	maps.Copy(text, more)
 	flags := &session.Settings{}
 	for key, value := range text {
 		if err := flags.Set(key, "", value, session.FromFlag, key); err != nil {

@@ -305,6 +305,10 @@ func (w *work) exposureInfluence() {
 	shifted.legs = legs{}
 	options := shifted.fitOptions()
 	options.KeepLines = true
+	if w.form != nil {
+		h, _ := w.hydrodynamic(w.dragModel == FrequencyDependentDrag)
+		options.Form = h.Form(w.rate, shifted.exposure)
+	}
 	var err error
 	if shifted.fit, err = psd.Estimate(w.record, options); err != nil {
 		return
@@ -314,6 +318,9 @@ func (w *work) exposureInfluence() {
 	}
 	if shifted.pool() != nil {
 		return
+	}
+	if w.poolErr == nil {
+		w.pooled.exposure = (shifted.pooled.value - w.pooled.value) * w.exposureU / u
 	}
 	shifted.spectrumLegs()
 	process, total, data, drawn := shifted.bestProcess()

@@ -21,6 +21,7 @@ type pooled struct {
 	data            relaxation.Matrix // the record's part of it
 	sdData, sdTotal float64           // of ln kappa, without rest
 	value           float64           // ln kappa
+	exposure        float64           // change of value for one standard uncertainty of the exposure
 	drag            float64           // weight of the drag route
 	regimeFC        float64           // Cramer-Rao bound of ln fc, drag and scale unknown; +Inf when singular
 	regimeV         float64           // the same of ln V

@@ -12,21 +12,22 @@ const SchemaVersion = "beadwell-result/1"
 // made from, and the contract of the JSON file. It is a plain value that is
 // stored and read back without loss. All numbers are SI.
 type Result struct {
-	Schema    string     `json:"schema"`
-	Program   Program    `json:"program"`
-	Created   string     `json:"created,omitempty"` // RFC 3339; the only field that depends on the clock
-	Input     Input      `json:"input"`
-	ReadAs    ReadAs     `json:"read_as"`
-	Settings  []Setting  `json:"settings"`
-	Choices   *Choices   `json:"choices,omitempty"` // that are no settings; absent when none was made
-	Recording Recording  `json:"recording"`
-	Medium    Medium     `json:"medium"`
-	Bead      Bead       `json:"bead"`
-	Axes      []Axis     `json:"axes"`
-	Verdict   Verdict    `json:"verdict"`
-	Diagnosis *Diagnosis `json:"diagnosis,omitempty"` // single causes that would reconcile the routes; only when they disagree
-	Findings  []Finding  `json:"findings"`            // never null
-	Checks    []Check    `json:"checks"`              // of the recording, those that found nothing too
+	Schema     string      `json:"schema"`
+	Program    Program     `json:"program"`
+	Created    string      `json:"created,omitempty"` // RFC 3339; the only field that depends on the clock
+	Input      Input       `json:"input"`
+	ReadAs     ReadAs      `json:"read_as"`
+	Settings   []Setting   `json:"settings"`
+	Choices    *Choices    `json:"choices,omitempty"` // that are no settings; absent when none was made
+	Recording  Recording   `json:"recording"`
+	Medium     Medium      `json:"medium"`
+	Bead       Bead        `json:"bead"`
+	Axes       []Axis      `json:"axes"`
+	Verdict    Verdict     `json:"verdict"`
+	Diagnosis  *Diagnosis  `json:"diagnosis,omitempty"`   // single causes that would reconcile the routes; only when they disagree
+	MonteCarlo *MonteCarlo `json:"monte_carlo,omitempty"` // propagation of distributions, when it was asked for
+	Findings   []Finding   `json:"findings"`              // never null
+	Checks     []Check     `json:"checks"`                // of the recording, those that found nothing too
 }
 
 // Program says what made the result.
@@ -196,18 +197,9 @@ type Adopted struct {
 	Basis     string           `json:"basis"`             // which legs it rests on, in words
 	Weights   map[string]Float `json:"weights,omitempty"` // weight of each route in ln(stiffness)
 	Withheld  string           `json:"withheld,omitempty"`
-	Budget    []BudgetLine     `json:"budget,omitempty"` // contributions to the combined standard uncertainty
-}
-
-// BudgetLine is one input of the uncertainty budget (JCGM 100:2008, 5.1).
-type BudgetLine struct {
-	Input               string `json:"input"`
-	Value               Float  `json:"value"`
-	Unit                string `json:"unit"`
-	StandardUncertainty Float  `json:"standard_uncertainty"`
-	Sensitivity         Float  `json:"log_sensitivity"` // d ln(stiffness) / d ln(input); for temperature d ln(stiffness) / d ln(T / K)
-	Contribution        Float  `json:"contribution"`    // to u(ln stiffness), 1
-	Share               Float  `json:"share"`           // of the combined variance, 1
+	Budget    []BudgetLine     `json:"budget,omitempty"`                   // contributions to the combined standard uncertainty
+	Expanded  *Expanded        `json:"expanded,omitempty"`                 // the combined uncertainty with a coverage factor
+	Halving   string           `json:"to_halve_the_uncertainty,omitempty"` // what to measure better
 }
 
 // Spectrum is the power spectrum estimate of one axis.

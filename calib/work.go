@@ -35,16 +35,17 @@ type work struct {
 	drive             *drive // of the axis that follows a moving stage; nil for others
 	reply             response
 
-	record    *psd.Record
-	fit       *psd.Fit
-	fitErr    error
-	legs      legs
-	pooled    pooled
-	poolErr   error
-	dragModel string                                                 // ConstantDrag or FrequencyDependentDrag
-	form      func(relaxation.Blocks, float64) relaxation.Likelihood // of the fit; nil: the relaxation process
-	hydro     *psd.Bias                                              // of a fit with constant drag, where it matters
-	axis      Axis
+	record     *psd.Record
+	fit        *psd.Fit
+	fitErr     error
+	legs       legs
+	pooled     pooled
+	adoptedLeg int // the leg that was adopted, or combinedLegs
+	poolErr    error
+	dragModel  string                                                 // ConstantDrag or FrequencyDependentDrag
+	form       func(relaxation.Blocks, float64) relaxation.Likelihood // of the fit; nil: the relaxation process
+	hydro      *psd.Bias                                              // of a fit with constant drag, where it matters
+	axis       Axis
 }
 
 // newWork reads what the settings say of one axis and converts its positions.
