@@ -28,6 +28,9 @@ type Options struct {
 	Adopt string
 	// MonteCarlo asks for a propagation of distributions through the adopted stiffness.
 	MonteCarlo MonteCarloOptions
+	// Background is a recording without a bead, or with a stuck one, in the same unit and at the same rate: where no noise is stated it
+	// gives the noise, and its lines are left out of the fit. Nil: none.
+	Background *track.Recording
 	// Program and its version, and the command line, for the record.
 	Program Program
 }
@@ -70,6 +73,10 @@ func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings,
 	if opt.Adopt != "" && opt.Adopt != RouteDrag && opt.Adopt != RouteAmplitude {
 		return nil, &SettingError{Key: "adopt", Problem: fmt.Sprintf("%q is neither %q nor %q", opt.Adopt, RouteDrag, RouteAmplitude)}
 	}
+	role := roleOf(set)
+	if role == RoleBackground {
+		return measureBackground(ctx, rec, set, opt)
+	}
 	works := make([]*work, len(rec.Axes))
 	for i := range rec.Axes {
 		w, err := newWork(rec, i, set, opt)
@@ -78,22 +85,18 @@ func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings,
 		}
 		works[i] = w
 	}
-	role := roleOf(set)
 	switch role {
-	case RoleTrapped:
+	case RoleFree:
+		return calibrateFree(ctx, rec, set, works, opt)
 	case RoleDriven:
 		if err := assignDrive(rec, set, works); err != nil {
 			return nil, err
 		}
-	default:
-		return nil, &SettingError{Key: "role", Problem: fmt.Sprintf("%q is not a recording that can be calibrated on its own", role),
-			Remedy: "calibrate recordings of the role trapped or driven"}
 	}
 	if err := runAll(ctx, works); err != nil {
 		return nil, err
 	}
-	r := &Result{Schema: SchemaVersion, Program: opt.Program, Settings: ListSettings(set), Choices: opt.choices(), Findings: []Finding{}}
-	r.describe(rec, works)
+	r := newResult(rec, set, works, opt)
 	for _, w := range works {
 		r.Axes = append(r.Axes, w.axis)
 	}
@@ -105,6 +108,13 @@ func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings,
 	}
 	r.collectFindings(set, works)
 	return r, nil
+}
+
+// newResult starts a result with what was read and set.
+func newResult(rec *track.Recording, set *session.Settings, works []*work, opt Options) *Result {
+	r := &Result{Schema: SchemaVersion, Program: opt.Program, Settings: ListSettings(set), Choices: opt.choices(), Role: roleOf(set), Axes: []Axis{}, Findings: []Finding{}, Checks: []Check{}}
+	r.describe(rec, works)
+	return r
 }
 
 // runAll analyses the axes at the same time; the first error in the order of the

@@ -27,6 +27,9 @@ func (w *work) describe() {
 	x.Trace = w.trace()
 	w.describeDriven()
 	w.describeSensitivity()
+	if w.background != nil {
+		x.Background = w.background.describe(w.perUnit, "m")
+	}
 }
 
 func (w *work) describeDrag() {
@@ -138,6 +141,8 @@ func (w *work) noiseOrigin() string {
 	switch {
 	case !w.noise.Known:
 		return "fitted"
+	case w.background != nil:
+		return "background and fitted"
 	case w.noise.VarianceU > 0:
 		return "stated and fitted"
 	}

@@ -18,7 +18,7 @@ const byDrive = "the sensitivity was taken from the motion of the stage; the dri
 func (w *work) scaleByDrive() error {
 	metres := w.noise
 	last := math.Inf(1)
-	w.noise.Known = false
+	w.noise.Known = w.noiseRecorded
 	for range scaleSteps {
 		if err := w.fitPositions(); err != nil {
 			return err
@@ -27,7 +27,7 @@ func (w *work) scaleByDrive() error {
 			return err
 		}
 		w.perUnit = math.Exp(w.reply.logScale)
-		if !metres.Known || math.Abs(math.Log(w.perUnit)-last) < scaleEnd {
+		if !metres.Known || w.noiseRecorded || math.Abs(math.Log(w.perUnit)-last) < scaleEnd {
 			break
 		}
 		last = math.Log(w.perUnit)
@@ -36,7 +36,7 @@ func (w *work) scaleByDrive() error {
 		w.noise.Variance, w.noise.VarianceU = metres.Variance/square, metres.VarianceU/square
 	}
 	w.sensitivityOrigin = SensitivityDriven
-	w.noise = metres
+	w.noise = w.noiseInMetres(metres)
 	if err := w.rescale(); err != nil {
 		return err
 	}

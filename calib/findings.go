@@ -39,6 +39,9 @@ func (w *work) findings() []Finding {
 			Text:   fmt.Sprintf("A narrow line at %.6g Hz with an amplitude of %.3g nm was removed.", l.Frequency, l.Amplitude*1e9),
 			Remedy: "look for mains pickup or a vibration", Value: Float(l.Frequency), Limit: nan, Unit: "Hz"})
 	}
+	if w.background != nil {
+		out = append(out, w.background.findingsOf(w.axisName)...)
+	}
 	if w.takesDrag() {
 		out = append(out, Finding{Code: CodeSelfScaled, Severity: Note, Axis: w.axisName,
 			Text:   "No sensitivity is stated; it was found from the spectrum and the computed drag. The stiffness then rests on the corner frequency alone, and a wrong bead diameter, viscosity or height cannot show.",

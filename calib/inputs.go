@@ -91,7 +91,7 @@ func (p *physics) setTemperature(set *session.Settings) (kelvin, error) {
 	k.sources = append(k.sources, influence{name: "temperature", value: t.Value.SI, unit: "K", u: t.Value.U})
 	heating, hasHeating := number(set, "laser.heating", "")
 	power, hasPower := number(set, "laser.power", "")
-	if hasHeating && hasPower {
+	if hasHeating && hasPower && roleOf(set) != RoleFree { // a free bead was recorded with the laser off
 		rise := heating.Value.SI * power.Value.SI
 		k.value += rise
 		k.sources[0].value = k.value

@@ -18,6 +18,7 @@ type Result struct {
 	Input      Input       `json:"input"`
 	ReadAs     ReadAs      `json:"read_as"`
 	Settings   []Setting   `json:"settings"`
+	Role       string      `json:"role,omitempty"`    // of the recording: "trapped", "free", "driven", "background"
 	Choices    *Choices    `json:"choices,omitempty"` // that are no settings; absent when none was made
 	Recording  Recording   `json:"recording"`
 	Medium     Medium      `json:"medium"`
@@ -124,6 +125,8 @@ type Axis struct {
 	Displacement  MeanSquareDisplacement `json:"mean_square_displacement"`
 	Trace         Trace                  `json:"trace"`
 	Driven        *Driven                `json:"driven,omitempty"`      // of the axis that follows a moving stage
+	Free          *FreeBead              `json:"free,omitempty"`        // of a recording with the laser off
+	Background    *Background            `json:"background,omitempty"`  // the noise without a bead, where it was recorded
 	Sensitivity   *Sensitivity           `json:"sensitivity,omitempty"` // of a recording in detector units
 }
 
@@ -211,7 +214,7 @@ type Spectrum struct {
 	Diffusion     Quantity        `json:"diffusion_coefficient"` // m2/s
 	Noise         Quantity        `json:"noise"`                 // localisation noise, standard deviation, m
 	NoiseVariance Quantity        `json:"noise_variance"`        // m2; may be negative when it was fitted
-	NoiseOrigin   string          `json:"noise_origin"`          // "stated", "fitted", "stated and fitted"
+	NoiseOrigin   string          `json:"noise_origin"`          // "stated", "fitted", "stated and fitted", "background and fitted"
 	LeastSquares  LeastSquares    `json:"least_squares"`         // closed-form fit, a check
 	Band          [2]Float        `json:"band_hz"`
 	Excluded      []Excluded      `json:"excluded,omitempty"`

@@ -124,10 +124,24 @@ func (r *Result) collectFindings(set *session.Settings, works []*work) {
 	add := func(f Finding) {
 		r.Findings = append(r.Findings, f)
 	}
-	nan := Float(math.NaN())
 	if r.Verdict.Status == Inconsistent {
 		add(Finding{Code: CodeInconsistent, Severity: Bad, Text: r.Verdict.Text + " " + capital(r.Verdict.Reason) + ".",
 			Remedy: "check length scale, temperature, bead diameter and height; repeat the recording", Value: r.Verdict.FamilyWiseP, Limit: familyLevel, Unit: "1"})
+	}
+	r.settingFindings(set, works)
+	for _, w := range works {
+		for _, f := range w.findings() {
+			add(f)
+		}
+	}
+	r.checkFindings()
+}
+
+// settingFindings tells what was assumed or not stated.
+func (r *Result) settingFindings(set *session.Settings, works []*work) {
+	nan := Float(math.NaN())
+	add := func(f Finding) {
+		r.Findings = append(r.Findings, f)
 	}
 	for _, s := range set.All() {
 		if s.Assumed {
@@ -147,12 +161,6 @@ func (r *Result) collectFindings(set *session.Settings, works []*work) {
 				Remedy: `of a camera, state it with --exposure "0.4 ms"`, Value: nan, Limit: nan})
 		}
 	}
-	for _, w := range works {
-		for _, f := range w.findings() {
-			add(f)
-		}
-	}
-	r.checkFindings()
 }
 
 func flagOf(key string) string {

@@ -5,6 +5,7 @@ import (
 	"math"
 
 	"beadwell/calib/relaxation"
+	"beadwell/psd"
 )
 
 // Sensitivity is the length per unit of the detector of one axis.
@@ -43,7 +44,7 @@ const (
 // sensitivity before it can be used, which takes a few rounds.
 func (w *work) scalePositions() error {
 	metres := w.noise
-	if metres.Known {
+	if metres.Known && !w.noiseRecorded {
 		w.noise.Variance, w.noise.VarianceU = 0, 0
 	}
 	last := math.Inf(1)
@@ -56,7 +57,7 @@ func (w *work) scalePositions() error {
 				`state it with --sensitivity "1.31(4) um/V", or record longer or faster`)
 		}
 		w.perUnit = math.Exp(w.logSensitivity())
-		if !metres.Known || metres.Variance == 0 || math.Abs(math.Log(w.perUnit)-last) < scaleEnd {
+		if !metres.Known || metres.Variance == 0 || w.noiseRecorded || math.Abs(math.Log(w.perUnit)-last) < scaleEnd {
 			break
 		}
 		last = math.Log(w.perUnit)
@@ -64,8 +65,18 @@ func (w *work) scalePositions() error {
 		w.noise.Variance, w.noise.VarianceU = metres.Variance/square, metres.VarianceU/square
 	}
 	w.sensitivityOrigin = SensitivityDrag
-	w.noise = metres
+	w.noise = w.noiseInMetres(metres)
 	return w.rescale()
+}
+
+// noiseInMetres returns the noise once the length of the recorded unit is known.
+func (w *work) noiseInMetres(stated psd.Noise) psd.Noise {
+	if w.noiseRecorded {
+		square := w.perUnit * w.perUnit
+		stated.Variance *= square
+		stated.VarianceU *= square
+	}
+	return stated
 }
 
 // rescale turns the positions into metres and fits them again.

@@ -22,13 +22,17 @@ type work struct {
 	opt       Options
 	phys      *physics
 	source    track.Axis
-	rate      float64 // Hz
-	start     float64 // s
-	exposure  float64 // s
-	exposureU float64 // s
+	recorded  track.Axis // as it was read
+	rate      float64    // Hz
+	start     float64    // s
+	exposure  float64    // s
+	exposureU float64    // s
 	noise     psd.Noise
-	detector  bool // positions were recorded in detector units
-	unscaled  bool // no sensitivity is known beforehand
+	// noiseRecorded tells that the noise is in the recorded unit squared, whose length is not known yet.
+	noiseRecorded bool
+	background    *background // where the noise comes from one
+	detector      bool        // positions were recorded in detector units
+	unscaled      bool        // no sensitivity is known beforehand
 	// perUnit is the length of the recorded unit [m], perUnitU its stated standard uncertainty.
 	perUnit, perUnitU float64
 	sensitivityOrigin string
@@ -51,7 +55,7 @@ type work struct {
 // newWork reads what the settings say of one axis and converts its positions.
 func newWork(rec *track.Recording, index int, set *session.Settings, opt Options) (*work, error) {
 	a := rec.Axes[index]
-	w := &work{name: rec.Name, axisName: a.Name, set: set, opt: opt, source: a, rate: rec.Rate, start: rec.Start}
+	w := &work{name: rec.Name, axisName: a.Name, set: set, opt: opt, source: a, recorded: a, rate: rec.Rate, start: rec.Start}
 	var err error
 	if w.phys, err = newPhysics(set, a.Name); err != nil {
 		return nil, err
@@ -63,7 +67,7 @@ func newWork(rec *track.Recording, index int, set *session.Settings, opt Options
 		return nil, err
 	}
 	w.setNoise()
-	return w, nil
+	return w, w.setBackground()
 }
 
 func (w *work) setExposure() error {
@@ -84,6 +88,7 @@ func (w *work) setExposure() error {
 // setLength finds the length of the recorded unit.
 func (w *work) setLength() error {
 	a := w.source
+	w.perUnit = 1
 	if !math.IsNaN(a.ToMetre) {
 		return nil
 	}
@@ -96,7 +101,6 @@ func (w *work) setLength() error {
 		return &SettingError{Key: key, Axis: a.Name, Problem: "is not given, but the positions are in pixels",
 			Remedy: `give the length of a pixel in the sample with --pixel "65.0(3) nm"`}
 	}
-	w.perUnit = 1
 	w.detector = key == "recording.sensitivity"
 	if w.unscaled = !ok; w.unscaled {
 		if w.opt.Adopt == RouteAmplitude {
@@ -207,6 +211,11 @@ func (w *work) fitOptions() psd.Options {
 	o := psd.Options{Exposure: w.exposure, Noise: w.noise, Form: w.form}
 	if s, ok := w.set.Lookup("fit.band", ""); ok && len(s.Bands) == 1 {
 		o.Band = psd.Range{Low: s.Bands[0].Low, High: s.Bands[0].High}
+	}
+	if w.background != nil {
+		for _, l := range w.background.lines {
+			o.Exclude = append(o.Exclude, psd.Range{Low: l.Low, High: l.High})
+		}
 	}
 	if s, ok := w.set.Lookup("fit.exclude", ""); ok {
 		for _, b := range s.Bands {
