@@ -23,6 +23,8 @@ import (
 
 // Options are choices that are not settings of the recording.
 type Options struct {
+	// Use is UseGood to calibrate only the longest part without what is bad. Empty: all.
+	Use string
 	// Adopt names the route to adopt, RouteDrag or RouteAmplitude, whatever the
 	// cross-check says. Empty: the combination, withheld when the routes disagree.
 	Adopt string
@@ -37,10 +39,10 @@ type Options struct {
 
 // choices returns what of the options a result records; nil when nothing was chosen.
 func (o Options) choices() *Choices {
-	if o.Adopt == "" {
+	if o.Adopt == "" && o.Use == "" {
 		return nil
 	}
-	return &Choices{Adopt: o.Adopt}
+	return &Choices{Adopt: o.Adopt, Use: o.Use}
 }
 
 // DataError says that a recording cannot carry a calibration.
@@ -64,12 +66,9 @@ func (e *DataError) Error() string {
 	return text
 }
 
-// Calibrate calibrates one recording with the settings in force.
-//
-// The error is a *SettingError when a setting is missing or impossible, a *DataError
-// when the recording cannot carry an estimate, and that of the context when it is
-// cancelled. The result does not depend on the number of processors.
-func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings, opt Options) (*Result, error) {
+// calibrateAll calibrates the whole of a recording; it leaves in seen what is needed to
+// go on from there.
+func calibrateAll(ctx context.Context, rec *track.Recording, set *session.Settings, opt Options, seen *pass) (*Result, error) {
 	if opt.Adopt != "" && opt.Adopt != RouteDrag && opt.Adopt != RouteAmplitude {
 		return nil, &SettingError{Key: "adopt", Problem: fmt.Sprintf("%q is neither %q nor %q", opt.Adopt, RouteDrag, RouteAmplitude)}
 	}
@@ -100,7 +99,7 @@ func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings,
 	for _, w := range works {
 		r.Axes = append(r.Axes, w.axis)
 	}
-	r.examine(rec, works)
+	seen.works, seen.good = works, r.examine(rec, works)
 	r.judge(works, opt)
 	r.findCause(works)
 	if err := r.propagate(ctx, works, opt.MonteCarlo); err != nil {

@@ -29,6 +29,7 @@ type scene struct {
 	noise    float64 // m
 	drift    float64 // m
 	axes     []string
+	events   []simulate.Event
 	settings map[string]string
 }
 
@@ -78,7 +79,7 @@ func (s scene) record(t *testing.T, seed uint64) *track.Recording {
 	if err != nil {
 		t.Fatal(err)
 	}
-	truth := simulate.Truth{Samples: s.samples, Rate: s.rate, Exposure: s.exposure}
+	truth := simulate.Truth{Samples: s.samples, Rate: s.rate, Exposure: s.exposure, Events: s.events}
 	rec := &track.Recording{Name: "simulated", Rate: s.rate, RateOrigin: "setting", Samples: s.samples, JitterRMS: math.NaN(), JitterMax: math.NaN(), RateU: math.NaN()}
 	for _, name := range s.axes {
 		wall, err := drag.Chamber{Radius: s.diameter / 2, Height: s.height, Perpendicular: name == "z"}.Wall()

@@ -23,9 +23,10 @@ type Check struct {
 	Ranges [][2]Float `json:"time_ranges_s,omitempty"` // on the clock of the recording
 }
 
-// examine checks the recording with what the fits know of it.
-func (r *Result) examine(rec *track.Recording, works []*work) {
-	in := health.Input{Rate: rec.Rate, Missing: rec.Missing, JitterRMS: rec.JitterRMS}
+// examine checks the recording with what the fits know of it, and returns the part that
+// nothing bad has a claim on.
+func (r *Result) examine(rec *track.Recording, works []*work) stretch {
+	in := health.Input{Rate: rec.Rate, Missing: rec.Missing, JitterRMS: rec.JitterRMS, Start: rec.Start}
 	for _, w := range works {
 		in.Exposure = w.exposure
 		process, _, _, _ := w.bestProcess()
@@ -45,22 +46,26 @@ func (r *Result) examine(rec *track.Recording, works []*work) {
 		}
 		in.Axes = append(in.Axes, a)
 	}
-	start := 0.0
-	if !math.IsNaN(rec.JitterRMS) {
-		start = rec.Start
-	}
+	checks := health.Run(in)
+	good := goodStretch(in, checks)
 	r.Checks = []Check{}
-	for _, c := range health.Run(in) {
+	for _, c := range checks {
 		if c.Code == slowSampling && c.Level == health.Bad && pooledFit(works, c.Axis) {
 			c.Level = health.Doubtful
 		}
-		out := Check{Code: c.Code, Name: c.Name, Axis: c.Axis, Level: c.Level.String(), Judged: c.Judged, Value: Float(c.Value), Limit: Float(c.Threshold),
-			Unit: c.Unit, Text: c.Text, Reason: c.Reason, Remedy: c.Remedy}
-		for _, s := range c.Ranges {
-			out.Ranges = append(out.Ranges, [2]Float{Float(start + s[0]), Float(start + s[1])})
-		}
-		r.Checks = append(r.Checks, out)
+		r.Checks = append(r.Checks, newCheck(c, rec.Start))
 	}
+	return good
+}
+
+// newCheck turns a check into the form of a result; start is the time of the first sample [s].
+func newCheck(c health.Check, start float64) Check {
+	out := Check{Code: c.Code, Name: c.Name, Axis: c.Axis, Level: c.Level.String(), Judged: c.Judged, Value: Float(c.Value), Limit: Float(c.Threshold),
+		Unit: c.Unit, Text: c.Text, Reason: c.Reason, Remedy: c.Remedy}
+	for _, s := range c.Ranges {
+		out.Ranges = append(out.Ranges, [2]Float{Float(start + s[0]), Float(start + s[1])})
+	}
+	return out
 }
 
 // slowSampling is the check that white samples fail. They say nothing of the corner

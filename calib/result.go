@@ -77,6 +77,7 @@ type Setting struct {
 // Choices are what the user asked of the calibration beside the settings.
 type Choices struct {
 	Adopt string `json:"adopt,omitempty"` // the route to adopt, "drag" or "amplitude", whatever the cross-check says
+	Use   string `json:"use,omitempty"`   // "good": the longest part without what is bad
 }
 
 // Recording describes the samples that were analysed.
@@ -87,8 +88,10 @@ type Recording struct {
 	Missing    int    `json:"missing"` // samples missing on every axis
 	Duration   Float  `json:"duration_s"`
 	Exposure   Float  `json:"exposure_s"`
-	Jitter     Float  `json:"jitter_s"` // rms of the stamps about the grid; null without stamps
-	Start      Float  `json:"start_s"`  // stamp of the first sample; null without stamps
+	Jitter     Float  `json:"jitter_s"`              // rms of the stamps about the grid; null without stamps
+	Start      Float  `json:"start_s"`               // stamp of the first sample; null without stamps
+	UsedFrom   *Float `json:"used_from_s,omitempty"` // beginning of the part that was used, on the clock of the recording; absent when all was
+	UsedTo     *Float `json:"used_to_s,omitempty"`   // its end
 }
 
 // Medium is the liquid as it was used.

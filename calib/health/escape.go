@@ -19,7 +19,7 @@ func (v *view) escape() Check {
 	}
 	at := v.second(float64(v.escapeAt * v.length))
 	c.Level = Bad
-	c.Text = fmt.Sprintf("The bead left the trap at about %s: it reached %s times the rms from before, and wandered freely.", moment(at, v.duration()), digits(v.beyond))
+	c.Text = fmt.Sprintf("The bead left the trap at about %s: it reached %s times the rms from before, and wandered freely.", v.moment(at), digits(v.beyond))
 	c.Remedy = "Use the part before. For the next recording a stiffer trap holds the bead longer." + caution
 	c.Ranges = [][2]float64{{at, v.duration()}}
 	return c

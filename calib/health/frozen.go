@@ -35,7 +35,7 @@ func (v *view) frozenSamples() Check {
 		c.Level = Doubtful
 	}
 	c.Text = fmt.Sprintf("%s of the samples repeat the one before exactly, the longest time for %d samples from %s on.",
-		percent(c.Value), v.frozen, moment(v.second(float64(v.frozenAt)), v.duration()))
+		percent(c.Value), v.frozen, v.moment(v.second(float64(v.frozenAt))))
 	c.Remedy = "Find out whether the program that records writes old values when a new one is late; record slower or to a faster disk."
 	if v.frozen > 10 {
 		c.Ranges = [][2]float64{{v.second(float64(v.frozenAt)), v.second(float64(v.frozenAt + v.frozen))}}

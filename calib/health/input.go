@@ -10,6 +10,7 @@ import (
 type Input struct {
 	Axes       []Axis
 	Rate       float64 // sampling rate [Hz]; without a positive one nothing that needs time is judged
+	Start      float64 // time of the first sample [s]; texts count from it, Ranges from the first sample
 	Exposure   float64 // exposure of each sample [s]
 	Missing    int     // samples that are missing on every axis
 	Duplicates int     // samples that came twice and were left out by the reader

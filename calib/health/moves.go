@@ -28,7 +28,7 @@ func (v *view) jump() Check {
 		c.Level = Bad
 	}
 	at := v.second(v.mean.step.at)
-	c.Text = fmt.Sprintf("The mean position jumped by %s, %s times the rms, at %s.", length(height, v.Unit), digits(c.Value), moment(at, v.duration()))
+	c.Text = fmt.Sprintf("The mean position jumped by %s, %s times the rms, at %s.", length(height, v.Unit), digits(c.Value), v.moment(at))
 	c.Remedy = "Look at the sample: a second bead in the trap, the bead touching the surface, or a knock against the microscope do this. Use the part before, or record again."
 	c.Ranges = [][2]float64{{at, v.duration()}}
 	if at < 0.1*v.duration() { // what came before is too short to be the record

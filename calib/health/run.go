@@ -35,6 +35,7 @@ type view struct {
 	Axis
 	summary
 	rate     float64 // [Hz]
+	start    float64 // [s]
 	exposure float64 // [s]
 	h        null
 	local    null // the same without a fit, from parts of the record
@@ -51,7 +52,7 @@ type view struct {
 
 // newView reads an axis and makes the decisions that several checks share.
 func newView(in Input, a Axis) *view {
-	v := &view{Axis: a, summary: summarise(a.X), rate: in.Rate, exposure: in.Exposure, escapeAt: -1}
+	v := &view{Axis: a, summary: summarise(a.X), rate: in.Rate, start: in.Start, exposure: in.Exposure, escapeAt: -1}
 	v.values = survey(a.X, v.summary)
 	n := int(v.total.n)
 	v.Known = a.Known && in.Rate > 0 && known(in.Rate)
@@ -143,6 +144,9 @@ func (v *view) upset() string {
 	}
 	return ""
 }
+
+// moment prints a time in the record [s] on the clock of the recording.
+func (v *view) moment(t float64) string { return moment(v.start+t, v.duration()) }
 
 // check starts the outcome of a check on an axis.
 func (v *view) check(code string) Check {

@@ -81,7 +81,7 @@ func (v *view) held() Check {
 	from := v.second(float64(s.from * v.per * v.length))
 	to := math.Min(v.second(float64(s.to*v.per*v.length)), v.duration())
 	c.Level = Bad
-	c.Text = fmt.Sprintf("From %s to %s the bead hardly moved: its variance was %s of that in the rest of the record.", moment(from, v.duration()), moment(to, v.duration()), percent(s.ratio))
+	c.Text = fmt.Sprintf("From %s to %s the bead hardly moved: its variance was %s of that in the rest of the record.", v.moment(from), v.moment(to), percent(s.ratio))
 	c.Remedy = "Use the part in which it moved. Raise the bead from the surface, or passivate the surface, and record again."
 	c.Ranges = [][2]float64{{from, to}}
 	return c
@@ -120,7 +120,7 @@ func (v *view) unsteady() Check {
 	}
 	from := v.second(float64(s.from * v.per * v.length))
 	to := math.Min(v.second(float64(s.to*v.per*v.length)), v.duration())
-	c.Text = fmt.Sprintf("From %s to %s the variance was %s times that in the rest of the record.", moment(from, v.duration()), moment(to, v.duration()), digits(s.ratio))
+	c.Text = fmt.Sprintf("From %s to %s the variance was %s times that in the rest of the record.", v.moment(from), v.moment(to), digits(s.ratio))
 	c.Remedy = "Look at the sample for a second bead or debris, and at the laser power for a change. Calibrate the parts apart." + caution
 	c.Ranges = [][2]float64{{from, to}}
 	return c

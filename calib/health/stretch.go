@@ -52,6 +52,10 @@ func GoodStretch(in Input, checks []Check) (from, to int, ok bool) {
 	return from, to, true
 }
 
+// Placed tells whether the ranges of a code say which part of the record is spoiled, so
+// that GoodStretch can leave it out.
+func Placed(code string) bool { return placed[code] }
+
 // placed are the codes whose ranges say which part of the record is spoiled.
 var placed = map[string]bool{
 	"lost-bead": true, "held-bead": true, "jump": true, "unsteady-motion": true, "frozen-samples": true,

@@ -1,6 +1,7 @@
 package health
 
 import (
+	"strings"
 	"testing"
 
 	"beadwell/calib/simulate"
@@ -58,3 +59,30 @@ func TestStretchOfEvents(t *testing.T) {
 		}
 	}
 }
+
+// Texts tell times on the clock of the recording, ranges count from its first sample.
+func TestTextsOnTheClock(t *testing.T) {
+	tr := trial{regime: detector, spoil: event(simulate.Escape, 0.4, func(*simulate.Event) {})}
+	in, plain := tr.run(1, 1)
+	in.Start = 5000
+	moved := Run(in)
+	found := false
+	for i, c := range moved {
+		if c.Level != Bad || c.Code != "lost-bead" {
+			continue
+		}
+		found = true
+		if len(c.Ranges) != 1 || c.Ranges[0] != plain[i].Ranges[0] {
+			t.Errorf("ranges %v, want %v", c.Ranges, plain[i].Ranges)
+		}
+		if want := "at about " + moment(5000+c.Ranges[0][0], in.duration()); !strings.Contains(c.Text, want) {
+			t.Errorf("text %q, want %q in it", c.Text, want)
+		}
+	}
+	if !found {
+		t.Error("the escape was not found")
+	}
+}
+
+// duration is the length of the record [s].
+func (in Input) duration() float64 { return float64(len(in.Axes[0].X)) / in.Rate }

@@ -24,6 +24,7 @@ type calibrateOptions struct {
 	out     string
 	force   bool
 	adopt   string
+	use     string
 	quiet   bool
 	drawing drawing
 	flags   settingFlags
@@ -64,11 +65,12 @@ func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions)
   beadwell calibrate --diameter '1.02(3) um' --temperature '24.5(5) C' run7.csv
   beadwell calibrate --format json run7.csv > run7.json
   beadwell calibrate --out results run7.csv run8.csv
+  beadwell calibrate --use good run7.csv
   beadwell calibrate --out results --figures pdf --figure-data run7.csv`,
 		Args: someArguments("a track"),
 		RunE: func(cmd *cobra.Command, args []string) error {
 			o.tracks = args
-			if err := notEmpty(cmd, "out", "session", "adopt"); err != nil {
+			if err := notEmpty(cmd, "out", "session", "adopt", "use"); err != nil {
 				return err
 			}
 			if err := o.validate(); err != nil {
@@ -87,11 +89,13 @@ func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions)
 	flags.StringVar(&o.out, "out", "", "also write text, JSON, CSV, report and figures of each recording into `FOLDER`")
 	flags.BoolVar(&o.force, "force", false, "with --out: replace files of another recording")
 	flags.StringVar(&o.adopt, "adopt", "", "adopt this route alone, also when the two disagree: `drag|amplitude`")
+	flags.StringVar(&o.use, "use", "", "calibrate only the longest part without what is bad, such as an escape: `good`")
 	flags.BoolVarP(&o.quiet, "quiet", "q", false, "no progress and no warnings on standard error")
 	addDrawingFlags(cmd, &o.drawing)
 	addSettingFlags(flags, &o.flags)
 	completeSettings(cmd)
 	completeWords(cmd, "format", formats...)
+	completeWords(cmd, "use", calib.UseGood)
 	completeWords(cmd, "adopt", calib.RouteDrag, calib.RouteAmplitude)
 	return cmd
 }
@@ -102,6 +106,11 @@ func (o calibrateOptions) validate() error {
 	}
 	if o.adopt != "" {
 		if err := oneOf("adopt", o.adopt, calib.RouteDrag, calib.RouteAmplitude); err != nil {
+			return err
+		}
+	}
+	if o.use != "" {
+		if err := oneOf("use", o.use, calib.UseGood); err != nil {
 			return err
 		}
 	}
@@ -155,7 +164,7 @@ func runCalibrate(ctx context.Context, a *app, o calibrateOptions) error {
 	progress := a.newProgress(len(o.tracks), o.quiet)
 	defer progress.end()
 	for _, path := range o.tracks {
-		found := a.calibrateTrack(ctx, src, path, o.adopt, created)
+		found := a.calibrateTrack(ctx, src, path, o, created)
 		if err := ctx.Err(); err != nil {
 			return err
 		}
@@ -174,12 +183,12 @@ func runCalibrate(ctx context.Context, a *app, o calibrateOptions) error {
 }
 
 // calibrateTrack reads and calibrates the recordings of one file.
-func (a *app) calibrateTrack(ctx context.Context, src *source, path, adopt, created string) []outcome {
+func (a *app) calibrateTrack(ctx context.Context, src *source, path string, o calibrateOptions, created string) []outcome {
 	recordings, err := src.load(ctx, path)
 	if err != nil {
 		return []outcome{{path: path, err: err}}
 	}
-	options := calib.Options{Adopt: adopt, Program: calib.Program{Name: "beadwell", Version: a.Version, Command: append([]string{"beadwell"}, a.args...)}}
+	options := calib.Options{Adopt: o.adopt, Use: o.use, Program: calib.Program{Name: "beadwell", Version: a.Version, Command: append([]string{"beadwell"}, a.args...)}}
 	outcomes := make([]outcome, len(recordings))
 	for i, one := range recordings {
 		outcomes[i] = outcome{path: path}

@@ -68,8 +68,8 @@ func invented(ctx context.Context, r *track.Recording, set *session.Settings, op
 		result.Verdict = calib.Verdict{Status: calib.Inconsistent, Text: "the routes disagree", FamilyWiseP: 1e-4}
 		result.Findings = []calib.Finding{{Code: "routes-differ", Severity: calib.Bad, Text: "by 30 %", Remedy: "look at the bead"}}
 	}
-	if opt.Adopt != "" {
-		result.Choices = &calib.Choices{Adopt: opt.Adopt}
+	if opt.Adopt != "" || opt.Use != "" {
+		result.Choices = &calib.Choices{Adopt: opt.Adopt, Use: opt.Use}
 	}
 	for _, axis := range r.Axes {
 		result.Axes = append(result.Axes, inventedAxis(axis.Name, opt.Adopt))

@@ -133,7 +133,7 @@ func (a *app) calibrateAgain(ctx context.Context, stored *calib.Result, path str
 	}
 	options := calib.Options{Program: calib.Program{Name: stored.Program.Name, Version: a.Version}}
 	if stored.Choices != nil {
-		options.Adopt = stored.Choices.Adopt
+		options.Adopt, options.Use = stored.Choices.Adopt, stored.Choices.Use
 	}
 	return a.Calibrate(ctx, recording, settings, options)
 }

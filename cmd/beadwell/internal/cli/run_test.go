@@ -120,11 +120,11 @@ func TestCalibrateFlags(t *testing.T) {
 	var got calibrateOptions
 	a := &app{}
 	cmd := a.calibrateCommand(func(_ context.Context, _ *app, o calibrateOptions) error { got = o; return nil })
-	cmd.SetArgs([]string{"--format", "csv", "--out", "o", "--force", "--adopt", "drag", "-q", "--session", "s", "--diameter", "1.02(3) um", "--noise", "x=4 nm", "a", "b"})
+	cmd.SetArgs([]string{"--format", "csv", "--out", "o", "--force", "--adopt", "drag", "--use", "good", "-q", "--session", "s", "--diameter", "1.02(3) um", "--noise", "x=4 nm", "a", "b"})
 	if err := cmd.Execute(); err != nil {
 		t.Fatal(err)
 	}
-	if got.format != "csv" || got.out != "o" || !got.force || got.adopt != "drag" || !got.quiet || got.session != "s" || !cmp.Equal(got.tracks, []string{"a", "b"}) {
+	if got.format != "csv" || got.out != "o" || !got.force || got.adopt != "drag" || got.use != "good" || !got.quiet || got.session != "s" || !cmp.Equal(got.tracks, []string{"a", "b"}) {
 		t.Errorf("options %+v", got)
 	}
 	noise, ok := got.flags.settings.Lookup("recording.noise", "x")

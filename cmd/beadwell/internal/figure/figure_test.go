@@ -281,3 +281,28 @@ func TestRelaxationTimeBelowTheFirstLagIsShown(t *testing.T) {
 		}
 	}
 }
+
+// What was not used of a recording is marked on the trace of every axis, and told in
+// words; the finding that says so is not marked once more.
+func TestTraceShowsWhatWasNotUsed(t *testing.T) {
+	r := specimen.Result()
+	from, to := calib.Float(1.5), calib.Float(4)
+	r.Recording.UsedFrom, r.Recording.UsedTo = &from, &to
+	r.Findings = []calib.Finding{{Code: calib.CodeGoodPart, Severity: calib.Note, Range: &[2]calib.Float{from, to}}}
+	for i := range r.Axes {
+		f := trace(r, &r.Axes[i])
+		var spans [][2]float64
+		for _, s := range f.panels[0].series {
+			if s.mark == strip {
+				spans = append(spans, [2]float64{s.low[0], s.high[0]})
+			}
+		}
+		end := float64(r.Axes[i].Trace.Step) * float64(len(r.Axes[i].Trace.Low))
+		if len(spans) != 2 || spans[0] != [2]float64{0, 1.5} || spans[1][0] != 4 || math.Abs(spans[1][1]-end) > 1e-9 {
+			t.Errorf("axis %s: marked %v, want 0 to 1.5 and 4 to %g", r.Axes[i].Name, spans, end)
+		}
+		if !strings.Contains(f.Description, "used only from 1.5 s to 4 s") {
+			t.Errorf("description %q", f.Description)
+		}
+	}
+}

@@ -23,6 +23,10 @@ func trace(r *calib.Result, a *calib.Axis) Figure {
 	}
 	p := panel{name: "trace", share: 1, x: unit.over(times), y: positionScale("position", reach)}
 	marks, named := findingSpans(r, a)
+	unused := unusedSpans(r, times)
+	for _, m := range unused {
+		p.add(m)
+	}
 	for _, m := range marks {
 		p.add(m)
 	}
@@ -33,6 +37,10 @@ func trace(r *calib.Result, a *calib.Axis) Figure {
 		if slices.ContainsFunc(marks, func(s series) bool { return s.ink == kind.ink }) {
 			f.key = append(f.key, kind)
 		}
+	}
+	if len(unused) > 0 {
+		f.key = append(f.key, keyItem{"not used", strip, left})
+		named = append(named, fmt.Sprintf("used only from %s to %s", plain(float64(*r.Recording.UsedFrom), "s"), plain(float64(*r.Recording.UsedTo), "s")))
 	}
 	if len(marks) > 0 {
 		f.height += 3 // for their names
@@ -73,6 +81,20 @@ func envelopeOf(a *calib.Axis) (s series, times, reach extent) {
 	return s, times, reach
 }
 
+// unusedSpans returns what lies before and behind the part that was used.
+func unusedSpans(r *calib.Result, times extent) (spans []series) {
+	from, to := r.Recording.UsedFrom, r.Recording.UsedTo
+	if from == nil || to == nil || !finite(float64(*from), float64(*to)) {
+		return nil
+	}
+	for _, ends := range [][2]float64{{times.low, float64(*from)}, {float64(*to), times.high}} {
+		if ends[1] > ends[0] {
+			spans = append(spans, series{name: "not used", mark: strip, ink: left, front: true, low: []float64{ends[0]}, high: []float64{ends[1]}})
+		}
+	}
+	return spans
+}
+
 // smaller and larger pass over what is not a number.
 func smaller(a, b float64) float64 {
 	if !(b >= a) && finite(b) {
@@ -92,6 +114,9 @@ func larger(a, b float64) float64 {
 // their names in words.
 func findingSpans(r *calib.Result, a *calib.Axis) (marks []series, named []string) {
 	for _, finding := range r.Findings {
+		if finding.Code == calib.CodeGoodPart { // shown by what was not used
+			continue
+		}
 		if finding.Range == nil || (finding.Axis != "" && finding.Axis != a.Name) {
 			continue
 		}

@@ -91,6 +91,9 @@ func readSection(r *calib.Result) section {
 		{Term: "Jitter of the time stamps", Text: moment(rec.Jitter, "us")},
 		{Term: "First time stamp", Text: moment(rec.Start, "s")},
 	}
+	if rec.UsedFrom != nil && rec.UsedTo != nil {
+		s.Facts = append(s.Facts, fact{Term: "Part used", Text: plainNumber(*rec.UsedFrom, "s") + " to " + plainNumber(*rec.UsedTo, "s")})
+	}
 	t := table{Caption: "Columns of the file", Head: heads("header", "used as", "unit")}
 	var rows []tableRow
 	for _, c := range r.ReadAs.Columns {
