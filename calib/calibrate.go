@@ -39,10 +39,14 @@ type Options struct {
 
 // choices returns what of the options a result records; nil when nothing was chosen.
 func (o Options) choices() *Choices {
-	if o.Adopt == "" && o.Use == "" {
+	if o.Adopt == "" && o.Use == "" && o.MonteCarlo.Draws == 0 {
 		return nil
 	}
-	return &Choices{Adopt: o.Adopt, Use: o.Use}
+	c := &Choices{Adopt: o.Adopt, Use: o.Use, Draws: o.MonteCarlo.Draws}
+	if c.Draws > 0 {
+		c.Seed = fmt.Sprint(o.MonteCarlo.Seed)
+	}
+	return c
 }
 
 // DataError says that a recording cannot carry a calibration.

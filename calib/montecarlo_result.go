@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"math"
 	"math/rand/v2"
+	"strconv"
 )
 
 // MonteCarloOptions ask for a propagation of distributions. The zero value asks for none.
@@ -36,6 +37,22 @@ type MonteCarloAxis struct {
 	Tolerance  Float    `json:"tolerance"`            // half a unit of the second digit of the standard uncertainty, N/m
 	EndError   Float    `json:"end_error"`            // standard error of the ends from the finite number of draws, N/m
 	Agrees     bool     `json:"agrees"`               // both ends agree within the tolerance and twice their error
+}
+
+// Options returns the options that make the same choices again.
+func (c *Choices) Options() (Options, error) {
+	if c == nil {
+		return Options{}, nil
+	}
+	o := Options{Adopt: c.Adopt, Use: c.Use, MonteCarlo: MonteCarloOptions{Draws: c.Draws}}
+	if c.Draws > 0 {
+		seed, err := strconv.ParseUint(c.Seed, 10, 64)
+		if err != nil {
+			return o, fmt.Errorf("the seed %q of the stored draws is no whole number", c.Seed)
+		}
+		o.MonteCarlo.Seed = seed
+	}
+	return o, nil
 }
 
 // propagate draws the inputs of all adopted axes together.

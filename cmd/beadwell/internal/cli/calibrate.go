@@ -27,8 +27,17 @@ type calibrateOptions struct {
 	use     string
 	quiet   bool
 	drawing drawing
+	draws   int
+	seed    uint64
 	flags   settingFlags
 }
+
+// Limits of the number of Monte Carlo draws: with fewer than 1000 the ends of a 95 % interval rest on 25 of
+// them; more than ten million fill the memory.
+const (
+	leastDraws = 1000
+	mostDraws  = 10_000_000
+)
 
 const calibrateLong = `calibrate reads recordings of a trapped bead, estimates the stiffness of the
 trap on every axis in several ways, compares them, and prints the stiffness to
@@ -90,6 +99,8 @@ func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions)
 	flags.BoolVar(&o.force, "force", false, "with --out: replace files of another recording")
 	flags.StringVar(&o.adopt, "adopt", "", "adopt this route alone, also when the two disagree: `drag|amplitude`")
 	flags.StringVar(&o.use, "use", "", "calibrate only the longest part without what is bad, such as an escape: `good`")
+	flags.IntVar(&o.draws, "monte-carlo", 0, "propagate distributions with this `number` of draws, and compare with the budget")
+	flags.Uint64Var(&o.seed, "seed", 1, "with --monte-carlo: whole `number` that selects the draws")
 	flags.BoolVarP(&o.quiet, "quiet", "q", false, "no progress and no warnings on standard error")
 	addDrawingFlags(cmd, &o.drawing)
 	addSettingFlags(flags, &o.flags)
@@ -114,10 +125,22 @@ func (o calibrateOptions) validate() error {
 			return err
 		}
 	}
+	if o.draws != 0 && (o.draws < leastDraws || o.draws > mostDraws) {
+		return usageError("100000 draws give the ends of an interval to 1 % of the standard uncertainty", "--monte-carlo %d is not between %d and %d", o.draws, leastDraws, mostDraws)
+	}
 	if o.force && o.out == "" {
 		return usageError("leave it out, or add --out FOLDER", "--force has no effect without --out")
 	}
 	return checkTracks(o.tracks)
+}
+
+// choices are the options that are no settings.
+func (o calibrateOptions) choices() calib.Options {
+	options := calib.Options{Adopt: o.adopt, Use: o.use}
+	if o.draws > 0 {
+		options.MonteCarlo = calib.MonteCarloOptions{Draws: o.draws, Seed: o.seed}
+	}
+	return options
 }
 
 // checkTracks refuses a track that is given twice, and a track list alone.
@@ -164,7 +187,7 @@ func runCalibrate(ctx context.Context, a *app, o calibrateOptions) error {
 	progress := a.newProgress(len(o.tracks), o.quiet)
 	defer progress.end()
 	for _, path := range o.tracks {
-		found := a.calibrateTrack(ctx, src, path, o, created)
+		found := a.calibrateTrack(ctx, src, path, o.choices(), created)
 		if err := ctx.Err(); err != nil {
 			return err
 		}
@@ -183,12 +206,12 @@ func runCalibrate(ctx context.Context, a *app, o calibrateOptions) error {
 }
 
 // calibrateTrack reads and calibrates the recordings of one file.
-func (a *app) calibrateTrack(ctx context.Context, src *source, path string, o calibrateOptions, created string) []outcome {
+func (a *app) calibrateTrack(ctx context.Context, src *source, path string, options calib.Options, created string) []outcome {
 	recordings, err := src.load(ctx, path)
 	if err != nil {
 		return []outcome{{path: path, err: err}}
 	}
-	options := calib.Options{Adopt: o.adopt, Use: o.use, Program: calib.Program{Name: "beadwell", Version: a.Version, Command: append([]string{"beadwell"}, a.args...)}}
+	options.Program = calib.Program{Name: "beadwell", Version: a.Version, Command: append([]string{"beadwell"}, a.args...)}
 	outcomes := make([]outcome, len(recordings))
 	for i, one := range recordings {
 		outcomes[i] = outcome{path: path}

@@ -131,10 +131,11 @@ func (a *app) calibrateAgain(ctx context.Context, stored *calib.Result, path str
 	if err != nil {
 		return nil, err
 	}
-	options := calib.Options{Program: calib.Program{Name: stored.Program.Name, Version: a.Version}}
-	if stored.Choices != nil {
-		options.Adopt, options.Use = stored.Choices.Adopt, stored.Choices.Use
+	options, err := stored.Choices.Options()
+	if err != nil {
+		return nil, err
 	}
+	options.Program = calib.Program{Name: stored.Program.Name, Version: a.Version}
 	return a.Calibrate(ctx, recording, settings, options)
 }
 

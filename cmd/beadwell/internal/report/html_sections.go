@@ -48,18 +48,18 @@ type cellText struct {
 }
 
 func sections(r *calib.Result) []section {
-	return []section{
+	return append(whySections(r), []section{
 		{ID: "estimates", Title: "Estimates", Paragraphs: []string{
 			"Two routes lead from a recording to a stiffness: through the drag on the bead, and through the amplitude of its motion. " +
 				"They fail for different reasons; estimates of the same route are nearly one statistic."},
 			Tables: []table{estimatesTable(r), agreementTable(r)}},
 		{ID: "drag", Title: "Measured and computed drag", Tables: []table{dragTable(r)}},
-		{ID: "budget", Title: "Uncertainty budget", Paragraphs: budgetNotes(r), Tables: budgetTables(r)},
+		{ID: "budget", Title: "Uncertainty budget", Paragraphs: append(budgetFacts(r), budgetNotes(r)...), Tables: budgetTables(r)},
 		{ID: "fits", Title: "Fits", Tables: []table{fitsTable(r)}},
 		readSection(r),
 		{ID: "settings", Title: "Settings", Tables: []table{settingsTable(r)}},
 		provenance(r),
-	}
+	}...)
 }
 
 // budgetNotes says for which axes there is no budget.

@@ -151,8 +151,8 @@ func budgetTables(r *calib.Result) []table {
 		if len(a.Adopted.Budget) == 0 {
 			continue
 		}
-		t := table{Caption: "Contributions to the uncertainty of the stiffness along " + Plain(a.Name), Head: heads("input", "value", "sensitivity", "contribution", "share of the variance")}
-		for i := range t.Head[1:4] {
+		t := table{Caption: "Contributions to the uncertainty of the stiffness along " + Plain(a.Name), Head: heads("input", "value", "sensitivity", "degrees of freedom", "contribution", "share of the variance")}
+		for i := range t.Head[1:5] {
 			t.Head[i+1].Number = true
 		}
 		var rows []tableRow
@@ -179,7 +179,11 @@ func budgetRow(line calib.BudgetLine) tableRow {
 	if line.Share > 0 {
 		share.Bar = fmt.Sprintf("%.1f", 100*min(float64(line.Share), 1))
 	}
-	return tableRow{Name: typeset(line.Input), Cells: []cellText{{Text: value, Number: true}, {Text: sensitivity, Number: true},
+	freedom := "∞"
+	if line.Freedom > 0 { // 0 in results that were stored before it was there
+		freedom = twoDigits(float64(line.Freedom))
+	}
+	return tableRow{Name: typeset(line.Input), Cells: []cellText{{Text: value, Part: typeset(line.Note), Number: true}, {Text: sensitivity, Number: true}, {Text: freedom, Number: true},
 		{Text: percent(line.Contribution), Number: true}, share}}
 }
 

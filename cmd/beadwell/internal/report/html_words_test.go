@@ -71,12 +71,12 @@ func TestBudgetRow(t *testing.T) {
 	for _, c := range row.Cells {
 		got = append(got, c.Text)
 	}
-	want := []string{"22.0(20)\u00a0°C", "1.2", "0.81\u00a0%", "34\u00a0%"}
+	want := []string{"22.0(20)\u00a0°C", "1.2", "∞", "0.81\u00a0%", "34\u00a0%"}
 	if diff := cmp.Diff(want, got); diff != "" {
 		t.Error(diff)
 	}
-	if row.Cells[3].Bar != "34.0" {
-		t.Errorf("bar of %s percent, want 34.0", row.Cells[3].Bar)
+	if row.Cells[4].Bar != "34.0" {
+		t.Errorf("bar of %s percent, want 34.0", row.Cells[4].Bar)
 	}
 	if row := budgetRow(calib.BudgetLine{Value: calib.Float(math.NaN())}); row.Cells[0].Text != dash {
 		t.Errorf("value %q of an input without one, want %q", row.Cells[0].Text, dash)

@@ -52,6 +52,15 @@ func storedSample() *calib.Result {
 		Bead:    calib.Bead{Diameter: about(1.02e-6, 0, 3e-8, "m"), Height: about(8e-6, 0, 5e-7, "m")},
 		Axes:    []calib.Axis{x, y, z},
 		Verdict: calib.Verdict{Status: calib.Inconsistent, Text: "do not use z before its cause is known", Reason: "on z the routes differ by 31(6) %, p = 0.0002", FamilyWiseP: 0.0006},
+		Diagnosis: &calib.Diagnosis{Text: "Any one of these would reconcile the routes: a length scale 6 % smaller; or a temperature 5.4 K higher.", Causes: []calib.Cause{
+			{Code: calib.CauseScale, Name: "length scale", Stated: about(100e-9, 0, 1e-9, "m"), Needed: about(94e-9, 0, 1.2e-9, "m"), Ratio: 0.94, Change: -6, PValue: 1, Tied: true,
+				Text: "length scale 6 % smaller", Measurement: "image a stage micrometre"},
+			{Code: calib.CauseTemperature, Name: "temperature", Stated: about(297.65, 0, 0.5, "K"), Needed: about(303.05, 0, 1.2, "K"), Ratio: 1.018, Change: 10.8, Likelihood: -0.2, PValue: 1, Tied: true,
+				Text: "temperature 5.4 K higher", Measurement: "measure it with the laser on", Caution: "Trained users only."},
+			{Code: calib.CauseHeight, Name: "height", Stated: calib.Withheld("m", "far from any surface"), Needed: calib.Withheld("m", "no value of it brings the routes together"), Ratio: unknown, Change: unknown,
+				Likelihood: -9, ChiSquare: 18, Freedom: 1, PValue: 2e-5, Text: "surface", Measurement: "repeat higher up"}}},
+		MonteCarlo: &calib.MonteCarlo{Draws: 10000, Seed: "1", Text: "10000 draws agree with the budget.", Correlation: [][]calib.Float{{1}}, Axes: []calib.MonteCarloAxis{
+			{Axis: "x", Mean: 52.4e-6, Standard: 1.1e-6, Interval95: [2]calib.Float{50.3e-6, 54.6e-6}, Shortest95: [2]calib.Float{50.2e-6, 54.5e-6}, Tolerance: 5e-8, EndError: 3e-8, Agrees: true}}},
 		Findings: []calib.Finding{
 			{Code: "slow-drift", Severity: calib.Doubtful, Axis: "x", Text: "the mean moves by 12 nm over the recording", Remedy: "let the stage settle, then record again",
 				Value: 12e-9, Limit: 8e-9, Unit: "m", Range: &[2]calib.Float{0, 10}},
@@ -66,9 +75,15 @@ func sampleAxis(name string, k float64) calib.Axis {
 	}
 	return calib.Axis{
 		Name: name, Orientation: "parallel", Mean: 1e-9,
-		Wall:    calib.Wall{Factor: about(1.04, 0, 0.003, "1"), Faxen: 1.0399, FaxenError: -1e-4, Method: "exact series"},
-		Drag:    about(9.1e-9, 0, 2.9e-10, "N s/m"),
-		Adopted: calib.Adopted{Stiffness: stiffness(1, 0.006, 0.021), Basis: "drag and amplitude", Weights: map[string]calib.Float{calib.RouteDrag: 0.31, calib.RouteAmplitude: 0.69}},
+		Wall: calib.Wall{Factor: about(1.04, 0, 0.003, "1"), Faxen: 1.0399, FaxenError: -1e-4, Method: "exact series"},
+		Drag: about(9.1e-9, 0, 2.9e-10, "N s/m"),
+		Adopted: calib.Adopted{Stiffness: stiffness(1, 0.006, 0.021), Basis: "drag and amplitude", Weights: map[string]calib.Float{calib.RouteDrag: 0.31, calib.RouteAmplitude: 0.69},
+			Budget: []calib.BudgetLine{
+				{Input: "bead diameter", Value: 1.02e-6, Unit: "m", StandardUncertainty: 3e-8, Sensitivity: 0.65, Contribution: 0.0201, Share: 0.92, Freedom: unknown, Note: "with its effect on the wall factor"},
+				{Input: "wall model", Value: 1.04, Unit: "1", StandardUncertainty: 1e-5, Sensitivity: 1, Contribution: 1e-5, Share: 2e-7, Freedom: unknown},
+				{Input: "statistics of the recording", Value: calib.Float(k), Unit: "N/m", StandardUncertainty: calib.Float(0.006 * k), Sensitivity: 1, Contribution: 0.006, Share: 0.08, Freedom: 29000}},
+			Expanded: &calib.Expanded{Coverage: 0.95, Factor: 1.96, Freedom: unknown, Uncertainty: calib.Float(0.0412 * k)},
+			Halving:  "To halve the combined standard uncertainty: know the bead diameter to 1.2 % in place of 2.9 %."},
 		Estimates: []calib.Estimate{
 			{Leg: calib.LegSpectrum, Route: calib.RouteDrag, Stiffness: stiffness(1.01, 0.005, 0.03)},
 			{Leg: calib.LegEquipartition, Route: calib.RouteAmplitude, Stiffness: stiffness(0.99, 0.008, 0.009)},

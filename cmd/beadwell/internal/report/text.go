@@ -24,6 +24,8 @@ func Text(w io.Writer, r *calib.Result, opt TextOptions) error {
 	p.answer()
 	p.estimates()
 	p.drag()
+	p.diagnosis()
+	p.budget()
 	p.fits()
 	p.readAs()
 	p.assumed()
