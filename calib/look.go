@@ -8,9 +8,6 @@ import (
 	"beadwell/calib/track"
 )
 
-// LookVersion names the layout of a Look.
-const LookVersion = "beadwell-look/1"
-
 // Look is what can be said of a recording without a fit: how it was read, and the
 // checks that need no model.
 type Look struct {

@@ -3,9 +3,11 @@ package cli
 import (
 	"context"
 	"fmt"
+	"slices"
 
 	"github.com/spf13/cobra"
 
+	"beadwell/calib"
 	"beadwell/calib/quantity"
 	"beadwell/calib/track"
 	"beadwell/cmd/beadwell/internal/report"
@@ -15,6 +17,7 @@ import (
 type checkOptions struct {
 	tracks  []string
 	session string
+	format  string
 	flags   settingFlags
 }
 
@@ -26,11 +29,15 @@ func (a *app) checkCommand(run func(context.Context, *app, checkOptions) error) 
 		Long: `check reads recordings and tells how: delimiter, decimal mark, columns, units,
 sampling rate, rows, what is missing, which settings would be used, and what the
 health checks that need no fit say. A unit or a rate that nobody stated is a
-remark here, not an error. A bad check gives the exit status 3.`,
-		Example: "  beadwell check run7.csv\n  beadwell check --unit nm run7.csv",
+remark here, not an error. A bad check gives the exit status 3. As CSV there is one
+row for each check.`,
+		Example: "  beadwell check run7.csv\n  beadwell check --unit nm run7.csv\n  beadwell check --format json run7.csv run8.csv",
 		Args:    someArguments("a track"),
 		RunE: func(cmd *cobra.Command, args []string) error {
 			if err := notEmpty(cmd, "session"); err != nil {
+				return err
+			}
+			if err := oneOf("format", o.format, formats...); err != nil {
 				return err
 			}
 			if err := checkTracks(args); err != nil {
@@ -41,14 +48,17 @@ remark here, not an error. A bad check gives the exit status 3.`,
 		},
 	}
 	cmd.Flags().StringVar(&o.session, "session", "", "settings `FILE` in place of session.toml beside the track")
+	cmd.Flags().StringVar(&o.format, "format", "text", "form of what is found, on standard output: `text|json|csv`")
 	addSettingFlags(cmd.Flags(), &o.flags)
 	completeSettings(cmd)
+	completeWords(cmd, "format", formats...)
 	return cmd
 }
 
 func runCheck(ctx context.Context, a *app, o checkOptions) error {
 	src := &source{app: a, file: o.session, flags: &o.flags, inspect: true}
 	var failed []error
+	set := report.LookSet{}
 	distrust := false
 	for i, path := range o.tracks {
 		recordings, err := src.load(ctx, path)
@@ -58,15 +68,27 @@ func runCheck(ctx context.Context, a *app, o checkOptions) error {
 		case err != nil && len(o.tracks) == 1:
 			return err
 		case err != nil:
-			failed = append(failed, err)
+			p := problemOf(err)
+			p.Input = path
+			failed, set.Failures = append(failed, err), append(set.Failures, p)
 			continue
 		}
 		for j, one := range recordings {
+			look := calib.LookAt(one.recording, one.settings)
+			look.Input.Name = path // the bead stands beside it
+			distrust = distrust || slices.ContainsFunc(look.Checks, func(c calib.Check) bool { return c.Level == calib.Bad })
+			set.Looks = append(set.Looks, look)
+			if o.format != "text" {
+				continue
+			}
 			if i+j > 0 {
 				fmt.Fprintln(a.Out)
 			}
-			distrust = a.printCheck(one) || distrust
+			a.printCheck(one, look.Checks)
 		}
+	}
+	if err := a.printLooks(set, o.format); err != nil {
+		return err
 	}
 	if len(failed) > 0 {
 		return partial(failed, len(o.tracks))
@@ -77,9 +99,19 @@ func runCheck(ctx context.Context, a *app, o checkOptions) error {
 	return nil
 }
 
-// printCheck prints what there is to say of one recording, and tells whether a
-// check says not to trust it.
-func (a *app) printCheck(one loaded) (bad bool) {
+// printLooks prints what was found in a form for programs.
+func (a *app) printLooks(set report.LookSet, format string) error {
+	switch format {
+	case "json":
+		return report.LooksJSON(a.Out, set)
+	case "csv":
+		return report.LooksCSV(a.Out, set)
+	}
+	return nil
+}
+
+// printCheck prints what there is to say of one recording.
+func (a *app) printCheck(one loaded, checks []calib.Check) {
 	r := one.recording
 	fmt.Fprintf(a.Out, "%s\n", report.Plain(r.Name))
 	fmt.Fprintf(a.Out, "  read as: %s\n", report.Plain(r.ReadAs.String()))
@@ -90,12 +122,11 @@ func (a *app) printCheck(one loaded) (bad bool) {
 	for _, note := range r.Notes {
 		fmt.Fprintf(a.Out, "  note: %s\n", report.Plain(note.Text))
 	}
-	bad = a.printHealth(examine(r, one.settings))
+	a.printHealth(checks)
 	fmt.Fprintln(a.Out, "  settings:")
 	for _, s := range one.settings.All() {
 		fmt.Fprintf(a.Out, "    %s\n", report.Plain(settingLine(s)))
 	}
-	return bad
 }
 
 // jitterShown is the jitter over the sampling interval from which on it is told:
