@@ -123,18 +123,18 @@ func shown(value, u float64, unit string) string {
 var axesOf = map[string]figure.AxisOf{
 	"W":         {Quantity: "laser power", Unit: "mW", SI: "W", Factor: 1e3},
 	"m":         {Quantity: "height, as stated", Unit: "µm", SI: "m", Factor: 1e6},
-	"recording": {Quantity: "recording", Unit: "1", SI: "1", Factor: 1},
+	"recording": {Quantity: "recording", Unit: "", SI: "1", Factor: 1},
 	"N/m":       {Quantity: "stiffness", Unit: "pN/µm", SI: "N/m", Factor: 1e6},
 	"N s/m":     {Quantity: "measured drag", Unit: "nN s/m", SI: "N s/m", Factor: 1e9},
 	"Hz":        {Quantity: "corner frequency", Unit: "Hz", SI: "Hz", Factor: 1},
-	"1":         {Quantity: "ratio", Unit: "1", SI: "1", Factor: 1},
+	"1":         {Quantity: "ratio", Unit: "", SI: "1", Factor: 1},
 }
 
 // unitsShown are those of the values of a series, with the factor from SI.
 var unitsShown = map[string]struct {
 	unit   string
 	factor float64
-}{"N/(m W)": {"pN/(um mW)", 1e3}, "N/m": {"pN/um", 1e6}, "m": {"um", 1e6}, "Pa s": {"mPa s", 1e3}, "1/m": {"1/um", 1e-6}}
+}{"N/(m W)": {"pN/(um mW)", 1e3}, "N/m": {"pN/um", 1e6}, "m": {"um", 1e6}, "Pa s": {"mPa s", 1e3}, "1/m": {"1/um", 1e-6}, "m/V": {"um/V", 1e6}}
 
 func indexSeriesOf(i int, s Series) indexSeries {
 	out := indexSeries{ID: fmt.Sprintf("series-%d", i+1), Title: s.Kind + ", " + s.Axis, Reason: s.Reason}

@@ -59,6 +59,7 @@ func (a *app) root() *cobra.Command {
 		a.initCommand(runInit),
 		a.reportCommand(runReport),
 		a.collectCommand(runCollect),
+		a.trendCommand(runTrend),
 		a.dragCommand(runDrag),
 		a.planCommand(runPlan),
 		a.forceCommand(runForce),

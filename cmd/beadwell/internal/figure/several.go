@@ -18,10 +18,11 @@ type Recordings struct {
 	Description string // its first sentence is the caption
 	Across, Up  AxisOf
 	X, Y        []float64
-	Low, High   []float64    // ends of the bars
-	Outlier     []bool       // shown as rings
-	Curve       [][2]float64 // the fit
-	Upright     float64      // a line up at this place, named UprightName; NaN: none
+	Low, High   []float64       // ends of the bars
+	Outlier     []bool          // shown as rings
+	Curve       [][2]float64    // the fit
+	Limits      [2][][2]float64 // dashed lines, such as those of a control chart
+	Upright     float64         // a line up at this place, named UprightName; NaN: none
 	UprightName string
 }
 
@@ -50,6 +51,15 @@ func OfRecordings(r Recordings) Figure {
 		across.show(at[0])
 		up.show(at[1])
 	}
+	var dashed []series
+	for _, line := range r.Limits {
+		limit := series{name: "limit", mark: dashes, ink: rule}
+		for _, at := range line {
+			limit.x, limit.y = append(limit.x, at[0]), append(limit.y, at[1])
+			up.show(at[1])
+		}
+		dashed = append(dashed, limit)
+	}
 	if across.empty() || up.empty() {
 		return f.empty("no recording of the series has the number")
 	}
@@ -59,6 +69,9 @@ func OfRecordings(r Recordings) Figure {
 	p.y = scale{quantity: r.Up.Quantity, unit: r.Up.Unit, si: r.Up.SI, factor: r.Up.Factor}.over(up)
 	if finite(r.Upright) {
 		p.add(series{name: r.UprightName, mark: upright, ink: rule, x: []float64{r.Upright}, label: r.UprightName})
+	}
+	for _, limit := range dashed {
+		p.add(limit)
 	}
 	p.add(fit)
 	p.add(plain)
@@ -70,6 +83,9 @@ func OfRecordings(r Recordings) Figure {
 	}
 	if len(fit.x) > 0 {
 		f.key = append(f.key, keyItem{"fit", curve, adopted})
+	}
+	if len(r.Limits[0]) > 0 {
+		f.key = append(f.key, keyItem{"limits", dashes, rule})
 	}
 	return f.described(r.Description)
 }
