@@ -157,6 +157,7 @@ func (b *batchWork) calibrate(ctx context.Context, path string) ([]batch.Outcome
 			outcomes = append(outcomes, batch.Outcome{Aside: "role " + role.Word + ": a recording that is not calibrated on its own"})
 			continue
 		}
+		options.Background = one.background
 		result, err := b.app.Calibrate(ctx, one.recording, one.settings, options)
 		switch {
 		case ctx.Err() != nil:

@@ -215,6 +215,7 @@ func (a *app) calibrateTrack(ctx context.Context, src *source, path string, opti
 	outcomes := make([]outcome, len(recordings))
 	for i, one := range recordings {
 		outcomes[i] = outcome{path: path}
+		options.Background = one.background
 		result, err := a.Calibrate(ctx, one.recording, one.settings, options)
 		if err != nil {
 			outcomes[i].err = err

@@ -9,6 +9,7 @@ import (
 	"os"
 	"path/filepath"
 	"strconv"
+	"sync"
 
 	"beadwell/calib/session"
 	"beadwell/calib/track"
@@ -21,6 +22,9 @@ type source struct {
 	flags   *settingFlags
 	inspect bool // a first look: an unknown unit or rate is no error
 	folders map[string]folderSettings
+
+	lock        sync.Mutex
+	backgrounds map[string]*track.Recording // read before, by path
 }
 
 // folderSettings are what a folder says of its recordings.
@@ -34,6 +38,8 @@ type loaded struct {
 	path      string // as on the command line
 	recording *track.Recording
 	settings  *session.Settings
+	// background is the recording of the noise that the settings name, if they do.
+	background *track.Recording
 }
 
 // load reads the recordings of one file: one, or one for each bead in it.
@@ -50,7 +56,7 @@ func (s *source) load(ctx context.Context, path string) ([]loaded, error) {
 	if err != nil {
 		return nil, err
 	}
-	recordings, err := s.read(ctx, path, options)
+	recordings, err := s.readWithStage(ctx, path, options, before)
 	if err != nil {
 		return nil, err
 	}
@@ -61,6 +67,9 @@ func (s *source) load(ctx context.Context, path string) ([]loaded, error) {
 			return nil, err
 		}
 		if err := checkEffects(recording, all[i].settings); err != nil && !s.inspect {
+			return nil, err
+		}
+		if all[i].background, err = s.background(ctx, path, all[i].settings); err != nil {
 			return nil, err
 		}
 	}
@@ -148,10 +157,13 @@ func (s *source) readOptions(path string, settings *session.Settings) (track.Opt
 	if rate, ok := settings.Lookup("recording.rate", ""); ok {
 		o.Rate, o.RateForced = rate.Value.SI, rate.Origin == session.FromFlag
 	}
-	for _, column := range []string{"time", "x", "y", "z", "stage"} {
+	for _, column := range []string{"time", "x", "y", "z"} {
 		if named, ok := settings.Lookup("recording.columns", column); ok {
 			o.Columns[column] = named.Word
 		}
+	}
+	if named, ok := settings.Lookup("recording.columns", "stage"); ok {
+		o.Keep = []string{named.Word}
 	}
 	return o, setUnit(&o, settings)
 }

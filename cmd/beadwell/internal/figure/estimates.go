@@ -22,6 +22,10 @@ func LegName(leg string) string {
 		return "MSD plateau"
 	case calib.LegSpectrumAmplitude:
 		return "spectrum amplitude"
+	case calib.LegDriven:
+		return "driven stage"
+	case calib.LegFlow:
+		return "constant flow"
 	}
 	return strings.ReplaceAll(clean(leg), "_", " ")
 }
@@ -55,7 +59,7 @@ func estimates(r *calib.Result) Figure {
 
 // ordered returns the estimates of one axis, drag route first.
 func ordered(a *calib.Axis) (list []calib.Estimate) {
-	for _, route := range []string{calib.RouteDrag, calib.RouteAmplitude} {
+	for _, route := range []string{calib.RouteDrag, calib.RouteAmplitude, calib.RouteDriven} {
 		for _, e := range a.Estimates {
 			if e.Route == route {
 				list = append(list, e)

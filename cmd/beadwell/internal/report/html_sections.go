@@ -48,7 +48,8 @@ type cellText struct {
 }
 
 func sections(r *calib.Result) []section {
-	return append(whySections(r), []section{
+	all := append(whySections(r), kindSections(r)...)
+	return append(all, []section{
 		{ID: "estimates", Title: "Estimates", Paragraphs: []string{
 			"Two routes lead from a recording to a stiffness: through the drag on the bead, and through the amplitude of its motion. " +
 				"They fail for different reasons; estimates of the same route are nearly one statistic."},

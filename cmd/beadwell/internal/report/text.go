@@ -22,11 +22,18 @@ func Text(w io.Writer, r *calib.Result, opt TextOptions) error {
 	p := newPrinter(r, opt)
 	p.headline()
 	p.answer()
-	p.estimates()
-	p.drag()
+	p.kinds()
+	if holdsTrap(r) {
+		p.estimates()
+	}
+	if r.Role != calib.RoleBackground {
+		p.drag()
+	}
 	p.diagnosis()
 	p.budget()
-	p.fits()
+	if holdsTrap(r) {
+		p.fits()
+	}
 	p.readAs()
 	p.assumed()
 	p.footnotes()
