@@ -95,11 +95,21 @@ func (w *work) recordLines() []BudgetLine {
 		}
 		lines = append(lines, line)
 	}
-	if n, ok := number(w.set, "recording.noise", w.axisName); ok {
-		add(noiseLine, "m", n.Value.SI, n.Value.U, noise)
-	}
+	sd, u := w.statedNoise()
+	add(noiseLine, "m", sd, u, noise)
 	add(exposureLine, "s", w.exposure, w.exposureU, exposure)
 	return lines
+}
+
+// statedNoise is the localisation noise as it was stated, or as a background gave it, with its standard uncertainty [m].
+func (w *work) statedNoise() (sd, u float64) {
+	if n, ok := number(w.set, "recording.noise", w.axisName); ok {
+		return n.Value.SI, n.Value.U
+	}
+	if sd = math.Sqrt(math.Max(0, w.noise.Variance)); sd > 0 {
+		u = w.noise.VarianceU / (2 * sd)
+	}
+	return sd, u
 }
 
 // Names of the lines that are no inputs of the physics.

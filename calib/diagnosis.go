@@ -62,6 +62,15 @@ func (r *Result) findCause(works []*work) {
 	}
 }
 
+// firstMeasurement is what to measure first when the routes disagree.
+func (r *Result) firstMeasurement() string {
+	const otherwise = "check length scale, temperature, bead diameter and height; repeat the recording"
+	if r.Diagnosis == nil || len(r.Diagnosis.Causes) == 0 || r.Diagnosis.Causes[0].PValue < familyLevel {
+		return otherwise
+	}
+	return r.Diagnosis.Causes[0].Measurement + "; then repeat the recording"
+}
+
 // diagnose compares single causes over the axes whose routes could be compared.
 // It returns nil when there is none.
 func diagnose(works []*work) *Diagnosis {

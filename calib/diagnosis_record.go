@@ -53,25 +53,25 @@ func (b *bench) noise() (hypothesis, bool) {
 	if !w.noise.Known {
 		return hypothesis{}, false
 	}
-	setting, _ := number(w.set, "recording.noise", w.axisName)
+	sd, u := w.statedNoise()
 	first := w.noise.Variance
 	most := 0.0
 	for _, o := range b.works {
 		most = math.Max(most, o.record.MeanSquare())
 	}
 	none := make([]float64, len(b.works))
-	return hypothesis{code: CauseNoise, name: "localisation noise", stated: input(math.Sqrt(first), setting.Value.U, "m"), low: 0, high: math.Sqrt(most), steps: 2 * refitSteps,
-		at: func(sd float64) (weighed, bool) {
+	return hypothesis{code: CauseNoise, name: "localisation noise", stated: input(sd, u, "m"), low: 0, high: math.Sqrt(most), steps: 2 * refitSteps,
+		at: func(candidate float64) (weighed, bool) {
 			found, ok := b.all(func(w *work) (evidence, bool) {
-				return w.refitted(w.exposure, psd.Noise{Known: true, Variance: math.Max(0, w.noise.Variance+sd*sd-first)})
+				return w.refitted(w.exposure, psd.Noise{Known: true, Variance: math.Max(0, w.noise.Variance+candidate*candidate-first)})
 			})
 			if !ok {
 				return weighed{}, false
 			}
 			return b.weigh(found, none, nil)
 		},
-		value: func(sd float64) float64 { return sd },
-		order: func(needed float64) float64 { return math.Abs(needed-math.Sqrt(first)) / usualNoise }, text: textOfNoise}, true
+		value: func(p float64) float64 { return p },
+		order: func(needed float64) float64 { return math.Abs(needed-sd) / usualNoise }, text: textOfNoise}, true
 }
 
 // Factors on a sampling rate that slips make: every second frame kept or counted twice,

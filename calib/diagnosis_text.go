@@ -60,7 +60,7 @@ func shown(q Quantity) string {
 // away says how far the needed value is from the stated one.
 func away(c Cause) string {
 	if !c.Change.Known() {
-		return "; no uncertainty was stated for it"
+		return ", for which no uncertainty was stated"
 	}
 	return fmt.Sprintf(", %.1f of its stated standard uncertainties away", math.Abs(float64(c.Change)))
 }

@@ -91,7 +91,7 @@ func newMonteCarlo(r *Result, works []*work) *monteCarlo {
 		return m.names[name]
 	}
 	for i, w := range works {
-		if !r.Axes[i].Adopted.Stiffness.Known() {
+		if len(r.Axes[i].Adopted.Budget) == 0 { // withheld, or not from a model of these inputs
 			continue
 		}
 		w.axis.Adopted = r.Axes[i].Adopted

@@ -126,7 +126,7 @@ func (r *Result) collectFindings(set *session.Settings, works []*work) {
 	}
 	if r.Verdict.Status == Inconsistent {
 		add(Finding{Code: CodeInconsistent, Severity: Bad, Text: r.Verdict.Text + " " + capital(r.Verdict.Reason) + ".",
-			Remedy: "check length scale, temperature, bead diameter and height; repeat the recording", Value: r.Verdict.FamilyWiseP, Limit: familyLevel, Unit: "1"})
+			Remedy: r.firstMeasurement(), Value: r.Verdict.FamilyWiseP, Limit: familyLevel, Unit: "1"})
 	}
 	r.settingFindings(set, works)
 	for _, w := range works {

@@ -75,6 +75,7 @@ func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions)
   beadwell calibrate --format json run7.csv > run7.json
   beadwell calibrate --out results run7.csv run8.csv
   beadwell calibrate --use good run7.csv
+  beadwell calibrate --monte-carlo 100000 --seed 7 run7.csv
   beadwell calibrate --out results --figures pdf --figure-data run7.csv`,
 		Args: someArguments("a track"),
 		RunE: func(cmd *cobra.Command, args []string) error {
@@ -87,6 +88,9 @@ func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions)
 			}
 			if err := o.drawing.check(cmd, o.out); err != nil {
 				return err
+			}
+			if cmd.Flags().Changed("seed") && o.draws == 0 {
+				return usageError("leave it out, or add --monte-carlo 100000", "--seed has no effect without --monte-carlo")
 			}
 			o.tracks = withoutLists(o.tracks)
 			return run(cmd.Context(), a, o)

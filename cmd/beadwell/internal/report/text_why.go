@@ -63,7 +63,7 @@ func changeText(c calib.Cause) string {
 	case c.Change.Known():
 		return fmt.Sprintf("%+.1f", float64(c.Change))
 	case c.Ratio.Known():
-		return "x " + twoDigits(float64(c.Ratio))
+		return fmt.Sprintf("x %.3g", float64(c.Ratio))
 	}
 	return dash
 }
