@@ -110,6 +110,7 @@ func calibrateAll(ctx context.Context, rec *track.Recording, set *session.Settin
 		return nil, err
 	}
 	r.collectFindings(set, works)
+	r.findAxes(works)
 	return r, nil
 }
 

@@ -46,4 +46,6 @@ What to do: record with a stage that moves by a known amplitude, or measure the 
 What to do: check these inputs; record the free bead in short pieces and catch it in between.`},
 	{CodeBackgroundDrift, "the background is not white", `A recording without a bead, or with a stuck one, shows the noise of the detection. The fits take it as white. Drift of the stage, air currents and pointing of the laser add variance at low frequency, which is counted as an uncertainty of the noise.
 What to do: look for drift and vibration; enclose the beam path; record the background for as long as the bead.` + caution},
+	{CodeTilted, "the recorded axes are not those of the trap", `Two recorded axes move together, so that the stiffness along them is not that along the axes of the trap. Either the trap is an ellipse that lies askew, as with tilted polarisation, or the detector mixes the axes. A bead diffuses alike in all directions, so a tilt does not show far above the corner frequencies, and cross-talk does.
+What to do: turn the recorded axes to those of the trap, whose directions and stiffness the result holds; or align the detector.` + caution},
 }

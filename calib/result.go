@@ -24,6 +24,7 @@ type Result struct {
 	Medium     Medium      `json:"medium"`
 	Bead       Bead        `json:"bead"`
 	Axes       []Axis      `json:"axes"`
+	TrapAxes   *TrapAxes   `json:"trap_axes,omitempty"` // of the trap itself; with two or three recorded axes
 	Verdict    Verdict     `json:"verdict"`
 	Diagnosis  *Diagnosis  `json:"diagnosis,omitempty"`   // single causes that would reconcile the routes; only when they disagree
 	MonteCarlo *MonteCarlo `json:"monte_carlo,omitempty"` // propagation of distributions, when it was asked for

@@ -1,6 +1,7 @@
 package report
 
 import (
+	"slices"
 	"strings"
 
 	"beadwell/calib"
@@ -45,6 +46,22 @@ func kindRows(r *calib.Result) []kindRow {
 			}
 			add("noise of the background", b.Noise, unit, remark)
 		}
+	}
+	return append(rows, trapRows(r)...)
+}
+
+// trapRows lists the axes of the trap where they are not the recorded ones.
+func trapRows(r *calib.Result) []kindRow {
+	var rows []kindRow
+	if r.TrapAxes == nil || !slices.ContainsFunc(r.Findings, func(f calib.Finding) bool { return f.Code == calib.CodeTilted }) {
+		return nil
+	}
+	for _, p := range r.TrapAxes.Principal {
+		angle := "direction not determined"
+		if p.Angle.Known() {
+			angle = "turned by " + combined(p.Angle, "1") + " rad"
+		}
+		rows = append(rows, kindRow{p.Nearest, "stiffness along the trap's own axis", withUnit(combined(p.Stiffness, stiffnessUnit), stiffnessUnit), angle})
 	}
 	return rows
 }
