@@ -5,6 +5,7 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 
 	"beadwell/calib/health"
@@ -62,6 +63,14 @@ type stretch struct {
 
 func (s stretch) found() bool { return len(s.why) > 0 }
 
+// enough tells whether the part is worth a calibration.
+func (s stretch) enough(all int) bool { return float64(s.to-s.from) >= leastUsed*float64(all) }
+
+// part returns a part of this part as a part of the recording.
+func (s stretch) part(of stretch) stretch {
+	return stretch{from: s.from + of.from, to: s.from + of.to, why: slices.Concat(s.why, of.why)}
+}
+
 // times are the ends of the part in words, on the clock of the recording.
 func (s stretch) times(rec *track.Recording) string {
 	return fmt.Sprintf("from %.4g s to %.4g s", rec.Start+float64(s.from)/rec.Rate, rec.Start+float64(s.to)/rec.Rate)
@@ -108,9 +117,8 @@ func calibrateGood(ctx context.Context, rec *track.Recording, set *session.Setti
 		default:
 			return nil, err
 		}
-		enough := float64(good.to-good.from) >= leastUsed*float64(rec.Samples)
-		if good.found() && enough && cut < mostCuts {
-			used = stretch{from: used.from + good.from, to: used.from + good.to, why: append(used.why, good.why...)}
+		if good.found() && good.enough(rec.Samples) && cut < mostCuts {
+			used = used.part(good)
 			continue
 		}
 		if err != nil {

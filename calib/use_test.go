@@ -147,3 +147,95 @@ func TestCutRecording(t *testing.T) {
 		t.Errorf("the recording was changed: %+v", rec)
 	}
 }
+
+// A second bead moves the mean and changes the variance, and the first cut uncovers what
+// is left of it: the part is cut until it is good.
+func TestUseGoodCutsAgain(t *testing.T) {
+	s := usual()
+	seconds := float64(s.samples) / s.rate
+	for _, event := range []simulate.Event{
+		{Kind: simulate.SecondBead, Time: 0.6 * seconds, Offset: []float64{2.5e-7}, Stiffness: 1.2, Drag: 1.4},
+		{Kind: simulate.Stuck, Time: 0.6 * seconds},
+	} {
+		for seed := range uint64(3) {
+			rec := s.spoilt(t, seed+1, event)
+			r, err := Calibrate(context.Background(), rec, s.set(t), Options{Use: UseGood})
+			if err != nil {
+				t.Fatal(err)
+			}
+			if r.Verdict.Status != Consistent || r.finding(CodeGoodPart) == nil {
+				t.Errorf("%s, seed %d: %s: %s", event.Kind, seed+1, r.Verdict.Status, r.Verdict.Reason)
+				continue
+			}
+			// the scan for a spell resolves 1/128 of the record; a fiftieth allows for two
+			if to := float64(*r.Recording.UsedTo) - 100; to > 0.62*seconds || to < 0.55*seconds {
+				t.Errorf("%s, seed %d: used to %g s, the event is at %g s", event.Kind, seed+1, to, 0.6*seconds)
+			}
+		}
+	}
+}
+
+// An early jump leaves the part behind it, whose times are on the clock of the recording.
+func TestUseGoodBehindAJump(t *testing.T) {
+	s := usual()
+	seconds := float64(s.samples) / s.rate
+	rec := s.spoilt(t, 1, simulate.Event{Kind: simulate.Jump, Time: 0.05 * seconds, Offset: []float64{3e-7}})
+	r, err := Calibrate(context.Background(), rec, s.set(t), Options{Use: UseGood})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if r.Verdict.Status != Consistent {
+		t.Fatalf("%s: %s", r.Verdict.Status, r.Verdict.Reason)
+	}
+	from, to := float64(*r.Recording.UsedFrom)-100, float64(*r.Recording.UsedTo)-100
+	if math.Abs(from-0.05*seconds) > 0.01*seconds || math.Abs(to-seconds) > 1e-9 {
+		t.Errorf("used %g s to %g s of %g s, the jump is at %g s; %s", from, to, seconds, 0.05*seconds, r.finding(CodeGoodPart).Text)
+	}
+	if got := float64(r.Recording.Start) - 100; math.Abs(got-from) > 1e-9 {
+		t.Errorf("the first sample used is at %g s, want %g s", got, from)
+	}
+}
+
+// In volts the trace of all is in metres too, also where the sensitivity comes from the used part.
+func TestUseGoodInVolts(t *testing.T) {
+	s := usual()
+	rec := s.spoilt(t, 1, simulate.Event{Kind: simulate.Stuck, Time: 0.7 * float64(s.samples) / s.rate})
+	metres, err := Calibrate(context.Background(), rec, s.set(t), Options{Use: UseGood})
+	if err != nil {
+		t.Fatal(err)
+	}
+	const perVolt = 1.3e-6 // m
+	a := &rec.Axes[0]
+	a.Unit, a.ToMetre = "V", math.NaN()
+	volts := make([]float64, len(a.Values))
+	for i, v := range a.Values {
+		volts[i] = v / perVolt
+	}
+	a.Values = volts
+	for _, stated := range []string{"1.3 um/V", ""} {
+		with := s
+		if stated != "" {
+			with = s.with("recording.sensitivity", stated)
+		}
+		r, err := Calibrate(context.Background(), rec, with.set(t), Options{Use: UseGood})
+		if err != nil {
+			t.Fatal(err)
+		}
+		// a sensitivity from the drag is good to the 2 % that D of this record is; 10 % is far beyond
+		got, want := float64(r.Axes[0].Trace.High[0]), float64(metres.Axes[0].Trace.High[0])
+		if math.Abs(got/want-1) > 0.1 || len(r.Axes[0].Trace.High) != traceSteps || r.Recording.UsedTo == nil {
+			t.Errorf("sensitivity %q: the trace begins at %g m, want %g m", stated, got, want)
+		}
+	}
+}
+
+// Parts of parts, and the least part that is used: a tenth of the whole.
+func TestStretch(t *testing.T) {
+	got := stretch{from: 100, to: 900, why: []string{"a"}}.part(stretch{from: 50, to: 250, why: []string{"b"}})
+	if got.from != 150 || got.to != 350 || len(got.why) != 2 {
+		t.Errorf("part = %+v, want 150 to 350", got)
+	}
+	if got.enough(2001) || !got.enough(2000) {
+		t.Error("200 samples are a tenth of 2000, and less of 2001")
+	}
+}
