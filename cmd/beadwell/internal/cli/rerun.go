@@ -11,7 +11,6 @@ import (
 
 	"beadwell/calib"
 	"beadwell/calib/session"
-	"beadwell/calib/track"
 	"beadwell/cmd/beadwell/internal/report"
 )
 
@@ -25,7 +24,7 @@ type rerunOptions struct {
 const rerunLong = `rerun calibrates the recording of a stored result again, with the settings that the
 result lists, and compares every number. The recording is found by the name in the
 result, or given as TRACK; it must be the same file, by SHA-256. Settings files
-beside it are not read.
+beside it are not read; those beside a background that the settings name are.
 
 It prints "same" when all numbers, codes and settings are the same to the last bit,
 or a table of what differs:
@@ -127,7 +126,7 @@ func (a *app) calibrateAgain(ctx context.Context, stored *calib.Result, path str
 			return nil, err
 		}
 	}
-	recording, settings, err := a.readAgain(ctx, stored, path, settings)
+	again, err := a.readAgain(ctx, stored, path, settings)
 	if err != nil {
 		return nil, err
 	}
@@ -135,32 +134,38 @@ func (a *app) calibrateAgain(ctx context.Context, stored *calib.Result, path str
 	if err != nil {
 		return nil, err
 	}
+	options.Background = again.background
 	options.Program = calib.Program{Name: stored.Program.Name, Version: a.Version}
-	return a.Calibrate(ctx, recording, settings, options)
+	return a.Calibrate(ctx, again.recording, again.settings, options)
 }
 
 // readAgain reads the recording as it was read for the stored result, and returns it
-// with the settings in force: those stored, and what the recording says of itself.
-func (a *app) readAgain(ctx context.Context, stored *calib.Result, path string, settings *session.Settings) (*track.Recording, *session.Settings, error) {
-	src := &source{app: a}
+// with the settings in force: those stored, and what the recording says of itself. The
+// background that they name is read as it was then, with the same flags.
+func (a *app) readAgain(ctx context.Context, stored *calib.Result, path string, settings *session.Settings) (loaded, error) {
+	flags := settings.Without(session.FromDefault).Without(session.FromHeader).Without(session.FromSession).Without(session.FromTracks)
+	src := &source{app: a, flags: &settingFlags{settings: *flags}}
 	before := settings.Without(session.FromHeader)
+	again := loaded{path: path}
 	options, err := src.readOptions(stored.Input.Name, before)
 	if err != nil {
-		return nil, nil, err
+		return again, err
 	}
-	recordings, err := src.read(ctx, path, options)
+	recordings, err := src.readWithStage(ctx, path, options, before)
 	if err != nil {
-		return nil, nil, err
+		return again, err
 	}
 	for _, one := range recordings {
 		switch {
 		case one.SHA256 != stored.Input.SHA256:
-			return nil, nil, changedInput(path, one.SHA256, stored.Input.SHA256)
+			return again, changedInput(path, one.SHA256, stored.Input.SHA256)
 		case one.Bead == stored.Input.Bead:
-			return one, before.With(headerSettings(one, before)), nil
+			again.recording, again.settings = one, before.With(headerSettings(one, before))
+			again.background, err = src.background(ctx, path, again.settings)
+			return again, err
 		}
 	}
-	return nil, nil, inputError("calibrate the recording again, and look at how it is read", fmt.Errorf("%s: has no bead %q, which the result is of", path, stored.Input.Bead))
+	return again, inputError("calibrate the recording again, and look at how it is read", fmt.Errorf("%s: has no bead %q, which the result is of", path, stored.Input.Bead))
 }
 
 // storedSettings rebuilds the settings that a result lists.
