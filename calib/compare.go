@@ -180,8 +180,11 @@ func (w *work) adopt() {
 		if p.sdTotal > smallEnough {
 			o = p.problem.Profile(p.maximum, p.weights, p.sdTotal).Scaled(w.bartlett())
 		}
-		if math.IsInf(o.Low95, 0) || math.IsInf(o.High95, 0) || p.sdTotal > hopeless {
+		if math.IsInf(o.Low95, 0) || math.IsInf(o.High95, 0) || p.sdTotal > hopeless || p.elsewhere() {
 			reason := tooUncertain(p.sdTotal)
+			if p.sdTotal <= hopeless {
+				reason = tooUncertain(math.Inf(1))
+			}
 			a.Stiffness, a.Withheld = Withheld("N/m", reason), reason
 			return
 		}
@@ -190,6 +193,21 @@ func (w *work) adopt() {
 		w.adoptedLeg = combinedLegs
 	}
 	w.budget()
+}
+
+// elsewhere tells whether stiffnesses far from the maximum explain the record nearly as
+// well. Where an unstated noise can take the place of motion, the likelihood may have more than one
+// maximum, and the width of one of them says nothing.
+func (p *pooled) elsewhere() bool {
+	if !p.loose {
+		return false
+	}
+	for _, distance := range []float64{-2.5, -1.5, -0.7, 0.7, 1.5, 2.5} {
+		if root, ok := p.problem.Fall(p.maximum, p.weights, distance); ok && root < z95 {
+			return true
+		}
+	}
+	return false
 }
 
 func (w *work) has(leg int) bool { return !math.IsNaN(w.legs.value[leg]) }

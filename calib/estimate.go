@@ -116,8 +116,11 @@ func (w *work) bartlett() float64 {
 
 func (w *work) equipartitionLeg(p relaxation.Process, total, data relaxation.Matrix, drawn bool) {
 	l := &w.legs
-	if drawn || w.pooled.regimeV > hopeless && !w.noise.Known {
-		l.reason[equipartitionLeg] = "the noise is not stated, and the recording does not determine it"
+	if drawn || w.pooled.regimeV > hopeless {
+		l.reason[equipartitionLeg] = tooUncertain(w.pooled.regimeV)
+		if !w.noise.Known {
+			l.reason[equipartitionLeg] = "the noise is not stated, and the recording does not determine it"
+		}
 		return
 	}
 	lost := 0.0

@@ -18,9 +18,6 @@ const (
 	// hydroBias is the bias of a fit with constant drag, in its statistical uncertainties, from which on
 	// the frequency dependence is looked at: a tenth of that in quadrature.
 	hydroBias = 0.25
-	// hydroGain is how much larger the log-likelihood with frequency-dependent drag must
-	// be for the automatic choice to take it; the two have equally many parameters.
-	hydroGain = 1.0
 )
 
 // hydrodynamic is the spectrum with the inertia of liquid and bead and the low-pass of
@@ -107,7 +104,7 @@ func (w *work) refit(h psd.Hydrodynamic) error {
 }
 
 // chooseDrag takes frequency-dependent drag where a fit with constant drag would be
-// biased by more than a quarter of its uncertainty and the record's likelihood is larger with it.
+// biased by more than a quarter of its uncertainty and the record agrees better with it.
 func (w *work) chooseDrag(h psd.Hydrodynamic) error {
 	if w.fitErr != nil || w.record.Missing > 0 {
 		return nil
@@ -133,12 +130,24 @@ func (w *work) chooseDrag(h psd.Hydrodynamic) error {
 			return nil
 		}
 	}
-	if err := w.refit(h); err != nil || w.fitErr != nil || w.fit.Maximum.Value < base.Maximum.Value+hydroGain {
+	if err := w.refit(h); err != nil || w.fitErr != nil || w.agreement(w.fit) < w.agreement(base) {
 		w.fit, w.fitErr, w.form = plain, nil, plainForm
 		return nil
 	}
 	w.dragModel = FrequencyDependentDrag
 	return nil
+}
+
+// agreement returns the log-likelihood of a fit that knows the computed drag: the shape
+// of the spectrum counts, and where that cannot tell, what Stokes drag and kT say of D.
+func (w *work) agreement(fit *psd.Fit) float64 {
+	kept := w.fit
+	w.fit = fit
+	defer func() { w.fit = kept }()
+	if w.pool() != nil {
+		return math.Inf(-1)
+	}
+	return w.pooled.maximum.Value
 }
 
 func (w *work) givenBand() psd.Range { return w.fitOptions().Band }

@@ -90,6 +90,7 @@ func Estimate(in Input) (Result, error) {
 	gain := (signal + p.Noise) / signal // d ln V / d ln s2
 	res.NoiseSlope = -1 / signal
 	res.CornerSlope = -a*ds/s - gain*(1-res.Length)
+	in.Total, in.Data = bounded(in.Total), bounded(in.Data)
 	slope := relaxation.Parameters{res.CornerSlope, 0, res.NoiseSlope * in.Scale}
 	res.Gain, res.Slope = gain, slope
 	// gradient of E[s2] over the parameters, relative to s2
@@ -112,4 +113,19 @@ func Estimate(in Input) (Result, error) {
 		}
 	}
 	return res, nil
+}
+
+// bounded limits the standard uncertainty of ln fc to one e-fold, correlations kept: what S and L
+// owe to fc is bounded, and no linear propagation of more makes sense. Where samples are white, fc is unknown
+// and the variance hardly needs it.
+func bounded(m relaxation.Matrix) relaxation.Matrix {
+	if m[0][0] <= 1 {
+		return m
+	}
+	by := 1 / math.Sqrt(m[0][0])
+	for i := range m {
+		m[0][i] *= by
+		m[i][0] *= by
+	}
+	return m
 }

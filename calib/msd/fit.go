@@ -87,10 +87,25 @@ func Estimate(in Input) (*Result, error) {
 		return nil, err
 	}
 	if err := f.search(); err != nil {
-		return nil, err
+		// without blur the plateau needs no relaxation time: where the samples are white, the corner
+		// frequency of the guess will do
+		if g.Exposure > 0 || g.Corner*g.Interval < whiteCorner {
+			return nil, err
+		}
+		if f, err = newFitter(in, lags, values, pairs); err != nil {
+			return nil, err
+		}
+		f.free = f.free[1:]
+		if err := f.search(); err != nil {
+			return nil, err
+		}
 	}
 	return f.result(), nil
 }
+
+// whiteCorner is the corner frequency, in sampling rates, above which less than 4 % of
+// the correlation is left after one sample.
+const whiteCorner = 0.5
 
 // from drops the lags below first, but leaves at least four.
 func from(lags []int, first int) []int {
@@ -268,6 +283,9 @@ func (f *fitter) prior(at [3]float64) (float64, bool) {
 	return (at[2]*f.in.Scale - f.in.Noise.Variance) / f.in.Noise.VarianceU, true
 }
 
+// noiseFree tells whether the noise is a parameter of the fit.
+func (f *fitter) noiseFree() bool { return f.free[len(f.free)-1] == 2 }
+
 func (f *fitter) precision() float64 {
 	if !f.in.Noise.Known || f.in.Noise.VarianceU == 0 {
 		return 0
@@ -323,7 +341,8 @@ func (f *fitter) step() ([]float64, float64) {
 	var b, s mat.VecDense
 	b.MulVec(f.jac.T(), r)
 	if z, ok := f.prior(f.at); ok {
-		b.SetVec(2, b.AtVec(2)-z*f.in.Scale/f.in.Noise.VarianceU)
+		last := len(f.free) - 1 // the noise
+		b.SetVec(last, b.AtVec(last)-z*f.in.Scale/f.in.Noise.VarianceU)
 	}
 	s.MulVec(&f.inv, &b)
 	return s.RawVector().Data, mat.Dot(&s, &b)
@@ -368,14 +387,18 @@ func (f *fitter) result() *Result {
 				res.WithFit[a][b] += hj * f.in.FitCovariance[j][b]
 			}
 		}
-		if len(f.free) == 2 {
+		if !f.noiseFree() {
 			res.NoiseSlope[a] = -dot(row, full[2]) / f.in.Scale
 		} else if f.precision() > 0 {
-			res.NoiseSlope[a] = f.inv.At(i, 2) * f.precision() / f.in.Scale
+			res.NoiseSlope[a] = f.inv.At(i, len(f.free)-1) * f.precision() / f.in.Scale
 		}
 	}
-	if len(f.free) == 2 {
+	if !f.noiseFree() {
 		res.NoiseSlope[2] = 1 / f.in.Scale
+	}
+	if f.free[0] != 0 { // the corner frequency was not fitted
+		res.Corner = math.NaN()
+		res.Covariance[0][0] = math.Inf(1)
 	}
 	return res
 }
