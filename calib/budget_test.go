@@ -70,9 +70,11 @@ func stagedResult(t testing.TB, s stage, more map[string]string, opt Options) *R
 // The contributions add up to the combined uncertainty in quadrature whatever is adopted. The
 // likelihood is evaluated at the maximum alone, so only rounding is lost.
 func TestBudgetAddsUp(t *testing.T) {
-	more := map[string]string{"recording.noise": "2(1) nm", "recording.exposure": "30(10) us"}
+	more := map[string]string{"recording.noise": "8(2) nm", "recording.exposure": "30(10) us"}
+	s := ordinary()
+	s.noise, s.rate, s.exposure = 8e-9, 2e3, 0.06 // slow enough that the record does not tell the noise by itself
 	for _, adopt := range []string{"", RouteDrag, RouteAmplitude} {
-		a := stagedResult(t, ordinary(), more, Options{Adopt: adopt}).Axes[0].Adopted
+		a := stagedResult(t, s, more, Options{Adopt: adopt}).Axes[0].Adopted
 		sum, share := 0.0, 0.0
 		seen := map[string]float64{}
 		for _, l := range a.Budget {
@@ -138,5 +140,21 @@ func TestHalving(t *testing.T) {
 	}
 	if got := toHalve(lines[2:]); !strings.Contains(got, "record 4 times as long") {
 		t.Errorf("toHalve of statistics alone = %q, want a record four times as long", got)
+	}
+}
+
+// What a line says of the exposure is what happens when another exposure is stated. The step of one
+// standard uncertainty is that of the line itself; the prior of the drag moves a little with it.
+func TestExposureLineIsTheChange(t *testing.T) {
+	for _, adopt := range []string{"", RouteDrag, RouteAmplitude} {
+		at := func(exposure string) Adopted {
+			return stagedResult(t, ordinary(), map[string]string{"recording.exposure": exposure}, Options{Adopt: adopt}).Axes[0].Adopted
+		}
+		want := math.Abs(math.Log(float64(at("35 us").Stiffness.Value / at("30 us").Stiffness.Value)))
+		for _, l := range at("30(5) us").Budget {
+			if l.Input == exposureLine && math.Abs(float64(l.Contribution)/want-1) > 0.02 {
+				t.Errorf("adopt %q: the exposure contributes %.4g, and stating 5 us more changes ln(stiffness) by %.4g", adopt, float64(l.Contribution), want)
+			}
+		}
 	}
 }

@@ -215,3 +215,14 @@ func TestDrawsShowCurvature(t *testing.T) {
 		t.Errorf("%d draws were left out; %s", m.Rejected, m.Text)
 	}
 }
+
+// A stiffness through amplitude goes with the length scale to the power -2: for a scale known to 15 %
+// the mean of the draws is 1 + 3 x 0.15^2 + 15 x 0.15^4 times the value (moments of a normal), known to 0.35/sqrt(2e4) = 0.25 %.
+func TestScaleIsDrawnToItsPower(t *testing.T) {
+	r := stagedResult(t, ordinary(), map[string]string{"recording.pixel": "100(15) nm"}, Options{Adopt: RouteAmplitude, MonteCarlo: MonteCarloOptions{Draws: budgetDraws, Seed: 5}})
+	const u = 0.15
+	want := 1 + 3*u*u + 15*u*u*u*u
+	if got := float64(r.MonteCarlo.Axes[0].Mean / r.Axes[0].Adopted.Stiffness.Value); math.Abs(got-want) > 0.012 { // four standard errors, and the sixth moment
+		t.Errorf("mean of the draws over the value is %.4f, want %.4f", got, want)
+	}
+}
