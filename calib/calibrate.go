@@ -99,6 +99,11 @@ func calibrateAll(ctx context.Context, rec *track.Recording, set *session.Settin
 	if err := runAll(ctx, works); err != nil {
 		return nil, err
 	}
+	if role != RoleDriven {
+		if err := agreeOnDrag(ctx, rec, set, opt, works); err != nil {
+			return nil, err
+		}
+	}
 	r := newResult(rec, set, works, opt)
 	for _, w := range works {
 		r.Axes = append(r.Axes, w.axis)

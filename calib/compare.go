@@ -31,7 +31,7 @@ func survival(chi2 float64, dof int) Float {
 // the log-likelihood lost by fixing ln fc + ln V, or by the prior that allows for the
 // uncertainty of the inputs (Wilks, Ann. Math. Stat. 9 (1938) 60; docs/method.md, Eq. 41).
 func (w *work) routes() Test {
-	if w.fitErr != nil || math.IsNaN(w.legs.value[spectrumLeg]) && math.IsNaN(w.legs.value[amplitudeLeg]) {
+	if w.fitErr != nil {
 		return noTest("the recording does not determine the drag")
 	}
 	p := &w.pooled

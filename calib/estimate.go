@@ -15,7 +15,7 @@ import (
 // hopeless is the Cramer-Rao bound of a logarithm above which a leg is withheld: beyond
 // it the likelihood is so far from normal that neither the estimate nor its interval
 // means what it says (docs/method.md, Eq. 42).
-const hopeless = 0.35
+const hopeless = 0.5
 
 // smallEnough is the relative uncertainty below which an interval is taken as
 // normal in the logarithm: the skewness of a variance estimate of relative uncertainty
@@ -134,7 +134,7 @@ func (w *work) equipartitionLeg(p relaxation.Process, total, data relaxation.Mat
 		l.reason[equipartitionLeg] = err.Error()
 		return
 	}
-	if eq.SD > hopeless {
+	if eq.SD > 2*hopeless {
 		l.reason[equipartitionLeg] = tooUncertain(eq.SD)
 		return
 	}
@@ -161,11 +161,11 @@ func (w *work) shaped(like int, sd float64) relaxation.Offsets {
 	return relaxation.Normal(sd)
 }
 
-// Relative uncertainties above which the fit of the mean-square displacement is withheld:
+// Cramer-Rao bounds above which the fit of the mean-square displacement is withheld:
 // its covariance is that of a linear fit, and its intervals no longer cover beyond.
 const (
-	linearPlateau = 0.25
-	linearTime    = 0.15
+	linearPlateau = 0.35
+	linearTime    = 0.25
 )
 
 // relaxationsOfInertia is the first lag, in relaxation times, of a fit of the mean-square
@@ -201,7 +201,7 @@ func (w *work) displacementLegs(p relaxation.Process, total relaxation.Matrix, d
 	l.msd = m
 	sdV, sdC := math.Sqrt(m.Covariance[1][1]), math.Sqrt(m.Covariance[0][0])
 	bound := w.pooled.regimeV
-	if sdV > linearPlateau || bound > hopeless || drawn {
+	if bound > linearPlateau || sdV > 2*hopeless || drawn {
 		l.reason[displacementLeg] = tooUncertain(math.Max(sdV, bound))
 	} else {
 		l.value[displacementLeg] = math.Log(w.phys.kT / m.Variance)
@@ -209,7 +209,7 @@ func (w *work) displacementLegs(p relaxation.Process, total relaxation.Matrix, d
 	}
 	if w.dragModel == FrequencyDependentDrag {
 		l.reason[timeLeg] = "the relaxation of the mean-square displacement is modelled with constant drag, and here the drag depends on frequency"
-	} else if bound = w.pooled.regimeFC; sdC > linearTime || bound > hopeless || drawn {
+	} else if bound = w.pooled.regimeFC; bound > linearTime || sdC > 2*hopeless || drawn {
 		l.reason[timeLeg] = tooUncertain(math.Max(sdC, bound))
 	} else {
 		l.value[timeLeg] = math.Log(2 * math.Pi * w.phys.gamma * m.Corner)

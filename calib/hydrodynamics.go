@@ -1,10 +1,13 @@
 package calib
 
 import (
+	"context"
 	"fmt"
 	"math"
 
 	"beadwell/calib/drag"
+	"beadwell/calib/session"
+	"beadwell/calib/track"
 	"beadwell/psd"
 )
 
@@ -59,7 +62,10 @@ func (w *work) settleDrag() error {
 		choice = s.Word
 	}
 	diode, hasDiode := w.hydrodynamic(false)
-	if w.record.Missing > 0 && (hasDiode || choice == FrequencyDependentDrag) {
+	if w.dragChoice != "" {
+		choice = w.dragChoice
+	}
+	if w.tooManyGaps() && (hasDiode || choice == FrequencyDependentDrag) {
 		key := "fit.drag"
 		if hasDiode {
 			key = "detector.f3db"
@@ -96,17 +102,38 @@ func (w *work) refit(h psd.Hydrodynamic) error {
 		return &SettingError{Key: "detector.f3db", Problem: err.Error()}
 	}
 	options := w.fitOptions()
-	options.KeepLines = true
 	options.Form = h.Form(w.rate, w.exposure)
-	w.fit, w.fitErr = psd.Estimate(w.record, options)
+	w.fit, w.fitErr = w.estimateFilled(options)
 	w.form = options.Form
 	return nil
+}
+
+// mostFilled is the share of missing samples up to which a spectrum of another shape is
+// fitted to the record with its gaps bridged by straight lines: a bridge errs by less than
+// a step of the motion, so that the highest frequencies lose less than this share of their power.
+const mostFilled = 0.002
+
+func (w *work) tooManyGaps() bool {
+	return float64(w.record.Missing) > mostFilled*float64(len(w.record.X))
+}
+
+// estimateFilled fits a spectrum of another shape, which knows nothing of missing samples.
+func (w *work) estimateFilled(options psd.Options) (*psd.Fit, error) {
+	options.KeepLines = true
+	record := w.record
+	if record.Missing > 0 {
+		var err error
+		if record, err = psd.Prepare(bridged(record.X), record.Rate); err != nil {
+			return nil, err
+		}
+	}
+	return psd.Estimate(record, options)
 }
 
 // chooseDrag takes frequency-dependent drag where a fit with constant drag would be
 // biased by more than a quarter of its uncertainty and the record agrees better with it.
 func (w *work) chooseDrag(h psd.Hydrodynamic) error {
-	if w.fitErr != nil || w.record.Missing > 0 {
+	if w.fitErr != nil {
 		return nil
 	}
 	sd, _ := w.fit.SD(alongCorner)
@@ -117,33 +144,66 @@ func (w *work) chooseDrag(h psd.Hydrodynamic) error {
 		return nil
 	}
 	w.hydro = &bias
+	if w.tooManyGaps() {
+		return nil
+	}
 	plain, plainForm := w.fit, w.form
-	base := plain
-	if plain.Method == psd.Exact || plainForm == nil {
-		// the same form of the likelihood for both, so that their values compare
-		options := w.fitOptions()
-		options.KeepLines = true
-		constant := h
-		constant.Drag, constant.MassCorner = nil, 0
-		options.Form = constant.Form(w.rate, w.exposure)
-		if base, err = psd.Estimate(w.record, options); err != nil {
+	// the same form of the likelihood for both, so that their values compare
+	options := w.fitOptions()
+	constant := h
+	constant.Drag, constant.MassCorner = nil, 0
+	options.Form = constant.Form(w.rate, w.exposure)
+	base, err := w.estimateFilled(options)
+	if err != nil {
+		return nil
+	}
+	if err := w.refit(h); err == nil && w.fitErr == nil {
+		w.inertia = w.agreement(w.fit) - w.agreement(base)
+		if w.inertia > 0 {
+			w.dragModel = FrequencyDependentDrag
 			return nil
 		}
 	}
-	if err := w.refit(h); err != nil || w.fitErr != nil || w.agreement(w.fit) < w.agreement(base) {
-		w.fit, w.fitErr, w.form = plain, nil, plainForm
-		return nil
+	w.fit, w.fitErr, w.form = plain, nil, plainForm
+	return nil
+}
+
+// agreeOnDrag lets the axes of a recording decide together: liquid and bead are the same for
+// all. Axes that chose otherwise are analysed again.
+func agreeOnDrag(ctx context.Context, rec *track.Recording, set *session.Settings, opt Options, works []*work) error {
+	sum := 0.0
+	for _, w := range works {
+		sum += w.inertia
 	}
-	w.dragModel = FrequencyDependentDrag
+	want := ConstantDrag
+	if sum > 0 {
+		want = FrequencyDependentDrag
+	}
+	for i, w := range works {
+		if w.inertia == 0 || w.dragModel == want {
+			continue
+		}
+		next, err := newWork(rec, i, set, opt)
+		if err != nil {
+			return err
+		}
+		next.dragChoice = want
+		if err := next.run(ctx); err != nil {
+			return err
+		}
+		next.hydro, next.inertia = w.hydro, w.inertia
+		works[i] = next
+	}
 	return nil
 }
 
 // agreement returns the log-likelihood of a fit that knows the computed drag: the shape
-// of the spectrum counts, and where that cannot tell, what Stokes drag and kT say of D.
+// of the spectrum counts, and where that cannot tell, what Stokes drag and kT say of D. The noise is
+// kept from turning negative, which would let a wrong shape pass.
 func (w *work) agreement(fit *psd.Fit) float64 {
 	kept := w.fit
-	w.fit = fit
-	defer func() { w.fit = kept }()
+	w.fit, w.physicalNoise = fit, true
+	defer func() { w.fit, w.physicalNoise = kept, false }()
 	if w.pool() != nil {
 		return math.Inf(-1)
 	}
@@ -165,6 +225,11 @@ func (w *work) hydrodynamicFinding() (Finding, bool) {
 		return f, true
 	}
 	f.Severity = Doubtful
+	if w.tooManyGaps() {
+		f.Text = fmt.Sprintf("The inertia of the liquid matters at this rate, but %d samples are missing, and only constant drag can be fitted then: %s.", w.record.Missing, size)
+		f.Remedy = "record without gaps, or restrict the fit with --band to a few times the corner frequency"
+		return f, true
+	}
 	f.Text = "The inertia of the liquid should matter at this rate, but the spectrum does not show it better than a constant drag; constant drag was fitted. If the inertia is there, " + size + "."
 	f.Remedy = "record longer, restrict the fit with --band to a few times the corner frequency, or decide with --drag constant or --drag frequency-dependent"
 	return f, true

@@ -53,6 +53,7 @@ func (w *work) pool() error {
 
 	p.problem = w.fit.Problem
 	p.problem.Priors = append([]relaxation.Prior{{Weights: alongDrag, Mean: p.expected, SD: p.u}}, w.fit.Problem.Priors...)
+	p.problem.NonNegative = w.physicalNoise
 	err := w.settlePool()
 	if !w.noise.Known && (err != nil || p.sdTotal > looseNoise && (p.regimeFC > hopeless || p.regimeV > hopeless)) {
 		// the record says so little of the noise that its sign, which is known, counts

@@ -329,6 +329,7 @@ type Trace struct {
 // The statuses of a verdict.
 const (
 	Consistent   = "consistent"   // exit status 0
+	Unchecked    = "unchecked"    // nothing could be compared: the value rests on the computed drag; exit status 0
 	Inconsistent = "inconsistent" // the cross-check says not to trust it, exit status 3
 	Unfit        = "unfit"        // a health check says so, exit status 3
 )

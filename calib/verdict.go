@@ -43,7 +43,7 @@ func (r *Result) judge(works []*work, opt Options) {
 		return
 	}
 	if tested == 0 {
-		v.FamilyWiseP = Float(math.NaN())
+		v.Status, v.FamilyWiseP = Unchecked, Float(math.NaN())
 		if works[0].takesDrag() {
 			v.Text = "Nothing to cross-check: the sensitivity of the detector was taken from the computed drag."
 			v.Reason = "corner frequency and computed drag are the only independent leg; the stiffness is as good as bead diameter, viscosity and height are"

@@ -39,17 +39,20 @@ type work struct {
 	drive             *drive // of the axis that follows a moving stage; nil for others
 	reply             response
 
-	record     *psd.Record
-	fit        *psd.Fit
-	fitErr     error
-	legs       legs
-	pooled     pooled
-	adoptedLeg int // the leg that was adopted, or combinedLegs
-	poolErr    error
-	dragModel  string                                                 // ConstantDrag or FrequencyDependentDrag
-	form       func(relaxation.Blocks, float64) relaxation.Likelihood // of the fit; nil: the relaxation process
-	hydro      *psd.Bias                                              // of a fit with constant drag, where it matters
-	axis       Axis
+	record        *psd.Record
+	fit           *psd.Fit
+	fitErr        error
+	legs          legs
+	pooled        pooled
+	adoptedLeg    int // the leg that was adopted, or combinedLegs
+	poolErr       error
+	dragModel     string                                                 // ConstantDrag or FrequencyDependentDrag
+	dragChoice    string                                                 // what the axes of the recording agreed on; empty: the setting
+	inertia       float64                                                // log-likelihood gained by frequency-dependent drag; 0: not looked at
+	physicalNoise bool                                                   // the pooled fit keeps the noise from turning negative
+	form          func(relaxation.Blocks, float64) relaxation.Likelihood // of the fit; nil: the relaxation process
+	hydro         *psd.Bias                                              // of a fit with constant drag, where it matters
+	axis          Axis
 }
 
 // newWork reads what the settings say of one axis and converts its positions.

@@ -50,16 +50,27 @@ func goodness(f *Fit, r *Record) Goodness {
 	}
 	g.DegreesOfFreedom = len(g.Points) - fitted
 	g.PValue = math.NaN()
-	if g.DegreesOfFreedom > 0 {
+	if g.DegreesOfFreedom > 0 && float64(r.Missing) <= mostGaps*float64(len(r.X)) {
 		g.PValue = distuv.ChiSquared{K: float64(g.DegreesOfFreedom)}.Survival(g.ChiSquare)
 	}
 	return g
 }
 
+// leakingCorner is the corner frequency, in sampling rates, above which leakage is
+// nothing: the ends of the record are a small part of its relaxation times.
+const leakingCorner = 0.1
+
+// mostGaps is the share of missing samples above which the periodogram, which counts them as
+// zero, no longer has the shape of the spectrum, and the test is not made.
+const mostGaps = 0.01
+
 // leakage returns the share by which the relaxing part of the periodogram exceeds the spectrum,
 // given the ends of the record.
 func (f *Fit) leakage(r *Record) float64 {
 	if _, plain := f.Problem.Likelihood.(interface{ RelaxationProcess() }); !plain {
+		return 0
+	}
+	if f.Corner*f.Interval > leakingCorner {
 		return 0
 	}
 	return f.Process().EndExcess(r.X) / float64(len(r.X))

@@ -42,7 +42,7 @@ func newSummary(entries []entry, growing []Growing, opt SeriesOptions) *Summary 
 func (s *Summary) Counts() (good, distrusted, failed, aside int) {
 	for _, row := range s.Rows {
 		switch row.Status {
-		case calib.Consistent:
+		case calib.Consistent, calib.Unchecked:
 			good++
 		case Failed:
 			failed++

@@ -284,7 +284,7 @@ func conclude(outcomes []outcome) error {
 		switch {
 		case one.err != nil:
 			failed = append(failed, one.err)
-		case one.result.Verdict.Status != calib.Consistent:
+		case one.result.Verdict.Status != calib.Consistent && one.result.Verdict.Status != calib.Unchecked:
 			distrust = true
 		}
 	}

@@ -146,7 +146,7 @@ func runForce(ctx context.Context, a *app, o forceOptions) error {
 
 // trusted refuses a calibration that should not be used.
 func trusted(result *calib.Result, o forceOptions) error {
-	if result.Verdict.Status == calib.Consistent || o.overrule {
+	if result.Verdict.Status == calib.Consistent || result.Verdict.Status == calib.Unchecked || o.overrule {
 		return nil
 	}
 	return &failure{status: StatusDistrust, code: codeDistrust, err: fmt.Errorf("%s: the calibration is %s: %s", o.with, result.Verdict.Status, result.Verdict.Text),
@@ -245,7 +245,7 @@ func inMetres(axis track.Axis, settings *session.Settings, result *calib.Result)
 func forceSummary(rec *track.Recording, result *calib.Result, traces []calib.ForceTrace, where centre) report.Force {
 	s := report.Force{Input: calib.Input{Bead: rec.Bead, Size: rec.Size, SHA256: rec.SHA256}, Calibration: result.Input,
 		Verdict: result.Verdict, Centre: where.words(), Rate: calib.Float(rec.Rate), Start: calib.Float(rec.Start), Duration: calib.Float(float64(rec.Samples) / rec.Rate)}
-	if result.Verdict.Status != calib.Consistent {
+	if result.Verdict.Status != calib.Consistent && result.Verdict.Status != calib.Unchecked {
 		s.Findings = append(s.Findings, calib.Finding{Code: calib.CodeVerdictIgnored, Severity: calib.Doubtful, Value: result.Verdict.FamilyWiseP, Limit: calib.Float(math.NaN()),
 			Text: "The verdict on the calibration is " + result.Verdict.Status + ", and was overruled.", Remedy: "calibrate again before these forces are used"})
 	}

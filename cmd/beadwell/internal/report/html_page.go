@@ -101,6 +101,8 @@ func verdictOf(v calib.Verdict) shownVerdict {
 	switch v.Status {
 	case calib.Consistent:
 		shown.Class, shown.Mark, shown.Word = v.Status, "✓", "Yes: consistent"
+	case calib.Unchecked:
+		shown.Mark, shown.Word = "?", "With care: nothing could be compared"
 	case calib.Inconsistent:
 		shown.Class, shown.Mark, shown.Word = v.Status, "≠", "No: inconsistent"
 	case calib.Unfit:
