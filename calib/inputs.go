@@ -59,6 +59,10 @@ func newPhysics(set *session.Settings, axis string) (*physics, error) {
 		return nil, &SettingError{Key: "bead.diameter", Problem: "is not given, and it has no default",
 			Remedy: `give it with --diameter "1.02(3) um", or in session.toml as [bead] diameter = "1.02(3) um"`}
 	}
+	if diameter.Value.U > widestDiameter*diameter.Value.SI {
+		return nil, &SettingError{Key: "bead.diameter", Where: diameter.Where, Problem: fmt.Sprintf("has a standard uncertainty of %.0f %%, with which nothing can be computed", 100*diameter.Value.U/diameter.Value.SI),
+			Remedy: `the digits in brackets are those of the last places: 1.02(3) um is 1.02 um with 0.03 um`}
+	}
 	p.radius = diameter.Value.SI / 2
 	p.bead.Diameter = input(diameter.Value.SI, diameter.Value.U, "m")
 	temperature, err := p.setTemperature(set)
@@ -75,6 +79,13 @@ func newPhysics(set *session.Settings, axis string) (*physics, error) {
 	return p, nil
 }
 
+// Largest standard uncertainties that are taken: beyond them a propagation by first
+// derivatives means nothing (the viscosity of water halves within 30 K).
+const (
+	widestTemperature = 20.0 // K
+	widestDiameter    = 0.3  // relative
+)
+
 // kelvin is the temperature at the trap with what it depends on.
 type kelvin struct {
 	value   float64
@@ -86,6 +97,10 @@ func (p *physics) setTemperature(set *session.Settings) (kelvin, error) {
 	t, ok := number(set, "medium.temperature", "")
 	if !ok {
 		return kelvin{}, &SettingError{Key: "medium.temperature", Problem: "is not given", Remedy: `give it with --temperature "24.5(5) C"`}
+	}
+	if t.Value.U > widestTemperature {
+		return kelvin{}, &SettingError{Key: "medium.temperature", Where: t.Where, Problem: fmt.Sprintf("has a standard uncertainty of %g K, with which nothing can be computed", t.Value.U),
+			Remedy: `the digits in brackets are those of the last places: 24.5(5) C is 24.5 C with 0.5 K`}
 	}
 	k := kelvin{value: t.Value.SI}
 	k.sources = append(k.sources, influence{name: "temperature", value: t.Value.SI, unit: "K", u: t.Value.U})
@@ -126,7 +141,7 @@ func (p *physics) setTemperature(set *session.Settings) (kelvin, error) {
 func (p *physics) setLiquid(set *session.Settings, t kelvin) error {
 	if v, ok := number(set, "medium.viscosity", ""); ok {
 		p.viscosity = v.Value.SI
-		p.medium.Fluid = "as stated"
+		p.medium.Fluid = "a liquid"
 		p.medium.Source = "viscosity stated by the user"
 		p.medium.Viscosity = input(v.Value.SI, v.Value.U, "Pa s")
 		p.medium.Density = Withheld("kg/m3", "not stated")
@@ -187,6 +202,11 @@ func (p *physics) setWall(set *session.Settings, axis string, diameter session.S
 	}
 	if hasDepth && hasHeight {
 		c.Depth = depth.Value.SI
+	}
+	if c.Height <= p.radius {
+		return &SettingError{Key: "chamber.height", Where: height.Where,
+			Problem: fmt.Sprintf("%.4g um is not above the radius of the bead, %.4g um: the bead would touch the surface", c.Height*1e6, p.radius*1e6),
+			Remedy:  "give the height of the bead's centre above the nearer surface"}
 	}
 	w, err := c.Wall()
 	if err != nil {

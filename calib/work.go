@@ -200,6 +200,10 @@ func (w *work) fitPositions() error {
 		}
 	}
 	w.fit, w.fitErr = psd.Estimate(w.record, w.fitOptions())
+	if rms := math.Sqrt(w.record.MeanSquare()); w.fitErr != nil && w.noise.Variance > 0 && math.Sqrt(w.noise.Variance) >= rms {
+		return w.dataError(fmt.Errorf("the stated localisation noise, %.3g nm, is not below the recorded motion, %.3g nm rms", math.Sqrt(w.noise.Variance)*1e9, rms*1e9),
+			"check the unit of the noise and of the positions, or leave the noise out")
+	}
 	if w.fitErr != nil && !errors.Is(w.fitErr, relaxation.ErrNoMaximum) {
 		return w.dataError(w.fitErr, "record longer, or widen the band")
 	}

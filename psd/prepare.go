@@ -16,6 +16,10 @@ var ErrTooShort = errors.New("too few samples for a fit of the spectrum")
 // two or three parameters leave next to nothing.
 const leastSamples = 16
 
+// farthest is a position beyond which a value is no position [m], in any unit that a detector
+// may have: a square of it, summed, still is a number.
+const farthest = 1e100
+
 // Record is a record made ready for estimation: mean, linear drift and narrow lines
 // are taken out. It is shared by the estimators.
 type Record struct {
@@ -42,8 +46,8 @@ type Line struct {
 func Prepare(x []float64, rate float64) (*Record, error) {
 	r := &Record{X: make([]float64, len(x)), Rate: rate}
 	for i, v := range x {
-		if math.IsInf(v, 0) {
-			return nil, fmt.Errorf("sample %d is infinite", i)
+		if math.Abs(v) > farthest {
+			return nil, fmt.Errorf("sample %d is at %g m, where no position can be", i, v)
 		}
 		if math.IsNaN(v) {
 			r.Missing++

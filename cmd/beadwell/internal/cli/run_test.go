@@ -184,8 +184,23 @@ func runExample(t *testing.T, line string) {
 	if err := os.WriteFile("session.toml", []byte("[bead]\ndiameter = \"1 um\"\n"), 0o666); err != nil {
 		t.Fatal(err)
 	}
-	if strings.HasPrefix(line, "beadwell init .") {
+	if strings.HasPrefix(line, "beadwell init") {
 		os.Remove("session.toml")
+	} else if err := os.WriteFile("tonight/session.toml", []byte("[bead]\ndiameter = \"1 um\"\n"), 0o666); err != nil {
+		t.Fatal(err)
+	}
+	input, line := pipedInto(line)
+	args := words(line)[1:]
+	switch args[0] {
+	case "collect":
+		prepare(t, "batch --out results tonight", "batch --shard 1/3 --out shard-1 tonight", "batch --shard 2/3 --out shard-2 tonight", "batch --shard 3/3 --out shard-3 tonight")
+	case "trend":
+		prepare(t, "batch --out results/2026-03 tonight", "batch --out results/2026-04 tonight", "batch --out results/2026-05 tonight")
+		found, err := filepath.Glob(args[len(args)-1]) // as a shell does
+		if err != nil || len(found) != 3 {
+			t.Fatal(found, err)
+		}
+		args = append(args[:len(args)-1], found...)
 	}
 	if strings.Contains(line, "results/run7/result.json") {
 		w, _, _ := testWorld("")
@@ -193,9 +208,29 @@ func runExample(t *testing.T, line string) {
 			t.Fatal("the result that the example starts from cannot be made")
 		}
 	}
-	w, _, errs := testWorld("")
-	if got := run(context.Background(), words(line)[1:], w); got != StatusDone {
+	w, _, errs := testWorld(input)
+	if got := run(context.Background(), args, w); got != StatusDone {
 		t.Errorf("%s: status %d, %s", line, got, errs)
+	}
+}
+
+// pipedInto takes a pipe off the front of a command line; what comes through it here are
+// the names of two tracks.
+func pipedInto(line string) (input, command string) {
+	if _, after, found := strings.Cut(line, " | "); found {
+		return "run7.csv\nrun8.csv\n", after
+	}
+	return "", line
+}
+
+// prepare runs command lines that an example starts from.
+func prepare(t *testing.T, lines ...string) {
+	t.Helper()
+	for _, line := range lines {
+		w, _, errs := testWorld("")
+		if got := run(context.Background(), strings.Fields(line), w); got != StatusDone {
+			t.Fatalf("beadwell %s: status %d, %s", line, got, errs)
+		}
 	}
 }
 
@@ -252,7 +287,7 @@ func TestProgress(t *testing.T) {
 		watched, quiet bool
 		want           string
 	}{
-		{4, false, false, "beadwell: 2 of 4 recordings done\n"},
+		{4, false, false, "beadwell: 2 of 4 recordings done, about 27s left\n"},
 		{1, false, false, ""},
 		{1, true, false, ""},
 		{4, false, true, ""},
