@@ -4,6 +4,7 @@ import (
 	"math"
 
 	"beadwell/calib/health"
+	"beadwell/calib/relaxation"
 	"beadwell/calib/track"
 )
 
@@ -29,7 +30,7 @@ func (r *Result) examine(rec *track.Recording, works []*work) stretch {
 	in := health.Input{Rate: rec.Rate, Missing: rec.Missing, JitterRMS: rec.JitterRMS, Start: rec.Start}
 	for _, w := range works {
 		in.Exposure = w.exposure
-		process, _, _, _ := w.bestProcess()
+		process := w.soundProcess()
 		a := health.Axis{Name: w.axisName, X: w.source.Values, Process: process, Known: w.fitErr == nil || w.poolErr == nil, GoodnessP: math.NaN()}
 		if w.fitErr == nil {
 			a.CornerSD, _ = w.fit.SD(alongCorner)
@@ -56,6 +57,18 @@ func (r *Result) examine(rec *track.Recording, works []*work) stretch {
 		r.Checks = append(r.Checks, newCheck(c, rec.Start))
 	}
 	return good
+}
+
+// soundProcess returns the process that the record is checked against: the drag-free fit,
+// or the pooled one where the record hardly determines its corner frequency.
+func (w *work) soundProcess() relaxation.Process {
+	free, _, _, _ := w.bestProcess()
+	if w.fitErr != nil || w.poolErr != nil || w.pooled.regimeFC <= w.limit() {
+		return free
+	}
+	at, scale := w.pooled.maximum.At, w.fit.Scale()
+	return relaxation.Process{Corner: math.Exp(at[0]) * w.rate, Variance: scale * math.Exp(at[1]), Noise: scale * at[2],
+		Interval: free.Interval, Exposure: free.Exposure}
 }
 
 // newCheck turns a check into the form of a result; start is the time of the first sample [s].

@@ -17,6 +17,18 @@ import (
 // means what it says (docs/method.md, Eq. 42).
 const hopeless = 0.5
 
+// hopelessNoise takes its place where the noise is not stated: noise, blur and relaxation
+// then trade places, and the likelihood bends away from a normal one sooner.
+const hopelessNoise = 0.35
+
+// limit returns the bound above which a leg of this axis is withheld.
+func (w *work) limit() float64 {
+	if w.noise.Known {
+		return hopeless
+	}
+	return hopelessNoise
+}
+
 // smallEnough is the relative uncertainty below which an interval is taken as
 // normal in the logarithm: the skewness of a variance estimate of relative uncertainty
 // s moves the ends of its 95 % interval by about s^2, here 1e-4.
@@ -68,13 +80,13 @@ func (w *work) spectrumLegs() {
 	}
 	sdC, _ := w.fit.SD(alongCorner)
 	sdV, _ := w.fit.SD(alongVariance)
-	if p.regimeFC > hopeless || sdC > 2*hopeless {
+	if p.regimeFC > w.limit() || sdC > 2*hopeless {
 		l.reason[spectrumLeg] = tooUncertain(math.Max(p.regimeFC, sdC))
 	} else {
 		l.value[spectrumLeg] = math.Log(2 * math.Pi * w.phys.gamma * w.fit.Corner)
 		l.offsets[spectrumLeg] = w.profile(alongCorner, sdC)
 	}
-	if p.regimeV > hopeless || sdV > 2*hopeless {
+	if p.regimeV > w.limit() || sdV > 2*hopeless {
 		l.reason[amplitudeLeg] = tooUncertain(math.Max(p.regimeV, sdV))
 	} else {
 		l.value[amplitudeLeg] = math.Log(w.phys.kT / w.fit.Variance)
@@ -116,7 +128,7 @@ func (w *work) bartlett() float64 {
 
 func (w *work) equipartitionLeg(p relaxation.Process, total, data relaxation.Matrix, drawn bool) {
 	l := &w.legs
-	if drawn || w.pooled.regimeV > hopeless {
+	if drawn || w.pooled.regimeV > w.limit() {
 		l.reason[equipartitionLeg] = tooUncertain(w.pooled.regimeV)
 		if !w.noise.Known {
 			l.reason[equipartitionLeg] = "the noise is not stated, and the recording does not determine it"
