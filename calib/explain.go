@@ -30,7 +30,7 @@ What to do: state the height of the bead's centre above the nearer surface, or "
 What to do: state the exposure; 0 for a detector.`},
 	{CodeLine, "a narrow line was removed", `The spectrum has a value that chance does not make more than once in a thousand recordings. The sinusoid was fitted and subtracted, and the frequencies around it were left out of the fit; the estimates allow for what was taken out.
 What to do: look for mains pickup, a fan, a stage controller.`},
-	{CodeWithheld, "an estimate was withheld", `The recording does not determine this estimate: by the Fisher information no method could give it to better than 35 %, or its likelihood has no maximum. The adopted stiffness does not rest on it.
+	{CodeWithheld, "an estimate was withheld", `The recording does not determine this estimate: by the Fisher information no method could give it to better than 50 % (35 % where the noise is not stated), or its likelihood has no maximum. The adopted stiffness does not rest on it.
 What to do: record longer or faster, shorten the exposure, or state the localisation noise.`},
 	{CodeNoiseUnknown, "noise cannot be told from motion", `When the bead relaxes within about three samples, white localisation noise, blur and relaxation all make the same change to the spectrum. Without knowledge of the noise, corner frequency and variance cannot be told apart, and only the computed drag keeps the stiffness determined.
 What to do: measure the noise with a stuck bead under the same illumination and state it, or sample faster.`},

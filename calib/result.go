@@ -336,7 +336,7 @@ const (
 
 // Verdict says whether the calibration may be used.
 type Verdict struct {
-	Status      string `json:"status"`
+	Status      string `json:"status"`              // "consistent", "unchecked", "inconsistent" or "unfit"
 	Text        string `json:"text"`                // one sentence
 	Reason      string `json:"reason"`              // why, with the numbers
 	FamilyWiseP Float  `json:"family_wise_p_value"` // combined, over all axes and comparisons
