@@ -51,6 +51,9 @@ func (w *work) routes() Test {
 		fixed *= fixed
 	}
 	loose := math.Max(0, 2*(w.fit.Maximum.Value-p.maximum.Value))
+	if !w.has(spectrumLeg) && !w.has(amplitudeLeg) && loose < farApart {
+		return noTest("the recording does not determine the drag")
+	}
 	excess := w.bartlett()
 	fixed, loose = fixed/(excess*excess), loose/(excess*excess)
 	t := Test{ChiSquare: Float(fixed), DegreesOfFreedom: 1, PValue: survival(fixed, 1),
@@ -180,9 +183,9 @@ func (w *work) adopt() {
 		if p.sdTotal > smallEnough {
 			o = p.problem.Profile(p.maximum, p.weights, p.sdTotal).Scaled(w.bartlett())
 		}
-		if math.IsInf(o.Low95, 0) || math.IsInf(o.High95, 0) || p.sdTotal > hopeless || p.elsewhere() {
+		if math.IsInf(o.Low95, 0) || math.IsInf(o.High95, 0) || p.sdTotal > hopeless {
 			reason := tooUncertain(p.sdTotal)
-			if p.sdTotal <= hopeless {
+			if p.sdTotal <= hopeless { // an end of the interval is open
 				reason = tooUncertain(math.Inf(1))
 			}
 			a.Stiffness, a.Withheld = Withheld("N/m", reason), reason
@@ -193,21 +196,6 @@ func (w *work) adopt() {
 		w.adoptedLeg = combinedLegs
 	}
 	w.budget()
-}
-
-// elsewhere tells whether stiffnesses far from the maximum explain the record nearly as
-// well. Where an unstated noise can take the place of motion, the likelihood may have more than one
-// maximum, and the width of one of them says nothing.
-func (p *pooled) elsewhere() bool {
-	if !p.loose {
-		return false
-	}
-	for _, distance := range []float64{-2.5, -1.5, -0.7, 0.7, 1.5, 2.5} {
-		if root, ok := p.problem.Fall(p.maximum, p.weights, distance); ok && root < z95 {
-			return true
-		}
-	}
-	return false
 }
 
 func (w *work) has(leg int) bool { return !math.IsNaN(w.legs.value[leg]) }

@@ -23,7 +23,6 @@ type pooled struct {
 	value           float64           // ln kappa
 	exposure        float64           // change of value for one standard uncertainty of the exposure
 	drag            float64           // weight of the drag route
-	loose           bool              // the noise is not stated, and the record alone hardly tells it from motion
 	regimeFC        float64           // Cramer-Rao bound of ln fc, drag and scale unknown; +Inf when singular
 	regimeV         float64           // the same of ln V
 }
@@ -60,7 +59,6 @@ func (w *work) pool() error {
 		p.problem.NonNegative = true
 		err = w.settlePool()
 	}
-	p.loose = !w.noise.Known && (p.regimeFC > hopeless || p.regimeV > hopeless)
 	if w.fitErr == nil && (err != nil || 2*(w.fit.Maximum.Value-p.maximum.Value) > farApart) {
 		// the computed drag is far from the record's: its fit tells nothing of the regime
 		p.regimeFC, p.regimeV = math.Sqrt(w.fit.Total[0][0]), math.Sqrt(w.fit.Total[1][1])

@@ -131,13 +131,6 @@ func (pr Problem) constrained(near, weights Parameters, value float64) (Problem,
 	return sub, from, true
 }
 
-// Fall returns the signed root of the likelihood-ratio statistic at a distance of
-// weights . p from the maximum m, profiled over the rest; ok is false where there is no fit.
-func (pr Problem) Fall(m Maximum, weights Parameters, distance float64) (root float64, ok bool) {
-	root, _, ok = pr.root(m, m, weights, distance)
-	return root, ok
-}
-
 // Ratio returns twice the fall of the log-likelihood from the maximum m to the best
 // point with weights . p = value, the likelihood-ratio statistic of that statement,
 // and that point.
