@@ -2,6 +2,7 @@ package calib_test
 
 import (
 	"os/exec"
+	"slices"
 	"strings"
 	"testing"
 )
@@ -39,7 +40,7 @@ func TestArrows(t *testing.T) {
 				t.Errorf("%s imports %s, which is above it", path, dep)
 			}
 			list, leaf := allowed[path]
-			if leaf && !contains(list, dep) {
+			if leaf && !slices.Contains(list, dep) {
 				t.Errorf("%s imports %s; it may import only %v", path, dep, list)
 			}
 		}
@@ -63,13 +64,4 @@ func packages(t *testing.T) []string {
 		t.Fatalf("go list: %v", err)
 	}
 	return strings.Split(strings.TrimSpace(string(out)), "\n")
-}
-
-func contains(list []string, s string) bool {
-	for _, v := range list {
-		if v == s {
-			return true
-		}
-	}
-	return false
 }

@@ -56,7 +56,7 @@ func FuzzRead(f *testing.F) {
 	}
 	f.Fuzz(func(t *testing.T, data []byte) {
 		if len(data) > 1<<20 {
-			t.Skip()
+			return // the bounds hold for inputs under 1 MiB
 		}
 		for _, opt := range []Options{{MaxBytes: 1 << 22}, {Unit: "um", UnitForced: true, Rate: 1000, RateForced: true, TimeUnit: "", MaxBytes: 1 << 22}} {
 			opt.Name, opt.Workers, opt.NoHash = "fuzz", 2, true
