@@ -5,6 +5,8 @@ import (
 	"math"
 	"strings"
 	"testing"
+
+	"beadwell/internal/bound"
 )
 
 // ulp is the allowance for one product of two float64: half a unit in the
@@ -255,7 +257,9 @@ func FuzzParse(f *testing.F) {
 	}
 	f.Fuzz(func(t *testing.T, text string) {
 		for dim := range dimensionCount {
-			v, err := Parse(text, dim)
+			var v Value
+			var err error
+			bound.Effort(t, func() { v, err = Parse(text, dim) })
 			if err != nil {
 				if v != (Value{}) {
 					t.Fatalf("Parse(%q, %v) has both value and error", text, dim)

@@ -8,6 +8,8 @@ import (
 	"path/filepath"
 	"strings"
 	"testing"
+
+	"beadwell/internal/bound"
 )
 
 func TestLoadFull(t *testing.T) {
@@ -189,7 +191,12 @@ func FuzzRead(f *testing.F) {
 		f.Add([]byte(seed))
 	}
 	f.Fuzz(func(t *testing.T, data []byte) {
-		s, err := Read("s.toml", data)
+		if len(data) > bound.Input {
+			return
+		}
+		var s *Settings
+		var err error
+		bound.Effort(t, func() { s, err = Read("s.toml", data) })
 		if (err == nil) == (s == nil) {
 			t.Fatalf("Read gave %v and %v", s, err)
 		}

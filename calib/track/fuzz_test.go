@@ -8,6 +8,8 @@ import (
 	"path/filepath"
 	"strconv"
 	"testing"
+
+	"beadwell/internal/bound"
 )
 
 // checkOutcome verifies what holds for every input: either recordings or an
@@ -55,12 +57,14 @@ func FuzzRead(f *testing.F) {
 		f.Add(data)
 	}
 	f.Fuzz(func(t *testing.T, data []byte) {
-		if len(data) > 1<<20 {
+		if len(data) > bound.Input {
 			return // the bounds hold for inputs under 1 MiB
 		}
 		for _, opt := range []Options{{MaxBytes: 1 << 22}, {Unit: "um", UnitForced: true, Rate: 1000, RateForced: true, TimeUnit: "", MaxBytes: 1 << 22}} {
 			opt.Name, opt.Workers, opt.NoHash = "fuzz", 2, true
-			list, err := Read(context.Background(), bytes.NewReader(data), opt)
+			var list []*Recording
+			var err error
+			bound.Effort(t, func() { list, err = Read(context.Background(), bytes.NewReader(data), opt) })
 			checkOutcome(t, list, err)
 		}
 	})

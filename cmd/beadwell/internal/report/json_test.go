@@ -12,6 +12,7 @@ import (
 	"github.com/google/go-cmp/cmp/cmpopts"
 
 	"beadwell/calib"
+	"beadwell/internal/bound"
 )
 
 func encoded(t *testing.T, r *calib.Result) []byte {
@@ -119,7 +120,12 @@ func FuzzReadJSON(f *testing.F) {
 	f.Add([]byte(`{"schema":"beadwell-result/1"}`))
 	f.Add([]byte(`{"schema":"beadwell-result/1","Schema":null,"axes":[{}]}`))
 	f.Fuzz(func(t *testing.T, text []byte) {
-		r, err := ReadJSON(bytes.NewReader(text))
+		if len(text) > bound.Input {
+			return
+		}
+		var r *calib.Result
+		var err error
+		bound.Effort(t, func() { r, err = ReadJSON(bytes.NewReader(text)) })
 		if err != nil {
 			return
 		}
