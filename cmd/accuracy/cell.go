@@ -2,7 +2,9 @@ package main
 
 import (
 	"context"
+	"errors"
 	"fmt"
+	"hash/fnv"
 	"math"
 	"math/rand/v2"
 
@@ -178,6 +180,14 @@ func (c Cell) settings(noise float64) (*session.Settings, error) {
 	return session.ForTrack(session.Sources{Flags: flags})
 }
 
+// seed returns the seed of a recording of the cell. It hangs on the cell's name, so that no two
+// cells share their random numbers and an average over cells gains by each of them.
+func (c Cell) seed(recording int) uint64 {
+	h := fnv.New64a()
+	fmt.Fprintf(h, "%v, recording %d", c, recording)
+	return h.Sum64()
+}
+
 // calibrate simulates and calibrates the recording of a seed.
 func (c Cell) calibrate(ctx context.Context, seed uint64) (*calib.Result, world, *track.Recording, error) {
 	w, noise, err := c.draw(rand.New(rand.NewPCG(seed, 2)))
@@ -196,32 +206,79 @@ func (c Cell) calibrate(ctx context.Context, seed uint64) (*calib.Result, world,
 // hopeless stands for a singular information matrix.
 const hopeless = 1e9
 
-// Bounds are Cramer-Rao bounds of ln kappa for three states of knowledge.
+// Bounds are Cramer-Rao bounds of ln kappa for three states of knowledge, with the
+// uncertainties from which the inputs of the cell are drawn.
 type Bounds struct{ Drag, Amplitude, Both float64 }
 
 // bounds computes the Cramer-Rao bounds of the cell from the Fisher information of the
-// sampled process with known mean (Whittle's sum over the Fourier frequencies).
-func (c Cell) bounds() Bounds {
+// sampled process with known mean (Whittle's sum over the Fourier frequencies), to which the
+// drawn inputs add what they are stated to be known to: the bound of a problem with priors
+// (Van Trees, Detection, Estimation and Modulation Theory I, 1968, section 2.4).
+func (c Cell) bounds() (Bounds, error) {
 	n := c.samples() / 2 * 2
 	b := relaxation.NewBlocks(make([]float64, n/2+1), n, false, nil)
 	l := relaxation.NewSpectral(b, nil, c.Exposure, 1)
 	q := c.Noise * c.Noise
 	_, _, info := l.Score(relaxation.Parameters{math.Log(c.Ratio), 0, q})
 	pr := relaxation.Problem{Likelihood: l}
-	if !c.Unknown {
+	switch {
+	case c.Drawn && !c.Unknown && q > 0:
+		pr.Priors = []relaxation.Prior{{Weights: relaxation.Parameters{0, 0, 1}, Mean: q, SD: 2 * noiseU * q}}
+	case !c.Unknown:
 		pr.Directions = []relaxation.Parameters{{1, 0, 0}, {0, 1, 0}}
+	}
+	var drags, amplitudes, mixed float64 // systematic variances of both routes, their covariance
+	if c.Drawn {
+		var err error
+		if drags, amplitudes, mixed, err = systematics(); err != nil {
+			return Bounds{}, err
+		}
 	}
 	out := Bounds{hopeless, hopeless, hopeless}
 	if cov, _, err := pr.Covariance(info); err == nil {
-		out.Drag, out.Amplitude = math.Sqrt(cov[0][0]), math.Sqrt(cov[1][1])
+		out.Drag, out.Amplitude = math.Sqrt(cov[0][0]+drags), math.Sqrt(cov[1][1]+amplitudes)
 	}
-	along := []relaxation.Parameters{{1, -1, 0}}
-	if c.Unknown {
-		along = append(along, relaxation.Parameters{0, 0, 1})
+	// ln fc + ln gamma and ln kT - ln V are two estimates of ln kappa; what ties them is a prior
+	// on ln fc + ln V, as narrow as the inputs are known.
+	u := math.Sqrt(drags + amplitudes - 2*mixed)
+	along := 0.0
+	if u > 0 {
+		along = (mixed - drags) / (u * u)
+		pr.Priors = append(pr.Priors, relaxation.Prior{Weights: relaxation.Parameters{1, 1, 0}, SD: u})
+	} else if pr.Directions = []relaxation.Parameters{{1, -1, 0}}; c.Unknown {
+		pr.Directions = append(pr.Directions, relaxation.Parameters{0, 0, 1})
 	}
-	pr.Directions = along
 	if cov, _, err := pr.Covariance(info); err == nil {
-		out.Both = math.Sqrt(cov[0][0])
+		w := relaxation.Parameters{1 + along, along, 0}
+		rest := (1+along)*(1+along)*drags + along*along*amplitudes - 2*along*(1+along)*mixed
+		out.Both = math.Sqrt(cov.Form(w, w) + math.Max(0, rest))
 	}
-	return out
+	return out, nil
+}
+
+// systematics returns the variances of ln gamma and of ln (kT/scale^2) from the drawn inputs,
+// and their covariance.
+func systematics() (drags, amplitudes, mixed float64, err error) {
+	liquid, err := medium.ParseFluid("water")
+	if err != nil {
+		return 0, 0, 0, err
+	}
+	at := func(diameter, kelvin, height float64) (float64, float64) {
+		w, e := computed(liquid, statedDiameter+diameter, statedKelvin+kelvin, statedHeight+height)
+		if e != nil {
+			err = e
+		}
+		return math.Log(w.gamma), math.Log(w.kT)
+	}
+	for _, step := range [][3]float64{{diameterU * statedDiameter}, {0, kelvinU}, {0, 0, heightU}} {
+		g1, a1 := at(step[0], step[1], step[2])
+		g0, a0 := at(-step[0], -step[1], -step[2])
+		g, a := (g1-g0)/2, (a1-a0)/2
+		drags, amplitudes, mixed = drags+g*g, amplitudes+a*a, mixed+g*a
+	}
+	p, e := liquid.At(statedKelvin)
+	if err != nil || e != nil {
+		return 0, 0, 0, errors.Join(err, e)
+	}
+	return drags + p.ViscosityU*p.ViscosityU, amplitudes + 4*pixelU*pixelU, mixed, nil
 }

@@ -30,7 +30,7 @@ func run() error {
 	runs := flag.Int("runs", 0, "recordings per cell; 0: 2000 for main cells, 200 for others")
 	part := flag.String("part", "1/1", "which part of the cells to run, such as 2/4")
 	match := flag.String("match", "", "only cells whose name contains this text")
-	file := flag.String("results", "accuracy.json", "file of results, read and added to")
+	file := flag.String("results", "accuracy.json", "file of results, read and added to: a cell that has fewer recordings than asked for gets the rest")
 	write := flag.String("write", "", "page to write from the file of results")
 	limit := flag.Duration("limit", 0, "start no further cell after this time")
 	flag.Parse()
@@ -54,13 +54,19 @@ func run() error {
 		if i%of != at-1 || !strings.Contains(c.String(), *match) {
 			continue
 		}
-		if old := known[c.String()]; old != nil && old.Runs >= n {
+		o := known[c.String()]
+		if o == nil {
+			if o, err = newOutcome(c); err != nil {
+				return err
+			}
+		}
+		if o.Runs >= n {
 			continue
 		}
 		if ctx.Err() != nil || *limit > 0 && time.Since(begin) > *limit {
 			break
 		}
-		o := study(ctx, c, n)
+		o.study(ctx, n)
 		if ctx.Err() != nil {
 			break
 		}

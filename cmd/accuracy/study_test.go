@@ -14,16 +14,28 @@ import (
 // quick is a small camera cell: 300 samples.
 var quick = Cell{Ratio: 0.1, Periods: 30, Exposure: 0.5, Noise: 0.1}
 
-// The outcome of a cell does not depend on the number of processors, and survives the
-// file of results.
+func blank(t *testing.T, c Cell) *Outcome {
+	t.Helper()
+	o, err := newOutcome(c)
+	if err != nil {
+		t.Fatal(err)
+	}
+	return o
+}
+
+// The outcome of a cell does not depend on the number of processors or on whether it was run
+// in parts, and survives the file of results.
 func TestStudyIsRepeatable(t *testing.T) {
 	ctx := context.Background()
-	first := study(ctx, quick, 24)
+	first := blank(t, quick)
+	first.study(ctx, 24)
 	if first.Failed > 0 {
 		t.Fatalf("%d recordings failed: %s", first.Failed, first.Error)
 	}
 	old := runtime.GOMAXPROCS(1)
-	again := study(ctx, quick, 24)
+	again := blank(t, quick)
+	again.study(ctx, 10)
+	again.study(ctx, 24)
 	runtime.GOMAXPROCS(old)
 	name := filepath.Join(t.TempDir(), "results.json")
 	if err := save(name, map[string]*Outcome{quick.String(): again}); err != nil {
@@ -47,7 +59,7 @@ func TestStudyIsRepeatable(t *testing.T) {
 // integral, which costs terms of the order of 1/(pi T fc).
 func TestBounds(t *testing.T) {
 	c := Cell{Ratio: 0.05, Periods: 3000}
-	b, n := c.bounds(), float64(c.samples())
+	b, n := blank(t, c).Bounds, float64(c.samples())
 	z := math.Exp(-2 * math.Pi * c.Ratio)
 	for name, pair := range map[string][2]float64{
 		"drag":      {b.Drag, math.Sqrt((1-z*z)/n) / (z * 2 * math.Pi * c.Ratio)},
@@ -62,7 +74,8 @@ func TestBounds(t *testing.T) {
 // The naive analysis is right where a naive analysis is right (fast, noiseless, long) and
 // covers as little as it deserves: its variance has the error of independent samples.
 func TestNaive(t *testing.T) {
-	o := study(context.Background(), Cell{Ratio: 0.02, Periods: 200}, 24)
+	o := blank(t, Cell{Ratio: 0.02, Periods: 200})
+	o.study(context.Background(), 24)
 	for _, name := range []string{naiveLorentzian, naiveRaw, naiveDisplacements} {
 		// 200 periods leave 4 % of scatter each, 1 % for the mean of 24
 		if tally := o.tally(name); tally.Count != 24 || math.Abs(tally.Mean()) > 0.06 {
@@ -74,5 +87,24 @@ func TestNaive(t *testing.T) {
 	}
 	if k := o.tally(calib.LegEquipartition).In95; k < 19 {
 		t.Errorf("equipartition covers %d of 24", k)
+	}
+}
+
+// With inputs drawn, a long record is bounded by the inputs alone: 2 % of the diameter (in Stokes
+// drag and in the wall factor 1/(1 - (9/16)(R/h)), where R/h is a tenth), 0.5 K (the viscosity of
+// water falls from 0.9107 to 0.8701 mPa s between 24 and 26 C; CRC Handbook) and the height; 1 % of the pixel
+// twice in the amplitude. Best weights of two unlike estimates: 1/(1/g + 1/a), as the
+// temperature ties them by less than a tenth.
+func TestBoundsOfDrawnInputs(t *testing.T) {
+	b := blank(t, Cell{Ratio: 0.05, Periods: 1e6, Drawn: true}).Bounds
+	wall := 0.05625 / (1 - 0.05625)
+	g := math.Sqrt(math.Pow(0.02*(1+wall), 2) + math.Pow(0.5*math.Log(0.9107/0.8701)/2, 2) + math.Pow(0.1*wall, 2) + math.Pow(0.0017, 2))
+	a := math.Hypot(0.02, 0.5/298)
+	for name, pair := range map[string][2]float64{
+		"drag": {b.Drag, g}, "amplitude": {b.Amplitude, a}, "both": {b.Both, 1 / math.Sqrt(1/(g*g)+1/(a*a))},
+	} {
+		if math.Abs(pair[0]/pair[1]-1) > 0.01 { // the statistical part is 0.07 %; Faxen's next term is 0.1 %
+			t.Errorf("bound by %s = %.5f, want %.5f", name, pair[0], pair[1])
+		}
 	}
 }

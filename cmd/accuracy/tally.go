@@ -91,25 +91,30 @@ const (
 	naiveDisplacements = "naive MSD"
 )
 
-// study runs a number of recordings of a cell. Recordings are scored in the order of their
-// seeds, so that the outcome does not depend on the number of processors.
-func study(ctx context.Context, c Cell, runs int) *Outcome {
-	o := &Outcome{Cell: c, Runs: runs, Bounds: c.bounds(), Legs: map[string]*Tally{}}
-	trials := make([]trial, runs)
+// study adds recordings of a cell to its outcome until there are as many as asked for.
+// Recordings are scored in the order of their numbers, so that the outcome does not depend
+// on the number of processors; it is unfinished when the context ends.
+func (o *Outcome) study(ctx context.Context, runs int) {
+	c := o.Cell
+	trials := make([]trial, max(0, runs-o.Runs))
 	var group sync.WaitGroup
 	next := make(chan int)
 	for range runtime.GOMAXPROCS(0) {
 		group.Go(func() {
 			for i := range next {
-				trials[i] = c.try(ctx, uint64(i+1))
+				trials[i] = c.try(ctx, c.seed(o.Runs+i))
 			}
 		})
 	}
-	for i := range runs {
+	for i := range trials {
 		next <- i
 	}
 	close(next)
 	group.Wait()
+	if ctx.Err() != nil {
+		return
+	}
+	o.Runs += len(trials)
 	for _, t := range trials {
 		if t.err != nil {
 			o.Failed++
@@ -118,7 +123,12 @@ func study(ctx context.Context, c Cell, runs int) *Outcome {
 		}
 		o.score(t)
 	}
-	return o
+}
+
+// newOutcome returns the outcome of a cell without recordings.
+func newOutcome(c Cell) (*Outcome, error) {
+	b, err := c.bounds()
+	return &Outcome{Cell: c, Bounds: b, Legs: map[string]*Tally{}}, err
 }
 
 // trial is the outcome of one recording.
