@@ -93,15 +93,16 @@ func TestNaive(t *testing.T) {
 // With inputs drawn, a long record is bounded by the inputs alone: 2 % of the diameter (in Stokes
 // drag and in the wall factor 1/(1 - (9/16)(R/h)), where R/h is a tenth), 0.5 K (the viscosity of
 // water falls from 0.9107 to 0.8701 mPa s between 24 and 26 C; CRC Handbook) and the height; 1 % of the pixel
-// twice in the amplitude. Best weights of two unlike estimates: 1/(1/g + 1/a), as the
-// temperature ties them by less than a tenth.
+// twice in the amplitude. The best weights of two estimates
+// with variances g, a and covariance m leave (g a - m^2)/(g + a - 2 m).
 func TestBoundsOfDrawnInputs(t *testing.T) {
 	b := blank(t, Cell{Ratio: 0.05, Periods: 1e6, Drawn: true}).Bounds
 	wall := 0.05625 / (1 - 0.05625)
 	g := math.Sqrt(math.Pow(0.02*(1+wall), 2) + math.Pow(0.5*math.Log(0.9107/0.8701)/2, 2) + math.Pow(0.1*wall, 2) + math.Pow(0.0017, 2))
 	a := math.Hypot(0.02, 0.5/298)
+	m := -0.5 * math.Log(0.9107/0.8701) / 2 * 0.5 / 298
 	for name, pair := range map[string][2]float64{
-		"drag": {b.Drag, g}, "amplitude": {b.Amplitude, a}, "both": {b.Both, 1 / math.Sqrt(1/(g*g)+1/(a*a))},
+		"drag": {b.Drag, g}, "amplitude": {b.Amplitude, a}, "both": {b.Both, math.Sqrt((g*g*a*a - m*m) / (g*g + a*a - 2*m))},
 	} {
 		if math.Abs(pair[0]/pair[1]-1) > 0.01 { // the statistical part is 0.07 %; Faxen's next term is 0.1 %
 			t.Errorf("bound by %s = %.5f, want %.5f", name, pair[0], pair[1])
