@@ -15,22 +15,34 @@ import (
 )
 
 // fenced finds the blocks of a page, with their kind.
-var fenced = regexp.MustCompile("(?ms)^```(sh|toml|csv|text)\n(.*?)^```")
+var fenced = regexp.MustCompile("(?ms)^```(sh|toml|csv|text|json)\n(.*?)^```")
 
 // TestGuide does what docs/guide.md says, in its order, in an empty folder that holds the
-// demo recordings as the folder tonight: commands run, files are written, and what
-// the page shows as output is compared. A line [...] stands for any lines.
+// demo recordings as the folder tonight.
 func TestGuide(t *testing.T) {
-	page, err := os.ReadFile("../../docs/guide.md")
+	followPage(t, "../../docs/guide.md", "camera.csv", "quadrant.csv")
+}
+
+// TestPipelinesPage does what docs/pipelines/README.md says, with the demo session as the
+// folder tonight. Its commands of Snakemake and Slurm are those of docs/pipelines/try.sh.
+func TestPipelinesPage(t *testing.T) {
+	followPage(t, "../../docs/pipelines/README.md", "camera.csv", "quadrant.csv", "session.toml", "tracks.csv")
+}
+
+// followPage does what a page says in an empty folder in which tonight holds some files of the
+// demo: commands run, files are written, and what the page shows as output (as JSON: on
+// standard error) is compared. A line [...] stands for any lines.
+func followPage(t *testing.T, path string, demo ...string) {
+	page, err := os.ReadFile(path)
 	if err != nil {
 		t.Fatal(err)
 	}
 	folder := t.TempDir()
-	for _, name := range []string{"camera.csv", "quadrant.csv"} {
+	for _, name := range demo {
 		copyFile(t, filepath.Join("../../testdata/demo", name), filepath.Join(folder, "tonight", name))
 	}
 	t.Chdir(folder)
-	var last string
+	var out, errs string
 	ran := 0
 	for _, block := range fenced.FindAllStringSubmatch(string(page), -1) {
 		kind, text := block[1], block[2]
@@ -40,21 +52,25 @@ func TestGuide(t *testing.T) {
 		case "csv":
 			writeFile(t, "tonight/tracks.csv", text)
 		case "text":
-			if !shows(text, last) {
-				t.Errorf("the page shows\n%s\nbut the command before it prints\n%s", text, last)
+			if !shows(text, out) {
+				t.Errorf("the page shows\n%s\nbut the command before it prints\n%s", text, out)
+			}
+		case "json":
+			if !shows(text, errs) {
+				t.Errorf("the page shows\n%s\nbut the command before it prints, as an error,\n%s", text, errs)
 			}
 		default:
-			last = follow(t, text, &ran)
+			out, errs = follow(t, text, &ran)
 		}
 	}
 	if ran == 0 {
-		t.Error("the guide has no command")
+		t.Errorf("%s has no command", path)
 	}
 }
 
-// follow runs the commands of a block and returns the output of the last. A line "# exit
-// status 3" below it says how that ends; 0 else.
-func follow(t *testing.T, block string, ran *int) string {
+// follow runs the commands of a block and returns what the last prints, as output and as
+// errors. A line "# exit status 3" below it says how that ends; 0 else.
+func follow(t *testing.T, block string, ran *int) (output, problems string) {
 	t.Helper()
 	var commands []string
 	last := 0
@@ -67,22 +83,22 @@ func follow(t *testing.T, block string, ran *int) string {
 			}
 		}
 	}
-	var out bytes.Buffer
+	var out, errs bytes.Buffer
 	for i, arguments := range commands {
 		*ran++
 		want := 0
 		if i == len(commands)-1 {
 			want = last
 		}
-		var errs bytes.Buffer
 		out.Reset()
+		errs.Reset()
 		world := cli.World{In: strings.NewReader(""), Out: &out, Err: &errs, Getenv: func(string) string { return "" },
 			Now: func() time.Time { return time.Unix(0, 0) }, Version: "test", Calibrate: calib.Calibrate}
 		if status := cli.Main(words(arguments), world); status != want {
 			t.Errorf("beadwell %s ends with %d, want %d: %s", arguments, status, want, errs.String())
 		}
 	}
-	return out.String()
+	return out.String(), errs.String()
 }
 
 // words splits a command line at blanks outside of single quotes.

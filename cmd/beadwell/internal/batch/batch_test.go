@@ -250,6 +250,59 @@ func same(t *testing.T, what string, got, want map[string]string) {
 	}
 }
 
+// Batches of one recording each, joined in any order, are one batch of them all.
+func TestCollectWholeBatches(t *testing.T) {
+	job, _ := invented(t, 7)
+	run(t, job)
+	var folders []string
+	for i, path := range job.Files {
+		one := job
+		one.Files, one.Out = []string{path}, filepath.Join(t.TempDir(), fmt.Sprint(i))
+		run(t, one)
+		folders = append([]string{one.Out}, folders...)
+	}
+	joined := filepath.Join(t.TempDir(), "joined")
+	if _, err := Collect(folders, joined, SeriesOptions{}); err != nil {
+		t.Fatal(err)
+	}
+	same(t, "collected", tree(t, joined), tree(t, job.Out))
+
+	// Shards of one list beside a whole batch of others; each shard twice is no harm.
+	part := job
+	part.Files = job.Files[:4]
+	var mixed []string
+	for i := range 2 {
+		part.Shard, part.Out = Shard{i + 1, 2}, filepath.Join(t.TempDir(), "shard")
+		run(t, part)
+		mixed = append(mixed, part.Out, part.Out)
+	}
+	rest := job
+	rest.Files, rest.Out = job.Files[4:], filepath.Join(t.TempDir(), "rest")
+	run(t, rest)
+	joined = filepath.Join(t.TempDir(), "mixed")
+	if _, err := Collect(append(mixed, rest.Out), joined, SeriesOptions{}); err != nil {
+		t.Fatal(err)
+	}
+	same(t, "shards beside a batch", tree(t, joined), tree(t, job.Out))
+	if _, err := Collect([]string{rest.Out, mixed[0]}, joined, SeriesOptions{}); err == nil || !strings.Contains(err.Error(), "2 of 4 recordings are there (shards 1/2)") {
+		t.Errorf("a missing shard beside a batch: %v", err)
+	}
+
+	// Two recordings of the same name cannot share a folder; a batch that was stopped is not whole.
+	twin := job
+	twin.Files, twin.Out = []string{filepath.Join(t.TempDir(), "RUN1.csv")}, filepath.Join(t.TempDir(), "twin")
+	write(t, twin.Files[0], "10")
+	run(t, twin)
+	if _, err := Collect([]string{job.Out, twin.Out}, joined, SeriesOptions{}); err == nil || !strings.Contains(err.Error(), "both have the folder") {
+		t.Errorf("two of one name: %v", err)
+	}
+	text := tree(t, job.Out)[journalName]
+	write(t, filepath.Join(job.Out, journalName), text[:len(text)-30])
+	if _, err := Collect([]string{job.Out}, joined, SeriesOptions{}); err == nil || !strings.Contains(err.Error(), "6 of 7 recordings are there") {
+		t.Errorf("a batch that was stopped: %v", err)
+	}
+}
+
 // What changed is done again: content, settings, an output; a cut journal is read as far as it goes.
 func TestResumeRedoesWhatChanged(t *testing.T) {
 	job, calls := invented(t, 8)

@@ -10,10 +10,11 @@ import (
 	"strings"
 )
 
-// Collect joins the folders of shards, in any order, into one: the bytes are those of a
-// run over the whole list. A folder may hold any number of shards, and be out itself.
+// Collect joins folders of results, in any order, into one: the bytes are those of one run
+// over all of their recordings. A folder holds a whole batch, or any number of the shards of
+// one list, and may be out itself.
 //
-// The error says which shards are missing, or that two disagree.
+// The error says which shards are missing, or which recordings disagree.
 func Collect(folders []string, out string, opt SeriesOptions) (*Summary, error) {
 	if err := os.MkdirAll(out, 0o777); err != nil {
 		return nil, errOutput{err}
@@ -23,7 +24,7 @@ func Collect(folders []string, out string, opt SeriesOptions) (*Summary, error) 
 		return nil, errOutput{err}
 	}
 	defer root.Close()
-	joined := joining{entries: map[string]entry{}, shards: map[string]bool{}}
+	joined := joining{entries: map[string]entry{}, shards: map[string]bool{}, sharded: map[string]bool{}, owner: map[string]string{}}
 	for _, folder := range folders {
 		if err := joined.folder(folder, root, sameFolder(folder, out)); err != nil {
 			return nil, err
@@ -51,8 +52,10 @@ func Collect(folders []string, out string, opt SeriesOptions) (*Summary, error) 
 type joining struct {
 	entries map[string]entry
 	shards  map[string]bool
-	files   int      // of the whole list
-	inPlace []string // journals of shards in the folder of results itself
+	list    int               // recordings of the list that the shards are parts of; 0 without shards
+	sharded map[string]bool   // of them, those that are there
+	owner   map[string]string // recording whose outputs a folder holds, by its name in lower case
+	inPlace []string          // journals of shards in the folder of results itself
 }
 
 func sameFolder(a, b string) bool {
@@ -81,14 +84,16 @@ func (j *joining) folder(folder string, out *os.Root, inPlace bool) error {
 		if err != nil {
 			return fmt.Errorf("%s: %w", folder, err)
 		}
-		if j.files != 0 && j.files != head.Files {
-			return fmt.Errorf("%s: is part of a list of %d recordings, others of one of %d; give shards of one run", filepath.Join(folder, name), head.Files, j.files)
+		if err := j.head(filepath.Join(folder, name), head, len(entries)); err != nil {
+			return err
 		}
-		j.files, j.shards[head.Shard] = head.Files, true
 		if inPlace && name != journalName {
 			j.inPlace = append(j.inPlace, name)
 		}
 		for file, e := range entries {
+			if head.Shard != "" {
+				j.sharded[file] = true
+			}
 			if err := j.take(file, e, folder); err != nil {
 				return err
 			}
@@ -103,11 +108,29 @@ func (j *joining) folder(folder string, out *os.Root, inPlace bool) error {
 	return nil
 }
 
+// head takes in what a journal says of its list, of which it has so many entries.
+func (j *joining) head(path string, head header, entries int) error {
+	switch {
+	case head.Shard == "" && head.Files != entries:
+		return fmt.Errorf("%s: %d of %d recordings are there; run that batch to its end first", path, entries, head.Files)
+	case head.Shard == "":
+		return nil
+	case j.list != 0 && j.list != head.Files:
+		return fmt.Errorf("%s: is part of a list of %d recordings, others of one of %d; give shards of one run", path, head.Files, j.list)
+	}
+	j.list, j.shards[head.Shard] = head.Files, true
+	return nil
+}
+
 func (j *joining) take(file string, e entry, folder string) error {
 	if other, twice := j.entries[file]; twice && (other.SHA256 != e.SHA256 || other.Fingerprint != e.Fingerprint) {
 		return fmt.Errorf("%s: %s was calibrated twice, with other content or settings; run the shards again", folder, file)
 	}
-	j.entries[file] = e
+	name := strings.ToLower(e.Folder) // as file systems that ignore case see it
+	if other, taken := j.owner[name]; taken && other != file {
+		return fmt.Errorf("%s: %s and %s, of two batches, both have the folder %s; do them in one batch", folder, other, file, e.Folder)
+	}
+	j.entries[file], j.owner[name] = e, file
 	return nil
 }
 
@@ -132,7 +155,7 @@ func copyOutputs(from, to *os.Root, e entry) error {
 
 // complete refuses a list with recordings missing.
 func (j *joining) complete() error {
-	if len(j.entries) == j.files {
+	if len(j.sharded) == j.list {
 		return nil
 	}
 	var have []string
@@ -140,7 +163,7 @@ func (j *joining) complete() error {
 		have = append(have, shard)
 	}
 	slices.SortFunc(have, natural)
-	return fmt.Errorf("%d of %d recordings are there (shards %s); run the missing shards, or those that were stopped, again", len(j.entries), j.files, strings.Join(have, ", "))
+	return fmt.Errorf("%d of %d recordings are there (shards %s); run the missing shards, or those that were stopped, again", len(j.sharded), j.list, strings.Join(have, ", "))
 }
 
 func (j *joining) ordered() []entry {

@@ -190,10 +190,14 @@ func runBatch(ctx context.Context, a *app, o batchOptions) error {
 	if err != nil {
 		return batchError(o.out, err)
 	}
-	if err := a.printSummary(summary, o.format, o.out); err != nil {
+	written, reasons := filepath.Join(o.out, batch.IndexName), seeReasons(o.out)
+	if o.shard != "" { // the summary is made when the shards are joined
+		written, reasons = o.out+"; beadwell collect joins the shards", "see --format csv, or the column reason when the shards are joined"
+	}
+	if err := a.printSummary(summary, o.format, written); err != nil {
 		return err
 	}
-	return concludeBatch(summary, o.out)
+	return concludeBatch(summary, reasons)
 }
 
 // batchError gives an error of a batch its status.
@@ -204,13 +208,18 @@ func batchError(out string, err error) error {
 	return err
 }
 
-// concludeBatch turns the rows into the error of the whole run.
-func concludeBatch(s *batch.Summary, out string) error {
+func seeReasons(out string) string {
+	return "see the column reason of " + filepath.Join(out, batch.SummaryCSV)
+}
+
+// concludeBatch turns the rows into the error of the whole run; reasons says where those
+// of the failed recordings stand.
+func concludeBatch(s *batch.Summary, reasons string) error {
 	_, distrusted, failed, _ := s.Counts()
 	switch {
 	case failed > 0:
 		return &failure{status: StatusPartial, code: codePartial, err: fmt.Errorf("%d of %d recordings failed", failed, len(s.Rows)),
-			remedy: "see the column reason of " + filepath.Join(out, batch.SummaryCSV)}
+			remedy: reasons}
 	case distrusted > 0:
 		return quiet{StatusDistrust}
 	}

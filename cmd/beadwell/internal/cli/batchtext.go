@@ -2,13 +2,13 @@ package cli
 
 import (
 	"fmt"
-	"path/filepath"
 
 	"beadwell/cmd/beadwell/internal/batch"
 )
 
-// printSummary writes the summary to standard output.
-func (a *app) printSummary(s *batch.Summary, format, out string) error {
+// printSummary writes the summary to standard output; written is what else there is to
+// look at, and where.
+func (a *app) printSummary(s *batch.Summary, format, written string) error {
 	var content []byte
 	var err error
 	switch format {
@@ -18,7 +18,7 @@ func (a *app) printSummary(s *batch.Summary, format, out string) error {
 		content, err = s.CSV()
 	default:
 		content = []byte(s.Text())
-		content = fmt.Appendf(content, "\nwritten to %s\n", filepath.Join(out, batch.IndexName))
+		content = fmt.Appendf(content, "\nwritten to %s\n", written)
 	}
 	if err != nil {
 		return err

@@ -2,6 +2,7 @@ package cli
 
 import (
 	"context"
+	"path/filepath"
 
 	"github.com/spf13/cobra"
 
@@ -16,10 +17,11 @@ type collectOptions struct {
 	series  seriesFlags
 }
 
-const collectLong = `collect joins the results of shards, which beadwell batch --shard i/n wrote, into one
-folder. The shards may come in any order, from one folder or from several; the
-files are the same bytes as those of one run over the whole list. It refuses to
-join a list of which recordings are missing.`
+const collectLong = `collect joins folders of results, which beadwell batch wrote, into one: the shards of
+one list (--shard i/n), in one folder or in several, and whole batches of other
+recordings. They may come in any order; the files are the same bytes as those of one
+batch over all of the recordings. It refuses to join a list of which recordings are
+missing.`
 
 func (a *app) collectCommand(run func(context.Context, *app, collectOptions) error) *cobra.Command {
 	var o collectOptions
@@ -28,7 +30,8 @@ func (a *app) collectCommand(run func(context.Context, *app, collectOptions) err
 		Short: "Join the results of split batches into one summary",
 		Long:  collectLong,
 		Example: `  beadwell collect --out results shard-1 shard-2 shard-3
-  beadwell collect --out results results`,
+  beadwell collect --out results results
+  beadwell collect --out week monday tuesday`,
 		Args: someArguments("a folder of results"),
 		RunE: func(cmd *cobra.Command, args []string) error {
 			o.folders = args
@@ -61,10 +64,10 @@ func runCollect(_ context.Context, a *app, o collectOptions) error {
 	case batch.IsOutput(err):
 		return outputError(o.out, err)
 	case err != nil:
-		return inputError("give the folders of all shards of one run", err)
+		return inputError("give the folders that beadwell batch wrote to, all shards of a list among them", err)
 	}
-	if err := a.printSummary(summary, o.format, o.out); err != nil {
+	if err := a.printSummary(summary, o.format, filepath.Join(o.out, batch.IndexName)); err != nil {
 		return err
 	}
-	return concludeBatch(summary, o.out)
+	return concludeBatch(summary, seeReasons(o.out))
 }

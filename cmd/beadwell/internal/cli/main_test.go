@@ -5,6 +5,7 @@ import (
 	"math"
 	"os"
 	"os/exec"
+	"path/filepath"
 	"strconv"
 	"strings"
 	"testing"
@@ -89,11 +90,19 @@ func inventedAxis(name, adopt string) calib.Axis {
 }
 
 func TestScripts(t *testing.T) {
+	pipelines, err := filepath.Abs("../../../../docs/pipelines")
+	if err != nil {
+		t.Fatal(err)
+	}
 	testscript.Run(t, testscript.Params{
 		Dir:                 "../../../../testdata/script",
 		RequireExplicitExec: true,
 		UpdateScripts:       *update,
-		Cmds:                map[string]func(*testscript.TestScript, bool, []string){"status": status},
+		Setup: func(e *testscript.Env) error {
+			e.Setenv("PIPELINES", pipelines)
+			return nil
+		},
+		Cmds: map[string]func(*testscript.TestScript, bool, []string){"status": status},
 	})
 }
 
