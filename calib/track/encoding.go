@@ -124,41 +124,36 @@ func isLegacy(sample []byte, whole bool) bool {
 	return !utf8.Valid(sample)
 }
 
-// hasLoneReturn tells whether a carriage return ends a line by itself.
-func hasLoneReturn(sample []byte) bool {
-	for i, c := range sample {
-		if c == '\r' && i+1 < len(sample) && sample[i+1] != '\n' && sample[i+1] != '\r' {
-			return true
+// endLines turns every carriage return that ends a line by itself into a newline,
+// in place, and those that pile up before a newline into blanks. It reports whether
+// there was one of the first kind. Returns at the end of b wait for what follows,
+// unless b is final.
+func endLines(b []byte, final bool) (lone bool) {
+	for at := bytes.IndexByte(b, '\r'); at >= 0; {
+		end := at
+		for end < len(b) && b[end] == '\r' {
+			end++
 		}
-	}
-	return len(sample) > 1 && sample[len(sample)-1] == '\r' && !bytes.Contains(sample, []byte{'\n'})
-}
-
-// newlines turns CR LF and a lone CR into LF.
-type newlines struct {
-	reader io.Reader
-	after  bool // the last byte was a CR
-}
-
-func (l *newlines) Read(p []byte) (int, error) {
-	n, err := l.reader.Read(p)
-	to := 0
-	for _, c := range p[:n] {
 		switch {
-		case c == '\n' && l.after:
-			l.after = false
-			continue
-		case c == '\r':
-			l.after = true
-			c = '\n'
+		case end == len(b) && !final:
+			return lone
+		case end < len(b) && b[end] == '\n':
+			fill(b[at:end-1], ' ')
 		default:
-			l.after = false
+			fill(b[at:end], '\n')
+			lone = true
 		}
-		p[to] = c
-		to++
+		next := bytes.IndexByte(b[end:], '\r')
+		if next < 0 {
+			return lone
+		}
+		at = end + next
 	}
-	if to == 0 && n > 0 && err == nil {
-		return l.Read(p)
+	return lone
+}
+
+func fill(b []byte, c byte) {
+	for i := range b {
+		b[i] = c
 	}
-	return to, err
 }

@@ -34,6 +34,8 @@ type Error struct {
 	What   string // what was found and, where it helps, what was expected
 	Remedy string // what to do
 	Code   string // one of the Code constants
+
+	cell *hidden // the cell that is meant, where Column is not yet known
 }
 
 // Error returns "file:line:column: what", and the remedy on a line of its own.

@@ -2,6 +2,7 @@ package track
 
 import (
 	"bytes"
+	"cmp"
 	"context"
 	"errors"
 	"fmt"
@@ -31,6 +32,9 @@ type feed struct {
 	name   string
 	reader io.Reader
 	store  *store
+
+	delimiter byte // of the cells
+	returns   bool // carriage returns by themselves end lines
 
 	mu    sync.Mutex
 	carry []byte // beginning of a line whose end is not yet read
@@ -80,6 +84,7 @@ func (f *feed) fill(buf []byte) (data, room []byte, cut bool, err error) {
 	for {
 		n, err := io.ReadFull(f.reader, buf[have:len(buf)-pad-1])
 		have += n
+		f.endLines(buf[:have], err != nil)
 		switch {
 		case errors.Is(err, io.ErrUnexpectedEOF), err == io.EOF:
 			f.ended = true
@@ -89,6 +94,10 @@ func (f *feed) fill(buf []byte) (data, room []byte, cut bool, err error) {
 			return nil, buf, false, err
 		}
 		if at := bytes.LastIndexByte(buf[:have], '\n'); at >= 0 {
+			if len(buf) > lineLimit && bytes.IndexByte(buf[:have], '\n') > lineLimit {
+				return nil, buf, false, f.tooLong()
+			}
+			at = f.wholeRows(buf[:at+1]) - 1
 			f.carry = append(f.carry, buf[at+1:have]...)
 			if len(f.carry) > 0 && isPadding(f.carry[0]) {
 				err = f.checkPadding()
@@ -104,12 +113,79 @@ func (f *feed) fill(buf []byte) (data, room []byte, cut bool, err error) {
 			return data, buf, cut, err
 		}
 		if have > lineLimit {
-			return nil, buf, false, &Error{File: f.name, Line: f.line, Code: CodeLimit,
-				What:   "the line is longer than 1 MiB",
-				Remedy: "give a file with one row per sample; a table with one row per axis must be transposed"}
+			return nil, buf, false, f.tooLong()
 		}
 		buf = append(buf, make([]byte, len(buf))...)
 	}
+}
+
+func (f *feed) tooLong() *Error { return tooLong(f.name, f.line) }
+
+// tooLong is the error of a line beyond the limit.
+func tooLong(name string, line int) *Error {
+	return &Error{File: name, Line: line, Code: CodeLimit, What: "the line is longer than 1 MiB",
+		Remedy: "give a file with one row per sample; a table with one row per axis must be transposed"}
+}
+
+// endLines ends lines at newlines alone. Until a carriage return is known to end a
+// line by itself, as many returns as newlines in b are taken as pairs of the two;
+// where that is wrong, the row is refused, and not misread.
+func (f *feed) endLines(b []byte, final bool) {
+	returns := bytes.Count(b, []byte{'\r'})
+	if returns > 0 && (f.returns || returns != bytes.Count(b, []byte{'\n'})) && endLines(b, final) {
+		f.returns = true
+	}
+}
+
+// quoteLines is the number of lines over which a quoted cell may run on.
+const quoteLines = 10
+
+// wholeRows returns the length of data without the lines at its end that may be the
+// beginning of a row with a quoted cell that runs on. Such a row at the start of
+// data, which is then a few enormous lines, is left to be refused.
+func (f *feed) wholeRows(data []byte) int {
+	from := len(data)
+	for range quoteLines {
+		if from > 0 {
+			from = bytes.LastIndexByte(data[:from-1], '\n') + 1
+		}
+	}
+	if bytes.IndexByte(data[from:], '"') < 0 {
+		return len(data)
+	}
+	if bytes.Count(data[:from], []byte{'"'})%2 != 0 {
+		from = 0 // not between rows, it seems; data begins with one
+	}
+	for at := from; at < len(data); {
+		end := lineEnd(data, at)
+		if _, open := splitLine(nil, string(data[at:end]), f.delimiter); open >= 0 {
+			if end = closingLine(data, at, f.delimiter); end < 0 {
+				return cmp.Or(at, len(data))
+			}
+		}
+		at = end + 1
+	}
+	return len(data)
+}
+
+// closingLine returns the end of the line that closes the quote which the line at
+// the given offset opens, -1 if none within reach does.
+func closingLine(data []byte, at int, delimiter byte) int {
+	end := lineEnd(data, at)
+	for range quoteLines {
+		if end+1 >= len(data) {
+			return -1
+		}
+		from := end + 1
+		end = lineEnd(data, from)
+		if bytes.IndexByte(data[from:end], '"') < 0 {
+			continue
+		}
+		if _, open := splitLine(nil, string(data[at:end]), delimiter); open < 0 {
+			return end
+		}
+	}
+	return -1
 }
 
 // finish ends the last line of the file, without the padding behind it.

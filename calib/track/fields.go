@@ -1,10 +1,7 @@
 package track
 
 import (
-	"bufio"
-	"errors"
 	"math"
-	"os"
 	"strconv"
 	"strings"
 )
@@ -208,38 +205,4 @@ func (p *plan) describe() []ColumnUse {
 		}
 	}
 	return list
-}
-
-// locate finds the column of a time stamp in its line, which only the file can
-// tell once the rows are gone.
-func locate(path string, err error) error {
-	var e *Error
-	if !errors.As(err, &e) || e.Column >= 0 {
-		return err
-	}
-	k := -1 - e.Column
-	e.Column = 0
-	file, openErr := os.Open(path)
-	if openErr != nil {
-		return err
-	}
-	defer file.Close()
-	lines := bufio.NewScanner(file)
-	lines.Buffer(nil, lineLimit)
-	for number := 1; lines.Scan(); number++ {
-		if number < e.Line {
-			continue
-		}
-		best := []cell(nil)
-		for _, d := range delimiters {
-			if cells, _ := splitLine(nil, lines.Text(), d.char); len(cells) > len(best) {
-				best = cells
-			}
-		}
-		if k < len(best) {
-			e.Column = characters(lines.Text(), best[k].at)
-		}
-		break
-	}
-	return err
 }

@@ -246,6 +246,9 @@ func (lay *layout) setNames(name string, v *view, opt Options) error {
 	shift := 0
 	switch {
 	case len(rows) == 0:
+		if err := v.checkBroken(name); err != nil && opt.Header != "none" {
+			return err
+		}
 		if err := v.checkCommas(name, v.headerWidth()); err != nil && opt.Delimiter == "" && opt.Decimal == "" {
 			return err
 		}

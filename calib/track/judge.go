@@ -61,6 +61,40 @@ func (v *view) checkShape(name string) error {
 	return nil
 }
 
+// checkBroken refuses a line that begins with a number between what is plainly a
+// header and the first row: a row that is broken, and no part of a preamble.
+func (v *view) checkBroken(name string) error {
+	broken := -1
+	for i := v.first - 1; i >= 0; i-- {
+		text := v.lines[i].text
+		if isBlank(text) || isComment(text) || isRule(text) {
+			continue
+		}
+		cells, open := splitLine(nil, text, v.delimiter)
+		if h := newHeaderRow(v.lines[i], cellTexts(text, v.delimiter)); broken >= 0 && len(cells) == v.width && h.texts == h.filled() && h.roles > 0 {
+			break
+		}
+		if k := slices.IndexFunc(cells, func(c cell) bool { return c.text != "" }); i == 0 || k < 0 || kindOf(cells[k]) != numberCell && kindOf(cells[k]) != clockCell {
+			return nil
+		}
+		broken = i
+		if open >= 0 {
+			return openQuote(name, v.lines[i].number, text, open)
+		}
+	}
+	if broken < 0 {
+		return nil
+	}
+	return &Error{File: name, Line: v.lines[broken].number, Code: CodeRow,
+		What:   fmt.Sprintf("the row has %d cells, the table has %d columns", len(cellTexts(v.lines[broken].text, v.delimiter)), v.width),
+		Remedy: repairRow}
+}
+
+// openQuote is the error of a quote without an end.
+func openQuote(name string, number int, text string, at int) *Error {
+	return &Error{File: name, Line: number, Column: characters(text, at), Code: CodeRow, What: "a quote is opened here and not closed", Remedy: "close the quote, or remove it"}
+}
+
 // checkRepeats refuses a header that follows a blank line where no time column
 // can tell whether one recording goes on or another begins.
 func (a *parsed) checkRepeats(name string, lay *layout, p *plan) error {

@@ -1,6 +1,7 @@
 package track
 
 import (
+	"bytes"
 	"strings"
 	"unicode/utf8"
 	"unsafe"
@@ -14,6 +15,7 @@ type layout struct {
 	legacy       bool   // bytes above 127 are Windows-1252 (Latin-1)
 	delimiter    byte   // ' ' stands for runs of spaces and tabs
 	padded       bool   // blanks stand around the cells
+	returns      bool   // carriage returns end lines
 	mark         byte   // decimal mark
 	thousands    byte   // separator of groups of three digits, 0 for none
 	trailing     bool   // rows may end in a delimiter
@@ -48,6 +50,11 @@ func (lay *layout) decode(line []byte) string {
 		}
 	}
 	return unsafe.String(unsafe.SliceData(line), len(line))
+}
+
+// lineText returns a line without its end as text.
+func (lay *layout) lineText(line []byte) string {
+	return lay.decode(bytes.TrimSuffix(line, []byte{'\r'}))
 }
 
 // isComment tells whether a line is a remark: it begins with # or %.

@@ -1,6 +1,7 @@
 package track
 
 import (
+	"bytes"
 	"context"
 	"errors"
 	"io"
@@ -158,13 +159,11 @@ func (p *parser) block(b block) {
 	for at := 0; at < end; row++ {
 		next, ok := p.fastRow(data, at, row)
 		if !ok || b.cut && next == end { // the last line may be cut off
-			next = at
-			for data[next] != '\n' {
-				next++
+			next = p.slowRow(b, at, row)
+			for more := bytes.Count(data[at:next-1], []byte{'\n'}); more > 0; more-- {
+				row++
+				p.skip = append(p.skip, row) // a quoted cell runs on over these lines
 			}
-			last := b.cut && next+1 == end
-			p.slowRow(data[at:next], b.line+row-b.row, row, last)
-			next++
 		}
 		at = next
 	}

@@ -1,33 +1,83 @@
 package track
 
 import (
-	"bytes"
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 	"sync"
 )
 
-// slowRow parses any line: a sample, a comment, a repeated header, or an error.
-// last tells that the line ends the file without a newline.
-func (p *parser) slowRow(line []byte, number, row int, last bool) {
-	line = bytes.TrimSuffix(line, []byte{'\r'})
-	text := p.lay.decode(line)
+// slowRow parses any line of a block: a sample, a comment, a repeated header, or an
+// error. It returns the offset behind the line, or behind the lines over which a
+// quoted cell of the row runs on.
+func (p *parser) slowRow(b block, at, row int) (next int) {
+	number := b.line + row - b.row
+	end := lineEnd(b.data, at)
+	text := p.lay.lineText(b.data[at:end])
 	if p.lay.isIgnored(text) {
 		if p.lay.isRepeat(text) {
 			p.again = append(p.again, row)
 		}
 		p.skip = append(p.skip, row)
-		return
+		return end + 1
 	}
 	cells, open := splitLine(p.cells[:0], text, p.lay.delimiter)
-	p.cells = cells
 	if open >= 0 {
-		p.reject(row, false, &Error{Line: number, Column: characters(text, open), Code: CodeRow,
-			What:   "a quote is opened here and not closed on this line",
-			Remedy: "close the quote, or remove it"})
-		return
+		to := p.closing(b.data, at)
+		if to < 0 {
+			p.reject(row, false, openQuote(p.name, number, text, open))
+			return end + 1
+		}
+		end, text = to, p.lay.lineText(b.data[at:to])
+		cells, _ = splitLine(p.cells[:0], text, p.lay.delimiter)
 	}
+	p.cells = cells
+	p.anyRow(cells, text, number, row, b.cut && end+1 == len(b.data))
+	return end + 1
+}
+
+// closing returns the end of the line that closes a quoted cell of the row at the
+// given offset, -1 if there is none. A line in between that is a row by itself, or a
+// row of the wrong width, tells that the quote was never meant to be closed there.
+func (p *parser) closing(data []byte, at int) int {
+	end := closingLine(data, at, p.lay.delimiter)
+	if end < 0 {
+		return -1
+	}
+	text := p.lay.lineText(data[at:end])
+	cells, _ := splitLine(nil, text, p.lay.delimiter)
+	if p.checkWidth(cells, text, 0, false) != nil || slices.ContainsFunc(cells, func(c cell) bool { return !c.quoted && strings.Contains(c.text, "\n") }) {
+		return -1
+	}
+	for i, line := range strings.Split(text, "\n") {
+		if i > 0 && p.isRow(line) {
+			return -1
+		}
+	}
+	return end
+}
+
+// isRow tells whether a line alone has the width of the table and numbers where they
+// belong.
+func (p *parser) isRow(line string) bool {
+	cells, open := splitLine(nil, line, p.lay.delimiter)
+	if open >= 0 || p.checkWidth(cells, line, 0, false) != nil {
+		return false
+	}
+	for k, f := range p.lay.fields {
+		if f.kind == numberField {
+			if v, err := p.value(&f, cells[k].text); err != nil || v != v {
+				return false
+			}
+		}
+	}
+	return true
+}
+
+// anyRow parses the cells of a row. last tells that the line ends the file without a
+// newline.
+func (p *parser) anyRow(cells []cell, text string, number, row int, last bool) {
 	texty := isText(cells, p.lay.mark)
 	if len(p.bad) == keptBad && len(cells) != len(p.lay.fields) {
 		p.reject(row, texty, nil) // only counted
@@ -103,6 +153,8 @@ func (p *parser) bead(text string) (float64, error) {
 	return index, err
 }
 
+const repairRow = "repair or remove the row; keep one table in the file"
+
 // checkWidth compares the number of cells with the table.
 func (p *parser) checkWidth(cells []cell, text string, number int, last bool) *Error {
 	want, have := len(p.lay.fields), len(cells)
@@ -111,7 +163,7 @@ func (p *parser) checkWidth(cells []cell, text string, number int, last bool) *E
 	}
 	err := &Error{Line: number, Code: CodeRow,
 		What:   fmt.Sprintf("the row has %d cells, the table has %d columns", have, want),
-		Remedy: "repair or remove the row; keep one table in the file"}
+		Remedy: repairRow}
 	if have > want {
 		err.Column = characters(text, cells[want].at)
 	} else if last {

@@ -46,7 +46,7 @@ func (lay *layout) sampleLines(sample []byte, limit int) []textLine {
 				}
 			}
 		}
-		text := lay.decode(bytes.TrimSuffix(sample[at:end], []byte{'\r'}))
+		text := lay.lineText(sample[at:end])
 		lines = append(lines, textLine{strings.Clone(strings.TrimPrefix(text, "\ufeff")), number, at})
 		number += count
 		at = end + 1

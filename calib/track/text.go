@@ -32,16 +32,7 @@ func readText(ctx context.Context, r io.Reader, opt Options, size int64) (*table
 	if err := checkBinary(opt.Name, head); err != nil {
 		return nil, err
 	}
-	if hasLoneReturn(head) {
-		text = &newlines{reader: io.MultiReader(bytes.NewReader(head), text)}
-		fixed := make([]byte, len(head))
-		n, err := io.ReadFull(text, fixed)
-		if err != nil && !errors.Is(err, io.EOF) && !errors.Is(err, io.ErrUnexpectedEOF) {
-			return nil, err
-		}
-		head = fixed[:n]
-	}
-	lay := &layout{encoding: encoding, legacy: isLegacy(head, whole)}
+	lay := &layout{encoding: encoding, returns: endLines(head, whole), legacy: isLegacy(head, whole)}
 	if lay.legacy {
 		lay.encoding = "Windows-1252"
 	}
@@ -62,8 +53,7 @@ func (lay *layout) find(opt Options, head []byte, whole bool) (*plan, error) {
 	if !whole {
 		at := bytes.LastIndexByte(sample, '\n')
 		if at < 0 {
-			return nil, &Error{File: name, Line: 1, Code: CodeLimit, What: "the line is longer than 1 MiB",
-				Remedy: "give a file with one row per sample; a table with one row per axis must be transposed"}
+			return nil, tooLong(name, 1)
 		}
 		sample = sample[:at+1]
 	}
@@ -156,7 +146,7 @@ func (lay *layout) commaColumn(v *view, sample []byte, opt Options) *view {
 func (lay *layout) readRows(ctx context.Context, p *plan, text io.Reader, opt Options, size int64) (*table, error) {
 	expected := int(float64(size)/max(lay.lineBytes, 1)*1.02) + 4096
 	beads := &beadIndex{}
-	in := &feed{ctx: ctx, name: opt.Name, reader: text, store: newStore(lay.kept, expected), line: lay.firstLine}
+	in := &feed{ctx: ctx, name: opt.Name, reader: text, store: newStore(lay.kept, expected), line: lay.firstLine, delimiter: lay.delimiter, returns: lay.returns}
 	rows, err := parseRows(ctx, in, lay, beads, opt.Workers)
 	if err != nil {
 		return nil, err
@@ -181,7 +171,7 @@ func (lay *layout) readRows(ctx context.Context, p *plan, text io.Reader, opt Op
 		if stamp != nil && stamp.column == 0 {
 			e.Column = 1
 		} else if stamp != nil {
-			e.Column = -1 - stamp.column // found by locate
+			e.cell = &hidden{stamp.column, lay.delimiter, lay.lineText}
 		}
 		return e
 	}
