@@ -99,7 +99,7 @@ var registry = []Key{
 	{Name: "recording.bead", Flag: "bead", Form: Text,
 		Placeholder: "2", Meaning: "which bead of a file that holds several"},
 	{Name: "recording.time_unit", Flag: "time-unit", Form: Choice, Stated: true,
-		Words:       []string{"s", "ms", "us", "ns", "min", "frames"},
+		Words:       []string{"s", "ms", "us", "ns", "min", "h", "d", "frames"},
 		aliases:     map[string]string{"µs": "us", "μs": "us", "frame": "frames"},
 		Placeholder: "ms", Meaning: "unit of the time column, when the header does not say; frames need a rate"},
 	{Name: "recording.delimiter", Flag: "delimiter", Form: Choice,

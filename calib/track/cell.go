@@ -20,6 +20,7 @@ const correctCell = "correct the cell, or leave it empty for a missing sample"
 var (
 	notNumber  = &fault{"is not a number", correctCell}
 	tooLarge   = &fault{"is too large for a number", correctCell}
+	beyond     = &fault{"is beyond anything that is measured", correctCell}
 	infinite   = &fault{"is not a finite number", correctCell}
 	percentage = &fault{"is a percentage", "give the plain number, in the unit of the column"}
 	hexForm    = &fault{"is in hexadecimal form", "write the number in decimal form"}

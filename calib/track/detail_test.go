@@ -123,7 +123,13 @@ func TestDetailsOfLayout(t *testing.T) {
 		"brackets":                  {row("[%.3f, %g, %g]\n"), Options{Unit: "um", Rate: 5}, CodeColumns, 0},
 		"wide blanks":               {"time (s)  x position (um)  y position (um)\n" + row("%.3f  %g  %g\n"), Options{}, "", 1000},
 		"header that does not fit":  {"t x y z\n" + row("%.3f  %g  %g\n"), Options{Unit: "um"}, CodeLayout, 0},
-		"minutes":                   {"t (min),x (um)\n" + pairs("%.3f,%g\n"), Options{}, CodeUnit, 0},
+		"minutes":                   {"t (min),x (um)\n" + pairs("%.3f,%g\n"), Options{}, "", 1000. / 60},
+		"hours by a setting":        {"t,x (um)\n" + pairs("%.3f,%g\n"), Options{TimeUnit: "h"}, "", 1000. / 3600},
+		"least and largest":         {"t (s),x (um),x_min (um),h,d\n" + pairs("%.3f,%g,1.5,2,3\n"), Options{}, "", 1000},
+		"weeks":                     {"t (weeks),x (um)\n" + pairs("%.3f,%g\n"), Options{}, CodeUnit, 0},
+		"beyond all reach":          {"t (s),x (um)\n" + pairs("%.3f,%g\n") + "5,1e300\n", Options{}, CodeCell, 0},
+		"beyond all reach, quoted":  {"t (s),x (um)\n" + pairs("%.3f,%g\n") + "5,\"-1e300\"\n", Options{}, CodeCell, 0},
+		"far away":                  {"t (s),x (um)\n" + pairs("%.3f,%g\n") + "0.040,1e30\n", Options{}, "", 1000},
 		"footer too long":           {"t (s),x (um)\n" + pairs("%.3f,%g\n") + strings.Repeat("more text\n", 41), Options{}, CodeRow, 0},
 		"two beads, one with loss": {"bead,t (s),x (um)\n" + positions(200, func(i int, x float64) string {
 			s := fmt.Sprintf("a,%.3f,%g\n", float64(i)/1000, x)

@@ -79,7 +79,10 @@ func (lay *layout) setFields(p *plan, v *view) {
 		case lay.names[u.column].clock && (u.role == "time" || u.role == "date"):
 			f.kind = clockField
 		default:
-			f.kind, f.shift = numberField, u.unit.siShift()
+			f.kind, f.shift, f.times = numberField, u.unit.siShift(), u.unit.times
+			if u.unit.isCoarse() {
+				f.kind = timesField
+			}
 			if u.role == "kept" || u.role == "frame" {
 				f.shift = 0
 			}

@@ -1,6 +1,7 @@
 package track
 
 import (
+	"cmp"
 	"fmt"
 	"math"
 	"strconv"
@@ -36,7 +37,10 @@ type gridFault struct {
 type resolution struct {
 	step  float64 // fixed step [s]; 0 when unknown
 	shift int     // unit of the file as a power of ten of a second
+	times float64 // and times this; 0 means 1
 }
+
+func (r resolution) factor() float64 { return cmp.Or(r.times, 1) }
 
 const timeRemedy = "repair the stamps, or leave out the time column and state the rate (--rate) if the samples are known to be evenly spaced"
 
@@ -166,11 +170,12 @@ func (g *grid) isRounded(t []float64, written resolution) bool {
 // significant digits, and returns their rounding step; nil for anything else.
 func floatStep(t []float64, written resolution) func(v float64) float64 {
 	tail := "e" + strconv.Itoa(written.shift)
-	scale := math.Pow10(-written.shift)
+	times := written.factor()
+	scale := math.Pow10(-written.shift) / times
 	same := func(digits int) bool {
 		for _, v := range t {
 			w, _ := strconv.ParseFloat(strconv.FormatFloat(v*scale, 'g', digits, 64)+tail, 64)
-			if math.Abs(w-v) > 1e-15*math.Abs(v) {
+			if math.Abs(w*times-v) > 1e-15*math.Abs(v) {
 				return false
 			}
 		}
@@ -187,7 +192,7 @@ func floatStep(t []float64, written resolution) func(v float64) float64 {
 	}
 	digits := func(n int) func(float64) float64 {
 		return func(v float64) float64 {
-			return math.Pow(10, math.Floor(math.Log10(max(math.Abs(v), 1e-300)))+1-float64(n))
+			return math.Pow(10, math.Floor(math.Log10(max(math.Abs(v*scale), 1e-300)))+1-float64(n)) / scale
 		}
 	}
 	switch {

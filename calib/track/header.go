@@ -28,7 +28,7 @@ func newHeaderRow(line textLine, cells []string) headerRow {
 		if trimCell(c) == "" {
 			continue
 		}
-		if _, ok := findUnit(c); ok {
+		if _, ok := findUpper(c); ok {
 			h.units++
 		}
 		if k := kindOf(cell{text: c}); k == textCell || k == missingCell {
@@ -134,6 +134,7 @@ func (v *view) findHeader(fits func(width int) bool) (rows []headerRow) {
 
 // commentHeader looks for names in the remarks above the data.
 func (v *view) commentHeader(fits func(width int) bool) []headerRow {
+	var units []headerRow
 	for i := v.first - 1; i >= 0; i-- {
 		text := v.lines[i].text
 		if !isComment(text) {
@@ -148,8 +149,12 @@ func (v *view) commentHeader(fits func(width int) bool) []headerRow {
 		ways := [][]string{cellTexts(text, v.delimiter), cellTexts(text, ','), cellTexts(text, '\t'), cellTexts(text, ';'), headerCells(text, ' ', v.width)}
 		for _, cells := range ways {
 			h := newHeaderRow(v.lines[i], cells)
-			if fits(len(cells)) && h.roles > 0 && h.roles*2 >= h.filled() {
-				return []headerRow{h}
+			switch {
+			case !fits(len(cells)):
+			case h.units == h.filled() && h.units > 1:
+				units = []headerRow{h}
+			case h.roles > 0 && h.roles*2 >= h.filled():
+				return append(units, h)
 			}
 		}
 	}
@@ -188,7 +193,7 @@ func nameColumns(rows []headerRow, width, shift int) []columnInfo {
 		}
 		if h.units*2 >= h.filled() {
 			for k := range names {
-				if u, ok := findUnit(at(h, k)); ok && !names[k].stated && trimCell(at(h, k)) != "" {
+				if u, ok := findUpper(at(h, k)); ok && !names[k].stated && trimCell(at(h, k)) != "" {
 					names[k].unit, names[k].stated = u, true
 				} else if text := strings.Trim(trimCell(at(h, k)), "()[]"); !ok && text != "" && !names[k].stated && h.units > 0 && i > best {
 					names[k].unknown = text
@@ -222,6 +227,19 @@ func groupColumns(names []columnInfo, at func(int) string) {
 			names[k].bead, names[k].named = group, true
 		}
 	}
+}
+
+// isRemark tells whether every header row calls what stands behind the columns of the
+// rows a remark, or nothing: a column that is written only where there is one.
+func isRemark(rows []headerRow, width int) bool {
+	for _, h := range rows {
+		for _, c := range h.cells[min(width, len(h.cells)):] {
+			if list := splitWords(c); slices.ContainsFunc(list, func(w string) bool { return !remarkWords[w] }) {
+				return false
+			}
+		}
+	}
+	return true
 }
 
 // setNames finds the header and the columns of the table, and reconciles their
@@ -263,6 +281,7 @@ func (lay *layout) setNames(name string, v *view, opt Options) error {
 		width, lay.trailing = width-1, true
 	case cells == width-1:
 		shift = 1
+	case cells > width && isRemark(rows, width):
 	case cells > width:
 		return &Error{File: name, Line: rows[0].line.number, Code: CodeLayout,
 			What:   fmt.Sprintf("the header has %d names, the rows have %d cells", cells, width),

@@ -12,6 +12,7 @@ type markEvidence struct {
 	pointAt, commaAt     textPlace
 	grouped              bool // both marks in one cell, or one mark twice
 	other                int  // numbers without a mark
+	clockComma           bool // a time of day has a comma before the fraction of a second
 }
 
 type textPlace struct{ line, column int }
@@ -84,6 +85,9 @@ func (lay *layout) findMark(name string, v *view, wanted string) error {
 			continue
 		}
 		for k, c := range v.cells[i] {
+			if numeric[k] && v.kinds[i][k] == clockCell && strings.Contains(c.text, ",") {
+				m.clockComma = true
+			}
 			if numeric[k] && v.kinds[i][k] == numberCell {
 				m.add(c.text, textPlace{v.lines[i].number, characters(v.lines[i].text, c.at)})
 			}
@@ -114,7 +118,7 @@ func (lay *layout) findMark(name string, v *view, wanted string) error {
 		if m.grouped {
 			lay.thousands = ','
 		}
-	case m.comma > 0:
+	case m.comma > 0 || m.weakComma > 0 && m.clockComma && m.weakPoint == 0:
 		lay.mark = ','
 		if m.grouped {
 			lay.thousands = '.'

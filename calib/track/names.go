@@ -58,13 +58,23 @@ var (
 	axisJoined   = map[string]byte{"xpos": 'x', "ypos": 'y', "zpos": 'z', "posx": 'x', "posy": 'y', "posz": 'z', "xcoord": 'x', "ycoord": 'y', "zcoord": 'z',
 		"xposition": 'x', "yposition": 'y', "zposition": 'z', "positionx": 'x', "positiony": 'y', "positionz": 'z', "xdata": 'x', "ydata": 'y', "zdata": 'z',
 		"xc": 'x', "yc": 'y', "zc": 'z', "xcenter": 'x', "ycenter": 'y', "zcenter": 'z', "xcentre": 'x', "ycentre": 'y', "zcentre": 'z', "х": 'x', "у": 'y'}
-	axisAlone = words("position displacement deflection auslenkung ort lage")
+	remarkWords = words("comment comments remark remarks note notes annotation kommentar kommentare bemerkung bemerkungen anmerkung commentaire commentaires remarque comentario comentarios commento note")
+	axisAlone   = words("position displacement deflection auslenkung ort lage")
 )
 
-// splitWords cuts a name into lower-case words: at blanks and punctuation,
-// between letters and digits, between Latin and other scripts, and before a
-// capital that follows a small letter.
+// splitWords cuts a name into lower-case words.
 func splitWords(s string) []string {
+	list := splitCased(s)
+	for i, w := range list {
+		list[i] = strings.ToLower(w)
+	}
+	return list
+}
+
+// splitCased cuts a name into words: at blanks and punctuation, between letters and
+// digits, between Latin and other scripts, and before a capital that follows a small
+// letter.
+func splitCased(s string) []string {
 	var list []string
 	var b strings.Builder
 	flush := func() {
@@ -90,7 +100,7 @@ func splitWords(s string) []string {
 			(r > 0x2e80) != (last > 0x2e80) && b.Len() > 0:
 			flush()
 		}
-		b.WriteRune(unicode.ToLower(r))
+		b.WriteRune(r)
 		last = r
 	}
 	flush()
@@ -114,11 +124,15 @@ func parseName(cell string) columnInfo {
 		opening := map[byte]string{')': "(", ']': "[", '}': "{"}[s[n-1]]
 		if at := strings.LastIndex(s, opening); at >= 0 {
 			inner := trimCell(s[at+1 : n-1])
-			if u, ok := findUnit(inner); ok {
+			find := findUnit
+			if s == strings.ToUpper(s) && s != strings.ToLower(s[:at]) {
+				find = findUpper
+			}
+			if u, ok := find(inner); ok {
 				info.unit, info.stated, info.header = u, true, trimCell(s[:at])
 				return info
 			}
-			if inner == "min" || inner == "h" || inner != "" && !slices.ContainsFunc(splitWords(inner), func(w string) bool {
+			if inner != "" && !slices.ContainsFunc(splitWords(inner), func(w string) bool {
 				return isIdentifier(w) || beadWords[w] || axisExtras[w] || foreignWords[w] || w == "x" || w == "y" || w == "z"
 			}) {
 				info.unknown, info.header = inner, trimCell(s[:at])
@@ -136,13 +150,20 @@ func parseName(cell string) columnInfo {
 		if !ok || tail == "" || separator != "/" && separator != " in " && strings.ContainsAny(tail[:1], "1-#ifdnrN") && tail != "nm" && tail != "ns" {
 			continue
 		}
-		if u.dim == frames || u.name == "1" || u.dim == frequency {
+		if u.dim == frames || u.name == "1" || u.dim == frequency || u.isCoarse() && !isTime(s[:at]) {
 			continue
 		}
 		info.unit, info.stated, info.header = u, true, trimCell(s[:at])
 		return info
 	}
 	return info
+}
+
+// isTime tells whether a name without its unit is that of a time.
+func isTime(name string) bool {
+	c := columnInfo{header: name}
+	c.understand()
+	return c.role == timeRole
 }
 
 // understand sets the role of a column from its name.
@@ -173,18 +194,19 @@ func (c *columnInfo) understand() {
 	case has(beadWords) && only(beadWords, beadExtras), only(words("id")):
 		c.role = beadRole
 	default:
-		if u, ok := findUnit(c.header); ok && !c.stated && u.dim == duration {
+		if u, ok := findUnit(c.header); ok && !c.stated && u.dim == duration && (!u.isCoarse() || len(c.header) > 3) {
 			c.role, c.unit, c.stated = timeRole, u, true
 			return
 		}
-		c.understandAxis(list)
+		c.understandAxis(list, splitCased(c.header))
 	}
 }
 
 // understandAxis looks for exactly one of x, y and z among the words.
-func (c *columnInfo) understandAxis(list []string) {
+// written are the words as they stand in the header.
+func (c *columnInfo) understandAxis(list, written []string) {
 	var rest []string
-	for _, w := range list {
+	for i, w := range list {
 		axis := byte(0)
 		switch {
 		case w == "x" || w == "y" || w == "z":
@@ -202,7 +224,7 @@ func (c *columnInfo) understandAxis(list []string) {
 			case beadWords[w]:
 				c.named = true
 			case !axisExtras[w] && w != "v":
-				rest = append(rest, w)
+				rest = append(rest, written[i])
 			}
 			continue
 		}
@@ -221,5 +243,5 @@ func (c *columnInfo) understandAxis(list []string) {
 
 // numbered tells whether the part of the name beside the axis identifies a bead.
 func (c *columnInfo) numbered() bool {
-	return c.bead != "" && c.named || c.bead != "" && !slices.ContainsFunc(strings.Fields(c.bead), func(w string) bool { return !isIdentifier(w) })
+	return c.bead != "" && c.named || c.bead != "" && !slices.ContainsFunc(strings.Fields(c.bead), func(w string) bool { return !isIdentifier(strings.ToLower(w)) })
 }

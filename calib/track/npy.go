@@ -218,8 +218,8 @@ func (h *arrayHeader) fill(ctx context.Context, r io.Reader, data [][]float64, r
 		for i := range n {
 			for k := range h.fields {
 				v := h.fields[k].value(buf[i*h.record:])
-				if math.IsInf(v, 0) {
-					return &fault{reason: fmt.Sprintf("element %d is not a finite number", done+i)}
+				if math.Abs(v) > farthest {
+					return &fault{reason: fmt.Sprintf("element %s is %g, which is not finite or beyond anything that is measured", h.index(done+i, k, rows, columns), v)}
 				}
 				column := k
 				if perElement == 1 {
@@ -233,6 +233,20 @@ func (h *arrayHeader) fill(ctx context.Context, r io.Reader, data [][]float64, r
 		done += n
 	}
 	return nil
+}
+
+// index writes the place of a number as NumPy would: by row and column from 0, or by
+// row and name.
+func (h *arrayHeader) index(element, field, rows, columns int) string {
+	switch {
+	case h.names:
+		return fmt.Sprintf("[%d][%s]", element, quoted(h.fields[field].name))
+	case len(h.shape) == 1:
+		return fmt.Sprintf("[%d]", element)
+	case h.fortran:
+		return fmt.Sprintf("[%d, %d]", element%rows, element/rows)
+	}
+	return fmt.Sprintf("[%d, %d]", element/columns, element%columns)
 }
 
 // arrayTable gives the columns of an array their roles.
@@ -272,7 +286,7 @@ func arrayTable(h *arrayHeader, data [][]float64, rows int, opt Options) (*table
 		tab.columns = append(tab.columns, data[u.column])
 	}
 	if p.time != nil {
-		tab.written.shift = p.time.unit.siShift()
+		tab.written.shift, tab.written.times = p.time.unit.siShift(), p.time.unit.times
 	}
 	tab.place = func(row int) *Error { return &Error{File: opt.Name + fmt.Sprintf("[%d]", row)} }
 	tab.readAs = ReadAs{Format: "npy", Encoding: h.fields[0].text, Rows: rows, Columns: p.describe(), Rate: math.NaN()}

@@ -90,6 +90,21 @@ func TestArraysRefused(t *testing.T) {
 	}
 }
 
+// A number that cannot be is named by its place in the array.
+func TestPlaceInArray(t *testing.T) {
+	numbers := []float64{0, 1, 2, 3, 4, 5, 6, 7, 8, 1e300, 10, 11}
+	for want, file := range map[string][]byte{
+		"element [9] is 1e+300":      npyFile(1, "'<f8'", "12,", false, numbers, binary.LittleEndian),
+		"element [4, 1] is 1e+300":   npyFile(1, "'<f8'", "6, 2", false, numbers, binary.LittleEndian),
+		"element [3, 1] is 1e+300":   npyFile(1, "'<f8'", "6, 2", true, numbers, binary.LittleEndian),
+		`element [4]["y"] is 1e+300`: npyFile(1, "[('x', '<f8'), ('y', '<f8')]", "6,", false, numbers, binary.LittleEndian),
+	} {
+		if _, err := Read(t.Context(), bytes.NewReader(file), Options{Unit: "nm", Rate: 1000}); err == nil || !strings.Contains(err.Error(), want) {
+			t.Errorf("%v, want %q", err, want)
+		}
+	}
+}
+
 func TestClock(t *testing.T) {
 	for text, want := range map[string]float64{
 		"12:30:00.125": 45000.125, "12:30:00,125": 45000.125, "00:00:01": 1, "12:30:00:125": 45000.125, "02:05.5": 125.5,

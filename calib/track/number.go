@@ -13,6 +13,11 @@ import (
 // digit: it loads eight bytes at a time.
 const pad = 16
 
+// farthest bounds the numbers that are taken for a position or a time, in SI units or
+// that of the file. It is far above all that is measured, and its square far below
+// what a float64 holds.
+const farthest = 1e30
+
 // tens holds the powers of ten that a float64 represents exactly.
 var tens = [...]float64{1e0, 1e1, 1e2, 1e3, 1e4, 1e5, 1e6, 1e7, 1e8, 1e9, 1e10, 1e11,
 	1e12, 1e13, 1e14, 1e15, 1e16, 1e17, 1e18, 1e19, 1e20, 1e21, 1e22}

@@ -5,6 +5,7 @@ import (
 	"slices"
 	"strconv"
 	"strings"
+	"unicode"
 )
 
 // use is what a column is used for after header and settings are weighed.
@@ -73,8 +74,7 @@ func makePlan(name string, columns []columnInfo, line int, opt Options, isGrid f
 		return nil, err
 	}
 	if !slices.ContainsFunc(p.uses, func(u use) bool { return u.axis != 0 }) {
-		return nil, p.fail(CodeColumns, "no column is recognised as x, y or z: the file has "+listNames(columns),
-			"say which columns to use (--columns x=NAME,y=NAME,time=NAME, or by number)")
+		return nil, p.noPositions()
 	}
 	if err := p.setUnits(opt); err != nil {
 		return nil, err
@@ -194,6 +194,46 @@ func (p *plan) count(r role) int {
 		}
 	}
 	return n
+}
+
+// noPositions is the error of a file without position columns. Where one to three
+// columns could be meant it says how to name them.
+func (p *plan) noPositions() error {
+	var empty, could []int
+	for k, c := range p.columns {
+		switch {
+		case c.role == axisRole && c.empty:
+			empty = append(empty, k)
+		case c.role == otherRole && c.numeric && !slices.ContainsFunc(p.uses, func(u use) bool { return u.column == k }):
+			could = append(could, k)
+		}
+	}
+	if len(empty) > 0 {
+		return p.fail(CodeEmpty, "the position columns hold no number: "+p.names(empty), "check the export, or say which columns to use (--columns x=NAME,y=NAME)")
+	}
+	remedy := "say which columns to use (--columns x=NAME,y=NAME,time=NAME, or by number)"
+	if len(could) > 0 && len(could) <= 3 {
+		var list []string
+		for i, k := range could {
+			list = append(list, "xyz"[i:i+1]+"="+p.address(k))
+		}
+		remedy = fmt.Sprintf("if %s the positions, in this order, say so: --columns %s", map[bool]string{true: "this column holds", false: "these columns hold"}[len(could) == 1], strings.Join(list, ","))
+	}
+	return p.fail(CodeColumns, "no column is recognised as x, y or z: the file has "+listNames(p.columns), remedy)
+}
+
+// address is how --columns is told of a column without need of quotes: by its name if
+// that is one plain word of its own, otherwise by its number.
+func (p *plan) address(k int) string {
+	name := p.columns[k].header
+	plain := name != "" && !strings.ContainsFunc(name, func(r rune) bool { return r > 127 || !unicode.IsLetter(r) && !unicode.IsDigit(r) && r != '_' })
+	if _, err := strconv.Atoi(name); err == nil || !plain {
+		return strconv.Itoa(k + 1)
+	}
+	if found, err := p.find("x", name); err != nil || found != k {
+		return strconv.Itoa(k + 1)
+	}
+	return name
 }
 
 // keep adds the columns of Options.Keep.

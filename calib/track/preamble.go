@@ -49,12 +49,27 @@ func (p *preamble) readKey(text string, delimiter byte, number int) {
 	if at < 0 {
 		at = strings.LastIndexByte(text, '\t')
 	}
-	if at <= 0 {
+	if at < 0 {
+		p.readPlain(text, number)
+		return
+	}
+	if at == 0 {
 		return
 	}
 	key := strings.Trim(text[:at], "\" ")
 	value := strings.Trim(trimCell(text[at+1:]), "\"=:;,\t| ")
 	p.set(parseName(key), value, number)
+}
+
+// readPlain reads "key value unit", where the unit makes sure that it is one.
+func (p *preamble) readPlain(text string, number int) {
+	at := strings.IndexAny(text, "0123456789")
+	if at <= 0 {
+		return
+	}
+	if _, u, ok := quantity(text[at:]); ok && u.name != "" && !u.isCoarse() {
+		p.set(columnInfo{header: text[:at]}, text[at:], number)
+	}
 }
 
 // set takes a key with its value.

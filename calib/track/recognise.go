@@ -60,7 +60,7 @@ func (p *plan) recogniseAxes() error {
 	var axes []int
 	for k, c := range p.columns {
 		// A named axis that holds text is read all the same: every cell is an error.
-		if c.role == axisRole && !c.empty {
+		if c.role == axisRole && !c.empty && !slices.ContainsFunc(p.uses, func(u use) bool { return u.column == k }) {
 			axes = append(axes, k)
 		}
 	}
@@ -78,6 +78,13 @@ func (p *plan) recogniseAxes() error {
 		}
 		if len(axes) == 1 {
 			p.notes = note(p.notes, "axis-assumed", "the only position column, %s, is taken as x", quoted(p.columns[axes[0]].header))
+		}
+	}
+	for i, k := range axes { // beads whose names differ in case only are one
+		for _, other := range axes[:i] {
+			if strings.EqualFold(p.columns[k].bead, p.columns[other].bead) {
+				p.columns[k].bead = p.columns[other].bead
+			}
 		}
 	}
 	if p.repeats(axes, func(c columnInfo) string { return c.bead }) {

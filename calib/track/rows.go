@@ -16,6 +16,7 @@ type fieldKind uint8
 const (
 	skipField   fieldKind = iota // not read
 	numberField                  // a number
+	timesField                   // a number that counts minutes, hours or days
 	clockField                   // date and time, or one of them, in seconds
 	beadField                    // identifier of a bead
 )
@@ -23,9 +24,10 @@ const (
 // field is one column of the file.
 type field struct {
 	kind  fieldKind
-	out   int    // index of the kept column
-	shift int    // the unit as a power of ten
-	name  string // header, for messages
+	out   int     // index of the kept column
+	shift int     // the unit as a power of ten
+	times float64 // the unit of a timesField
+	name  string  // header, for messages
 }
 
 // parser turns blocks into rows. Each worker has its own.
@@ -182,12 +184,15 @@ func (p *parser) fastRow(b []byte, i, row int) (next int, ok bool) {
 			i = skipBlanks(b, i, delimiter)
 		}
 		switch f.kind {
-		case numberField:
+		case numberField, timesField:
 			v, after, ok := plainNumber(b, i, mark, f.shift)
 			if !ok {
 				if v, after, ok = p.rareNumber(b, i, f.shift); !ok {
 					return 0, false
 				}
+			}
+			if f.kind == timesField {
+				v *= f.times
 			}
 			p.fast[k][row] = v
 			i = after
@@ -244,10 +249,10 @@ func (p *parser) rareNumber(b []byte, i, shift int) (v float64, next int, ok boo
 		if v, next, ok = plainNumber(b, i+1, p.lay.mark, shift); !ok {
 			v, next, ok = fastNumber(b, i+1, p.lay.mark, shift)
 		}
-		return v, next + 1, ok && b[next] == '"'
+		return v, next + 1, ok && b[next] == '"' && math.Abs(v) <= farthest
 	}
 	if v, next, ok = fastNumber(b, i, p.lay.mark, shift); ok {
-		return v, next, true
+		return v, next, math.Abs(v) <= farthest
 	}
 	return fastMissing(b, i, p.lay.delimiter, len(p.lay.fields)-1)
 }

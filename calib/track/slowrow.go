@@ -134,7 +134,14 @@ func (p *parser) value(f *field, text string) (float64, error) {
 	case beadField:
 		return p.bead(text)
 	}
-	return generalNumber(text, p.lay.mark, p.lay.thousands, f.shift)
+	v, err := generalNumber(text, p.lay.mark, p.lay.thousands, f.shift)
+	if f.kind == timesField {
+		v *= f.times
+	}
+	if err == nil && math.Abs(v) > farthest {
+		err = beyond
+	}
+	return v, err
 }
 
 // bead returns the index of an identifier.

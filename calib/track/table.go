@@ -198,12 +198,14 @@ func (tab *table) recording(g group, opt Options, several bool) (*Recording, err
 // by a power of ten, which is exact, so that the result is rounded once.
 func (tab *table) si(u use, values []float64) []float64 {
 	shift := u.unit.siShift()
-	if tab.shifted || shift == 0 {
+	if tab.shifted || shift == 0 && !u.unit.isCoarse() {
 		return values
 	}
 	out := make([]float64, len(values))
 	for i, v := range values {
-		if shift < 0 {
+		if u.unit.isCoarse() {
+			out[i] = v * u.unit.times
+		} else if shift < 0 {
 			out[i] = v / math.Pow10(-shift)
 		} else {
 			out[i] = v * math.Pow10(shift)

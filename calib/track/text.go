@@ -190,9 +190,9 @@ func (lay *layout) resolution(p *plan) resolution {
 	if p.time == nil {
 		return resolution{}
 	}
-	out := resolution{shift: p.time.unit.siShift()}
+	out := resolution{shift: p.time.unit.siShift(), times: p.time.unit.times}
 	if lay.decimals >= 0 {
-		out.step = math.Pow(10, float64(out.shift-lay.decimals))
+		out.step = out.factor() * math.Pow(10, float64(out.shift-lay.decimals))
 	}
 	return out
 }

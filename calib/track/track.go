@@ -38,7 +38,7 @@ type Options struct {
 	RateForced bool              // Rate wins over the time column, with a note; otherwise a contradiction is an error
 	Unit       string            // position unit where the header states none: m, mm, um, nm, px, V, mV, counts or 1
 	UnitForced bool              // Unit wins over the header, with a note; otherwise a contradiction is an error
-	TimeUnit   string            // unit of the time column: s, ms, us, ns or frame; empty: from the header
+	TimeUnit   string            // unit of the time column: s, ms, us, ns, min, h, d or frame; empty: from the header
 	Columns    map[string]string // "time", "x", "y", "z" to a header name or a column number from 1
 	Keep       []string          // other numeric columns to keep, by header name or number
 	Bead       string            // the one bead to return; empty: all

@@ -87,19 +87,21 @@ func (p *plan) fillUnits(pre preamble, opt Options) error {
 	return p.fail(CodeUnit, what, "state it (--unit um, or recording.unit in the session file), or write it in the header: x (um)")
 }
 
+const timeUnits = "units of time are s, ms, us, ns, min, h, d and frame"
+
 // setTimeUnit settles the unit of the time column.
 func (p *plan) setTimeUnit(u *use, opt Options) error {
 	c := p.columns[u.column]
 	if c.unknown != "" && opt.TimeUnit == "" {
-		return p.fail(CodeUnit, fmt.Sprintf("the unit %s of column %s is not known", quoted(c.unknown), quoted(c.header)), "units of time are s, ms, us, ns or frame (--time-unit)")
+		return p.fail(CodeUnit, fmt.Sprintf("the unit %s of column %s is not known", quoted(c.unknown), quoted(c.header)), timeUnits+" (--time-unit)")
 	}
 	if c.stated && c.unit.dim != duration && c.unit.dim != frames {
-		return p.fail(CodeUnit, fmt.Sprintf("the unit %s of column %s is no unit of time", c.unit.name, quoted(c.header)), "units of time are s, ms, us, ns or frame (--time-unit)")
+		return p.fail(CodeUnit, fmt.Sprintf("the unit %s of column %s is no unit of time", c.unit.name, quoted(c.header)), timeUnits+" (--time-unit)")
 	}
 	if opt.TimeUnit != "" {
 		wanted, ok := findUnit(opt.TimeUnit)
 		if !ok || wanted.dim != duration && wanted.dim != frames {
-			return &Error{File: p.name, Code: CodeSetting, What: fmt.Sprintf("the time unit %s is not known", quoted(opt.TimeUnit)), Remedy: "use s, ms, us, ns or frame"}
+			return &Error{File: p.name, Code: CodeSetting, What: fmt.Sprintf("the time unit %s is not known", quoted(opt.TimeUnit)), Remedy: timeUnits}
 		}
 		if c.stated && c.unit != wanted {
 			return p.fail(CodeUnit, fmt.Sprintf("the header states %s in %s, the setting says %s", quoted(c.header), c.unit.name, wanted.name), "correct one of them")

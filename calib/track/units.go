@@ -18,12 +18,18 @@ const (
 	frames
 )
 
-// unit is a unit of measurement as a power of ten of the SI unit.
+// unit is a unit of measurement: 10^shift times the SI unit, or as many times the SI
+// unit as times says.
 type unit struct {
 	name  string // canonical spelling
 	dim   dimension
-	shift int // 10^shift SI units
+	shift int
+	times float64 // 1 but for minutes, hours and days
 }
+
+// isCoarse tells units of time that nobody samples in, and whose names mean other
+// things as well: a least value, a height, a distance.
+func (u unit) isCoarse() bool { return u.dim == duration && u.times != 1 }
 
 // toMetre returns the factor to metres, NaN for what is no length.
 func (u unit) toMetre() float64 {
@@ -55,26 +61,29 @@ func makeUnits() map[string]unit {
 			table[s] = u
 		}
 	}
-	add(unit{"m", length, 0}, "metre", "meter", "metres", "meters")
-	add(unit{"cm", length, -2})
-	add(unit{"mm", length, -3}, "millimetre", "millimeter", "millimetres", "millimeters")
-	add(unit{"um", length, -6}, "\u00b5m", "\u03bcm", "micron", "microns", "mum", "micrometre", "micrometer", "micrometres", "micrometers", "mikrometer", "micromètre", "micromètres", "mcm", "мкм", "微米", "µ", "\u03bc")
-	add(unit{"nm", length, -9}, "nanometre", "nanometer", "nanometres", "nanometers", "nanomètre", "nanomètres", "нм", "纳米")
-	add(unit{"pm", length, -12}, "picometre", "picometer", "picometres", "picometers")
-	add(unit{"px", plain, 0}, "pix", "pixel", "pixels", "Pixel", "Px", "PX")
-	add(unit{"V", voltage, 0}, "volt", "volts", "Volt", "Volts", "v", "В")
-	add(unit{"mV", voltage, -3}, "millivolt", "millivolts", "mv")
-	add(unit{"uV", voltage, -6}, "\u00b5V", "\u03bcV", "microvolt", "microvolts")
-	add(unit{"counts", plain, 0}, "count", "cts", "ct", "ADU", "adu", "lsb", "LSB", "digits", "Counts")
-	add(unit{"1", plain, 0}, "norm", "normalised", "normalized", "a.u.", "au", "arb. u.", "arb.u.", "dimensionless", "rel.", "-")
-	add(unit{"s", duration, 0}, "sec", "secs", "second", "seconds", "Sekunde", "sekunde", "sekunden", "seconde", "secondes", "segundos", "с", "秒")
-	add(unit{"ms", duration, -3}, "msec", "millisecond", "milliseconds", "мс", "毫秒")
-	add(unit{"us", duration, -6}, "\u00b5s", "\u03bcs", "usec", "microsecond", "microseconds", "мкс", "微秒")
-	add(unit{"ns", duration, -9}, "nsec", "nanosecond", "nanoseconds")
-	add(unit{"Hz", frequency, 0}, "hz", "HZ", "hertz", "1/s", "s-1", "s^-1", "fps", "S/s", "Sa/s", "sps", "samples/s", "frames/s", "Гц")
-	add(unit{"kHz", frequency, 3}, "khz", "KHz", "KHZ", "kS/s", "kSa/s", "ksps")
-	add(unit{"MHz", frequency, 6}, "MS/s", "MSa/s")
-	add(unit{"frame", frames, 0}, "frames", "fr", "frame number", "frame no", "sample", "samples", "#", "image", "images")
+	add(unit{"m", length, 0, 1}, "metre", "meter", "metres", "meters")
+	add(unit{"cm", length, -2, 1})
+	add(unit{"mm", length, -3, 1}, "millimetre", "millimeter", "millimetres", "millimeters")
+	add(unit{"um", length, -6, 1}, "\u00b5m", "\u03bcm", "micron", "microns", "mum", "micrometre", "micrometer", "micrometres", "micrometers", "mikrometer", "micromètre", "micromètres", "mcm", "мкм", "微米", "µ", "\u03bc")
+	add(unit{"nm", length, -9, 1}, "nanometre", "nanometer", "nanometres", "nanometers", "nanomètre", "nanomètres", "нм", "纳米")
+	add(unit{"pm", length, -12, 1}, "picometre", "picometer", "picometres", "picometers")
+	add(unit{"px", plain, 0, 1}, "pix", "pixel", "pixels", "Pixel", "Px", "PX")
+	add(unit{"V", voltage, 0, 1}, "volt", "volts", "Volt", "Volts", "v", "В")
+	add(unit{"mV", voltage, -3, 1}, "millivolt", "millivolts", "mv")
+	add(unit{"uV", voltage, -6, 1}, "uv", "\u00b5V", "\u03bcV", "microvolt", "microvolts")
+	add(unit{"counts", plain, 0, 1}, "count", "cts", "ct", "ADU", "adu", "lsb", "LSB", "digits", "Counts")
+	add(unit{"1", plain, 0, 1}, "norm", "normalised", "normalized", "a.u.", "au", "arb. u.", "arb.u.", "dimensionless", "rel.", "-")
+	add(unit{"s", duration, 0, 1}, "sec", "secs", "second", "seconds", "Sekunde", "sekunde", "sekunden", "seconde", "secondes", "segundos", "с", "秒")
+	add(unit{"ms", duration, -3, 1}, "msec", "millisecond", "milliseconds", "мс", "毫秒")
+	add(unit{"us", duration, -6, 1}, "\u00b5s", "\u03bcs", "usec", "microsecond", "microseconds", "мкс", "微秒")
+	add(unit{"ns", duration, -9, 1}, "nsec", "nanosecond", "nanoseconds")
+	add(unit{"min", duration, 0, 60}, "mins", "minute", "minutes", "Minuten", "minuten", "minutos", "minuti", "мин", "分")
+	add(unit{"h", duration, 0, 3600}, "hr", "hrs", "hour", "hours", "Stunden", "stunden", "heures", "horas", "ore", "ч", "小时")
+	add(unit{"d", duration, 0, 86400}, "day", "days", "Tage", "tage", "jours")
+	add(unit{"Hz", frequency, 0, 1}, "hz", "HZ", "hertz", "1/s", "s-1", "s^-1", "fps", "S/s", "Sa/s", "sps", "samples/s", "frames/s", "Гц")
+	add(unit{"kHz", frequency, 3, 1}, "khz", "KHz", "KHZ", "kS/s", "kSa/s", "ksps")
+	add(unit{"MHz", frequency, 6, 1}, "MS/s", "MSa/s")
+	add(unit{"frame", frames, 0, 1}, "frames", "fr", "frame number", "frame no", "sample", "samples", "#", "image", "images")
 	return table
 }
 
@@ -91,6 +100,14 @@ func findUnit(s string) (unit, bool) {
 		}
 	}
 	return unit{}, false
+}
+
+// findUpper looks up a unit that stands in capitals like all that is around it.
+func findUpper(s string) (unit, bool) {
+	if u, ok := findUnit(s); ok || s != strings.ToUpper(s) {
+		return u, ok
+	}
+	return findUnit(strings.ToLower(s))
 }
 
 // positional tells whether a position may be given in u.
