@@ -66,9 +66,7 @@ func (w *work) soundProcess() relaxation.Process {
 	if w.fitErr != nil || w.poolErr != nil || w.pooled.regimeFC <= w.limit() {
 		return free
 	}
-	at, scale := w.pooled.maximum.At, w.fit.Scale()
-	return relaxation.Process{Corner: math.Exp(at[0]) * w.rate, Variance: scale * math.Exp(at[1]), Noise: scale * at[2],
-		Interval: free.Interval, Exposure: free.Exposure}
+	return w.processAt(w.pooled.maximum.At)
 }
 
 // newCheck turns a check into the form of a result; start is the time of the first sample [s].

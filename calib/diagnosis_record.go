@@ -212,7 +212,7 @@ func (w *work) withDrift() (evidence, float64, bool) {
 	if err != nil {
 		return evidence{}, math.NaN(), false
 	}
-	process := relaxation.Process{Corner: math.Exp(top.At[0]) * w.rate, Variance: f.Scale() * math.Exp(top.At[1]), Noise: f.Scale() * top.At[2], Interval: 1 / w.rate, Exposure: w.exposure}
+	process := w.processAt(top.At)
 	value, rms := wander(low, process, f.Scale())
 	e, ok := w.evidenceOf(part, top)
 	e.likelihood = f.Maximum.Value + top.Value + value - base.Value

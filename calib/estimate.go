@@ -50,6 +50,13 @@ func (w *work) estimate() {
 	w.totals()
 }
 
+// processAt returns the process of parameters of the fit.
+func (w *work) processAt(at relaxation.Parameters) relaxation.Process {
+	scale := w.fit.Scale()
+	return relaxation.Process{Corner: math.Exp(at[0]) * w.rate, Variance: scale * math.Exp(at[1]), Noise: scale * at[2],
+		Interval: 1 / w.rate, Exposure: w.exposure}
+}
+
 // bestProcess returns the drag-free fit, or, where that has no maximum, the one that
 // knows the drag. The covariance is drag-free as long as that can be computed; drawn
 // tells that it could not.
@@ -57,9 +64,7 @@ func (w *work) bestProcess() (p relaxation.Process, total, data relaxation.Matri
 	if w.fitErr == nil {
 		return w.fit.Process(), w.fit.Total, w.fit.Data, false
 	}
-	at, scale := w.pooled.maximum.At, w.fit.Scale()
-	p = relaxation.Process{Corner: math.Exp(at[0]) * w.rate, Variance: scale * math.Exp(at[1]), Noise: scale * at[2],
-		Interval: 1 / w.rate, Exposure: w.exposure}
+	p = w.processAt(w.pooled.maximum.At)
 	if w.poolErr != nil {
 		return p, total, data, true
 	}
@@ -94,8 +99,12 @@ func (w *work) spectrumLegs() {
 	}
 }
 
+// nothing is the uncertainty of a logarithm beyond which a recording says nothing of it: a
+// factor of e^10 either way.
+const nothing = 10
+
 func tooUncertain(bound float64) string {
-	if math.IsInf(bound, 0) {
+	if bound > nothing {
 		return "the recording does not determine it: noise, blur and relaxation cannot be told apart"
 	}
 	return fmt.Sprintf("no estimate from this recording can be better than %.0f %% (Cramer-Rao bound)", 100*bound)

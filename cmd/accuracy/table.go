@@ -39,6 +39,7 @@ Statistical intervals with inputs exact; combined ones in the cells with inputs 
 Monte-Carlo error of a coverage of 95 %: 0.5 % with 2000 recordings, 1.3 % with 300, 2.2 % with 100. An estimate whose bound exceeds 50 % (35 % where the noise is not stated) is withheld by design.
 
 `)
+	summary(w, outcomes)
 	group(w, "Inputs exact", outcomes, func(c Cell) bool { return !c.Drawn && c.spoilt() == "" })
 	group(w, "Inputs drawn from their stated uncertainties", outcomes, func(c Cell) bool { return c.Drawn })
 	group(w, "Drift, lines, gaps, long records", outcomes, func(c Cell) bool { return c.spoilt() != "" })
