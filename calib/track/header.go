@@ -193,8 +193,13 @@ func nameColumns(rows []headerRow, width, shift int) []columnInfo {
 		}
 		if h.units*2 >= h.filled() {
 			for k := range names {
-				if u, ok := findUpper(at(h, k)); ok && !names[k].stated && trimCell(at(h, k)) != "" {
-					names[k].unit, names[k].stated = u, true
+				u, ok := findUpper(at(h, k))
+				if ok && trimCell(at(h, k)) != "" {
+					if names[k].stated && names[k].unit != u && h.units == h.filled() {
+						names[k].other = u.name
+					} else if !names[k].stated {
+						names[k].unit, names[k].stated = u, true
+					}
 				} else if text := strings.Trim(trimCell(at(h, k)), "()[]"); !ok && text != "" && !names[k].stated && h.units > 0 && i > best {
 					names[k].unknown = text
 				}
@@ -249,6 +254,9 @@ func (lay *layout) setNames(name string, v *view, opt Options) error {
 	lastEmpty := v.alwaysEmpty(width - 1)
 	var rows []headerRow
 	if opt.Header != "none" {
+		if err := v.checkBroken(name); err != nil {
+			return err
+		}
 		rows = v.findHeader(func(n int) bool {
 			return n == width || n == width+1 || n == width-1 && (lastEmpty || v.isIndex(0))
 		})
@@ -264,9 +272,6 @@ func (lay *layout) setNames(name string, v *view, opt Options) error {
 	shift := 0
 	switch {
 	case len(rows) == 0:
-		if err := v.checkBroken(name); err != nil && opt.Header != "none" {
-			return err
-		}
 		if err := v.checkCommas(name, v.headerWidth()); err != nil && opt.Delimiter == "" && opt.Decimal == "" {
 			return err
 		}
@@ -299,6 +304,5 @@ func (lay *layout) setNames(name string, v *view, opt Options) error {
 			lay.repeats[strings.TrimSpace(h.line.text)] = true
 		}
 	}
-	lay.readPreamble(v)
 	return nil
 }

@@ -71,10 +71,12 @@ func (v *view) checkBroken(name string) error {
 			continue
 		}
 		cells, open := splitLine(nil, text, v.delimiter)
-		if h := newHeaderRow(v.lines[i], cellTexts(text, v.delimiter)); broken >= 0 && len(cells) == v.width && h.texts == h.filled() && h.roles > 0 {
-			break
+		h := newHeaderRow(v.lines[i], cellTexts(text, v.delimiter))
+		if broken >= 0 && len(cells) == v.width && h.texts == h.filled() && h.roles > 0 {
+			return v.brokenRow(name, broken)
 		}
-		if k := slices.IndexFunc(cells, func(c cell) bool { return c.text != "" }); i == 0 || k < 0 || kindOf(cells[k]) != numberCell && kindOf(cells[k]) != clockCell {
+		k := slices.IndexFunc(cells, func(c cell) bool { return c.text != "" })
+		if k < 0 || kindOf(cells[k]) != numberCell && kindOf(cells[k]) != clockCell || h.units == h.filled() {
 			return nil
 		}
 		broken = i
@@ -82,12 +84,44 @@ func (v *view) checkBroken(name string) error {
 			return openQuote(name, v.lines[i].number, text, open)
 		}
 	}
-	if broken < 0 {
-		return nil
+	return nil
+}
+
+// brokenRow says what is wrong with line i, which should be a row.
+func (v *view) brokenRow(name string, i int) error {
+	line := v.lines[i]
+	cells, _ := splitLine(nil, line.text, v.delimiter)
+	err := &Error{File: name, Line: line.number, Code: CodeRow, What: fmt.Sprintf("the row has %d cells, the table has %d columns", len(cells), v.width), Remedy: repairRow}
+	numeric := v.numericColumns()
+	for k, c := range cells {
+		if len(cells) != v.width || !numeric[k] || kindOf(c) != textCell {
+			continue
+		}
+		err.Column, err.Code, err.Remedy = characters(line.text, c.at), CodeCell, correctCell
+		_, why := generalNumber(c.text, '.', ',', 0)
+		if why == nil {
+			why = notNumber
+		}
+		err.What = fmt.Sprintf("%s %s", quoted(c.text), why.Error())
+		break
 	}
-	return &Error{File: name, Line: v.lines[broken].number, Code: CodeRow,
-		What:   fmt.Sprintf("the row has %d cells, the table has %d columns", len(cellTexts(v.lines[broken].text, v.delimiter)), v.width),
-		Remedy: repairRow}
+	return err
+}
+
+// dropEmpty takes rows off the end that hold neither a time nor a position: spreadsheets
+// write them. It returns their number.
+func (a *parsed) dropEmpty(p *plan) (dropped int) {
+	if p.time == nil && p.date == nil && p.frame == nil {
+		return 0 // each may be a sample that is missing
+	}
+	for a.rows > 0 && !slices.ContainsFunc(a.columns, func(c []float64) bool { return c[a.rows-1] == c[a.rows-1] }) {
+		a.rows--
+		dropped++
+	}
+	for i, c := range a.columns {
+		a.columns[i] = c[:a.rows]
+	}
+	return dropped
 }
 
 // openQuote is the error of a quote without an end.

@@ -93,14 +93,16 @@ func (lay *layout) findMark(name string, v *view, wanted string) error {
 			}
 		}
 	}
+	var above preamble
+	above.read(v)
 	lay.allWhole = m.point+m.comma+m.weakPoint+m.weakComma == 0
 	lay.mark = '.'
 	switch wanted {
 	case "point":
-		lay.thousands = ','
+		lay.thousands, lay.preamble.mark = ',', '.'
 		return nil
 	case "comma":
-		lay.mark, lay.thousands = ',', '.'
+		lay.mark, lay.thousands, lay.preamble.mark = ',', '.', ','
 		return nil
 	}
 	const remedy = "state the decimal mark (--decimal point or comma)"
@@ -118,7 +120,7 @@ func (lay *layout) findMark(name string, v *view, wanted string) error {
 		if m.grouped {
 			lay.thousands = ','
 		}
-	case m.comma > 0 || m.weakComma > 0 && m.clockComma && m.weakPoint == 0:
+	case m.comma > 0 || m.weakComma > 0 && (m.clockComma || above.comma) && m.weakPoint == 0:
 		lay.mark = ','
 		if m.grouped {
 			lay.thousands = '.'
@@ -126,6 +128,9 @@ func (lay *layout) findMark(name string, v *view, wanted string) error {
 	case m.weakComma > 0:
 		return &Error{File: name, Line: v.lines[v.first].number, Code: CodeLayout,
 			What: "the comma can be a decimal mark or a separator of thousands: every number reads both ways", Remedy: remedy}
+	}
+	if !lay.allWhole {
+		lay.preamble.mark = lay.mark
 	}
 	return nil
 }

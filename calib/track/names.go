@@ -25,6 +25,7 @@ type columnInfo struct {
 	unit    unit
 	stated  bool   // the header states a unit
 	unknown string // a text in parentheses that is no known unit
+	other   string // another unit in a row of units, which contradicts that of the name
 	role    role
 	axis    byte   // 'x', 'y' or 'z'
 	bead    string // identifier of the bead, or of the variant, that the name holds
@@ -120,8 +121,16 @@ func isIdentifier(w string) bool {
 func parseName(cell string) columnInfo {
 	s := strings.Join(strings.Fields(trimCell(cell)), " ")
 	info := columnInfo{header: s}
-	if n := len(s); n > 0 && strings.IndexByte(")]}", s[n-1]) >= 0 {
-		opening := map[byte]string{')': "(", ']': "[", '}': "{"}[s[n-1]]
+	if s != "" && strings.IndexByte("([<", s[0]) >= 0 { // [nm] x
+		if at := strings.IndexAny(s, ")]>"); at > 0 {
+			if u, ok := findUnit(s[1:at]); ok && trimCell(s[at+1:]) != "" {
+				info.unit, info.stated, info.header = u, true, trimCell(s[at+1:])
+				return info
+			}
+		}
+	}
+	if n := len(s); n > 0 && strings.IndexByte(")]}>", s[n-1]) >= 0 {
+		opening := map[byte]string{')': "(", ']': "[", '}': "{", '>': "<"}[s[n-1]]
 		if at := strings.LastIndex(s, opening); at >= 0 {
 			inner := trimCell(s[at+1 : n-1])
 			find := findUnit

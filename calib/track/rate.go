@@ -1,6 +1,7 @@
 package track
 
 import (
+	"cmp"
 	"fmt"
 	"math"
 	"strconv"
@@ -75,8 +76,8 @@ func (tab *table) likelyRate(g group, opt Options) float64 {
 	switch {
 	case opt.Rate > 0:
 		return opt.Rate
-	case tab.pre.rate > 0 || g.rows == nil:
-		return tab.pre.rate
+	case len(tab.pre.rates) > 0 || g.rows == nil:
+		return tab.pre.rate(0).rate
 	case tab.rate > 0:
 		return tab.rate
 	}
@@ -186,7 +187,8 @@ func (tab *table) takeRate(rec *Recording, g *grid) {
 // settleRate weighs the rates from the stamps, the preamble and the setting.
 func (tab *table) settleRate(rec *Recording, opt Options) error {
 	hasStamps := !math.IsNaN(rec.Rate)
-	stated, origin := tab.pre.rate, "header"
+	header := tab.pre.rate(cmp.Or(max(opt.Rate, 0), notNaN(rec.Rate)))
+	stated, origin := header.rate, "header"
 	if !hasStamps {
 		rec.Start = tab.pre.start
 	}
@@ -194,16 +196,19 @@ func (tab *table) settleRate(rec *Recording, opt Options) error {
 		return &Error{File: rec.Name, Code: CodeSetting, What: fmt.Sprintf("the sampling rate %g Hz is impossible", opt.Rate), Remedy: "give a rate above zero"}
 	}
 	if opt.Rate > 0 && stated > 0 && !opt.RateForced && !agree(opt.Rate, stated, 0) {
-		return &Error{File: rec.Name, Line: tab.pre.rateLine, Code: CodeRate, What: fmt.Sprintf("the file states a sampling rate of %g Hz, the setting says %g Hz", stated, opt.Rate),
+		return &Error{File: rec.Name, Line: header.line, Code: CodeRate, What: fmt.Sprintf("the file states a sampling rate of %g Hz, the setting says %g Hz", stated, opt.Rate),
 			Remedy: "correct one of them; the flag --rate overrides the file"}
 	}
 	if opt.Rate > 0 {
 		stated, origin = opt.Rate, "setting"
 	}
 	if !hasStamps {
+		if err := tab.checkHeaderRates(rec, opt); err != nil {
+			return err
+		}
 		if stated > 0 {
 			rec.Rate, rec.RateOrigin = stated, origin
-			if origin == "header" && tab.pre.bare {
+			if origin == "header" && header.bare {
 				rec.Notes = note(rec.Notes, "rate-unit-assumed", "the file states the sampling rate without a unit: read as %g Hz", stated)
 			}
 			return nil
@@ -226,9 +231,36 @@ func (tab *table) settleRate(rec *Recording, opt Options) error {
 	who := "the setting"
 	remedy := "correct one of them (is the unit of the time column right?); the flag --rate overrides the time column"
 	if origin == "header" {
-		who = fmt.Sprintf("line %d of the file", tab.pre.rateLine)
+		who = fmt.Sprintf("line %d of the file", header.line)
 	}
 	return &Error{File: rec.Name, Line: tab.plan.line, Code: CodeRate, What: fmt.Sprintf("the time column gives a sampling rate of %.6g Hz, %s says %g Hz", rec.Rate, who, stated), Remedy: remedy}
+}
+
+// checkHeaderRates refuses a rate from the lines above the data that reads two ways,
+// or that another line contradicts, where no time column and no setting decides.
+func (tab *table) checkHeaderRates(rec *Recording, opt Options) error {
+	if opt.Rate > 0 || opt.Inspect {
+		return nil
+	}
+	const remedy = "state the rate (--rate '2 kHz', or recording.rate in the session file)"
+	if other := tab.pre.contradiction(); other != nil {
+		first := tab.pre.rates[0]
+		return &Error{File: rec.Name, Line: other.line, Code: CodeRate, Remedy: remedy,
+			What: fmt.Sprintf("a sampling rate of %g Hz, after one of %g Hz in line %d, and no time column that decides", other.rate, first.rate, first.line)}
+	}
+	if doubt := tab.pre.doubt; doubt != nil && len(tab.pre.rates) == 0 {
+		return &Error{File: rec.Name, Line: doubt.line, Code: CodeRate, Remedy: remedy,
+			What: fmt.Sprintf("the rate %s can be read with a decimal mark or with a thousands separator", quoted(doubt.text))}
+	}
+	return nil
+}
+
+// notNaN returns v, or 0 for NaN.
+func notNaN(v float64) float64 {
+	if v != v {
+		return 0
+	}
+	return v
 }
 
 // agree compares two rates [Hz].

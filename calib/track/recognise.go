@@ -174,8 +174,8 @@ func (p *plan) recogniseShape(isGrid func(int) bool) error {
 		if c.numeric || c.clock {
 			numbers = append(numbers, k)
 		} else if !c.empty {
-			return &Error{File: p.name, Code: CodeColumns, What: fmt.Sprintf("the table has no names, and column %d holds text", k+1),
-				Remedy: "give the columns names, or say which to use (--columns time=1,x=2)"}
+			return p.fail(CodeColumns, fmt.Sprintf("the table has no names, and column %d holds text", k+1),
+				"give the columns names, or say which to use (--columns time=1,x=2)")
 		}
 	}
 	has := func(role string) bool {
@@ -193,8 +193,8 @@ func (p *plan) recogniseShape(isGrid func(int) bool) error {
 		numbers = numbers[1:]
 	}
 	if len(numbers) > 3 {
-		return &Error{File: p.name, Code: CodeColumns, What: fmt.Sprintf("the table has no names and %d columns beside the time", len(numbers)),
-			Remedy: "say which columns to use (--columns time=1,x=2,y=3)"}
+		return p.fail(CodeColumns, fmt.Sprintf("the table has no names and %d columns beside the time", len(numbers)),
+			"say which columns to use (--columns time=1,x=2,y=3)")
 	}
 	for i, k := range numbers {
 		p.add(k, "xyz"[i:i+1], "xyz"[i], "")

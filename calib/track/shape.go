@@ -6,16 +6,16 @@ import (
 	"strings"
 )
 
-// readPreamble reads the keys in the lines above the data, on one line or as
-// names above their values.
-func (lay *layout) readPreamble(v *view) {
+// read reads the keys in the lines above the data, on one line or as names above
+// their values.
+func (p *preamble) read(v *view) {
 	for i := range v.first {
 		line := v.lines[i]
-		lay.preamble.readKey(line.text, v.delimiter, line.number)
+		p.readKey(line.text, v.delimiter, line.number)
 		if i+1 < v.first {
 			names, values := cellTexts(line.text, v.delimiter), cellTexts(v.lines[i+1].text, v.delimiter)
 			for k := range min(len(names), len(values)) {
-				lay.preamble.set(parseName(names[k]), values[k], v.lines[i+1].number)
+				p.set(names[k], values[k], v.lines[i+1].number)
 			}
 		}
 	}
@@ -24,23 +24,23 @@ func (lay *layout) readPreamble(v *view) {
 // takeFirstRow takes start and increment of the time from the row under those
 // names, where no other row has a value in those columns.
 func (lay *layout) takeFirstRow(v *view) {
-	isKey := func(c columnInfo) bool {
+	isTiming := func(c columnInfo) bool {
 		list := splitWords(c.header)
 		return matches(list, intervalKeys) || matches(list, startKeys)
 	}
 	found := false
 	for k, c := range lay.names {
-		if k >= len(v.cells[v.first]) || (v.kinds[v.first][k] == numberCell) != isKey(c) {
+		if k >= len(v.cells[v.first]) || (v.kinds[v.first][k] == numberCell) != isTiming(c) {
 			return
 		}
-		found = found || isKey(c)
+		found = found || isTiming(c)
 	}
 	if !found || v.first+1 >= len(v.lines) {
 		return
 	}
 	for k, c := range lay.names {
-		if isKey(c) {
-			lay.preamble.set(c, v.cells[v.first][k].text, v.lines[v.first].number)
+		if isTiming(c) {
+			lay.preamble.take(c, v.cells[v.first][k].text, v.lines[v.first].number)
 		}
 	}
 	v.first++

@@ -240,6 +240,18 @@ func preferSpaces(lines []textLine, best *view, wanted byte) *view {
 	return best
 }
 
+// isNumeric tells whether the rows are of numbers for the most part. Long lists of
+// settings are not: below them the table may still come.
+func (v *view) isNumeric() bool {
+	count := 0
+	for _, n := range v.numericColumns() {
+		if n {
+			count++
+		}
+	}
+	return 2*count > v.width
+}
+
 // preambleLimit is the number of lines in which the first row must be found.
 const preambleLimit = 25_600
 
@@ -259,7 +271,7 @@ func sniff(lay *layout, sample []byte, wanted byte) *view {
 			}
 		}
 		best = preferSpaces(lines, best, wanted)
-		enough := best.first >= 0 && len(lines)-best.first >= 100
+		enough := best.first >= 0 && len(lines)-best.first >= 100 && best.isNumeric()
 		if enough || len(lines) < limit || limit >= preambleLimit {
 			return best
 		}

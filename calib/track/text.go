@@ -79,6 +79,7 @@ func (lay *layout) find(opt Options, head []byte, whole bool) (*plan, error) {
 	if err := lay.findMark(name, v, opt.Decimal); err != nil {
 		return nil, err
 	}
+	lay.preamble.read(v)
 	lay.takeFirstRow(v)
 	lay.start, lay.firstLine = v.lines[v.first].at, v.lines[v.first].number
 	if v.first == 0 && bytes.HasPrefix(head, []byte("\ufeff")) {
@@ -86,7 +87,7 @@ func (lay *layout) find(opt Options, head []byte, whole bool) (*plan, error) {
 	}
 	lay.headerLines = lay.firstLine - 1
 	lay.measure(v, len(sample))
-	line := 0
+	line := lay.firstLine
 	if v.first > 0 && len(lay.repeats) > 0 {
 		line = v.lines[v.first-1].number
 	}
@@ -178,6 +179,11 @@ func (lay *layout) readRows(ctx context.Context, p *plan, text io.Reader, opt Op
 	tab.readAs = lay.readAs(p, rows)
 	if len(rows.again) > 0 {
 		tab.notes = note(tab.notes, "header-repeated", "the header occurs again among the rows, first in line %d: the rows are read as one recording", lay.firstLine+rows.again[0])
+	}
+	if n := rows.dropEmpty(p); n > 0 {
+		tab.rows -= n
+		tab.readAs.Rows -= n
+		tab.notes = note(tab.notes, "rows-empty", "%d rows without a time and without a number at the end are left out", n)
 	}
 	if footer := rows.total; footer > 0 {
 		tab.notes = note(tab.notes, "footer", "%d lines of text behind the data are left out, from line %d on", footer, rows.bad[0].err.Line)

@@ -23,6 +23,9 @@ func (p *plan) setUnits(opt Options) error {
 		u := &p.uses[i]
 		c := p.columns[u.column]
 		u.unit, u.known = c.unit, c.stated
+		if c.other != "" && (u.axis != 0 && !opt.UnitForced || u.role == "time") {
+			return p.fail(CodeUnit, fmt.Sprintf("the name of column %s states %s, the row of units %s", quoted(c.header), c.unit.name, c.other), "correct one of them")
+		}
 		switch {
 		case u.role == "time":
 			if err := p.setTimeUnit(u, opt); err != nil {

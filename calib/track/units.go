@@ -67,6 +67,7 @@ func makeUnits() map[string]unit {
 	add(unit{"um", length, -6, 1}, "\u00b5m", "\u03bcm", "micron", "microns", "mum", "micrometre", "micrometer", "micrometres", "micrometers", "mikrometer", "micromètre", "micromètres", "mcm", "мкм", "微米", "µ", "\u03bc")
 	add(unit{"nm", length, -9, 1}, "nanometre", "nanometer", "nanometres", "nanometers", "nanomètre", "nanomètres", "нм", "纳米")
 	add(unit{"pm", length, -12, 1}, "picometre", "picometer", "picometres", "picometers")
+	add(unit{"angstrom", length, -10, 1}, "Å", "\u212b", "Angstrom", "ångström", "ångstrom", "angstroms")
 	add(unit{"px", plain, 0, 1}, "pix", "pixel", "pixels", "Pixel", "Px", "PX")
 	add(unit{"V", voltage, 0, 1}, "volt", "volts", "Volt", "Volts", "v", "В")
 	add(unit{"mV", voltage, -3, 1}, "millivolt", "millivolts", "mv")
@@ -89,8 +90,11 @@ func makeUnits() map[string]unit {
 
 // findUnit looks a unit up in any of its spellings.
 func findUnit(s string) (unit, bool) {
-	s = strings.Trim(trimCell(s), "()[]{}")
+	s = strings.Trim(trimCell(s), "()[]{}<>")
 	s = trimCell(s)
+	if strings.ContainsAny(s, `\$`) { // as TeX writes it
+		s = strings.NewReplacer(`\mu `, "µ", `\mu`, "µ", "$", "", "{", "", "}", "", `\rm `, "", `\mathrm`, "", `\text`, "").Replace(s)
+	}
 	if u, ok := units[s]; ok {
 		return u, true
 	}
