@@ -83,7 +83,7 @@ func (w *work) recordLines() []BudgetLine {
 	stat := float64(a.Stiffness.Statistical.Standard / a.Stiffness.Value)
 	lines := []BudgetLine{{Input: statisticsLine, Value: a.Stiffness.Value, Unit: "N/m", StandardUncertainty: a.Stiffness.Statistical.Standard,
 		Sensitivity: 1, Contribution: Float(stat), Freedom: Float(w.independent()), Note: "degrees of freedom: pi times the duration in periods of the corner frequency"}}
-	noise, exposure := w.onRecord()
+	noise, moved := w.onRecord()
 	nan := Float(math.NaN())
 	add := func(name, unit string, value, u, c float64) {
 		if c == 0 {
@@ -97,7 +97,10 @@ func (w *work) recordLines() []BudgetLine {
 	}
 	sd, u := w.statedNoise()
 	add(noiseLine, "m", sd, u, noise)
-	add(exposureLine, "s", w.exposure, w.exposureU, exposure)
+	alphaU, f3dbU := w.diodeU()
+	add(exposureLine, "s", w.exposure, w.exposureU, moved[exposureMoves])
+	add(alphaLine, "1", w.seen.Alpha, alphaU, moved[alphaMoves])
+	add(f3dbLine, "Hz", w.seen.F3dB, f3dbU, moved[f3dbMoves])
 	return lines
 }
 
@@ -117,22 +120,24 @@ const (
 	statisticsLine = "statistics of the recording"
 	noiseLine      = "localisation noise"
 	exposureLine   = "exposure"
+	alphaLine      = "alpha of the photodiode"
+	f3dbLine       = "f3dB of the photodiode"
 )
 
 // onRecord is the change of the adopted ln(stiffness) for one standard uncertainty of the
-// stated noise and of the stated exposure.
-func (w *work) onRecord() (noise, exposure float64) {
+// stated noise and of the stated inputs of the record.
+func (w *work) onRecord() (noise float64, moved [moveCount]float64) {
 	n := len(w.phys.influences)
 	if w.adoptedLeg != combinedLegs {
 		g := w.legs.grad[w.adoptedLeg]
-		return g[n], g[n+1]
+		return g[n], [moveCount]float64(g[n+1:])
 	}
 	p := &w.pooled
 	if w.noise.Known && w.noise.VarianceU > 0 {
 		// d(weights . p)/d(mean of the prior) = weights' C e_q / sd^2
 		noise = p.total.Form(p.weights, alongNoise) / (w.noise.VarianceU / w.fit.Scale())
 	}
-	return noise, p.exposure
+	return noise, p.moved
 }
 
 // independent is the number of degrees of freedom of the record's own uncertainty, pi T fc.

@@ -191,7 +191,10 @@ func (w *work) adopt() {
 			a.Stiffness, a.Withheld = Withheld("N/m", reason), reason
 			return
 		}
-		stat, rest := o.Scaled(p.sdData/p.sdTotal), math.Hypot(math.Sqrt(p.rest), p.exposure)
+		stat, rest := o.Scaled(p.sdData/p.sdTotal), math.Sqrt(p.rest)
+		for _, moved := range p.moved {
+			rest = math.Hypot(rest, moved)
+		}
 		a.Stiffness = stiffness(p.value, p.sdData, stat, math.Hypot(p.sdTotal, rest), o.Widened(rest))
 		w.adoptedLeg = combinedLegs
 	}

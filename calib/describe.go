@@ -27,6 +27,7 @@ func (w *work) describe() {
 	x.Trace = w.trace()
 	w.describeDriven()
 	w.describeSensitivity()
+	w.describePhotodiode()
 	if w.background != nil {
 		x.Background = w.background.describe(w.perUnit, "m")
 	}

@@ -115,10 +115,7 @@ func expectedPower(amplitude, ratio float64) float64 {
 
 // diodePower is the share of the power at a frequency [Hz] that the photodiode passes.
 func (w *work) diodePower(hz float64) float64 {
-	if h, ok := w.hydrodynamic(false); ok {
-		return h.Response(hz)
-	}
-	return 1
+	return w.seen.Response(hz)
 }
 
 // driven is the viscosity-free estimate in logarithms: of the stiffness, the drag and the length

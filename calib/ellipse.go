@@ -128,7 +128,7 @@ func pairOf(a, b *work) (float64, AxisPair) {
 		}
 	}
 	shrink := func(w *work) float64 {
-		s, _ := relaxation.BlurVariance(2 * math.Pi * w.fit.Corner * w.exposure)
+		s, _ := w.keptShare(w.fit.Corner)
 		return s
 	}
 	cov := sum / float64(n) / math.Sqrt(shrink(a)*shrink(b))

@@ -9,7 +9,6 @@ import (
 	"beadwell/calib/msd"
 	"beadwell/calib/relaxation"
 	"beadwell/equipartition"
-	"beadwell/psd"
 )
 
 // hopeless is the Cramer-Rao bound of a logarithm above which a leg is withheld: beyond
@@ -46,7 +45,7 @@ func (w *work) estimate() {
 	w.displacementLegs(process, total, drawn)
 	w.covariances()
 	w.influences()
-	w.exposureInfluence()
+	w.recordInfluences()
 	w.totals()
 }
 
@@ -148,7 +147,8 @@ func (w *work) equipartitionLeg(p relaxation.Process, total, data relaxation.Mat
 	for _, line := range w.record.Lines {
 		lost += 3 * p.Spectrum(line.Frequency) * w.rate
 	}
-	eq, err := equipartition.Estimate(equipartition.Input{MeanSquare: w.record.MeanSquare(), Samples: len(w.record.X), Observed: w.record.Observed(),
+	kept, keptSlope := w.keptShare(p.Corner)
+	eq, err := equipartition.Estimate(equipartition.Input{Kept: kept, KeptSlope: keptSlope, KeptU: w.keptU(p.Corner), MeanSquare: w.record.MeanSquare(), Samples: len(w.record.X), Observed: w.record.Observed(),
 		Process: p, Lost: lost, Scale: w.fit.Scale(), Total: total, Data: data})
 	l.eq = eq
 	if err != nil {
@@ -213,7 +213,7 @@ func (w *work) displacementLegs(p relaxation.Process, total relaxation.Matrix, d
 	if w.dragModel == FrequencyDependentDrag { // short lags follow the inertia of the liquid
 		first = int(math.Ceil(relaxationsOfInertia / (2 * math.Pi * p.Corner / w.rate)))
 	}
-	m, err := msd.Estimate(msd.Input{FirstLag: first, X: w.record.X, Missing: w.record.Missing > 0, Guess: p, Scale: w.fit.Scale(), FitCovariance: total,
+	m, err := msd.Estimate(msd.Input{FirstLag: first, Detected: w.detected(p), X: w.record.X, Missing: w.record.Missing > 0, Guess: p, Scale: w.fit.Scale(), FitCovariance: total,
 		Noise: msd.Noise{Known: w.noise.Known, Variance: w.noise.Variance, VarianceU: w.noise.VarianceU}})
 	if err != nil {
 		l.reason[displacementLeg], l.reason[timeLeg] = err.Error(), err.Error()
@@ -280,12 +280,12 @@ func (w *work) covariances() {
 func set(m *[legCount][legCount]float64, i, j int, v float64) { m[i][j], m[j][i] = v, v }
 
 // influences fills what one standard uncertainty of each input does to each leg; after
-// the inputs of physics follow noise and exposure.
+// the inputs of physics follow noise and the inputs of the record.
 func (w *work) influences() {
 	l := &w.legs
 	n := len(w.phys.influences)
 	for leg := range l.grad {
-		l.grad[leg] = make([]float64, n+2)
+		l.grad[leg] = make([]float64, n+1+moveCount)
 		for i, in := range w.phys.influences {
 			if dragLeg[leg] {
 				l.grad[leg][i] = in.drag
@@ -310,32 +310,63 @@ func (w *work) influences() {
 	}
 }
 
-// exposureInfluence repeats the estimates with the exposure changed by its standard
-// uncertainty (to the other side where it would exceed the sampling interval).
-func (w *work) exposureInfluence() {
-	if w.exposureU == 0 || w.fitErr != nil {
+// The inputs of the record that change its likelihood.
+const (
+	exposureMoves = iota
+	alphaMoves
+	f3dbMoves
+	moveCount
+)
+
+// recordInfluences repeats the estimates with exposure, alpha and f3dB changed by their standard uncertainties (the
+// exposure to the other side where it would exceed the sampling interval).
+func (w *work) recordInfluences() {
+	if w.fitErr != nil {
 		return
 	}
-	l, n := &w.legs, len(w.phys.influences)+1
-	u := w.exposureU
-	if (w.exposure+u)*w.rate > 1 {
-		u = -math.Min(u, w.exposure)
+	if u := w.exposureU; u > 0 {
+		if (w.exposure+u)*w.rate > 1 {
+			u = -math.Min(u, w.exposure)
+		}
+		if u != 0 {
+			shifted := *w
+			shifted.exposure = w.exposure + u
+			w.influence(exposureMoves, &shifted, w.exposureU/u)
+		}
 	}
-	if u == 0 {
-		return
+	alpha, f3db := w.diodeU()
+	for move, u := range [moveCount]float64{alphaMoves: alpha, f3dbMoves: f3db} {
+		if u == 0 {
+			continue
+		}
+		step := 1.0
+		if move == alphaMoves && w.seen.Alpha+u > 1 {
+			step = -1
+		}
+		shifted := *w
+		shifted.moved[move] = step
+		w.influence(move, &shifted, step)
 	}
-	shifted := *w
-	shifted.exposure, shifted.exposureU = w.exposure+u, 0
+}
+
+// influence sets what one standard uncertainty of an input of the record does, from the analysis with that input
+// moved by one over the factor.
+func (w *work) influence(move int, shifted *work, factor float64) {
+	l, n := &w.legs, len(w.phys.influences)+1+move
 	shifted.legs = legs{}
 	options := shifted.fitOptions()
 	options.KeepLines = true
 	if w.form != nil {
-		h, _ := w.hydrodynamic(w.dragModel == FrequencyDependentDrag)
+		h, _ := shifted.hydrodynamic(w.dragModel == FrequencyDependentDrag)
 		options.Form = h.Form(w.rate, shifted.exposure)
+		shifted.seen = h
 	}
 	var err error
-	if shifted.fit, err = psd.Estimate(w.record, options); err != nil {
+	if shifted.fit, _, err = shifted.estimateFilled(options); err != nil {
 		return
+	}
+	if w.form != nil {
+		shifted.seen = shifted.seen.Seen(shifted.fit)
 	}
 	for i := range shifted.legs.value {
 		shifted.legs.value[i] = math.NaN()
@@ -344,7 +375,7 @@ func (w *work) exposureInfluence() {
 		return
 	}
 	if w.poolErr == nil {
-		w.pooled.exposure = (shifted.pooled.value - w.pooled.value) * w.exposureU / u
+		w.pooled.moved[move] = (shifted.pooled.value - w.pooled.value) * factor
 	}
 	shifted.spectrumLegs()
 	process, total, data, drawn := shifted.bestProcess()
@@ -352,7 +383,7 @@ func (w *work) exposureInfluence() {
 	shifted.displacementLegs(process, total, drawn)
 	for leg := range l.grad {
 		if d := shifted.legs.value[leg] - l.value[leg]; !math.IsNaN(d) {
-			l.grad[leg][n] = d * w.exposureU / u
+			l.grad[leg][n] = d * factor
 		}
 	}
 }

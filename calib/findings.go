@@ -39,6 +39,7 @@ func (w *work) findings() []Finding {
 			Text:   fmt.Sprintf("A narrow line at %.6g Hz with an amplitude of %.3g nm was removed.", l.Frequency, l.Amplitude*1e9),
 			Remedy: "look for mains pickup or a vibration", Value: Float(l.Frequency), Limit: nan, Unit: "Hz"})
 	}
+	out = append(out, w.diodeFindings()...)
 	if w.background != nil {
 		out = append(out, w.background.findingsOf(w.axisName)...)
 	}

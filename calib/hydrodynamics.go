@@ -27,14 +27,7 @@ const (
 // the detector; ok is false where neither is known. The mass of a bead of unstated density is that of
 // the liquid it displaces: it matters near f_m, megahertz for a bead of a micrometre.
 func (w *work) hydrodynamic(inertia bool) (psd.Hydrodynamic, bool) {
-	var h psd.Hydrodynamic
-	f3db, hasDiode := number(w.set, "detector.f3db", "")
-	if hasDiode {
-		h.F3dB = f3db.Value.SI
-		if alpha, ok := number(w.set, "detector.alpha", ""); ok {
-			h.Alpha = alpha.Value.SI
-		}
-	}
+	h, hasDiode := w.photodiode()
 	p := w.phys
 	if inertia && !math.IsNaN(p.density) {
 		d := drag.Frequency{Radius: p.radius, Height: p.height, Viscosity: p.viscosity, Density: p.density,
@@ -96,15 +89,27 @@ func (w *work) settleDrag() error {
 	return w.chooseDrag(h)
 }
 
-// refit fits another spectrum to the record that is already free of lines.
+// refit fits another spectrum to the record. Lines that the fit with constant drag found may be where that does not
+// hold: they are put back and looked for anew.
 func (w *work) refit(h psd.Hydrodynamic) error {
 	if err := h.Check(); err != nil {
 		return &SettingError{Key: "detector.f3db", Problem: err.Error()}
 	}
+	if len(w.record.Lines) > 0 {
+		if err := w.prepare(); err != nil {
+			return err
+		}
+	}
 	options := w.fitOptions()
 	options.Form = h.Form(w.rate, w.exposure)
-	w.fit, w.fitErr = w.estimateFilled(options)
-	w.form = options.Form
+	options.KeepLines = w.record.Missing > 0
+	var record *psd.Record
+	w.fit, record, w.fitErr = w.estimateFilled(options)
+	w.form, w.seen = options.Form, h
+	if w.fitErr == nil {
+		w.settleRoles(record)
+		w.seen = h.Seen(w.fit)
+	}
 	return nil
 }
 
@@ -118,16 +123,16 @@ func (w *work) tooManyGaps() bool {
 }
 
 // estimateFilled fits a spectrum of another shape, which knows nothing of missing samples.
-func (w *work) estimateFilled(options psd.Options) (*psd.Fit, error) {
-	options.KeepLines = true
+func (w *work) estimateFilled(options psd.Options) (*psd.Fit, *psd.Record, error) {
 	record := w.record
 	if record.Missing > 0 {
 		var err error
 		if record, err = psd.Prepare(bridged(record.X), record.Rate); err != nil {
-			return nil, err
+			return nil, record, err
 		}
 	}
-	return psd.Estimate(record, options)
+	fit, err := psd.Estimate(record, options)
+	return fit, record, err
 }
 
 // chooseDrag takes frequency-dependent drag where a fit with constant drag would be
@@ -139,7 +144,9 @@ func (w *work) chooseDrag(h psd.Hydrodynamic) error {
 	sd, _ := w.fit.SD(alongCorner)
 	sdD, _ := w.fit.SD(alongDrag)
 	noise := math.Max(0, w.fit.NoiseQ/w.fit.Variance)
-	bias, err := h.Bias(psd.Design{Rate: w.rate, Exposure: w.exposure, Corner: w.fit.Corner, Noise: noise, NoiseFree: !w.noise.Known, Band: w.givenBand()})
+	at := h
+	at.Alpha, at.F3dB = w.seen.Alpha, w.seen.F3dB // as it was fitted
+	bias, err := at.Bias(psd.Design{Rate: w.rate, Exposure: w.exposure, Corner: w.fit.Corner, Noise: noise, NoiseFree: !w.noise.Known, Band: w.givenBand()})
 	if err != nil || math.Abs(bias.Corner) < hydroBias*sd && math.Abs(bias.Diffusion) < hydroBias*sdD {
 		return nil
 	}
@@ -147,25 +154,34 @@ func (w *work) chooseDrag(h psd.Hydrodynamic) error {
 	if w.tooManyGaps() {
 		return nil
 	}
-	plain, plainForm := w.fit, w.form
+	plain := *w
+	if err := w.refit(h); err != nil || w.fitErr != nil {
+		w.backTo(&plain)
+		return nil
+	}
 	// the same form of the likelihood for both, so that their values compare
 	options := w.fitOptions()
+	options.KeepLines = true
 	constant := h
 	constant.Drag, constant.MassCorner = nil, 0
 	options.Form = constant.Form(w.rate, w.exposure)
-	base, err := w.estimateFilled(options)
+	base, _, err := w.estimateFilled(options)
 	if err != nil {
+		w.backTo(&plain)
 		return nil
 	}
-	if err := w.refit(h); err == nil && w.fitErr == nil {
-		w.inertia = w.agreement(w.fit) - w.agreement(base)
-		if w.inertia > 0 {
-			w.dragModel = FrequencyDependentDrag
-			return nil
-		}
+	w.inertia = w.agreement(w.fit) - w.agreement(base)
+	if w.inertia > 0 {
+		w.dragModel = FrequencyDependentDrag
+		return nil
 	}
-	w.fit, w.fitErr, w.form = plain, nil, plainForm
+	w.backTo(&plain)
 	return nil
+}
+
+// backTo takes back a fit of another spectrum.
+func (w *work) backTo(plain *work) {
+	w.record, w.fit, w.fitErr, w.form, w.seen, w.rival = plain.record, plain.fit, plain.fitErr, plain.form, plain.seen, plain.rival
 }
 
 // agreeOnDrag lets the axes of a recording decide together: liquid and bead are the same for

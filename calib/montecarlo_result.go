@@ -77,7 +77,7 @@ type monteCarlo struct {
 	works  []*work
 	names  map[string]int // of the inputs, by name, to the position of its deviate
 	noise  []int          // position of the deviate of each axis' noise
-	common int            // position of the deviate of the exposure
+	common int            // position of the deviates of the inputs of the record
 	count  int
 }
 
@@ -101,7 +101,9 @@ func newMonteCarlo(r *Result, works []*work) *monteCarlo {
 		}
 		n, _ := number(w.set, "recording.noise", w.axisName)
 		m.noise = append(m.noise, deviate(noiseLine+" "+n.Axis))
-		m.common = deviate(exposureLine)
+		m.common = deviate(exposureLine) // the others follow
+		deviate(alphaLine)
+		deviate(f3dbLine)
 	}
 	return m
 }
@@ -128,9 +130,12 @@ func (m *monteCarlo) draw(rng *rand.Rand, out []float64) bool {
 		if err != nil || !(scale > 0) {
 			return false
 		}
-		noise, exposure := w.onRecord()
+		noise, moved := w.onRecord()
 		change := drag*(friction-math.Log(w.phys.gamma)) + (1-drag)*(energy-math.Log(w.phys.kT)-2*math.Log(scale))
-		change += noise*e[m.noise[i]] + exposure*e[m.common] + lopsidedDraw(a.Stiffness, rng.NormFloat64())
+		for k, by := range moved {
+			change += by * e[m.common+k]
+		}
+		change += noise*e[m.noise[i]] + lopsidedDraw(a.Stiffness, rng.NormFloat64())
 		out[i] = float64(a.Stiffness.Value) * math.Exp(change)
 	}
 	return true

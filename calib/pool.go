@@ -17,14 +17,14 @@ type pooled struct {
 	along           float64 // rho: part of the routes' difference that is the drag's error
 	rest            float64 // variance of ln gamma that the difference does not tell
 	weights         relaxation.Parameters
-	total           relaxation.Matrix // covariance with the prior
-	data            relaxation.Matrix // the record's part of it
-	sdData, sdTotal float64           // of ln kappa, without rest
-	value           float64           // ln kappa
-	exposure        float64           // change of value for one standard uncertainty of the exposure
-	drag            float64           // weight of the drag route
-	regimeFC        float64           // Cramer-Rao bound of ln fc, drag and scale unknown; +Inf when singular
-	regimeV         float64           // the same of ln V
+	total           relaxation.Matrix  // covariance with the prior
+	data            relaxation.Matrix  // the record's part of it
+	sdData, sdTotal float64            // of ln kappa, without rest
+	value           float64            // ln kappa
+	moved           [moveCount]float64 // change of value for one standard uncertainty of the inputs of the record
+	drag            float64            // weight of the drag route
+	regimeFC        float64            // Cramer-Rao bound of ln fc, drag and scale unknown; +Inf when singular
+	regimeV         float64            // the same of ln V
 }
 
 // leastPrior keeps the prior regular when every input is exact: 1e-5 is far below the
@@ -114,7 +114,7 @@ const poolGrid = 64
 
 // poolStart scans corner frequencies on the line of the computed drag, each with the
 // noise that fills up the recorded variance where that is not stated, and returns the
-// best of them and of the drag-free fit.
+// best of them and of the drag-free fit; with a fitted photodiode only of the latter.
 func (w *work) poolStart() relaxation.Parameters {
 	p := &w.pooled
 	best, bestValue := relaxation.Parameters{}, math.Inf(-1)
@@ -130,6 +130,9 @@ func (w *work) poolStart() relaxation.Parameters {
 		at[0] += gap
 		at[1] += gap
 		try(at)
+	}
+	if _, fitted := w.fittedDiode(); fitted {
+		return best // each point of a scan would be a search for the photodiode
 	}
 	low, high := math.Log(0.1/float64(w.record.Observed())), math.Log(2)
 	for i := range poolGrid {

@@ -134,6 +134,7 @@ type Axis struct {
 	Free          *FreeBead              `json:"free,omitempty"`        // of a recording with the laser off
 	Background    *Background            `json:"background,omitempty"`  // the noise without a bead, where it was recorded
 	Sensitivity   *Sensitivity           `json:"sensitivity,omitempty"` // of a recording in detector units
+	Photodiode    *Photodiode            `json:"photodiode,omitempty"`  // of a detector whose low-pass was stated or fitted
 }
 
 // Wall is the effect of the surface on the drag.

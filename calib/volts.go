@@ -86,7 +86,7 @@ func (w *work) rescale() error {
 		values[i] = v * w.perUnit
 	}
 	w.source.Values = values
-	w.form = nil
+	w.form, w.seen, w.rival = nil, psd.Hydrodynamic{}, nil
 	return w.fitPositions()
 }
 

@@ -50,6 +50,9 @@ type work struct {
 	dragChoice    string                                                 // what the axes of the recording agreed on; empty: the setting
 	inertia       float64                                                // log-likelihood gained by frequency-dependent drag; 0: not looked at
 	physicalNoise bool                                                   // the pooled fit keeps the noise from turning negative
+	seen          psd.Hydrodynamic                                       // the spectrum of the fit with its photodiode, where there is a form
+	rival         *psd.Fit                                               // trap and photodiode exchanged, where nothing says which is which
+	moved         [moveCount]float64                                     // inputs of the record, moved by so many standard uncertainties
 	form          func(relaxation.Blocks, float64) relaxation.Likelihood // of the fit; nil: the relaxation process
 	hydro         *psd.Bias                                              // of a fit with constant drag, where it matters
 	axis          Axis
@@ -190,14 +193,8 @@ func (w *work) settle() {
 
 // fitPositions fits the spectrum of the positions, in their unit.
 func (w *work) fitPositions() error {
-	var err error
-	if w.record, err = psd.Prepare(w.source.Values, w.rate); err != nil {
-		return w.dataError(err, "record longer, or check the columns")
-	}
-	if w.drive != nil {
-		if err := w.takeOutDrive(); err != nil {
-			return err
-		}
+	if err := w.prepare(); err != nil {
+		return err
 	}
 	w.fit, w.fitErr = psd.Estimate(w.record, w.fitOptions())
 	if rms := math.Sqrt(w.record.MeanSquare()); w.fitErr != nil && w.noise.Variance > 0 && math.Sqrt(w.noise.Variance) >= rms {
@@ -208,6 +205,17 @@ func (w *work) fitPositions() error {
 		return w.dataError(w.fitErr, "record longer, or widen the band")
 	}
 	return w.settleDrag()
+}
+
+// prepare takes mean, drift and the answer to a moving stage out of the positions.
+func (w *work) prepare() (err error) {
+	if w.record, err = psd.Prepare(w.source.Values, w.rate); err != nil {
+		return w.dataError(err, "record longer, or check the columns")
+	}
+	if w.drive != nil {
+		return w.takeOutDrive()
+	}
+	return nil
 }
 
 func (w *work) dataError(err error, remedy string) error {

@@ -41,6 +41,9 @@ type Input struct {
 	// Lost is the number of further real degrees of freedom that were removed from the
 	// record at narrow lines, each with the spectrum there: sum of P(f)/dt [m2].
 	Lost float64
+	// Kept is the share of V that detector and exposure pass, KeptSlope its derivative with respect to ln fc; 0 is
+	// S(a) of the exposure alone. KeptU is the relative standard uncertainty of Kept at a given fc.
+	Kept, KeptSlope, KeptU float64
 	// Scale is the unit of variance [m2] of the parameters ln fc, ln V, q/Scale of the
 	// fit that Process comes from, Total and Data their covariance (package psd).
 	Scale       float64
@@ -76,6 +79,12 @@ func Estimate(in Input) (Result, error) {
 	r0 := p.RecordedVariance()
 	a := 2 * math.Pi * p.Corner * p.Exposure
 	s, ds := relaxation.BlurVariance(a)
+	slope := a * ds // of S with ln fc
+	if in.Kept > 0 { // what else the detector takes, it takes at frequencies above those that mean and drift are made of
+		mean -= p.Variance * (s - in.Kept)
+		r0 -= p.Variance * (s - in.Kept)
+		s, slope = in.Kept, in.KeptSlope
+	}
 	res := Result{Blur: s, NoiseShare: p.Noise / in.MeanSquare}
 	res.Length = (mean - in.Lost/float64(in.Samples)) / r0
 	signal := in.MeanSquare/res.Length - p.Noise
@@ -89,27 +98,27 @@ func Estimate(in Input) (Result, error) {
 	res.Effective = 2 / relative
 	gain := (signal + p.Noise) / signal // d ln V / d ln s2
 	res.NoiseSlope = -1 / signal
-	res.CornerSlope = -a*ds/s - gain*(1-res.Length)
+	res.CornerSlope = -slope/s - gain*(1-res.Length)
 	in.Total, in.Data = bounded(in.Total), bounded(in.Data)
-	slope := relaxation.Parameters{res.CornerSlope, 0, res.NoiseSlope * in.Scale}
-	res.Gain, res.Slope = gain, slope
+	slopes := relaxation.Parameters{res.CornerSlope, 0, res.NoiseSlope * in.Scale}
+	res.Gain, res.Slope = gain, slopes
 	// gradient of E[s2] over the parameters, relative to s2
-	grad := relaxation.Parameters{p.Variance * a * ds / r0, p.Variance * s / r0, in.Scale / r0}
+	grad := relaxation.Parameters{p.Variance * slope / r0, p.Variance * s / r0, in.Scale / r0}
 	var shared relaxation.Parameters // Cov(theta, ln s2)
 	for i := range shared {
 		for j := range grad {
 			shared[i] += in.Total[i][j] * grad[j]
 		}
 	}
-	v := gain*gain*relative + in.Data.Form(slope, slope)
-	for i := range slope {
-		v += 2 * gain * slope[i] * shared[i]
+	v := gain*gain*relative + in.Data.Form(slopes, slopes) + in.KeptU*in.KeptU
+	for i := range slopes {
+		v += 2 * gain * slopes[i] * shared[i]
 	}
 	res.SD = math.Sqrt(math.Max(v, 0))
 	for i := range shared {
 		res.WithFit[i] = gain * shared[i]
-		for j := range slope {
-			res.WithFit[i] += in.Data[i][j] * slope[j]
+		for j := range slopes {
+			res.WithFit[i] += in.Data[i][j] * slopes[j]
 		}
 	}
 	return res, nil

@@ -114,15 +114,22 @@ func estimate(r *Record, opt Options) (*Fit, error) {
 	if err != nil {
 		return f, err
 	}
+	return f, f.settle(m, r)
+}
+
+// settle fills in what follows from the maximum of the likelihood.
+func (f *Fit) settle(m relaxation.Maximum, r *Record) error {
 	f.Maximum = m
+	var err error
 	if f.Total, f.Data, err = f.Problem.Covariance(m.Information); err != nil {
-		return f, err
+		return err
 	}
+	scale := f.Scale()
 	f.Corner = math.Exp(m.At[0]) * r.Rate
 	f.Variance = scale * math.Exp(m.At[1])
 	f.NoiseQ = scale * m.At[2]
 	f.Goodness = goodness(f, r)
-	return f, nil
+	return nil
 }
 
 // likelihood chooses the form of the likelihood.

@@ -1,6 +1,7 @@
 package psd
 
 import (
+	"errors"
 	"fmt"
 	"math"
 
@@ -36,9 +37,9 @@ type Hydrodynamic struct {
 	Alpha float64
 	// F3dB is the corner frequency of the rest [Hz]; 0 is a detector without low-pass.
 	F3dB float64
-	// FitDiode makes Alpha and F3dB free: they are fitted together with the other
-	// parameters, and given values only add a place to start from.
-	FitDiode bool
+	// FitAlpha and FitF3dB make them free: they are fitted together with the other
+	// parameters, and a given F3dB only says where to search, within a factor of four.
+	FitAlpha, FitF3dB bool
 }
 
 // Check returns an error that names the first field that is not possible.
@@ -50,6 +51,8 @@ func (h Hydrodynamic) Check() error {
 		return fmt.Errorf("photodiode alpha %g is not a share from 0 to 1", h.Alpha)
 	case !(h.F3dB >= 0):
 		return fmt.Errorf("photodiode f3dB %g Hz is not a positive number", h.F3dB)
+	case h.FitAlpha && !h.FitF3dB && h.F3dB == 0:
+		return errors.New("photodiode alpha cannot be fitted without f3dB, which is neither given nor fitted")
 	}
 	return nil
 }
@@ -72,11 +75,11 @@ func (h Hydrodynamic) Response(f float64) float64 {
 // mean periodogram and the spectrum is that of the relaxation process of the same fc and V, which has
 // it in closed form. Against the spectrum it is of the relative order 1/(2 pi fc T).
 // The likelihood knows its own Density, by which Fit.Spectrum draws it.
-// With FitDiode it is not safe for concurrent use by several goroutines; else it is.
+// With a free photodiode it is not safe for concurrent use by several goroutines; else it is.
 func (h Hydrodynamic) Form(rate, exposure float64) func(relaxation.Blocks, float64) relaxation.Likelihood {
 	return func(b relaxation.Blocks, scale float64) relaxation.Likelihood {
 		w := newWhittle(h.newLattice(b, rate, exposure), b, scale)
-		if h.FitDiode {
+		if h.FitAlpha || h.FitF3dB {
 			return newFreeDiode(w, h)
 		}
 		w.model = w.lattice.model(h.diode().power, h.diode().prompt())

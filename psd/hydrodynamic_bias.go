@@ -16,7 +16,7 @@ type Design struct {
 	Band      Range   // frequencies to fit; zero: from Corner/1000 to half the rate
 }
 
-// Bias is by how much a fit with constant drag is wrong, however long the record:
+// Bias is by how much a fit with constant drag, seen by the same detector, is wrong, however long the record:
 // estimate over truth, less 1.
 type Bias struct {
 	Corner    float64 // of fc, and so of the stiffness from drag
@@ -33,7 +33,7 @@ func (b Bias) Size() float64 {
 // in ln f: a spectrum that turns over a factor of two has 20 or more.
 const biasBlocks = 400
 
-// Bias returns the bias of a fit of the relaxation process to the whole band of a
+// Bias returns the bias of a fit with constant drag, seen by the same photodiode, to the whole band of a
 // recording whose true spectrum is h: the fit with the least expected Whittle deviance,
 // that is, with the true spectrum in place of the periodogram. The error is
 // relaxation.ErrNoMaximum when that fit has no solution, or of Check.
@@ -43,13 +43,16 @@ func (h Hydrodynamic) Bias(d Design) (Bias, error) {
 	}
 	b := d.blocks()
 	truth := relaxation.Parameters{math.Log(d.Corner / d.Rate), 0, d.Noise}
-	h.FitDiode = false
+	h.FitAlpha, h.FitF3dB = false, false
 	w := newWhittle(h.newLattice(b, d.Rate, d.Exposure), b, 1)
 	e := w.expected(w.lattice.model(h.diode().power, h.diode().prompt()), d.Corner/d.Rate, false)
 	for i, v := range e.value {
 		b.Power[i] = v + d.Noise
 	}
 	problem := relaxation.Problem{Likelihood: relaxation.NewSpectral(b, nil, d.Exposure*d.Rate, 1)}
+	if h.F3dB > 0 {
+		problem.Likelihood = Hydrodynamic{Alpha: h.Alpha, F3dB: h.F3dB}.Form(d.Rate, d.Exposure)(b, 1)
+	}
 	if !d.NoiseFree {
 		problem.Directions = []relaxation.Parameters{{1, 0, 0}, {0, 1, 0}}
 	}

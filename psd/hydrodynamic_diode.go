@@ -8,8 +8,15 @@ import (
 
 // Diode is the fitted low-pass of a photodiode.
 type Diode struct {
-	Alpha, AlphaU float64 // prompt share of the signal; AlphaU is NaN when Alpha is at the end of its range
-	F3dB, F3dBU   float64 // [Hz]; F3dBU is NaN when F3dB is at the end of the search
+	Alpha  float64 // prompt share of the amplitude
+	Share  float64 // of the power, Alpha squared: the parameter in which the likelihood is near normal
+	ShareU float64 // NaN when Share is at the end of its range, 0 when it was given
+	F3dB   float64 // [Hz]
+	F3dBU  float64 // NaN when F3dB is at the end of the search, 0 when it was given
+	// AtShare and AtF3dB tell at which end of its range a parameter is: -1 the lower, 1 the upper, 0 inside.
+	AtShare, AtF3dB int
+	// WithCorner are the correlations of Share and of F3dB with ln fc; 0 for those that are given or at an end.
+	WithCorner [2]float64
 }
 
 // Diode returns the low-pass that was fitted together with the spectrum, with standard
@@ -59,14 +66,15 @@ func (d diode) byLog(f float64) float64 {
 // the response is unknown (the Schur complement), and its profiles are true ones.
 type freeDiode struct {
 	*whittle
-	given     bool
+	held      [2]bool               // a and f3dB are given, not fitted
+	given     bool                  // there is a value of f3dB to start from
 	low, high float64               // range of ln f3dB
 	from      diode                 // where the search for the response starts
 	drawn     relaxation.Parameters // that Density was asked for last
 }
 
 func newFreeDiode(w *whittle, h Hydrodynamic) *freeDiode {
-	d := &freeDiode{whittle: w, given: h.F3dB > 0}
+	d := &freeDiode{whittle: w, given: h.F3dB > 0, held: [2]bool{!h.FitAlpha, !h.FitF3dB}}
 	d.low, d.high = math.Log(lowestF3dB), math.Log(math.Max(lowestF3dB, highestF3dB*w.lattice.rate))
 	if d.given {
 		d.from = h.diode()
@@ -74,6 +82,9 @@ func newFreeDiode(w *whittle, h Hydrodynamic) *freeDiode {
 		return d
 	}
 	d.from = newDiode(0.1, (d.low+d.high)/2)
+	if d.held[0] {
+		d.from.share = h.Alpha * h.Alpha
+	}
 	return d
 }
 
@@ -113,14 +124,20 @@ const (
 
 // moved returns the detector after a step, within its range.
 func (d *freeDiode) moved(at diode, share, log float64) diode {
+	if d.held[0] {
+		share = 0
+	}
+	if d.held[1] {
+		log = 0
+	}
 	return newDiode(math.Max(0, math.Min(1, at.share+share)), math.Max(d.low, math.Min(d.high, at.log+log)))
 }
 
 // free tells which of the two can move along the gradient.
 func (d *freeDiode) free(r *response) (free [2]bool) {
 	up, down := d.moved(r.diode, 1e-9, 1e-9), d.moved(r.diode, -1e-9, -1e-9)
-	free[0] = !(up.share == r.diode.share && r.grad[3] >= 0) && !(down.share == r.diode.share && r.grad[3] <= 0)
-	free[1] = !(up.log == r.diode.log && r.grad[4] >= 0) && !(down.log == r.diode.log && r.grad[4] <= 0)
+	free[0] = !d.held[0] && !(up.share == r.diode.share && r.grad[3] >= 0) && !(down.share == r.diode.share && r.grad[3] <= 0)
+	free[1] = !d.held[1] && !(up.log == r.diode.log && r.grad[4] >= 0) && !(down.log == r.diode.log && r.grad[4] <= 0)
 	return free
 }
 
@@ -222,9 +239,19 @@ func (d *freeDiode) Start(noise float64, noiseFree bool) relaxation.Parameters {
 		net = append(net, d.from)
 	}
 	const places = 5 // of f3dB, evenly spaced in its logarithm
-	for _, alpha := range []float64{0, 0.3, 0.6} {
+	shares, logs := []float64{0, 0.09, 0.36}, []float64{d.from.log}
+	if d.held[0] {
+		shares = []float64{d.from.share}
+	}
+	if !d.held[1] {
+		logs = logs[:0]
 		for i := range places {
-			net = append(net, newDiode(alpha*alpha, d.low+(d.high-d.low)*(float64(i)+0.5)/places))
+			logs = append(logs, d.low+(d.high-d.low)*(float64(i)+0.5)/places)
+		}
+	}
+	for _, share := range shares {
+		for _, log := range logs {
+			net = append(net, newDiode(share, log))
 		}
 	}
 	top, at := math.Inf(-1), start
@@ -254,17 +281,71 @@ func (d *freeDiode) fitted(p relaxation.Parameters, total relaxation.Matrix) Dio
 	r := d.best(p, d.from)
 	free := d.free(r)
 	c := r.inverse(free, 0)
-	var u [2]float64
+	var u, with [2]float64
 	for a := range u {
 		var along relaxation.Parameters // change of the response with the parameters
 		for i := range along {
 			along[i] = c[a][0]*r.info[3][i] + c[a][1]*r.info[4][i]
 		}
 		u[a] = math.Sqrt(c[a][a] + math.Max(0, total.Form(along, along)))
-		if !free[a] {
+		switch {
+		case d.held[a]:
+			u[a] = 0
+		case !free[a]:
 			u[a] = math.NaN()
+		case total[0][0] > 0:
+			with[a] = -total.Form(along, relaxation.Parameters{1, 0, 0}) / (u[a] * math.Sqrt(total[0][0]))
 		}
 	}
-	alpha, f3dB := math.Sqrt(r.diode.share), r.diode.f3dB
-	return Diode{Alpha: alpha, AlphaU: u[0] / (2 * alpha), F3dB: f3dB, F3dBU: u[1] * f3dB}
+	at := func(a int, x, low, high float64) int {
+		switch {
+		case free[a] || d.held[a]:
+			return 0
+		case x-low < high-x:
+			return -1
+		}
+		return 1
+	}
+	return Diode{Alpha: math.Sqrt(r.diode.share), Share: r.diode.share, ShareU: u[0], F3dB: r.diode.f3dB, F3dBU: u[1] * r.diode.f3dB,
+		AtShare: at(0, r.diode.share, 0, 1), AtF3dB: at(1, r.diode.log, d.low, d.high), WithCorner: with}
+}
+
+// closeCorners is the distance of the corner frequency of the trap from that of the photodiode, in standard
+// uncertainties, within which an exchange of the two is no other fit.
+const closeCorners = 6
+
+// Exchanged returns the fit in which trap and photodiode have changed roles; false if there is none, because no
+// photodiode was fitted, the exchange lies outside of the search, or the two are so close that it is the same fit.
+//
+// With a constant drag the recorded spectrum is (1 + alpha^2 f^2/f3dB^2)/[(1 + f^2/fc^2)(1 + f^2/f3dB^2)]: fc and f3dB
+// may be exchanged when alpha becomes alpha fc/f3dB, and the likelihood is the same. Only the inertia of the liquid, a given
+// alpha, or what is known of the amplitude tells which is the trap (docs/method.md, Eq. 62).
+func (f *Fit) Exchanged(r *Record) (*Fit, bool) {
+	d, ok := f.Problem.Likelihood.(*freeDiode)
+	if !ok {
+		return nil, false
+	}
+	found := d.fitted(f.Maximum.At, f.Total)
+	if d.held[1] || math.IsNaN(found.F3dBU) || math.Log(f.Corner) < d.low || math.Log(f.Corner) > d.high {
+		return nil, false
+	}
+	ratio := found.F3dB / f.Corner
+	if math.Abs(math.Log(ratio)) < closeCorners*found.F3dBU/found.F3dB {
+		return nil, false
+	}
+	share := found.Share
+	if !d.held[0] {
+		share = math.Min(1, found.Share/(ratio*ratio))
+	}
+	other := &freeDiode{whittle: d.whittle, given: d.given, held: d.held, low: d.low, high: d.high, from: newDiode(share, math.Log(f.Corner))}
+	at := f.Maximum.At
+	at[0] += math.Log(ratio)
+	at[1] += math.Log(ratio) // the same plateau, V/fc
+	next := *f
+	next.Problem.Likelihood = other
+	m, err := next.Problem.Maximise(at)
+	if err != nil || math.Abs(m.At[0]-f.Maximum.At[0]) < math.Abs(m.At[0]-at[0]) { // it fell back
+		return nil, false
+	}
+	return &next, next.settle(m, r) == nil
 }

@@ -147,7 +147,7 @@ func TestFreeDiodeAbsent(t *testing.T) {
 	if _, ok := without.Diode(); ok {
 		t.Error("a photodiode is reported that was not fitted")
 	}
-	h.FitDiode = true
+	h.FitAlpha, h.FitF3dB = true, true
 	o.Form = h.Form(c.rate, 0)
 	with, err := Estimate(r, o)
 	if err != nil {
@@ -184,7 +184,7 @@ func TestHydrodynamicCheck(t *testing.T) {
 
 // Degenerate inputs give an error, or minus infinity, never a panic.
 func TestHydrodynamicDegenerate(t *testing.T) {
-	for _, h := range []Hydrodynamic{{}, {FitDiode: true, F3dB: 200, Alpha: 0.5}, {Drag: func(float64) complex128 { return complex(-1, 0) }}} {
+	for _, h := range []Hydrodynamic{{}, {FitAlpha: true, FitF3dB: true, F3dB: 200, Alpha: 0.5}, {Drag: func(float64) complex128 { return complex(-1, 0) }}} {
 		form := h.Form(1000, 0)
 		white := make([]float64, 200)
 		for i := range white {
@@ -201,7 +201,7 @@ func TestHydrodynamicDegenerate(t *testing.T) {
 				t.Errorf("at %v: Score %g, Value %g", p, v, l.Value(p))
 			}
 		}
-		if h.FitDiode { // here it is only slow
+		if h.FitAlpha { // here it is only slow
 			continue
 		}
 		if f, err := Estimate(r, Options{Form: form, KeepLines: true}); err == nil && !(f.Corner > 0) {

@@ -38,7 +38,7 @@ func (c cell) truth() simulate.Truth {
 // outcome sums up fits of one cell. z is (estimate - truth)/standard uncertainty.
 type outcome struct {
 	mean, square [3]float64 // of z of ln fc, ln D, ln V
-	alpha, f3dB  [2]float64 // mean and mean square of z
+	alpha, f3dB  [2]float64 // mean and mean square of z, alpha as its square
 	covered      [2]int     // 95 % profile intervals of ln fc and ln V that hold the truth
 	precision    float64    // standard uncertainty of ln fc
 	failed       int
@@ -48,7 +48,7 @@ type outcome struct {
 func (c cell) fit(records int, seed uint64, intervals bool) (o outcome) {
 	h := c.spectrum()
 	if c.diode != nil {
-		h.Alpha, h.F3dB, h.FitDiode = c.diode.Alpha, c.diode.F3dB, c.free
+		h.Alpha, h.F3dB, h.FitAlpha, h.FitF3dB = c.diode.Alpha, c.diode.F3dB, c.free, c.free
 	}
 	truth := c.truth()
 	variance := truth.Axes[0].Variance
@@ -85,7 +85,7 @@ func (c cell) fit(records int, seed uint64, intervals bool) (o outcome) {
 			for _, v := range []struct {
 				to       *[2]float64
 				error, u float64
-			}{{&o.alpha, d.Alpha - h.Alpha, d.AlphaU}, {&o.f3dB, d.F3dB - h.F3dB, d.F3dBU}} {
+			}{{&o.alpha, d.Share - h.Alpha*h.Alpha, d.ShareU}, {&o.f3dB, d.F3dB - h.F3dB, d.F3dBU}} {
 				v.to[0] += v.error / v.u / float64(records)
 				v.to[1] += v.error * v.error / (v.u * v.u) / float64(records)
 			}

@@ -34,7 +34,7 @@ func TestScoreGradient(t *testing.T) {
 	diode := plain
 	diode.Alpha, diode.F3dB = 0.3, 8000
 	free := diode
-	free.FitDiode = true
+	free.FitAlpha, free.FitF3dB = true, true
 	for name, h := range map[string]Hydrodynamic{"zero": {}, "plain": plain, "diode": diode, "free": free} {
 		for _, exposure := range []float64{0, 0.4 / rate, 1 / rate} {
 			l := h.Form(rate, exposure)(b, 0.9)
@@ -222,7 +222,7 @@ func BenchmarkHydrodynamicForm(b *testing.B) {
 func BenchmarkHydrodynamicFreeDiode(b *testing.B) {
 	blocks := lorentzBlocks(1<<16, 0.01)
 	h := bead{radius: 1e-6}.spectrum()
-	h.FitDiode = true
+	h.FitAlpha, h.FitF3dB = true, true
 	l := h.Form(100e3, 0)(blocks, 1)
 	for b.Loop() {
 		l.Score(relaxation.Parameters{math.Log(0.01), 0, 0.01})

@@ -30,6 +30,9 @@ type Input struct {
 	Missing  bool               // whether there are NaNs
 	Guess    relaxation.Process // interval and exposure; the rest gives lags, covariance and start
 	Noise    Noise
+	// Detected is what the detector adds to the mean-square displacement at a lag [samples] beyond exposure and
+	// noise [m2], computed for the guess; it is taken off before the fit. Nil is nothing.
+	Detected func(lag int) float64
 	FirstLag int     // shortest lag to fit [samples]; 0 or 1: all
 	Scale    float64 // unit of variance [m2] for q
 	// FitCovariance is the covariance of ln fc, ln V and q/Scale of an efficient fit of
@@ -79,6 +82,11 @@ func Estimate(in Input) (*Result, error) {
 	lags = from(lags, in.FirstLag)
 	values, pairs := Displacements(in.X, in.Missing, lags)
 	lags, values, pairs = keepFull(lags, values, pairs)
+	if in.Detected != nil {
+		for i, lag := range lags {
+			values[i] -= in.Detected(lag)
+		}
+	}
 	if len(lags) < 3 {
 		return nil, fmt.Errorf("%w: %d lags", ErrTooShort, len(lags))
 	}

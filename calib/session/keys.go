@@ -110,10 +110,10 @@ var registry = []Key{
 		aliases:     map[string]string{".": "point", ",": "comma"},
 		Placeholder: "comma", Meaning: "decimal mark; else found from the file"},
 
-	{Name: "detector.alpha", Flag: "alpha", Dimensions: dims(quantity.Dimensionless), Limits: "0 to 1",
-		Placeholder: "0.25", Meaning: "share of the signal that a photodiode passes without delay"},
-	{Name: "detector.f3db", Flag: "f3db", Dimensions: dims(quantity.Frequency), Limits: "1 Hz to 1 GHz",
-		Placeholder: "8 kHz", Meaning: "corner frequency of the photodiode's low-pass"},
+	{Name: "detector.alpha", Flag: "alpha", Dimensions: dims(quantity.Dimensionless), Words: []string{"fit"}, Limits: "0 to 1",
+		Placeholder: "0.25", Meaning: "share of the signal that a photodiode passes without delay; fit to find it"},
+	{Name: "detector.f3db", Flag: "f3db", Dimensions: dims(quantity.Frequency), Words: []string{"fit"}, Limits: "1 Hz to 1 GHz",
+		Placeholder: "8 kHz", Meaning: "corner frequency of the photodiode's low-pass; fit to find it, and alpha unless that is stated"},
 
 	{Name: "fit.band", Flag: "band", Form: Range, Dimensions: dims(quantity.Frequency), Words: []string{"auto"}, Default: "auto",
 		Placeholder: "10 Hz to 8 kHz", Meaning: "band of the spectrum that is fitted; auto chooses one and shows it"},

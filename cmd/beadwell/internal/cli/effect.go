@@ -20,6 +20,7 @@ var effects = []effect{
 	{"recording.sensitivity", anyUnit("V", "mV", "uV", "counts", "1"), "on positions that are lengths"},
 	{"recording.time_unit", hasColumn("time", "frame"), "on a file without a time column"},
 	{"chamber.depth", hasHeight, "without a height"},
+	{"detector.alpha", hasLowPass, "without f3db"},
 	{"drive.waveform", isDriven, "on a recording without a moving stage"},
 	{"drive.amplitude", isDriven, "on a recording without a moving stage"},
 	{"drive.frequency", isDriven, "on a recording without a moving stage"},
@@ -68,6 +69,12 @@ func hasColumn(roles ...string) func(*track.Recording, *session.Settings) bool {
 func hasHeight(_ *track.Recording, settings *session.Settings) bool {
 	height, ok := settings.Lookup("chamber.height", "")
 	return ok && height.Word != "far"
+}
+
+func hasLowPass(_ *track.Recording, settings *session.Settings) bool {
+	alpha, _ := settings.Lookup("detector.alpha", "")
+	_, ok := settings.Lookup("detector.f3db", "")
+	return ok || alpha.Word != ""
 }
 
 func isDriven(_ *track.Recording, settings *session.Settings) bool {

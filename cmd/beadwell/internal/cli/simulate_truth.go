@@ -187,6 +187,9 @@ func (p *simulation) addDetector(o simulateOptions, in dragInput, settings *sess
 	if hasAlpha != hasF3dB {
 		return usageError("give both, or neither", "--alpha and --f3db describe a photodiode together")
 	}
+	if alpha.Word != "" || f3db.Word != "" {
+		return usageError(`give numbers, such as --alpha 0.25 --f3db "8 kHz"`, "--alpha and --f3db of a simulation cannot be fitted")
+	}
 	if hasAlpha {
 		p.Truth.Photodiode = &simulate.Photodiode{Alpha: alpha.Value.SI, F3dB: f3db.Value.SI}
 	}

@@ -1,6 +1,7 @@
 package report
 
 import (
+	"fmt"
 	"slices"
 	"strings"
 
@@ -24,6 +25,13 @@ func kindRows(r *calib.Result) []kindRow {
 			add("sensitivity", s.Used, unit, "by "+originWords(s.Origin))
 			if s.Origin != calib.SensitivityDrag {
 				add("sensitivity by computed drag", s.FromDrag, unit, "")
+			}
+		}
+		if d := a.Photodiode; d != nil {
+			add("alpha of the photodiode", d.Alpha, "1", d.AlphaOrigin+correlationWords(d.WithAlpha))
+			add("f3dB of the photodiode", d.F3dB, "kHz", d.F3dBOrigin+correlationWords(d.WithF3dB))
+			if d.Kept.Known() {
+				rows = append(rows, kindRow{a.Name, "variance that the detector passes", fmt.Sprintf("%.1f %%", 100*float64(d.Kept)), "of that of the position"})
 			}
 		}
 		if d := a.Driven; d != nil {
@@ -91,6 +99,14 @@ func perDetectorUnit(unit string) string {
 		return "um"
 	}
 	return "um/" + unit
+}
+
+// correlationWords tells how a fitted value goes with the corner frequency.
+func correlationWords(c calib.Float) string {
+	if !c.Known() {
+		return ""
+	}
+	return fmt.Sprintf("; correlation with the corner frequency %.2f", float64(c))
 }
 
 func originWords(origin string) string {
