@@ -26,10 +26,10 @@ type Noise struct {
 
 // Input is what the estimate is made from.
 type Input struct {
-	X        []float64          // positions, mean and drift removed [m]; NaN where missing
-	Missing  bool               // whether there are NaNs
-	Guess    relaxation.Process // interval and exposure; the rest gives lags, covariance and start
-	Noise    Noise
+	X       []float64          // positions, mean and drift removed [m]; NaN where missing
+	Missing bool               // whether there are NaNs
+	Guess   relaxation.Process // interval and exposure; the rest gives lags, covariance and start
+	Noise   Noise
 	// Detected is what the detector adds to the mean-square displacement at a lag [samples] beyond exposure and
 	// noise [m2], computed for the guess; it is taken off before the fit. Nil is nothing.
 	Detected func(lag int) float64
