@@ -88,23 +88,31 @@ func (c Chamber) twoWalls() bool { return c.Depth > 0 && !math.IsInf(c.Depth, 1)
 func (c Chamber) check() error {
 	switch {
 	case !(c.Radius > 0) || math.IsInf(c.Radius, 1):
-		return fmt.Errorf("radius %g m is not a positive length", c.Radius)
+		return fmt.Errorf("radius %s is not a positive length", length(c.Radius))
 	case !(c.Height > c.Radius):
-		return fmt.Errorf("height %g m of the centre is not above the radius %g m: the sphere would touch the wall", c.Height, c.Radius)
+		return fmt.Errorf("height %s of the centre is not above the radius %s: the sphere would touch the wall", length(c.Height), length(c.Radius))
 	case math.IsNaN(c.Depth) || c.Depth < 0:
-		return fmt.Errorf("depth %g m is not a positive length: leave it out when there is no second wall", c.Depth)
+		return fmt.Errorf("depth %s is not a positive length: leave it out when there is no second wall", length(c.Depth))
 	case !c.twoWalls():
 		return nil
 	case math.IsInf(c.Height, 1):
-		return fmt.Errorf("depth %g m is given without a height: give the height of the centre, or leave out the depth", c.Depth)
+		return fmt.Errorf("depth %s is given without a height: give the height of the centre, or leave out the depth", length(c.Depth))
 	case !(c.Depth-c.Height > c.Radius):
-		return fmt.Errorf("height %g m leaves %g m to the second wall at depth %g m, not more than the radius %g m: the sphere would touch it",
-			c.Height, c.Depth-c.Height, c.Depth, c.Radius)
+		return fmt.Errorf("height %s leaves %s to the second wall at depth %s, not more than the radius %s: the sphere would touch it",
+			length(c.Height), length(c.Depth-c.Height), length(c.Depth), length(c.Radius))
 	case c.Depth < leastDepth*c.Radius*(1-rounding):
-		return fmt.Errorf("depth %g m is %.3g times the radius %g m: drag between two walls is known here from %d times the radius",
-			c.Depth, c.Depth/c.Radius, c.Radius, leastDepth)
+		return fmt.Errorf("depth %s is %.3g times the radius %s: drag between two walls is known here from %d times the radius",
+			length(c.Depth), c.Depth/c.Radius, length(c.Radius), leastDepth)
 	}
 	return nil
+}
+
+// length writes a length as people do: in micrometres below a millimetre.
+func length(metres float64) string {
+	if size := math.Abs(metres); size > 0 && size < 1e-3 {
+		return fmt.Sprintf("%.6g um", 1e6*metres)
+	}
+	return fmt.Sprintf("%g m", metres)
 }
 
 // withoutFaxen takes Faxen's value out of a result for perpendicular motion.

@@ -148,6 +148,7 @@ func TestChamberRefuses(t *testing.T) {
 		{Chamber{Radius: nan, Height: 2}, "radius NaN m"},
 		{Chamber{Radius: inf, Height: inf}, "radius +Inf m"},
 		{Chamber{Radius: 1, Height: 1}, "height 1 m of the centre is not above the radius 1 m"},
+		{Chamber{Radius: 0.5e-6, Height: 0.2e-6}, "height 0.2 um of the centre is not above the radius 0.5 um"},
 		{Chamber{Radius: 1}, "height 0 m of the centre is not above the radius 1 m"},
 		{Chamber{Radius: 1, Height: nan}, "height NaN m"},
 		{Chamber{Radius: 1, Height: 3, Depth: nan}, "depth NaN m"},

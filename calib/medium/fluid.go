@@ -84,25 +84,25 @@ func ParseFluid(text string) (Fluid, error) {
 func (s *solution) parseAmount(text, rest string) (Fluid, error) {
 	if s.unit == "" {
 		if rest != "" {
-			return Fluid{}, fmt.Errorf("fluid %q: %s takes no amount: write %q", text, s.name, s.example)
+			return Fluid{}, fmt.Errorf("fluid %q has an amount, and %s takes none: write %q", text, s.name, s.example)
 		}
 		return Fluid{Name: s.name, solution: s}, nil
 	}
 	number, ok := strings.CutSuffix(rest, s.unit)
 	number = strings.TrimSpace(number)
 	if !ok || number == "" {
-		return Fluid{}, fmt.Errorf("fluid %q: %s needs an amount in %s, such as %q", text, s.name, s.unit, s.example)
+		return Fluid{}, fmt.Errorf("fluid %q has no amount in %s: write it like %q", text, s.unit, s.example)
 	}
 	value, err := decimal(number)
 	if err != nil {
-		return Fluid{}, fmt.Errorf("fluid %q: amount %q is not a plain decimal number: write it like %q", text, number, s.example)
+		return Fluid{}, fmt.Errorf("fluid %q has an amount that is not a plain decimal number: write it like %q", text, s.example)
 	}
 	if value <= 0 {
-		return Fluid{}, fmt.Errorf("fluid %q: an amount of %s %s is no solution: write \"water\"", text, number, s.unit)
+		return Fluid{}, fmt.Errorf("fluid %q is no solution: write \"water\"", text)
 	}
 	if value > s.most {
-		return Fluid{}, fmt.Errorf("fluid %q: %s %s is above %g %s, the most that the correlation for %s covers: give the viscosity itself",
-			text, number, s.unit, s.most, s.unit, s.name)
+		return Fluid{}, fmt.Errorf("fluid %q is above %g %s, the most that the correlation for %s covers: give the viscosity itself",
+			text, s.most, s.unit, s.name)
 	}
 	amount := value
 	if s.unit == "%" {

@@ -101,7 +101,7 @@ func TestSetErrors(t *testing.T) {
 		{"medium.temperature", "", "24.5 K", "check the unit, C or K"},
 		{"medium.temperature", "", "-3 K", "outside the possible range"},
 		{"medium.fluid", "", "watr", `is not known` + "\n  hint: did you mean \"water\"?"},
-		{"medium.fluid", "", "glycerol", "needs an amount"},
+		{"medium.fluid", "", "glycerol", "has no amount in %"},
 		{"chamber.height", "", "near", "or the word far"},
 		{"recording.exposure", "", "-1 ms", "is negative"},
 		{"recording.exposure", "", "1", "has no unit"},

@@ -103,8 +103,8 @@ func (g *grid) uneven(t []float64, place []int) *gridFault {
 			worst, distance = i, r
 		}
 	}
-	return &gridFault{worst, fmt.Sprintf("the time steps are uneven: %s here, %s on average; the stamps lie %.0f %% of a step off an even grid (root mean square), the limits are %.0f %% and %.0f %% at most",
-		seconds(t[worst]-t[worst-1]), seconds(g.interval), 100*g.rms/g.interval, 100*jitterRMS, 100*jitterMax), timeRemedy}
+	return &gridFault{worst, fmt.Sprintf("the time steps are uneven: %s here, %s on average. The stamps lie %.2g %% of a step off an even grid (root mean square), and %.2g %% at the worst; up to %g %% and %g %% they are taken for samples at even times",
+		seconds(t[worst]-t[worst-1]), seconds(g.interval), 100*g.rms/g.interval, 100*g.max/g.interval, 100*jitterRMS, 100*jitterMax), timeRemedy}
 }
 
 // fitFrames places samples by their frame numbers.

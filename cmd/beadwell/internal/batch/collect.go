@@ -8,6 +8,8 @@ import (
 	"path/filepath"
 	"slices"
 	"strings"
+
+	"beadwell/cmd/beadwell/internal/report"
 )
 
 // Collect joins folders of results, in any order, into one: the bytes are those of one run
@@ -49,6 +51,11 @@ func Collect(folders []string, out string, opt SeriesOptions) (*Summary, error) 
 	return summary, nil
 }
 
+// fileError is an error about a folder of results, or a file in it.
+func fileError(file, format string, args ...any) error {
+	return &report.FileError{File: file, Err: fmt.Errorf(format, args...)}
+}
+
 type joining struct {
 	entries map[string]entry
 	shards  map[string]bool
@@ -74,7 +81,7 @@ func (j *joining) folder(folder string, out *os.Root, inPlace bool) error {
 	defer root.Close()
 	journals, err := fs.Glob(root.FS(), journalPattern)
 	if err != nil || len(journals) == 0 {
-		return fmt.Errorf("%s: holds no journal; give the folders that beadwell batch --shard wrote to", folder)
+		return fileError(folder, "holds no journal of a batch")
 	}
 	if len(journals) > 1 { // the whole, from an earlier collect, besides its shards
 		journals = slices.DeleteFunc(journals, func(name string) bool { return name == journalName })
@@ -82,7 +89,7 @@ func (j *joining) folder(folder string, out *os.Root, inPlace bool) error {
 	for _, name := range journals {
 		head, entries, err := readJournal(root, name)
 		if err != nil {
-			return fmt.Errorf("%s: %w", folder, err)
+			return fileError(folder, "%w", err)
 		}
 		if err := j.head(filepath.Join(folder, name), head, len(entries)); err != nil {
 			return err
@@ -101,7 +108,7 @@ func (j *joining) folder(folder string, out *os.Root, inPlace bool) error {
 				continue
 			}
 			if err := copyOutputs(root, out, e); err != nil {
-				return fmt.Errorf("%s: %w", folder, err)
+				return fileError(folder, "%w", err)
 			}
 		}
 	}
@@ -112,11 +119,11 @@ func (j *joining) folder(folder string, out *os.Root, inPlace bool) error {
 func (j *joining) head(path string, head header, entries int) error {
 	switch {
 	case head.Shard == "" && head.Files != entries:
-		return fmt.Errorf("%s: %d of %d recordings are there; run that batch to its end first", path, entries, head.Files)
+		return fileError(path, "%d of %d recordings are there; run that batch to its end first", entries, head.Files)
 	case head.Shard == "":
 		return nil
 	case j.list != 0 && j.list != head.Files:
-		return fmt.Errorf("%s: is part of a list of %d recordings, others of one of %d; give shards of one run", path, head.Files, j.list)
+		return fileError(path, "is part of a list of %d recordings, others of one of %d; give shards of one run", head.Files, j.list)
 	}
 	j.list, j.shards[head.Shard] = head.Files, true
 	return nil
@@ -124,11 +131,11 @@ func (j *joining) head(path string, head header, entries int) error {
 
 func (j *joining) take(file string, e entry, folder string) error {
 	if other, twice := j.entries[file]; twice && (other.SHA256 != e.SHA256 || other.Fingerprint != e.Fingerprint) {
-		return fmt.Errorf("%s: %s was calibrated twice, with other content or settings; run the shards again", folder, file)
+		return fileError(folder, "%s was calibrated twice, with other content or settings; run the shards again", file)
 	}
 	name := strings.ToLower(e.Folder) // as file systems that ignore case see it
 	if other, taken := j.owner[name]; taken && other != file {
-		return fmt.Errorf("%s: %s and %s, of two batches, both have the folder %s; do them in one batch", folder, other, file, e.Folder)
+		return fileError(folder, "%s and %s, of two batches, both have the folder %s; do them in one batch", other, file, e.Folder)
 	}
 	j.entries[file], j.owner[name] = e, file
 	return nil

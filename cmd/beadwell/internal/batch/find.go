@@ -11,6 +11,7 @@ import (
 	"time"
 
 	"beadwell/calib/session"
+	"beadwell/cmd/beadwell/internal/report"
 )
 
 // Found is what Find found.
@@ -49,7 +50,7 @@ func (f *Found) add(argument string, below bool) error {
 	case errors.Is(err, fs.ErrNotExist):
 		matches, bad := filepath.Glob(argument)
 		if bad != nil || len(matches) == 0 {
-			return fmt.Errorf("%s: no such file or folder, and no file matches it", argument)
+			return &report.FileError{File: argument, Err: errors.New("no such file or folder, and no file matches it")}
 		}
 		for _, match := range matches {
 			if looksLikeRecording(filepath.Base(match)) {

@@ -102,14 +102,14 @@ func NewTrend(paths []string) (*Trend, error) {
 func readSummary(path string) (*Summary, error) {
 	text, err := os.ReadFile(path)
 	if errors.Is(err, fs.ErrNotExist) {
-		return nil, fmt.Errorf("%s: no such file; give a folder that beadwell batch wrote", path)
+		return nil, fileError(path, "no such file; give a folder that beadwell batch wrote")
 	}
 	if err != nil {
 		return nil, err
 	}
 	s := new(Summary)
 	if err := json.Unmarshal(text, s); err != nil || s.Schema != SummarySchema {
-		return nil, fmt.Errorf("%s: is not a summary of this version; run beadwell batch again", path)
+		return nil, fileError(path, "is not a summary of this version; run beadwell batch again")
 	}
 	return s, nil
 }

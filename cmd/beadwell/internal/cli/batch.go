@@ -11,6 +11,7 @@ import (
 
 	"beadwell/calib"
 	"beadwell/cmd/beadwell/internal/batch"
+	"beadwell/cmd/beadwell/internal/report"
 )
 
 // batchOptions is what the command line of batch says.
@@ -167,6 +168,9 @@ func runBatch(ctx context.Context, a *app, o batchOptions) error {
 	if err != nil {
 		return err
 	}
+	if o.format == "json" && !a.Watched {
+		o.quiet = true // standard error is for a program, which expects an error there or nothing
+	}
 	for _, path := range aside {
 		if !o.quiet {
 			a.say("beadwell: %s: does not look like a recording, left out", path)
@@ -218,8 +222,14 @@ func concludeBatch(s *batch.Summary, reasons string) error {
 	_, distrusted, failed, _ := s.Counts()
 	switch {
 	case failed > 0:
+		var told []report.Problem
+		for _, row := range s.Rows {
+			if row.Problem != nil {
+				told = append(told, *row.Problem)
+			}
+		}
 		return &failure{status: StatusPartial, code: codePartial, err: fmt.Errorf("%d of %d recordings failed", failed, len(s.Rows)),
-			remedy: reasons}
+			remedy: reasons, told: told}
 	case distrusted > 0:
 		return quiet{StatusDistrust}
 	}

@@ -6,6 +6,7 @@ import (
 	"crypto/sha256"
 	"encoding/hex"
 	"encoding/json"
+	"errors"
 	"fmt"
 	"io"
 	"os"
@@ -33,8 +34,8 @@ func (a *app) batchJob(o batchOptions) (job batch.Job, aside []string, err error
 	}
 	found.SetGrowingApart()
 	if len(found.Paths)+len(found.Growing) == 0 {
-		return job, nil, inputError("recordings end in csv, tsv, txt, dat, asc or npy; name others one by one",
-			fmt.Errorf("%s: holds no recording", strings.Join(o.arguments, ", ")))
+		return job, nil, fileError(strings.Join(o.arguments, ", "), "recordings end in csv, tsv, txt, dat, asc or npy; name others one by one",
+			errors.New("holds no recording"))
 	}
 	created := ""
 	if a.Getenv("SOURCE_DATE_EPOCH") != "" { // else the time of day would tell two runs apart
@@ -64,7 +65,7 @@ func (a *app) readLines(path string) ([]string, error) {
 	if path != "-" {
 		file, err := os.Open(path)
 		if err != nil {
-			return nil, inputError("check the name, and that the file may be read", err)
+			return nil, fileError(path, "check the name, and that the file may be read", err)
 		}
 		defer file.Close()
 		from = file
@@ -77,7 +78,7 @@ func (a *app) readLines(path string) ([]string, error) {
 		}
 	}
 	if err := scanner.Err(); err != nil {
-		return nil, inputError("give one name on each line", fmt.Errorf("%s: %w", path, err))
+		return nil, fileError(path, "give one name on each line", err)
 	}
 	return lines, nil
 }

@@ -24,6 +24,10 @@ func printError(w io.Writer, err error, asJSON bool) int {
 	}
 	p := problemOf(err)
 	if asJSON {
+		var f *failure
+		if errors.As(err, &f) {
+			p.Others = append(p.Others, f.told...)
+		}
 		report.ProblemJSON(w, p) // there is nowhere left to tell that this failed
 		return p.Status
 	}
@@ -125,6 +129,7 @@ func problem(err error) report.Problem {
 		stored     *report.ReadError
 		missing    *calib.SettingError
 		unfit      *calib.DataError
+		file       *report.FileError
 		path       *fs.PathError
 	)
 	switch {
@@ -141,6 +146,8 @@ func problem(err error) report.Problem {
 		return withHint(report.Problem{Code: codeSettings, Status: StatusUsage}, text.Error())
 	case errors.As(err, &stored):
 		return report.Problem{Code: codeInput, Status: StatusInput, File: stored.File, Line: stored.Line, Column: stored.Column, Message: stored.What, Remedy: stored.Remedy}
+	case errors.As(err, &file):
+		return withHint(report.Problem{Code: codeInput, Status: StatusInput, File: file.File}, file.Err.Error())
 	case errors.As(err, &path):
 		return report.Problem{Code: codeInput, Status: StatusInput, File: path.Path, Message: path.Err.Error(), Remedy: "check the name, and that you may read it"}
 	}

@@ -2,7 +2,7 @@ package cli
 
 import (
 	"context"
-	"fmt"
+	"errors"
 	"io"
 	"os"
 	"path/filepath"
@@ -10,6 +10,7 @@ import (
 	"github.com/google/renameio/v2"
 
 	"beadwell/cmd/beadwell/internal/figure"
+	"beadwell/cmd/beadwell/internal/report"
 )
 
 // sheets is the folder for the outputs of plan and force. Without --out it takes
@@ -61,7 +62,7 @@ func (s *sheets) check(names ...string) error {
 			return err
 		}
 		if exists && !s.replace {
-			return &failure{status: StatusUsage, code: codeOutput, err: fmt.Errorf("%s: is there already", s.folder.path(name)),
+			return &failure{status: StatusUsage, code: codeOutput, err: &report.FileError{File: s.folder.path(name), Err: errors.New("is there already")},
 				remedy: "choose another --out, or add --force to replace it"}
 		}
 	}

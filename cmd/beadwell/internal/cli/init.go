@@ -2,6 +2,7 @@ package cli
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"io/fs"
 	"os"
@@ -47,7 +48,7 @@ flags are filled in.`,
 func runInit(ctx context.Context, a *app, o initOptions) error {
 	root, err := os.OpenRoot(o.folder)
 	if err != nil {
-		return inputError("give a folder that holds tracks", fmt.Errorf("%s: %w", o.folder, bareError(err)))
+		return fileError(o.folder, "give a folder that holds tracks", err)
 	}
 	defer root.Close()
 	folder := outputFolder{root: root, parent: o.folder, name: "."}
@@ -56,7 +57,7 @@ func runInit(ctx context.Context, a *app, o initOptions) error {
 		return err
 	}
 	if exists && !o.force {
-		return &failure{status: StatusUsage, code: codeOutput, err: fmt.Errorf("%s: is there already", folder.path(session.FileName)),
+		return &failure{status: StatusUsage, code: codeOutput, err: &report.FileError{File: folder.path(session.FileName), Err: errors.New("is there already")},
 			remedy: "edit it, or add --force to replace it"}
 	}
 	notes, err := a.look(ctx, o)
@@ -77,7 +78,7 @@ var trackEndings = []string{".csv", ".tsv", ".txt", ".dat", ".npy"}
 func (a *app) look(ctx context.Context, o initOptions) ([]string, error) {
 	entries, err := os.ReadDir(o.folder)
 	if err != nil {
-		return nil, inputError("give a folder that holds tracks", err)
+		return nil, fileError(o.folder, "give a folder that holds tracks", err)
 	}
 	src := &source{app: a, flags: &o.flags, inspect: true, folders: map[string]folderSettings{filepath.Clean(o.folder): {}}}
 	notes := []string{""}

@@ -3,7 +3,6 @@ package cli
 import (
 	"context"
 	"errors"
-	"fmt"
 	"io/fs"
 	"os"
 	"path/filepath"
@@ -11,6 +10,8 @@ import (
 	"unicode"
 
 	"github.com/google/renameio/v2"
+
+	"beadwell/cmd/beadwell/internal/report"
 )
 
 // outputFolder is the folder of one recording's outputs, a member of the
@@ -60,7 +61,7 @@ func notFollowed(path string, info fs.FileInfo) error {
 	case info.Mode().IsRegular():
 		kind = "a file, not a folder"
 	}
-	return &failure{status: StatusFailed, code: codeOutput, err: fmt.Errorf("%s: is %s", path, kind),
+	return &failure{status: StatusFailed, code: codeOutput, err: &report.FileError{File: path, Err: errors.New("is " + kind)},
 		remedy: "move it away, or choose another --out"}
 }
 

@@ -5,6 +5,8 @@ import (
 	"fmt"
 	"io/fs"
 	"os"
+
+	"beadwell/cmd/beadwell/internal/report"
 )
 
 // The exit statuses, the same for every command; there is no other.
@@ -24,6 +26,7 @@ type failure struct {
 	code   string // class of the error, for --format json
 	err    error
 	remedy string
+	told   []report.Problem // further problems, which standard output holds as text already: for --format json alone
 }
 
 func (f *failure) Error() string { return f.err.Error() }
@@ -51,8 +54,13 @@ func inputError(remedy string, err error) error {
 	return &failure{status: StatusInput, code: codeInput, err: err, remedy: remedy}
 }
 
+// fileError is an inputError about a file or folder.
+func fileError(file, remedy string, err error) error {
+	return inputError(remedy, &report.FileError{File: file, Err: bareError(err)})
+}
+
 func outputError(name string, err error) error {
-	return &failure{status: StatusFailed, code: codeOutput, err: fmt.Errorf("%s: cannot be written: %w", name, bareError(err)),
+	return &failure{status: StatusFailed, code: codeOutput, err: &report.FileError{File: name, Err: fmt.Errorf("cannot be written: %w", bareError(err))},
 		remedy: "make room or choose another place, then run the same command again"}
 }
 

@@ -28,7 +28,7 @@ func (a *app) newProgress(all int, quiet bool) *progress {
 		p.bar = progressbar.NewOptions(all, progressbar.OptionSetWriter(a.Err), progressbar.OptionSetDescription("recordings"),
 			progressbar.OptionShowCount(), progressbar.OptionClearOnFinish(), progressbar.OptionSetPredictTime(true))
 	default:
-		p.lines = true
+		p.lines = !wantsJSON(a.args)
 	}
 	return p
 }

@@ -84,7 +84,7 @@ func (s *source) read(ctx context.Context, path string, options track.Options) (
 	recordings, err := read()
 	var one *track.Error
 	if err != nil && ctx.Err() == nil && !errors.As(err, &one) {
-		return nil, inputError("check the name, and that the file may be read", err)
+		return nil, fileError(path, "check the name, and that the file may be read", withoutName(err))
 	}
 	return recordings, err
 }
@@ -213,4 +213,12 @@ func settingsError(err error) error {
 		remedy = "beadwell init FOLDER writes a session.toml to fill in"
 	}
 	return &failure{status: StatusUsage, code: codeSettings, err: err, remedy: remedy}
+}
+
+// withoutName is an error of reading a file without the name that stands in front of it.
+func withoutName(err error) error {
+	if inner := errors.Unwrap(err); inner != nil {
+		return inner
+	}
+	return err
 }

@@ -3,7 +3,6 @@ package cli
 import (
 	"context"
 	"errors"
-	"fmt"
 	"io"
 	"os"
 
@@ -87,7 +86,7 @@ func (a *app) readResult(path string) (*calib.Result, error) {
 	if path != "-" {
 		f, err := openPlain(path)
 		if err != nil {
-			return nil, inputError("give a result that calibrate wrote as JSON", fmt.Errorf("%s: %w", path, bareError(err)))
+			return nil, fileError(path, "give a result that calibrate wrote as JSON", err)
 		}
 		defer f.Close()
 		from = f

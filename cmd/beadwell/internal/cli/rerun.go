@@ -4,6 +4,7 @@ import (
 	"context"
 	"crypto/sha256"
 	"encoding/hex"
+	"errors"
 	"fmt"
 	"io"
 
@@ -83,7 +84,7 @@ func runRerun(ctx context.Context, a *app, o rerunOptions) error {
 		path = stored.Input.Name
 	}
 	if path == "-" && o.track == "" {
-		return inputError(rerunRemedy, fmt.Errorf("%s: the recording came from standard input, and has no name", o.result))
+		return fileError(o.result, rerunRemedy, errors.New("the recording came from standard input, and has no name"))
 	}
 	now, err := a.calibrateAgain(ctx, stored, path)
 	if err != nil {
@@ -165,7 +166,7 @@ func (a *app) readAgain(ctx context.Context, stored *calib.Result, path string, 
 			return again, err
 		}
 	}
-	return again, inputError("calibrate the recording again, and look at how it is read", fmt.Errorf("%s: has no bead %q, which the result is of", path, stored.Input.Bead))
+	return again, fileError(path, "calibrate the recording again, and look at how it is read", fmt.Errorf("has no bead %q, which the result is of", stored.Input.Bead))
 }
 
 // storedSettings rebuilds the settings that a result lists.
@@ -186,12 +187,12 @@ func storedSettings(r *calib.Result) (*session.Settings, error) {
 func sameFile(path, want string) error {
 	f, err := openPlain(path)
 	if err != nil {
-		return inputError(rerunRemedy, fmt.Errorf("%s: %w", path, bareError(err)))
+		return fileError(path, rerunRemedy, err)
 	}
 	defer f.Close()
 	hash := sha256.New()
 	if _, err := io.Copy(hash, f); err != nil {
-		return inputError(rerunRemedy, fmt.Errorf("%s: %w", path, bareError(err)))
+		return fileError(path, rerunRemedy, err)
 	}
 	if got := hex.EncodeToString(hash.Sum(nil)); got != want {
 		return changedInput(path, got, want)
@@ -200,5 +201,5 @@ func sameFile(path, want string) error {
 }
 
 func changedInput(path, got, want string) error {
-	return inputError(rerunRemedy, fmt.Errorf("%s: is not the file that was calibrated: its SHA-256 is %s, and the result names %s", path, got, want))
+	return fileError(path, rerunRemedy, fmt.Errorf("is not the file that was calibrated: its SHA-256 is %s, and the result names %s", got, want))
 }

@@ -47,7 +47,7 @@ func (a *app) root() *cobra.Command {
 	root.SetOut(a.Out)
 	root.SetErr(a.Err)
 	root.SetVersionTemplate("beadwell {{.Version}}\n")
-	root.SetFlagErrorFunc(flagError)
+	root.SetFlagErrorFunc(a.flagError)
 	root.SetUsageFunc(usage)
 	root.SetHelpCommand(helpCommand(root))
 	root.PersistentPreRun = func(*cobra.Command, []string) { a.started = true }
@@ -107,27 +107,70 @@ func unknownCommand(root *cobra.Command, name string) error {
 }
 
 // flagError turns an error of the flag parser into one with a next step.
-func flagError(cmd *cobra.Command, err error) error {
+func (a *app) flagError(cmd *cobra.Command, err error) error {
 	if errors.Is(err, pflag.ErrHelp) {
 		return err
+	}
+	if !cmd.HasParent() && len(a.args) > 0 && !strings.HasPrefix(a.args[0], "-") {
+		return unknownCommand(cmd, a.args[0]) // whose flags the parser took for those of the root
 	}
 	var setting *session.Error
 	if errors.As(err, &setting) {
 		return settingsError(setting) // without what the flag parser puts in front
 	}
 	remedy := fmt.Sprintf("see %s --help", cmd.CommandPath())
-	var missing *pflag.NotExistError
-	if errors.As(err, &missing) {
-		name := missing.GetSpecifiedName()
-		if missing.GetSpecifiedShortnames() != "" {
-			return usageError(remedy, "-%s is not a flag of %s", missing.GetSpecifiedShortnames(), cmd.CommandPath())
-		}
-		if near := nearest(name, flagNames(cmd)); near != "" {
-			remedy = "did you mean --" + near + "?"
-		}
-		return usageError(remedy, "--%s is not a flag of %s", name, cmd.CommandPath())
+	var (
+		missing  *pflag.NotExistError
+		valued   *pflag.ValueRequiredError
+		invalid  *pflag.InvalidValueError
+		unformed *pflag.InvalidSyntaxError
+	)
+	switch {
+	case errors.As(err, &missing):
+		return unknownFlag(cmd, missing, remedy)
+	case errors.As(err, &valued):
+		return usageError(formOf(valued.GetFlag()), "--%s needs a value", valued.GetFlag().Name)
+	case errors.As(err, &invalid):
+		return usageError(formOf(invalid.GetFlag()), "--%s %q is not %s", invalid.GetFlag().Name, invalid.GetValue(), kindOf(invalid.GetFlag()))
+	case errors.As(err, &unformed):
+		return usageError(remedy, "%q is not written like a flag", unformed.GetSpecifiedFlag())
 	}
 	return usageError(remedy, "%w", err)
+}
+
+func unknownFlag(cmd *cobra.Command, missing *pflag.NotExistError, remedy string) error {
+	name := missing.GetSpecifiedName()
+	if missing.GetSpecifiedShortnames() != "" {
+		return usageError(remedy, "-%s is not a flag of %s", missing.GetSpecifiedShortnames(), cmd.CommandPath())
+	}
+	if near := nearest(name, flagNames(cmd)); near != "" {
+		remedy = "did you mean --" + near + "?"
+	}
+	return usageError(remedy, "--%s is not a flag of %s", name, cmd.CommandPath())
+}
+
+// formOf shows how the value of a flag is written, as the help does.
+func formOf(f *pflag.Flag) string {
+	form, _ := pflag.UnquoteUsage(f)
+	if strings.Contains(form, " ") {
+		form = "'" + form + "'"
+	}
+	if form == "" { // true or false
+		return "write --" + f.Name + " without a value"
+	}
+	return "write --" + f.Name + " " + form
+}
+
+func kindOf(f *pflag.Flag) string {
+	switch f.Value.Type() {
+	case "int":
+		return "a whole number"
+	case "uint64":
+		return "a whole number from 0 to 18446744073709551615"
+	case "bool":
+		return "true or false"
+	}
+	return "a number"
 }
 
 func flagNames(cmd *cobra.Command) []string {

@@ -79,7 +79,7 @@ func TestProblemOf(t *testing.T) {
 	}{
 		{usageError("do", "what %d", 1), report.Problem{Code: "usage", Status: 2, Message: "what 1", Remedy: "do"}},
 		{outputError("f", &os.PathError{Op: "open", Path: "/x/f", Err: os.ErrPermission}), report.Problem{Code: "output", Status: 1,
-			Message: "f: cannot be written: permission denied", Remedy: "make room or choose another place, then run the same command again"}},
+			File: "f", Message: "cannot be written: permission denied", Remedy: "make room or choose another place, then run the same command again"}},
 		{&session.Error{Where: "a:b.toml:4:1", Key: "k", Problem: "is odd", Hint: "even it"},
 			report.Problem{Code: "settings", Status: 2, File: "a:b.toml", Line: 4, Column: 1, Message: "k is odd", Remedy: "even it"}},
 		{fmt.Errorf("reading: %w", context.Canceled), report.Problem{Code: "interrupted", Status: 130, Message: errInterrupted.Error()}},
@@ -96,6 +96,111 @@ func TestProblemOf(t *testing.T) {
 	} {
 		if diff := cmp.Diff(test.want, problemOf(test.err), cmpopts.EquateEmpty()); diff != "" {
 			t.Errorf("problemOf(%v) (-want +got):\n%s", test.err, diff)
+		}
+	}
+}
+
+// With --format json every way to fail, of every command, is one JSON object on standard error
+// that names the file where there is one, and the next step.
+func TestEveryErrorAsJSON(t *testing.T) {
+	folder := t.TempDir()
+	t.Chdir(folder)
+	writeTrack(t, folder, "run7.csv")
+	writeTrack(t, folder, "doubt.csv")
+	prepare(t, "calibrate --diameter 1um --out results run7.csv")
+	w, _, _ := testWorld("")
+	if got := run(context.Background(), []string{"calibrate", "--diameter", "1um", "--out", "results", "doubt.csv"}, w); got != StatusDistrust {
+		t.Fatalf("status %d of a recording in doubt, want %d", got, StatusDistrust)
+	}
+	for name, text := range map[string]string{
+		"bad.csv": "t (s),x (um)\n0,1\n0.1,oops\n", "wrong.toml": "[bead]\ndiametre = \"1 um\"\n", "table.csv": "a,b\n", "other.json": "{}",
+		"mixed/run1.csv": "t (s),x (um)\n0,oops\n", "shard/journal-1-of-2.jsonl": `{"schema":"beadwell-journal/1","files":2,"shard":"1/2"}` + "\n",
+	} {
+		if err := errors.Join(os.MkdirAll(filepath.Dir(name), 0o777), os.WriteFile(name, []byte(text), 0o666)); err != nil {
+			t.Fatal(err)
+		}
+	}
+	for _, test := range []struct {
+		line   string
+		status int
+		code   string
+		file   string
+		at     int // line
+	}{
+		{"", 2, "usage", "", 0},
+		{"calibrat run7.csv", 2, "usage", "", 0},
+		{"calibrate", 2, "usage", "", 0},
+		{"calibrate run7.csv", 2, "settings", "", 0}, // no diameter
+		{"calibrate --diametr 1um run7.csv", 2, "usage", "", 0},
+		{"calibrate --diameter 1 run7.csv", 2, "settings", "", 0},
+		{"calibrate --session wrong.toml run7.csv", 2, "settings", "wrong.toml", 2},
+		{"calibrate --session gone.toml run7.csv", 2, "settings", "gone.toml", 0},
+		{"calibrate --diameter 1um gone.csv", 4, "input", "gone.csv", 0},
+		{"calibrate --diameter 1um bad.csv", 4, "input", "bad.csv", 3},
+		{"calibrate --diameter 1um .", 4, "input", ".", 0},
+		{"calibrate --diameter 1um bad.csv run7.csv", 5, "partial", "", 0},
+		{"calibrate --diameter 1um --out run7.csv run7.csv", 1, "output", "run7.csv", 0},
+		{"calibrate --diameter 1um --out results --use best run7.csv", 2, "usage", "", 0},
+		{"check", 2, "usage", "", 0},
+		{"check gone.csv", 4, "input", "gone.csv", 0},
+		{"check bad.csv", 4, "input", "bad.csv", 3},
+		{"batch", 2, "usage", "", 0},
+		{"batch gone", 4, "input", "gone", 0},
+		{"batch --jobs two .", 2, "usage", "", 0},
+		{"batch --shard 3/2 .", 2, "usage", "", 0},
+		{"batch --files-from gone", 4, "input", "gone", 0},
+		{"batch --out run7.csv mixed", 1, "output", "run7.csv", 0},
+		{"batch --diameter 1um mixed", 5, "partial", "", 0},
+		{"batch shard", 4, "input", "shard", 0},
+		{"collect", 2, "usage", "", 0},
+		{"collect gone", 4, "input", "gone", 0},
+		{"collect mixed", 4, "input", "mixed", 0},
+		{"collect shard", 4, "input", "", 0},
+		{"trend", 2, "usage", "", 0},
+		{"trend gone", 2, "usage", "", 0}, // there is no JSON of a trend
+		{"drag", 2, "usage", "", 0},
+		{"drag --diameter 1um --fluid beer", 2, "settings", "", 0},
+		{"drag --diameter 1um --height 0.2um", 2, "usage", "", 0},
+		{"plan", 2, "usage", "", 0},
+		{"plan --corner 200Hz --diameter 1um", 2, "settings", "", 0},
+		{"force run7.csv", 2, "usage", "", 0},
+		{"force run7.csv --with gone.json --centre mean", 4, "input", "gone.json", 0},
+		{"force run7.csv --with table.csv --centre mean", 4, "input", "table.csv", 0},
+		{"force run7.csv --with results/doubt/result.json --centre mean", 3, "distrust", "", 0},
+		{"force gone.csv --with results/run7/result.json --centre mean", 4, "input", "gone.csv", 0},
+		{"report", 2, "usage", "", 0},
+		{"report gone.json", 4, "input", "gone.json", 0},
+		{"report table.csv", 4, "input", "table.csv", 0},
+		{"report other.json", 4, "input", "other.json", 0},
+		{"report --force results/run7/result.json", 2, "usage", "", 0},
+		{"rerun", 2, "usage", "", 0},
+		{"rerun table.csv", 4, "input", "table.csv", 0},
+		{"rerun results/run7/result.json bad.csv", 4, "input", "bad.csv", 0},
+		{"rerun results/run7/result.json gone.csv", 4, "input", "gone.csv", 0},
+		{"init gone", 2, "usage", "", 0}, // init has no --format, nor have those below
+		{"simulate", 2, "usage", "", 0},
+		{"explain", 2, "usage", "", 0},
+		{"schema", 2, "usage", "", 0},
+		{"man", 2, "usage", "", 0},
+		{"completion", 2, "usage", "", 0},
+	} {
+		w, _, errs := testWorld("")
+		got := run(context.Background(), append(strings.Fields(test.line), "--format", "json"), w)
+		var p report.Problem
+		decoder := json.NewDecoder(strings.NewReader(errs.String()))
+		decoder.DisallowUnknownFields()
+		if err := decoder.Decode(&p); err != nil || strings.Count(errs.String(), "\n") != 1 {
+			t.Errorf("beadwell %s: standard error %q is not one object on one line: %v", test.line, errs, err)
+			continue
+		}
+		if got != test.status || p.Status != got || p.Code != test.code || p.File != test.file || p.Line != test.at {
+			t.Errorf("beadwell %s: status %d, %+v; want status %d, code %s, file %q, line %d", test.line, got, p, test.status, test.code, test.file, test.at)
+		}
+		if p.Message == "" || p.Remedy == "" && len(p.Others) == 0 {
+			t.Errorf("beadwell %s: %+v has no message or no remedy", test.line, p)
+		}
+		if p.File != "" && strings.HasPrefix(p.Message, p.File) {
+			t.Errorf("beadwell %s: the message %q repeats the file", test.line, p.Message)
 		}
 	}
 }
@@ -193,7 +298,7 @@ func runExample(t *testing.T, line string) {
 	args := words(line)[1:]
 	switch args[0] {
 	case "collect":
-		prepare(t, "batch --out results tonight", "batch --shard 1/3 --out shard-1 tonight", "batch --shard 2/3 --out shard-2 tonight", "batch --shard 3/3 --out shard-3 tonight")
+		prepare(t, "batch --out monday tonight", "batch --out tuesday run8.csv", "batch --out results tonight", "batch --shard 1/3 --out shard-1 tonight", "batch --shard 2/3 --out shard-2 tonight", "batch --shard 3/3 --out shard-3 tonight")
 	case "trend":
 		prepare(t, "batch --out results/2026-03 tonight", "batch --out results/2026-04 tonight", "batch --out results/2026-05 tonight")
 		found, err := filepath.Glob(args[len(args)-1]) // as a shell does

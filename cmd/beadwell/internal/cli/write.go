@@ -4,7 +4,6 @@ import (
 	"bytes"
 	"context"
 	"errors"
-	"fmt"
 	"os"
 	"path/filepath"
 
@@ -122,7 +121,7 @@ func (w *resultWriter) mayReplace(folder outputFolder, files []file, r *calib.Re
 			return err
 		}
 		if exists {
-			return &failure{status: StatusUsage, code: codeOutput, err: fmt.Errorf("%s: is there already, and not from this recording", folder.path(f.name)),
+			return &failure{status: StatusUsage, code: codeOutput, err: &report.FileError{File: folder.path(f.name), Err: errors.New("is there already, and not from this recording")},
 				remedy: "choose another --out, or add --force to replace it"}
 		}
 	}

@@ -23,7 +23,7 @@ type Set struct {
 // Problem is an error as JSON: what --format json writes to standard error, and
 // what stands in a Set for a recording that failed. A key is absent when it has no meaning for the error.
 type Problem struct {
-	Code    string    `json:"code"`             // "usage", "settings", "input", "output", "internal", "interrupted", "partial"
+	Code    string    `json:"code"`             // "usage", "settings", "input", "output", "distrust", "partial", "interrupted", "internal"
 	Status  int       `json:"exit_status"`      // exit status that the problem has by itself
 	Input   string    `json:"input,omitempty"`  // recording that failed, as named on the command line
 	File    string    `json:"file,omitempty"`   // file that the problem stands in
@@ -33,6 +33,15 @@ type Problem struct {
 	Remedy  string    `json:"remedy,omitempty"`
 	Others  []Problem `json:"others,omitempty"` // further places with a problem
 }
+
+// FileError is an error about a file or folder, which has no place within it.
+type FileError struct {
+	File string
+	Err  error // what is wrong with it
+}
+
+func (e *FileError) Error() string { return e.File + ": " + e.Err.Error() }
+func (e *FileError) Unwrap() error { return e.Err }
 
 // JSON writes one result as indented JSON that ends with a newline. The same
 // result gives the same bytes, and ReadJSON gives the same result back. An

@@ -7,7 +7,9 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"reflect"
 	"sort"
+	"strings"
 	"unicode/utf8"
 
 	"beadwell/calib"
@@ -56,18 +58,17 @@ func decode(text []byte) (*calib.Result, error) {
 	if !utf8.Valid(text) {
 		return nil, &ReadError{What: "is not UTF-8 text", Remedy: remedyStored}
 	}
+	if err := looksStored(text); err != nil {
+		return nil, err
+	}
 	var head struct {
 		Schema string `json:"schema"`
 	}
 	if err := json.Unmarshal(text, &head); err != nil {
 		return nil, readError(text, err)
 	}
-	switch head.Schema {
-	case calib.SchemaVersion:
-	case SetVersion:
-		return nil, &ReadError{What: "holds the results of several recordings", Remedy: "give one member of its list \"results\""}
-	default:
-		return nil, &ReadError{What: fmt.Sprintf("schema is %q, not %q", head.Schema, calib.SchemaVersion), Remedy: remedyStored}
+	if head.Schema != calib.SchemaVersion {
+		return nil, otherSchema(head.Schema)
 	}
 	decoder := json.NewDecoder(bytes.NewReader(text))
 	decoder.DisallowUnknownFields()
@@ -78,7 +79,55 @@ func decode(text []byte) (*calib.Result, error) {
 	return result, compareWithSource(text, result)
 }
 
-const remedyStored = "give a result that beadwell wrote as JSON; calibrate the recording again when there is none"
+// looksStored refuses what does not begin as a stored result does: a recording, say.
+func looksStored(text []byte) error {
+	const byteOrderMark = "\ufeff"
+	begin := bytes.TrimLeft(text, " \t\r\n")
+	switch {
+	case len(begin) == 0:
+		return &ReadError{What: "is empty", Remedy: remedyStored}
+	case bytes.HasPrefix(begin, []byte(byteOrderMark)):
+		return &ReadError{What: "begins with a byte order mark, which JSON has none of", Remedy: "save it as plain UTF-8, or take the file that beadwell wrote"}
+	case begin[0] != '{':
+		return &ReadError{What: fmt.Sprintf("is not a stored result: it begins with %q", excerpt(begin)), Remedy: remedyStored}
+	}
+	return nil
+}
+
+// excerpt is the first line of a text, or its beginning.
+func excerpt(text []byte) string {
+	const most = 24 // characters
+	line, _, _ := strings.Cut(string(text), "\n")
+	if runes := []rune(strings.TrimRight(line, "\r")); len(runes) > most {
+		return string(runes[:most]) + "..."
+	}
+	return strings.TrimRight(line, "\r")
+}
+
+// others are what else the program writes as JSON, by the name of the schema without its version.
+var others = map[string]string{
+	"beadwell-check": "what check found", "beadwell-comparison": "what rerun found", "beadwell-drag": "a table of drag",
+	"beadwell-force": "forces", "beadwell-plan": "a plan", "beadwell-summary": "the summary of a batch",
+}
+
+// otherSchema says what a text of another schema is.
+func otherSchema(schema string) *ReadError {
+	kind, _, _ := strings.Cut(schema, "/")
+	own, _, _ := strings.Cut(calib.SchemaVersion, "/")
+	switch {
+	case schema == "":
+		return &ReadError{What: `is not a stored result: it has no key "schema"`, Remedy: remedyStored}
+	case schema == SetVersion:
+		return &ReadError{What: "holds the results of several recordings", Remedy: "give one member of its list \"results\""}
+	case others[kind] != "":
+		return &ReadError{What: fmt.Sprintf("holds %s (%s), not the result of one recording", others[kind], schema), Remedy: remedyStored}
+	case kind == own:
+		return &ReadError{What: fmt.Sprintf("schema is %q, not %q: another version of the program wrote it", schema, calib.SchemaVersion), Remedy: "use that version, or calibrate the recording again"}
+	}
+	return &ReadError{What: fmt.Sprintf("schema is %q, not %q", schema, calib.SchemaVersion), Remedy: remedyStored}
+}
+
+const remedyStored = "give a result.json, which calibrate --out and batch write for each recording; a recording itself goes to beadwell calibrate"
 
 // readError finds the place of an error of encoding/json.
 func readError(text []byte, err error) *ReadError {
@@ -88,10 +137,10 @@ func readError(text []byte, err error) *ReadError {
 	var wrongType *json.UnmarshalTypeError
 	switch {
 	case errors.As(err, &syntax):
-		offset, what = syntax.Offset, "is not JSON: "+syntax.Error()
+		offset, what = syntax.Offset, syntaxWords(text, syntax)
 	case errors.As(err, &wrongType):
 		offset = wrongType.Offset
-		what = fmt.Sprintf("%s holds a %s where the program writes %s", keyName(wrongType.Field), wrongType.Value, wrongType.Type)
+		what = fmt.Sprintf("%s holds %s where the program writes %s", keyName(wrongType.Field), valueWords(wrongType.Value), typeWords(wrongType.Type))
 	}
 	if offset < 0 || offset > int64(len(text)) {
 		return &ReadError{What: what, Remedy: remedyStored}
@@ -100,6 +149,50 @@ func readError(text []byte, err error) *ReadError {
 	line := bytes.Count(before, []byte{'\n'}) + 1
 	column := len(before) - bytes.LastIndexByte(before, '\n') - 1
 	return &ReadError{Line: line, Column: max(column, 1), What: what, Remedy: remedyStored}
+}
+
+// syntaxWords says what is wrong with the JSON, in words of a person.
+func syntaxWords(text []byte, err *json.SyntaxError) string {
+	place := max(err.Offset-1, 0) // of the character that should not be there
+	switch {
+	case strings.Contains(err.Error(), "unexpected end"):
+		return "is cut: it ends before the result does"
+	case strings.Contains(err.Error(), "after top-level value"):
+		return fmt.Sprintf("has more behind the result: %q", excerpt(text[place:]))
+	}
+	return fmt.Sprintf("is not JSON from here on: %q", excerpt(text[place:]))
+}
+
+// valueWords are the words for a value of JSON, as its decoder names it.
+func valueWords(value string) string {
+	switch value {
+	case "string":
+		return "a text"
+	case "array":
+		return "a list"
+	case "object":
+		return "an object"
+	case "bool":
+		return "true or false"
+	case "number":
+		return "a number"
+	}
+	return "the number " + strings.TrimPrefix(value, "number ") // one that no number of the program can hold
+}
+
+// typeWords are the words for what a key holds.
+func typeWords(t reflect.Type) string {
+	switch t.Kind() {
+	case reflect.String:
+		return "a text"
+	case reflect.Bool:
+		return "true or false"
+	case reflect.Slice, reflect.Array:
+		return "a list"
+	case reflect.Struct, reflect.Pointer, reflect.Map:
+		return "an object"
+	}
+	return "a number"
 }
 
 func keyName(field string) string {
