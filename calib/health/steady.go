@@ -49,6 +49,15 @@ func loudest(blocks []block, h null, least float64) spell {
 		sums[i+1] = block{n: sums[i].n + b.n, s1: sums[i].s1 + b.s1, s2: sums[i].s2 + b.s2}
 	}
 	total := sums[len(blocks)]
+	known := map[float64]meanLoss{} // there are as many lengths as blocks, and their square of intervals
+	loss := func(n float64) meanLoss {
+		l, ok := known[n]
+		if !ok {
+			l = h.meanLoss(n)
+			known[n] = l
+		}
+		return l
+	}
 	var best spell
 	for i := range blocks {
 		for j := i + 1; j <= len(blocks); j++ {
@@ -57,7 +66,7 @@ func loudest(blocks []block, h null, least float64) spell {
 			if in.n < least || out.n < least {
 				continue
 			}
-			z, ratio := compare(in, out, h)
+			z, ratio := compare(in, out, loss(in.n), loss(out.n))
 			if math.Abs(z) > math.Abs(best.z) {
 				best = spell{from: i, to: j, z: z, ratio: ratio}
 			}
@@ -79,9 +88,9 @@ func loudest(blocks []block, h null, least float64) spell {
 // The effective degrees of freedom of each come from the second Hermite order, and
 // the cube root of the ratio is taken as normal (Paulson, Ann. Math. Stat. 13
 // (1942) 233).
-func compare(a, b block, h null) (z, ratio float64) {
-	va, na := unbiased(a, h)
-	vb, nb := unbiased(b, h)
+func compare(a, b block, lossA, lossB meanLoss) (z, ratio float64) {
+	va, na := a.variance()/(1-lossA.taken), lossA.freedom
+	vb, nb := b.variance()/(1-lossB.taken), lossB.freedom
 	if va <= 0 && vb <= 0 {
 		return 0, 1
 	}
@@ -93,9 +102,12 @@ func compare(a, b block, h null) (z, ratio float64) {
 	return z, ratio
 }
 
-// unbiased returns the variance about the own mean, corrected for the variance of
-// that mean, and its effective degrees of freedom.
-func unbiased(b block, h null) (variance, freedom float64) {
-	taken := math.Min(1/h.effective(1, b.n), 0.9)
-	return b.variance() / (1 - taken), math.Max(h.effective(2, b.n)*(1-taken), 1)
+// meanLoss is what the mean of a stretch takes: the share of its variance, and the effective
+// degrees of freedom that are left.
+type meanLoss struct{ taken, freedom float64 }
+
+// meanLoss returns that of n consecutive samples.
+func (h null) meanLoss(n float64) meanLoss {
+	taken := math.Min(1/h.effective(1, n), 0.9)
+	return meanLoss{taken: taken, freedom: math.Max(h.effective(2, n)*(1-taken), 1)}
 }
