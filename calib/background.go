@@ -15,18 +15,18 @@ import (
 // Background is the noise of a detector or of a tracking, from a recording without a bead or with a stuck one.
 type Background struct {
 	Name     string      `json:"name,omitempty"` // of the recording, where it is another one
-	Samples  int         `json:"samples"`
+	Samples  int         `json:"samples"`        // analysed
 	Noise    Quantity    `json:"noise"`          // standard deviation of the white noise
 	Variance Quantity    `json:"noise_variance"` // its square
 	Excess   Float       `json:"excess_share"`   // variance at low frequency above the white noise, over it
-	Lines    []NoiseLine `json:"lines"`
+	Lines    []NoiseLine `json:"lines"`          // narrow lines in its spectrum
 }
 
 // NoiseLine is a narrow line of a background.
 type NoiseLine struct {
-	Frequency Float    `json:"f_hz"`
-	Amplitude Float    `json:"amplitude"`
-	Range     [2]Float `json:"range_hz"`
+	Frequency Float    `json:"f_hz"`      // middle of the line
+	Amplitude Float    `json:"amplitude"` // of the sine, in the unit of the noise
+	Range     [2]Float `json:"range_hz"`  // lowest and highest frequency that it reaches
 }
 
 // CodeBackgroundDrift is the code of the finding that a background is not white.

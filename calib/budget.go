@@ -10,22 +10,22 @@ import (
 // independent of each other; one that acts in two ways, as the temperature does
 // through viscosity and kT, stands with its net effect, signs included.
 type BudgetLine struct {
-	Input               string `json:"input"`
-	Value               Float  `json:"value"`
-	Unit                string `json:"unit"`
-	StandardUncertainty Float  `json:"standard_uncertainty"`
-	Sensitivity         Float  `json:"log_sensitivity"`    // d ln(stiffness) / d ln(input); for temperature d ln(stiffness) / d ln(T / K)
-	Contribution        Float  `json:"contribution"`       // to u(ln stiffness), 1
-	Share               Float  `json:"share"`              // of the combined variance, 1
-	Freedom             Float  `json:"degrees_of_freedom"` // of the standard uncertainty; null: infinite, as it was stated
-	Note                string `json:"note,omitempty"`     // what to know of the line
+	Input               string `json:"input"`                // name of the input
+	Value               Float  `json:"value"`                // as it was used
+	Unit                string `json:"unit"`                 // of value and standard uncertainty
+	StandardUncertainty Float  `json:"standard_uncertainty"` // of the input
+	Sensitivity         Float  `json:"log_sensitivity"`      // d ln(stiffness) / d ln(input); for temperature d ln(stiffness) / d ln(T / K)
+	Contribution        Float  `json:"contribution"`         // to u(ln stiffness), 1
+	Share               Float  `json:"share"`                // of the combined variance, 1
+	Freedom             Float  `json:"degrees_of_freedom"`   // of the standard uncertainty; null: infinite, as it was stated
+	Note                string `json:"note,omitempty"`       // what to know of the line
 }
 
 // Expanded is the expanded uncertainty of the adopted stiffness (JCGM 100:2008, 6.2 and
 // G.4). It is symmetric; the interval of the stiffness itself follows the likelihood and is
 // the better one where the two differ.
 type Expanded struct {
-	Coverage    Float `json:"coverage_probability"`
+	Coverage    Float `json:"coverage_probability"`         // of the interval, 1
 	Factor      Float `json:"coverage_factor"`              // of Student's t
 	Freedom     Float `json:"effective_degrees_of_freedom"` // Welch and Satterthwaite; null: infinite
 	Uncertainty Float `json:"expanded_uncertainty"`         // N/m

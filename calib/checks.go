@@ -10,17 +10,17 @@ import (
 
 // Check is one check of the recording, also when it found nothing.
 type Check struct {
-	Code   string     `json:"code"`
-	Name   string     `json:"name"`
-	Axis   string     `json:"axis,omitempty"`
-	Level  string     `json:"level"`  // "ok", "doubtful", "bad"
-	Judged bool       `json:"judged"` // false: the check could not be made, and the text says why
-	Value  Float      `json:"value"`
-	Limit  Float      `json:"threshold"`
-	Unit   string     `json:"unit"`
-	Text   string     `json:"text"`
-	Reason string     `json:"reason,omitempty"` // why it matters
-	Remedy string     `json:"remedy,omitempty"`
+	Code   string     `json:"code"`                    // stable name, for beadwell explain
+	Name   string     `json:"name"`                    // in words
+	Axis   string     `json:"axis,omitempty"`          // absent when it is about the whole recording
+	Level  string     `json:"level"`                   // "ok", "doubtful", "bad"
+	Judged bool       `json:"judged"`                  // false: the check could not be made, and the text says why
+	Value  Float      `json:"value"`                   // the number that was judged; null when there is none
+	Limit  Float      `json:"threshold"`               // from which on it is doubtful; null when there is none
+	Unit   string     `json:"unit"`                    // of value and threshold
+	Text   string     `json:"text"`                    // what was found, for a person
+	Reason string     `json:"reason,omitempty"`        // why it matters
+	Remedy string     `json:"remedy,omitempty"`        // what to do
 	Ranges [][2]Float `json:"time_ranges_s,omitempty"` // on the clock of the recording
 }
 

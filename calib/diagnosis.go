@@ -20,8 +20,8 @@ type Diagnosis struct {
 
 // Cause is one thing that, being other than stated, would explain the disagreement.
 type Cause struct {
-	Code        string   `json:"code"`
-	Name        string   `json:"name"`
+	Code        string   `json:"code"`                    // stable name, for beadwell explain
+	Name        string   `json:"name"`                    // in words
 	Axis        string   `json:"axis,omitempty"`          // of a cause on one axis alone
 	Stated      Quantity `json:"stated"`                  // what was used; its uncertainty as it was stated
 	Needed      Quantity `json:"needed"`                  // what would reconcile; null when nothing would

@@ -27,20 +27,20 @@ const RouteDriven = "driven"
 // per metre; with it the diffusion coefficient is in metres too, the drag is kT/D and the stiffness 2 pi
 // fc kT/D: neither viscosity nor bead diameter nor length scale enters (docs/method.md, Eqs 55 and 56).
 type Driven struct {
-	Waveform    string    `json:"waveform"`       // "sine", "triangle"
-	Frequency   Float     `json:"frequency_hz"`   // of the motion; null for a triangle that is known by its track alone
-	Amplitude   Quantity  `json:"amplitude"`      // of the stage [m]
-	Origin      string    `json:"origin"`         // of the motion: "column", "settings"
-	Power       Quantity  `json:"line_power"`     // of the bead's line, exposure and photodiode undone, in the lengths of this result [m2]; sine
-	Expected    Quantity  `json:"expected_power"` // what the motion of the stage makes of a bead of this corner frequency [m2]; sine
-	Lead        Quantity  `json:"phase_lead"`     // of the bead before the stage's column [rad]; sine
-	LeadExpect  Float     `json:"phase_lead_expected"`
-	LengthScale Quantity  `json:"length_scale"` // true length over the one recorded: 1 when the stated scale is right
-	Drag        Quantity  `json:"drag"`         // kT/D, N s/m
-	DragRatio   Quantity  `json:"drag_ratio"`   // over the computed drag
-	Flow        *FlowLine `json:"constant_flow,omitempty"`
-	Test        Test      `json:"test"` // the driven estimate against the others
-	Text        string    `json:"text"`
+	Waveform    string    `json:"waveform"`                // "sine", "triangle"
+	Frequency   Float     `json:"frequency_hz"`            // of the motion; null for a triangle that is known by its track alone
+	Amplitude   Quantity  `json:"amplitude"`               // of the stage [m]
+	Origin      string    `json:"origin"`                  // of the motion: "column", "settings"
+	Power       Quantity  `json:"line_power"`              // of the bead's line, exposure and photodiode undone, in the lengths of this result [m2]; sine
+	Expected    Quantity  `json:"expected_power"`          // what the motion of the stage makes of a bead of this corner frequency [m2]; sine
+	Lead        Quantity  `json:"phase_lead"`              // of the bead before the stage's column [rad]; sine
+	LeadExpect  Float     `json:"phase_lead_expected"`     // of a bead of this corner frequency [rad]
+	LengthScale Quantity  `json:"length_scale"`            // true length over the one recorded: 1 when the stated scale is right
+	Drag        Quantity  `json:"drag"`                    // kT/D, N s/m
+	DragRatio   Quantity  `json:"drag_ratio"`              // over the computed drag
+	Flow        *FlowLine `json:"constant_flow,omitempty"` // fit of displacement against speed; triangle
+	Test        Test      `json:"test"`                    // the driven estimate against the others
+	Text        string    `json:"text"`                    // what it says, for a person
 }
 
 // response is the answer of one axis to the moving stage.

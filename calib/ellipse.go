@@ -20,17 +20,17 @@ import (
 // (Bartlett, J. R. Stat. Soc. Suppl. 8 (1946) 27); the direction of an axis then has the variance v1 v2/(N (v1-v2)^2) (Anderson, Ann. Math.
 // Stat. 34 (1963) 122).
 type TrapAxes struct {
-	Names      []string        `json:"axes"`
-	Covariance [][]Float       `json:"covariance_m2"` // of the positions, blur and noise removed
-	Pairs      []AxisPair      `json:"pairs"`
-	Principal  []PrincipalAxis `json:"principal_axes"`
-	Text       string          `json:"text"`
+	Names      []string        `json:"axes"`           // recorded axes, in the order of the covariance
+	Covariance [][]Float       `json:"covariance_m2"`  // of the positions, blur and noise removed
+	Pairs      []AxisPair      `json:"pairs"`          // each two of the axes
+	Principal  []PrincipalAxis `json:"principal_axes"` // of the trap, one for each recorded axis
+	Text       string          `json:"text"`           // what it says, for a person
 }
 
 // AxisPair is how two recorded axes move together.
 type AxisPair struct {
-	First       string   `json:"first"`
-	Second      string   `json:"second"`
+	First       string   `json:"first"`            // axis
+	Second      string   `json:"second"`           // axis
 	Correlation Quantity `json:"correlation"`      // of the positions, blur and noise removed, 1
 	PValue      Float    `json:"p_value"`          // of no correlation
 	Fast        Quantity `json:"fast_correlation"` // real part of the coherency at frequencies above the corners: cross-talk shows there, a tilt does not

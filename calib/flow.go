@@ -15,19 +15,19 @@ import (
 // over stiffness, gamma/kappa (Stokes' law in a harmonic trap), with an intercept and a drift in time left free
 // (docs/method.md, Eq. 57).
 type FlowLine struct {
-	Slope     Quantity    `json:"slope"`     // of displacement against speed, as recorded [s]
-	Intercept Quantity    `json:"intercept"` // displacement at rest, from the mean of the record [m]
-	Goodness  Goodness    `json:"goodness_of_fit"`
-	Skipped   Float       `json:"skipped_s"` // left out after each reversal
-	Points    []FlowPoint `json:"points"`
+	Slope     Quantity    `json:"slope"`           // of displacement against speed, as recorded [s]
+	Intercept Quantity    `json:"intercept"`       // displacement at rest, from the mean of the record [m]
+	Goodness  Goodness    `json:"goodness_of_fit"` // of the line
+	Skipped   Float       `json:"skipped_s"`       // left out after each reversal
+	Points    []FlowPoint `json:"points"`          // one for each stroke of the stage
 }
 
 // FlowPoint is one stroke of the stage.
 type FlowPoint struct {
-	Speed        Float `json:"speed_m_per_s"`
-	Displacement Float `json:"displacement_m"`
-	Standard     Float `json:"standard_uncertainty"`
-	Model        Float `json:"model_m"`
+	Speed        Float `json:"speed_m_per_s"`        // of the stage
+	Displacement Float `json:"displacement_m"`       // of the bead, as recorded
+	Standard     Float `json:"standard_uncertainty"` // of the displacement, m
+	Model        Float `json:"model_m"`              // the line at this speed
 }
 
 // flow is what is known of a bead in a liquid that is moved at constant speed.

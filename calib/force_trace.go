@@ -84,17 +84,17 @@ func (f *ForceTrace) StatisticalU() float64 { return float64(f.Trap.Stiffness.Va
 
 // ForceSummary describes a trace. Forces in N, displacements in m.
 type ForceSummary struct {
-	Axis         string   `json:"axis"`
-	Estimate     string   `json:"estimate"`             // "adopted", or the estimate taken
-	Stiffness    Quantity `json:"stiffness"`            // N/m
-	Relative     Float    `json:"relative_uncertainty"` // of a force by the calibration, 1
-	Centre       Quantity `json:"centre"`               // m
-	Samples      int      `json:"samples"`              // with the missing ones
-	Missing      int      `json:"missing"`
+	Axis         string   `json:"axis"`                    // "x", "y" or "z"
+	Estimate     string   `json:"estimate"`                // "adopted", or the estimate taken
+	Stiffness    Quantity `json:"stiffness"`               // N/m
+	Relative     Float    `json:"relative_uncertainty"`    // of a force by the calibration, 1
+	Centre       Quantity `json:"centre"`                  // m
+	Samples      int      `json:"samples"`                 // with the missing ones
+	Missing      int      `json:"missing"`                 // samples without a position
 	Mean         Quantity `json:"mean_force"`              // N
 	Spread       Float    `json:"force_sd_N"`              // standard deviation of the forces, thermal motion included
-	Lowest       Float    `json:"lowest_force_N"`          //
-	Highest      Float    `json:"highest_force_N"`         //
+	Lowest       Float    `json:"lowest_force_N"`          // // of all samples
+	Highest      Float    `json:"highest_force_N"`         // // of all samples
 	Statistical  Float    `json:"statistical_u_N"`         // of one force, by localisation noise alone; null when that is not known
 	Linear       [2]Float `json:"linear_range_m"`          // displacements over which the calibration saw a harmonic potential; null when unknown
 	LinearReason string   `json:"linear_range_reason"`     // what ends the range

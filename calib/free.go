@@ -19,9 +19,9 @@ type FreeBead struct {
 	Noise         Quantity `json:"noise"`                 // localisation noise, standard deviation, m
 	NoiseVariance Quantity `json:"noise_variance"`        // m2; may be negative when it was fitted
 	Speed         Quantity `json:"drift_speed"`           // m/s
-	Displacements int      `json:"displacements"`
-	Test          Test     `json:"test"` // measured against computed drag
-	Text          string   `json:"text"`
+	Displacements int      `json:"displacements"`         // that the estimate rests on
+	Test          Test     `json:"test"`                  // measured against computed drag
+	Text          string   `json:"text"`                  // what it says, for a person
 }
 
 // noTrap is why a free bead has no stiffness.

@@ -18,17 +18,17 @@ type MonteCarloOptions struct {
 // normal with their standard uncertainties, and drag, wall, viscosity and kT are evaluated for every draw; the
 // record's part has the widths of its likelihood on either side.
 type MonteCarlo struct {
-	Draws       int              `json:"draws"`
+	Draws       int              `json:"draws"`       // number of draws
 	Rejected    int              `json:"rejected"`    // draws at which no bead fits (a height below the radius); left out
 	Seed        string           `json:"seed"`        // decimal
 	Axes        []MonteCarloAxis `json:"axes"`        // those with an adopted stiffness
 	Correlation [][]Float        `json:"correlation"` // of the stiffnesses of these axes, through the inputs they share
-	Text        string           `json:"text"`
+	Text        string           `json:"text"`        // what it says, for a person
 }
 
 // MonteCarloAxis is the distribution of the stiffness of one axis.
 type MonteCarloAxis struct {
-	Axis       string   `json:"axis"`
+	Axis       string   `json:"axis"`                 // "x", "y" or "z"
 	Mean       Float    `json:"mean"`                 // N/m
 	Standard   Float    `json:"standard_uncertainty"` // N/m
 	Interval95 [2]Float `json:"interval_95"`          // probabilistically symmetric, N/m

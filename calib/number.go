@@ -45,20 +45,20 @@ func (f Float) Known() bool { return !math.IsNaN(float64(f)) && !math.IsInf(floa
 // standard uncertainties of the inputs. Either is absent when it does not apply
 // (an input has no statistical part).
 type Quantity struct {
-	Value       Float        `json:"value"`
-	Unit        string       `json:"unit"`
-	Statistical *Uncertainty `json:"statistical,omitempty"`
-	Combined    *Uncertainty `json:"combined,omitempty"`
-	Reason      string       `json:"reason,omitempty"`
+	Value       Float        `json:"value"`                 // in the unit beside it; null when it is not known
+	Unit        string       `json:"unit"`                  // SI; 1 for a ratio
+	Statistical *Uncertainty `json:"statistical,omitempty"` // inputs taken as exact; absent when it has none
+	Combined    *Uncertainty `json:"combined,omitempty"`    // with the stated uncertainties of the inputs; absent when it has none
+	Reason      string       `json:"reason,omitempty"`      // why the value is null
 }
 
 // Uncertainty is a standard uncertainty with its coverage intervals, all in the
 // unit of the quantity. The intervals need not be symmetric; an end that the
 // data do not bound is null.
 type Uncertainty struct {
-	Standard   Float    `json:"standard_uncertainty"`
-	Interval68 [2]Float `json:"interval_68"`
-	Interval95 [2]Float `json:"interval_95"`
+	Standard   Float    `json:"standard_uncertainty"` // null when it is not known
+	Interval68 [2]Float `json:"interval_68"`          // lower and upper end, coverage 68.27 %
+	Interval95 [2]Float `json:"interval_95"`          // lower and upper end, coverage 95 %
 }
 
 // Known tells whether the quantity has a value.

@@ -23,27 +23,27 @@ type PlanOptions struct {
 // Plan is what a recording of one axis can tell, before it is made. SI units; all
 // uncertainties are relative to the stiffness.
 type Plan struct {
-	Schema      string    `json:"schema"`
-	Program     Program   `json:"program"`
-	Settings    []Setting `json:"settings"`
-	Axis        string    `json:"axis"`
-	Orientation string    `json:"orientation"` // "parallel" or "perpendicular" to the surface
-	Medium      Medium    `json:"medium"`
-	Bead        Bead      `json:"bead"`
+	Schema      string    `json:"schema"`           // layout of this object, with its version
+	Program     Program   `json:"program"`          // what made the plan
+	Settings    []Setting `json:"settings"`         // every setting that was in force
+	Axis        string    `json:"axis"`             // "x", "y" or "z"
+	Orientation string    `json:"orientation"`      // "parallel" or "perpendicular" to the surface
+	Medium      Medium    `json:"medium"`           // the liquid as it was used
+	Bead        Bead      `json:"bead"`             // the bead as it was used
 	WallFactor  Float     `json:"wall_factor"`      // drag over Stokes drag, 1
 	Drag        Quantity  `json:"drag"`             // Stokes times wall factor, N s/m
 	Stiffness   Quantity  `json:"stiffness"`        // expected, N/m
 	Corner      Quantity  `json:"corner_frequency"` // expected, Hz
 	RMS         Quantity  `json:"thermal_rms"`      // root mean square of the thermal motion, m
-	Rate        Float     `json:"rate_hz"`
-	Exposure    Float     `json:"exposure_s"`
-	Noise       Quantity  `json:"noise"` // localisation noise, m
+	Rate        Float     `json:"rate_hz"`          // sampling rate that is planned
+	Exposure    Float     `json:"exposure_s"`       // time over which a position is averaged
+	Noise       Quantity  `json:"noise"`            // localisation noise, m
 
-	Floor  PlanFloor   `json:"floor"`
-	Times  []PlanTime  `json:"times"`  // in order of duration
-	Enough Quantity    `json:"enough"` // duration from which on a longer recording improves the combined uncertainty by less than 5 %, s
-	Wanted *PlanWanted `json:"wanted,omitempty"`
-	Rates  PlanRates   `json:"rates"`
+	Floor  PlanFloor   `json:"floor"`            // what the inputs leave
+	Times  []PlanTime  `json:"times"`            // in order of duration
+	Enough Quantity    `json:"enough"`           // duration from which on a longer recording improves the combined uncertainty by less than 5 %, s
+	Wanted *PlanWanted `json:"wanted,omitempty"` // how long to record; absent when nothing was wanted
+	Rates  PlanRates   `json:"rates"`            // the same recording at other sampling rates
 
 	Findings []Finding `json:"findings"` // never null
 }
@@ -57,17 +57,17 @@ type PlanUncertainty struct {
 
 // PlanRoutes are the uncertainties by the two routes and by their combination.
 type PlanRoutes struct {
-	Drag      PlanUncertainty `json:"drag"`
-	Amplitude PlanUncertainty `json:"amplitude"`
-	Both      PlanUncertainty `json:"both"`
+	Drag      PlanUncertainty `json:"drag"`      // 2 pi times drag times corner frequency
+	Amplitude PlanUncertainty `json:"amplitude"` // kT over variance
+	Both      PlanUncertainty `json:"both"`      // combined, as Calibrate adopts them
 }
 
 // PlanTime is the prediction for one duration.
 type PlanTime struct {
-	Duration Float      `json:"duration_s"`
-	Samples  int        `json:"samples"`
-	Routes   PlanRoutes `json:"uncertainty"`
-	Drift    Float      `json:"drift_m"` // rms of a drift that is not a straight line at which it moves the amplitude route by its statistical uncertainty, m
+	Duration Float      `json:"duration_s"`  // duration of the recording
+	Samples  int        `json:"samples"`     // number of samples
+	Routes   PlanRoutes `json:"uncertainty"` // of the stiffness
+	Drift    Float      `json:"drift_m"`     // rms of a drift that is not a straight line at which it moves the amplitude route by its statistical uncertainty, m
 }
 
 // PlanFloor is what is left of the uncertainty however long the recording is.
@@ -77,7 +77,7 @@ type PlanFloor struct {
 	Both      Float        `json:"both"`               // relative, 1
 	Weight    Float        `json:"drag_weight"`        // of the drag route in the combination
 	Dominant  string       `json:"dominant,omitempty"` // input with the largest share of it
-	Budget    []BudgetLine `json:"budget"`
+	Budget    []BudgetLine `json:"budget"`             // the inputs, and what each adds
 }
 
 // PlanWanted says how long to record for a wanted combined uncertainty.
@@ -90,17 +90,17 @@ type PlanWanted struct {
 
 // PlanRates compares sampling rates at one duration.
 type PlanRates struct {
-	Duration Float      `json:"duration_s"`
-	Best     Quantity   `json:"best"` // lowest rate whose combined uncertainty is within 5 % of the best of all, Hz
-	Rows     []PlanRate `json:"rows"`
+	Duration Float      `json:"duration_s"` // duration of all of them
+	Best     Quantity   `json:"best"`       // lowest rate whose combined uncertainty is within 5 % of the best of all, Hz
+	Rows     []PlanRate `json:"rows"`       // in order of rate
 }
 
 // PlanRate is the prediction for one sampling rate.
 type PlanRate struct {
-	Rate    Float      `json:"rate_hz"`
-	Samples int        `json:"samples"`
-	Planned bool       `json:"planned"` // the rate of the settings
-	Routes  PlanRoutes `json:"uncertainty"`
+	Rate    Float      `json:"rate_hz"`     // sampling rate
+	Samples int        `json:"samples"`     // number of samples
+	Planned bool       `json:"planned"`     // the rate of the settings
+	Routes  PlanRoutes `json:"uncertainty"` // of the stiffness
 }
 
 // Forecast predicts the uncertainty of the stiffness of one axis from the Cramer-Rao

@@ -12,20 +12,20 @@ const SchemaVersion = "beadwell-result/1"
 // made from, and the contract of the JSON file. It is a plain value that is
 // stored and read back without loss. All numbers are SI.
 type Result struct {
-	Schema     string      `json:"schema"`
-	Program    Program     `json:"program"`
-	Created    string      `json:"created,omitempty"` // RFC 3339; the only field that depends on the clock
-	Input      Input       `json:"input"`
-	ReadAs     ReadAs      `json:"read_as"`
-	Settings   []Setting   `json:"settings"`
-	Role       string      `json:"role,omitempty"`    // of the recording: "trapped", "free", "driven", "background"
-	Choices    *Choices    `json:"choices,omitempty"` // that are no settings; absent when none was made
-	Recording  Recording   `json:"recording"`
-	Medium     Medium      `json:"medium"`
-	Bead       Bead        `json:"bead"`
-	Axes       []Axis      `json:"axes"`
-	TrapAxes   *TrapAxes   `json:"trap_axes,omitempty"` // of the trap itself; with two or three recorded axes
-	Verdict    Verdict     `json:"verdict"`
+	Schema     string      `json:"schema"`                // layout of this object, with its version
+	Program    Program     `json:"program"`               // what made the result
+	Created    string      `json:"created,omitempty"`     // RFC 3339; the only field that depends on the clock
+	Input      Input       `json:"input"`                 // the file that was read
+	ReadAs     ReadAs      `json:"read_as"`               // how the file was understood
+	Settings   []Setting   `json:"settings"`              // every setting that was in force
+	Role       string      `json:"role,omitempty"`        // of the recording: "trapped", "free", "driven", "background"
+	Choices    *Choices    `json:"choices,omitempty"`     // that are no settings; absent when none was made
+	Recording  Recording   `json:"recording"`             // the samples that were analysed
+	Medium     Medium      `json:"medium"`                // the liquid as it was used
+	Bead       Bead        `json:"bead"`                  // the bead as it was used
+	Axes       []Axis      `json:"axes"`                  // the calibration of each axis, in the order of the file
+	TrapAxes   *TrapAxes   `json:"trap_axes,omitempty"`   // of the trap itself; with two or three recorded axes
+	Verdict    Verdict     `json:"verdict"`               // whether the calibration may be used
 	Diagnosis  *Diagnosis  `json:"diagnosis,omitempty"`   // single causes that would reconcile the routes; only when they disagree
 	MonteCarlo *MonteCarlo `json:"monte_carlo,omitempty"` // propagation of distributions, when it was asked for
 	Findings   []Finding   `json:"findings"`              // never null
@@ -34,8 +34,8 @@ type Result struct {
 
 // Program says what made the result.
 type Program struct {
-	Name    string   `json:"name"`
-	Version string   `json:"version"`
+	Name    string   `json:"name"`              // beadwell
+	Version string   `json:"version"`           // of the program, with the commit when it is known
 	Command []string `json:"command,omitempty"` // the command line, program name first
 }
 
@@ -50,25 +50,25 @@ type Input struct {
 
 // ReadAs tells how the file was understood.
 type ReadAs struct {
-	Line    string   `json:"line"` // one sentence for a person
-	Columns []Column `json:"columns"`
-	Notes   []string `json:"notes,omitempty"`
+	Line    string   `json:"line"`            // one sentence for a person
+	Columns []Column `json:"columns"`         // in the order of the file
+	Notes   []string `json:"notes,omitempty"` // what was unusual, a sentence each
 }
 
 // Column is one column of the file and the use that was made of it.
 type Column struct {
-	Header string `json:"header"`
-	Role   string `json:"role"` // "time", "x", "y", "z", "stage", "ignored"
-	Unit   string `json:"unit"`
+	Header string `json:"header"` // as it stands in the file
+	Role   string `json:"role"`   // "time", "x", "y", "z", "stage", "ignored"
+	Unit   string `json:"unit"`   // as it was read; empty when there is none
 }
 
 // Setting is one setting that was in force, with its origin.
 type Setting struct {
-	Key                 string `json:"key"`            // e.g. "bead.diameter"
-	Axis                string `json:"axis,omitempty"` // empty: all axes
-	Text                string `json:"text"`           // as it was given
-	Value               Float  `json:"value"`          // SI; null for a word
-	Unit                string `json:"unit,omitempty"`
+	Key                 string `json:"key"`                  // e.g. "bead.diameter"
+	Axis                string `json:"axis,omitempty"`       // empty: all axes
+	Text                string `json:"text"`                 // as it was given
+	Value               Float  `json:"value"`                // SI; null for a word
+	Unit                string `json:"unit,omitempty"`       // of the value, SI; absent for a word
 	StandardUncertainty Float  `json:"standard_uncertainty"` // SI; null when none was stated
 	Origin              string `json:"origin"`               // "flag", "track list", "session file", "header", "default"
 	Where               string `json:"where,omitempty"`      // e.g. "session.toml:4:1"
@@ -85,12 +85,12 @@ type Choices struct {
 
 // Recording describes the samples that were analysed.
 type Recording struct {
-	Rate       Float  `json:"rate_hz"`
-	RateOrigin string `json:"rate_origin"`
-	Samples    int    `json:"samples"` // on the regular grid, missing ones included
-	Missing    int    `json:"missing"` // samples missing on every axis
-	Duration   Float  `json:"duration_s"`
-	Exposure   Float  `json:"exposure_s"`
+	Rate       Float  `json:"rate_hz"`               // sampling rate
+	RateOrigin string `json:"rate_origin"`           // what the rate rests on, in words
+	Samples    int    `json:"samples"`               // on the regular grid, missing ones included
+	Missing    int    `json:"missing"`               // samples missing on every axis
+	Duration   Float  `json:"duration_s"`            // samples over rate
+	Exposure   Float  `json:"exposure_s"`            // time over which a position is averaged; 0 for a detector
 	Jitter     Float  `json:"jitter_s"`              // rms of the stamps about the grid; null without stamps
 	Start      Float  `json:"start_s"`               // stamp of the first sample; null without stamps
 	UsedFrom   *Float `json:"used_from_s,omitempty"` // beginning of the part that was used, on the clock of the recording; absent when all was
@@ -99,12 +99,12 @@ type Recording struct {
 
 // Medium is the liquid as it was used.
 type Medium struct {
-	Fluid         string   `json:"fluid"`
+	Fluid         string   `json:"fluid"`          // name, with its amount; empty when the viscosity was stated
 	Temperature   Quantity `json:"temperature"`    // K
 	Viscosity     Quantity `json:"viscosity"`      // Pa s
 	Density       Quantity `json:"density"`        // kg/m3
 	ThermalEnergy Quantity `json:"thermal_energy"` // kT, J
-	Source        string   `json:"source"`
+	Source        string   `json:"source"`         // of the viscosity, in words
 }
 
 // Bead is the bead as it was used.
@@ -115,26 +115,26 @@ type Bead struct {
 
 // Axis is the calibration of one axis.
 type Axis struct {
-	Name          string                 `json:"axis"`        // "x", "y" or "z"
-	Orientation   string                 `json:"orientation"` // "parallel" or "perpendicular" to the surface
-	Mean          Float                  `json:"mean_m"`
-	Wall          Wall                   `json:"wall"`
-	Drag          Quantity               `json:"drag"` // computed, Stokes times wall factor, N s/m
-	Adopted       Adopted                `json:"adopted"`
-	Estimates     []Estimate             `json:"estimates"`  // in the order of the Leg constants, those of a moving stage last
-	Covariance    Covariance             `json:"covariance"` // of the logarithms of the estimates
-	CrossCheck    CrossCheck             `json:"cross_check"`
-	MeasuredDrag  Quantity               `json:"measured_drag"` // kT / D of the spectrum, N s/m
-	DragRatio     Quantity               `json:"drag_ratio"`    // measured over computed drag, 1
-	Spectrum      Spectrum               `json:"power_spectrum"`
-	Equipartition Equipartition          `json:"equipartition"`
-	Displacement  MeanSquareDisplacement `json:"mean_square_displacement"`
-	Trace         Trace                  `json:"trace"`
-	Driven        *Driven                `json:"driven,omitempty"`      // of the axis that follows a moving stage
-	Free          *FreeBead              `json:"free,omitempty"`        // of a recording with the laser off
-	Background    *Background            `json:"background,omitempty"`  // the noise without a bead, where it was recorded
-	Sensitivity   *Sensitivity           `json:"sensitivity,omitempty"` // of a recording in detector units
-	Photodiode    *Photodiode            `json:"photodiode,omitempty"`  // of a detector whose low-pass was stated or fitted
+	Name          string                 `json:"axis"`                     // "x", "y" or "z"
+	Orientation   string                 `json:"orientation"`              // "parallel" or "perpendicular" to the surface
+	Mean          Float                  `json:"mean_m"`                   // mean position
+	Wall          Wall                   `json:"wall"`                     // effect of the surface on the drag
+	Drag          Quantity               `json:"drag"`                     // computed, Stokes times wall factor, N s/m
+	Adopted       Adopted                `json:"adopted"`                  // the stiffness to use
+	Estimates     []Estimate             `json:"estimates"`                // in the order of the Leg constants, those of a moving stage last
+	Covariance    Covariance             `json:"covariance"`               // of the logarithms of the estimates
+	CrossCheck    CrossCheck             `json:"cross_check"`              // comparison of the estimates
+	MeasuredDrag  Quantity               `json:"measured_drag"`            // kT / D of the spectrum, N s/m
+	DragRatio     Quantity               `json:"drag_ratio"`               // measured over computed drag, 1
+	Spectrum      Spectrum               `json:"power_spectrum"`           // fit of the spectrum
+	Equipartition Equipartition          `json:"equipartition"`            // variance of the positions, and the potential
+	Displacement  MeanSquareDisplacement `json:"mean_square_displacement"` // fit of the mean-square displacement
+	Trace         Trace                  `json:"trace"`                    // position against time, decimated
+	Driven        *Driven                `json:"driven,omitempty"`         // of the axis that follows a moving stage
+	Free          *FreeBead              `json:"free,omitempty"`           // of a recording with the laser off
+	Background    *Background            `json:"background,omitempty"`     // the noise without a bead, where it was recorded
+	Sensitivity   *Sensitivity           `json:"sensitivity,omitempty"`    // of a recording in detector units
+	Photodiode    *Photodiode            `json:"photodiode,omitempty"`     // of a detector whose low-pass was stated or fitted
 }
 
 // Wall is the effect of the surface on the drag.
@@ -142,7 +142,7 @@ type Wall struct {
 	Factor     Quantity `json:"factor"`      // drag over Stokes drag, 1; used
 	Faxen      Float    `json:"faxen"`       // Faxen's fifth-order value for parallel motion, for comparison; null when perpendicular or far
 	FaxenError Float    `json:"faxen_error"` // (Faxen - exact) / exact
-	Method     string   `json:"method"`
+	Method     string   `json:"method"`      // of the factor, in words
 }
 
 // The names of the stiffness estimates.
@@ -162,17 +162,17 @@ const (
 
 // Estimate is one stiffness estimate.
 type Estimate struct {
-	Leg       string   `json:"leg"`
-	Route     string   `json:"route"`
+	Leg       string   `json:"leg"`       // which estimate: "power_spectrum", "equipartition", "mean_square_displacement" and so on
+	Route     string   `json:"route"`     // "drag" or "amplitude"
 	Stiffness Quantity `json:"stiffness"` // N/m
 }
 
 // Covariance holds the covariance of ln(stiffness) over the legs named, in that
 // order; an entry of a withheld leg is null.
 type Covariance struct {
-	Legs        []string  `json:"legs"`
-	Statistical [][]Float `json:"statistical"`
-	Combined    [][]Float `json:"combined"`
+	Legs        []string  `json:"legs"`        // estimates, in the order of rows and columns
+	Statistical [][]Float `json:"statistical"` // inputs taken as exact
+	Combined    [][]Float `json:"combined"`    // with the stated uncertainties of the inputs
 }
 
 // CrossCheck compares the estimates of one axis.
@@ -183,30 +183,30 @@ type Covariance struct {
 // estimates of the amplitude route with each other; they are nearly one
 // statistic, so agreement there says little.
 type CrossCheck struct {
-	Equality   Test   `json:"equality"`
-	Routes     Test   `json:"routes"`
-	Amplitudes Test   `json:"amplitudes"`
+	Equality   Test   `json:"equality"`         // of all estimates
+	Routes     Test   `json:"routes"`           // of the route through drag and that through amplitude
+	Amplitudes Test   `json:"amplitudes"`       // of the estimates of the amplitude route
 	Driven     *Test  `json:"driven,omitempty"` // driven estimate against drag leg and amplitude of the spectrum
-	Text       string `json:"text"`
+	Text       string `json:"text"`             // what the tests say, for a person
 }
 
 // Test is a chi-square test.
 type Test struct {
-	ChiSquare         Float  `json:"chi_square"` // statistical
-	DegreesOfFreedom  int    `json:"degrees_of_freedom"`
+	ChiSquare         Float  `json:"chi_square"`          // statistical
+	DegreesOfFreedom  int    `json:"degrees_of_freedom"`  // of both chi-squares
 	PValue            Float  `json:"p_value"`             // inputs taken as exact
 	ChiSquareCombined Float  `json:"chi_square_combined"` // with the stated uncertainties of the inputs
-	PValueCombined    Float  `json:"p_value_combined"`    //
+	PValueCombined    Float  `json:"p_value_combined"`    // of it
 	MeanDifference    Float  `json:"log_difference"`      // routes: ln(drag route) - ln(amplitude route)
 	Reason            string `json:"reason,omitempty"`    // why the test could not be made
 }
 
 // Adopted is the stiffness to use.
 type Adopted struct {
-	Stiffness Quantity         `json:"stiffness"`         // N/m; null when withheld, with the reason
-	Basis     string           `json:"basis"`             // which legs it rests on, in words
-	Weights   map[string]Float `json:"weights,omitempty"` // weight of each route in ln(stiffness)
-	Withheld  string           `json:"withheld,omitempty"`
+	Stiffness Quantity         `json:"stiffness"`                          // N/m; null when withheld, with the reason
+	Basis     string           `json:"basis"`                              // which legs it rests on, in words
+	Weights   map[string]Float `json:"weights,omitempty"`                  // weight of each route in ln(stiffness)
+	Withheld  string           `json:"withheld,omitempty"`                 // why there is no adopted stiffness
 	Budget    []BudgetLine     `json:"budget,omitempty"`                   // contributions to the combined standard uncertainty
 	Expanded  *Expanded        `json:"expanded,omitempty"`                 // the combined uncertainty with a coverage factor
 	Halving   string           `json:"to_halve_the_uncertainty,omitempty"` // what to measure better
@@ -223,108 +223,108 @@ type Spectrum struct {
 	NoiseVariance Quantity        `json:"noise_variance"`        // m2; may be negative when it was fitted
 	NoiseOrigin   string          `json:"noise_origin"`          // "stated", "fitted", "stated and fitted", "background and fitted"
 	LeastSquares  LeastSquares    `json:"least_squares"`         // closed-form fit, a check
-	Band          [2]Float        `json:"band_hz"`
-	Excluded      []Excluded      `json:"excluded,omitempty"`
-	Bins          int             `json:"bins"`
-	Goodness      Goodness        `json:"goodness_of_fit"`
-	Points        []SpectrumPoint `json:"points"` // blocked spectrum, for the figure
-	Model         []Point         `json:"model"`  // one-sided fitted spectrum, Hz, m2/Hz, over 0 to half the rate
+	Band          [2]Float        `json:"band_hz"`               // of the fit, lowest and highest frequency
+	Excluded      []Excluded      `json:"excluded,omitempty"`    // ranges left out of the band
+	Bins          int             `json:"bins"`                  // frequencies of the fit
+	Goodness      Goodness        `json:"goodness_of_fit"`       // of the fitted spectrum
+	Points        []SpectrumPoint `json:"points"`                // blocked spectrum, for the figure
+	Model         []Point         `json:"model"`                 // one-sided fitted spectrum, Hz, m2/Hz, over 0 to half the rate
 }
 
 // LeastSquares is the closed-form Lorentzian fit (Berg-Sorensen and Flyvbjerg
 // 2004), which knows nothing of blur, aliasing or noise.
 type LeastSquares struct {
-	Corner    Float  `json:"corner_frequency_hz"`
-	Diffusion Float  `json:"diffusion_coefficient_m2_per_s"`
-	Reason    string `json:"reason,omitempty"`
+	Corner    Float  `json:"corner_frequency_hz"`            // null when there is no fit
+	Diffusion Float  `json:"diffusion_coefficient_m2_per_s"` // null when there is no fit
+	Reason    string `json:"reason,omitempty"`               // why there is none
 }
 
 // Excluded is a range of frequencies left out of the fit.
 type Excluded struct {
-	Range  [2]Float `json:"range_hz"`
-	Reason string   `json:"reason"`
+	Range  [2]Float `json:"range_hz"` // lowest and highest frequency
+	Reason string   `json:"reason"`   // why it was left out
 }
 
 // Goodness is a test of the fitted model against the data.
 type Goodness struct {
-	ChiSquare        Float `json:"chi_square"`
-	DegreesOfFreedom int   `json:"degrees_of_freedom"`
-	PValue           Float `json:"p_value"`
+	ChiSquare        Float `json:"chi_square"`         // of data against model
+	DegreesOfFreedom int   `json:"degrees_of_freedom"` // of it
+	PValue           Float `json:"p_value"`            // probability of a larger one when the model is right
 }
 
 // SpectrumPoint is one block of the one-sided power spectrum.
 type SpectrumPoint struct {
-	Frequency Float `json:"f_hz"`
-	Power     Float `json:"power_m2_per_hz"`
+	Frequency Float `json:"f_hz"`                 // middle of the block
+	Power     Float `json:"power_m2_per_hz"`      // mean over the block
 	Standard  Float `json:"standard_uncertainty"` // of the power, from the model
-	Model     Float `json:"model_m2_per_hz"`
-	Residual  Float `json:"residual"` // in standard uncertainties
-	Bins      int   `json:"bins"`
-	Used      bool  `json:"used"`
+	Model     Float `json:"model_m2_per_hz"`      // the fit, in the same block
+	Residual  Float `json:"residual"`             // in standard uncertainties
+	Bins      int   `json:"bins"`                 // frequencies in the block
+	Used      bool  `json:"used"`                 // in the fit
 }
 
 // Point is one point of a curve.
 type Point struct {
-	X Float `json:"x"`
-	Y Float `json:"y"`
+	X Float `json:"x"` // in the first unit that is given with the curve
+	Y Float `json:"y"` // in the second
 }
 
 // Equipartition is the variance estimate of one axis.
 type Equipartition struct {
-	RawVariance  Float     `json:"raw_variance_m2"` // about the mean line
-	BlurFactor   Float     `json:"blur_factor"`     // S(a), variance kept by the exposure
-	NoiseShare   Float     `json:"noise_share"`     // noise variance over raw variance
-	LengthFactor Float     `json:"length_factor"`   // expected share of the variance that a record of this length shows
-	Variance     Quantity  `json:"variance"`        // corrected, m2
-	EffectiveN   Float     `json:"effective_samples"`
-	Potential    Potential `json:"potential"`
+	RawVariance  Float     `json:"raw_variance_m2"`   // about the mean line
+	BlurFactor   Float     `json:"blur_factor"`       // S(a), variance kept by the exposure
+	NoiseShare   Float     `json:"noise_share"`       // noise variance over raw variance
+	LengthFactor Float     `json:"length_factor"`     // expected share of the variance that a record of this length shows
+	Variance     Quantity  `json:"variance"`          // corrected, m2
+	EffectiveN   Float     `json:"effective_samples"` // independent samples that would tell the variance as well
+	Potential    Potential `json:"potential"`         // from the histogram of the positions
 }
 
 // Potential is the trapping potential from the position histogram.
 type Potential struct {
-	BinWidth   Float          `json:"bin_width_m"`
-	Bins       []HistogramBin `json:"bins"`
-	Gaussian   [2]Float       `json:"gaussian"`      // mean [m] and standard deviation [m] of the recorded positions
-	Curvature  Quantity       `json:"curvature"`     // of the fitted potential at its minimum, N/m, as recorded (blur and noise included)
-	Anharmonic Quantity       `json:"anharmonicity"` // excess kurtosis of the positions, 1
-	Skewness   Quantity       `json:"skewness"`      // 1
-	Reason     string         `json:"reason,omitempty"`
+	BinWidth   Float          `json:"bin_width_m"`      // width of a bin of the histogram
+	Bins       []HistogramBin `json:"bins"`             // in order of position
+	Gaussian   [2]Float       `json:"gaussian"`         // mean [m] and standard deviation [m] of the recorded positions
+	Curvature  Quantity       `json:"curvature"`        // of the fitted potential at its minimum, N/m, as recorded (blur and noise included)
+	Anharmonic Quantity       `json:"anharmonicity"`    // excess kurtosis of the positions, 1
+	Skewness   Quantity       `json:"skewness"`         // 1
+	Reason     string         `json:"reason,omitempty"` // why there is no potential
 }
 
 // HistogramBin is one bin of the position histogram.
 type HistogramBin struct {
-	Centre  Float `json:"x_m"` // relative to the mean
-	Count   int   `json:"count"`
-	Density Float `json:"density_per_m"`
-	Energy  Float `json:"energy_kt"` // -ln(density / peak density); null in an empty bin
-	EnergyU Float `json:"energy_standard_uncertainty_kt"`
+	Centre  Float `json:"x_m"`                            // relative to the mean
+	Count   int   `json:"count"`                          // samples in the bin
+	Density Float `json:"density_per_m"`                  // share of the samples over the width
+	Energy  Float `json:"energy_kt"`                      // -ln(density / peak density); null in an empty bin
+	EnergyU Float `json:"energy_standard_uncertainty_kt"` // of the energy; null in an empty bin
 }
 
 // MeanSquareDisplacement is the MSD estimate of one axis.
 type MeanSquareDisplacement struct {
 	Plateau        Quantity   `json:"plateau"`         // 2 V, blur and noise removed, m2
 	RelaxationTime Quantity   `json:"relaxation_time"` // s
-	Goodness       Goodness   `json:"goodness_of_fit"`
-	Points         []MSDPoint `json:"points"`
-	Model          []Point    `json:"model"` // s, m2
+	Goodness       Goodness   `json:"goodness_of_fit"` // of the fitted curve
+	Points         []MSDPoint `json:"points"`          // in order of lag
+	Model          []Point    `json:"model"`           // s, m2
 }
 
 // MSDPoint is the mean-square displacement at one lag.
 type MSDPoint struct {
-	Lag      Float `json:"lag_s"`
-	MSD      Float `json:"msd_m2"`
-	Standard Float `json:"standard_uncertainty"`
-	Model    Float `json:"model_m2"`
-	Used     bool  `json:"used"` // in the fit
+	Lag      Float `json:"lag_s"`                // time between two positions
+	MSD      Float `json:"msd_m2"`               // mean-square displacement, as recorded
+	Standard Float `json:"standard_uncertainty"` // of it, m2
+	Model    Float `json:"model_m2"`             // the fit at this lag
+	Used     bool  `json:"used"`                 // in the fit
 }
 
 // Trace is the position against time, decimated to minimum and maximum of
 // consecutive stretches.
 type Trace struct {
-	Start Float   `json:"start_s"`
-	Step  Float   `json:"step_s"` // length of a stretch
-	Low   []Float `json:"low_m"`
-	High  []Float `json:"high_m"`
+	Start Float   `json:"start_s"` // time of the first sample
+	Step  Float   `json:"step_s"`  // length of a stretch
+	Low   []Float `json:"low_m"`   // lowest position in each stretch; null without a sample
+	High  []Float `json:"high_m"`  // highest position in each stretch
 }
 
 // The statuses of a verdict.
@@ -352,13 +352,13 @@ const (
 
 // Finding is something that the user should know.
 type Finding struct {
-	Code     string    `json:"code"`
-	Severity string    `json:"severity"`
-	Axis     string    `json:"axis,omitempty"`
-	Text     string    `json:"text"`
-	Remedy   string    `json:"remedy,omitempty"`
-	Value    Float     `json:"value"`     // the number that was judged; null when there is none
-	Limit    Float     `json:"threshold"` // null when there is none
-	Unit     string    `json:"unit,omitempty"`
+	Code     string    `json:"code"`                   // stable name, for beadwell explain
+	Severity string    `json:"severity"`               // "note", "doubtful" or "bad"
+	Axis     string    `json:"axis,omitempty"`         // absent when it is about the whole recording
+	Text     string    `json:"text"`                   // what was found, for a person
+	Remedy   string    `json:"remedy,omitempty"`       // what to do
+	Value    Float     `json:"value"`                  // the number that was judged; null when there is none
+	Limit    Float     `json:"threshold"`              // null when there is none
+	Unit     string    `json:"unit,omitempty"`         // of value and threshold
 	Range    *[2]Float `json:"time_range_s,omitempty"` // where in the recording
 }

@@ -23,7 +23,9 @@ func TestOutputPageIsCurrent(t *testing.T) {
 	}
 	want := string(page)
 	for mark, table := range map[string]string{
-		"keys": keyTables(newGenerator(t)), "columns": columnTable(), "drag": keyTables(generatorOf(t, "drag.go"))} {
+		"keys": keyTables(newGenerator(t)), "columns": columnTable(resultColumns()), "drag": keyTables(generatorOf(t, "drag.go")),
+		"plan": keyTables(newPlanGenerator(t)), "plan columns": columnTable(planColumns),
+		"force": keyTables(newForceGenerator(t)), "force columns": columnTable(forceColumns)} {
 		begin, end := "<!-- "+mark+": made by go test -update -->\n", "<!-- end of "+mark+" -->"
 		before, rest, found := strings.Cut(want, begin)
 		_, after, closed := strings.Cut(rest, end)
@@ -43,11 +45,34 @@ func TestOutputPageIsCurrent(t *testing.T) {
 	}
 }
 
-func columnTable() string {
+// resultColumns are the columns of CSV.
+func resultColumns() [][2]string {
+	var all [][2]string
+	for _, c := range columns {
+		all = append(all, [2]string{c.name, c.meaning})
+	}
+	return all
+}
+
+// No key is without its meaning.
+func TestEveryKeyHasAMeaning(t *testing.T) {
+	for _, g := range []*generator{newGenerator(t), generatorOf(t, "drag.go"), newPlanGenerator(t), newForceGenerator(t)} {
+		for _, name := range g.order {
+			for _, field := range g.structs[name].Fields.List {
+				if oneLine(field.Comment.Text()) == "" {
+					t.Errorf("%s.%s has no comment that says what it is", name, field.Names[0])
+				}
+			}
+		}
+	}
+}
+
+// columnTable lists columns, each with its meaning.
+func columnTable(columns [][2]string) string {
 	var b strings.Builder
 	b.WriteString("| column | meaning |\n| --- | --- |\n")
 	for _, c := range columns {
-		fmt.Fprintf(&b, "| `%s` | %s |\n", c.name, c.meaning)
+		fmt.Fprintf(&b, "| `%s` | %s |\n", c[0], c[1])
 	}
 	return b.String()
 }
@@ -85,8 +110,8 @@ func typeName(expression ast.Expr) string {
 			return "text"
 		}
 		return typeLink(e.Name)
-	case *ast.SelectorExpr:
-		return typeLink(e.Sel.Name)
+	case *ast.SelectorExpr: // calib.Float
+		return typeName(e.Sel)
 	case *ast.StarExpr:
 		return typeName(e.X)
 	case *ast.ArrayType:

@@ -14,7 +14,7 @@ const DragVersion = "beadwell-drag/1"
 
 // Drag is the drag of a bead in a fluid at some heights, in SI units.
 type Drag struct {
-	Schema        string         `json:"schema"`
+	Schema        string         `json:"schema"`          // layout of this object, with its version
 	Fluid         string         `json:"fluid,omitempty"` // absent when the viscosity was stated
 	Source        string         `json:"source"`          // of the viscosity
 	Diameter      calib.Quantity `json:"diameter"`        // m
@@ -24,7 +24,7 @@ type Drag struct {
 	ThermalEnergy calib.Quantity `json:"thermal_energy"`  // kT, J
 	Stokes        calib.Quantity `json:"stokes_drag"`     // N s/m
 	Stiffness     calib.Quantity `json:"stiffness"`       // N/m; null when none was given
-	Rows          []DragRow      `json:"rows"`
+	Rows          []DragRow      `json:"rows"`            // one for each height and direction
 }
 
 // DragRow is the drag at one height in one direction.

@@ -16,18 +16,18 @@ const ForceVersion = "beadwell-force/1"
 
 // Force is the summary of the forces of one recording.
 type Force struct {
-	Schema      string               `json:"schema"`
-	Program     calib.Program        `json:"program"`
+	Schema      string               `json:"schema"`            // layout of this object, with its version
+	Program     calib.Program        `json:"program"`           // what made the forces
 	Created     string               `json:"created,omitempty"` // RFC 3339; the only field that depends on the clock
 	Input       calib.Input          `json:"input"`             // the recording
 	Calibration calib.Input          `json:"calibration"`       // the recording that was calibrated
 	Verdict     calib.Verdict        `json:"verdict"`           // on the calibration
 	Centre      string               `json:"centre"`            // how the centre was found, in words
-	Rate        calib.Float          `json:"rate_hz"`
-	Start       calib.Float          `json:"start_s"` // time of the first sample
-	Duration    calib.Float          `json:"duration_s"`
-	Axes        []calib.ForceSummary `json:"axes"`
-	Findings    []calib.Finding      `json:"findings"` // never null
+	Rate        calib.Float          `json:"rate_hz"`           // sampling rate
+	Start       calib.Float          `json:"start_s"`           // time of the first sample
+	Duration    calib.Float          `json:"duration_s"`        // samples over rate
+	Axes        []calib.ForceSummary `json:"axes"`              // one for each axis, in the order of the recording
+	Findings    []calib.Finding      `json:"findings"`          // never null
 }
 
 // forceUnit is the unit in which forces are printed.
@@ -99,6 +99,19 @@ func inUnit(f calib.Float, factor float64) string {
 	return strconv.FormatFloat(float64(f)*factor, 'g', 3, 64)
 }
 
+// anyAxis stands in the name of a column for x, y or z.
+const anyAxis = "AXIS"
+
+// forceColumns are the columns of ForceCSV, each with its meaning: the time, then those of
+// each axis.
+var forceColumns = [][2]string{
+	{"time_s", "time of the sample, on the clock of the recording; from 0 when it has no time column"},
+	{anyAxis + "_displacement_m", "position minus the centre of the trap; empty for a missing sample, and so are those that follow"},
+	{anyAxis + "_force_N", "stiffness times displacement: the force that holds the bead there, positive towards positive positions"},
+	{anyAxis + "_force_noise_u_N", "standard uncertainty of the force by localisation noise, independent in each sample; empty when the noise is not known"},
+	{anyAxis + "_force_calibration_u_N", "standard uncertainty by stiffness and centre, one error that all samples share"},
+}
+
 // ForceCSV writes the forces, one row a sample, in SI units: the time of the sample, and for each axis displacement, force, the standard uncertainty of the force by
 // localisation noise (independent in each sample), and by stiffness and centre (one error
 // that all samples share). What is missing or not known is an empty cell. It writes as it
@@ -107,10 +120,11 @@ func inUnit(f calib.Float, factor float64) string {
 // uncertainties 4.
 func ForceCSV(w io.Writer, start, rate float64, traces []calib.ForceTrace) error {
 	out := bufio.NewWriterSize(w, 1<<16)
-	out.WriteString("time_s") // errors stay until Flush
+	out.WriteString(forceColumns[0][0]) // errors stay until Flush
 	for _, t := range traces {
-		axis := t.Trap.Axis
-		fmt.Fprintf(out, ",%s_displacement_m,%s_force_N,%s_force_noise_u_N,%s_force_calibration_u_N", axis, axis, axis, axis)
+		for _, c := range forceColumns[1:] {
+			out.WriteString("," + strings.Replace(c[0], anyAxis, t.Trap.Axis, 1))
+		}
 	}
 	out.WriteString("\n")
 	samples := 0

@@ -173,16 +173,31 @@ func findingLine(f calib.Finding) string {
 	return line
 }
 
-// planColumns are the columns of PlanCSV.
-var planColumns = []string{"sweep", "duration_s", "rate_Hz", "samples", "drag_statistical", "drag_combined", "amplitude_statistical", "amplitude_combined",
-	"both_statistical", "both_combined", "drift_m"}
+// planColumns are the columns of PlanCSV, each with its meaning.
+var planColumns = [][2]string{
+	{"sweep", "duration: one of several durations at the planned rate; rate: one of several rates at the duration of `rates`"},
+	{"duration_s", "duration of the recording"},
+	{"rate_Hz", "sampling rate"},
+	{"samples", "number of samples"},
+	{"drag_statistical", "relative standard uncertainty of the stiffness through drag, inputs taken as exact"},
+	{"drag_combined", "the same with the stated uncertainties of the inputs"},
+	{"amplitude_statistical", "that through amplitude, inputs taken as exact"},
+	{"amplitude_combined", "the same with the stated uncertainties of the inputs"},
+	{"both_statistical", "that of both routes combined, inputs taken as exact"},
+	{"both_combined", "the same with the stated uncertainties of the inputs"},
+	{"drift_m", "root mean square of a drift, other than a straight line, that moves the amplitude route by its statistical uncertainty; empty for rates"},
+}
 
 // PlanCSV writes a row for each duration and each sampling rate; uncertainties are
 // relative standard ones of the stiffness, empty where the recording does not
 // determine it.
 func PlanCSV(w io.Writer, plan *calib.Plan) error {
 	out := csv.NewWriter(w)
-	out.Write(planColumns) // errors stay until Flush
+	names := make([]string, len(planColumns))
+	for i, c := range planColumns {
+		names[i] = c[0]
+	}
+	out.Write(names) // errors stay until Flush
 	write := func(sweep string, duration, rate calib.Float, samples int, r calib.PlanRoutes, drift calib.Float) {
 		cells := []string{sweep, exactCell(duration), exactCell(rate), strconv.Itoa(samples)}
 		for _, u := range []calib.PlanUncertainty{r.Drag, r.Amplitude, r.Both} {

@@ -64,6 +64,43 @@ type generator struct {
 // newGenerator reads the type calib.Result and the types that it is made of.
 func newGenerator(t *testing.T) *generator {
 	t.Helper()
+	g := calibTypes(t)
+	g.keep("Result")
+	return g
+}
+
+// newPlanGenerator reads the type calib.Plan and what it is made of beyond the types of a result.
+func newPlanGenerator(t *testing.T) *generator {
+	t.Helper()
+	g := calibTypes(t)
+	g.keepBeside("Plan", newGenerator(t).order)
+	return g
+}
+
+// newForceGenerator does the same for the type Force.
+func newForceGenerator(t *testing.T) *generator {
+	t.Helper()
+	g := generatorOf(t, "force.go", filepath.Join(resultSource, "force_trace.go"))
+	g.keepBeside("Force", newGenerator(t).order)
+	return g
+}
+
+// keep drops the types that name does not hold.
+func (g *generator) keep(name string) {
+	used := map[string]bool{}
+	g.reach(name, used)
+	g.order = slices.DeleteFunc(g.order, func(name string) bool { return !used[name] })
+}
+
+// keepBeside does so too, and drops those that are described elsewhere.
+func (g *generator) keepBeside(name string, elsewhere []string) {
+	g.keep(name)
+	g.order = slices.DeleteFunc(g.order, func(name string) bool { return slices.Contains(elsewhere, name) })
+}
+
+// calibTypes reads all types of package calib, those of result.go first.
+func calibTypes(t *testing.T) *generator {
+	t.Helper()
 	paths, err := filepath.Glob(filepath.Join(resultSource, "*.go"))
 	if err != nil {
 		t.Fatal(err)
@@ -73,11 +110,7 @@ func newGenerator(t *testing.T) *generator {
 	slices.SortStableFunc(paths, func(a, b string) int {
 		return strings.Compare(strings.TrimPrefix(a, first), strings.TrimPrefix(b, first))
 	})
-	g := generatorOf(t, paths...)
-	used := map[string]bool{}
-	g.reach("Result", used)
-	g.order = slices.DeleteFunc(g.order, func(name string) bool { return !used[name] })
-	return g
+	return generatorOf(t, paths...)
 }
 
 // reach marks a type and all that it holds.
@@ -88,6 +121,9 @@ func (g *generator) reach(name string, used map[string]bool) {
 	used[name] = true
 	for _, field := range g.structs[name].Fields.List {
 		ast.Inspect(field.Type, func(n ast.Node) bool {
+			if selected, ok := n.(*ast.SelectorExpr); ok { // calib.Input
+				n = selected.Sel
+			}
 			if id, ok := n.(*ast.Ident); ok {
 				g.reach(id.Name, used)
 			}
