@@ -14,6 +14,7 @@ import (
 	"fmt"
 	"math"
 	"runtime"
+	"slices"
 	"strings"
 	"sync"
 
@@ -25,7 +26,7 @@ import (
 type Options struct {
 	// Use is UseGood to calibrate only the longest part without what is bad. Empty: all.
 	Use string
-	// Adopt names the route to adopt, RouteDrag or RouteAmplitude, whatever the
+	// Adopt names the route to adopt, one of AdoptWords, whatever the
 	// cross-check says. Empty: the combination, withheld when the routes disagree.
 	Adopt string
 	// MonteCarlo asks for a propagation of distributions through the adopted stiffness.
@@ -33,9 +34,15 @@ type Options struct {
 	// Background is a recording without a bead, or with a stuck one, in the same unit and at the same rate: where no noise is stated it
 	// gives the noise, and its lines are left out of the fit. Nil: none.
 	Background *track.Recording
+	// FreeBead are recordings of the same bead with the laser off, whose drag stands beside the computed one. Nil: none.
+	FreeBead []*FreeBeadDrag
 	// Program and its version, and the command line, for the record.
 	Program Program
 }
+
+// AdoptWords are the routes that can be adopted whatever the cross-check says: drag, by that of the free bead
+// too where there is one; amplitude; drag by that of the free bead alone.
+var AdoptWords = []string{RouteDrag, RouteAmplitude, RouteFreeBead}
 
 // choices returns what of the options a result records; nil when nothing was chosen.
 func (o Options) choices() *Choices {
@@ -73,8 +80,8 @@ func (e *DataError) Error() string {
 // calibrateAll calibrates the whole of a recording; it leaves in seen what is needed to
 // go on from there.
 func calibrateAll(ctx context.Context, rec *track.Recording, set *session.Settings, opt Options, seen *pass) (*Result, error) {
-	if opt.Adopt != "" && opt.Adopt != RouteDrag && opt.Adopt != RouteAmplitude {
-		return nil, &SettingError{Key: "adopt", Problem: fmt.Sprintf("%q is neither %q nor %q", opt.Adopt, RouteDrag, RouteAmplitude)}
+	if opt.Adopt != "" && !slices.Contains(AdoptWords, opt.Adopt) {
+		return nil, &SettingError{Key: "adopt", Problem: fmt.Sprintf("%q is none of %s", opt.Adopt, strings.Join(AdoptWords, ", "))}
 	}
 	role := roleOf(set)
 	if role == RoleBackground {

@@ -28,6 +28,7 @@ func (w *work) describe() {
 	w.describeDriven()
 	w.describeSensitivity()
 	w.describePhotodiode()
+	w.describeFree()
 	if w.background != nil {
 		x.Background = w.background.describe(w.perUnit, "m")
 	}
@@ -45,8 +46,8 @@ func (w *work) describeDrag() {
 		}
 	}
 	x.Wall = Wall{Factor: input(factor, u*factor, "1"), Faxen: Float(p.wall.Faxen), FaxenError: Float(p.wall.FaxenError), Method: p.wall.Method}
-	gg, _, _ := p.systematics()
-	x.Drag = input(p.gamma, math.Sqrt(gg)*p.gamma, "N s/m")
+	computed, u := w.computedDrag()
+	x.Drag = input(computed, u*computed, "N s/m")
 	if !x.CrossCheck.Routes.PValue.Known() {
 		reason := x.CrossCheck.Routes.Reason
 		x.MeasuredDrag, x.DragRatio = Withheld("N s/m", reason), Withheld("1", reason)
@@ -59,6 +60,18 @@ func (w *work) describeDrag() {
 	measured := math.Log(p.gamma) + ratio
 	x.MeasuredDrag = exponential(measured, sd, o, math.Hypot(sd, math.Sqrt(aa)), o.Widened(math.Sqrt(aa)), "N s/m")
 	x.DragRatio = exponential(ratio, sd, o, math.Hypot(sd, w.pooled.u), o.Widened(w.pooled.u), "1")
+}
+
+// computedDrag is Stokes drag times wall factor [N s/m] with its relative standard uncertainty.
+func (w *work) computedDrag() (value, u float64) {
+	if w.free != nil {
+		for _, g := range w.free.base {
+			u = math.Hypot(u, g)
+		}
+		return w.free.computed, u
+	}
+	gg, _, _ := w.phys.systematics()
+	return w.phys.gamma, math.Sqrt(gg)
 }
 
 func (w *work) covarianceTable() Covariance {

@@ -55,6 +55,9 @@ func (r *Result) Trap(axis, estimate string) (Trap, error) {
 	}
 	t := Trap{Axis: axis, Estimate: estimate, Stiffness: a.Adopted.Stiffness, Noise: math.NaN(), Corner: math.NaN(), Linear: linear(a.Equipartition.Potential, float64(r.Medium.ThermalEnergy.Value))}
 	lengthPower := -2 * float64(a.Adopted.Weights[RouteAmplitude]) // d ln(stiffness)/d ln(length scale)
+	if f := a.FreeDrag; f != nil {
+		lengthPower += float64(a.Adopted.Weights[RouteDrag] * f.Share * f.LengthPower)
+	}
 	if estimate != EstimateAdopted {
 		at := slices.IndexFunc(a.Estimates, func(e Estimate) bool { return e.Leg == estimate })
 		if at < 0 {
@@ -63,6 +66,9 @@ func (r *Result) Trap(axis, estimate string) (Trap, error) {
 		t.Stiffness, lengthPower = a.Estimates[at].Stiffness, 0
 		if a.Estimates[at].Route == RouteAmplitude {
 			lengthPower = -2
+		}
+		if estimate == LegFreeDrag {
+			lengthPower = float64(a.FreeDrag.LengthPower)
 		}
 	}
 	if !(t.Stiffness.Value > 0) {

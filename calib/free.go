@@ -49,10 +49,9 @@ func calibrateFree(ctx context.Context, rec *track.Recording, set *session.Setti
 
 // runFree estimates the diffusion of one axis.
 func (w *work) runFree() error {
-	o := relaxation.FreeOptions{Interval: 1 / w.rate, Exposure: w.exposure}
-	fit, err := w.fitFree(o)
+	fit, ratio, err := w.measureFree()
 	if err != nil {
-		return w.dataError(err, "record longer or faster; state the localisation noise with --noise if the bead hardly moves between samples")
+		return err
 	}
 	w.axis = blankAxis(w, noTrap)
 	x, p := &w.axis, w.phys
@@ -65,7 +64,6 @@ func (w *work) runFree() error {
 		return math.Hypot(fit.LogTotal, u), stat.Widened(math.Hypot(extra, u))
 	}
 	value := math.Log(fit.Diffusion)
-	ratio := math.Log(p.kT/p.gamma) - value // measured over computed drag
 	gg, _, aa := p.systematics()
 	gamma := math.Sqrt(gg)
 	x.Drag = input(p.gamma, gamma*p.gamma, "N s/m")
@@ -95,6 +93,15 @@ func (w *work) runFree() error {
 		100*math.Abs(math.Expm1(ratio)), relation, pText(float64(f.Test.PValue)), pText(float64(f.Test.PValueCombined)))
 	x.CrossCheck.Text = f.Text
 	return nil
+}
+
+// measureFree fits the diffusion, and gives the logarithm of the measured over the computed drag.
+func (w *work) measureFree() (fit relaxation.FreeFit, ratio float64, err error) {
+	fit, err = w.fitFree(relaxation.FreeOptions{Interval: 1 / w.rate, Exposure: w.exposure})
+	if err != nil {
+		return fit, 0, w.dataError(err, "record longer or faster; state the localisation noise with --noise if the bead hardly moves between samples")
+	}
+	return fit, math.Log(w.phys.kT/w.phys.gamma) - math.Log(fit.Diffusion), nil
 }
 
 // ratioU is the uncertainty of ln(measured/computed drag) by the inputs.

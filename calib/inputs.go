@@ -22,6 +22,7 @@ type influence struct {
 	drag   float64 // d ln gamma
 	energy float64 // d ln kT
 	length float64 // d ln(recorded length)
+	apart  bool    // it acts on the drag by another recording alone
 }
 
 // physics is what is computed for one axis before its record is looked at.

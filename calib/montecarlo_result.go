@@ -94,6 +94,9 @@ func newMonteCarlo(r *Result, works []*work) *monteCarlo {
 		if len(r.Axes[i].Adopted.Budget) == 0 { // withheld, or not from a model of these inputs
 			continue
 		}
+		if w.adopter != nil {
+			w = w.adopter
+		}
 		w.axis.Adopted = r.Axes[i].Adopted
 		m.works = append(m.works, w)
 		for _, in := range w.phys.influences {
@@ -110,6 +113,9 @@ func newMonteCarlo(r *Result, works []*work) *monteCarlo {
 
 // sharedName names an input so that axes which share it have the same name for it.
 func (w *work) sharedName(in influence) string {
+	if in.name == freeStatistics {
+		return in.name + " " + w.axisName
+	}
 	if in.name == wallModel && !w.phys.parallel {
 		return in.name + " perpendicular" // the two solutions err on their own
 	}
@@ -131,7 +137,7 @@ func (m *monteCarlo) draw(rng *rand.Rand, out []float64) bool {
 			return false
 		}
 		noise, moved := w.onRecord()
-		change := drag*(friction-math.Log(w.phys.gamma)) + (1-drag)*(energy-math.Log(w.phys.kT)-2*math.Log(scale))
+		change := drag*w.frictionChange(friction, e, m.names) + (1-drag)*(energy-math.Log(w.phys.kT)-2*math.Log(scale))
 		for k, by := range moved {
 			change += by * e[m.common+k]
 		}
@@ -158,6 +164,9 @@ func (w *work) drawn(e []float64, names map[string]int) (c conditions, scale flo
 	c, scale = w.phys.conditions(), 1
 	kelvin := c.temperature
 	for _, in := range w.phys.influences {
+		if in.apart {
+			continue
+		}
 		z := e[names[w.sharedName(in)]]
 		relative := 0.0
 		if in.base > 0 {

@@ -132,6 +132,7 @@ type Axis struct {
 	Trace         Trace                  `json:"trace"`                    // position against time, decimated
 	Driven        *Driven                `json:"driven,omitempty"`         // of the axis that follows a moving stage
 	Free          *FreeBead              `json:"free,omitempty"`           // of a recording with the laser off
+	FreeDrag      *FreeDrag              `json:"free_drag,omitempty"`      // of a trapped recording: what one with the laser off says of its drag
 	Background    *Background            `json:"background,omitempty"`     // the noise without a bead, where it was recorded
 	Sensitivity   *Sensitivity           `json:"sensitivity,omitempty"`    // of a recording in detector units
 	Photodiode    *Photodiode            `json:"photodiode,omitempty"`     // of a detector whose low-pass was stated or fitted
@@ -186,6 +187,7 @@ type CrossCheck struct {
 	Equality   Test   `json:"equality"`         // of all estimates
 	Routes     Test   `json:"routes"`           // of the route through drag and that through amplitude
 	Amplitudes Test   `json:"amplitudes"`       // of the estimates of the amplitude route
+	Free       *Test  `json:"free,omitempty"`   // drag of the free bead against the computed one and the one measured in the trap
 	Driven     *Test  `json:"driven,omitempty"` // driven estimate against drag leg and amplitude of the spectrum
 	Text       string `json:"text"`             // what the tests say, for a person
 }

@@ -16,11 +16,15 @@ const familyLevel = 0.005
 func (r *Result) judge(works []*work, opt Options) {
 	lowest, tested := 1.0, 0
 	var worst *work
+	said := "" // of the worst
 	for _, w := range works {
 		c := w.axis.CrossCheck
 		tests := []Test{c.Equality}
 		if c.Driven != nil {
 			tests = append(tests, *c.Driven)
+		}
+		if c.Free != nil {
+			tests = append(tests, *c.Free)
 		}
 		for _, t := range tests {
 			p := float64(t.PValueCombined)
@@ -29,7 +33,10 @@ func (r *Result) judge(works []*work, opt Options) {
 			}
 			tested++
 			if p <= lowest {
-				lowest, worst = p, w
+				lowest, worst, said = p, w, c.Text
+				if c.Free != nil && t == *c.Free {
+					said = w.axis.FreeDrag.Text
+				}
 			}
 		}
 	}
@@ -62,12 +69,15 @@ func (r *Result) judge(works []*work, opt Options) {
 	}
 	v.Status = Inconsistent
 	v.Text = "The estimates disagree: do not use this calibration before the cause is found."
-	v.Reason = fmt.Sprintf("axis %s: %s; family-wise %s, inconsistent below %g", worst.axisName, worst.axis.CrossCheck.Text, pText(float64(v.FamilyWiseP)), familyLevel)
+	v.Reason = fmt.Sprintf("axis %s: %s; family-wise %s, inconsistent below %g", worst.axisName, said, pText(float64(v.FamilyWiseP)), familyLevel)
 	if opt.Adopt != "" {
 		return
 	}
 	for i := range r.Axes {
 		reason := "the drag route and the amplitude route disagree; --adopt drag or --adopt amplitude takes one of them"
+		if r.Axes[i].FreeDrag != nil {
+			reason = "computed drag, drag of the free bead and amplitude disagree; --adopt drag, --adopt free-bead or --adopt amplitude takes one of them"
+		}
 		a := &r.Axes[i].Adopted
 		a.Stiffness, a.Withheld = Withheld("N/m", reason), reason
 		a.Basis, a.Weights, a.Budget = "", nil, nil
@@ -130,7 +140,7 @@ func (r *Result) collectFindings(set *session.Settings, works []*work) {
 	}
 	r.settingFindings(set, works)
 	for _, w := range works {
-		for _, f := range w.findings() {
+		for _, f := range append(w.findings(), w.freeFindings()...) {
 			add(f)
 		}
 	}

@@ -38,6 +38,9 @@ type work struct {
 	sensitivityOrigin string
 	drive             *drive // of the axis that follows a moving stage; nil for others
 	reply             response
+	free              *carried // drag of the free bead; nil without one
+	freeUnused        []string // recordings of it that say nothing, with the reason
+	adopter           *work    // the work by whose drag the stiffness was adopted; nil: itself
 
 	record        *psd.Record
 	fit           *psd.Fit
@@ -73,6 +76,11 @@ func newWork(rec *track.Recording, index int, set *session.Settings, opt Options
 		return nil, err
 	}
 	w.setNoise()
+	w.carry()
+	if opt.Adopt == RouteFreeBead && w.free == nil {
+		return nil, &SettingError{Key: "adopt", Axis: a.Name, Problem: fmt.Sprintf("is %q, but no recording of the free bead gives its drag", opt.Adopt),
+			Remedy: "name one with --free-bead, or give its row in tracks.csv the role free"}
+	}
 	return w, w.setBackground()
 }
 
@@ -181,13 +189,14 @@ func (w *work) settle() {
 	case w.takesDrag():
 		w.withholdAmplitude()
 		w.opt.Adopt = RouteDrag
-		w.adopt()
+		w.adoptWithFree()
 	case w.scaledByDrive():
 		w.withholdScaled()
 		w.adoptDriven()
 	default:
 		w.compare()
-		w.adopt()
+		w.compareFree()
+		w.adoptWithFree()
 	}
 }
 

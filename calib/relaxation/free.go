@@ -160,6 +160,10 @@ type freeState struct {
 	weight   float64 // its inverse variance
 }
 
+// logEvery is the number of innovation variances whose product is taken before its logarithm, which costs more than all the
+// rest: they are of order one, and far from what overflows at this power.
+const logEvery = 16
+
 // evaluate runs the innovations of the displacements and of a constant through the same filter.
 func (f *freeProblem) evaluate(p [2]float64) freeState {
 	r0, r1 := f.covariance(p)
@@ -168,6 +172,7 @@ func (f *freeProblem) evaluate(p [2]float64) freeState {
 	var da, db, dc, dlog [2]float64
 	for _, run := range f.runs {
 		v, ed, eu := r0, 0.0, 0.0
+		product := 1.0 // of the variances since the last logarithm
 		dv, ded, deu := s0, [2]float64{}, [2]float64{}
 		for i, d := range run {
 			gain := 0.0
@@ -186,7 +191,12 @@ func (f *freeProblem) evaluate(p [2]float64) freeState {
 			a += ed * ed / v
 			b += ed * eu / v
 			c += eu * eu / v
-			log += math.Log(v)
+			if !(v > 0) { // no covariance
+				log = math.NaN()
+			}
+			if product *= v; i%logEvery == 0 {
+				log, product = log+math.Log(product), 1
+			}
 			for k := range dv {
 				da[k] += (2*ed*ded[k] - ed*ed*dv[k]/v) / v
 				db[k] += (ded[k]*eu + ed*deu[k] - ed*eu*dv[k]/v) / v
@@ -194,6 +204,7 @@ func (f *freeProblem) evaluate(p [2]float64) freeState {
 				dlog[k] += dv[k] / v
 			}
 		}
+		log += math.Log(product)
 	}
 	s := freeState{velocity: b / c, weight: c, value: -(log + math.Log(c) + a - b*b/c) / 2}
 	for k := range s.gradient {

@@ -31,8 +31,8 @@ func TestLoadFull(t *testing.T) {
 		}
 	}
 	places := map[string]string{
-		"bead.diameter|": "3:12", "medium.temperature|": "8:15", "recording.noise|y": "17:30", "recording.columns|stage": "18:51",
-		"detector.alpha|": "25:9", "fit.exclude|": "29:1",
+		"bead.diameter|": "3:12", "medium.temperature|": "8:15", "recording.noise|y": "18:30", "recording.columns|stage": "19:51",
+		"detector.alpha|": "27:9", "fit.exclude|": "31:1",
 	}
 	for key, want := range places {
 		name, axis, _ := strings.Cut(key, "|")

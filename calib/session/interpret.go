@@ -194,8 +194,15 @@ func plainText(key Key, text string, origin Origin) (string, *quantity.Error) {
 	switch {
 	case key.Name == "medium.fluid":
 		return fluid(text)
-	case key.Name == "recording.background" && origin != FromFlag:
+	case origin == FromFlag:
+	case key.Name == "recording.background":
 		return text, localPath(text)
+	case key.Name == "recording.free_bead":
+		for _, path := range (Setting{Word: text}).Files() {
+			if problem := localPath(path); problem != nil {
+				return "", problem
+			}
+		}
 	}
 	return text, nil
 }

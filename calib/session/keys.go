@@ -77,6 +77,9 @@ var registry = []Key{
 	{Name: "chamber.depth", Flag: "depth", Dimensions: dims(quantity.Length), Limits: "10 nm to 100 mm",
 		Placeholder: "110 um", Meaning: "from surface to surface, when the second one matters"},
 
+	{Name: "chamber.height_scale", Flag: "height-scale", Dimensions: dims(quantity.Dimensionless), Words: []string{"fit"}, Limits: "0.1 to 10",
+		Placeholder: "0.82(2)", Meaning: "travel of the bead over travel of the stage, where heights are stage readings; for series over heights, which assume 1 without it"},
+
 	{Name: "recording.rate", Flag: "rate", Dimensions: dims(quantity.Frequency), Limits: "0.001 Hz to 1 GHz", Stated: true,
 		Placeholder: "2 kHz", Meaning: "sampling rate, when the file has no time column"},
 	{Name: "recording.exposure", Flag: "exposure", Dimensions: dims(quantity.Time), Limits: "0 s to 1000 s", bareZero: true, PerAxis: true, Axes: spatial,
@@ -91,6 +94,8 @@ var registry = []Key{
 		Placeholder: "4(1) nm", Meaning: "standard deviation of the localisation noise, if known"},
 	{Name: "recording.background", Flag: "background", Form: Text,
 		Placeholder: "stuck.csv", Meaning: "recording without a bead, or with a stuck one, that holds the noise"},
+	{Name: "recording.free_bead", Flag: "free-bead", Form: Text, Words: []string{"none"},
+		Placeholder: "free.csv", Meaning: "recordings of the same bead with the laser off, separated by semicolons, whose drag is used beside the computed one; else those of the role free in the track list"},
 	{Name: "recording.columns", Flag: "columns", Form: Text, PerAxis: true, Axes: columns, AxisOnly: true,
 		Placeholder: "time=t, x=X, y=Y", Meaning: "names or numbers (from 1) of the columns"},
 	{Name: "recording.sensitivity", Flag: "sensitivity", PerAxis: true, Axes: spatial, Stated: true,

@@ -23,6 +23,17 @@ type Setting struct {
 	Assumed bool           // a default that changes the answer
 }
 
+// Files are the paths that a setting names, separated by semicolons.
+func (s Setting) Files() []string {
+	var files []string
+	for part := range strings.SplitSeq(s.Word, ";") {
+		if part = strings.TrimSpace(part); part != "" {
+			files = append(files, part)
+		}
+	}
+	return files
+}
+
 // slot is a setting's place: a key, and the axis it is for.
 type slot struct{ key, axis string }
 

@@ -10,7 +10,8 @@ import (
 type Tracks struct {
 	Rows []Row
 
-	index map[recording]int // where in Rows
+	index  map[recording]int // where in Rows
+	byFile map[string][]int  // the same by file
 }
 
 // recording is what a row is about.
@@ -40,6 +41,18 @@ func (t *Tracks) Row(file, bead string) (Row, bool) {
 	return Row{}, false
 }
 
+// RowsOf returns all rows of a file. A nil list has no rows.
+func (t *Tracks) RowsOf(file string) []Row {
+	if t == nil {
+		return nil
+	}
+	var rows []Row
+	for _, i := range t.byFile[path.Clean(filepath.ToSlash(file))] {
+		rows = append(rows, t.Rows[i])
+	}
+	return rows
+}
+
 // LoadTracks reads a track list: a table with the columns file, note, role and any
 // settings, by short name (height), by full name (chamber.height), and with
 // an axis (noise.x). A column may carry its unit, as in height (um), for cells
@@ -63,7 +76,7 @@ func ReadTracks(name string, data []byte) (*Tracks, error) {
 	if err != nil {
 		return nil, err
 	}
-	l := list{name: name, base: filepath.Base(name), commas: table.delimiter != ',', tracks: &Tracks{index: map[recording]int{}}}
+	l := list{name: name, base: filepath.Base(name), commas: table.delimiter != ',', tracks: &Tracks{index: map[recording]int{}, byFile: map[string][]int{}}}
 	l.header(table.rows[0])
 	if len(l.problems) > 0 {
 		return nil, joined(l.problems)
@@ -137,6 +150,7 @@ func (l *list) row(cells []cell) {
 	}
 	l.problems = append(l.problems, checkPairs(row.Settings)...)
 	l.tracks.index[about] = len(l.tracks.Rows)
+	l.tracks.byFile[row.File] = append(l.tracks.byFile[row.File], len(l.tracks.Rows))
 	l.tracks.Rows = append(l.tracks.Rows, row)
 }
 

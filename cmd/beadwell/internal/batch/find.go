@@ -28,7 +28,7 @@ type Growing struct{ Path, Note string }
 var endings = []string{".csv", ".tsv", ".txt", ".dat", ".asc", ".npy"}
 
 // Find lists the recordings that the arguments name: files as they are, folders by what
-// looks like a recording in them (with below, in their folders too), and patterns that
+// looks like a recording in them or stands in their track list (with below, in their folders too), and patterns that
 // the shell left as they were. Results of earlier runs are not looked into.
 //
 // The error names the first argument that is not there.
@@ -90,7 +90,22 @@ func (f *Found) folder(folder string, below bool) error {
 			f.Aside = append(f.Aside, path)
 		}
 	}
+	f.listed(folder)
 	return nil
+}
+
+// listed adds the recordings that the track list of a folder names, whatever their ending, those too that are not there:
+// they have a row in the summary.
+func (f *Found) listed(folder string) {
+	tracks, err := session.LoadTracks(filepath.Join(folder, session.TracksName))
+	if err != nil { // whoever reads the settings of the folder tells of it
+		return
+	}
+	for _, row := range tracks.Rows {
+		path := filepath.Join(folder, filepath.FromSlash(row.File))
+		f.Paths = append(f.Paths, path)
+		f.Aside = slices.DeleteFunc(f.Aside, func(aside string) bool { return aside == path })
+	}
 }
 
 // isResults tells whether a folder is the output of an earlier run.

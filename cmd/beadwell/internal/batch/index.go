@@ -82,7 +82,7 @@ func (s *Summary) axes() []string {
 }
 
 func indexRowOf(row Row, axes []string) indexRow {
-	out := indexRow{File: report.Plain(row.File), Status: row.Status, Reason: report.PlainLines(row.Reason)}
+	out := indexRow{File: report.Plain(row.File), Status: row.word(), Reason: report.PlainLines(row.Reason)}
 	if row.Bead != "" {
 		out.File += ", bead " + report.Plain(row.Bead)
 	}
@@ -97,7 +97,7 @@ func indexRowOf(row Row, axes []string) indexRow {
 	}
 	for _, name := range axes {
 		text := "-"
-		if axis, has := row.axis(name); has {
+		if axis, has := row.axis(name); has && row.holdsTrap() {
 			text = shown(float64(axis.Stiffness.Value), float64(axis.Stiffness.Combined), "pN/um")
 			if text == "-" {
 				text = "withheld"

@@ -132,8 +132,8 @@ func hexSum(content []byte) string {
 	return hex.EncodeToString(sum[:])
 }
 
-// fileSum is the SHA-256 of a file; empty when it cannot be read.
-func fileSum(path string) string {
+// FileSum is the SHA-256 of a file; empty when it cannot be read.
+func FileSum(path string) string {
 	file, err := os.Open(path)
 	if err != nil {
 		return ""

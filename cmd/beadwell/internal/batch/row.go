@@ -2,6 +2,7 @@ package batch
 
 import (
 	"math"
+	"slices"
 
 	"beadwell/calib"
 	"beadwell/cmd/beadwell/internal/report"
@@ -13,11 +14,15 @@ const (
 	SetAside = "set aside" // a recording of another role, or one that is still being written
 )
 
+// FitWord as the height scale asks for it to be fitted.
+const FitWord = "fit"
+
 // Row is one recording in the summary: one bead of one file.
 type Row struct {
 	File        string          `json:"file"`
 	Bead        string          `json:"bead,omitempty"`
-	Status      string          `json:"status"` // a verdict, "failed" or "set aside"
+	Role        string          `json:"role,omitempty"` // of the recording, where there is a result
+	Status      string          `json:"status"`         // a verdict, "failed" or "set aside"
 	Reason      string          `json:"reason,omitempty"`
 	Folder      string          `json:"folder,omitempty"` // of its outputs, in the folder of results
 	Report      string          `json:"report,omitempty"` // its report, or its result, in the folder of results
@@ -25,11 +30,16 @@ type Row struct {
 	Problem     *report.Problem `json:"problem,omitempty"`
 	Diameter    Number          `json:"diameter_m"`
 	Height      Number          `json:"height_m"`
-	Power       Number          `json:"power_W"`
-	Temperature Number          `json:"temperature_K"`
-	Viscosity   Number          `json:"viscosity_Pa_s"`
-	FamilyWiseP calib.Float     `json:"family_wise_p_value"`
-	Axes        []RowAxis       `json:"axes"`
+	HeightScale Number          `json:"height_scale"` // travel of the bead over travel of the stage
+	// FitScale asks for the height scale to be fitted to series over heights.
+	FitScale    bool   `json:"fit_height_scale,omitempty"`
+	Power       Number `json:"power_W"`
+	Temperature Number `json:"temperature_K"`
+	Viscosity   Number `json:"viscosity_Pa_s"`
+	// FreeBead are the recordings of the free bead whose drag was used.
+	FreeBead    []string    `json:"free_bead,omitempty"`
+	FamilyWiseP calib.Float `json:"family_wise_p_value"`
+	Axes        []RowAxis   `json:"axes"`
 }
 
 // Number is a value with its uncertainties; null where there is none.
@@ -46,7 +56,8 @@ type RowAxis struct {
 	Stiffness     Number `json:"stiffness_N_per_m"`
 	Corner        Number `json:"corner_frequency_Hz"`
 	Drag          Number `json:"measured_drag_N_s_per_m"`
-	DragRatio     Number `json:"drag_ratio"` // measured over computed
+	DragRatio     Number `json:"drag_ratio"`      // measured over computed
+	FreeDragRatio Number `json:"free_drag_ratio"` // the same of the free bead, where it was used
 	Sensitivity   Number `json:"sensitivity_m_per_V"`
 	WallFactor    Number `json:"wall_factor"` // computed
 }
@@ -67,9 +78,20 @@ func number(q calib.Quantity) Number {
 	return n
 }
 
+// holdsTrap tells that the recording is one of a trapped bead.
+func (r Row) holdsTrap() bool { return r.Role != calib.RoleFree && r.Role != calib.RoleBackground }
+
+// word is the status for a person, with the role of a recording without a trap.
+func (r Row) word() string {
+	if r.holdsTrap() {
+		return r.Status
+	}
+	return r.Status + ", " + r.Role
+}
+
 // emptyRow is a recording without a result.
 func emptyRow(file, status, reason string) Row {
-	return Row{File: file, Status: status, Reason: reason, Diameter: unknown, Height: unknown, Power: unknown, Temperature: unknown,
+	return Row{File: file, Status: status, Reason: reason, Diameter: unknown, Height: unknown, HeightScale: unknown, Power: unknown, Temperature: unknown,
 		Viscosity: unknown, FamilyWiseP: unknown.Value, Axes: []RowAxis{}}
 }
 
@@ -83,14 +105,24 @@ func failedRow(file string, p report.Problem) Row {
 // resultRow is what the summary keeps of a result.
 func resultRow(file, folder string, r *calib.Result) Row {
 	row := emptyRow(file, r.Verdict.Status, r.Verdict.Reason)
-	row.Bead, row.Folder, row.SHA256, row.FamilyWiseP = r.Input.Bead, folder, r.Input.SHA256, r.Verdict.FamilyWiseP
+	row.Role, row.Bead, row.Folder, row.SHA256, row.FamilyWiseP = r.Role, r.Input.Bead, folder, r.Input.SHA256, r.Verdict.FamilyWiseP
 	row.Diameter, row.Height = number(r.Bead.Diameter), number(r.Bead.Height)
 	row.Temperature, row.Viscosity = number(r.Medium.Temperature), number(r.Medium.Viscosity)
-	row.Power = settingNumber(r, "laser.power", "")
+	row.Power, row.HeightScale = settingNumber(r, "laser.power", ""), settingNumber(r, "chamber.height_scale", "")
+	row.FitScale = slices.ContainsFunc(r.Settings, func(s calib.Setting) bool { return s.Key == "chamber.height_scale" && s.Text == FitWord })
 	for _, a := range r.Axes {
+		free := unknown
+		if f := a.FreeDrag; f != nil {
+			free = number(f.Ratio)
+			for _, used := range f.Recordings {
+				if !slices.Contains(row.FreeBead, used.Name) {
+					row.FreeBead = append(row.FreeBead, used.Name)
+				}
+			}
+		}
 		row.Axes = append(row.Axes, RowAxis{Axis: a.Name, Perpendicular: a.Orientation == "perpendicular",
 			Stiffness: number(a.Adopted.Stiffness), Corner: number(a.Spectrum.Corner), Drag: number(a.MeasuredDrag),
-			DragRatio: number(a.DragRatio), Sensitivity: settingNumber(r, "recording.sensitivity", a.Name), WallFactor: number(a.Wall.Factor)})
+			DragRatio: number(a.DragRatio), FreeDragRatio: free, Sensitivity: settingNumber(r, "recording.sensitivity", a.Name), WallFactor: number(a.Wall.Factor)})
 	}
 	return row
 }

@@ -123,7 +123,7 @@ func (job Job) tasks(ctx context.Context, root *os.Root, entries map[string]entr
 		t := &tasks[i]
 		t.fingerprint = job.Fingerprint(t.Path)
 		if known, ok := entries[t.Path]; ok && known.Folder == t.Folder {
-			t.sum, t.before = fileSum(t.Path), known
+			t.sum, t.before = FileSum(t.Path), known
 			t.Done = known.unchanged(root, t.sum, t.fingerprint)
 		}
 		return nil
@@ -244,7 +244,7 @@ func (job Job) do(ctx context.Context, root *os.Root, t Task) (e entry, err erro
 		if value := recover(); value != nil { // a mistake on one recording is not the others' fault
 			e.Rows = []Row{failedRow(t.Path, report.Problem{Code: "internal", Status: 1, Input: t.Path,
 				Message: fmt.Sprintf("a mistake in the program: %v", value), Remedy: "please report it with this recording"})}
-			e.SHA256, e.Outputs, err = fileSum(t.Path), map[string]string{}, nil
+			e.SHA256, e.Outputs, err = FileSum(t.Path), map[string]string{}, nil
 		}
 	}()
 	e = entry{File: t.Path, Folder: t.Folder, Fingerprint: t.fingerprint, Outputs: map[string]string{}}
@@ -274,7 +274,7 @@ func (job Job) do(ctx context.Context, root *os.Root, t Task) (e entry, err erro
 		}
 	}
 	if e.SHA256 == "" {
-		e.SHA256 = fileSum(t.Path)
+		e.SHA256 = FileSum(t.Path)
 	}
 	return e, nil
 }

@@ -15,7 +15,7 @@ import (
 // SeriesOptions are choices for the series.
 type SeriesOptions struct {
 	// Scale is the travel of the bead over that of the stage, for heights that are stage
-	// readings. Value 0: exactly 1, assumed.
+	// readings, in place of what the recordings state. Value 0: what they state, else exactly 1, assumed.
 	Scale series.Input
 	// FitDiameter fits the bead's diameter to a height series as well.
 	FitDiameter bool
@@ -83,9 +83,39 @@ func (s *Summary) addSeries(opt SeriesOptions) {
 		s.perGroup(axis, groupByBead|groupByPower|groupByHeight, func([]member) bool { return true }, func(group string, m []member) Series { return repeats(m) })
 	}
 	s.perGroup("x", groupByBead, func([]member) bool { return true }, func(group string, m []member) Series { return axesRatio(m) })
-	if opt.Scale.Value == 0 && slices.ContainsFunc(s.Series, func(one Series) bool { return one.XUnit == "m" }) {
-		s.Notes = append(s.Notes, "heights are taken as travel of the bead: the height scale is assumed to be 1; stage readings under an oil objective in water are some 0.8 (from memory), state it with --height-scale")
+	if opt.Scale.Value == 0 && slices.ContainsFunc(s.Series, func(one Series) bool { return one.XUnit == "m" }) && slices.ContainsFunc(s.Rows, Row.assumesScale) {
+		s.Notes = append(s.Notes, "heights are taken as travel of the bead: the height scale is assumed to be 1; where they are stage readings under an oil objective in water it is some 0.8 (from memory), state it as height_scale, or fit it")
 	}
+}
+
+// assumesScale tells that a recording has a height and nothing is said of its scale.
+func (r Row) assumesScale() bool {
+	return r.Height.Value.Known() && !r.HeightScale.Value.Known() && !r.FitScale
+}
+
+// heightScale is the height scale of a series: that of the options, else the one that all its recordings state.
+func heightScale(m []member, opt SeriesOptions) (series.Input, error) {
+	if opt.Scale.Value != 0 {
+		return opt.Scale, nil
+	}
+	first := m[0].row
+	for _, one := range m {
+		a, b := one.row.HeightScale, first.HeightScale
+		if one.row.FitScale != first.FitScale || exact(a.Value) != exact(b.Value) || exact(a.Combined) != exact(b.Combined) {
+			return series.Input{}, fmt.Errorf("%s and %s state different height scales; state one for the whole series", first.File, one.row.File)
+		}
+	}
+	switch n := first.HeightScale; {
+	case first.FitScale:
+		return series.Input{Value: 1, Free: true}, nil
+	case n.Value.Known():
+		in := series.Input{Value: float64(n.Value)}
+		if n.Combined.Known() {
+			in.Uncertainty = float64(n.Combined)
+		}
+		return in, nil
+	}
+	return series.Input{}, nil
 }
 
 // member is one axis of one row.

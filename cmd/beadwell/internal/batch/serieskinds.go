@@ -57,7 +57,7 @@ func againstPower(m []member) Series {
 }
 
 // readings are the points of a height series, with the options of its fit.
-func readings(m []member, points []SeriesPoint, opt SeriesOptions) ([]series.Reading, series.SurfaceOptions) {
+func readings(m []member, points []SeriesPoint, scale series.Input, opt SeriesOptions) ([]series.Reading, series.SurfaceOptions) {
 	var out []series.Reading
 	for i, one := range m {
 		out = append(out, series.Reading{Stage: float64(points[i].X), Value: float64(points[i].Y), ValueU: float64(points[i].YU), Perpendicular: one.axis.Perpendicular})
@@ -69,7 +69,7 @@ func readings(m []member, points []SeriesPoint, opt SeriesOptions) ([]series.Rea
 		return float64(f) / 2
 	}
 	d := m[0].row.Diameter
-	return out, series.SurfaceOptions{Scale: opt.Scale, Radius: series.Input{Value: half(d.Value), Uncertainty: half(d.Combined), Free: opt.FitDiameter},
+	return out, series.SurfaceOptions{Scale: scale, Radius: series.Input{Value: half(d.Value), Uncertainty: half(d.Combined), Free: opt.FitDiameter},
 		StiffnessSlope: opt.StiffnessSlope}
 }
 
@@ -84,8 +84,13 @@ func dragAgainstHeight(m []member, opt SeriesOptions) Series {
 	if len(points) < fewest {
 		return s
 	}
-	data, options := readings(m, points, opt)
-	if opt.FitDiameter && opt.Scale.Free {
+	scale, err := heightScale(m, opt)
+	if err != nil {
+		s.Reason = err.Error()
+		return s
+	}
+	data, options := readings(m, points, scale, opt)
+	if opt.FitDiameter && scale.Free {
 		v := m[0].row.Viscosity
 		options.Viscosity = series.Input{Value: float64(v.Value)}
 		if v.Combined.Known() {
@@ -110,7 +115,12 @@ func cornerAgainstHeight(m []member, opt SeriesOptions) Series {
 	if len(points) < fewest {
 		return s
 	}
-	data, options := readings(m, points, opt)
+	scale, err := heightScale(m, opt)
+	if err != nil {
+		s.Reason = err.Error()
+		return s
+	}
+	data, options := readings(m, points, scale, opt)
 	fit, err := series.CornerAgainstHeight(data, options)
 	if err != nil {
 		s.Reason = err.Error()

@@ -8,6 +8,7 @@ import (
 	"os"
 	"slices"
 	"strconv"
+	"strings"
 
 	"beadwell/calib"
 	"beadwell/cmd/beadwell/internal/report"
@@ -96,9 +97,12 @@ var summaryColumns = []struct {
 	{"bead", func(r Row) string { return report.Cell(r.Bead) }},
 	{"status", func(r Row) string { return report.Cell(r.Status) }},
 	{"reason", func(r Row) string { return report.Cell(r.Reason) }},
+	{"role", func(r Row) string { return r.Role }},
+	{"free_bead", func(r Row) string { return report.Cell(strings.Join(r.FreeBead, "; ")) }},
 	{"family_wise_p_value", func(r Row) string { return exact(r.FamilyWiseP) }},
 	{"diameter_m", func(r Row) string { return exact(r.Diameter.Value) }},
 	{"height_m", func(r Row) string { return exact(r.Height.Value) }},
+	{"height_scale", func(r Row) string { return exact(r.HeightScale.Value) }},
 	{"power_W", func(r Row) string { return exact(r.Power.Value) }},
 	{"temperature_K", func(r Row) string { return exact(r.Temperature.Value) }},
 	{"viscosity_Pa_s", func(r Row) string { return exact(r.Viscosity.Value) }},
@@ -120,6 +124,8 @@ var axisColumns = []struct {
 	{"measured_drag_u_N_s_per_m", func(a RowAxis) calib.Float { return a.Drag.Statistical }},
 	{"drag_ratio", func(a RowAxis) calib.Float { return a.DragRatio.Value }},
 	{"drag_ratio_combined_u", func(a RowAxis) calib.Float { return a.DragRatio.Combined }},
+	{"free_drag_ratio", func(a RowAxis) calib.Float { return a.FreeDragRatio.Value }},
+	{"free_drag_ratio_combined_u", func(a RowAxis) calib.Float { return a.FreeDragRatio.Combined }},
 	{"sensitivity_m_per_V", func(a RowAxis) calib.Float { return a.Sensitivity.Value }},
 }
 

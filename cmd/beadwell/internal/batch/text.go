@@ -17,7 +17,7 @@ func (s *Summary) Text() string {
 	fmt.Fprintln(w, strings.Join(head, "\t"))
 	for _, row := range s.Rows {
 		shown := indexRowOf(row, axes)
-		cells := []string{shown.File, row.Status}
+		cells := []string{shown.File, shown.Status}
 		if len(row.Axes) > 0 {
 			cells = append(cells, shown.Stiffness...)
 		}

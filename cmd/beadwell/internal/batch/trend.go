@@ -120,7 +120,7 @@ func (s *Summary) together(axis string, of func(Row, RowAxis) (float64, float64,
 	var values []series.Measured
 	for _, row := range s.Rows {
 		a, has := row.axis(axis)
-		if !has || row.Status == calib.Unfit {
+		if !has || row.Status == calib.Unfit || !row.holdsTrap() {
 			continue
 		}
 		if v, u, ok := of(row, a); ok {

@@ -2,6 +2,7 @@ package cli
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"path/filepath"
 	"runtime"
@@ -9,7 +10,6 @@ import (
 
 	"github.com/spf13/cobra"
 
-	"beadwell/calib"
 	"beadwell/cmd/beadwell/internal/batch"
 	"beadwell/cmd/beadwell/internal/report"
 )
@@ -23,7 +23,9 @@ type batchOptions struct {
 	format    string
 	out       string
 	reports   string
-	adopt     string
+	choices   choices
+	drawing   drawing
+	figures   bool // the figures were asked for
 	jobs      int
 	shard     string
 	dryRun    bool
@@ -48,7 +50,9 @@ they say together. It goes on after a recording that fails.
 FOLDER is a folder, a recording, or a pattern such as 'tonight/*.csv'. In a
 folder, files that end in csv, tsv, txt, dat, asc or npy, compressed or not, are
 recordings; session.toml and tracks.csv beside them hold their settings.
-Recordings of the roles free and background are set aside.
+Recordings that tracks.csv names belong to the folder whatever their ending.
+A recording of the role free (laser off) gives the measured drag of the bead, which
+the trapped recordings of the same bead use beside the computed one.
 
 Into the folder of --out go, besides a folder for each recording:
 
@@ -79,12 +83,16 @@ func (a *app) batchCommand(run func(context.Context, *app, batchOptions) error) 
   find /data -name '*.csv' | beadwell batch --files-from - --out results`,
 		RunE: func(cmd *cobra.Command, args []string) error {
 			o.arguments = args
-			if err := notEmpty(cmd, "out", "session", "adopt", "files-from", "shard", "height-scale", "stiffness-slope"); err != nil {
+			if err := notEmpty(cmd, "out", "session", "adopt", "use", "files-from", "shard", "stiffness-slope"); err != nil {
 				return err
 			}
 			if err := o.validate(); err != nil {
 				return err
 			}
+			if err := errors.Join(o.choices.check(cmd), o.drawing.check(cmd, o.out)); err != nil {
+				return err
+			}
+			o.figures = o.reports == reportsAll || cmd.Flags().Changed("figures") || o.drawing.data
 			return run(cmd.Context(), a, o)
 		},
 	}
@@ -94,18 +102,18 @@ func (a *app) batchCommand(run func(context.Context, *app, batchOptions) error) 
 	flags.StringVar(&o.session, "session", "", "settings `FILE` in place of session.toml beside each track")
 	flags.StringVar(&o.format, "format", "text", "form of the summary on standard output: `text|json|csv`")
 	flags.StringVar(&o.out, "out", defaultOut, "write results into `FOLDER`")
-	flags.StringVar(&o.reports, "reports", reportsHTML, "beside result.json, for each recording: `none|html|all`; all adds text, CSV and figures")
-	flags.StringVar(&o.adopt, "adopt", "", "adopt this route alone, also when the two disagree: `drag|amplitude`")
+	flags.StringVar(&o.reports, "reports", reportsHTML, "beside result.json, for each recording: `none|html|all`; all adds text, CSV and figures, which --figures adds alone")
+	o.choices.add(cmd)
 	flags.IntVar(&o.jobs, "jobs", 0, "recordings at the same time, a `number`; 0 is SLURM_CPUS_PER_TASK, else the processors")
 	flags.StringVar(&o.shard, "shard", "", "do one part of the list alone, as `i/n`")
 	flags.BoolVar(&o.dryRun, "dry-run", false, "say what would be done, and do nothing")
 	flags.BoolVarP(&o.quiet, "quiet", "q", false, "no progress and no warnings on standard error")
 	o.series.add(flags)
+	addDrawingFlags(cmd, &o.drawing)
 	addSettingFlags(flags, &o.flags)
 	completeSettings(cmd)
 	completeWords(cmd, "format", formats...)
 	completeWords(cmd, "reports", reportsNone, reportsHTML, reportsAll)
-	completeWords(cmd, "adopt", calib.RouteDrag, calib.RouteAmplitude)
 	return cmd
 }
 
@@ -118,11 +126,6 @@ func (o batchOptions) validate() error {
 	}
 	if err := oneOf("reports", o.reports, reportsNone, reportsHTML, reportsAll); err != nil {
 		return err
-	}
-	if o.adopt != "" {
-		if err := oneOf("adopt", o.adopt, calib.RouteDrag, calib.RouteAmplitude); err != nil {
-			return err
-		}
 	}
 	if o.jobs < 0 {
 		return usageError("give 1 or more, or leave it out", "--jobs %d is no number of recordings at the same time", o.jobs)

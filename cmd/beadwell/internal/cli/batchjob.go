@@ -9,9 +9,11 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"io/fs"
 	"os"
-	"path/filepath"
+	"slices"
 	"strings"
+	"sync"
 
 	"beadwell/calib"
 	"beadwell/calib/session"
@@ -89,6 +91,7 @@ type batchWork struct {
 	options batchOptions
 	created string
 	source  *source
+	sums    fileSums
 }
 
 // command is the command line that gives the result of one recording: the same
@@ -98,9 +101,7 @@ func (b *batchWork) command(path string) []string {
 	if b.options.session != "" {
 		command = append(command, "--session", b.options.session)
 	}
-	if b.options.adopt != "" {
-		command = append(command, "--adopt", b.options.adopt)
-	}
+	command = append(command, b.options.choices.command()...)
 	for _, s := range b.options.flags.settings.All() {
 		key, _ := session.Find(s.Key)
 		text := s.Text
@@ -113,26 +114,14 @@ func (b *batchWork) command(path string) []string {
 }
 
 // fingerprint is a hash of all that the result depends on besides the recording: the
-// program, the settings with their places, and which outputs are made.
+// program, the settings with their places, which outputs are made, and the other recordings
+// that it uses, their content and their settings.
 func (b *batchWork) fingerprint(path string) string {
-	all := []any{calib.SchemaVersion, b.app.Version, b.created, b.options.reports, b.command(path)}
-	folder, _ := b.source.folder(path) // known by now
-	settings, err := b.source.merged(folder, path, "", nil)
-	if err != nil {
-		all = append(all, err.Error())
-	}
-	layers := []*session.Settings{settings}
-	if folder.tracks != nil {
-		for _, row := range folder.tracks.Rows {
-			if row.File == filepath.Base(path) {
-				layers = append(layers, row.Settings)
-			}
-		}
-	}
-	for _, layer := range layers {
-		for _, s := range layer.All() {
-			all = append(all, []string{s.Key, s.Axis, s.Text, s.Origin.String(), s.Where})
-		}
+	all := []any{calib.SchemaVersion, b.app.Version, b.created, b.options.reports, b.options.figures, b.options.drawing.figures, b.options.drawing.data, b.command(path)}
+	all = append(all, b.settingsOf(path)...)
+	for _, other := range b.dependencies(path) {
+		all = append(all, other, b.sums.of(other))
+		all = append(all, b.settingsOf(other)...)
 	}
 	text, err := json.Marshal(all)
 	if err != nil {
@@ -142,24 +131,101 @@ func (b *batchWork) fingerprint(path string) string {
 	return hex.EncodeToString(sum[:])
 }
 
+// settingsOf lists the settings of a file and those of its rows in the track list.
+func (b *batchWork) settingsOf(path string) (all []any) {
+	folder, err := b.source.folder(path)
+	if err != nil {
+		return []any{err.Error()}
+	}
+	settings, err := b.source.merged(folder, path, "", nil)
+	if err != nil {
+		all = append(all, err.Error())
+	}
+	layers := []*session.Settings{settings}
+	for _, row := range folder.rows(path) {
+		layers = append(layers, row.Settings)
+	}
+	for _, layer := range layers {
+		for _, s := range layer.All() {
+			all = append(all, []string{s.Key, s.Axis, s.Text, s.Origin.String(), s.Where})
+		}
+	}
+	return all
+}
+
+// dependencies are the other recordings that the beads of a file use: backgrounds and free beads.
+func (b *batchWork) dependencies(path string) (paths []string) {
+	folder, err := b.source.folder(path)
+	if err != nil {
+		return nil
+	}
+	beads := []string{""}
+	for _, row := range folder.rows(path) {
+		if row.Bead != "" {
+			beads = append(beads, row.Bead)
+		}
+	}
+	for _, bead := range beads {
+		settings, err := b.source.merged(folder, path, bead, nil)
+		if err != nil {
+			continue
+		}
+		if named, ok := settings.Lookup("recording.background", ""); ok {
+			paths = append(paths, b.source.beside(path, named, []string{named.Word})...)
+		}
+		b.source.findFreeBeads(folder, path, bead, settings)
+		paths = append(paths, b.source.freeFiles(path, settings)...)
+	}
+	slices.Sort(paths)
+	return slices.Compact(paths)
+}
+
+// fileSums are the SHA-256 of files, each made once.
+type fileSums struct {
+	lock  sync.Mutex
+	known map[string]string
+}
+
+func (f *fileSums) of(path string) string {
+	f.lock.Lock()
+	defer f.lock.Unlock()
+	sum, ok := f.known[path]
+	if !ok {
+		if f.known == nil {
+			f.known = map[string]string{}
+		}
+		sum = batch.FileSum(path)
+		f.known[path] = sum
+	}
+	return sum
+}
+
+// load reads the beads of one file. One that only the track list knows is told by its line.
+func (b *batchWork) load(ctx context.Context, path string) ([]loaded, error) {
+	if _, err := os.Stat(path); errors.Is(err, fs.ErrNotExist) {
+		if folder, err := b.source.folder(path); err == nil {
+			if rows := folder.rows(path); len(rows) > 0 {
+				return nil, missingTrack(folder, rows[0])
+			}
+		}
+	}
+	return b.source.load(ctx, path)
+}
+
 // calibrate reads and calibrates the beads of one file.
 func (b *batchWork) calibrate(ctx context.Context, path string) ([]batch.Outcome, error) {
-	loaded, err := b.source.load(ctx, path)
+	loaded, err := b.load(ctx, path)
 	if ctx.Err() != nil {
 		return nil, ctx.Err()
 	}
 	if err != nil {
 		return []batch.Outcome{{Problem: problemOfFile(path, err)}}, nil
 	}
-	options := calib.Options{Adopt: b.options.adopt, Program: calib.Program{Name: "beadwell", Version: b.app.Version, Command: b.command(path)}}
+	options := b.options.choices.options()
+	options.Program = calib.Program{Name: "beadwell", Version: b.app.Version, Command: b.command(path)}
 	var outcomes []batch.Outcome
 	for _, one := range loaded {
-		if role, ok := one.settings.Lookup("role", ""); ok && (role.Word == "free" || role.Word == "background") {
-			outcomes = append(outcomes, batch.Outcome{Aside: "role " + role.Word + ": a recording that is not calibrated on its own"})
-			continue
-		}
-		options.Background = one.background
-		result, err := b.app.Calibrate(ctx, one.recording, one.settings, options)
+		result, err := b.app.Calibrate(ctx, one.recording, one.settings, one.options(options))
 		switch {
 		case ctx.Err() != nil:
 			return nil, ctx.Err()
@@ -181,26 +247,25 @@ func problemOfFile(path string, err error) *report.Problem {
 
 // outputs makes the files of one result.
 func (b *batchWork) outputs(ctx context.Context, r *calib.Result) ([]batch.Output, error) {
-	if b.options.reports == reportsAll {
-		files, err := outputs(ctx, r)
-		var all []batch.Output
-		for _, f := range files {
-			all = append(all, batch.Output{Name: f.name, Content: f.content})
-		}
-		return all, err
+	wanted := b.options.drawing
+	if !b.options.figures {
+		wanted.figures = noFigures
 	}
-	var stored, page strings.Builder
-	if err := report.JSON(&stored, r); err != nil {
-		return nil, err
+	var texts []string
+	switch b.options.reports {
+	case reportsAll:
+		texts = []string{resultJSON, resultText, resultCSV, reportHTML}
+	case reportsHTML:
+		texts = []string{resultJSON, reportHTML}
+	default:
+		texts = []string{resultJSON}
 	}
-	all := []batch.Output{{Name: resultJSON, Content: []byte(stored.String())}}
-	if b.options.reports == reportsHTML {
-		if err := report.HTML(&page, r); err != nil {
-			return nil, err
-		}
-		all = append(all, batch.Output{Name: reportHTML, Content: []byte(page.String())})
+	files, err := wanted.outputs(ctx, r, texts...)
+	var all []batch.Output
+	for _, f := range files {
+		all = append(all, batch.Output{Name: f.name, Content: f.content})
 	}
-	return all, ctx.Err()
+	return all, err
 }
 
 // print writes to standard output; a failed write shows when it is flushed.

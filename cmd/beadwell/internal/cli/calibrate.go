@@ -23,21 +23,11 @@ type calibrateOptions struct {
 	format  string
 	out     string
 	force   bool
-	adopt   string
-	use     string
 	quiet   bool
+	choices choices
 	drawing drawing
-	draws   int
-	seed    uint64
 	flags   settingFlags
 }
-
-// Limits of the number of Monte Carlo draws: with fewer than 1000 the ends of a 95 % interval rest on 25 of
-// them; more than ten million fill the memory.
-const (
-	leastDraws = 1000
-	mostDraws  = 10_000_000
-)
 
 const calibrateLong = `calibrate reads recordings of a trapped bead, estimates the stiffness of the
 trap on every axis in several ways, compares them, and prints the stiffness to
@@ -89,8 +79,11 @@ func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions)
 			if err := o.drawing.check(cmd, o.out); err != nil {
 				return err
 			}
-			if cmd.Flags().Changed("seed") && o.draws == 0 {
-				return usageError("leave it out, or add --monte-carlo 100000", "--seed has no effect without --monte-carlo")
+			if cmd.Flags().Changed("height-scale") {
+				return usageError("leave it out, or give it to beadwell batch", "--height-scale has no effect on single recordings: it is for series over heights")
+			}
+			if err := o.choices.check(cmd); err != nil {
+				return err
 			}
 			o.tracks = withoutLists(o.tracks)
 			return run(cmd.Context(), a, o)
@@ -101,17 +94,12 @@ func (a *app) calibrateCommand(run func(context.Context, *app, calibrateOptions)
 	flags.StringVar(&o.format, "format", "text", "form of the result on standard output: `text|json|csv`")
 	flags.StringVar(&o.out, "out", "", "also write text, JSON, CSV, report and figures of each recording into `FOLDER`")
 	flags.BoolVar(&o.force, "force", false, "with --out: replace files of another recording")
-	flags.StringVar(&o.adopt, "adopt", "", "adopt this route alone, also when the two disagree: `drag|amplitude`")
-	flags.StringVar(&o.use, "use", "", "calibrate only the longest part without what is bad, such as an escape: `good`")
-	flags.IntVar(&o.draws, "monte-carlo", 0, "propagate distributions with this `number` of draws, and compare with the budget")
-	flags.Uint64Var(&o.seed, "seed", 1, "with --monte-carlo: whole `number` that selects the draws")
+	o.choices.add(cmd)
 	flags.BoolVarP(&o.quiet, "quiet", "q", false, "no progress and no warnings on standard error")
 	addDrawingFlags(cmd, &o.drawing)
 	addSettingFlags(flags, &o.flags)
 	completeSettings(cmd)
 	completeWords(cmd, "format", formats...)
-	completeWords(cmd, "use", calib.UseGood)
-	completeWords(cmd, "adopt", calib.RouteDrag, calib.RouteAmplitude)
 	return cmd
 }
 
@@ -119,32 +107,10 @@ func (o calibrateOptions) validate() error {
 	if err := oneOf("format", o.format, formats...); err != nil {
 		return err
 	}
-	if o.adopt != "" {
-		if err := oneOf("adopt", o.adopt, calib.RouteDrag, calib.RouteAmplitude); err != nil {
-			return err
-		}
-	}
-	if o.use != "" {
-		if err := oneOf("use", o.use, calib.UseGood); err != nil {
-			return err
-		}
-	}
-	if o.draws != 0 && (o.draws < leastDraws || o.draws > mostDraws) {
-		return usageError("100000 draws give the ends of an interval to 1 % of the standard uncertainty", "--monte-carlo %d is not between %d and %d", o.draws, leastDraws, mostDraws)
-	}
 	if o.force && o.out == "" {
 		return usageError("leave it out, or add --out FOLDER", "--force has no effect without --out")
 	}
 	return checkTracks(o.tracks)
-}
-
-// choices are the options that are no settings.
-func (o calibrateOptions) choices() calib.Options {
-	options := calib.Options{Adopt: o.adopt, Use: o.use}
-	if o.draws > 0 {
-		options.MonteCarlo = calib.MonteCarloOptions{Draws: o.draws, Seed: o.seed}
-	}
-	return options
 }
 
 // checkTracks refuses a track that is given twice, and a track list alone.
@@ -184,14 +150,17 @@ func runCalibrate(ctx context.Context, a *app, o calibrateOptions) error {
 		return err
 	}
 	defer writer.close()
-	writer.files = o.drawing.outputs
+	writer.files = o.drawing.all
 	src := &source{app: a, file: o.session, flags: &o.flags}
+	if !o.quiet {
+		src.tellMissing(o.tracks)
+	}
 	var outcomes []outcome
 	var unwritten []error
 	progress := a.newProgress(len(o.tracks), o.quiet)
 	defer progress.end()
 	for _, path := range o.tracks {
-		found := a.calibrateTrack(ctx, src, path, o.choices(), created)
+		found := a.calibrateTrack(ctx, src, path, o.choices.options(), created)
 		if err := ctx.Err(); err != nil {
 			return err
 		}
@@ -219,8 +188,7 @@ func (a *app) calibrateTrack(ctx context.Context, src *source, path string, opti
 	outcomes := make([]outcome, len(recordings))
 	for i, one := range recordings {
 		outcomes[i] = outcome{path: path}
-		options.Background = one.background
-		result, err := a.Calibrate(ctx, one.recording, one.settings, options)
+		result, err := a.Calibrate(ctx, one.recording, one.settings, one.options(options))
 		if err != nil {
 			outcomes[i].err = err
 			continue

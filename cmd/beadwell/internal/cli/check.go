@@ -57,6 +57,7 @@ row for each check.`,
 
 func runCheck(ctx context.Context, a *app, o checkOptions) error {
 	src := &source{app: a, file: o.session, flags: &o.flags, inspect: true}
+	src.tellMissing(o.tracks)
 	var failed []error
 	set := report.LookSet{}
 	distrust := false

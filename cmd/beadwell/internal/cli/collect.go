@@ -50,6 +50,7 @@ func (a *app) collectCommand(run func(context.Context, *app, collectOptions) err
 	cmd.Flags().StringVar(&o.out, "out", defaultOut, "write the joined results into `FOLDER`")
 	cmd.Flags().StringVar(&o.format, "format", "text", "form of the summary on standard output: `text|json|csv`")
 	o.series.add(cmd.Flags())
+	cmd.Flags().StringVar(&o.series.scale, "height-scale", "", "in place of the setting of the recordings: travel of the bead over travel of the stage, such as `0.82(2)`, or fit")
 	completeWords(cmd, "format", formats...)
 	return cmd
 }

@@ -66,13 +66,22 @@ func (d drawing) formats() ([]figure.Format, error) {
 	return formats, nil
 }
 
-// outputs makes the content of every file of a recording from its result alone.
-func (d drawing) outputs(ctx context.Context, r *calib.Result) ([]file, error) {
+// all makes the content of every file of a recording.
+func (d drawing) all(ctx context.Context, r *calib.Result) ([]file, error) {
+	var names []string
+	for _, form := range forms {
+		names = append(names, form.name)
+	}
+	return d.outputs(ctx, r, names...)
+}
+
+// outputs makes the content of the named files of a recording, and of its figures, from its result alone.
+func (d drawing) outputs(ctx context.Context, r *calib.Result, texts ...string) ([]file, error) {
 	formats, err := d.formats()
 	if err != nil {
 		return nil, err
 	}
-	files, err := reports(r)
+	files, err := reports(r, texts)
 	if err != nil {
 		return nil, err
 	}

@@ -65,6 +65,9 @@ func invented(ctx context.Context, r *track.Recording, set *session.Settings, op
 			Duration: calib.Float(float64(r.Samples) / r.Rate), Jitter: calib.Float(math.NaN())},
 		Verdict: calib.Verdict{Status: calib.Consistent, Text: "both routes agree", FamilyWiseP: 0.4},
 	}
+	if role, ok := set.Lookup("role", ""); ok {
+		result.Role = role.Word
+	}
 	if strings.Contains(r.Name, "doubt") {
 		result.Verdict = calib.Verdict{Status: calib.Inconsistent, Text: "the routes disagree", FamilyWiseP: 1e-4}
 		result.Findings = []calib.Finding{{Code: "routes-differ", Severity: calib.Bad, Text: "by 30 %", Remedy: "look at the bead"}}

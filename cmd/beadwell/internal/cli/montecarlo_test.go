@@ -24,7 +24,7 @@ func TestMonteCarloFlags(t *testing.T) {
 		if err := cmd.Execute(); err != nil {
 			t.Fatal(err)
 		}
-		if m := got.choices().MonteCarlo; m != test.want {
+		if m := got.choices.options().MonteCarlo; m != test.want {
 			t.Errorf("%v asks for %+v, want %+v", test.args, m, test.want)
 		}
 	}

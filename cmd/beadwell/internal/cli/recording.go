@@ -11,6 +11,7 @@ import (
 	"strconv"
 	"sync"
 
+	"beadwell/calib"
 	"beadwell/calib/session"
 	"beadwell/calib/track"
 )
@@ -21,16 +22,22 @@ type source struct {
 	file    string // of --session; empty: session.toml beside the track
 	flags   *settingFlags
 	inspect bool // a first look: an unknown unit or rate is no error
-	folders map[string]folderSettings
+
+	folderLock sync.Mutex
+	folders    map[string]folderSettings
+	above      map[string]*session.Tracks // track lists of folders further up
 
 	lock        sync.Mutex
 	backgrounds map[string]*track.Recording // read before, by path
+	free        map[freeKey]*freeOnce       // measured before
 }
 
 // folderSettings are what a folder says of its recordings.
 type folderSettings struct {
 	settings *session.Settings
 	tracks   *session.Tracks
+	base     string        // folder of the track list
+	free     []session.Row // of the track list, about recordings with the laser off
 }
 
 // loaded is one recording with its settings.
@@ -40,6 +47,14 @@ type loaded struct {
 	settings  *session.Settings
 	// background is the recording of the noise that the settings name, if they do.
 	background *track.Recording
+	// freeBead are what the recordings of the free bead that the settings name say of its drag.
+	freeBead []*calib.FreeBeadDrag
+}
+
+// options adds what was read beside the recording to the choices.
+func (l loaded) options(o calib.Options) calib.Options {
+	o.Background, o.FreeBead = l.background, l.freeBead
+	return o
 }
 
 // load reads the recordings of one file: one, or one for each bead in it.
@@ -72,6 +87,10 @@ func (s *source) load(ctx context.Context, path string) ([]loaded, error) {
 		if all[i].background, err = s.background(ctx, path, all[i].settings); err != nil {
 			return nil, err
 		}
+		s.findFreeBeads(folder, path, recording.Bead, all[i].settings)
+		if all[i].freeBead, err = s.freeBeads(ctx, path, recording.Bead, all[i].settings); err != nil {
+			return nil, err
+		}
 	}
 	return all, nil
 }
@@ -89,32 +108,77 @@ func (s *source) read(ctx context.Context, path string, options track.Options) (
 	return recordings, err
 }
 
-// folder reads session.toml and tracks.csv beside a track, once for each folder.
+// folder gives what stands in session.toml and tracks.csv beside a track, each folder read once. A track list in a folder further
+// up that names the track goes before one beside it that does not.
 func (s *source) folder(path string) (folderSettings, error) {
-	beside := "-"
-	if path != "-" {
-		beside = filepath.Dir(path)
+	if path == "-" {
+		return s.ownFolder("-")
 	}
-	if known, ok := s.folders[beside]; ok {
+	beside := filepath.Dir(path)
+	found, err := s.ownFolder(beside)
+	if err != nil || len(found.rows(path)) > 0 {
+		return found, err
+	}
+	here, err := filepath.Abs(beside)
+	if err != nil {
+		return found, nil // without a working folder there is nothing further up
+	}
+	for at, base := here, beside; filepath.Dir(at) != at; {
+		at, base = filepath.Dir(at), filepath.Join(base, "..")
+		above := found
+		above.base, above.tracks = base, s.listAbove(base)
+		if len(above.rows(path)) > 0 {
+			above.free = freeRows(above.tracks)
+			return above, nil
+		}
+	}
+	return found, nil
+}
+
+// ownFolder reads what stands in a folder.
+func (s *source) ownFolder(folder string) (folderSettings, error) {
+	s.folderLock.Lock()
+	defer s.folderLock.Unlock()
+	if known, ok := s.folders[folder]; ok {
 		return known, nil
 	}
-	found, err := s.loadFolder(beside)
+	found, err := s.loadFolder(folder)
 	if err != nil {
 		return folderSettings{}, settingsError(err)
 	}
 	if s.folders == nil {
 		s.folders = map[string]folderSettings{}
 	}
-	s.folders[beside] = found
+	s.folders[folder] = found
 	return found, nil
 }
 
+// listAbove reads the track list of a folder further up; one that cannot be read may be of something else, and counts as none.
+func (s *source) listAbove(folder string) *session.Tracks {
+	s.folderLock.Lock()
+	defer s.folderLock.Unlock()
+	if list, ok := s.above[folder]; ok {
+		return list
+	}
+	list, err := session.LoadTracks(filepath.Join(folder, session.TracksName))
+	if err != nil {
+		list = nil
+	}
+	if s.above == nil {
+		s.above = map[string]*session.Tracks{}
+	}
+	s.above[folder] = list
+	return list
+}
+
 func (s *source) loadFolder(folder string) (found folderSettings, err error) {
+	found.base = folder
 	if folder != "-" {
 		found.tracks, err = session.LoadTracks(filepath.Join(folder, session.TracksName))
 		if err != nil && !errors.Is(err, fs.ErrNotExist) {
 			return found, err
 		}
+		found.free = freeRows(found.tracks)
 	}
 	if s.file != "" {
 		found.settings, err = session.Load(s.file)
@@ -133,7 +197,7 @@ func (s *source) loadFolder(folder string) (found folderSettings, err error) {
 // merged puts the settings of one recording together.
 func (s *source) merged(folder folderSettings, path, bead string, header *session.Settings) (*session.Settings, error) {
 	sources := session.Sources{Header: header, Session: folder.settings, Flags: &s.flags.settings}
-	if row, ok := folder.tracks.Row(filepath.Base(path), bead); ok {
+	if row, ok := folder.tracks.Row(folder.name(path), bead); ok {
 		sources.Row = row.Settings
 	}
 	settings, err := session.ForTrack(sources)
@@ -141,6 +205,53 @@ func (s *source) merged(folder folderSettings, path, bead string, header *sessio
 		return nil, settingsError(err)
 	}
 	return settings, nil
+}
+
+// name is a track as the track list of the folder names it.
+func (f folderSettings) name(path string) string {
+	if name, err := filepath.Rel(f.base, path); err == nil {
+		return name
+	}
+	return filepath.Base(path)
+}
+
+// rows are those of the track list about a track.
+func (f folderSettings) rows(path string) []session.Row { return f.tracks.RowsOf(f.name(path)) }
+
+// missingTrack is the error of a row about a file that is not there.
+func missingTrack(folder folderSettings, row session.Row) error {
+	return inputError("correct the name, or take the row out", fmt.Errorf("%s:%d: file %q is not there", filepath.Join(folder.base, session.TracksName), row.Line, row.File))
+}
+
+// tellMissing says which recordings of the track lists beside the tracks are not there.
+func (s *source) tellMissing(tracks []string) {
+	told := map[string]bool{}
+	for _, path := range tracks {
+		folder, err := s.folder(path)
+		if err != nil || folder.tracks == nil || told[folder.base] {
+			continue // the calibration tells of the error
+		}
+		told[folder.base] = true
+		for _, row := range folder.tracks.Rows {
+			if _, err := os.Stat(filepath.Join(folder.base, filepath.FromSlash(row.File))); errors.Is(err, fs.ErrNotExist) {
+				s.app.say("beadwell: %s", missingTrack(folder, row))
+			}
+		}
+	}
+}
+
+// freeRows are the rows of a track list about free beads.
+func freeRows(tracks *session.Tracks) []session.Row {
+	var rows []session.Row
+	if tracks == nil {
+		return nil
+	}
+	for _, row := range tracks.Rows {
+		if role, ok := row.Settings.Lookup("role", ""); ok && role.Word == calib.RoleFree {
+			rows = append(rows, row)
+		}
+	}
+	return rows
 }
 
 // readOptions turns the settings that matter for reading into the reader's options.

@@ -3,7 +3,6 @@ package cli
 import (
 	"context"
 	"fmt"
-	"path/filepath"
 	"strings"
 
 	"beadwell/calib"
@@ -37,10 +36,7 @@ func (s *source) background(ctx context.Context, of string, settings *session.Se
 	if role, _ := settings.Lookup("role", ""); !ok || role.Word == calib.RoleBackground || s.inspect {
 		return nil, nil
 	}
-	path := named.Word
-	if named.Origin != session.FromFlag && of != "-" && !filepath.IsAbs(path) {
-		path = filepath.Join(filepath.Dir(of), path)
-	}
+	path := s.beside(of, named, []string{named.Word})[0]
 	s.lock.Lock()
 	defer s.lock.Unlock()
 	if known, ok := s.backgrounds[path]; ok {

@@ -68,7 +68,7 @@ func runReport(ctx context.Context, a *app, o reportOptions) error {
 		return err
 	}
 	defer writer.close()
-	writer.files = o.drawing.outputs
+	writer.files = o.drawing.all
 	outcomes := []outcome{{path: result.Input.Name, result: result}}
 	unwritten := writer.writeAll(ctx, outcomes)
 	if err := a.printOutcomes(outcomes, calibrateOptions{format: o.format, quiet: true}); err != nil {

@@ -135,7 +135,7 @@ func (a *app) calibrateAgain(ctx context.Context, stored *calib.Result, path str
 	if err != nil {
 		return nil, err
 	}
-	options.Background = again.background
+	options = again.options(options)
 	options.Program = calib.Program{Name: stored.Program.Name, Version: a.Version}
 	return a.Calibrate(ctx, again.recording, again.settings, options)
 }
@@ -162,7 +162,9 @@ func (a *app) readAgain(ctx context.Context, stored *calib.Result, path string, 
 			return again, changedInput(path, one.SHA256, stored.Input.SHA256)
 		case one.Bead == stored.Input.Bead:
 			again.recording, again.settings = one, before.With(headerSettings(one, before))
-			again.background, err = src.background(ctx, path, again.settings)
+			if again.background, err = src.background(ctx, path, again.settings); err == nil {
+				again.freeBead, err = src.freeBeads(ctx, path, one.Bead, again.settings)
+			}
 			return again, err
 		}
 	}

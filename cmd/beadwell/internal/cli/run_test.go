@@ -229,7 +229,7 @@ func TestCalibrateFlags(t *testing.T) {
 	if err := cmd.Execute(); err != nil {
 		t.Fatal(err)
 	}
-	if got.format != "csv" || got.out != "o" || !got.force || got.adopt != "drag" || got.use != "good" || !got.quiet || got.session != "s" || !cmp.Equal(got.tracks, []string{"a", "b"}) {
+	if got.format != "csv" || got.out != "o" || !got.force || got.choices.adopt != "drag" || got.choices.use != "good" || !got.quiet || got.session != "s" || !cmp.Equal(got.tracks, []string{"a", "b"}) {
 		t.Errorf("options %+v", got)
 	}
 	noise, ok := got.flags.settings.Lookup("recording.noise", "x")

@@ -12,26 +12,22 @@ import (
 
 // seriesFlags are choices for the series, as they were given.
 type seriesFlags struct {
-	scale       string
+	scale       string // of collect; batch has it as a setting
 	slope       string
 	fitDiameter bool
 }
 
 func (f *seriesFlags) add(flags *pflag.FlagSet) {
-	flags.StringVar(&f.scale, "height-scale", "", "travel of the bead over travel of the stage, such as `0.82(2)`, or fit; 1 is assumed")
 	flags.BoolVar(&f.fitDiameter, "fit-diameter", false, "fit the bead's diameter to the series against height too")
 	flags.StringVar(&f.slope, "stiffness-slope", "", "change of the stiffness with height, such as `'-1.5(5) %/um'`, or fit; it allows series of corner frequencies")
 }
-
-// fitWord asks for a number to be fitted.
-const fitWord = "fit"
 
 // options turns the flags into those of the series.
 func (f *seriesFlags) options() (batch.SeriesOptions, error) {
 	o := batch.SeriesOptions{FitDiameter: f.fitDiameter}
 	switch f.scale {
 	case "":
-	case fitWord:
+	case batch.FitWord:
 		o.Scale = series.Input{Value: 1, Free: true}
 	default:
 		v, err := quantity.Parse(f.scale, quantity.Dimensionless)
@@ -42,7 +38,7 @@ func (f *seriesFlags) options() (batch.SeriesOptions, error) {
 	}
 	switch f.slope {
 	case "":
-	case fitWord:
+	case batch.FitWord:
 		o.StiffnessSlope = &series.Input{Free: true}
 	default:
 		number, hasUnit := strings.CutSuffix(strings.TrimSpace(f.slope), "%/um")

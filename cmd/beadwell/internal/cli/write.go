@@ -4,8 +4,10 @@ import (
 	"bytes"
 	"context"
 	"errors"
+	"io"
 	"os"
 	"path/filepath"
+	"slices"
 
 	"beadwell/calib"
 	"beadwell/cmd/beadwell/internal/figure"
@@ -140,24 +142,36 @@ func (f outputFolder) belongsTo(r *calib.Result) bool {
 
 // outputs makes the content of every file from the result alone, with figures in the
 // default forms.
-func outputs(ctx context.Context, r *calib.Result) ([]file, error) { return drawing{}.outputs(ctx, r) }
+func outputs(ctx context.Context, r *calib.Result) ([]file, error) {
+	return drawing{}.all(ctx, r)
+}
 
-// reports makes the content of every file but the figures.
-func reports(r *calib.Result) ([]file, error) {
-	var stored, text, table, page bytes.Buffer
-	if err := report.JSON(&stored, r); err != nil {
-		return nil, err
+// forms make the content of the files but the figures.
+var forms = []struct {
+	name string
+	make func(io.Writer, *calib.Result) error
+}{
+	{resultJSON, report.JSON},
+	{resultText, func(w io.Writer, r *calib.Result) error { return report.Text(w, r, report.TextOptions{}) }},
+	{resultCSV, func(w io.Writer, r *calib.Result) error {
+		return report.CSV(w, report.Set{Results: []*calib.Result{r}})
+	}},
+	{reportHTML, report.HTML},
+}
+
+// reports makes the content of the named files.
+func reports(r *calib.Result, names []string) (files []file, err error) {
+	for _, form := range forms {
+		if !slices.Contains(names, form.name) {
+			continue
+		}
+		var content bytes.Buffer
+		if err := form.make(&content, r); err != nil {
+			return nil, err
+		}
+		files = append(files, file{form.name, content.Bytes()})
 	}
-	if err := report.Text(&text, r, report.TextOptions{}); err != nil {
-		return nil, err
-	}
-	if err := report.CSV(&table, report.Set{Results: []*calib.Result{r}}); err != nil {
-		return nil, err
-	}
-	if err := report.HTML(&page, r); err != nil {
-		return nil, err
-	}
-	return []file{{resultJSON, stored.Bytes()}, {resultText, text.Bytes()}, {resultCSV, table.Bytes()}, {reportHTML, page.Bytes()}}, nil
+	return files, nil
 }
 
 // figureFiles draws every figure in each of the formats.

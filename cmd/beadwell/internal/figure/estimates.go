@@ -24,6 +24,8 @@ func LegName(leg string) string {
 		return "spectrum amplitude"
 	case calib.LegDriven:
 		return "driven stage"
+	case calib.LegFreeDrag:
+		return "free bead's drag"
 	case calib.LegFlow:
 		return "constant flow"
 	}

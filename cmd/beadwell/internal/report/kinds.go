@@ -43,6 +43,9 @@ func kindRows(r *calib.Result) []kindRow {
 			add("localisation noise", f.Noise, "nm", "")
 			add("drift", f.Speed, "um/s", "")
 		}
+		if f := a.FreeDrag; f != nil {
+			freeDragRows(a, f, add)
+		}
 		if b := a.Background; b != nil {
 			unit := b.Noise.Unit
 			if unit == "m" {
@@ -93,6 +96,21 @@ func drivenRows(a calib.Axis, d *calib.Driven, add func(string, calib.Quantity, 
 	add("lead of the bead before the stage", d.Lead, "1", "rad; expected "+plainNumber(d.LeadExpect, "1"))
 }
 
+// freeDragRows lists what a recording of the free bead gives of one axis of a trapped one.
+func freeDragRows(a calib.Axis, f *calib.FreeDrag, add func(string, calib.Quantity, string, string)) {
+	var names []string
+	for _, used := range f.Recordings {
+		names = append(names, used.Name)
+	}
+	add("drag by the free bead", f.Drag, dragUnit, "from "+strings.Join(names, ", "))
+	add("its ratio to the computed drag", f.Ratio, "1", "")
+	for _, e := range a.Estimates {
+		if e.Leg == calib.LegFreeDrag {
+			add("stiffness by the free bead's drag", e.Stiffness, stiffnessUnit, "2 pi x drag x corner frequency")
+		}
+	}
+}
+
 // perDetectorUnit is the unit in which a sensitivity is printed.
 func perDetectorUnit(unit string) string {
 	if unit == "1" {
@@ -123,6 +141,9 @@ func kindSentences(r *calib.Result) []string {
 		var parts []string
 		if a.Driven != nil && a.Driven.Text != "" {
 			parts = append(parts, a.Driven.Text)
+		}
+		if a.FreeDrag != nil {
+			parts = append(parts, a.FreeDrag.Text)
 		}
 		if a.Free != nil && a.Free.Text != "" {
 			parts = append(parts, a.Free.Text)
