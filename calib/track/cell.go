@@ -107,6 +107,9 @@ func canonical(dst []byte, s string, mark, thousands rune) (plain []byte, expone
 	if at := strings.IndexRune(body, mark); at >= 0 {
 		whole, fraction, marked = body[:at], body[at+1:], true
 	}
+	if marked && mark == ',' && fraction == "" { // more likely a delimiter
+		return nil, 0, notNumber
+	}
 	start := len(dst)
 	if dst, err = appendGroups(dst, whole, mark, thousands, marked); err != nil {
 		if err == notNumber {

@@ -123,10 +123,19 @@ func (s *stamp) date(text string) bool {
 	return true
 }
 
+// isZone tells the digits of a distance from universal time: 02, 0200 or 02:00.
+func isZone(text string) bool {
+	digits := strings.Replace(text, ":", "", 1)
+	return (len(text) == 2 || len(digits) == 4 && strings.IndexByte(text+":", ':') != 1) && strings.Trim(digits, "0123456789") == ""
+}
+
 // clock reads hh:mm:ss or hh:mm:ss.ffffff.
 func (s *stamp) clock(text string) bool {
 	text = strings.TrimSuffix(text, "Z")
 	if at := strings.LastIndexAny(text, "+-"); at > 5 {
+		if !isZone(text[at+1:]) {
+			return false
+		}
 		text = text[:at]
 	}
 	text = strings.TrimSpace(text)

@@ -14,7 +14,7 @@ func (lay *layout) measure(v *view, sampled int) {
 		lay.names[k].numeric, lay.names[k].whole, lay.names[k].empty = numeric[k], true, true
 	}
 	last := len(lay.names) - 1
-	lay.lastDecimals = -1
+	lay.lastFilled = true
 	rows := 0
 	for i := v.first; i < len(v.lines); i++ {
 		if !v.isRow(i, numeric) {
@@ -33,14 +33,15 @@ func (lay *layout) measure(v *view, sampled int) {
 		if i == len(v.lines)-1 {
 			break // possibly cut off
 		}
-		if d := decimalsOf(v.cells[i][last].text, lay.mark); lay.lastDecimals == -1 || d == lay.lastDecimals {
-			lay.lastDecimals = d
-		} else {
-			lay.lastDecimals = 0
+		lay.lastFilled = lay.lastFilled && v.kinds[i][last] != missingCell
+		if d := digitsOf(v.cells[i][last].text, lay.mark); rows == 1 {
+			lay.last = d
+		} else if d != lay.last {
+			lay.last = digits{}
 		}
 	}
-	if lay.lastDecimals < 2 || rows < 3 {
-		lay.lastDecimals = 0
+	if lay.last.decimals < 2 || rows < 3 {
+		lay.last = digits{}
 	}
 	end := sampled
 	if n := len(v.lines); n > v.first+1 {
@@ -115,16 +116,19 @@ func (lay *layout) setFields(p *plan, v *view) {
 
 // weighStamp notes the day and the digits of a stamp of the sample.
 func (lay *layout) weighStamp(text string) {
-	digits := decimalsOf(text, lay.mark)
+	decimals := -1
+	if d := digitsOf(text, lay.mark); d.exponent == 0 {
+		decimals = d.decimals
+	}
 	if s, ok := parseClock(text); ok {
 		if s.clocked {
-			digits = s.digits
+			decimals = s.digits
 		}
 		if s.dated && !lay.clock.dated {
 			lay.clock = clockBase{day: s.day, dated: true}
 		}
 	}
-	lay.decimals = max(lay.decimals, digits)
+	lay.decimals = max(lay.decimals, decimals)
 }
 
 // isTimeLike tells whether a column of the sample rises in equal steps, but for

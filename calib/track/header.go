@@ -13,6 +13,8 @@ type headerRow struct {
 	roles int // cells with a known role
 	units int // cells that are units
 	texts int // cells that are neither empty nor numbers
+
+	counters int // cells that name a counter of rows
 }
 
 // maxHeaderRows is the largest number of header rows.
@@ -36,11 +38,18 @@ func newHeaderRow(line textLine, cells []string) headerRow {
 		}
 		info := parseName(c)
 		info.understand()
-		if info.role != otherRole && info.role != indexRole {
+		if info.role == indexRole {
+			h.counters++
+		} else if info.role != otherRole {
 			h.roles++
 		}
 	}
 	return h
+}
+
+// isShort tells whether every cell has four words at most, as names do.
+func (h headerRow) isShort() bool {
+	return !slices.ContainsFunc(h.cells, func(c string) bool { return len(strings.Fields(c)) > 4 })
 }
 
 // filled counts the cells that are not empty.
@@ -105,8 +114,24 @@ func isMarker(text string) bool {
 	return false
 }
 
-// findHeader collects the header rows above the data, nearest first.
+// findHeader returns the header rows above the data.
 func (v *view) findHeader(fits func(width int) bool) (rows []headerRow) {
+	rows = v.plainHeader(fits)
+	roles := 0
+	for _, h := range rows {
+		roles = max(roles, h.roles)
+	}
+	if roles == 0 { // a list of settings may look like names
+		if remark := v.commentHeader(fits); len(remark) > 0 {
+			rows = remark
+		}
+	}
+	slices.Reverse(rows)
+	return rows
+}
+
+// plainHeader collects the header rows that are no remarks, nearest first.
+func (v *view) plainHeader(fits func(width int) bool) (rows []headerRow) {
 	for i := v.first - 1; i >= 0 && len(rows) < maxHeaderRows; i-- {
 		text := v.lines[i].text
 		if isComment(text) || isRule(text) || isMarker(text) || isBlank(text) {
@@ -123,19 +148,22 @@ func (v *view) findHeader(fits func(width int) bool) (rows []headerRow) {
 		if len(rows) > 0 && h.texts < h.filled() && (v.width <= 2 || trimCell(cells[0]) != "" && !beadWords[strings.ToLower(trimCell(cells[0]))]) {
 			break // a key and its value
 		}
+		if h.roles == 0 && h.units == 0 && isKeyLine(text) || len(rows) > 0 && len(cells) > v.width && trimCell(cells[len(cells)-1]) != "" {
+			break
+		}
 		rows = append(rows, h)
 	}
-	if len(rows) == 0 {
-		rows = v.commentHeader(fits)
-	}
-	slices.Reverse(rows)
 	return rows
 }
 
 // commentHeader looks for names in the remarks above the data.
 func (v *view) commentHeader(fits func(width int) bool) []headerRow {
 	var units []headerRow
-	for i := v.first - 1; i >= 0; i-- {
+	last := v.first - 1
+	for last > 0 && isBlank(v.lines[last].text) {
+		last--
+	}
+	for i := last; i >= 0; i-- {
 		text := v.lines[i].text
 		if !isComment(text) {
 			continue
@@ -147,13 +175,13 @@ func (v *view) commentHeader(fits func(width int) bool) []headerRow {
 			}
 		}
 		ways := [][]string{cellTexts(text, v.delimiter), cellTexts(text, ','), cellTexts(text, '\t'), cellTexts(text, ';'), headerCells(text, ' ', v.width)}
-		for _, cells := range ways {
+		for k, cells := range ways {
 			h := newHeaderRow(v.lines[i], cells)
 			switch {
 			case !fits(len(cells)):
 			case h.units == h.filled() && h.units > 1:
 				units = []headerRow{h}
-			case h.roles > 0 && h.roles*2 >= h.filled():
+			case h.roles > 0 && (2*(h.roles+h.counters) >= h.filled() || i == last && v.delimiter != ' ' && k == 0 && h.isShort()):
 				return append(units, h)
 			}
 		}

@@ -61,38 +61,64 @@ func (v *view) checkShape(name string) error {
 	return nil
 }
 
-// checkBroken refuses a line that begins with a number between what is plainly a
-// header and the first row: a row that is broken, and no part of a preamble.
+// checkBroken refuses lines that look like rows, or like rows that are broken, above
+// what is taken for the first row: they are no part of a header, and would be lost.
 func (v *view) checkBroken(name string) error {
+	numeric := v.numericColumns()
+	run, from := 0, 0
+	for i := range v.first {
+		switch {
+		case v.isRow(i, numeric):
+			if run++; run == 1 {
+				from = i
+			}
+		case v.isAside(i), v.isGap(i, numeric):
+		case run >= leastLost:
+			return v.brokenRow(name, from)
+		default:
+			run = 0
+		}
+	}
 	broken := -1
 	for i := v.first - 1; i >= 0; i-- {
-		text := v.lines[i].text
-		if isBlank(text) || isComment(text) || isRule(text) {
+		if v.isAside(i) {
 			continue
 		}
+		text := v.lines[i].text
 		cells, open := splitLine(nil, text, v.delimiter)
 		h := newHeaderRow(v.lines[i], cellTexts(text, v.delimiter))
-		if broken >= 0 && len(cells) == v.width && h.texts == h.filled() && h.roles > 0 {
-			return v.brokenRow(name, broken)
-		}
 		k := slices.IndexFunc(cells, func(c cell) bool { return c.text != "" })
-		if k < 0 || kindOf(cells[k]) != numberCell && kindOf(cells[k]) != clockCell || h.units == h.filled() {
+		switch {
+		case broken >= 0 && len(cells) == v.width && h.texts == h.filled() && h.roles > 0:
+			return v.brokenRow(name, broken)
+		case k < 0 || kindOf(cells[k]) == textCell || kindOf(cells[k]) == missingCell || h.units == h.filled():
 			return nil
-		}
-		broken = i
-		if open >= 0 {
+		case open >= 0:
 			return openQuote(name, v.lines[i].number, text, open)
 		}
+		broken = i
 	}
 	return nil
 }
 
-// brokenRow says what is wrong with line i, which should be a row.
+// leastLost is the number of rows in a run that are no accident.
+const leastLost = 3
+
+// isAside tells whether line i is blank, a remark or a rule.
+func (v *view) isAside(i int) bool {
+	text := v.lines[i].text
+	return isBlank(text) || isComment(text) || isRule(text)
+}
+
+// brokenRow says what is wrong with the first line from i on that is no row.
 func (v *view) brokenRow(name string, i int) error {
+	numeric := v.numericColumns()
+	for i+1 < v.first && (v.isRow(i, numeric) || v.isGap(i, numeric) || v.isAside(i)) {
+		i++
+	}
 	line := v.lines[i]
 	cells, _ := splitLine(nil, line.text, v.delimiter)
 	err := &Error{File: name, Line: line.number, Code: CodeRow, What: fmt.Sprintf("the row has %d cells, the table has %d columns", len(cells), v.width), Remedy: repairRow}
-	numeric := v.numericColumns()
 	for k, c := range cells {
 		if len(cells) != v.width || !numeric[k] || kindOf(c) != textCell {
 			continue

@@ -11,28 +11,29 @@ import (
 
 // layout is what is known of a text file before its rows are parsed.
 type layout struct {
-	encoding     string // for ReadAs
-	legacy       bool   // bytes above 127 are Windows-1252 (Latin-1)
-	delimiter    byte   // ' ' stands for runs of spaces and tabs
-	padded       bool   // blanks stand around the cells
-	returns      bool   // carriage returns end lines
-	mark         byte   // decimal mark
-	thousands    byte   // separator of groups of three digits, 0 for none
-	trailing     bool   // rows may end in a delimiter
-	allWhole     bool   // no cell of the sample has a decimal mark
-	knownText    bool   // a text cell is a wrong cell, not another table
-	fields       []field
-	names        []columnInfo // one per field, from the header
-	start        int          // offset of the first row in the head
-	firstLine    int          // its line number, from 1
-	headerLines  int          // lines above the data
-	lineBytes    float64      // mean length of a row in the sample [bytes]
-	lastDecimals int          // decimals of the last column where all rows agree, otherwise 0
-	repeats      map[string]bool
-	clock        clockBase
-	decimals     int // decimals of the time stamps as written, -1 when unknown
-	preamble     preamble
-	kept         int // kept columns
+	encoding    string // for ReadAs
+	legacy      bool   // bytes above 127 are Windows-1252 (Latin-1)
+	delimiter   byte   // ' ' stands for runs of spaces and tabs
+	padded      bool   // blanks stand around the cells
+	returns     bool   // carriage returns end lines
+	mark        byte   // decimal mark
+	thousands   byte   // separator of groups of three digits, 0 for none
+	trailing    bool   // rows may end in a delimiter
+	allWhole    bool   // no cell of the sample has a decimal mark
+	knownText   bool   // a text cell is a wrong cell, not another table
+	fields      []field
+	names       []columnInfo // one per field, from the header
+	start       int          // offset of the first row in the head
+	firstLine   int          // its line number, from 1
+	headerLines int          // lines above the data
+	lineBytes   float64      // mean length of a row in the sample [bytes]
+	last        digits       // of the last column, where all rows agree
+	lastFilled  bool         // no cell of the last column is empty in the sample
+	repeats     map[string]bool
+	clock       clockBase
+	decimals    int // decimals of the time stamps as written, -1 when unknown
+	preamble    preamble
+	kept        int // kept columns
 }
 
 // decode returns a line as valid text. The result shares the memory of line

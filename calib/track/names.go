@@ -156,7 +156,7 @@ func parseName(cell string) columnInfo {
 		}
 		tail := trimCell(s[at+len(separator):])
 		u, ok := findUnit(tail)
-		if !ok || tail == "" || separator != "/" && separator != " in " && strings.ContainsAny(tail[:1], "1-#ifdnrN") && tail != "nm" && tail != "ns" {
+		if !ok || tail == "" || separator != "/" && separator != " in " && u.dim == plain && strings.ContainsAny(tail[:1], "1-#ifdnrN") {
 			continue
 		}
 		if u.dim == frames || u.name == "1" || u.dim == frequency || u.isCoarse() && !isTime(s[:at]) {

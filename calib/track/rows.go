@@ -254,12 +254,13 @@ func (p *parser) rareNumber(b []byte, i, shift int) (v float64, next int, ok boo
 	if v, next, ok = fastNumber(b, i, p.lay.mark, shift); ok {
 		return v, next, math.Abs(v) <= farthest
 	}
-	return fastMissing(b, i, p.lay.delimiter, len(p.lay.fields)-1)
+	return p.fastMissing(b, i)
 }
 
 // fastMissing reads an empty cell or "nan" in any case.
-func fastMissing(b []byte, i int, delimiter byte, last int) (v float64, next int, ok bool) {
-	if b[i] == delimiter || last > 0 && (b[i] == '\n' || b[i] == '\r') {
+func (p *parser) fastMissing(b []byte, i int) (v float64, next int, ok bool) {
+	delimiter := p.lay.delimiter
+	if b[i] == delimiter || len(p.lay.fields) > 1 && !p.lay.trailing && (b[i] == '\n' || b[i] == '\r') {
 		return math.NaN(), i, delimiter != ' '
 	}
 	if b[i]|0x20 == 'n' && b[i+1]|0x20 == 'a' && b[i+2]|0x20 == 'n' {

@@ -165,6 +165,9 @@ const repairRow = "repair or remove the row; keep one table in the file"
 // checkWidth compares the number of cells with the table.
 func (p *parser) checkWidth(cells []cell, text string, number int, last bool) *Error {
 	want, have := len(p.lay.fields), len(cells)
+	if p.lay.trailing && have == want && want > 1 && !cells[want-1].quoted && strings.HasSuffix(strings.TrimRight(text, " "), string(p.lay.delimiter)) {
+		have-- // every other row ends in a delimiter as well
+	}
 	if have == want || have == want+1 && cells[want].text == "" && (p.lay.trailing || p.lay.delimiter != ' ') {
 		return nil
 	}
@@ -183,36 +186,51 @@ func (p *parser) checkWidth(cells []cell, text string, number int, last bool) *E
 	return err
 }
 
-// checkCut refuses a last line without a newline whose last number has fewer
-// decimals than every other row: most likely its end is lost.
+// checkCut refuses a last line without a newline whose last number has fewer digits
+// than that of every other row, or is not there: most likely its end is lost.
 func (p *parser) checkCut(cells []cell, text string, number int) *Error {
 	k := len(p.lay.fields) - 1
-	want := p.lay.lastDecimals
-	if k >= len(cells) || want == 0 || cells[k].text == "" {
+	if k >= len(cells) {
 		return nil
 	}
-	if have := decimalsOf(cells[k].text, p.lay.mark); have < want {
-		return &Error{Line: number, Column: characters(text, cells[k].at), Code: CodeCut,
-			What:   fmt.Sprintf("the last number %s has %d decimals, all others have %d, and the line has no end: the file seems to be cut off", quoted(cells[k].text), have, want),
-			Remedy: "export the file again, or remove its last line"}
+	what := ""
+	want, have := p.lay.last, digitsOf(cells[k].text, p.lay.mark)
+	switch {
+	case cells[k].text == "" && p.lay.lastFilled && k > 0:
+		what = "the last cell is empty as in no other row"
+	case isMissing(trimCell(cells[k].text)):
+	case have.decimals < want.decimals:
+		what = fmt.Sprintf("the last number %s has %d decimals, all others have %d", quoted(cells[k].text), have.decimals, want.decimals)
+	case have.exponent < want.exponent:
+		what = fmt.Sprintf("the exponent of the last number %s is shorter than all others", quoted(cells[k].text))
+	case want == digits{} && p.lay.trailing && len(cells) == k+1:
+		what = "the last line does not end in the delimiter as all others do"
 	}
-	return nil
+	if what == "" {
+		return nil
+	}
+	return &Error{Line: number, Column: characters(text, cells[k].at), Code: CodeCut, What: what + ", and the line has no end: the file seems to be cut off",
+		Remedy: "export the file again, or remove its last line"}
 }
 
-// decimalsOf counts the digits behind the decimal mark; -1 for no plain number.
-func decimalsOf(text string, mark byte) int {
+// digits counts the digits of a number behind its decimal mark and in its exponent.
+type digits struct{ decimals, exponent int }
+
+// digitsOf counts the digits of a cell; decimals are -1 for a missing sample.
+func digitsOf(text string, mark byte) digits {
 	text = trimCell(text)
 	if isMissing(text) {
-		return -1
+		return digits{decimals: -1}
 	}
-	if strings.ContainsAny(text, "eEdD") {
-		return -1
+	var d digits
+	if at := strings.IndexAny(text, "eEdD"); at >= 0 {
+		d.exponent = len(strings.TrimLeft(text[at+1:], "+-"))
+		text = text[:at]
 	}
-	at := strings.IndexByte(text, mark)
-	if at < 0 {
-		return 0
+	if at := strings.IndexByte(text, mark); at >= 0 {
+		d.decimals = len(text) - at - 1
 	}
-	return len(text) - at - 1
+	return d
 }
 
 // isText tells whether a line begins with text rather than with a number.

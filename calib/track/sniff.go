@@ -81,6 +81,9 @@ func kindOf(c cell) cellKind {
 	if isMissing(s) {
 		return missingCell
 	}
+	if s[len(s)-1] == ',' { // a delimiter of another kind
+		return textCell
+	}
 	for _, mark := range []byte{'.', ','} {
 		_, err := generalNumber(s, mark, '.'+','-mark, 0)
 		if err == nil || err == twoMarks || err == tooLarge {
@@ -95,6 +98,10 @@ func kindOf(c cell) cellKind {
 	}
 	return textCell
 }
+
+// certain is the weight of a line with more numbers than texts beside one with fewer,
+// which counts only where there are none of the first kind.
+const certain = 1 << 20
 
 // view is the sample as one delimiter cuts it.
 type view struct {
@@ -126,18 +133,25 @@ func look(lines []textLine, delimiter byte) *view {
 		for k, c := range cells[:min(len(cells), columnLimit+1)] {
 			kinds[k] = kindOf(c)
 			switch kinds[k] {
-			case numberCell, clockCell:
+			case clockCell: // a date and a time of day in one cell are worth two
+				score += 2 * min(len(strings.Fields(trimCell(c.text))), 2)
+			case numberCell:
 				score += 2
 			case textCell:
 				score -= 2
 			}
 		}
 		v.cells[i], v.kinds[i] = cells, kinds
-		if v.numbers(i) > 0 {
-			scores[len(cells)] += max(score, 1)
+		if score > 0 {
+			scores[len(cells)] += score * certain
+		} else if v.numbers(i) > 0 && scores[len(cells)] < certain-1 {
+			scores[len(cells)]++
 		}
 	}
 	for width, score := range scores {
+		if score > certain {
+			score -= score % certain
+		}
 		if score > v.score || score == v.score && width > v.width {
 			v.score, v.width = score, width
 		}
@@ -165,6 +179,23 @@ func (v *view) isRow(i int, numeric []bool) bool {
 	}
 	for k, kind := range v.kinds[i] {
 		if numeric[k] && kind == textCell {
+			return false
+		}
+	}
+	return true
+}
+
+// isGap tells whether line i is a row in which every number is missing.
+func (v *view) isGap(i int, numeric []bool) bool {
+	cells := v.cells[i]
+	if len(cells) == 0 && !isComment(v.lines[i].text) && !isBlank(v.lines[i].text) {
+		cells, _ = splitLine(nil, v.lines[i].text, v.delimiter) // look leaves lines without a digit whole
+	}
+	if len(cells) != v.width {
+		return false
+	}
+	for k, c := range cells {
+		if numeric[k] && !isMissing(trimCell(c.text)) {
 			return false
 		}
 	}
@@ -209,6 +240,8 @@ func (v *view) findFirst() int {
 	best, bestLength, from, length := -1, 0, -1, 0
 	for i := range v.lines {
 		switch {
+		case length > 0 && v.isGap(i, numeric):
+			length++
 		case v.isRow(i, numeric):
 			if !text {
 				return i
@@ -226,6 +259,9 @@ func (v *view) findFirst() int {
 	}
 	return best
 }
+
+// hasHeader tells whether the line above the data has the width of the rows.
+func (v *view) hasHeader() bool { return v.width > 0 && v.headerWidth() == v.width }
 
 // preferSpaces takes blanks as the delimiter of a table with tabs where only
 // that fits the line above the data.
@@ -266,7 +302,8 @@ func sniff(lay *layout, sample []byte, wanted byte) *view {
 			if wanted != 0 && d.char != wanted {
 				continue
 			}
-			if v := look(lines, d.char); best == nil || v.score > best.score {
+			v := look(lines, d.char)
+			if best == nil || v.score > best.score || v.score == best.score && v.hasHeader() && !best.hasHeader() {
 				best = v
 			}
 		}

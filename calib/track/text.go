@@ -136,11 +136,12 @@ func (lay *layout) commaColumn(v *view, sample []byte, opt Options) *view {
 	if one.width != 1 || one.first != v.first {
 		return v
 	}
-	h := newHeaderRow(v.lines[v.first-1], cellTexts(v.lines[v.first-1].text, ';'))
-	if h.roles != 1 {
-		return v
+	for _, line := range v.lines[max(0, v.first-2):v.first] { // the name, or the name and the unit
+		if h := newHeaderRow(line, cellTexts(line.text, ';')); h.roles == 1 {
+			return one
+		}
 	}
-	return one
+	return v
 }
 
 // readRows parses all rows and judges the lines that are none.
