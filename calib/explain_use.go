@@ -25,6 +25,10 @@ What to do: let the stage settle, or cut a long recording into several.`},
 What to do: state each with its standard uncertainty.`},
 		{CodeNoiseDominant, "the noise exceeds the motion", `The localisation noise has a larger variance than the motion that is recorded. The motion is then the small difference of two large numbers.
 What to do: use more light or a brighter bead, or plan for less stiffness, which moves more.`},
+		{CodeNoiseLearned, "the recording tells the noise better than it is stated", `A stated noise with an uncertainty is combined with what the recording itself says of it. In a short recording the statement counts, and its uncertainty is part of the inputs. A long one tells the noise better, and the same uncertainty becomes a statistical one, that of repeated recordings. So the statistical part may rise with the duration, while the combined one falls.
+What to do: compare durations by the combined uncertainty; a longer background recording makes the noise itself better known.`},
+		{CodeExposureGrows, "the exposure is too uncertain for long recordings", `What an error of the exposure does to the fit does not become smaller with the duration, while the weights of the combination, which do not know of it, move towards the recording. A longer recording can then give a larger combined uncertainty.
+What to do: measure the exposure better, or expose for a shorter time; the share of the exposure in the budget says how much it counts.`},
 		{CodeBeyondLinear, "displacements beyond the range that was seen", `The calibration sees the potential only as far as thermal motion carries the bead, three to four standard deviations. The named range is that over which the histogram agrees with a parabola. Further out the force is stiffness times displacement only if the trap is still linear there, which this calibration cannot tell.
 What to do: move the stage, or drag the bead by a known flow, and see whether the displacement grows in proportion.`},
 		{CodeVerdictIgnored, "a verdict was overruled", `The calibration is inconsistent or the recording unfit, and the forces were computed all the same.

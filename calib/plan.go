@@ -48,10 +48,14 @@ type Plan struct {
 	Findings []Finding `json:"findings"` // never null
 }
 
-// PlanUncertainty is a relative standard uncertainty of the stiffness, 1. Null: the
-// recording does not determine it to better than its own size.
+// PlanUncertainty is a relative standard uncertainty of the stiffness, 1: that of an estimate
+// which reaches the Cramer-Rao bound of the recording together with what is stated of the noise.
+// The combined one is that bound. The statistical one is its part that repeated recordings would
+// show; with a noise that is stated as uncertain it may rise with the duration, when the
+// recording begins to tell the noise better than the statement. Null: the recording does not
+// determine the stiffness to better than its own size.
 type PlanUncertainty struct {
-	Statistical Float `json:"statistical"` // inputs taken as exact: the Cramer-Rao bound
+	Statistical Float `json:"statistical"` // scatter of repeated recordings, inputs taken as exact
 	Combined    Float `json:"combined"`    // with the stated uncertainties of the inputs
 }
 

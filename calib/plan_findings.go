@@ -19,6 +19,8 @@ const (
 	CodeDriftMatters  = "drift-limit"
 	CodeExactInputs   = "inputs-without-uncertainty"
 	CodeNoiseDominant = "noise-above-motion"
+	CodeNoiseLearned  = "noise-told-by-recording"
+	CodeExposureGrows = "exposure-limits-uncertainty"
 )
 
 // Limits of the findings of a plan.
@@ -30,7 +32,7 @@ const (
 // findings says what to look out for.
 func (f *forecast) findings(p *Plan) []Finding {
 	var out []Finding
-	for _, one := range []func(*Plan) (Finding, bool){f.assumed, f.exactInputs, f.slowRate, f.blurred, f.noiseFindings, f.short, f.surface,
+	for _, one := range []func(*Plan) (Finding, bool){f.assumed, f.exactInputs, f.slowRate, f.blurred, f.noiseFindings, f.noiseLearned, f.exposureGrows, f.short, f.surface,
 		f.inertia, f.drift, f.limit} {
 		if finding, ok := one(p); ok {
 			finding.Axis = f.axis
@@ -121,6 +123,54 @@ func (f *forecast) noiseFindings(p *Plan) (Finding, bool) {
 	}
 	return planFinding(CodeNoiseDominant, Doubtful, fmt.Sprintf("The localisation noise of %.3g nm exceeds the recorded motion of %.3g nm (root mean square).",
 		1e9*math.Sqrt(f.noise.Variance), 1e9*math.Sqrt(s*f.variance)), "use more light, a brighter bead, or less stiffness", f.noise.Variance/(s*f.variance), 1, "1")
+}
+
+// noiseLearned explains why the statistical part can rise with the duration: a longer recording
+// tells the noise better than it was stated, and what was a part of the input becomes one of
+// the recording.
+func (f *forecast) noiseLearned(p *Plan) (Finding, bool) {
+	if !f.noise.Known || f.noise.VarianceU == 0 {
+		return Finding{}, false
+	}
+	from, to := rises(p.Times, func(r PlanRoutes) Float { return r.Amplitude.Statistical })
+	if to == 0 {
+		return Finding{}, false
+	}
+	one, two := p.Times[from], p.Times[to]
+	return planFinding(CodeNoiseLearned, Note, fmt.Sprintf("Recordings longer than about %s s tell the localisation noise better than it is stated. From there on its part of the uncertainty is statistical: by amplitude, the statistical part goes from %.2g %% to %.2g %% at %s s, the combined one from %.2g %% to %.2g %%.",
+		digits(float64(one.Duration), 3), 100*float64(one.Routes.Amplitude.Statistical), 100*float64(two.Routes.Amplitude.Statistical), digits(float64(two.Duration), 3),
+		100*float64(one.Routes.Amplitude.Combined), 100*float64(two.Routes.Amplitude.Combined)),
+		"compare durations by the combined uncertainty, and measure the noise with a longer background", float64(one.Duration), math.NaN(), "s")
+}
+
+// exposureGrows tells when a longer recording is a worse one: the more the recording is relied upon,
+// the more it counts that the exposure is not what was stated.
+func (f *forecast) exposureGrows(p *Plan) (Finding, bool) {
+	from, to := rises(p.Times, func(r PlanRoutes) Float { return r.Both.Combined })
+	if to == 0 {
+		return Finding{}, false
+	}
+	one, two := p.Times[from], p.Times[to]
+	return planFinding(CodeExposureGrows, Doubtful, fmt.Sprintf("The exposure is too uncertain for long recordings: the combined uncertainty is %.2g %% at %s s and %.2g %% at %s s, because more of it then rests on the exposure.",
+		100*float64(one.Routes.Both.Combined), digits(float64(one.Duration), 3), 100*float64(two.Routes.Both.Combined), digits(float64(two.Duration), 3)),
+		"measure the exposure better, or expose for a shorter time", float64(one.Duration), math.NaN(), "s")
+}
+
+// rises returns the rows between which a number rises most with the duration, or zeros when it
+// rises by less than a rounding of its two digits.
+func rises(rows []PlanTime, of func(PlanRoutes) Float) (from, to int) {
+	const least = 1.01
+	largest, lowest := least, 0
+	for i, row := range rows {
+		before, now := float64(of(rows[lowest].Routes)), float64(of(row.Routes))
+		if !(now >= before) { // NaN: the recording was too short to tell
+			lowest = i
+		}
+		if now/before > largest {
+			largest, from, to = now/before, lowest, i
+		}
+	}
+	return from, to
 }
 
 func (f *forecast) short(p *Plan) (Finding, bool) {

@@ -5,6 +5,7 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"math/rand/v2"
 	"testing"
 
 	"beadwell/calib"
@@ -92,51 +93,151 @@ func TestForecastFastLimit(t *testing.T) {
 }
 
 // planned are regimes with what a recording in each of them is: the tests below use no more than about a
-// relative uncertainty of 5 %, where terms of second order are below 1 % of the uncertainty.
+// relative uncertainty of 5 %, where terms of second order are below 1 % of the uncertainty. An empty
+// noise is fitted.
 var planned = []struct {
 	name, rate, exposure, noise string
 	corner, seconds             float64
 }{
 	{"detector", "4 kHz", "0 s", "0 nm", 250, 1},
+	{"fast detector", "20 kHz", "0 s", "0.50(5) nm", 1000, 0.5},
 	{"blurred camera", "1 kHz", "0.8 ms", "2 nm", 200, 5},
 	{"slow camera", "600 Hz", "0.4 ms", "2 nm", 150, 10},
+	{"exposed for the whole frame", "500 Hz", "2 ms", "3.0(3) nm", 60, 10},
+	{"corner near the rate", "300 Hz", "0.2 ms", "2 nm", 120, 20},
+	{"noise uncertain", "400 Hz", "2 ms", "5.0(5) nm", 105, 20},
+	{"noise told by the recording", "400 Hz", "1 ms", "12.0(12) nm", 50, 50},
+	{"noise fitted", "2 kHz", "0.1 ms", "", 100, 10},
+}
+
+// scatter is the standard deviation of ln fc and ln V over simulated recordings of a plan, whose
+// noise has the stated variance, or one that is drawn anew with its stated uncertainty.
+func scatter(t *testing.T, p *calib.Plan, samples, runs int, drawn bool) [2]float64 {
+	t.Helper()
+	corner, variance := float64(p.Corner.Value), float64(p.RMS.Value*p.RMS.Value)
+	options := psd.Options{Exposure: float64(p.Exposure), KeepLines: true}
+	noise := truthNoise(p)
+	if p.Noise.Known() {
+		options.Noise = psd.Noise{Known: true, Variance: noise * noise}
+		if p.Noise.Combined != nil {
+			options.Noise.VarianceU = 2 * noise * float64(p.Noise.Combined.Standard)
+		}
+	}
+	random := rand.New(rand.NewPCG(3, 9))
+	var sum, sum2 [2]float64
+	for seed := range runs {
+		actual := noise
+		if drawn {
+			actual = math.Sqrt(math.Max(0, noise*noise+options.Noise.VarianceU*random.NormFloat64()))
+		}
+		record, err := psd.Prepare(simulated(p, samples, actual, uint64(seed)), float64(p.Rate))
+		if err != nil {
+			t.Fatal(err)
+		}
+		fit, err := psd.Estimate(record, options)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for i, l := range []float64{math.Log(fit.Corner / corner), math.Log(fit.Variance / variance)} {
+			sum[i] += l
+			sum2[i] += l * l
+		}
+	}
+	var sd [2]float64
+	for i := range sd {
+		sd[i] = math.Sqrt((sum2[i] - sum[i]*sum[i]/float64(runs)) / float64(runs-1))
+	}
+	return sd
 }
 
 // The scatter of the estimates is within 5 % of the plan: 1500 recordings leave
-// 1/sqrt(3000) = 1.8 % on a standard deviation.
+// 1/sqrt(3000) = 1.8 % on a standard deviation. The statistical part is that of recordings whose noise is the
+// stated one; with a noise drawn from what is stated, the scatter is the combined uncertainty.
 func TestForecastAgainstSimulation(t *testing.T) {
 	const runs = 1500
 	for _, cell := range planned {
 		t.Run(cell.name, func(t *testing.T) {
-			p := forecast(t, calib.PlanOptions{Corner: cell.corner}, with(exactBead, "recording.rate", cell.rate, "recording.exposure", cell.exposure, "recording.noise", cell.noise)...)
+			p := forecastCell(t, exactBead, cell.corner, cell.rate, cell.exposure, cell.noise)
 			row := timeOf(t, p, cell.seconds)
-			options := psd.Options{Exposure: float64(p.Exposure), KeepLines: true, Noise: psd.Noise{Known: true, Variance: float64(p.Noise.Value * p.Noise.Value)}}
-			var sum, sum2 [2]float64
-			for seed := range runs {
-				record, err := psd.Prepare(simulated(p, row.Samples, uint64(seed)), float64(p.Rate))
-				if err != nil {
-					t.Fatal(err)
-				}
-				fit, err := psd.Estimate(record, options)
-				if err != nil {
-					t.Fatal(err)
-				}
-				for i, l := range []float64{math.Log(fit.Corner / cell.corner), math.Log(fit.Variance / float64(p.RMS.Value*p.RMS.Value))} {
-					sum[i] += l
-					sum2[i] += l * l
-				}
+			routes := []calib.PlanUncertainty{row.Routes.Drag, row.Routes.Amplitude}
+			for i, sd := range scatter(t, p, row.Samples, runs, false) {
+				near(t, []string{"scatter by drag", "scatter by amplitude"}[i], calib.Float(sd), float64(routes[i].Statistical), 0.05)
 			}
-			for i, want := range []calib.PlanUncertainty{row.Routes.Drag, row.Routes.Amplitude} {
-				sd := math.Sqrt((sum2[i] - sum[i]*sum[i]/runs) / (runs - 1))
-				near(t, []string{"scatter by drag", "scatter by amplitude"}[i], calib.Float(sd), float64(want.Statistical), 0.05)
+			if p.Noise.Combined == nil {
+				return
+			}
+			for i, sd := range scatter(t, p, row.Samples, runs, true) {
+				near(t, []string{"scatter by drag", "scatter by amplitude"}[i]+", noise drawn", calib.Float(sd), float64(routes[i].Combined), 0.05)
 			}
 		})
 	}
 }
 
-func simulated(p *calib.Plan, samples int, seed uint64) []float64 {
-	axis := simulate.Axis{Corner: float64(p.Corner.Value), Variance: float64(p.RMS.Value * p.RMS.Value), Noise: float64(p.Noise.Value)}
+// forecastCell is the plan of a regime.
+func forecastCell(t *testing.T, bead []string, corner float64, rate, exposure, noise string) *calib.Plan {
+	t.Helper()
+	return forecast(t, calib.PlanOptions{Corner: corner}, cellSettings(bead, rate, exposure, noise)...)
+}
+
+func cellSettings(bead []string, rate, exposure, noise string) []string {
+	pairs := with(bead, "recording.rate", rate, "recording.exposure", exposure)
+	if noise != "" {
+		pairs = append(pairs, "recording.noise", noise)
+	}
+	return pairs
+}
+
+// truthNoise is the noise of a simulated recording [m]: the stated one, else 2 nm.
+func truthNoise(p *calib.Plan) float64 {
+	if p.Noise.Known() {
+		return float64(p.Noise.Value)
+	}
+	return 2e-9
+}
+
+func simulated(p *calib.Plan, samples int, noise float64, seed uint64) []float64 {
+	axis := simulate.Axis{Corner: float64(p.Corner.Value), Variance: float64(p.RMS.Value * p.RMS.Value), Noise: noise}
 	return simulate.Record(simulate.Truth{Samples: samples, Rate: float64(p.Rate), Exposure: float64(p.Exposure), Axes: []simulate.Axis{axis}}, seed)[0]
+}
+
+// With an exact exposure a longer recording never has a larger combined uncertainty. The statistical part rises only
+// where an uncertain noise is told by the recording, and a note says so; the combined one rises only by an uncertain
+// exposure, and a finding says that.
+func TestForecastAgainstDuration(t *testing.T) {
+	rose := map[string]int{}
+	for _, corner := range []float64{20, 100, 300} {
+		for _, exposure := range []string{"0 s", "0.8 ms", "0.80(8) ms"} {
+			for _, noise := range []string{"", "0 nm", "5 nm", "5(1) nm", "30(10) nm"} {
+				for _, diameter := range []string{"1.00 um", "1.00(3) um"} {
+					name := fmt.Sprintf("%g Hz, exposure %s, noise %s, bead %s", corner, exposure, noise, diameter)
+					bead := []string{"bead.diameter", diameter, "medium.fluid", "water", "medium.temperature", "25.0(5) C", "chamber.height", "far"}
+					p := forecastCell(t, bead, corner, "1 kHz", exposure, noise)
+					statistical, combined := false, false
+					for i := 1; i < len(p.Times); i++ {
+						before, now := p.Times[i-1].Routes, p.Times[i].Routes
+						combined = combined || now.Both.Combined > 1.01*before.Both.Combined
+						statistical = statistical || now.Amplitude.Statistical > 1.01*before.Amplitude.Statistical
+					}
+					_, learned := findingOf(p, calib.CodeNoiseLearned)
+					_, grows := findingOf(p, calib.CodeExposureGrows)
+					if statistical && !learned || combined && !grows {
+						t.Errorf("%s: a rise (statistical %v, combined %v) without its finding", name, statistical, combined)
+					}
+					if learned && noise != "5(1) nm" && noise != "30(10) nm" || grows && exposure != "0.80(8) ms" {
+						t.Errorf("%s: a finding without its cause (noise %v, exposure %v)", name, learned, grows)
+					}
+					for what, is := range map[string]bool{"noise": learned, "exposure": grows} {
+						if is {
+							rose[what]++
+						}
+					}
+				}
+			}
+		}
+	}
+	if rose["noise"] == 0 || rose["exposure"] == 0 {
+		t.Errorf("no regime shows the two rises: %v", rose)
+	}
 }
 
 // What Calibrate states of six recordings is on average what the plan predicts, with inputs exact and
@@ -147,7 +248,7 @@ func TestForecastAgainstCalibrate(t *testing.T) {
 	const runs = 6
 	for _, cell := range planned {
 		t.Run(cell.name, func(t *testing.T) {
-			set := planSettings(t, with(stated, "recording.rate", cell.rate, "recording.exposure", cell.exposure, "recording.noise", cell.noise)...)
+			set := planSettings(t, cellSettings(stated, cell.rate, cell.exposure, cell.noise)...)
 			p, err := calib.Forecast(set, calib.PlanOptions{Corner: cell.corner})
 			if err != nil {
 				t.Fatal(err)
@@ -156,7 +257,7 @@ func TestForecastAgainstCalibrate(t *testing.T) {
 			var mean [6]float64
 			for seed := range runs {
 				nan := math.NaN()
-				x := simulated(p, row.Samples, uint64(seed))
+				x := simulated(p, row.Samples, truthNoise(p), uint64(seed))
 				rec := &track.Recording{Name: "simulated", Rate: float64(p.Rate), RateU: nan, RateOrigin: "setting", Samples: len(x), JitterRMS: nan, JitterMax: nan,
 					Axes: []track.Axis{{Name: "x", Header: "x", Unit: "m", ToMetre: 1, Values: x}}}
 				r, err := calib.Calibrate(context.Background(), rec, set, calib.Options{})
@@ -300,7 +401,7 @@ func TestForecastExposure(t *testing.T) {
 	var mean [2]float64
 	for seed := range runs {
 		nan := math.NaN()
-		x := simulated(p, row.Samples, uint64(seed))
+		x := simulated(p, row.Samples, truthNoise(p), uint64(seed))
 		rec := &track.Recording{Name: "simulated", Rate: float64(p.Rate), RateU: nan, RateOrigin: "setting", Samples: len(x), JitterRMS: nan, JitterMax: nan,
 			Axes: []track.Axis{{Name: "x", Header: "x", Unit: "m", ToMetre: 1, Values: x}}}
 		r, err := calib.Calibrate(context.Background(), rec, set, calib.Options{})

@@ -3,6 +3,7 @@ package calib
 import (
 	"fmt"
 	"math"
+	"slices"
 )
 
 // leastPlanned is the smallest number of samples of a planned recording.
@@ -11,10 +12,11 @@ const leastPlanned = 64
 // mostPlanned is the largest number of samples of a row: a terabyte of text.
 const mostPlanned = 20_000_000_000
 
-// longestPlanned is the longest duration that is looked for [s], about four months.
-const longestPlanned = 1e7
+// longestPlanned is the longest duration that is looked for [s]: no trap stays the same for
+// longer than a day.
+const longestPlanned = 86400
 
-const notReached = "not reached in four months"
+const notReached = "not reached in a day"
 
 // littleGain is the ratio to the floor at which a recording is long enough.
 const littleGain = 1.05
@@ -93,17 +95,30 @@ func (f *forecast) floor() PlanFloor {
 // negligible is a floor that no recording reaches: 1e9 independent samples have 4e-5.
 const negligible = 1e-5
 
-// until returns the shortest duration [s] from which on miss, which falls with the
-// duration, is not positive; +Inf when none is short enough.
+// looked are the durations [s] between which a search looks closer, from the shortest to the
+// longest, so close that a number which falls and rises again is not missed.
+func (f *forecast) looked() []float64 {
+	const step = 1.5
+	var all []float64
+	for t := leastPlanned / f.rate; t < longestPlanned; t *= step {
+		all = append(all, t)
+	}
+	return append(all, longestPlanned)
+}
+
+// until returns the shortest duration [s] at which miss is not positive; +Inf when there is
+// none.
 func (f *forecast) until(miss func(PlanRoutes) float64) float64 {
 	ok := func(t float64) bool { return miss(f.at(f.rate, f.samples(t, f.rate)).routes) <= 0 } // NaN is not there yet
-	low, high := leastPlanned/f.rate, longestPlanned
-	switch {
-	case low >= high || !ok(high):
+	looked := f.looked()
+	first := slices.IndexFunc(looked, ok)
+	switch first {
+	case -1:
 		return math.Inf(1)
-	case ok(low):
-		return low
+	case 0:
+		return looked[0]
 	}
+	low, high := looked[first-1], looked[first]
 	for math.Log(high/low) > 1e-4 { // finer than anything that is recorded by
 		if middle := math.Sqrt(low * high); ok(middle) {
 			high = middle
@@ -114,12 +129,19 @@ func (f *forecast) until(miss func(PlanRoutes) float64) float64 {
 	return high
 }
 
-// enough is the duration at which the combined uncertainty is within 5 % of its floor.
+// enough is the duration at which the combined uncertainty is within 5 % of the least that any
+// duration gives: its floor, unless it rises towards that.
 func (f *forecast) enough(floor float64) Quantity {
 	if !(floor > negligible) {
 		return Withheld("s", "no input is stated with an uncertainty: every recording gains by being longer")
 	}
-	t := f.until(func(r PlanRoutes) float64 { return float64(r.Both.Combined) - littleGain*floor })
+	least := floor
+	for _, t := range f.looked() {
+		if u := float64(f.at(f.rate, f.samples(t, f.rate)).routes.Both.Combined); u < least {
+			least = u
+		}
+	}
+	t := f.until(func(r PlanRoutes) float64 { return float64(r.Both.Combined) - littleGain*least })
 	if math.IsInf(t, 1) {
 		return Withheld("s", notReached)
 	}
@@ -132,11 +154,11 @@ func (f *forecast) wanted(u float64) *PlanWanted {
 		if !floor.Known() {
 			return Withheld("s", "this recording does not determine it, however long")
 		}
-		if float64(floor) >= u {
-			return Withheld("s", fmt.Sprintf("the inputs alone leave %.2g %%", 100*float64(floor)))
-		}
 		t := f.until(func(r PlanRoutes) float64 { return float64(of(r).Combined) - u })
-		if math.IsInf(t, 1) {
+		switch {
+		case math.IsInf(t, 1) && float64(floor) >= u:
+			return Withheld("s", fmt.Sprintf("the inputs alone leave %.2g %%", 100*float64(floor)))
+		case math.IsInf(t, 1):
 			return Withheld("s", notReached)
 		}
 		return Exact(t, "s")
