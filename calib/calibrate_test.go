@@ -106,12 +106,7 @@ func (s scene) calibrate(t *testing.T, seed uint64) *Result {
 }
 
 func (a Axis) leg(name string) Quantity {
-	for _, e := range a.Estimates {
-		if e.Leg == name {
-			return e.Stiffness
-		}
-	}
-	return Withheld("", "no such leg")
+	return a.estimate(name)
 }
 
 // The absolute scale: all estimates of long recordings meet the true stiffness. At

@@ -44,7 +44,7 @@ type weighed struct {
 //
 // Inputs enter as normal priors and are maximised over, which for errors that are
 // linear in the logarithms gives -r' C^-1 r / 2 with C the covariance of the residuals r
-// (docs/method.md, Eq. 58).
+// (docs/method.md, Eq. 59).
 func (b *bench) weigh(found []evidence, shift []float64, freed func(influence, int) bool) (weighed, bool) {
 	n := len(found)
 	c := mat.NewSymDense(n, nil)

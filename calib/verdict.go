@@ -64,7 +64,7 @@ func (r *Result) judge(works []*work, opt Options) {
 	if float64(v.FamilyWiseP) >= familyLevel {
 		v.Text = "The estimates agree within their uncertainties."
 		v.Reason = fmt.Sprintf("smallest p-value over %d %s, corrected for their number: %s (inconsistent below %g)",
-			tested, plural(tested, "axis", "axes"), pText(float64(v.FamilyWiseP)), familyLevel)
+			tested, comparisons(tested, len(works)), pText(float64(v.FamilyWiseP)), familyLevel)
 		return
 	}
 	v.Status = Inconsistent
@@ -107,6 +107,14 @@ func (r *Result) anyAdopted() bool {
 		}
 	}
 	return len(r.Axes) == 0
+}
+
+// comparisons names what was tested: the axes, where there was one test of each.
+func comparisons(tested, axes int) string {
+	if tested <= axes {
+		return plural(tested, "axis", "axes")
+	}
+	return "comparisons"
 }
 
 func plural(n int, one, many string) string {

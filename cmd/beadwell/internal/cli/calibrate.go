@@ -37,6 +37,10 @@ Settings come from session.toml and tracks.csv beside each track, and from
 flags, which go before both. The bead's diameter has no default. TRACK is a text
 file or a NumPy array, compressed by gzip or zstd or not; - is standard input.
 
+Several recordings of one trap with a stage at constant speed (--role driven) are
+also joined into one line of displacement against speed, whose slope is drag over
+stiffness.
+
 The table on standard output, for each axis:
 
     stiffness            adopted value in pN/um; in brackets the combined standard
@@ -215,6 +219,7 @@ func (a *app) printOutcomes(outcomes []outcome, o calibrateOptions) error {
 			a.warn(one.result)
 		}
 	}
+	set.Join()
 	single := len(outcomes) == 1
 	switch {
 	case single && len(set.Failures) == 1:

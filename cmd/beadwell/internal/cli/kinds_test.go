@@ -14,16 +14,18 @@ import (
 	"beadwell/calib"
 )
 
+// real runs a command with real calibrations.
+func real(args ...string) (int, string, string) {
+	w, text, errs := testWorld("")
+	w.Calibrate = calib.Calibrate
+	status := run(context.Background(), args, w)
+	return status, text.String(), errs.String()
+}
+
 // Recordings other than a trapped bead in a stage at rest: each is simulated, read back and calibrated for
 // real, and its stored result fits the schema.
 func TestKinds(t *testing.T) {
 	t.Chdir(t.TempDir())
-	real := func(args ...string) (int, string, string) {
-		w, text, errs := testWorld("")
-		w.Calibrate = calib.Calibrate
-		status := run(context.Background(), args, w)
-		return status, text.String(), errs.String()
-	}
 	bead := []string{"--diameter", "1.02(2) um", "--temperature", "24.5(5) C", "--height", "8.0(5) um"}
 	fast := []string{"--axes", "x", "--rate", "5 kHz", "--duration", "6 s"}
 	volts := []string{"--unit", "V", "--sensitivity", "1.3 um/V"}
@@ -85,6 +87,35 @@ func TestKinds(t *testing.T) {
 		}
 		if err := resultSchema(t).Validate(document); err != nil {
 			t.Errorf("%s: %v", name, err)
+		}
+	}
+}
+
+// Recordings of one trap whose stage moves at constant speed make one line of displacement against speed; one alone has
+// nothing to be joined with.
+func TestJoined(t *testing.T) {
+	t.Chdir(t.TempDir())
+	bead := []string{"--diameter", "1.02(2) um", "--temperature", "25.0(3) C", "--height", "8.0(3) um", "--role", "driven", "--drive-waveform", "triangle"}
+	for name, amplitude := range map[string]string{"a.csv": "4 um", "b.csv": "8 um"} {
+		args := flat([][]string{{"simulate", "--out", name}, bead, {"--drive-amplitude", amplitude, "--drive-frequency", "4 Hz",
+			"--stiffness", "30 pN/um", "--axes", "x", "--rate", "10 kHz", "--duration", "2 s", "--seed", amplitude[:1]}})
+		if status, _, errs := real(args...); status != StatusDone {
+			t.Fatalf("simulate %s: status %d, %s", name, status, errs)
+		}
+	}
+	for _, c := range []struct {
+		args []string
+		want string
+		not  bool
+	}{
+		{[]string{"a.csv", "b.csv"}, `2 recordings with 34 strokes from 64 to 128 um/s`, false},
+		{[]string{"--format", "json", "a.csv", "b.csv"}, `"joined_flow": \[`, false},
+		{[]string{"a.csv"}, `in one line`, true},
+		{[]string{"a.csv"}, `slope of displacement against speed +(29|30)\d`, false},
+	} {
+		status, text, errs := real(flat([][]string{{"calibrate", "--exposure", "0 s"}, bead, c.args})...)
+		if status != StatusDone || regexp.MustCompile(c.want).MatchString(text) == c.not {
+			t.Errorf("%v: status %d, %q expected %t in\n%s%s", c.args, status, c.want, !c.not, text, errs)
 		}
 	}
 }

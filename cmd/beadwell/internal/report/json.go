@@ -18,6 +18,19 @@ type Set struct {
 	Schema   string          `json:"schema"`
 	Results  []*calib.Result `json:"results"`  // never null
 	Failures []Problem       `json:"failures"` // never null
+	// Joined are the straight lines through recordings with a stage at constant speed that share a trap.
+	Joined []calib.FlowJoin `json:"joined_flow,omitempty"`
+}
+
+// Join finds the lines through several recordings.
+func (s *Set) Join() {
+	var parts []calib.FlowPart
+	for _, r := range s.Results {
+		parts = append(parts, calib.FlowParts(r)...)
+	}
+	if joined := calib.JoinFlow(parts); len(joined) > 0 {
+		s.Joined = joined
+	}
 }
 
 // Problem is an error as JSON: what --format json writes to standard error, and
@@ -51,7 +64,7 @@ func JSON(w io.Writer, r *calib.Result) error { return writeJSON(w, storable(r))
 
 // SetJSON writes the results of several recordings.
 func SetJSON(w io.Writer, s Set) error {
-	stored := Set{Schema: SetVersion, Results: []*calib.Result{}, Failures: []Problem{}}
+	stored := Set{Schema: SetVersion, Results: []*calib.Result{}, Failures: []Problem{}, Joined: s.Joined}
 	for _, r := range s.Results {
 		stored.Results = append(stored.Results, storable(r))
 	}

@@ -92,6 +92,10 @@ func drivenRows(a calib.Axis, d *calib.Driven, add func(string, calib.Quantity, 
 	if a.Sensitivity == nil || a.Sensitivity.Origin != calib.SensitivityDriven {
 		add("true over recorded length", d.LengthScale, "1", "")
 	}
+	if f := d.Flow; f != nil {
+		add("slope of displacement against speed", f.Slope, "us", fmt.Sprintf("drag over stiffness; %d strokes, the first %.2g ms of each left out", len(f.Points), 1e3*float64(f.Skipped)))
+		add("displacement at rest", f.Intercept, "nm", "intercept of the line, from the mean of the record; p of the line "+probability(f.Goodness.PValue))
+	}
 	add("amplitude of the stage", d.Amplitude, "nm", "by "+map[string]string{"column": "its column", "settings": "the settings"}[d.Origin])
 	add("lead of the bead before the stage", d.Lead, "1", "rad; expected "+plainNumber(d.LeadExpect, "1"))
 }

@@ -25,6 +25,7 @@ func SetText(w io.Writer, s Set, opt TextOptions) error {
 			row(failure.Input, "failed")
 		}
 	})
+	p.joined(s.Joined)
 	if _, err := io.WriteString(w, p.String()); err != nil {
 		return err
 	}
@@ -37,6 +38,27 @@ func SetText(w io.Writer, s Set, opt TextOptions) error {
 		}
 	}
 	return nil
+}
+
+// joined prints the straight lines through several recordings.
+func (p *printer) joined(list []calib.FlowJoin) {
+	if len(list) == 0 {
+		return
+	}
+	p.WriteString("\n")
+	p.table(func(row func(...string)) {
+		row("displacement against speed in one line", "")
+		for _, j := range list {
+			row("axis "+j.Axis, "")
+			row("  stiffness by constant flow", withUnit(combined(j.Stiffness, stiffnessUnit), stiffnessUnit))
+			row("  the same without viscosity", withUnit(combined(j.Driven, stiffnessUnit), stiffnessUnit))
+			row("  slope, drag/stiffness", withUnit(combined(j.Slope, "us"), "us"))
+			row("  intercept", withUnit(combined(j.Intercept, "nm"), "nm"))
+		}
+	})
+	for _, j := range list {
+		p.paragraph("  ", "axis "+j.Axis+": "+j.Text+"; intercept and drift are free in each recording")
+	}
 }
 
 // axisNames lists the axes that any of the results has, in order of name.
