@@ -14,7 +14,7 @@ func (lay *layout) measure(v *view, sampled int) {
 		lay.names[k].numeric, lay.names[k].whole, lay.names[k].empty = numeric[k], true, true
 	}
 	last := len(lay.names) - 1
-	lay.lastFilled = true
+	lay.lastMarks = map[string]bool{}
 	rows := 0
 	for i := v.first; i < len(v.lines); i++ {
 		if !v.isRow(i, numeric) {
@@ -33,7 +33,9 @@ func (lay *layout) measure(v *view, sampled int) {
 		if i == len(v.lines)-1 {
 			break // possibly cut off
 		}
-		lay.lastFilled = lay.lastFilled && v.kinds[i][last] != missingCell
+		if v.kinds[i][last] == missingCell {
+			lay.lastMarks[v.cells[i][last].text] = true
+		}
 		if d := digitsOf(v.cells[i][last].text, lay.mark); rows == 1 {
 			lay.last = d
 		} else if d != lay.last {

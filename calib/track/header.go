@@ -325,6 +325,9 @@ func (lay *layout) setNames(name string, v *view, opt Options) error {
 			return err
 		}
 	}
+	if err := v.checkBetween(name, rows); err != nil {
+		return err
+	}
 	lay.names = nameColumns(rows, width, shift)
 	lay.repeats = map[string]bool{}
 	for _, h := range rows {

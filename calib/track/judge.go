@@ -101,6 +101,25 @@ func (v *view) checkBroken(name string) error {
 	return nil
 }
 
+// checkBetween refuses rows, whole or broken, between the header and the first row.
+func (v *view) checkBetween(name string, rows []headerRow) error {
+	if len(rows) == 0 {
+		return nil
+	}
+	numeric := v.numericColumns()
+	for i := range v.first {
+		if v.lines[i].number <= rows[len(rows)-1].line.number || v.isAside(i) || isMarker(v.lines[i].text) {
+			continue
+		}
+		cells, _ := splitLine(nil, v.lines[i].text, v.delimiter)
+		k := slices.IndexFunc(cells, func(c cell) bool { return c.text != "" })
+		if v.isRow(i, numeric) || len(cells) == v.width || k >= 0 && (kindOf(cells[k]) == numberCell || kindOf(cells[k]) == clockCell) {
+			return v.brokenRow(name, i)
+		}
+	}
+	return nil
+}
+
 // leastLost is the number of rows in a run that are no accident.
 const leastLost = 3
 

@@ -22,13 +22,13 @@ type layout struct {
 	allWhole    bool   // no cell of the sample has a decimal mark
 	knownText   bool   // a text cell is a wrong cell, not another table
 	fields      []field
-	names       []columnInfo // one per field, from the header
-	start       int          // offset of the first row in the head
-	firstLine   int          // its line number, from 1
-	headerLines int          // lines above the data
-	lineBytes   float64      // mean length of a row in the sample [bytes]
-	last        digits       // of the last column, where all rows agree
-	lastFilled  bool         // no cell of the last column is empty in the sample
+	names       []columnInfo    // one per field, from the header
+	start       int             // offset of the first row in the head
+	firstLine   int             // its line number, from 1
+	headerLines int             // lines above the data
+	lineBytes   float64         // mean length of a row in the sample [bytes]
+	last        digits          // of the last column, where all rows agree
+	lastMarks   map[string]bool // spellings of a missing sample in the last column of the sample
 	repeats     map[string]bool
 	clock       clockBase
 	decimals    int // decimals of the time stamps as written, -1 when unknown

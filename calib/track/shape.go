@@ -12,7 +12,7 @@ func (p *preamble) read(v *view) {
 	for i := range v.first {
 		line := v.lines[i]
 		p.readKey(line.text, v.delimiter, line.number)
-		if i+1 < v.first {
+		if i+1 < v.first && !isKeyLine(line.text) && !isKeyLine(v.lines[i+1].text) {
 			names, values := cellTexts(line.text, v.delimiter), cellTexts(v.lines[i+1].text, v.delimiter)
 			for k := range min(len(names), len(values)) {
 				p.set(names[k], values[k], v.lines[i+1].number)

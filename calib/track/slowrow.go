@@ -196,8 +196,8 @@ func (p *parser) checkCut(cells []cell, text string, number int) *Error {
 	what := ""
 	want, have := p.lay.last, digitsOf(cells[k].text, p.lay.mark)
 	switch {
-	case cells[k].text == "" && p.lay.lastFilled && k > 0:
-		what = "the last cell is empty as in no other row"
+	case len(cells[k].text) < 2 && isMissing(cells[k].text) && !p.lay.lastMarks[cells[k].text] && k > 0:
+		what = fmt.Sprintf("the last cell is %s, as in no other row", quoted(cells[k].text))
 	case isMissing(trimCell(cells[k].text)):
 	case have.decimals < want.decimals:
 		what = fmt.Sprintf("the last number %s has %d decimals, all others have %d", quoted(cells[k].text), have.decimals, want.decimals)

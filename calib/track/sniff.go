@@ -263,6 +263,20 @@ func (v *view) findFirst() int {
 // hasHeader tells whether the line above the data has the width of the rows.
 func (v *view) hasHeader() bool { return v.width > 0 && v.headerWidth() == v.width }
 
+// preferVisible takes a delimiter that can be seen where blanks cut more numbers from
+// the rows, as in "4 102 054.0", but do not fit the line above the data.
+func preferVisible(lines []textLine, best *view, wanted byte) *view {
+	if wanted != 0 || best.delimiter != ' ' || best.first < 1 || best.hasHeader() {
+		return best
+	}
+	for _, d := range delimiters {
+		if v := look(lines, d.char); d.char != ' ' && v.width >= 2 && v.first == best.first && v.hasHeader() {
+			return v
+		}
+	}
+	return best
+}
+
 // preferSpaces takes blanks as the delimiter of a table with tabs where only
 // that fits the line above the data.
 func preferSpaces(lines []textLine, best *view, wanted byte) *view {
@@ -307,7 +321,7 @@ func sniff(lay *layout, sample []byte, wanted byte) *view {
 				best = v
 			}
 		}
-		best = preferSpaces(lines, best, wanted)
+		best = preferVisible(lines, preferSpaces(lines, best, wanted), wanted)
 		enough := best.first >= 0 && len(lines)-best.first >= 100 && best.isNumeric()
 		if enough || len(lines) < limit || limit >= preambleLimit {
 			return best
