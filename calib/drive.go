@@ -19,7 +19,8 @@ const (
 
 // drive is the motion of the stage, as it was stated and as its own track shows it.
 type drive struct {
-	axis      string // that follows the stage
+	rate      float64 // of the recording [Hz]
+	axis      string  // that follows the stage
 	waveform  string
 	frequency float64       // Hz
 	refined   bool          // frequency was found from the record, near the stated one
@@ -32,7 +33,7 @@ type drive struct {
 
 // newDrive reads what is known of the motion of the stage.
 func newDrive(rec *track.Recording, set *session.Settings) (*drive, error) {
-	d := &drive{waveform: sineWave, frequency: math.NaN(), stated: math.NaN()}
+	d := &drive{rate: rec.Rate, waveform: sineWave, frequency: math.NaN(), stated: math.NaN()}
 	if s, ok := set.Lookup("drive.waveform", ""); ok && s.Word != "" {
 		d.waveform = s.Word
 	}

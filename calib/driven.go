@@ -39,6 +39,7 @@ type Driven struct {
 	Drag        Quantity  `json:"drag"`                    // kT/D, N s/m
 	DragRatio   Quantity  `json:"drag_ratio"`              // over the computed drag
 	Flow        *FlowLine `json:"constant_flow,omitempty"` // fit of displacement against speed; triangle
+	Escape      *Escape   `json:"escape,omitempty"`        // when the bead was lost
 	Test        Test      `json:"test"`                    // the driven estimate against the others
 	Text        string    `json:"text"`                    // what it says, for a person
 }

@@ -14,7 +14,9 @@ import (
 // driven makes a recording of the scene with a stage that moves along its first axis.
 func (s scene) driven(t *testing.T, seed uint64, stage simulate.Stage, column bool) *track.Recording {
 	t.Helper()
-	rec := s.record(t, seed)
+	still := s
+	still.events = nil
+	rec := still.record(t, seed)
 	liquid, err := medium.ParseFluid("water")
 	if err != nil {
 		t.Fatal(err)
@@ -28,7 +30,7 @@ func (s scene) driven(t *testing.T, seed uint64, stage simulate.Stage, column bo
 		t.Fatal(err)
 	}
 	gamma := drag.Stokes(p.Viscosity, s.diameter/2) * wall.Factor
-	truth := simulate.Truth{Samples: s.samples, Rate: s.rate, Exposure: s.exposure, Stage: &stage}
+	truth := simulate.Truth{Samples: s.samples, Rate: s.rate, Exposure: s.exposure, Stage: &stage, Events: s.events}
 	for _, name := range s.axes {
 		truth.Axes = append(truth.Axes, simulate.Axis{Name: name, Corner: s.kappa / (2 * math.Pi * gamma), Variance: medium.Boltzmann * s.kelvin / s.kappa, Noise: s.noise})
 	}

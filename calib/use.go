@@ -41,7 +41,11 @@ func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings,
 		return nil, &SettingError{Key: "use", Problem: fmt.Sprintf("%q is not %q", opt.Use, UseGood)}
 	}
 	var seen pass
-	r, err := calibrateAll(ctx, rec, set, opt, &seen)
+	calibrate := calibrateAll
+	if roleOf(set) == RoleDriven {
+		calibrate = calibrateDriven
+	}
+	r, err := calibrate(ctx, rec, set, opt, &seen)
 	if err != nil {
 		return nil, offerOnError(err, rec, set)
 	}

@@ -31,6 +31,7 @@ func Make(t Truth, seed uint64) Recording {
 	if t.Stage != nil {
 		var response []float64
 		r.Stage, response = t.Stage.drive(t)
+		t.release(r.Stage, response)
 		for i, x := range response {
 			r.Positions[t.Stage.Axis][i] += x
 		}

@@ -39,8 +39,8 @@ func (t Truth) validateStage() error {
 		return fmt.Errorf("stage: axis %d, counted from 0: there are %d axes", s.Axis, len(t.Axes))
 	case !t.Axes[s.Axis].trapped():
 		return fmt.Errorf("stage: axis %d: only a bead in a harmonic trap can be driven", s.Axis)
-	case len(t.Events) > 0 || t.mixed():
-		return fmt.Errorf("stage: a driven recording can have neither events, nor leaks, nor a rotation")
+	case t.eventful() || t.mixed():
+		return fmt.Errorf("stage: a driven recording can have neither events other than an escape, nor leaks, nor a rotation")
 	case t.Photodiode != nil && (len(s.Parts) != 1 || s.Parts[0].Waveform != Sine):
 		return fmt.Errorf("stage: with a photodiode it can only follow one sine for the whole record")
 	case len(s.Parts) == 0:
@@ -59,6 +59,21 @@ func (t Truth) validateStage() error {
 		}
 	}
 	return nil
+}
+
+// eventful tells that something other than one escape happens.
+func (t Truth) eventful() bool {
+	return len(t.Events) > 1 || len(t.Events) == 1 && t.Events[0].Kind != Escape
+}
+
+// release lets a bead that has escaped go with the liquid: from then on it moves as the stage does.
+func (t Truth) release(stage, response []float64) {
+	for _, e := range t.Events {
+		at := int(math.Ceil(math.Min(e.Time*t.Rate, float64(len(response)))))
+		for i := max(at, 1); i < len(response); i++ {
+			response[i] = response[max(at, 1)-1] + stage[i] - stage[max(at, 1)-1]
+		}
+	}
 }
 
 // drive returns the position of the stage and the displacement of the bead that it causes [m],

@@ -162,3 +162,28 @@ func TestStagePhotodiodeDelays(t *testing.T) {
 		}
 	}
 }
+
+// A bead that escapes goes with the liquid: from then on position and stage differ by free diffusion, whose steps have the variance
+// 2 D dt, and before by the motion in the trap.
+func TestEscapeInStage(t *testing.T) {
+	truth := Truth{Samples: 40000, Rate: 10e3, Axes: []Axis{{Corner: 500, Variance: 1e-16}}, Events: []Event{{Kind: Escape, Time: 2}},
+		Stage: &Stage{Parts: []Drive{{Waveform: Triangle, Amplitude: 5e-6, Frequency: 4}}}}
+	r := Make(truth, 3)
+	x, square := r.Positions[0], 0.0
+	const from = 20000
+	for i := from + 1; i < len(x); i++ {
+		d := (x[i] - r.Stage[i]) - (x[i-1] - r.Stage[i-1])
+		square += d * d / float64(len(x)-from-1)
+	}
+	// relative standard deviation sqrt(2/20000) = 1 %
+	if want := 2 * 2 * math.Pi * 500 * 1e-16 / 10e3; math.Abs(square/want-1) > 0.04 {
+		t.Errorf("steps after the escape have the variance %.4g m2, want %.4g", square, want)
+	}
+	if jump := math.Abs(x[from] - x[from-1]); jump > 1e-7 { // 2 nm of flow and a step of thermal motion
+		t.Errorf("the bead jumps by %g m at the escape", jump)
+	}
+	truth.Events = append(truth.Events, Event{Kind: Stuck, Time: 3})
+	if err := truth.Validate(); err == nil {
+		t.Error("a second event passes")
+	}
+}

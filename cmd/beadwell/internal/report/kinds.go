@@ -92,6 +92,13 @@ func drivenRows(a calib.Axis, d *calib.Driven, add func(string, calib.Quantity, 
 	if a.Sensitivity == nil || a.Sensitivity.Origin != calib.SensitivityDriven {
 		add("true over recorded length", d.LengthScale, "1", "")
 	}
+	if e := d.Escape; e != nil {
+		lost := fmt.Sprintf("lost at %s", plainNumber(e.Time, "s"))
+		add("largest force before the bead was lost", e.Force, "pN", lost+"; stiffness x displacement")
+		add("the same by Stokes drag", e.Drag, "pN", "computed drag x largest speed before")
+		add("drag when the bead was lost", e.AtLoss, "pN", "computed drag x speed of the stage")
+		add("its largest displacement before", e.Displacement, "nm", "without thermal motion")
+	}
 	if f := d.Flow; f != nil {
 		add("slope of displacement against speed", f.Slope, "us", fmt.Sprintf("drag over stiffness; %d strokes, the first %.2g ms of each left out", len(f.Points), 1e3*float64(f.Skipped)))
 		add("displacement at rest", f.Intercept, "nm", "intercept of the line, from the mean of the record; p of the line "+probability(f.Goodness.PValue))
