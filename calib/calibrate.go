@@ -36,6 +36,9 @@ type Options struct {
 	Background *track.Recording
 	// FreeBead are recordings of the same bead with the laser off, whose drag stands beside the computed one. Nil: none.
 	FreeBead []*FreeBeadDrag
+	// Companions are other recordings of the same bead in the same chamber, such as one with the laser off, one with a
+	// moving stage or one at another height. Where the routes disagree they join the diagnosis.
+	Companions []Companion
 	// Program and its version, and the command line, for the record.
 	Program Program
 }
@@ -43,6 +46,12 @@ type Options struct {
 // AdoptWords are the routes that can be adopted whatever the cross-check says: drag, by that of the free bead
 // too where there is one; amplitude; drag by that of the free bead alone.
 var AdoptWords = []string{RouteDrag, RouteAmplitude, RouteFreeBead}
+
+// Companion is a recording that joins the diagnosis of another, with its settings.
+type Companion struct {
+	Recording *track.Recording
+	Settings  *session.Settings
+}
 
 // choices returns what of the options a result records; nil when nothing was chosen.
 func (o Options) choices() *Choices {
@@ -87,6 +96,35 @@ func calibrateAll(ctx context.Context, rec *track.Recording, set *session.Settin
 	if role == RoleBackground {
 		return measureBackground(ctx, rec, set, opt)
 	}
+	works, err := newWorks(rec, set, opt)
+	if err != nil {
+		return nil, err
+	}
+	if role == RoleFree {
+		return calibrateFree(ctx, rec, set, works, opt)
+	}
+	if err := runTrapped(ctx, rec, set, works, opt); err != nil {
+		return nil, err
+	}
+	r := newResult(rec, set, works, opt)
+	for _, w := range works {
+		r.Axes = append(r.Axes, w.axis)
+	}
+	seen.works, seen.good = works, r.examine(rec, works)
+	r.judge(works, opt)
+	if err := r.findCause(ctx, works, opt); err != nil {
+		return nil, err
+	}
+	if err := r.propagate(ctx, works, opt.MonteCarlo); err != nil {
+		return nil, err
+	}
+	r.collectFindings(set, works)
+	r.findAxes(works)
+	return r, nil
+}
+
+// newWorks prepares the axes of a recording; one of them follows a moving stage.
+func newWorks(rec *track.Recording, set *session.Settings, opt Options) ([]*work, error) {
 	works := make([]*work, len(rec.Axes))
 	for i := range rec.Axes {
 		w, err := newWork(rec, i, set, opt)
@@ -95,35 +133,18 @@ func calibrateAll(ctx context.Context, rec *track.Recording, set *session.Settin
 		}
 		works[i] = w
 	}
-	switch role {
-	case RoleFree:
-		return calibrateFree(ctx, rec, set, works, opt)
-	case RoleDriven:
-		if err := assignDrive(rec, set, works); err != nil {
-			return nil, err
-		}
+	if roleOf(set) != RoleDriven {
+		return works, nil
 	}
-	if err := runAll(ctx, works); err != nil {
-		return nil, err
+	return works, assignDrive(rec, set, works)
+}
+
+// runTrapped analyses the axes of a trapped bead, which agree on the kind of drag.
+func runTrapped(ctx context.Context, rec *track.Recording, set *session.Settings, works []*work, opt Options) error {
+	if err := runAll(ctx, works); err != nil || roleOf(set) == RoleDriven {
+		return err
 	}
-	if role != RoleDriven {
-		if err := agreeOnDrag(ctx, rec, set, opt, works); err != nil {
-			return nil, err
-		}
-	}
-	r := newResult(rec, set, works, opt)
-	for _, w := range works {
-		r.Axes = append(r.Axes, w.axis)
-	}
-	seen.works, seen.good = works, r.examine(rec, works)
-	r.judge(works, opt)
-	r.findCause(works)
-	if err := r.propagate(ctx, works, opt.MonteCarlo); err != nil {
-		return nil, err
-	}
-	r.collectFindings(set, works)
-	r.findAxes(works)
-	return r, nil
+	return agreeOnDrag(ctx, rec, set, opt, works)
 }
 
 // newResult starts a result with what was read and set.

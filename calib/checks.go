@@ -6,6 +6,7 @@ import (
 	"beadwell/calib/health"
 	"beadwell/calib/relaxation"
 	"beadwell/calib/track"
+	"beadwell/psd"
 )
 
 // Check is one check of the recording, also when it found nothing.
@@ -63,11 +64,34 @@ func (r *Result) examine(rec *track.Recording, works []*work) stretch {
 // or the pooled one where the record hardly determines its corner frequency.
 func (w *work) soundProcess() relaxation.Process {
 	free, _, _, _ := w.bestProcess()
+	if w.fitErr == nil {
+		if p, ok := w.withNoiseFree(); ok {
+			return p
+		}
+	}
 	if w.fitErr != nil || w.poolErr != nil || w.pooled.regimeFC <= w.limit() {
 		return free
 	}
 	return w.processAt(w.pooled.maximum.At)
 }
+
+// withNoiseFree is the process of a fit that does not trust the stated noise, where the one that does misses the
+// shape of the spectrum: a wrong noise or exposure would otherwise show as drifts, jumps and tones that nobody made.
+func (w *work) withNoiseFree() (relaxation.Process, bool) {
+	if !w.noise.Known || w.form != nil || !(w.fit.Goodness.PValue < misfitLevel) {
+		return relaxation.Process{}, false
+	}
+	o := w.fitOptions()
+	o.KeepLines, o.Noise = true, psd.Noise{}
+	f, err := psd.Estimate(w.record, o)
+	if err != nil || f.Goodness.PValue < w.fit.Goodness.PValue {
+		return relaxation.Process{}, false
+	}
+	return relaxation.Process{Corner: f.Corner, Variance: f.Variance, Noise: f.NoiseQ, Interval: 1 / w.rate, Exposure: w.exposure}, true
+}
+
+// misfitLevel is the p-value of the fitted spectrum from which the health checks call it odd.
+const misfitLevel = 1e-4
 
 // newCheck turns a check into the form of a result; start is the time of the first sample [s].
 func newCheck(c health.Check, start float64) Check {

@@ -2,8 +2,12 @@ package calib
 
 import (
 	"cmp"
+	"context"
+	"errors"
+	"fmt"
 	"math"
 	"slices"
+	"strings"
 )
 
 // Diagnosis compares the single causes that could have made the routes disagree. It
@@ -14,8 +18,9 @@ import (
 // statements being held within their standard uncertainties. Causes whose likelihood is
 // within a factor of ten of the best are a tie: the recording cannot tell them apart.
 type Diagnosis struct {
-	Text   string  `json:"text"`   // for a person
-	Causes []Cause `json:"causes"` // the tie first, by the change needed; then the others, by likelihood
+	Text       string   `json:"text"`                 // for a person
+	Companions []string `json:"companions,omitempty"` // names of the other recordings that were weighed together with this one
+	Causes     []Cause  `json:"causes"`               // the tie first, by the change needed; then the others, by likelihood
 }
 
 // Cause is one thing that, being other than stated, would explain the disagreement.
@@ -50,16 +55,73 @@ const (
 	CauseDrift       = "cause-slow-drift"
 	CauseInertia     = "cause-inertia-of-the-liquid"
 	CauseRate        = "cause-sampling-rate"
+	CauseStage       = "cause-stage-amplitude"
+	CauseHeating     = "cause-laser-heating"
 )
 
 // tieRatio is the likelihood ratio up to which two causes cannot be told apart.
 const tieRatio = 10
 
 // findCause makes the diagnosis when the routes disagree.
-func (r *Result) findCause(works []*work) {
-	if p := r.Verdict.FamilyWiseP; p.Known() && p < familyLevel {
-		r.Diagnosis = diagnose(works)
+func (r *Result) findCause(ctx context.Context, works []*work, opt Options) error {
+	if p := r.Verdict.FamilyWiseP; !p.Known() || p >= familyLevel {
+		return nil
 	}
+	var others []*work
+	var names, unused []string
+	for _, c := range opt.allCompanions() {
+		list, err := c.analyse(ctx)
+		var unfit *DataError
+		switch {
+		case errors.As(err, &unfit):
+			unused = append(unused, firstLine(err))
+		case err != nil:
+			return err
+		default:
+			others, names = append(others, list...), append(names, c.Recording.Name)
+		}
+	}
+	if r.Diagnosis = diagnose(newBench(works, others)); r.Diagnosis != nil {
+		r.Diagnosis.Companions = names
+		r.Diagnosis.Text += weighedWith(names, unused)
+	}
+	return nil
+}
+
+// allCompanions are the companions and the recordings of the free bead, each once.
+func (o Options) allCompanions() []Companion {
+	all := slices.Clone(o.Companions)
+	for _, f := range o.FreeBead {
+		same := func(c Companion) bool { return c.Recording.Name == f.name && c.Recording.Bead == f.bead }
+		if f.reason == "" && f.whole.Recording != nil && !slices.ContainsFunc(all, same) {
+			all = append(all, f.whole)
+		}
+	}
+	return all
+}
+
+// analyse returns the analysed axes of a companion.
+func (c Companion) analyse(ctx context.Context) ([]*work, error) {
+	works, err := newWorks(c.Recording, c.Settings, Options{})
+	if err != nil {
+		return nil, fmt.Errorf("companion %s: %w", c.Recording.Name, err)
+	}
+	switch roleOf(c.Settings) {
+	case RoleFree:
+		for _, w := range works {
+			if err := w.runFree(); err != nil {
+				return nil, err
+			}
+		}
+	case RoleBackground:
+		return nil, &SettingError{Key: "recording.companions", Problem: fmt.Sprintf("names %s, which has the role %s and no bead that moves", c.Recording.Name, RoleBackground),
+			Remedy: "name recordings of the same bead, trapped, free or driven"}
+	default:
+		if err := runTrapped(ctx, c.Recording, c.Settings, works, Options{}); err != nil {
+			return nil, err
+		}
+	}
+	return works, nil
 }
 
 // firstMeasurement is what to measure first when the routes disagree.
@@ -68,14 +130,21 @@ func (r *Result) firstMeasurement() string {
 	if r.Diagnosis == nil || len(r.Diagnosis.Causes) == 0 || r.Diagnosis.Causes[0].PValue < familyLevel {
 		return otherwise
 	}
-	return r.Diagnosis.Causes[0].Measurement + "; then repeat the recording"
+	first := r.Diagnosis.Causes[0]
+	text := first.Measurement
+	if !strings.Contains(text, "repeat") {
+		text += "; then repeat the recording"
+	}
+	if first.Caution != "" {
+		text += caution
+	}
+	return text
 }
 
 // diagnose compares single causes over the axes whose routes could be compared.
 // It returns nil when there is none.
-func diagnose(works []*work) *Diagnosis {
-	b := newBench(works)
-	if len(b.works) == 0 {
+func diagnose(b *bench) *Diagnosis {
+	if b.own == 0 || len(b.works) == 0 {
 		return nil
 	}
 	var found []candidate
@@ -131,9 +200,9 @@ func (b *bench) try(h hypothesis) (candidate, bool) {
 		return candidate{}, false
 	}
 	c := Cause{Code: h.code, Name: h.name, Axis: h.axis, Stated: h.stated, Ratio: Float(math.NaN()), Change: Float(math.NaN()),
-		Likelihood: Float(top.value), ChiSquare: Float(top.left), Freedom: len(b.works) - 1, PValue: 1, Measurement: measurements[h.code]}
+		Likelihood: Float(top.value), ChiSquare: Float(top.left), Freedom: b.size() - 1, PValue: 1, Measurement: measurements[h.code]}
 	if h.fixed() || top.atBound {
-		c.Freedom = len(b.works)
+		c.Freedom = b.size()
 	}
 	if c.Freedom > 0 {
 		c.PValue = survival(top.left, c.Freedom)

@@ -22,6 +22,10 @@ What to do: ` + measurements[CauseNoise] + `; or leave the noise out, so that it
 What to do: ` + measurements[CauseDrift] + `.`},
 	{CauseInertia, "cause: the inertia of the liquid", `The drag grows with frequency, and a fit with constant drag to a wide band is low in corner frequency and in diffusion coefficient.
 What to do: ` + measurements[CauseInertia] + `.`},
+	{CauseStage, "cause: the amplitude of the stage", `The length scale that a moving stage gives goes with the amplitude that is stated of its motion. A piezo stage moves less at high frequency than at rest, and its own sensor may not be where the bead is.
+What to do: ` + measurements[CauseStage] + `.`},
+	{CauseHeating, "cause: heating by the laser", `The recording of the free bead, with the laser off, agrees with what is stated, and the trapped one does not: the trap is warmer or colder than stated, by the light that water, bead and surfaces absorb. Water takes up more at 1064 nm than at 800 nm.
+What to do: ` + measurements[CauseHeating] + `. State the rise with laser.heating and laser.power.` + caution},
 	{CauseRate, "cause: the sampling rate", `A corner frequency is measured in units of the sampling rate. If that is wrong by two (every second frame dropped, a header that was copied) or by a thousand (milliseconds taken for seconds), the corner frequency in hertz is wrong by as much, and no length is. Only these factors are tried: any other would look like a viscosity.
 What to do: ` + measurements[CauseRate] + `.`},
 }

@@ -175,7 +175,7 @@ func TestInertiaIsSeen(t *testing.T) {
 // skewness is below 0.02, and the difference from the computed drag below two standard uncertainties).
 func TestWeighingIsThePooledFit(t *testing.T) {
 	w := worked(t, ordinary(), 3)
-	b := newBench([]*work{w})
+	b := newBench([]*work{w}, nil)
 	sum := 0.0
 	for _, row := range b.shared(nil) {
 		sum += row[0] * row[0]
@@ -184,14 +184,15 @@ func TestWeighingIsThePooledFit(t *testing.T) {
 		t.Errorf("inputs have a standard uncertainty of %.6g in ln D, want %.6g", math.Sqrt(sum), want)
 	}
 	e := b.asRead[0]
-	e.excess += 0.1 // some standard uncertainties away, where the two differ most
-	got, _ := b.weigh([]evidence{e}, []float64{0.1}, nil)
+	shifted := func(*work, reading) float64 { return 0.1 }
+	e.readings = []float64{e.readings[0] + 0.1} // some standard uncertainties away, where the two differ most
+	got, _ := b.weigh([]evidence{e}, shifted, nil)
 	if want := w.pooled.maximum.Value; math.Abs(got.value-want) > 0.05 {
 		t.Errorf("weighed log-likelihood %.4f, want %.4f of the pooled fit", got.value, want)
 	}
-	got, _ = b.weigh(b.asRead, []float64{0.1}, nil)
-	r := b.asRead[0].excess - 0.1
-	if want := b.asRead[0].likelihood - r*r/(e.sd*e.sd+sum)/2; math.Abs(got.value-want) > 1e-6 {
+	got, _ = b.weigh(b.asRead, shifted, nil)
+	r := b.asRead[0].readings[0] - 0.1
+	if want := b.asRead[0].likelihood - r*r/(e.covariance[0][0]+sum)/2; math.Abs(got.value-want) > 1e-6 {
 		t.Errorf("weighed log-likelihood %.6f, want %.6f", got.value, want)
 	}
 }

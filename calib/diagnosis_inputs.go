@@ -2,6 +2,7 @@ package calib
 
 import (
 	"math"
+	"slices"
 	"strings"
 )
 
@@ -13,6 +14,7 @@ const (
 	usualViscosity = 0.03 // relative: a buffer taken as water
 	usualDiameter  = 0.03 // relative: a supplier's data sheet
 	usualHeight    = 0.1  // relative: a focus drive
+	usualStage     = 0.02 // relative: a piezo stage without a sensor of its own
 )
 
 // scanSteps is the number of values of an input that are tried before the search; each costs
@@ -22,27 +24,34 @@ const scanSteps = 240
 // hypotheses lists the causes that this recording can have.
 func (b *bench) hypotheses() []hypothesis {
 	list := b.scales()
-	list = append(list, b.temperature(), b.viscosity(), b.diameter())
-	if h, ok := b.height(); ok {
+	list = append(list, b.temperatures()...)
+	list = append(list, b.viscosity(), b.diameter())
+	list = append(list, b.heights()...)
+	if h, ok := b.stage(); ok {
 		list = append(list, h)
 	}
-	list = append(list, b.ofTheRecord()...)
-	return list
+	return append(list, b.ofTheRecord()...)
 }
 
-// shifted makes the weighing of a hypothesis that changes conditions of every axis.
-func (b *bench) shifted(freed func(influence, int) bool, change func(c *conditions, parameter float64)) func(float64) (weighed, bool) {
+// shifted makes the weighing of a hypothesis that changes conditions of the axes.
+func (b *bench) shifted(freed func(influence, *work) bool, change func(w *work, c *conditions, parameter float64)) func(float64) (weighed, bool) {
 	return func(parameter float64) (weighed, bool) {
-		shift := make([]float64, len(b.works))
-		for i, w := range b.works {
+		moved := make(map[*work]float64, len(b.works))
+		for _, w := range b.works {
 			c := w.phys.conditions()
-			change(&c, parameter)
-			var err error
-			if shift[i], err = w.phys.mobility(c); err != nil {
+			change(w, &c, parameter)
+			shift, err := w.phys.mobility(c)
+			if err != nil {
 				return weighed{}, false
 			}
+			moved[w] = shift
 		}
-		return b.weigh(b.asRead, shift, freed)
+		return b.weigh(b.asRead, func(w *work, kind reading) float64 {
+			if kind == scaleReading { // neither bead nor liquid enters
+				return 0
+			}
+			return moved[w]
+		}, freed)
 	}
 }
 
@@ -70,19 +79,24 @@ func (b *bench) scales() []hypothesis {
 			h.axis = w.axisName
 		}
 		h.at = func(p float64) (weighed, bool) {
-			shift := make([]float64, len(b.works))
-			for i := range shift {
-				if axis < 0 || i == axis {
-					shift[i] = -2 * p // lengths are recorded too small by the factor
+			of := func(o *work) bool { return axis < 0 || o.axisName == w.axisName }
+			return b.weigh(b.asRead, func(o *work, kind reading) float64 {
+				switch {
+				case !of(o):
+					return 0
+				case kind == scaleReading:
+					return p
+				case o.scaledByDrive(): // no stated length enters
+					return 0
 				}
-			}
-			return b.weigh(b.asRead, shift, func(in influence, i int) bool { return in.length != 0 && (axis < 0 || i == axis) })
+				return -2 * p // lengths are recorded too small by the factor
+			}, func(in influence, o *work) bool { return in.length != 0 && of(o) })
 		}
 		return h
 	}
 	list := []hypothesis{scale(CauseScale, -1)}
-	for i := range b.works {
-		if len(b.works) > 1 {
+	for i := range b.own {
+		if b.own > 1 {
 			list = append(list, scale(CauseScaleOne, i))
 		}
 	}
@@ -99,27 +113,47 @@ func (p *physics) lengthScale() Quantity {
 	return Exact(1, "1")
 }
 
-func (b *bench) temperature() hypothesis {
+// temperatures are that of all recordings and, where the laser was on in some and off in others, that of the
+// trap alone.
+func (b *bench) temperatures() []hypothesis {
 	p := b.works[0].phys
 	low, high := p.fluid.Range()
 	if math.IsNaN(low) { // a liquid of stated viscosity: about where water is one
 		low, high = 250, 400
 	}
 	here := p.conditions().temperature
-	return hypothesis{code: CauseTemperature, name: "temperature", stated: p.medium.Temperature, low: low, high: high, steps: scanSteps,
-		at:    b.shifted(func(in influence, _ int) bool { return in.energy != 0 || in.name == "temperature" }, func(c *conditions, t float64) { c.temperature = t }),
-		value: func(p float64) float64 { return p }, order: func(needed float64) float64 { return math.Abs(needed-here) / usualKelvin }, text: textOfTemperature}
+	with := func(code, name string, of func(w *work) bool) hypothesis {
+		return hypothesis{code: code, name: name, stated: p.medium.Temperature, low: low, high: high, steps: scanSteps,
+			at: b.shifted(func(in influence, w *work) bool { return of(w) && (in.energy != 0 || in.name == "temperature") },
+				func(w *work, c *conditions, t float64) {
+					if of(w) {
+						c.temperature += t - here
+					}
+				}),
+			value: func(p float64) float64 { return p }, order: func(needed float64) float64 { return math.Abs(needed-here) / usualKelvin }, text: textOfTemperature}
+	}
+	list := []hypothesis{with(CauseTemperature, "temperature", func(*work) bool { return true })}
+	on := 0
+	for _, w := range b.works {
+		if trapped(w) {
+			on++
+		}
+	}
+	if on > 0 && on < len(b.works) && trapped(b.works[0]) {
+		list = append(list, with(CauseHeating, "temperature at the trap alone", trapped))
+	}
+	return list
 }
 
 func (b *bench) viscosity() hypothesis {
 	h := factor(CauseViscosity, "viscosity", b.works[0].phys.medium.Viscosity, usualViscosity)
-	h.at = b.shifted(func(in influence, _ int) bool { return strings.HasPrefix(in.name, "viscosity") }, func(c *conditions, p float64) { c.thickness = math.Exp(p) })
+	h.at = b.shifted(func(in influence, _ *work) bool { return strings.HasPrefix(in.name, "viscosity") }, func(_ *work, c *conditions, p float64) { c.thickness = math.Exp(p) })
 	return h
 }
 
 func (b *bench) diameter() hypothesis {
 	h := factor(CauseDiameter, "bead diameter", b.works[0].phys.bead.Diameter, usualDiameter)
-	h.at = b.shifted(func(in influence, _ int) bool { return in.name == "bead diameter" }, func(c *conditions, p float64) { c.radius *= math.Exp(p) })
+	h.at = b.shifted(func(in influence, _ *work) bool { return in.name == "bead diameter" }, func(_ *work, c *conditions, p float64) { c.radius *= math.Exp(p) })
 	return h
 }
 
@@ -130,23 +164,67 @@ const (
 	mostGap  = 600
 )
 
-// height is the distance to the surface; there is none to ask for where a second surface
-// is stated and the first is not.
-func (b *bench) height() (hypothesis, bool) {
-	p := b.works[0].phys
-	stated := p.bead.Height
+// heightName is the name of the cause that is the height of one recording.
+const heightName = "height"
+
+// heights are the distance to the surface of this recording and, with recordings at several heights, an error that
+// they share: the place of the surface, or one factor.
+func (b *bench) heights() []hypothesis {
+	first := b.works[0]
+	stated := first.phys.bead.Height
+	base := float64(stated.Value)
 	if !stated.Known() {
 		stated.Unit = "m"
 	}
-	radius := p.radius
-	h := hypothesis{code: CauseHeight, name: "height", stated: stated, low: math.Log(leastGap), high: math.Log(mostGap), steps: scanSteps,
-		value: func(q float64) float64 { return radius * (1 + math.Exp(q)) }, text: textOfHeight}
-	h.at = b.shifted(func(in influence, _ int) bool { return in.name == "height" }, func(c *conditions, q float64) { c.height = c.radius * (1 + math.Exp(q)) })
-	h.order = func(needed float64) float64 {
-		if !stated.Known() {
-			return math.Log(100*radius/needed) / usualHeight
+	radius := first.phys.radius
+	with := func(name string, of func(w *work) bool, height func(w *work, needed float64) float64) hypothesis {
+		h := hypothesis{code: CauseHeight, name: name, stated: stated, low: math.Log(leastGap), high: math.Log(mostGap), steps: scanSteps,
+			value: func(q float64) float64 { return radius * (1 + math.Exp(q)) }, text: textOfHeight}
+		h.at = b.shifted(func(in influence, w *work) bool { return in.name == "height" && of(w) }, func(w *work, c *conditions, q float64) {
+			if of(w) {
+				c.height = height(w, h.value(q))
+			}
+		})
+		h.order = func(needed float64) float64 {
+			if !stated.Known() {
+				return math.Log(100*radius/needed) / usualHeight
+			}
+			return math.Abs(needed/base-1) / usualHeight
 		}
-		return math.Abs(needed/float64(stated.Value)-1) / usualHeight
+		return h
 	}
-	return h, true
+	this := func(_ *work, needed float64) float64 { return needed }
+	alike := func(w *work) bool { return w.phys.height == first.phys.height }
+	list := []hypothesis{with(heightName, alike, this)}
+	if !stated.Known() || !slices.ContainsFunc(b.works, func(w *work) bool { return !alike(w) && !math.IsInf(w.phys.height, 1) }) {
+		return list
+	}
+	near := func(w *work) bool { return !math.IsInf(w.phys.height, 1) }
+	return append(list,
+		with("shift of all heights", near, func(w *work, needed float64) float64 { return w.phys.height + needed - base }),
+		with("factor on all heights", near, func(w *work, needed float64) float64 { return w.phys.height * needed / base }))
+}
+
+// stage is the amplitude of a moving stage.
+func (b *bench) stage() (hypothesis, bool) {
+	for _, w := range b.works {
+		if w.drive == nil {
+			continue
+		}
+		amplitude, _, _ := w.drive.amplitude(w.stageBlur())
+		h := factor(CauseStage, "amplitude of the stage", input(amplitude, w.reply.stage*amplitude, "m"), usualStage)
+		h.at = func(p float64) (weighed, bool) {
+			return b.weigh(b.asRead, func(o *work, kind reading) float64 {
+				switch {
+				case kind == scaleReading:
+					return -p
+				case o.scaledByDrive():
+					return -2 * p
+				}
+				return 0
+			}, func(in influence, _ *work) bool { return in.name == stageInput })
+		}
+		return h, true
+	}
+	return hypothesis{}, false
 }

@@ -22,6 +22,9 @@ func (b *bench) ofTheRecord() []hypothesis {
 	if h, ok := b.noise(); ok {
 		list = append(list, h)
 	}
+	if !trapped(b.works[0]) {
+		return list
+	}
 	if h, ok := b.inertia(); ok {
 		list = append(list, h)
 	}
@@ -33,14 +36,14 @@ func (b *bench) ofTheRecord() []hypothesis {
 
 func (b *bench) exposure() hypothesis {
 	w := b.works[0]
-	none := make([]float64, len(b.works))
+	near := refits{}
 	return hypothesis{code: CauseExposure, name: "exposure", stated: input(w.exposure, w.exposureU, "s"), low: 0, high: 1, steps: refitSteps,
 		at: func(share float64) (weighed, bool) {
-			found, ok := b.all(func(w *work) (evidence, bool) { return w.refitted(share/w.rate, w.noise) })
+			found, ok := b.all(b.alike, func(w *work) (evidence, bool) { return near.of(w, share/w.rate, w.noise) })
 			if !ok {
 				return weighed{}, false
 			}
-			return b.weigh(found, none, nil)
+			return b.weigh(found, unmoved, nil)
 		},
 		value: func(share float64) float64 { return share / w.rate },
 		order: func(needed float64) float64 { return math.Abs(needed-w.exposure) * w.rate / usualExposure }, text: textOfExposure}
@@ -55,23 +58,43 @@ func (b *bench) noise() (hypothesis, bool) {
 	}
 	sd, u := w.statedNoise()
 	first := w.noise.Variance
-	most := 0.0
+	most := first
 	for _, o := range b.works {
-		most = math.Max(most, o.record.MeanSquare())
+		most = math.Max(most, o.mostNoise())
 	}
-	none := make([]float64, len(b.works))
+	near := refits{}
 	return hypothesis{code: CauseNoise, name: "localisation noise", stated: input(sd, u, "m"), low: 0, high: math.Sqrt(most), steps: 2 * refitSteps,
 		at: func(candidate float64) (weighed, bool) {
-			found, ok := b.all(func(w *work) (evidence, bool) {
-				return w.refitted(w.exposure, psd.Noise{Known: true, Variance: math.Max(0, w.noise.Variance+candidate*candidate-first)})
+			found, ok := b.all(b.alike, func(w *work) (evidence, bool) {
+				return near.of(w, w.exposure, psd.Noise{Known: true, Variance: math.Max(0, w.noise.Variance+candidate*candidate-first)})
 			})
 			if !ok {
 				return weighed{}, false
 			}
-			return b.weigh(found, none, nil)
+			return b.weigh(found, unmoved, nil)
 		},
 		value: func(p float64) float64 { return p },
 		order: func(needed float64) float64 { return math.Abs(needed-sd) / usualNoise }, text: textOfNoise}, true
+}
+
+// topBand is where the highest frequencies begin, over half the sampling rate.
+const topBand = 0.8
+
+// mostNoise is a bound of the noise variance [m2]: twice the level of the spectrum at its highest frequencies, where
+// the noise is all there is at most; of a free bead, what its steps hold.
+func (w *work) mostNoise() float64 {
+	if !trapped(w) {
+		return w.phys.kT/w.phys.gamma/w.rate + w.noise.Variance
+	}
+	b := w.fit.Blocks
+	sum, weight := 0.0, 0.0
+	for i, f := range b.Frequency {
+		if f > topBand/2 || i == len(b.Frequency)-1 {
+			sum += b.Weight[i] * b.Power[i]
+			weight += b.Weight[i]
+		}
+	}
+	return 2 * sum / weight
 }
 
 // Factors on a sampling rate that slips make: every second frame kept or counted twice,
@@ -101,19 +124,21 @@ func (b *bench) rate() hypothesis {
 }
 
 func (b *bench) atRate(r float64, keep bool) (weighed, bool) {
-	shift := make([]float64, len(b.works))
-	for i := range shift {
-		shift[i] = -math.Log(r)
+	shift := func(w *work, kind reading) float64 {
+		if kind == scaleReading || w.rate != b.works[0].rate { // the line stands where the stage moves, in samples
+			return 0
+		}
+		return -math.Log(r)
 	}
 	if keep {
 		return b.weigh(b.asRead, shift, nil)
 	}
-	found, ok := b.all(func(w *work) (evidence, bool) {
+	found, ok := b.all(b.alike, func(w *work) (evidence, bool) {
 		share := w.exposure * w.rate * r
 		if w.exposure == 0 || share > 1 || w.exposure*w.rate > wholeFrame {
 			return evidence{}, false
 		}
-		return w.refitted(share/w.rate, w.noise)
+		return refits{}.of(w, share/w.rate, w.noise)
 	})
 	if !ok {
 		return weighed{}, false
@@ -123,7 +148,7 @@ func (b *bench) atRate(r float64, keep bool) (weighed, bool) {
 
 // inertia is the frequency dependence of the drag, where a constant one was fitted.
 func (b *bench) inertia() (hypothesis, bool) {
-	found, ok := b.all(func(w *work) (evidence, bool) {
+	found, ok := b.all(trapped, func(w *work) (evidence, bool) {
 		if w.dragModel != ConstantDrag {
 			return evidence{}, false
 		}
@@ -132,7 +157,7 @@ func (b *bench) inertia() (hypothesis, bool) {
 	if !ok {
 		return hypothesis{}, false
 	}
-	out, ok := b.weigh(found, make([]float64, len(b.works)), nil)
+	out, ok := b.weigh(found, unmoved, nil)
 	return hypothesis{code: CauseInertia, name: "inertia of the liquid", stated: Exact(0, "1"), low: 0, high: 0, steps: 1,
 		at: func(float64) (weighed, bool) { return out, ok }, value: func(float64) float64 { return 1 },
 		order: func(float64) float64 { return 1 }, text: textOfInertia}, ok
@@ -159,7 +184,7 @@ func (w *work) withInertia() (evidence, bool) {
 	if err != nil {
 		return evidence{}, false
 	}
-	e, ok := w.evidenceOf(f.Problem, f.Maximum)
+	e, ok := w.evidenceOf(f.Problem, f.Maximum, w.exposure)
 	e.likelihood += w.fit.Maximum.Value - base.Maximum.Value
 	return e, ok
 }
@@ -167,7 +192,7 @@ func (w *work) withInertia() (evidence, bool) {
 // drift is a slow wander of the bead or the stage with a spectrum that falls as 1/f^2.
 func (b *bench) drift() (hypothesis, bool) {
 	rms := math.NaN()
-	found, ok := b.all(func(w *work) (evidence, bool) {
+	found, ok := b.all(trapped, func(w *work) (evidence, bool) {
 		e, size, ok := w.withDrift()
 		if !(size <= rms) {
 			rms = size
@@ -177,7 +202,7 @@ func (b *bench) drift() (hypothesis, bool) {
 	if !ok {
 		return hypothesis{}, false
 	}
-	out, ok := b.weigh(found, make([]float64, len(b.works)), nil)
+	out, ok := b.weigh(found, unmoved, nil)
 	thermal := math.Sqrt(b.works[0].fit.Variance)
 	return hypothesis{code: CauseDrift, name: "slow drift", stated: Exact(0, "m"), low: 0, high: 0, steps: 1,
 		at: func(float64) (weighed, bool) { return out, ok }, value: func(float64) float64 { return rms },
@@ -214,7 +239,7 @@ func (w *work) withDrift() (evidence, float64, bool) {
 	}
 	process := w.processAt(top.At)
 	value, rms := wander(low, process, f.Scale())
-	e, ok := w.evidenceOf(part, top)
+	e, ok := w.evidenceOf(part, top, w.exposure)
 	e.likelihood = f.Maximum.Value + top.Value + value - base.Value
 	return e, rms, ok && rms > 0
 }

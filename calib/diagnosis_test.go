@@ -66,8 +66,8 @@ func (s stage) settingsWith(t testing.TB, more map[string]string) *session.Setti
 	return set
 }
 
-// recording simulates the truth.
-func (s stage) recording(t testing.TB, seed uint64) *track.Recording {
+// simulated is the truth in the terms of the simulator.
+func (s stage) simulated(t testing.TB) simulate.Truth {
 	t.Helper()
 	liquid, err := medium.ParseFluid("water")
 	if err != nil {
@@ -91,6 +91,13 @@ func (s stage) recording(t testing.TB, seed uint64) *track.Recording {
 	if s.inertia {
 		truth.Hydrodynamics = &simulate.Hydrodynamics{Radius: s.diameter / 2, Viscosity: p.Viscosity, Density: p.Density, BeadDensity: 1050, Height: s.height}
 	}
+	return truth
+}
+
+// recording simulates the truth.
+func (s stage) recording(t testing.TB, seed uint64) *track.Recording {
+	t.Helper()
+	truth := s.simulated(t)
 	columns := simulate.Record(truth, seed)
 	nan := math.NaN()
 	rec := &track.Recording{Name: "simulated", Rate: s.rate, RateU: nan, RateOrigin: "setting", Samples: truth.Samples, JitterRMS: nan, JitterMax: nan}

@@ -23,11 +23,13 @@ var measurements = map[string]string{
 	CauseNoise:       "record a bead that is stuck to the surface under the same light",
 	CauseDrift:       "let the stage settle and record again, or restrict the fit with --band to frequencies above the drift",
 	CauseInertia:     "repeat the fit with --drag frequency-dependent, or with --band up to a few times the corner frequency",
+	CauseStage:       "measure the stroke of the stage at this frequency, by a bead that is stuck to the surface",
+	CauseHeating:     "repeat the recording at half the laser power: a rise of the temperature by the laser halves too",
 	CauseRate:        "film a clock or a blinking light of known frequency, and count the frames",
 }
 
 // cautious are the causes whose measurement touches the laser.
-var cautious = map[string]bool{CauseTemperature: true}
+var cautious = map[string]bool{CauseTemperature: true, CauseHeating: true}
 
 // shown prints a quantity in a unit for reading.
 func shown(q Quantity) string {
@@ -97,6 +99,9 @@ func textOfHeight(c Cause) string {
 	if !c.Stated.Known() {
 		return fmt.Sprintf("surface at %s from the bead's centre, where none was stated to be near", shown(c.Needed))
 	}
+	if c.Name != heightName {
+		return fmt.Sprintf("%s (%s in place of %s here)%s", c.Name, shown(c.Needed), shown(c.Stated), away(c))
+	}
 	return fmt.Sprintf("%s of %s in place of %s%s", c.Name, shown(c.Needed), shown(c.Stated), away(c))
 }
 
@@ -137,6 +142,18 @@ func diagnosisText(causes []Cause) string {
 		return fmt.Sprintf("One cause alone would reconcile the routes: %s.", tied[0])
 	}
 	return fmt.Sprintf("Any one of these would reconcile the routes, and this recording cannot tell them apart: %s. The one listed first needs the smallest change from what was stated.", strings.Join(tied, "; or "))
+}
+
+// weighedWith names the recordings that joined the diagnosis, and says why others could not.
+func weighedWith(names, unused []string) string {
+	text := ""
+	if len(names) > 0 {
+		text = " Weighed together with " + join(names) + "."
+	}
+	for _, reason := range unused {
+		text += " Could not be weighed: " + reason + "."
+	}
+	return text
 }
 
 // article sets "a" or "an" before a name.

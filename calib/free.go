@@ -43,6 +43,10 @@ func calibrateFree(ctx context.Context, rec *track.Recording, set *session.Setti
 		r.Axes = append(r.Axes, w.axis)
 	}
 	r.judgeFree()
+	if err := r.findCause(ctx, works, opt); err != nil {
+		return nil, err
+	}
+	r.addFreeFinding()
 	r.settingFindings(set, works)
 	return r, nil
 }
@@ -75,6 +79,7 @@ func (w *work) runFree() error {
 		w.freeSensitivity(ratio, stat, fit)
 		return nil
 	}
+	w.loose = &fit
 	sd, o95 := total(w.lengthU())
 	f.Diffusion = exponential(value, fit.LogSD, stat, sd, o95, "m2/s")
 	x.Spectrum.Diffusion = f.Diffusion
@@ -191,6 +196,14 @@ func (r *Result) judgeFree() {
 	}
 	v.Status = Inconsistent
 	v.Text = "The drag of the free bead is not the computed one: bead diameter, viscosity, temperature, height or length scale is wrong."
+}
+
+// addFreeFinding says that the drag of a free bead is not the computed one.
+func (r *Result) addFreeFinding() {
+	v := r.Verdict
+	if v.Status != Inconsistent {
+		return
+	}
 	r.Findings = append(r.Findings, Finding{Code: CodeFreeDrag, Severity: Bad, Text: v.Text + " " + capital(v.Reason) + ".",
 		Remedy: "check bead diameter, liquid, temperature, height and length scale; a trapped recording with the same settings would be wrong the same way",
 		Value:  v.FamilyWiseP, Limit: familyLevel, Unit: "1"})

@@ -48,7 +48,8 @@ type FreeRecording struct {
 type FreeBeadDrag struct {
 	name, bead, sum string
 	axes            map[string]freeAxis
-	reason          string // why it says nothing; empty when it does
+	reason          string    // why it says nothing; empty when it does
+	whole           Companion // the recording itself, for a diagnosis
 }
 
 // freeAxis is the ratio on one axis, in logarithms.
@@ -68,7 +69,7 @@ type moved struct {
 // MeasureFreeDrag measures the drag of a free bead for recordings of the same bead in the trap. A recording
 // that does not give it is no error: those in the trap say why it was not used. The error is that of ctx.
 func MeasureFreeDrag(ctx context.Context, rec *track.Recording, set *session.Settings) (*FreeBeadDrag, error) {
-	f := &FreeBeadDrag{name: rec.Name, bead: rec.Bead, sum: rec.SHA256, axes: map[string]freeAxis{}}
+	f := &FreeBeadDrag{name: rec.Name, bead: rec.Bead, sum: rec.SHA256, axes: map[string]freeAxis{}, whole: Companion{Recording: rec, Settings: set}}
 	for i, a := range rec.Axes {
 		if err := ctx.Err(); err != nil {
 			return nil, err

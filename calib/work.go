@@ -38,9 +38,10 @@ type work struct {
 	sensitivityOrigin string
 	drive             *drive // of the axis that follows a moving stage; nil for others
 	reply             response
-	free              *carried // drag of the free bead; nil without one
-	freeUnused        []string // recordings of it that say nothing, with the reason
-	adopter           *work    // the work by whose drag the stiffness was adopted; nil: itself
+	free              *carried            // drag of the free bead; nil without one
+	freeUnused        []string            // recordings of it that say nothing, with the reason
+	adopter           *work               // the work by whose drag the stiffness was adopted; nil: itself
+	loose             *relaxation.FreeFit // of a free bead whose lengths are known; nil for others
 
 	record        *psd.Record
 	fit           *psd.Fit

@@ -4,6 +4,7 @@ import (
 	"math"
 
 	"beadwell/calib/relaxation"
+	"beadwell/calib/transform"
 
 	"gonum.org/v1/gonum/stat/distuv"
 )
@@ -40,20 +41,41 @@ const mostPoints = 60
 // deviate, and the squares are added (docs/method.md, Eqs 24 and 25). As many degrees of freedom as parameters were
 // fitted are taken off.
 func goodness(f *Fit, r *Record) Goodness {
-	g := Goodness{Points: group(f, f.leakage(r))}
-	for _, p := range g.Points {
+	g := Goodness{Points: group(f, f.leakage(r)), PValue: math.NaN()}
+	tested := g.Points
+	if float64(r.Missing) > mostGaps*float64(len(r.X)) {
+		tested = f.whitened(r)
+	}
+	for _, p := range tested {
 		g.ChiSquare += p.Residual * p.Residual
 	}
 	fitted := 3
 	if f.Problem.Directions != nil {
 		fitted = len(f.Problem.Directions)
 	}
-	g.DegreesOfFreedom = len(g.Points) - fitted
-	g.PValue = math.NaN()
-	if g.DegreesOfFreedom > 0 && float64(r.Missing) <= mostGaps*float64(len(r.X)) {
+	g.DegreesOfFreedom = max(0, len(tested)-fitted)
+	if g.DegreesOfFreedom > 0 {
 		g.PValue = distuv.ChiSquared{K: float64(g.DegreesOfFreedom)}.Survival(g.ChiSquare)
 	}
 	return g
+}
+
+// whitened groups the spectrum of the innovations, which is flat for the right model however many samples are
+// missing between them (docs/method.md, Eq. 59). It returns nil where the innovations are not those of the fit: for a
+// part of the band, and for other spectra.
+func (f *Fit) whitened(r *Record) []Point {
+	if f.Method != Exact {
+		return nil
+	}
+	e := f.Process().Innovations(r.X)
+	n := transform.GoodLength(len(e))
+	plan, err := transform.NewPlan(n)
+	if err != nil {
+		return nil
+	}
+	power := plan.Power(nil, e[:n])
+	flat := func(float64) float64 { return 1 }
+	return gather(relaxation.NewBlocks(power, n, true, nil), f.Interval, flat, flat)
 }
 
 // leakingCorner is the corner frequency, in sampling rates, above which leakage is
@@ -61,7 +83,7 @@ func goodness(f *Fit, r *Record) Goodness {
 const leakingCorner = 0.1
 
 // mostGaps is the share of missing samples above which the periodogram, which counts them as
-// zero, no longer has the shape of the spectrum, and the test is not made.
+// zero, no longer has the shape of the spectrum: the innovations are tested then.
 const mostGaps = 0.01
 
 // leakage returns the share by which the relaxing part of the periodogram exceeds the spectrum,
@@ -77,10 +99,22 @@ func (f *Fit) leakage(r *Record) float64 {
 }
 
 func group(f *Fit, leakage float64) []Point {
-	b := f.Blocks
 	density := f.density()
 	model := func(x float64) float64 { return density(x/f.Interval) / 2 / f.Interval }
 	floor := f.Process().Floor()
+	expected := model
+	if leakage != 0 {
+		expected = func(x float64) float64 {
+			m := model(x)
+			return m + leakage*(m-floor)
+		}
+	}
+	return gather(f.Blocks, f.Interval, model, expected)
+}
+
+// gather groups blocks into points of the test; model and expected are the two-sided spectrum over the
+// interval without and with what the ends of the record add, at a frequency in units of the sampling rate.
+func gather(b relaxation.Blocks, interval float64, model, expected func(x float64) float64) []Point {
 	first, last := b.Frequency[0], b.Frequency[len(b.Frequency)-1]
 	growth := math.Pow(last/first*1.0001, 1.0/mostPoints)
 	var points []Point
@@ -96,7 +130,7 @@ func group(f *Fit, leakage float64) []Point {
 		// Wilson and Hilferty: cube root of chi-square over its 2 w degrees of freedom
 		v := 1 / (9 * weight)
 		z := (math.Cbrt(r) - (1 - v)) / math.Sqrt(v)
-		rate := 1 / f.Interval
+		rate := 1 / interval
 		m := 2 * model(at) / rate
 		points = append(points, Point{Frequency: at * rate, Power: r * m, Model: m,
 			Standard: m / math.Sqrt(weight), Residual: z, Bins: bins})
@@ -109,11 +143,7 @@ func group(f *Fit, leakage float64) []Point {
 		}
 		weight += w
 		freq += w * b.Frequency[i]
-		m := model(b.Frequency[i])
-		if leakage != 0 {
-			m += leakage * (m - floor)
-		}
-		ratio += w * b.Power[i] / m
+		ratio += w * b.Power[i] / expected(b.Frequency[i])
 		bins += b.Bins[i]
 	}
 	if weight < leastWeight && len(points) > 0 { // too small a rest is not tested

@@ -118,6 +118,34 @@ func (e *Exact) run(sh shape, v, q float64) (sums, bool) {
 	return s, true
 }
 
+// Innovations returns, for every sample of x [m] that is not NaN, its difference from what the samples before it
+// predict, over the standard deviation of that: white, of variance 1, for the process itself, whatever is missing
+// between them (Kalman, J. Basic Eng. 82 (1960) 35; Kailath, IEEE Trans. Autom. Control 13 (1968) 646). The mean of x must
+// have been taken off. It returns nil where the process is impossible.
+func (p Process) Innovations(x []float64) []float64 {
+	sh := newShape(p.Corner*p.Interval, p.relativeExposure())
+	c := sh.c
+	vb := sh.pole * p.Variance / (1 - c*c)
+	white, link := p.Variance*sh.level+p.Noise, vb*(1-c*c)
+	out := make([]float64, 0, len(x))
+	at, spread := 0.0, vb // the state before a sample: its mean and variance
+	for _, v := range x {
+		if math.IsNaN(v) {
+			at, spread = c*at, c*c*spread+link
+			continue
+		}
+		f := spread + white
+		if !(f > 0) {
+			return nil
+		}
+		gain := spread / f
+		out = append(out, (v-at)/math.Sqrt(f))
+		at = c * (at + gain*(v-at))
+		spread = c*c*spread*(1-gain) + link
+	}
+	return out
+}
+
 func (s sums) logLikelihood(trend int, restrict bool) float64 {
 	rest, logInfo := s.yy, 0.0
 	if trend >= 1 {

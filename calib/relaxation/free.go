@@ -13,6 +13,7 @@ type FreeOptions struct {
 	NoiseKnown bool    // the localisation noise is stated; else it is fitted
 	Noise      float64 // q, its variance [m2]
 	NoiseU     float64 // standard uncertainty of q [m2]; 0 is exact
+	Brief      bool    // leave FreeFit.Intervals out, which costs most of the time
 }
 
 // FreeFit is the outcome of FitFree, in SI units.
@@ -26,6 +27,7 @@ type FreeFit struct {
 	LogTotal  float64 // with that of a stated noise
 	Intervals Offsets // of ln D, by the profile likelihood; stated noise and its uncertainty included
 	Count     int     // displacements used
+	Value     float64 // log-likelihood at the maximum, up to a constant of the record, prior knowledge of the noise included
 }
 
 // ErrFewDisplacements tells that a record holds too few displacements.

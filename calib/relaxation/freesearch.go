@@ -68,10 +68,12 @@ func (f *freeProblem) result(p [2]float64, s freeState) (FreeFit, error) {
 		data = total - moved*moved*f.weigh
 	}
 	dt := f.o.Interval
-	r := FreeFit{Diffusion: p[0] * f.scale / (2 * dt), Noise: p[1] * f.scale, NoiseSD: math.Sqrt(q) * f.scale, Count: f.count,
+	r := FreeFit{Diffusion: p[0] * f.scale / (2 * dt), Noise: p[1] * f.scale, NoiseSD: math.Sqrt(q) * f.scale, Count: f.count, Value: s.value,
 		Speed: s.velocity * math.Sqrt(f.scale) / dt, SpeedSD: math.Sqrt(f.scale/s.weight) / dt,
 		LogSD: math.Sqrt(math.Max(0, data)) / p[0], LogTotal: math.Sqrt(total) / p[0]}
-	r.Intervals = f.profile(p, s.value, r.LogTotal)
+	if !f.o.Brief {
+		r.Intervals = f.profile(p, s.value, r.LogTotal)
+	}
 	return r, nil
 }
 

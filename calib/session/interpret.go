@@ -197,7 +197,7 @@ func plainText(key Key, text string, origin Origin) (string, *quantity.Error) {
 	case origin == FromFlag:
 	case key.Name == "recording.background":
 		return text, localPath(text)
-	case key.Name == "recording.free_bead":
+	case key.Name == "recording.free_bead", key.Name == "recording.companions":
 		for _, path := range (Setting{Word: text}).Files() {
 			if problem := localPath(path); problem != nil {
 				return "", problem

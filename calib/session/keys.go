@@ -96,6 +96,8 @@ var registry = []Key{
 		Placeholder: "stuck.csv", Meaning: "recording without a bead, or with a stuck one, that holds the noise"},
 	{Name: "recording.free_bead", Flag: "free-bead", Form: Text, Words: []string{"none"},
 		Placeholder: "free.csv", Meaning: "recordings of the same bead with the laser off, separated by semicolons, whose drag is used beside the computed one; else those of the role free in the track list"},
+	{Name: "recording.companions", Flag: "companions", Form: Text,
+		Placeholder: "free.csv; high.csv", Meaning: "recordings of the same bead, free, driven or at other heights, that join the diagnosis when the routes disagree"},
 	{Name: "recording.columns", Flag: "columns", Form: Text, PerAxis: true, Axes: columns, AxisOnly: true,
 		Placeholder: "time=t, x=X, y=Y", Meaning: "names or numbers (from 1) of the columns"},
 	{Name: "recording.sensitivity", Flag: "sensitivity", PerAxis: true, Axes: spatial, Stated: true,

@@ -40,6 +40,15 @@ func (s *Settings) Without(origin Origin) *Settings {
 	return copied
 }
 
+// Lacking returns a copy that lacks some keys, whatever gave them.
+func (s *Settings) Lacking(keys ...string) *Settings {
+	out := s.Clone()
+	for _, key := range keys {
+		out.remove(key)
+	}
+	return out
+}
+
 // With returns a copy that has the settings of another beside its own; where both
 // have one of the same origin, that of the other.
 func (s *Settings) With(other *Settings) *Settings {

@@ -183,8 +183,13 @@ func (c Cell) settings(noise float64) (*session.Settings, error) {
 // seed returns the seed of a recording of the cell. It hangs on the cell's name, so that no two
 // cells share their random numbers and an average over cells gains by each of them.
 func (c Cell) seed(recording int) uint64 {
+	return seedOf(c.String(), recording)
+}
+
+// seedOf returns the seed of a recording of a cell of some name.
+func seedOf(cell string, recording int) uint64 {
 	h := fnv.New64a()
-	fmt.Fprintf(h, "%v, recording %d", c, recording)
+	fmt.Fprintf(h, "%s, recording %d", cell, recording)
 	return h.Sum64()
 }
 

@@ -33,6 +33,7 @@ func run() error {
 	file := flag.String("results", "accuracy.json", "file of results, read and added to: a cell that has fewer recordings than asked for gets the rest")
 	write := flag.String("write", "", "page to write from the file of results")
 	limit := flag.Duration("limit", 0, "start no further cell after this time")
+	detection := flag.Bool("detection", false, "study false alarms and detection in place of accuracy")
 	flag.Parse()
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt)
 	defer stop()
@@ -40,7 +41,10 @@ func run() error {
 	if n, err := fmt.Sscanf(*part, "%d/%d", &at, &of); n != 2 || err != nil || at < 1 || at > of {
 		return fmt.Errorf("part %q is not of the form 2/4", *part)
 	}
-	known, err := load(*file)
+	if *detection {
+		return runDetection(ctx, plan{runs: *runs, at: at - 1, of: of, match: *match, file: *file, write: *write, limit: *limit})
+	}
+	known, err := load[Outcome](*file)
 	if err != nil {
 		return err
 	}
@@ -92,8 +96,8 @@ func run() error {
 }
 
 // load reads the file of results; one that does not exist is empty.
-func load(name string) (map[string]*Outcome, error) {
-	known := map[string]*Outcome{}
+func load[T any](name string) (map[string]*T, error) {
+	known := map[string]*T{}
 	data, err := os.ReadFile(name)
 	if errors.Is(err, fs.ErrNotExist) {
 		return known, nil
@@ -104,7 +108,7 @@ func load(name string) (map[string]*Outcome, error) {
 	return known, json.Unmarshal(data, &known)
 }
 
-func save(name string, known map[string]*Outcome) error {
+func save[T any](name string, known map[string]*T) error {
 	data, err := json.MarshalIndent(known, "", " ")
 	if err != nil {
 		return err

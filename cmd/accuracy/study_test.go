@@ -41,7 +41,7 @@ func TestStudyIsRepeatable(t *testing.T) {
 	if err := save(name, map[string]*Outcome{quick.String(): again}); err != nil {
 		t.Fatal(err)
 	}
-	known, err := load(name)
+	known, err := load[Outcome](name)
 	if err != nil {
 		t.Fatal(err)
 	}

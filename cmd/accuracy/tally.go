@@ -97,20 +97,7 @@ const (
 func (o *Outcome) study(ctx context.Context, runs int) {
 	c := o.Cell
 	trials := make([]trial, max(0, runs-o.Runs))
-	var group sync.WaitGroup
-	next := make(chan int)
-	for range runtime.GOMAXPROCS(0) {
-		group.Go(func() {
-			for i := range next {
-				trials[i] = c.try(ctx, c.seed(o.Runs+i))
-			}
-		})
-	}
-	for i := range trials {
-		next <- i
-	}
-	close(next)
-	group.Wait()
+	each(len(trials), func(i int) { trials[i] = c.try(ctx, c.seed(o.Runs+i)) })
 	if ctx.Err() != nil {
 		return
 	}
@@ -129,6 +116,24 @@ func (o *Outcome) study(ctx context.Context, runs int) {
 func newOutcome(c Cell) (*Outcome, error) {
 	b, err := c.bounds()
 	return &Outcome{Cell: c, Bounds: b, Legs: map[string]*Tally{}}, err
+}
+
+// each calls f for 0 to runs-1, on as many goroutines as there are processors.
+func each(runs int, f func(i int)) {
+	var group sync.WaitGroup
+	next := make(chan int)
+	for range runtime.GOMAXPROCS(0) {
+		group.Go(func() {
+			for i := range next {
+				f(i)
+			}
+		})
+	}
+	for i := range runs {
+		next <- i
+	}
+	close(next)
+	group.Wait()
 }
 
 // trial is the outcome of one recording.

@@ -26,6 +26,7 @@ type source struct {
 	folderLock sync.Mutex
 	folders    map[string]folderSettings
 	above      map[string]*session.Tracks // track lists of folders further up
+	alone      bool                       // of companions, which have none of their own
 
 	lock        sync.Mutex
 	backgrounds map[string]*track.Recording // read before, by path
@@ -49,11 +50,13 @@ type loaded struct {
 	background *track.Recording
 	// freeBead are what the recordings of the free bead that the settings name say of its drag.
 	freeBead []*calib.FreeBeadDrag
+	// companions are the recordings that the settings name to join a diagnosis.
+	companions []calib.Companion
 }
 
 // options adds what was read beside the recording to the choices.
 func (l loaded) options(o calib.Options) calib.Options {
-	o.Background, o.FreeBead = l.background, l.freeBead
+	o.Background, o.FreeBead, o.Companions = l.background, l.freeBead, l.companions
 	return o
 }
 
@@ -81,10 +84,10 @@ func (s *source) load(ctx context.Context, path string) ([]loaded, error) {
 		if all[i].settings, err = s.merged(folder, path, recording.Bead, headerSettings(recording, before)); err != nil {
 			return nil, err
 		}
-		if err := checkEffects(recording, all[i].settings); err != nil && !s.inspect {
+		if err := checkEffects(recording, all[i].settings); err != nil && !s.inspect && !s.alone {
 			return nil, err
 		}
-		if all[i].background, err = s.background(ctx, path, all[i].settings); err != nil {
+		if err := s.addOthers(ctx, path, &all[i]); err != nil {
 			return nil, err
 		}
 		s.findFreeBeads(folder, path, recording.Bead, all[i].settings)

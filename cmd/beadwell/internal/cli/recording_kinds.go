@@ -2,7 +2,9 @@ package cli
 
 import (
 	"context"
+	"errors"
 	"fmt"
+	"path/filepath"
 	"strings"
 
 	"beadwell/calib"
@@ -27,6 +29,63 @@ func (s *source) readWithStage(ctx context.Context, path string, o track.Options
 		}
 	}
 	return recordings, nil
+}
+
+// addOthers reads the background and the companions that the settings of a recording name.
+func (s *source) addOthers(ctx context.Context, path string, one *loaded) (err error) {
+	if one.background, err = s.background(ctx, path, one.settings); err != nil {
+		return err
+	}
+	one.companions, err = s.companions(ctx, path, *one)
+	return err
+}
+
+// ofAnother says of which other recording an error is; it keeps its exit status.
+func ofAnother(which string, err error) error {
+	var known *failure
+	if !errors.As(err, &known) {
+		return fmt.Errorf("%s: %w", which, err)
+	}
+	same := *known
+	same.err = fmt.Errorf("%s: %w", which, known.err)
+	return &same
+}
+
+// ofOneRecording are the settings that a flag gives to the recording in question, not to its companions.
+var ofOneRecording = []string{"role", "chamber.height", "laser.power", "drive.waveform", "drive.amplitude", "drive.frequency",
+	"recording.companions", "recording.background", "recording.bead"}
+
+// companions reads the recordings that join the diagnosis of another. Their role, height and drive stand in the track
+// list beside them. A list that holds for a whole folder names the recording itself too, which is passed over.
+func (s *source) companions(ctx context.Context, of string, one loaded) ([]calib.Companion, error) {
+	named, ok := one.settings.Lookup("recording.companions", "")
+	if role, _ := one.settings.Lookup("role", ""); !ok || role.Word == calib.RoleBackground || s.inspect || s.alone {
+		return nil, nil
+	}
+	own := &source{app: s.app, file: s.file, flags: &settingFlags{settings: *s.flags.settings.Lacking(ofOneRecording...)}, alone: true}
+	var out []calib.Companion
+	for _, path := range s.beside(of, named, named.Files()) {
+		if filepath.Clean(path) == filepath.Clean(of) {
+			continue
+		}
+		all, err := own.load(ctx, path)
+		if err != nil {
+			return nil, ofAnother("a companion of "+of, err)
+		}
+		match := -1
+		for i := range all {
+			if len(all) == 1 || all[i].recording.Bead == one.recording.Bead {
+				match = i
+			}
+		}
+		if match < 0 {
+			return nil, settingsError(&session.Error{Where: named.Where, Key: "recording.companions", Text: named.Text,
+				Problem: fmt.Sprintf("names %s, which holds %d beads, none of them %q", path, len(all), one.recording.Bead),
+				Hint:    "give recordings of the same bead"})
+		}
+		out = append(out, calib.Companion{Recording: all[match].recording, Settings: all[match].settings})
+	}
+	return out, nil
 }
 
 // background reads the recording that holds the noise. In a session file and a track list its path is
@@ -57,7 +116,7 @@ func (s *source) background(ctx context.Context, of string, settings *session.Se
 	options.Keep, options.Bead = nil, ""
 	recordings, err := s.read(ctx, path, options)
 	if err != nil {
-		return nil, fmt.Errorf("the background of %s: %w", of, err)
+		return nil, ofAnother("the background of "+of, err)
 	}
 	if len(recordings) != 1 {
 		return nil, settingsError(&session.Error{Where: named.Where, Key: "recording.background", Text: named.Text,

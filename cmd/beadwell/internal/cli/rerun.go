@@ -162,7 +162,7 @@ func (a *app) readAgain(ctx context.Context, stored *calib.Result, path string, 
 			return again, changedInput(path, one.SHA256, stored.Input.SHA256)
 		case one.Bead == stored.Input.Bead:
 			again.recording, again.settings = one, before.With(headerSettings(one, before))
-			if again.background, err = src.background(ctx, path, again.settings); err == nil {
+			if err = src.addOthers(ctx, path, &again); err == nil {
 				again.freeBead, err = src.freeBeads(ctx, path, one.Bead, again.settings)
 			}
 			return again, err

@@ -1,0 +1,86 @@
+package cli
+
+import (
+	"context"
+	"os"
+	"path/filepath"
+	"strings"
+	"testing"
+
+	"beadwell/calib"
+)
+
+// A trap that the laser heats by 10 K, which nobody stated. Alone the recording cannot tell it from a wrong
+// scale; with that of the free bead, which the session file or a flag names, it can, also in a batch and in a rerun.
+func TestCompanions(t *testing.T) {
+	t.Chdir(t.TempDir())
+	real := func(args ...string) (int, string) {
+		w, text, errs := testWorld("")
+		w.Calibrate = calib.Calibrate
+		status := run(context.Background(), args, w)
+		return status, strings.Join(strings.Fields(text.String()+errs.String()), " ")
+	}
+	bead := []string{"--diameter", "1.03 um", "--height", "6 um", "--rate", "10 kHz", "--axes", "x", "--noise", "1 nm"}
+	for name, args := range map[string][]string{
+		"day/trapped.csv": {"--stiffness", "31 pN/um", "--temperature", "35 C", "--duration", "20 s", "--seed", "11"},
+		"day/free.csv":    {"--role", "free", "--temperature", "25 C", "--duration", "1 s", "--seed", "12"},
+	} {
+		if status, text := real(flat([][]string{{"simulate", "--out", name}, bead, args})...); status != StatusDone {
+			t.Fatalf("simulate %s: status %d, %s", name, status, text)
+		}
+	}
+	const session = `bead.diameter = "1.030(15) um"
+medium.temperature = "25.0(5) C"
+chamber.height = "6.0(2) um"
+recording.noise = "1 nm"
+`
+	write := func(name, text string) {
+		if err := os.WriteFile(filepath.Join("day", name), []byte(text), 0o644); err != nil {
+			t.Fatal(err)
+		}
+	}
+	write("tracks.csv", "file,role\ntrapped.csv,trapped\nfree.csv,free\n")
+	write("session.toml", session)
+	const alone = "One cause alone would reconcile the routes: a temperature at the trap alone"
+	for _, c := range []struct {
+		args   []string
+		status int
+		want   []string
+	}{
+		{[]string{"calibrate", "day/trapped.csv"}, StatusDistrust, []string{"this recording cannot tell them apart"}},
+		{[]string{"calibrate", "--companions", "day/free.csv", "day/trapped.csv"}, StatusDistrust, []string{alone, "Weighed together with day/free.csv", "eyewear"}},
+		{[]string{"calibrate", "--companions", "nowhere.csv", "day/trapped.csv"}, StatusInput, []string{"a companion of day/trapped.csv: nowhere.csv: no such file or directory"}},
+	} {
+		check(t, real, c.args, c.status, c.want)
+	}
+	write("session.toml", session+`recording.companions = "trapped.csv; free.csv"`+"\n") // for the whole folder: each passes itself over
+	for _, c := range []struct {
+		args   []string
+		status int
+		want   []string
+	}{
+		{[]string{"calibrate", "--out", "results", "day/trapped.csv"}, StatusDistrust, []string{alone}},
+		{[]string{"rerun", "results/trapped/result.json"}, StatusDone, []string{"same"}},
+		{[]string{"batch", "--out", "all", "day"}, StatusDistrust, nil},
+	} {
+		check(t, real, c.args, c.status, c.want)
+	}
+	stored, err := os.ReadFile("all/trapped/result.json")
+	if err != nil || !strings.Contains(string(stored), `"companions": [`) {
+		t.Errorf("the batch's result names no companion: %v", err)
+	}
+}
+
+// check runs a command and looks for its status and texts.
+func check(t *testing.T, real func(...string) (int, string), args []string, want int, texts []string) {
+	t.Helper()
+	status, text := real(args...)
+	if status != want {
+		t.Errorf("%v: status %d, want %d: %s", args, status, want, text)
+	}
+	for _, w := range texts {
+		if !strings.Contains(text, w) {
+			t.Errorf("%v: no %q in %s", args, w, text)
+		}
+	}
+}
