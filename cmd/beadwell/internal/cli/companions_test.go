@@ -47,9 +47,10 @@ recording.noise = "1 nm"
 		status int
 		want   []string
 	}{
-		{[]string{"calibrate", "day/trapped.csv"}, StatusDistrust, []string{"this recording cannot tell them apart"}},
-		{[]string{"calibrate", "--companions", "day/free.csv", "day/trapped.csv"}, StatusDistrust, []string{alone, "Weighed together with day/free.csv", "eyewear"}},
-		{[]string{"calibrate", "--companions", "nowhere.csv", "day/trapped.csv"}, StatusInput, []string{"a companion of day/trapped.csv: nowhere.csv: no such file or directory"}},
+		{[]string{"calibrate", "--free-bead", "none", "day/trapped.csv"}, StatusDistrust, []string{"this recording cannot tell them apart"}},
+		{[]string{"calibrate", "day/trapped.csv"}, StatusDistrust, []string{alone}}, // a free bead in the track list joins by itself
+		{[]string{"calibrate", "--free-bead", "none", "--companions", "day/free.csv", "day/trapped.csv"}, StatusDistrust, []string{alone, "Weighed together with day/free.csv", "eyewear"}},
+		{[]string{"calibrate", "--companions", "nowhere.csv", "day/trapped.csv"}, StatusInput, []string{"nowhere.csv: no such file or directory"}},
 	} {
 		check(t, real, c.args, c.status, c.want)
 	}
