@@ -246,8 +246,8 @@ func exponential(value, sd float64, stat relaxation.Offsets, total float64, comb
 
 // end is one end of an interval; an unbounded one is unknown.
 func end(logarithm float64) Float {
-	if math.IsInf(logarithm, 0) {
-		return Float(math.NaN())
+	if value := math.Exp(logarithm); !math.IsInf(logarithm, 0) && !math.IsInf(value, 0) {
+		return Float(value)
 	}
-	return Float(math.Exp(logarithm))
+	return Float(math.NaN())
 }

@@ -124,6 +124,9 @@ func (w *work) describeSpectrum() {
 	o := w.profile(alongDrag, sdD)
 	extra := math.Sqrt(math.Max(0, totalD*totalD-sdD*sdD) + w.lengthU()*w.lengthU())
 	s.Diffusion = exponential(math.Log(2*math.Pi*f.Corner*f.Variance), sdD, o, math.Hypot(sdD, extra), o.Widened(extra), "m2/s")
+	if sdD > 2*hopeless {
+		s.Diffusion = Withheld("m2/s", tooUncertain(sdD))
+	}
 	w.describeNoise()
 	w.leastSquares()
 	w.spectrumCurves()
@@ -138,8 +141,12 @@ func (w *work) lengthU() float64 {
 	return u
 }
 
-// fitted makes the quantity of a parameter of the fit whose interval a leg holds.
+// fitted makes the quantity of a parameter of the fit whose interval a leg holds. One that is not known to a factor of e
+// is withheld.
 func (w *work) fitted(value float64, leg int, weights relaxation.Parameters, sd, total, length float64, unit string) Quantity {
+	if sd > 2*hopeless {
+		return Withheld(unit, tooUncertain(sd))
+	}
 	o := relaxation.Normal(sd)
 	if w.has(leg) {
 		o = w.legs.offsets[leg]

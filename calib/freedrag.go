@@ -358,12 +358,12 @@ func (w *work) adoptWithFree() {
 	}
 	by.adopt()
 	a := &by.axis.Adopted
-	name := "drag of the free bead"
+	name := "free bead's drag"
 	if c.share < 1 {
-		name = "drag, computed and of the free bead"
+		name = "computed drag and free bead's"
 	}
 	a.Basis = strings.Replace(a.Basis, "computed drag", name, 1)
-	a.Basis = strings.Replace(a.Basis, "drag and amplitude route combined", "amplitude route and route through "+name+", combined", 1)
+	a.Basis = strings.Replace(a.Basis, "drag and amplitude route combined", "drag and amplitude route and free bead combined", 1)
 	w.axis.Adopted, w.adoptedLeg = *a, by.adoptedLeg
 }
 

@@ -84,6 +84,7 @@ func (f *Found) folder(folder string, below bool) error {
 					return err
 				}
 			}
+		case strings.HasSuffix(name, truthEnding): // of a simulated recording
 		case looksLikeRecording(name):
 			f.Paths = append(f.Paths, path)
 		default:
@@ -107,6 +108,9 @@ func (f *Found) listed(folder string) {
 		f.Aside = slices.DeleteFunc(f.Aside, func(aside string) bool { return aside == path })
 	}
 }
+
+// truthEnding is that of the file beside a simulated recording.
+const truthEnding = ".truth.json"
 
 // isResults tells whether a folder is the output of an earlier run.
 func isResults(folder string) bool {

@@ -16,17 +16,17 @@ import (
 
 const demo = "../../../../testdata/demo"
 
-// The whole way with the real calibration: the demo session is consistent, its
-// results fit the schema, and every output is remade from the stored result.
+// The whole way with the real calibration, for a recording of each kind in the demo session: the bead that escapes
+// makes it one not to be trusted, results fit the schema, and every output is remade from the stored result.
 func TestDemo(t *testing.T) {
-	tracks, err := filepath.Glob(filepath.Join(demo, "*.csv"))
-	if err != nil || len(tracks) < 3 {
-		t.Fatalf("the demo session has %d tables, %v", len(tracks), err)
+	var tracks []string
+	for _, name := range []string{"camera", "quadrant", "power-60mW", "free", "stuck", "escaped"} {
+		tracks = append(tracks, filepath.Join(demo, name+".csv"))
 	}
 	out := t.TempDir()
 	w, text, errs := testWorld("")
 	w.Calibrate = calib.Calibrate
-	if got := run(context.Background(), append([]string{"calibrate", "--out", out}, tracks...), w); got != StatusDone {
+	if got := run(context.Background(), append([]string{"calibrate", "--out", out}, tracks...), w); got != StatusDistrust {
 		t.Fatalf("status %d, %s%s", got, text, errs)
 	}
 	recordings, err := os.ReadDir(out)
@@ -65,7 +65,7 @@ func compareRemade(t *testing.T, folder string, first map[string]string) {
 	t.Helper()
 	again := t.TempDir()
 	w, _, errs := testWorld("")
-	if got := run(context.Background(), []string{"report", "--out", again, filepath.Join(folder, resultJSON)}, w); got != StatusDone {
+	if got := run(context.Background(), []string{"report", "--out", again, filepath.Join(folder, resultJSON)}, w); got != StatusDone && (got != StatusDistrust || filepath.Base(folder) != "escaped") {
 		t.Fatalf("report: status %d, %s", got, errs)
 	}
 	for name, text := range contents(t, filepath.Join(again, filepath.Base(folder))) {

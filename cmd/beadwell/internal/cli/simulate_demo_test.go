@@ -81,7 +81,7 @@ func compareText(got, want []byte) string {
 }
 
 // Each track of the demo is marked as simulated, and together with all else
-// they stay below the 6 MB that a clone may cost.
+// they stay below the 15 MB that a clone may cost.
 func TestDemoIsSmallAndMarked(t *testing.T) {
 	entries, err := os.ReadDir(demoFolder)
 	if err != nil {
@@ -95,8 +95,8 @@ func TestDemoIsSmallAndMarked(t *testing.T) {
 			t.Errorf("%s does not say that it is simulated", entry.Name())
 		}
 	}
-	if size > 6e6 {
-		t.Errorf("the demo has %d bytes, more than 6 MB", size)
+	if size > 15e6 {
+		t.Errorf("the demo has %d bytes, more than 15 MB", size)
 	}
 }
 
