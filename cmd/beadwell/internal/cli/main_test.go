@@ -8,6 +8,7 @@ import (
 	"path/filepath"
 	"strconv"
 	"strings"
+	"syscall"
 	"testing"
 	"time"
 
@@ -25,12 +26,30 @@ import (
 // that send it signals.
 func TestMain(m *testing.M) {
 	if os.Getenv(asProgram) != "" {
+		limitFiles(os.Getenv(fileLimit))
 		os.Exit(Main(os.Args[1:], inventedWorld()))
 	}
 	testscript.Main(m, map[string]func(){"beadwell": func() { os.Exit(Main(os.Args[1:], inventedWorld())) }})
 }
 
 const asProgram = "BEADWELL_TEST_AS_PROGRAM"
+
+// fileLimit in the environment is the size in bytes beyond which the program cannot write
+// a file, as on a disk that is full.
+const fileLimit = "BEADWELL_TEST_FILE_LIMIT"
+
+func limitFiles(text string) {
+	if text == "" {
+		return
+	}
+	size, err := strconv.ParseUint(text, 10, 64)
+	if err == nil {
+		err = syscall.Setrlimit(syscall.RLIMIT_FSIZE, &syscall.Rlimit{Cur: size, Max: size})
+	}
+	if err != nil {
+		panic(err)
+	}
+}
 
 func inventedWorld() World {
 	w := Process()

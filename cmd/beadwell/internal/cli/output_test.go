@@ -1,15 +1,20 @@
 package cli
 
 import (
+	"bytes"
 	"context"
 	"errors"
+	"fmt"
+	"maps"
 	"os"
+	"os/exec"
 	"path/filepath"
+	"slices"
 	"strings"
 	"testing"
 )
 
-// A file of --out in turn, one of each kind, cannot be replaced: the status is not 0, the file
+// Each file of --out in turn cannot be replaced: the status is not 0, the file
 // that is in the way is untouched, and every other file is whole, old or new.
 func TestFaultWalk(t *testing.T) {
 	folder := t.TempDir()
@@ -23,7 +28,7 @@ func TestFaultWalk(t *testing.T) {
 		t.Fatalf("status %d: %s", got, message)
 	}
 	before := contents(t, filepath.Join(out, "run"))
-	for _, name := range []string{resultJSON, resultText, resultCSV, reportHTML, "estimates.svg", "trace-x.png"} {
+	for _, name := range slices.Sorted(maps.Keys(before)) {
 		blocked := filepath.Join(out, "run", name)
 		os.Remove(blocked)
 		if err := os.MkdirAll(filepath.Join(blocked, "inside"), 0o777); err != nil {
@@ -46,6 +51,59 @@ func TestFaultWalk(t *testing.T) {
 		for other, text := range after {
 			if text != before[other] {
 				t.Errorf("%s is a folder: %s is torn", name, other)
+			}
+		}
+	}
+}
+
+// A write of each file of --out in turn meets a full disk: the status is not 0, the message
+// names a file, and every file is whole, old or new.
+func TestFullDiskWalk(t *testing.T) {
+	folder := t.TempDir()
+	track := writeTrack(t, folder, "run.csv")
+	out := filepath.Join(folder, "out")
+	calibrate := func(diameter string, limit int) (int, string) {
+		cmd := exec.Command(os.Args[0], "calibrate", "--diameter", diameter, "--out", out, track)
+		cmd.Env = append(os.Environ(), asProgram+"=1")
+		if limit >= 0 {
+			cmd.Env = append(cmd.Env, fmt.Sprintf("%s=%d", fileLimit, limit))
+		}
+		var errs bytes.Buffer
+		cmd.Stderr = &errs
+		var exit *exec.ExitError
+		if err := cmd.Run(); err != nil && !errors.As(err, &exit) {
+			t.Fatal(err)
+		}
+		return cmd.ProcessState.ExitCode(), errs.String()
+	}
+	restore := func(files map[string]string) {
+		for name, text := range files {
+			if err := os.WriteFile(filepath.Join(out, "run", name), []byte(text), 0o666); err != nil {
+				t.Fatal(err)
+			}
+		}
+	}
+	if got, message := calibrate("2 um", -1); got != StatusDone {
+		t.Fatalf("status %d: %s", got, message)
+	}
+	renewed := contents(t, filepath.Join(out, "run"))
+	if got, message := calibrate("1 um", -1); got != StatusDone {
+		t.Fatalf("status %d: %s", got, message)
+	}
+	old := contents(t, filepath.Join(out, "run"))
+	for name, text := range renewed {
+		restore(old)
+		got, message := calibrate("2 um", len(text)-1)
+		if got != StatusFailed || !strings.Contains(message, filepath.Join(out, "run")) {
+			t.Errorf("no room for %s: status %d, %q", name, got, message)
+		}
+		after := contents(t, filepath.Join(out, "run"))
+		if len(after) != len(old) || after[name] != old[name] {
+			t.Errorf("no room for %s: %d files, want %d, and the old one of its name", name, len(after), len(old))
+		}
+		for other, text := range after {
+			if text != old[other] && text != renewed[other] {
+				t.Errorf("no room for %s: %s is torn", name, other)
 			}
 		}
 	}
