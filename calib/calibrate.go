@@ -44,8 +44,9 @@ type Options struct {
 }
 
 // AdoptWords are the routes that can be adopted whatever the cross-check says: drag, by that of the free bead
-// too where there is one; amplitude; drag by that of the free bead alone.
-var AdoptWords = []string{RouteDrag, RouteAmplitude, RouteFreeBead}
+// too where there is one; amplitude; drag by that of the free bead alone; on the axis that follows a moving stage the estimate without
+// viscosity, and Stokes drag at constant speed.
+var AdoptWords = []string{RouteDrag, RouteAmplitude, RouteFreeBead, RouteDriven, RouteFlow}
 
 // Companion is a recording that joins the diagnosis of another, with its settings.
 type Companion struct {

@@ -19,6 +19,9 @@ const (
 // RouteDriven is the route that gets its length scale from the motion of the stage.
 const RouteDriven = "driven"
 
+// RouteFlow names the stiffness by Stokes drag at constant speed where a route to adopt is asked for.
+const RouteFlow = "flow"
+
 // Driven is what a moving stage tells of one axis.
 //
 // A stage that moves as A sin(2 pi f t) carries the liquid along, and the bead answers with a line of
@@ -57,6 +60,22 @@ type response struct {
 	powerU        float64 // relative, of the record
 	blur          float64
 	flow          *flow
+}
+
+// checkFlow refuses to adopt Stokes drag at constant speed where there is none, or where the lengths rest on it.
+func (w *work) checkFlow() error {
+	if w.drive == nil || w.opt.Adopt != RouteFlow {
+		return nil
+	}
+	e := &SettingError{Key: "adopt", Axis: w.axisName, Problem: fmt.Sprintf("is %q, but the stage does not move at constant speed", RouteFlow), Remedy: "take --adopt driven"}
+	switch {
+	case w.drive.waveform != triangleWave:
+		return e
+	case w.unscaled:
+		e.Problem = fmt.Sprintf("is %q, but the sensitivity is taken from the same displacement", RouteFlow)
+		return e
+	}
+	return nil
 }
 
 // takeOutDrive removes the answer to the stage from the record that is about to be fitted.

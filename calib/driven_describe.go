@@ -84,9 +84,13 @@ func (w *work) adoptDriven() {
 		c := w.drivenPair(true)
 		share = math.Max(0, math.Min(1, (c[1][1]-c[0][1])/(c[0][0]+c[1][1]-2*c[0][1])))
 	}
-	if w.opt.Adopt == RouteDrag && w.has(spectrumLeg) {
+	switch {
+	case w.opt.Adopt == RouteDriven:
+		share = 0
+	case w.opt.Adopt == RouteDrag && w.has(spectrumLeg):
 		share = 1
 	}
+	w.byStage = true
 	a.Basis = "drag route and driven stage combined"
 	switch share {
 	case 0:
@@ -134,23 +138,34 @@ func (w *work) drivenPair(inputs bool) [2][2]float64 {
 
 // drivenBudget lists what the uncertainty of the adopted stiffness is made of.
 func (w *work) drivenBudget(share float64) {
+	w.stageBudget(func(in influence) float64 { return share*in.drag + (1-share)*in.energy }, -2*(1-share))
+}
+
+// stageBudget is the budget for what one standard uncertainty of an input, and a relative change of the stage's amplitude,
+// do to ln(stiffness).
+func (w *work) stageBudget(move func(influence) float64, byAmplitude float64) {
 	a := &w.axis.Adopted
 	total := float64(a.Stiffness.Combined.Standard / a.Stiffness.Value)
 	add := func(name string, value, u float64, unit string, move, base float64) {
 		l := BudgetLine{Input: name, Value: Float(value), Unit: unit, StandardUncertainty: Float(u), Sensitivity: Float(math.NaN()),
-			Contribution: Float(math.Abs(move)), Share: Float(move * move / (total * total))}
+			Contribution: Float(math.Abs(move)), Share: Float(move * move / (total * total)), Freedom: Float(math.NaN())}
 		if u > 0 {
 			l.Sensitivity = Float(move / (u / base))
 		}
 		a.Budget = append(a.Budget, l)
 	}
 	for _, in := range w.phys.influences {
-		add(in.name, in.value, in.u, in.unit, share*in.drag+(1-share)*in.energy, in.base)
+		add(in.name, in.value, in.u, in.unit, move(in), in.base)
 	}
 	amplitude, _, u := w.drive.amplitude(w.stageBlur())
-	add("amplitude of the stage", amplitude, u*amplitude, "m", -2*(1-share)*u, amplitude)
+	if math.IsNaN(amplitude) { // a triangle that is known by its column has speeds, and no one amplitude
+		amplitude = 0
+	}
+	add("amplitude of the stage", amplitude, u*amplitude, "m", byAmplitude*u, amplitude)
 	s := a.Stiffness.Statistical.Standard
-	add("statistics of the recording", float64(a.Stiffness.Value), float64(s), "N/m", float64(s/a.Stiffness.Value), float64(a.Stiffness.Value))
+	add(statisticsLine, float64(a.Stiffness.Value), float64(s), "N/m", float64(s/a.Stiffness.Value), float64(a.Stiffness.Value))
+	a.Budget[len(a.Budget)-1].Freedom = Float(w.independent())
+	a.Expanded, a.Halving = expanded(a.Budget, a.Stiffness), toHalve(a.Budget)
 }
 
 // describeDriven fills in what the moving stage tells.

@@ -242,3 +242,43 @@ func TestDrivenCoverage(t *testing.T) {
 		}
 	}
 }
+
+// The estimates of a moving stage can be adopted by name, with a budget that adds up; where there are none, an error says so.
+func TestAdoptDriven(t *testing.T) {
+	triangle := simulate.Stage{Phase: 1.1, Parts: []simulate.Drive{{Waveform: simulate.Triangle, Amplitude: 5e-6, Frequency: 10}}}
+	s := usual().driving("triangle", "5.00(5) um", "10 Hz").with("bead.diameter", "1.00(2) um")
+	rec := s.driven(t, 61, triangle, false)
+	for adopt, leg := range map[string]string{RouteDriven: LegDriven, RouteFlow: LegFlow} {
+		r, err := Calibrate(context.Background(), rec, s.set(t), Options{Adopt: adopt})
+		if err != nil {
+			t.Fatal(err)
+		}
+		a := r.Axes[0]
+		want := a.leg(leg)
+		if math.Abs(float64(a.Adopted.Stiffness.Value/want.Value)-1) > 1e-12 || math.Abs(float64(a.Adopted.Stiffness.Combined.Standard/want.Combined.Standard)-1) > 1e-9 {
+			t.Errorf("--adopt %s: %v, the estimate is %v", adopt, a.Adopted.Stiffness, want)
+		}
+		sum := 0.0
+		for _, l := range a.Adopted.Budget {
+			sum += float64(l.Share)
+		}
+		if math.Abs(sum-1) > 1e-9 || a.Adopted.Expanded == nil {
+			t.Errorf("--adopt %s: the shares of the budget add up to %g", adopt, sum)
+		}
+	}
+	sine := usual().driving("sine", "150(1) nm", "28.37 Hz")
+	sine.samples = 100000
+	for name, c := range map[string]struct {
+		s     scene
+		adopt string
+	}{"still": {usual(), RouteDriven}, "sine": {sine, RouteFlow}} {
+		rec := c.s.record(t, 1)
+		if name == "sine" {
+			rec = c.s.driven(t, 21, hum, false)
+		}
+		_, err := Calibrate(context.Background(), rec, c.s.set(t), Options{Adopt: c.adopt})
+		if e, ok := err.(*SettingError); !ok || e.Key != "adopt" {
+			t.Errorf("%s: error %v", name, err)
+		}
+	}
+}

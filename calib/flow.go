@@ -339,17 +339,29 @@ func (w *work) describeFlow(d *Driven) {
 	}
 	d.Flow = &FlowLine{Slope: around(f.slope, f.slopeU, "s"), Intercept: around(f.offset, f.offsetU, "m"),
 		Goodness: Goodness{ChiSquare: Float(f.chi2), DegreesOfFreedom: f.dof, PValue: p}, Skipped: Float(f.skipped), Points: f.points}
-	e := Estimate{Leg: LegFlow, Route: RouteDrag}
-	if w.scaledByDrive() {
-		e.Stiffness = Withheld("N/m", byDrive)
-	} else {
-		sd := f.slopeU / math.Abs(f.slope)
-		u := w.drive.statedU // of the speed
-		for _, in := range w.phys.influences {
-			u = math.Hypot(u, in.drag-in.length)
-		}
-		o := relaxation.Normal(sd)
-		e.Stiffness = exponential(math.Log(w.phys.gamma/math.Abs(f.slope)), sd, o, math.Hypot(sd, u), o.Widened(u), "N/m")
+	e := Estimate{Leg: LegFlow, Route: RouteDrag, Stiffness: Withheld("N/m", byDrive)}
+	if !w.scaledByDrive() {
+		e.Stiffness = w.flowStiffness()
 	}
 	w.axis.Estimates = append(w.axis.Estimates, e)
+}
+
+// flowStiffness is the stiffness by Stokes drag: the computed drag over the slope of displacement against speed.
+func (w *work) flowStiffness() Quantity {
+	f := w.reply.flow
+	sd := f.slopeU / math.Abs(f.slope)
+	u := w.drive.statedU // of the speed
+	for _, in := range w.phys.influences {
+		u = math.Hypot(u, in.drag-in.length)
+	}
+	o := relaxation.Normal(sd)
+	return exponential(math.Log(w.phys.gamma/math.Abs(f.slope)), sd, o, math.Hypot(sd, u), o.Widened(u), "N/m")
+}
+
+// adoptFlow adopts the stiffness by Stokes drag.
+func (w *work) adoptFlow() {
+	a := &w.axis.Adopted
+	a.Basis, a.Stiffness, w.byStage = "displacement at constant speed and computed drag", w.flowStiffness(), true
+	a.Weights = map[string]Float{RouteDrag: 1, RouteAmplitude: 0}
+	w.stageBudget(func(in influence) float64 { return in.drag - in.length }, 1)
 }

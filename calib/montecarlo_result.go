@@ -74,11 +74,11 @@ func (r *Result) propagate(ctx context.Context, works []*work, opt MonteCarloOpt
 
 // monteCarlo is the measurement model of the adopted stiffnesses.
 type monteCarlo struct {
-	works  []*work
-	names  map[string]int // of the inputs, by name, to the position of its deviate
-	noise  []int          // position of the deviate of each axis' noise
-	common int            // position of the deviates of the inputs of the record
-	count  int
+	works []*work
+	names map[string]int // of the inputs, by name, to the position of its deviate
+	noise []int          // position of the deviate of each axis' noise
+	moves [moveCount]int // positions of the deviates of the inputs of the record; those without an uncertainty do not matter
+	count int
 }
 
 func newMonteCarlo(r *Result, works []*work) *monteCarlo {
@@ -91,7 +91,7 @@ func newMonteCarlo(r *Result, works []*work) *monteCarlo {
 		return m.names[name]
 	}
 	for i, w := range works {
-		if len(r.Axes[i].Adopted.Budget) == 0 { // withheld, or not from a model of these inputs
+		if len(r.Axes[i].Adopted.Budget) == 0 || w.byStage { // withheld, or not from a model of these inputs
 			continue
 		}
 		if w.adopter != nil {
@@ -104,9 +104,14 @@ func newMonteCarlo(r *Result, works []*work) *monteCarlo {
 		}
 		n, _ := number(w.set, "recording.noise", w.axisName)
 		m.noise = append(m.noise, deviate(noiseLine+" "+n.Axis))
-		m.common = deviate(exposureLine) // the others follow
-		deviate(alphaLine)
-		deviate(f3dbLine)
+		m.moves[exposureMoves] = deviate(exposureLine)
+		alpha, f3db := w.diodeU()
+		if alpha > 0 {
+			m.moves[alphaMoves] = deviate(alphaLine)
+		}
+		if f3db > 0 {
+			m.moves[f3dbMoves] = deviate(f3dbLine)
+		}
 	}
 	return m
 }
@@ -139,7 +144,7 @@ func (m *monteCarlo) draw(rng *rand.Rand, out []float64) bool {
 		noise, moved := w.onRecord()
 		change := drag*w.frictionChange(friction, e, m.names) + (1-drag)*(energy-math.Log(w.phys.kT)-2*math.Log(scale))
 		for k, by := range moved {
-			change += by * e[m.common+k]
+			change += by * e[m.moves[k]]
 		}
 		change += noise*e[m.noise[i]] + lopsidedDraw(a.Stiffness, rng.NormFloat64())
 		out[i] = float64(a.Stiffness.Value) * math.Exp(change)

@@ -77,7 +77,7 @@ type Setting struct {
 
 // Choices are what the user asked of the calibration beside the settings.
 type Choices struct {
-	Adopt string `json:"adopt,omitempty"`             // the route to adopt, "drag" or "amplitude", whatever the cross-check says
+	Adopt string `json:"adopt,omitempty"`             // the route to adopt, "drag", "amplitude", "free-bead", "driven" or "flow", whatever the cross-check says
 	Use   string `json:"use,omitempty"`               // "good": the longest part without what is bad
 	Draws int    `json:"monte_carlo_draws,omitempty"` // of the propagation of distributions
 	Seed  string `json:"monte_carlo_seed,omitempty"`  // of it, decimal

@@ -33,7 +33,7 @@ func assignDrive(rec *track.Recording, set *session.Settings, works []*work) err
 	}
 	d.axis = rec.Axes[at].Name
 	works[at].drive = d
-	return nil
+	return works[at].checkFlow()
 }
 
 // undriven returns the recorded positions without the answer to the stage.

@@ -70,13 +70,20 @@ func (r *Result) judge(works []*work, opt Options) {
 	v.Status = Inconsistent
 	v.Text = "The estimates disagree: do not use this calibration before the cause is found."
 	v.Reason = fmt.Sprintf("axis %s: %s; family-wise %s, inconsistent below %g", worst.axisName, said, pText(float64(v.FamilyWiseP)), familyLevel)
-	if opt.Adopt != "" {
+	byStage := opt.Adopt == RouteDriven || opt.Adopt == RouteFlow
+	if opt.Adopt != "" && !byStage {
 		return
 	}
 	for i := range r.Axes {
+		if byStage && r.Axes[i].Driven != nil {
+			continue
+		}
 		reason := "the drag route and the amplitude route disagree; --adopt drag or --adopt amplitude takes one of them"
 		if r.Axes[i].FreeDrag != nil {
 			reason = "computed drag, drag of the free bead and amplitude disagree; --adopt drag, --adopt free-bead or --adopt amplitude takes one of them"
+		}
+		if r.Axes[i].Driven != nil {
+			reason += "; --adopt driven takes the estimate without viscosity"
 		}
 		a := &r.Axes[i].Adopted
 		a.Stiffness, a.Withheld = Withheld("N/m", reason), reason

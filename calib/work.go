@@ -56,6 +56,7 @@ type work struct {
 	physicalNoise bool                                                   // the pooled fit keeps the noise from turning negative
 	seen          psd.Hydrodynamic                                       // the spectrum of the fit with its photodiode, where there is a form
 	rival         *psd.Fit                                               // trap and photodiode exchanged, where nothing says which is which
+	byStage       bool                                                   // the adopted stiffness rests on the motion of the stage
 	moved         [moveCount]float64                                     // inputs of the record, moved by so many standard uncertainties
 	form          func(relaxation.Blocks, float64) relaxation.Likelihood // of the fit; nil: the relaxation process
 	hydro         *psd.Bias                                              // of a fit with constant drag, where it matters
@@ -81,6 +82,10 @@ func newWork(rec *track.Recording, index int, set *session.Settings, opt Options
 	if opt.Adopt == RouteFreeBead && w.free == nil {
 		return nil, &SettingError{Key: "adopt", Axis: a.Name, Problem: fmt.Sprintf("is %q, but no recording of the free bead gives its drag", opt.Adopt),
 			Remedy: "name one with --free-bead, or give its row in tracks.csv the role free"}
+	}
+	if (opt.Adopt == RouteDriven || opt.Adopt == RouteFlow) && roleOf(set) != RoleDriven {
+		return nil, &SettingError{Key: "adopt", Axis: a.Name, Problem: fmt.Sprintf("is %q, but the recording is not one with a moving stage", opt.Adopt),
+			Remedy: "give its row in tracks.csv the role driven, or add --role driven"}
 	}
 	return w, w.setBackground()
 }
@@ -194,9 +199,20 @@ func (w *work) settle() {
 	case w.scaledByDrive():
 		w.withholdScaled()
 		w.adoptDriven()
+	case w.drive != nil && w.opt.Adopt == RouteDriven:
+		w.compare()
+		w.compareFree()
+		w.adoptDriven()
+	case w.drive != nil && w.opt.Adopt == RouteFlow:
+		w.compare()
+		w.compareFree()
+		w.adoptFlow()
 	default:
 		w.compare()
 		w.compareFree()
+		if w.opt.Adopt == RouteDriven || w.opt.Adopt == RouteFlow { // on the axis that follows the stage alone
+			w.opt.Adopt = ""
+		}
 		w.adoptWithFree()
 	}
 }

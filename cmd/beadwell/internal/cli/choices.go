@@ -26,7 +26,7 @@ const (
 // add adds the flags of the choices to a command.
 func (c *choices) add(cmd *cobra.Command) {
 	flags := cmd.Flags()
-	flags.StringVar(&c.adopt, "adopt", "", "adopt this route alone, also when routes disagree: `drag|amplitude|free-bead`")
+	flags.StringVar(&c.adopt, "adopt", "", "adopt this route alone, also when routes disagree: `drag|amplitude|free-bead|driven|flow`")
 	flags.StringVar(&c.use, "use", "", "calibrate only the longest part without what is bad, such as an escape: `good`")
 	flags.IntVar(&c.draws, "monte-carlo", 0, "propagate distributions with this `number` of draws, and compare with the budget")
 	flags.Uint64Var(&c.seed, "seed", 1, "with --monte-carlo: whole `number` that selects the draws")
