@@ -66,7 +66,7 @@ func measureNoise(values []float64, rate float64) (background, error) {
 	}
 	r.RemoveLines(levelOf(r))
 	b.lines = r.Lines
-	share := float64(len(r.X)) / float64(r.Observed())
+	share := float64(r.Samples) / float64(r.Observed())
 	var sum, all float64
 	var n, m int
 	for k := 1; k < len(r.Power)-1; k++ {

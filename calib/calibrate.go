@@ -39,6 +39,8 @@ type Options struct {
 	// Companions are other recordings of the same bead in the same chamber, such as one with the laser off, one with a
 	// moving stage or one at another height. Where the routes disagree they join the diagnosis.
 	Companions []Companion
+	// Gathered holds what is known of a recording that was too long for the memory, and whose axes have no values. Nil: they have.
+	Gathered *Gatherer
 	// Program and its version, and the command line, for the record.
 	Program Program
 }
@@ -94,6 +96,11 @@ func calibrateAll(ctx context.Context, rec *track.Recording, set *session.Settin
 		return nil, &SettingError{Key: "adopt", Problem: fmt.Sprintf("%q is none of %s", opt.Adopt, strings.Join(AdoptWords, ", "))}
 	}
 	role := roleOf(set)
+	if g := opt.Gathered; g != nil {
+		if err := g.check(rec, role); err != nil {
+			return nil, err
+		}
+	}
 	if role == RoleBackground {
 		return measureBackground(ctx, rec, set, opt)
 	}
@@ -112,6 +119,7 @@ func calibrateAll(ctx context.Context, rec *track.Recording, set *session.Settin
 		r.Axes = append(r.Axes, w.axis)
 	}
 	seen.works, seen.good = works, r.examine(rec, works)
+	r.describeParts(rec, works, opt.Gathered)
 	r.judge(works, opt)
 	if err := r.findCause(ctx, works, opt); err != nil {
 		return nil, err
@@ -120,7 +128,8 @@ func calibrateAll(ctx context.Context, rec *track.Recording, set *session.Settin
 		return nil, err
 	}
 	r.collectFindings(set, works)
-	r.findAxes(works)
+	r.findAxes(works, opt.Gathered)
+	r.partFindings()
 	return r, nil
 }
 
@@ -155,11 +164,19 @@ func newResult(rec *track.Recording, set *session.Settings, works []*work, opt O
 	return r
 }
 
+// longRecord is the number of samples from which axes are analysed one after the other, each on all
+// processors, and their copies of the samples let go: memory then counts.
+const longRecord = 1 << 21
+
 // runAll analyses the axes at the same time; the first error in the order of the
 // axes is returned.
 func runAll(ctx context.Context, works []*work) error {
 	errs := make([]error, len(works))
-	limit := make(chan struct{}, runtime.GOMAXPROCS(0))
+	workers := runtime.GOMAXPROCS(0)
+	if len(works) > 0 && len(works[0].source.Values) >= longRecord {
+		workers = 1
+	}
+	limit := make(chan struct{}, workers)
 	var group sync.WaitGroup
 	for i, w := range works {
 		group.Go(func() {

@@ -33,6 +33,9 @@ func (r *Result) examine(rec *track.Recording, works []*work) stretch {
 		in.Exposure = w.exposure
 		process := w.soundProcess()
 		a := health.Axis{Name: w.axisName, X: w.source.Values, Process: process, Known: w.fitErr == nil || w.poolErr == nil, GoodnessP: math.NaN()}
+		if w.gathered != nil {
+			a.Gathered = w.gatheredHealth()
+		}
 		if w.fitErr == nil {
 			a.CornerSD, _ = w.fit.SD(alongCorner)
 			a.GoodnessP = w.fit.Goodness.PValue
@@ -47,6 +50,9 @@ func (r *Result) examine(rec *track.Recording, works []*work) stretch {
 			a.Lines = append(a.Lines, health.Line{Frequency: l.Frequency, Amplitude: l.Amplitude})
 		}
 		in.Axes = append(in.Axes, a)
+	}
+	if len(works) > 0 && works[0].gathered != nil {
+		in.Products = works[0].opt.Gathered.products(works)
 	}
 	checks := health.Run(in)
 	good := goodStretch(in, checks)

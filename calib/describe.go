@@ -4,6 +4,7 @@ import (
 	"math"
 
 	"beadwell/calib/relaxation"
+	"beadwell/calib/transform"
 	"beadwell/equipartition"
 	"beadwell/psd"
 )
@@ -269,7 +270,12 @@ func (w *work) potential(sigma, effective float64) Potential {
 		effective = float64(w.record.Observed())
 	}
 	process, _, _, _ := w.bestProcess()
-	q := equipartition.NewPotential(w.record.X, sigma, effective, process.Decay())
+	var q equipartition.Potential
+	if w.gathered != nil {
+		q = w.gathered.histogram.Scaled(w.unit).Potential(sigma, effective, process.Decay())
+	} else {
+		q = equipartition.NewPotential(w.record.X, sigma, effective, process.Decay())
+	}
 	p := Potential{BinWidth: Float(q.Width), Gaussian: [2]Float{0, Float(sigma)},
 		Curvature:  around(q.Curvature*w.phys.kT, q.CurvatureSD*w.phys.kT, "N/m"),
 		Anharmonic: around(q.ExcessKurtosis, q.ExcessKurtosisSD, "1"), Skewness: around(q.Skewness, q.SkewnessSD, "1")}
@@ -327,10 +333,13 @@ const traceSteps = 500
 
 // trace keeps minimum and maximum of consecutive stretches of the recorded positions.
 func (w *work) trace() Trace {
+	if w.gathered != nil {
+		return w.gatheredTrace()
+	}
 	x := w.source.Values
 	n := min(traceSteps, len(x))
 	t := Trace{Start: Float(w.start), Step: Float(float64(len(x)) / float64(n) / w.rate), Low: make([]Float, n), High: make([]Float, n)}
-	for i := range n {
+	stretch := func(i int) {
 		low, high := math.Inf(1), math.Inf(-1)
 		for _, v := range x[i*len(x)/n : (i+1)*len(x)/n] {
 			if v < low {
@@ -345,5 +354,16 @@ func (w *work) trace() Trace {
 			t.Low[i], t.High[i] = Float(math.NaN()), Float(math.NaN())
 		}
 	}
+	if len(x) < longRecord {
+		for i := range n {
+			stretch(i)
+		}
+		return t
+	}
+	transform.Each(n, func(next func() (int, bool)) {
+		for i, ok := next(); ok; i, ok = next() {
+			stretch(i)
+		}
+	})
 	return t
 }

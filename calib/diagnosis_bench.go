@@ -287,13 +287,14 @@ func (w *work) likelihoodAt(exposure float64) relaxation.Likelihood {
 		h, _ := w.hydrodynamic(w.dragModel == FrequencyDependentDrag)
 		return h.Form(w.rate, exposure)(w.fit.Blocks, scale)
 	case w.fit.Method == psd.Exact:
+		w.record.Restore()
 		e := relaxation.NewExact(w.record.X, relaxation.RemovedLine, true, share, scale)
 		e.StartFrom(w.fit.Blocks)
 		return e
 	case o.Band.High == 0 && len(o.Exclude) == 0:
-		return relaxation.NewSpectral(w.fit.Blocks, w.record.X[:w.record.Length], share, scale)
+		return relaxation.NewSpectralOf(w.fit.Blocks, w.record.Ends, share, scale)
 	}
-	return relaxation.NewSpectral(w.fit.Blocks, nil, share, scale)
+	return relaxation.NewSpectralOf(w.fit.Blocks, nil, share, scale)
 }
 
 // evidenceOf reads the evidence from the maximum of a problem that does not know the drag.

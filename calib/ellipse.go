@@ -9,7 +9,6 @@ import (
 	"gonum.org/v1/gonum/stat/distuv"
 
 	"beadwell/calib/relaxation"
-	"beadwell/calib/transform"
 )
 
 // TrapAxes are the axes of the trap itself, from the covariance of the recorded axes.
@@ -58,13 +57,13 @@ const (
 )
 
 // findAxes compares the recorded axes with those of the trap.
-func (r *Result) findAxes(works []*work) {
+func (r *Result) findAxes(works []*work, gathered *Gatherer) {
 	n := len(works)
 	if n < 2 {
 		return
 	}
 	for _, w := range works {
-		if w.fitErr != nil || len(w.record.X) != len(works[0].record.X) {
+		if w.fitErr != nil || w.record.Samples != works[0].record.Samples {
 			return
 		}
 	}
@@ -74,9 +73,10 @@ func (r *Result) findAxes(works []*work) {
 		t.Names = append(t.Names, w.axisName)
 		v.SetSym(i, i, w.ownVariance())
 	}
+	sums := commonSums(works, gathered)
 	for i := range n {
 		for j := i + 1; j < n; j++ {
-			c, pair := pairOf(works[i], works[j])
+			c, pair := pairOf(works[i], works[j], sums[len(t.Pairs)])
 			v.SetSym(i, j, c)
 			t.Pairs = append(t.Pairs, pair)
 		}
@@ -119,60 +119,22 @@ func count(a, b *work, common int) float64 {
 }
 
 // pairOf returns the covariance of two axes, and what is told of it.
-func pairOf(a, b *work) (float64, AxisPair) {
-	sum, n := 0.0, 0
-	for i, x := range a.record.X {
-		if y := b.record.X[i]; x == x && y == y {
-			sum += x * y
-			n++
-		}
-	}
+func pairOf(a, b *work, sums pairSums) (float64, AxisPair) {
 	shrink := func(w *work) float64 {
 		s, _ := w.keptShare(w.fit.Corner)
 		return s
 	}
-	cov := sum / float64(n) / math.Sqrt(shrink(a)*shrink(b))
+	cov := sums.product / float64(sums.n) / math.Sqrt(shrink(a)*shrink(b))
 	va, vb := a.ownVariance(), b.ownVariance()
 	rho := cov / math.Sqrt(va*vb)
 	// the variance of a mean of products of two independent processes is the sum of the products of their autocovariances
 	pa, pb := a.fit.Process(), b.fit.Process()
 	products := pa.Autocovariance(0)*pb.Autocovariance(0) + 2*pa.Autocovariance(1)*pb.Autocovariance(1)/(1-pa.Decay()*pb.Decay())
-	sd := math.Sqrt(products / float64(n) * (1 + rho*rho) / (shrink(a) * shrink(b) * va * vb))
+	sd := math.Sqrt(products / float64(sums.n) * (1 + rho*rho) / (shrink(a) * shrink(b) * va * vb))
 	p := 2 * distuv.UnitNormal.Survival(math.Abs(rho)/sd)
 	pair := AxisPair{First: a.axisName, Second: b.axisName, Correlation: around(rho, sd, "1"), PValue: Float(p)}
-	pair.Fast = fastCorrelation(a, b)
+	pair.Fast = sums.fast(a.record.Missing+b.record.Missing > 0)
 	return cov, pair
-}
-
-// fastCorrelation is the real part of the coherency of two axes between the larger corner frequency and eight times that: for a
-// tilted trap it tends to zero, for the bead diffuses alike in all directions, and cross-talk of the detector stays.
-func fastCorrelation(a, b *work) Quantity {
-	if a.record.Missing+b.record.Missing > 0 {
-		return Withheld("1", "samples are missing")
-	}
-	n := a.record.Length
-	plan, err := transform.NewPlan(n)
-	if err != nil {
-		return Withheld("1", err.Error())
-	}
-	x, y := plan.Forward(nil, a.record.X[:n]), plan.Forward(nil, b.record.X[:n])
-	corner := math.Max(a.fit.Corner, b.fit.Corner)
-	low, high := corner*2, math.Min(fastBand*corner, a.rate/2)
-	var xy, xx, yy float64
-	bins := 0
-	for k := range x {
-		if f := float64(k) * a.rate / float64(n); f < low || f >= high {
-			continue
-		}
-		xy += real(x[k])*real(y[k]) + imag(x[k])*imag(y[k])
-		xx += real(x[k])*real(x[k]) + imag(x[k])*imag(x[k])
-		yy += real(y[k])*real(y[k]) + imag(y[k])*imag(y[k])
-		bins++
-	}
-	if bins < 16 {
-		return Withheld("1", "too few frequencies above the corner frequencies")
-	}
-	return around(xy/math.Sqrt(xx*yy), 1/math.Sqrt(2*float64(bins)), "1")
 }
 
 // principal fills in the axes of the trap, in the order of the recorded axes that they are nearest to.

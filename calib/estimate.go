@@ -148,8 +148,12 @@ func (w *work) equipartitionLeg(p relaxation.Process, total, data relaxation.Mat
 		lost += 3 * p.Spectrum(line.Frequency) * w.rate
 	}
 	kept, keptSlope := w.keptShare(p.Corner)
-	eq, err := equipartition.Estimate(equipartition.Input{Kept: kept, KeptSlope: keptSlope, KeptU: w.keptU(p.Corner), MeanSquare: w.record.MeanSquare(), Samples: len(w.record.X), Observed: w.record.Observed(),
-		Process: p, Lost: lost, Scale: w.fit.Scale(), Total: total, Data: data})
+	in := equipartition.Input{Kept: kept, KeptSlope: keptSlope, KeptU: w.keptU(p.Corner), MeanSquare: w.record.MeanSquare(), Samples: w.record.Samples, Observed: w.record.Observed(),
+		Process: p, Lost: lost, Scale: w.fit.Scale(), Total: total, Data: data}
+	if w.gathered != nil { // the mean of records of which nothing was taken but mean and line
+		in.Samples, in.Observed, in.Records, in.Lost = w.record.Length, w.record.Length, w.record.Parts, 0
+	}
+	eq, err := equipartition.Estimate(in)
 	l.eq = eq
 	if err != nil {
 		l.reason[equipartitionLeg] = err.Error()
@@ -213,7 +217,7 @@ func (w *work) displacementLegs(p relaxation.Process, total relaxation.Matrix, d
 	if w.dragModel == FrequencyDependentDrag { // short lags follow the inertia of the liquid
 		first = int(math.Ceil(relaxationsOfInertia / (2 * math.Pi * p.Corner / w.rate)))
 	}
-	m, err := msd.Estimate(msd.Input{FirstLag: first, Detected: w.detected(p), X: w.record.X, Missing: w.record.Missing > 0, Guess: p, Scale: w.fit.Scale(), FitCovariance: total,
+	m, err := msd.Estimate(msd.Input{FirstLag: first, Detected: w.detected(p), X: w.record.X, Summed: w.summedDisplacements(), Missing: w.record.Missing > 0, Guess: p, Scale: w.fit.Scale(), FitCovariance: total,
 		Noise: msd.Noise{Known: w.noise.Known, Variance: w.noise.Variance, VarianceU: w.noise.VarianceU}})
 	if err != nil {
 		l.reason[displacementLeg], l.reason[timeLeg] = err.Error(), err.Error()

@@ -119,7 +119,7 @@ func (w *work) refit(h psd.Hydrodynamic) error {
 const mostFilled = 0.002
 
 func (w *work) tooManyGaps() bool {
-	return float64(w.record.Missing) > mostFilled*float64(len(w.record.X))
+	return float64(w.record.Missing) > mostFilled*float64(w.record.Samples)
 }
 
 // estimateFilled fits a spectrum of another shape, which knows nothing of missing samples.

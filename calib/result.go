@@ -95,6 +95,7 @@ type Recording struct {
 	Start      Float  `json:"start_s"`               // stamp of the first sample; null without stamps
 	UsedFrom   *Float `json:"used_from_s,omitempty"` // beginning of the part that was used, on the clock of the recording; absent when all was
 	UsedTo     *Float `json:"used_to_s,omitempty"`   // its end
+	Parts      *Parts `json:"parts,omitempty"`       // into which it was cut because it is too long for the memory; absent when it was not
 }
 
 // Medium is the liquid as it was used.

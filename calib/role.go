@@ -38,7 +38,7 @@ func assignDrive(rec *track.Recording, set *session.Settings, works []*work) err
 
 // undriven returns the recorded positions without the answer to the stage.
 func (w *work) undriven() []float64 {
-	out := make([]float64, len(w.record.X))
+	out := make([]float64, w.record.Samples)
 	middle := float64(len(out)-1) / 2
 	for i, v := range w.record.X {
 		out[i] = v + w.record.Mean + w.record.Slope*(float64(i)-middle)/w.rate

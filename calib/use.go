@@ -33,6 +33,9 @@ const (
 // when the recording cannot carry an estimate, and that of the context when it is
 // cancelled. The result does not depend on the number of processors.
 func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings, opt Options) (*Result, error) {
+	if opt.Use != "" && opt.Gathered != nil {
+		return nil, &SettingError{Key: "use", Problem: "has no effect on a recording that is too long for the memory", Remedy: "leave it out, raise --max-memory, or split the file"}
+	}
 	switch opt.Use {
 	case UseGood:
 		return calibrateGood(ctx, rec, set, opt)
@@ -42,10 +45,13 @@ func Calibrate(ctx context.Context, rec *track.Recording, set *session.Settings,
 	}
 	var seen pass
 	calibrate := calibrateAll
-	if roleOf(set) == RoleDriven {
+	if roleOf(set) == RoleDriven && opt.Gathered == nil {
 		calibrate = calibrateDriven
 	}
 	r, err := calibrate(ctx, rec, set, opt, &seen)
+	if opt.Gathered != nil {
+		return r, err
+	}
 	if err != nil {
 		return nil, offerOnError(err, rec, set)
 	}
@@ -83,7 +89,7 @@ func (s stretch) times(rec *track.Recording) string {
 // goodStretch finds the part that the checks leave.
 func goodStretch(in health.Input, checks []health.Check) stretch {
 	from, to, ok := health.GoodStretch(in, checks)
-	if !ok || to-from == len(in.Axes[0].X) {
+	if !ok || in.Axes[0].Gathered != nil || to-from == len(in.Axes[0].X) {
 		return stretch{}
 	}
 	s := stretch{from: from, to: to}

@@ -81,11 +81,7 @@ func (w *work) noiseInMetres(stated psd.Noise) psd.Noise {
 
 // rescale turns the positions into metres and fits them again.
 func (w *work) rescale() error {
-	values := make([]float64, len(w.source.Values))
-	for i, v := range w.source.Values {
-		values[i] = v * w.perUnit
-	}
-	w.source.Values = values
+	w.scaleBy(w.perUnit)
 	w.form, w.seen, w.rival = nil, psd.Hydrodynamic{}, nil
 	return w.fitPositions()
 }

@@ -35,6 +35,8 @@ type work struct {
 	unscaled      bool        // no sensitivity is known beforehand
 	// perUnit is the length of the recorded unit [m], perUnitU its stated standard uncertainty.
 	perUnit, perUnitU float64
+	gathered          *gatheredAxis // of a recording that is too long for the memory; nil for others
+	unit              float64       // what its positions were multiplied with: 1 or perUnit
 	sensitivityOrigin string
 	drive             *drive // of the axis that follows a moving stage; nil for others
 	reply             response
@@ -67,6 +69,9 @@ type work struct {
 func newWork(rec *track.Recording, index int, set *session.Settings, opt Options) (*work, error) {
 	a := rec.Axes[index]
 	w := &work{name: rec.Name, axisName: a.Name, set: set, opt: opt, source: a, recorded: a, rate: rec.Rate, start: rec.Start}
+	if w.unit = 1; opt.Gathered != nil {
+		w.gathered = opt.Gathered.axis(a.Name)
+	}
 	var err error
 	if w.phys, err = newPhysics(set, a.Name); err != nil {
 		return nil, err
@@ -131,11 +136,7 @@ func (w *work) setLength() error {
 	}
 	scale := s.Value.SI
 	w.perUnit, w.perUnitU, w.sensitivityOrigin = scale, s.Value.U, SensitivityStated
-	values := make([]float64, len(a.Values))
-	for i, v := range a.Values {
-		values[i] = v * scale
-	}
-	w.source.Values = values
+	w.scaleBy(scale)
 	name, unit := "sensitivity", s.Value.Dimension.SIUnit()
 	if key == "recording.pixel" {
 		name = "pixel size"
@@ -145,6 +146,16 @@ func (w *work) setLength() error {
 	}
 	w.phys.withLength(name, unit, scale, s.Value.U)
 	return nil
+}
+
+// scaleBy multiplies the recorded positions.
+func (w *work) scaleBy(scale float64) {
+	w.unit = scale
+	values := make([]float64, len(w.recorded.Values))
+	for i, v := range w.recorded.Values {
+		values[i] = v * scale
+	}
+	w.source.Values = values
 }
 
 func (w *work) setNoise() {
@@ -172,7 +183,15 @@ func (w *work) run(ctx context.Context) error {
 	w.estimate()
 	w.settle()
 	w.describe()
+	w.release()
 	return ctx.Err()
+}
+
+// release lets go of the samples of a long record, mean and line removed, which can be made again.
+func (w *work) release() {
+	if w.record.Samples >= longRecord {
+		w.record.Release()
+	}
 }
 
 // fitInMetres fits the positions in metres, whatever their length scale comes from.
@@ -235,7 +254,9 @@ func (w *work) fitPositions() error {
 
 // prepare takes mean, drift and the answer to a moving stage out of the positions.
 func (w *work) prepare() (err error) {
-	if w.record, err = psd.Prepare(w.source.Values, w.rate); err != nil {
+	if w.gathered != nil {
+		w.record = w.gathered.spectrum.Record(w.unit, w.rate)
+	} else if w.record, err = psd.Prepare(w.source.Values, w.rate); err != nil {
 		return w.dataError(err, "record longer, or check the columns")
 	}
 	if w.drive != nil {

@@ -37,6 +37,7 @@ type Input struct {
 	MeanSquare float64 // s2, about the least-squares line [m2]
 	Samples    int     // N, on the regular grid
 	Observed   int     // samples that are not missing
+	Records    int     // independent records of this length whose mean MeanSquare is; 0: one
 	Process    relaxation.Process
 	// Lost is the number of further real degrees of freedom that were removed from the
 	// record at narrow lines, each with the spectrum there: sum of P(f)/dt [m2].
@@ -79,7 +80,7 @@ func Estimate(in Input) (Result, error) {
 	r0 := p.RecordedVariance()
 	a := 2 * math.Pi * p.Corner * p.Exposure
 	s, ds := relaxation.BlurVariance(a)
-	slope := a * ds // of S with ln fc
+	slope := a * ds  // of S with ln fc
 	if in.Kept > 0 { // what else the detector takes, it takes at frequencies above those that mean and drift are made of
 		mean -= p.Variance * (s - in.Kept)
 		r0 -= p.Variance * (s - in.Kept)
@@ -95,6 +96,7 @@ func Estimate(in Input) (Result, error) {
 
 	relative := variance / (mean * mean) // of s2
 	relative *= float64(in.Samples) / float64(max(1, in.Observed))
+	relative /= float64(max(1, in.Records))
 	res.Effective = 2 / relative
 	gain := (signal + p.Noise) / signal // d ln V / d ln s2
 	res.NoiseSlope = -1 / signal

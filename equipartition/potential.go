@@ -1,6 +1,10 @@
 package equipartition
 
-import "math"
+import (
+	"math"
+
+	"beadwell/calib/transform"
+)
 
 // Potential is the potential of mean force from the histogram of positions.
 type Potential struct {
@@ -32,24 +36,71 @@ const binCount = 49
 //
 // The curvature is that of the parabola of the potential, weighted by counts, within 1.5 sigma.
 func NewPotential(x []float64, sigma, effective, c float64) Potential {
-	p := Potential{Width: 8 * sigma / binCount, Sigma: sigma}
-	counts := make([]int, binCount)
-	inverse := 1 / p.Width
-	n := 0
-	var m3, m4 float64
+	return Count(x, sigma).Potential(sigma, effective, c)
+}
+
+// Histogram counts positions in bins, and sums powers of them. The zero value is empty.
+type Histogram struct {
+	Sigma  float64       // what the width of the bins is made from [m]
+	counts [binCount]int // over plus or minus four times Sigma
+	n      int
+	m3, m4 float64 // sums of powers of positions over Sigma
+}
+
+// Count makes the histogram of x [m] (mean removed, NaN where missing) with bins for a standard deviation of
+// about sigma [m].
+func Count(x []float64, sigma float64) Histogram {
+	pieces := make([]Histogram, transform.Pieces(len(x)))
+	transform.InPieces(len(x), func(piece, from, to int) {
+		pieces[piece].Sigma = sigma
+		pieces[piece].count(x[from:to])
+	})
+	all := Histogram{Sigma: sigma}
+	for i := range pieces {
+		all.Add(&pieces[i])
+	}
+	return all
+}
+
+func (h *Histogram) count(x []float64) {
+	perBin, perSigma := binCount/(8*h.Sigma), 1/h.Sigma
 	for _, v := range x {
 		if v != v {
 			continue
 		}
-		n++
-		u := v / sigma
+		h.n++
+		u := v * perSigma
 		u2 := u * u
-		m3 += u2 * u
-		m4 += u2 * u2
-		if i := math.Floor(v*inverse + binCount/2.0); i >= 0 && i < binCount {
-			counts[int(i)]++
+		h.m3 += u2 * u
+		h.m4 += u2 * u2
+		if i := v*perBin + binCount/2.0; i >= 0 && i < binCount {
+			h.counts[int(i)]++
 		}
 	}
+}
+
+// Add adds the counts of another histogram of the same Sigma.
+func (h *Histogram) Add(o *Histogram) {
+	h.n += o.n
+	h.m3 += o.m3
+	h.m4 += o.m4
+	for i, k := range o.counts {
+		h.counts[i] += k
+	}
+}
+
+// Scaled returns the histogram of the positions times a factor.
+func (h Histogram) Scaled(factor float64) Histogram {
+	h.Sigma *= factor
+	return h
+}
+
+// Potential is NewPotential of the positions that were counted.
+func (h Histogram) Potential(sigma, effective, c float64) Potential {
+	p := Potential{Width: 8 * h.Sigma / binCount, Sigma: sigma}
+	n, counts := h.n, h.counts
+	ratio := h.Sigma / sigma
+	m3, m4 := h.m3*ratio*ratio*ratio, h.m4*ratio*ratio*ratio*ratio
 	top := 0
 	for _, k := range counts {
 		top = max(top, k)

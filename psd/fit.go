@@ -140,17 +140,18 @@ func (f *Fit) likelihood(r *Record, opt Options, scale float64) relaxation.Likel
 	case opt.Form != nil:
 		f.Method = Whittle
 		return opt.Form(f.Blocks, scale)
-	case r.Missing > 0 || whole && r.Observed() <= exactLimit:
+	case r.Missing > 0 || whole && r.Parts <= 1 && r.Observed() <= exactLimit:
 		f.Method = Exact
+		r.Restore()
 		e := relaxation.NewExact(r.X, relaxation.RemovedLine, true, w, scale)
 		e.StartFrom(f.Blocks)
 		return e
 	case whole:
 		f.Method = Whittle
-		return relaxation.NewSpectral(f.Blocks, r.X[:r.Length], w, scale)
+		return relaxation.NewSpectralOf(f.Blocks, r.Ends, w, scale)
 	}
 	f.Method = Whittle
-	return relaxation.NewSpectral(f.Blocks, nil, w, scale)
+	return relaxation.NewSpectralOf(f.Blocks, nil, w, scale)
 }
 
 func (f *Fit) setBand(r *Record, opt Options) {

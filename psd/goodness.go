@@ -43,7 +43,7 @@ const mostPoints = 60
 func goodness(f *Fit, r *Record) Goodness {
 	g := Goodness{Points: group(f, f.leakage(r)), PValue: math.NaN()}
 	tested := g.Points
-	if float64(r.Missing) > mostGaps*float64(len(r.X)) {
+	if float64(r.Missing) > mostGaps*float64(r.Samples) {
 		tested = f.whitened(r)
 	}
 	for _, p := range tested {
@@ -95,7 +95,11 @@ func (f *Fit) leakage(r *Record) float64 {
 	if f.Corner*f.Interval > leakingCorner {
 		return 0
 	}
-	return f.Process().EndExcess(r.X) / float64(len(r.X))
+	p, sum := f.Process(), 0.0
+	for _, e := range r.Ends {
+		sum += p.ExcessOf(e)
+	}
+	return sum / float64(len(r.Ends)) / float64(r.Length)
 }
 
 func group(f *Fit, leakage float64) []Point {
@@ -174,9 +178,10 @@ func (f *Fit) SpectrumPoints(r *Record, count int) (points []Point, used []bool)
 	skip := r.skip(f.givenBand(r), f.Excluded)
 	density := f.density()
 	growth := math.Pow(float64(n), 1/float64(count))
+	parts := max(1, r.Parts)
 	scale := 2 / r.Rate / float64(r.Length)
 	if r.Missing > 0 {
-		scale *= float64(len(r.X)) / float64(r.Observed())
+		scale *= float64(r.Samples) / float64(r.Observed())
 	}
 	for k := 1; k <= n; {
 		end := min(n, max(k, int(float64(k)*growth)))
@@ -196,8 +201,9 @@ func (f *Fit) SpectrumPoints(r *Record, count int) (points []Point, used []bool)
 			if b == 0 {
 				continue
 			}
-			p := Point{Frequency: freq[which] / float64(b), Power: sum[which] / float64(b), Bins: b}
+			p := Point{Frequency: freq[which] / float64(b), Power: sum[which] / float64(b), Bins: b * parts}
 			p.Model = density(p.Frequency)
+			b *= parts
 			p.Standard = p.Model / math.Sqrt(float64(b))
 			v := 1 / (9 * float64(b))
 			p.Residual = (math.Cbrt(p.Power/p.Model) - (1 - v)) / math.Sqrt(v)

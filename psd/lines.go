@@ -31,14 +31,21 @@ func (r *Record) RemoveLines(model func(k int) float64) bool {
 	if r.Missing > 0 {
 		return false
 	}
-	limit := math.Log(float64(len(r.Power)) / chanceOfLine)
+	limit := r.beyond()
+	if r.Parts > 1 {
+		model = r.nearby(model)
+	}
 	found := false
 	for range mostLines {
 		k := r.tallest(model, limit)
 		if k == 0 {
 			break
 		}
-		r.removeSinusoid(k)
+		if r.Parts > 1 {
+			r.removeExcess(k, model)
+		} else {
+			r.removeSinusoid(k)
+		}
 		found = true
 	}
 	if found {
@@ -84,22 +91,25 @@ func (r *Record) removeSinusoid(k int) {
 	offset := refine(segments)
 	f := float64(k)/float64(r.Length) + offset
 	a, b := fitSinusoid(r.X, f)
-	rotate(f, len(r.X), func(i int, c, s float64) { r.X[i] -= a*c + b*s })
+	w := wave{f, a, b}
+	w.takeOff(r.X, 0)
+	r.waves = append(r.waves, w)
 	step := r.Rate / float64(r.Length)
 	line := Line{Frequency: f * r.Rate, Amplitude: math.Hypot(a, b),
 		Low: (float64(k) - halfGap - 0.25) * step, High: (float64(k) + halfGap + 0.25) * step}
-	for i, l := range r.Lines { // a line that wanders is found in several pieces
-		if line.Low <= l.High+step && l.Low <= line.High+step {
-			r.Lines[i].Low, r.Lines[i].High = math.Min(l.Low, line.Low), math.Max(l.High, line.High)
-			if line.Amplitude > l.Amplitude {
-				r.Lines[i].Frequency, r.Lines[i].Amplitude = line.Frequency, line.Amplitude
-			}
-			_ = r.transform()
-			return
-		}
-	}
-	r.Lines = append(r.Lines, line)
+	r.addLine(line)
 	_ = r.transform()
+}
+
+// wave is a sinusoid a cos(2 pi f i) + b sin(2 pi f i) over samples i.
+type wave struct{ f, a, b float64 }
+
+// takeOff subtracts the wave from x, which begins at a sample of the record.
+func (w wave) takeOff(x []float64, from int) {
+	_, turns := math.Modf(w.f * float64(from))
+	sine, cosine := math.Sincos(2 * math.Pi * turns)
+	a, b := w.a*cosine+w.b*sine, w.b*cosine-w.a*sine
+	rotate(w.f, len(x), func(i int, c, s float64) { x[i] -= a*c + b*s })
 }
 
 // segmentCount is the number of pieces over which a record is summed before the

@@ -74,10 +74,12 @@ func TestCertifiedMoments(t *testing.T) {
 		if n < 3 {
 			t.Fatalf("%s: %d values", name, n)
 		}
-		r := &Record{X: append([]float64(nil), c.values...), Rate: 1}
-		r.removeLine()
+		r := &Record{X: make([]float64, n), Samples: n, Rate: 1, source: c.values}
+		if err := r.removeLine(); err != nil {
+			t.Fatal(err)
+		}
 		nn := float64(n)
-		square := nn*r.MeanSquare() + r.Slope*r.Slope*nn*(nn*nn-1)/12
+		square := nn*meanSquare(r.X, n) + r.Slope*r.Slope*nn*(nn*nn-1)/12
 		about := make([]float64, n)
 		for i, x := range r.X {
 			about[i] = x + r.Slope*(float64(i)-(nn-1)/2)

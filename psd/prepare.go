@@ -4,6 +4,8 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"slices"
+	"sync"
 
 	"beadwell/calib/relaxation"
 	"beadwell/calib/transform"
@@ -23,14 +25,26 @@ const farthest = 1e100
 // Record is a record made ready for estimation: mean, linear drift and narrow lines
 // are taken out. It is shared by the estimators.
 type Record struct {
-	X       []float64 // positions [m]; NaN where missing
-	Rate    float64   // sampling rate [Hz]
-	Mean    float64   // [m], removed
-	Slope   float64   // linear drift [m/s], removed
-	Missing int       // samples that are NaN
-	Lines   []Line    // removed, in order of frequency
-	Power   []float64 // |X_k|^2 [m2], k = 0..Length/2, of the first Length samples; missing ones count as 0
-	Length  int       // samples behind Power, an even 5-smooth number
+	X       []float64         // positions [m]; NaN where missing; nil after Release
+	Samples int               // N, the length of X
+	Parts   int               // consecutive records of Length samples behind this one, whose mean periodogram Power is; 0: the record itself
+	Rate    float64           // sampling rate [Hz]
+	Mean    float64           // [m], removed
+	Slope   float64           // linear drift [m/s], removed
+	Missing int               // samples that are NaN
+	Lines   []Line            // removed, in order of frequency
+	Power   []float64         // |X_k|^2 [m2], k = 0..Length/2, of the first Length samples; missing ones count as 0; nil after Release
+	Length  int               // samples behind Power, an even 5-smooth number
+	Ends    []relaxation.Ends // of these samples
+
+	source  []float64   // what Prepare was given
+	steps   [2]straight // taken off the source, in this order
+	waves   []wave      // taken off after that
+	reshape bool        // other shapes were taken off too, so that X cannot be made again
+	square  float64     // mean square of X [m2]
+	blocked []blocked
+
+	restoring sync.Mutex
 }
 
 // Line is a narrow line that was removed.
@@ -40,58 +54,159 @@ type Line struct {
 	Low, High float64 // range that is left out of the fit [Hz]
 }
 
+// straight is a line of mean level and slope per sample about the sample in the middle of a record.
+type straight struct{ level, slope float64 }
+
 // Prepare removes the least-squares straight line from the positions x [m], NaN
-// where a sample is missing, sampled at rate [Hz]. It copies x. The error is
-// ErrTooShort, or names the first sample that is infinite.
+// where a sample is missing, sampled at rate [Hz]. It copies x, and keeps it for
+// Restore. The error is ErrTooShort, or names the first sample that is infinite.
 func Prepare(x []float64, rate float64) (*Record, error) {
-	r := &Record{X: make([]float64, len(x)), Rate: rate}
-	for i, v := range x {
-		if math.Abs(v) > farthest {
-			return nil, fmt.Errorf("sample %d is at %g m, where no position can be", i, v)
-		}
-		if math.IsNaN(v) {
-			r.Missing++
-		}
-		r.X[i] = v
+	r := &Record{X: make([]float64, len(x)), Samples: len(x), Rate: rate, source: x}
+	if err := r.removeLine(); err != nil {
+		return nil, err
 	}
-	if len(x)-r.Missing < leastSamples {
-		return nil, fmt.Errorf("%w: %d, at least %d are needed", ErrTooShort, len(x)-r.Missing, leastSamples)
+	if n := r.Observed(); n < leastSamples {
+		return nil, fmt.Errorf("%w: %d, at least %d are needed", ErrTooShort, n, leastSamples)
 	}
-	r.removeLine()
 	if err := r.transform(); err != nil {
 		return nil, err
 	}
 	return r, nil
 }
 
-// removeLine subtracts the least-squares straight line in two passes, the second of
-// which takes out what rounding left of a mean far from zero.
-func (r *Record) removeLine() {
-	for range 2 {
-		var n, sum, moment, square float64
-		mid := float64(len(r.X)-1) / 2
-		for i, v := range r.X {
+// lineSums are the sums over a piece from which a straight line is fitted. Positions count
+// from the reference, times from the middle of the record.
+type lineSums struct {
+	n, sum, moment, square, product float64
+	far                             int // first sample where no position can be, or -1
+}
+
+// fitLine returns the least-squares line of the sums of pieces.
+func fitLine(pieces []lineSums, reference float64) (line straight, observed int) {
+	var all lineSums
+	for _, p := range pieces {
+		all.n += p.n
+		all.sum += p.sum
+		all.moment += p.moment
+		all.square += p.square
+		all.product += p.product
+	}
+	mean, centre := all.sum/all.n, all.moment/all.n
+	line.slope = (all.product - all.n*centre*mean) / (all.square - all.n*centre*centre)
+	line.level = reference + mean - line.slope*centre
+	return line, int(all.n)
+}
+
+// add counts one sample: v is the position from the reference, t the time.
+func (s *lineSums) add(v, t float64) {
+	s.n++
+	s.sum += v
+	s.moment += t
+	s.square += t * t
+	s.product += t * v
+}
+
+// removeLine sets X to the source without its least-squares straight line, in two passes, the
+// second of which takes out what rounding left of a mean far from zero.
+func (r *Record) removeLine() error {
+	pieces := make([]lineSums, transform.Pieces(r.Samples))
+	reference, mid := firstKnown(r.source), float64(r.Samples-1)/2
+	transform.InPieces(r.Samples, func(piece, from, to int) {
+		s := lineSums{far: -1}
+		for i, v := range r.source[from:to] {
+			if math.Abs(v) > farthest && s.far < 0 {
+				s.far = from + i
+			}
 			if v == v {
-				t := float64(i) - mid
-				n++
-				sum += v
-				moment += t
-				square += t * t
+				s.add(v-reference, float64(from+i)-mid)
 			}
 		}
-		mean, centre := sum/n, moment/n
-		var product float64
-		for i, v := range r.X {
+		pieces[piece] = s
+	})
+	for _, p := range pieces {
+		if p.far >= 0 {
+			return fmt.Errorf("sample %d is at %g m, where no position can be", p.far, r.source[p.far])
+		}
+	}
+	first, observed := fitLine(pieces, reference)
+	r.Missing = r.Samples - observed
+	transform.InPieces(r.Samples, func(piece, from, to int) {
+		var s lineSums
+		x := r.X[from:to]
+		for i, v := range r.source[from:to] {
+			t := float64(from+i) - mid
+			v -= first.level + first.slope*t
+			x[i] = v
 			if v == v {
-				product += (float64(i) - mid - centre) * (v - mean)
+				s.add(v, t)
 			}
 		}
-		slope := product / (square - n*centre*centre)
-		for i := range r.X {
-			r.X[i] -= mean + slope*(float64(i)-mid-centre)
+		pieces[piece] = s
+	})
+	second, _ := fitLine(pieces, 0)
+	transform.InPieces(r.Samples, func(_, from, to int) {
+		x := r.X[from:to]
+		for i := range x {
+			x[i] -= second.level + second.slope*(float64(from+i)-mid)
 		}
-		r.Mean += mean
-		r.Slope += slope * r.Rate
+	})
+	r.steps = [2]straight{first, second}
+	r.Mean = first.level + second.level
+	r.Slope = (first.slope + second.slope) * r.Rate
+	return nil
+}
+
+// firstKnown returns the first sample that is not missing.
+func firstKnown(x []float64) float64 {
+	for _, v := range x {
+		if v == v && math.Abs(v) <= farthest {
+			return v
+		}
+	}
+	return 0
+}
+
+// Release lets go of X and Power, the large parts of a long record, when Restore can make X again.
+func (r *Record) Release() {
+	if !r.reshape && r.Parts <= 1 {
+		r.X, r.Power = nil, nil
+	}
+}
+
+// Restore makes X again after Release, to the last bit.
+func (r *Record) Restore() {
+	r.restoring.Lock()
+	defer r.restoring.Unlock()
+	if r.X != nil || r.Parts > 1 {
+		return
+	}
+	x := make([]float64, r.Samples)
+	transform.InPieces(r.Samples, func(_, from, to int) { r.level(x[from:to], from) })
+	for _, w := range r.waves {
+		w.takeOff(x, 0)
+	}
+	r.X = x
+}
+
+// Part sets dst to the samples of X from one on, also after Release.
+func (r *Record) Part(dst []float64, from int) {
+	if r.X != nil {
+		copy(dst, r.X[from:])
+		return
+	}
+	r.level(dst, from)
+	for _, w := range r.waves {
+		w.takeOff(dst, from)
+	}
+}
+
+// level sets x to the samples of the source from one on, without mean and line.
+func (r *Record) level(x []float64, from int) {
+	mid := float64(r.Samples-1) / 2
+	for i := range x {
+		t := float64(from+i) - mid
+		v := r.source[from+i] - (r.steps[0].level + r.steps[0].slope*t)
+		x[i] = v - (r.steps[1].level + r.steps[1].slope*t)
 	}
 }
 
@@ -113,23 +228,39 @@ func (r *Record) transform() error {
 	}
 	r.Power = plan.Power(r.Power, x)
 	r.Length = n
+	r.Ends = []relaxation.Ends{relaxation.NewEnds(r.X[:n])}
+	r.blocked = nil
+	r.square = meanSquare(r.X, r.Observed())
 	return nil
 }
 
 // Observed returns the number of samples that are not missing.
-func (r *Record) Observed() int { return len(r.X) - r.Missing }
+func (r *Record) Observed() int { return r.Samples - r.Missing }
 
 // Duration returns the length of the record [s].
-func (r *Record) Duration() float64 { return float64(len(r.X)) / r.Rate }
+func (r *Record) Duration() float64 { return float64(r.Samples) / r.Rate }
 
 // MeanSquare returns the mean square of what is left [m2].
-func (r *Record) MeanSquare() float64 {
-	var s, c float64 // Neumaier's compensation
-	for _, v := range r.X {
-		if v != v {
-			continue
+func (r *Record) MeanSquare() float64 { return r.square }
+
+// meanSquare returns the mean square of the samples that are not missing.
+func meanSquare(x []float64, observed int) float64 {
+	sums := make([]float64, transform.Pieces(len(x)))
+	transform.InPieces(len(x), func(piece, from, to int) {
+		var s0, s1 float64
+		for i, v := range x[from:to] {
+			switch {
+			case v != v:
+			case i&1 == 0:
+				s0 += v * v
+			default:
+				s1 += v * v
+			}
 		}
-		y := v * v
+		sums[piece] = s0 + s1
+	})
+	var s, c float64 // Neumaier's compensation
+	for _, y := range sums {
 		t := s + y
 		if s >= y {
 			c += (s - t) + y
@@ -138,7 +269,7 @@ func (r *Record) MeanSquare() float64 {
 		}
 		s = t
 	}
-	return (s + c) / float64(r.Observed())
+	return (s + c) / float64(observed)
 }
 
 // skip tells whether the k-th frequency of Power is outside the band or inside a range
@@ -165,14 +296,28 @@ func (r *Record) skip(band Range, excluded []Range) func(k int) bool {
 	}
 }
 
-// blocks returns the blocked periodogram of the kept frequencies.
+// blocked is a blocked periodogram with what was left out of it.
+type blocked struct {
+	band     Range
+	excluded []Range
+	blocks   relaxation.Blocks
+}
+
+// blocks returns the blocked periodogram of the kept frequencies. Those of earlier calls are kept,
+// so that a fit of another shape needs no Power.
 func (r *Record) blocks(band Range, excluded []Range) relaxation.Blocks {
-	b := relaxation.NewBlocks(r.Power, r.Length, true, r.skip(band, excluded))
+	for _, known := range r.blocked {
+		if known.band == band && slices.Equal(known.excluded, excluded) {
+			return known.blocks
+		}
+	}
+	b := relaxation.NewBlocks(r.Power, r.Length, true, r.skip(band, excluded)).Times(max(1, r.Parts))
 	if r.Missing > 0 {
-		scale := float64(len(r.X)) / float64(r.Observed())
+		scale := float64(r.Samples) / float64(r.Observed())
 		for i := range b.Power {
 			b.Power[i] *= scale
 		}
 	}
+	r.blocked = append(r.blocked, blocked{band, slices.Clone(excluded), b})
 	return b
 }

@@ -30,6 +30,7 @@ func (r *Record) TakeOut(shapes ...[]float64) (Regression, error) {
 	if err != nil {
 		return out, err
 	}
+	r.reshape = true
 	return out, r.transform()
 }
 
@@ -141,6 +142,7 @@ func (r *Record) TakeSinusoid(hz float64) (Sinusoid, error) {
 	a, b := fit.Coefficients[0], fit.Coefficients[1]
 	s := Sinusoid{Frequency: hz, Amplitude: math.Hypot(a, b), Phase: math.Atan2(a, b), Scatter: (fit.Inverse[0][0] + fit.Inverse[1][1]) / 2}
 	step := r.Rate / float64(r.Length)
+	r.blocked = nil
 	r.Lines = append(r.Lines, Line{Frequency: hz, Amplitude: s.Amplitude, Low: hz - (halfGap+0.25)*step, High: hz + (halfGap+0.25)*step})
 	return s, nil
 }

@@ -18,7 +18,7 @@ const (
 func (in Input) clock() []Check {
 	all := 0
 	if len(in.Axes) > 0 {
-		all = len(in.Axes[0].X)
+		all = in.Axes[0].sampleCount()
 	}
 	return []Check{in.dropped(all), in.jitter(), in.repeated(all)}
 }
@@ -28,13 +28,7 @@ func (in Input) dropped(all int) Check {
 	c.Threshold = missingDoubtful
 	missing := in.Missing
 	for _, a := range in.Axes {
-		n := 0
-		for _, x := range a.X {
-			if x-x != 0 {
-				n++
-			}
-		}
-		missing = max(missing, n)
+		missing = max(missing, a.missingCount())
 	}
 	if all == 0 {
 		return c.spared("there are no samples")

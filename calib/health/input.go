@@ -14,7 +14,16 @@ type Input struct {
 	Exposure   float64 // exposure of each sample [s]
 	Missing    int     // samples that are missing on every axis
 	Duplicates int     // samples that came twice and were left out by the reader
-	JitterRMS  float64 // root mean square of the time stamps about even sampling [s]; NaN or 0 without stamps
+	// Products are, of axes that were gathered, the sums of the products of two of them about their mean and line, in the
+	// order (0, 1), (0, 2) .. (1, 2) .. [unit of X, squared], with the samples that are there on both.
+	Products  []Product
+	JitterRMS float64 // root mean square of the time stamps about even sampling [s]; NaN or 0 without stamps
+}
+
+// Product is the sum of the products of two axes.
+type Product struct {
+	Sum     float64
+	Samples int
 }
 
 // Axis is one coordinate. All axes have the same number of samples.
@@ -22,11 +31,34 @@ type Axis struct {
 	Name      string
 	Unit      string             // of X; empty is m. Process, Lines and texts use the same
 	X         []float64          // positions [m], the mean included; NaN is a missing sample
+	Gathered  *Gathered          // what was kept of a record whose samples are not at hand; X is nil then
 	Process   relaxation.Process // the fitted process
 	Known     bool               // Process holds a fit; false when none could be made
 	CornerSD  float64            // standard uncertainty of ln(Process.Corner) from the fit; 0: not given
 	Lines     []Line             // narrow lines that the fit has removed
 	GoodnessP float64            // p-value of the fitted spectrum; NaN, or 0 with Known false, when there is none
+}
+
+// sampleCount returns the number of samples, with the missing ones.
+func (a Axis) sampleCount() int {
+	if a.Gathered != nil {
+		return a.Gathered.Samples()
+	}
+	return len(a.X)
+}
+
+// missingCount returns the number of samples that are missing.
+func (a Axis) missingCount() int {
+	if a.Gathered != nil {
+		return a.Gathered.Missing()
+	}
+	n := 0
+	for _, x := range a.X {
+		if x-x != 0 {
+			n++
+		}
+	}
+	return n
 }
 
 // Line is a narrow line in the spectrum.

@@ -19,7 +19,7 @@ func quantile(p float64) float64 { return -distuv.UnitNormal.Quantile(p) }
 //
 // For independent axes the coefficient has the variance sum_k rho_x(k) rho_y(k)/N
 // (Bartlett, J. R. Stat. Soc. 98 (1935) 536).
-func crossTalk(in Input, a, b *view, axes int) Check {
+func crossTalk(in Input, a, b *view, pair int) Check {
 	c := start("axes-mixed")
 	c.Axis = a.Name + "-" + b.Name
 	c.Threshold = talkDoubtful
@@ -32,11 +32,17 @@ func crossTalk(in Input, a, b *view, axes int) Check {
 		}
 	}
 	r, n := correlation(a, b)
+	if a.Gathered != nil && pair < len(in.Products) {
+		p := in.Products[pair]
+		n = float64(p.Samples)
+		r = p.Sum / n / math.Sqrt(a.Gathered.MeanSquare*b.Gathered.MeanSquare)
+	}
 	if n < 32 || !known(r) {
 		return c.spared("too few samples are there on both axes")
 	}
 	c.Value = r
 	z := math.Atanh(math.Max(math.Min(r, 1-1e-15), -1+1e-15)) * math.Sqrt(n/mutual(a.h, b.h))
+	axes := len(in.Axes)
 	if pairs := float64(axes * (axes - 1) / 2); twoSided(z) > chance/math.Max(pairs, 1) || math.Abs(r) < talkDoubtful {
 		c.Text = fmt.Sprintf("The axes move independently (correlation coefficient %s).", digits(r))
 		return c
@@ -60,6 +66,9 @@ func mutual(a, b null) float64 {
 // lines, and the number of samples that are there on both.
 func correlation(a, b *view) (r, n float64) {
 	var xx, yy, xy float64
+	if a.Gathered != nil || b.Gathered != nil {
+		return 0, 0
+	}
 	perA, perB := 1/a.scale, 1/b.scale
 	for k := 0; k*a.length < a.samples; k++ {
 		from, to := k*a.length, min((k+1)*a.length, a.samples)

@@ -1,6 +1,11 @@
 package health
 
-import "math"
+import (
+	"math"
+	"slices"
+
+	"beadwell/calib/transform"
+)
 
 // Run makes every check, those of the recording first, then those of each axis, then
 // those of each pair of axes, in a fixed order: the order of Codes within each
@@ -11,19 +16,24 @@ import "math"
 // and panic.
 func Run(in Input) []Check {
 	for _, a := range in.Axes {
-		if len(a.X) != len(in.Axes[0].X) {
+		if a.sampleCount() != in.Axes[0].sampleCount() {
 			panic("health: axes of different lengths")
 		}
 	}
 	checks := in.clock()
-	views := make([]*view, len(in.Axes))
-	for i, a := range in.Axes {
-		views[i] = newView(in, a)
-		checks = append(checks, views[i].checks()...)
-	}
+	views, made := make([]*view, len(in.Axes)), make([][]Check, len(in.Axes))
+	transform.Each(len(in.Axes), func(next func() (int, bool)) {
+		for i, ok := next(); ok; i, ok = next() {
+			views[i] = newView(in, in.Axes[i])
+			made[i] = views[i].checks()
+		}
+	})
+	checks = append(checks, slices.Concat(made...)...)
+	pair := 0
 	for i := range views {
 		for j := i + 1; j < len(views); j++ {
-			checks = append(checks, crossTalk(in, views[i], views[j], len(views)))
+			checks = append(checks, crossTalk(in, views[i], views[j], pair))
+			pair++
 		}
 	}
 	return checks
@@ -52,20 +62,25 @@ type view struct {
 
 // newView reads an axis and makes the decisions that several checks share.
 func newView(in Input, a Axis) *view {
-	v := &view{Axis: a, summary: summarise(a.X), rate: in.Rate, start: in.Start, exposure: in.Exposure, escapeAt: -1}
-	v.values = survey(a.X, v.summary)
+	v := &view{Axis: a, rate: in.Rate, start: in.Start, exposure: in.Exposure, escapeAt: -1}
+	if a.Gathered != nil {
+		v.summary, v.values = a.Gathered.complete(), a.Gathered.survey()
+	} else {
+		v.summary = summarise(a.X)
+		v.values = survey(a.X, v.summary)
+	}
 	n := int(v.total.n)
 	v.Known = a.Known && in.Rate > 0 && known(in.Rate)
 	if v.Known {
-		v.h = newNull(a.Process, n, len(a.X))
+		v.h = newNull(a.Process, n, v.summary.samples)
 	}
 	if !v.Known || !v.h.usable() {
 		v.Known = false
-		v.h = newNull(v.rough(), n, len(a.X))
+		v.h = newNull(v.rough(), n, v.summary.samples)
 	}
 	v.local = v.h
 	if v.Known {
-		v.local = newNull(v.rough(), n, len(a.X))
+		v.local = newNull(v.rough(), n, v.summary.samples)
 	}
 	v.line = fitLine(points(v.blocks, v.length, v.samples))
 	v.rms = math.Sqrt(v.h.r0)

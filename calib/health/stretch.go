@@ -16,7 +16,7 @@ func GoodStretch(in Input, checks []Check) (from, to int, ok bool) {
 	if len(in.Axes) == 0 || !(in.Rate > 0) {
 		return 0, 0, false
 	}
-	n := len(in.Axes[0].X)
+	n := in.Axes[0].sampleCount()
 	var bad [][2]float64
 	for _, c := range checks {
 		if c.Level == Bad && placed[c.Code] {

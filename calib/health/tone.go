@@ -82,7 +82,9 @@ func (v *view) findTone() Line {
 	if bestRatio < toneBeyond(len(power), bins, segments) {
 		return Line{}
 	}
-	best.Amplitude *= v.scaleOfGaps()
+	if v.Gathered == nil { // whose stretches have no gaps
+		best.Amplitude *= v.scaleOfGaps()
+	}
 	return best
 }
 
@@ -99,6 +101,9 @@ func at(x []float64, i int) float64 {
 // periodogram returns the mean of |X_k|^2 over segments of n samples, the mean line
 // taken off and missing samples as nothing.
 func (v *view) periodogram() (power []float64, n, segments int) {
+	if g := v.Gathered; g != nil {
+		return g.Power, g.Length, g.Segments
+	}
 	n = transform.GoodLength(min(v.samples, toneSegment))
 	if n < 256 {
 		return nil, 0, 0

@@ -29,9 +29,7 @@ func survey(x []float64, s summary) values {
 		return v
 	}
 	sd := math.Sqrt(s.total.variance()) * s.scale
-	// One level of a coarse grid, or the width in which a Gaussian tail at 2.5
-	// standard deviations holds a seventh of what is beyond it.
-	width := math.Max(1.5*v.grid, 0.05*sd)
+	width := railWidth(v.grid, sd)
 	low, high := math.Inf(1), math.Inf(-1)
 	for _, y := range x {
 		if y-y == 0 {
@@ -53,6 +51,10 @@ func survey(x []float64, s summary) values {
 	}
 	return v
 }
+
+// railWidth is one level of a coarse grid, or the width in which a Gaussian tail at 2.5
+// standard deviations holds a seventh of what is beyond it.
+func railWidth(grid, sd float64) float64 { return math.Max(1.5*grid, 0.05*sd) }
 
 func (r *rail) hit(i int, there bool, last *int) {
 	if !there {

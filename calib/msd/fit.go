@@ -28,6 +28,7 @@ type Noise struct {
 type Input struct {
 	X       []float64          // positions, mean and drift removed [m]; NaN where missing
 	Missing bool               // whether there are NaNs
+	Summed  *Summed            // what is known of a record whose samples are not at hand; X is nil then
 	Guess   relaxation.Process // interval and exposure; the rest gives lags, covariance and start
 	Noise   Noise
 	// Detected is what the detector adds to the mean-square displacement at a lag [samples] beyond exposure and
@@ -74,13 +75,18 @@ const ridge = 1e-9
 //
 // The error is ErrTooShort for records of fewer than 16 samples, ErrNoFit otherwise.
 func Estimate(in Input) (*Result, error) {
-	if len(in.X) < 16 {
-		return nil, fmt.Errorf("%w: %d samples", ErrTooShort, len(in.X))
+	if in.samples() < 16 {
+		return nil, fmt.Errorf("%w: %d samples", ErrTooShort, in.samples())
 	}
 	g := in.Guess
-	lags := Lags(len(in.X), 1/(2*math.Pi*g.Corner*g.Interval))
-	lags = from(lags, in.FirstLag)
-	values, pairs := Displacements(in.X, in.Missing, lags)
+	var lags, pairs []int
+	var values []float64
+	if in.Summed != nil {
+		lags, values, pairs = in.Summed.from(in.FirstLag)
+	} else {
+		lags = from(Lags(len(in.X), 1/(2*math.Pi*g.Corner*g.Interval)), in.FirstLag)
+		values, pairs = Displacements(in.X, in.Missing, lags)
+	}
 	lags, values, pairs = keepFull(lags, values, pairs)
 	if in.Detected != nil {
 		for i, lag := range lags {
@@ -375,7 +381,7 @@ func (f *fitter) result() *Result {
 	k := newKernel(f.in.Guess)
 	mean := make([]float64, len(f.lags))
 	for i, lag := range f.lags {
-		mean[i] = k.withMeanSquare(lag, len(f.in.X))
+		mean[i] = k.withMeanSquare(lag, f.in.samples())
 	}
 	mean = f.whiten(mean)
 	var full [3][]float64 // whitened gradients over all three parameters

@@ -79,23 +79,38 @@ func Displacements(x []float64, missing bool, lags []int) (msd []float64, pairs 
 // closeLag is the longest lag that is summed pair by pair.
 const closeLag = 3
 
+// direct returns the mean-square displacement at one lag, summed pair by pair, and the number of pairs.
 func direct(x []float64, lag int) (float64, int) {
-	var s0, s1 float64
-	n := 0
-	a, b := x[:len(x)-lag], x[lag:]
-	for i, v := range a {
-		d := b[i] - v
-		if d != d {
-			continue
-		}
-		n++
-		if i&1 == 0 {
-			s0 += d * d
-		} else {
-			s1 += d * d
-		}
+	type sums struct {
+		square float64
+		n      int
 	}
-	return (s0 + s1) / float64(max(n, 1)), n
+	pairs := max(len(x)-lag, 0)
+	pieces := make([]sums, transform.Pieces(pairs))
+	transform.InPieces(pairs, func(piece, from, to int) {
+		var s0, s1 float64
+		n := 0
+		a, b := x[from:to], x[from+lag:]
+		for i, v := range a {
+			d := b[i] - v
+			if d != d {
+				continue
+			}
+			n++
+			if i&1 == 0 {
+				s0 += d * d
+			} else {
+				s1 += d * d
+			}
+		}
+		pieces[piece] = sums{s0 + s1, n}
+	})
+	var all sums
+	for _, p := range pieces {
+		all.square += p.square
+		all.n += p.n
+	}
+	return all.square / float64(max(all.n, 1)), all.n
 }
 
 // squares holds cumulated squares of the first samples from one end.
@@ -109,13 +124,26 @@ func (s squares) at(n int) float64 { return s.sums[n] }
 func prefixSquares(x []float64, last int) squares {
 	s := squares{sums: make([]float64, last+1)}
 	sum := 0.0
-	for i, v := range x {
-		if i <= last {
-			s.sums[i] = sum
-		}
+	for i, v := range x[:last] {
+		s.sums[i] = sum
 		sum += v * v
 	}
-	s.total = sum
+	s.sums[last] = sum
+	pieces := make([]float64, transform.Pieces(len(x)))
+	transform.InPieces(len(x), func(piece, from, to int) {
+		var s0, s1 float64
+		for i, v := range x[from:to] {
+			if i&1 == 0 {
+				s0 += v * v
+			} else {
+				s1 += v * v
+			}
+		}
+		pieces[piece] = s0 + s1
+	})
+	for _, p := range pieces {
+		s.total += p
+	}
 	return s
 }
 

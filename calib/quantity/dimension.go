@@ -29,12 +29,13 @@ const (
 	Force                              // N
 	Energy                             // J
 	StiffnessPerPower                  // N/(m W)
+	Memory                             // B, bytes
 	dimensionCount                     // number of dimensions, not one of them
 )
 
-// exponents are the powers of m, kg, s, K, mol, V, count and px in a unit. The
+// exponents are the powers of m, kg, s, K, mol, V, count, px and B in a unit. The
 // volt stands as a base unit of its own: no setting links it to the watt.
-type exponents [8]int
+type exponents [9]int
 
 // Indexes into exponents.
 const (
@@ -46,6 +47,7 @@ const (
 	volt
 	count
 	pixel
+	octet
 )
 
 // dimensionInfo says how a dimension is named in a message, what an example of
@@ -79,6 +81,7 @@ var dimensions = [dimensionCount]dimensionInfo{
 	Diffusion:         {"a diffusion coefficient", "0.45(2) um2/s", "m2/s", exponents{metre: 2, second: -1}},
 	Force:             {"a force", "1.5 pN", "N", exponents{kilogram: 1, metre: 1, second: -2}},
 	Energy:            {"an energy", "4.1e-21 J", "J", exponents{kilogram: 1, metre: 2, second: -2}},
+	Memory:            {"a size of memory", "4 GB", "B", exponents{octet: 1}},
 	StiffnessPerPower: {"a stiffness per power", "1.1(1) pN/um/mW", "N/m/W", exponents{metre: -2, second: 1}},
 }
 

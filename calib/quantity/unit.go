@@ -50,6 +50,10 @@ var symbols = map[string]symbol{
 	"fps":    plain(exponents{second: -1}, 0, false),
 	"%":      plain(exponents{}, -2, false),
 	"1":      plain(exponents{}, 0, false),
+	"B":      plain(exponents{octet: 1}, 0, true),
+	"KiB":    {scale{powers: exponents{octet: 1}, factor: 1 << 10}, false}, // binary prefixes: IEC 80000-13
+	"MiB":    {scale{powers: exponents{octet: 1}, factor: 1 << 20}, false},
+	"GiB":    {scale{powers: exponents{octet: 1}, factor: 1 << 30}, false},
 	"min":    {scale{powers: exponents{second: 1}, factor: 60}, false},
 	"C":      {scale{powers: exponents{kelvin: 1}, factor: 1, offset: celsiusOffset}, false},
 }

@@ -48,6 +48,19 @@ func NewBlocks(power []float64, n int, line bool, skip func(k int) bool) Blocks 
 	return b
 }
 
+// Times returns the blocks of the mean of a number of periodograms.
+func (b Blocks) Times(records int) Blocks {
+	if records == 1 {
+		return b
+	}
+	weight, bins := make([]float64, len(b.Weight)), make([]int, len(b.Bins))
+	for i, w := range b.Weight {
+		weight[i], bins[i] = w*float64(records), b.Bins[i]*records
+	}
+	b.Weight, b.Bins = weight, bins
+	return b
+}
+
 // add appends the block of the frequencies from..to. Within a block the weights differ by
 // less than 1e-4 (the first blocks hold one frequency each), so that the mean and
 // the variance of sigma are those of equally weighted frequencies.

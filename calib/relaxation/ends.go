@@ -2,7 +2,7 @@ package relaxation
 
 import "math"
 
-// ends holds the two ends of a record, for the factor that opens the ring.
+// Ends holds the two ends of a record, for the factor that opens the ring.
 //
 // On a ring of N samples the latent process z (variance V B, decay c) has one
 // link more than on a line: the one from z_{N-1} back to z_0. Hence
@@ -15,16 +15,37 @@ import "math"
 // that exponential averages from either end give, and the integral is elementary.
 // The derivation is ours (docs/method.md, Eqs 14 to 17); the idea that a boundary term turns the Whittle form into
 // the Gaussian likelihood is that of Subba Rao and Yang, Ann. Stat. 49 (2021) 2762.
-type ends struct {
+type Ends struct {
 	head, tail []float64 // first samples in order, last samples in reverse order
+	weight     float64   // number of records that these ends stand for, less one
+}
+
+// Scaled returns the ends of the record times a factor.
+func (e Ends) Scaled(factor float64) Ends {
+	out := Ends{head: make([]float64, len(e.head)), tail: make([]float64, len(e.tail)), weight: e.weight}
+	for i, v := range e.head {
+		out.head[i], out.tail[i] = v*factor, e.tail[i]*factor
+	}
+	return out
+}
+
+// Weighted returns ends that stand for a number of records.
+func (e Ends) Weighted(records float64) Ends {
+	e.weight = records - 1
+	return e
 }
 
 // endLength bounds what is kept of either end.
 const endLength = 1 << 15
 
-func newEnds(x []float64) ends {
-	m := min(len(x)/2, endLength)
-	e := ends{head: x[:m:m], tail: make([]float64, m)}
+// NewEnds copies the ends of a record x [m] from which mean and line were removed.
+func NewEnds(x []float64) Ends { return ShortEnds(x, endLength) }
+
+// ShortEnds is NewEnds with no more than most samples of either end. Those beyond some forty
+// relaxation times count for nothing.
+func ShortEnds(x []float64, most int) Ends {
+	m := min(len(x)/2, most)
+	e := Ends{head: append([]float64(nil), x[:m]...), tail: make([]float64, m)}
 	for i := range e.tail {
 		e.tail[i] = x[len(x)-1-i]
 	}
@@ -85,7 +106,7 @@ func (f filter) average(x []float64) float64 {
 
 // logRatio returns ln p_line(y) - ln p_ring(y); ok is false where the parameters
 // are outside the domain.
-func (e ends) logRatio(sh shape, v, q float64) (value float64, ok bool) {
+func (e Ends) logRatio(sh shape, v, q float64) (value float64, ok bool) {
 	vb := sh.pole * v / (1 - sh.c*sh.c)
 	f := stationary(sh.c, vb, v*sh.level+q)
 	if !f.ok {
@@ -111,11 +132,13 @@ func (e ends) logRatio(sh shape, v, q float64) (value float64, ok bool) {
 // periodogram takes the record for a ring; the relaxing part of its expectation, given the
 // two ends, is (1 + EndExcess/N) times the spectrum, which is the leakage of the record. x [m] has mean and
 // drift removed; NaN within the ends gives 0.
-func (p Process) EndExcess(x []float64) float64 {
+func (p Process) EndExcess(x []float64) float64 { return p.ExcessOf(NewEnds(x)) }
+
+// ExcessOf is EndExcess for the ends of a record.
+func (p Process) ExcessOf(e Ends) float64 {
 	b, _ := BlurCovariance(2 * math.Pi * p.Corner * p.Exposure)
 	c, vb := p.Decay(), p.Variance*b
 	f := stationary(c, vb, p.RecordedVariance()-vb)
-	e := newEnds(x)
 	d := f.average(e.head) - c*f.average(e.tail)
 	link := vb * (1 - c*c)
 	// the filtered states are uncertain: their variance is part of the squared step

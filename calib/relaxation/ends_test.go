@@ -52,7 +52,7 @@ func TestEndsOpenTheRing(t *testing.T) {
 			for j := range y {
 				y[j] = size * math.Sqrt(p.RecordedVariance()) * rng.NormFloat64()
 			}
-			got, ok := newEnds(y).logRatio(newShape(p.Corner*p.Interval, p.Exposure), p.Variance, p.Noise)
+			got, ok := NewEnds(y).logRatio(newShape(p.Corner*p.Interval, p.Exposure), p.Variance, p.Noise)
 			want := gaussian(t, y, line) - gaussian(t, y, ring)
 			if !ok || math.Abs(got-want) > 1e-8*math.Max(1, size*size*10) {
 				t.Errorf("process %d, size %g: ln p(line) - ln p(ring) = %.12g, want %.12g (dense matrices)", i, size, got, want)
@@ -117,7 +117,7 @@ func TestEndExcessMean(t *testing.T) {
 // Without a link there is nothing to open: at fc/fs = 3 the samples are independent.
 func TestEndsOfIndependentSamples(t *testing.T) {
 	y := []float64{1, -2, 0.5, 3, -1, 0.3}
-	got, ok := newEnds(y).logRatio(newShape(2.99, 0), 1, 0)
+	got, ok := NewEnds(y).logRatio(newShape(2.99, 0), 1, 0)
 	if !ok || math.Abs(got) > 1e-7 { // c = 7e-9, times products of the ends up to 3
 		t.Errorf("ln p(line) - ln p(ring) = %g, want 0", got)
 	}

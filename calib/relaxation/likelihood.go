@@ -43,8 +43,7 @@ func inDomain(p Parameters) bool {
 // its blocked periodogram and its two ends.
 type Spectral struct {
 	blocks   Blocks
-	ends     ends
-	open     bool // apply the factor that opens the ring
+	ends     []Ends // of each record; each opens a ring
 	exposure float64
 	scale    float64
 }
@@ -52,14 +51,20 @@ type Spectral struct {
 // NewSpectral prepares the likelihood for a record whose samples are averages over
 // the share exposure = W/dt of the sampling interval. Scale is a rough variance
 // [m2]. If x is not nil it holds the record [m] from which mean and line were
-// removed, its ends are used, and NewSpectral retains slices of it; with nil the
+// removed, and its ends are used; with nil the
 // plain Whittle form remains, as is right when part of the band is left out.
 func NewSpectral(b Blocks, x []float64, exposure, scale float64) *Spectral {
-	s := &Spectral{blocks: b, exposure: exposure, scale: scale}
-	if x != nil {
-		s.ends, s.open = newEnds(x), true
+	if x == nil {
+		return NewSpectralOf(b, nil, exposure, scale)
 	}
-	return s
+	return NewSpectralOf(b, []Ends{NewEnds(x)}, exposure, scale)
+}
+
+// NewSpectralOf prepares the likelihood for any number of records of one length and process,
+// taken as independent: b is the blocked mean of their periodograms, its weights those of
+// all together. With no ends the plain Whittle form remains.
+func NewSpectralOf(b Blocks, ends []Ends, exposure, scale float64) *Spectral {
+	return &Spectral{blocks: b, ends: ends, exposure: exposure, scale: scale}
 }
 
 // Scale returns the unit of variance [m2].
@@ -90,14 +95,15 @@ func (s *Spectral) Value(p Parameters) float64 {
 }
 
 func (s *Spectral) opening(sh shape, v, q float64) float64 {
-	if !s.open {
-		return 0
+	sum := 0.0
+	for _, e := range s.ends {
+		r, ok := e.logRatio(sh, v, q)
+		if !ok {
+			return math.Inf(-1)
+		}
+		sum += r * (1 + e.weight)
 	}
-	r, ok := s.ends.logRatio(sh, v, q)
-	if !ok {
-		return math.Inf(-1)
-	}
-	return r
+	return sum
 }
 
 // Score returns the log-likelihood, its gradient and the Fisher information
@@ -129,7 +135,7 @@ func (s *Spectral) Score(p Parameters) (float64, Parameters, Matrix) {
 		}
 	}
 	f[0][1], f[0][2], f[1][2] = f[1][0], f[2][0], f[2][1]
-	if s.open {
+	if len(s.ends) > 0 {
 		sum += s.opening(sh, v, q)
 		addNumericGradient(&g, p, func(p Parameters) float64 {
 			return s.opening(newShape(math.Exp(p[0]), s.exposure), s.scale*math.Exp(p[1]), s.scale*p[2])

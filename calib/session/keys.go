@@ -117,6 +117,9 @@ var registry = []Key{
 		aliases:     map[string]string{".": "point", ",": "comma"},
 		Placeholder: "comma", Meaning: "decimal mark; else found from the file"},
 
+	{Name: "recording.max_memory", Flag: "max-memory", Dimensions: dims(quantity.Memory), Limits: "200 MB to 1000000 GB",
+		Placeholder: "4 GB", Meaning: "memory to keep to; a recording that needs more is analysed in parts"},
+
 	{Name: "detector.alpha", Flag: "alpha", Dimensions: dims(quantity.Dimensionless), Words: []string{"fit"}, Limits: "0 to 1",
 		Placeholder: "0.25", Meaning: "share of the signal that a photodiode passes without delay; fit to find it"},
 	{Name: "detector.f3db", Flag: "f3db", Dimensions: dims(quantity.Frequency), Words: []string{"fit"}, Limits: "1 Hz to 1 GHz",

@@ -20,7 +20,7 @@ const (
 type block struct {
 	data []byte
 	line int // number of the first line in the file, from 1
-	row  int // index of the first line among the lines of data, from 0
+	row  int // index of the first line in the store
 	cut  bool
 }
 
@@ -39,7 +39,11 @@ type feed struct {
 	mu    sync.Mutex
 	carry []byte // beginning of a line whose end is not yet read
 	line  int    // number of the next line
-	row   int    // index of the next row
+	row   int    // index of the next row in the store
+	base  int    // lines of data that the store has been emptied of
+	// full is called when the store holds as many rows as it may, with no worker at work. It is to empty the store of
+	// the first row rows. nil: the store grows.
+	full  func() error
 	ended bool
 	err   error
 }
@@ -67,8 +71,17 @@ func (f *feed) next(buf []byte) (block, []byte, error) {
 		f.err = err
 		return block{}, buf, err
 	}
-	b := block{data: data, line: f.line, row: f.row, cut: cut}
 	lines := bytes.Count(data, []byte{'\n'})
+	if f.full != nil && f.row+lines > f.store.limit {
+		f.store.lock.Lock() // waits for the workers
+		f.err = f.full()
+		f.base, f.row = f.base+f.row, 0
+		f.store.lock.Unlock()
+		if f.err != nil {
+			return block{}, buf, f.err
+		}
+	}
+	b := block{data: data, line: f.line, row: f.row, cut: cut}
 	f.line += lines
 	f.row += lines
 	f.store.reserve(f.row)
@@ -237,6 +250,7 @@ func (f *feed) checkPadding() error {
 type store struct {
 	lock    sync.RWMutex
 	columns [][]float64
+	limit   int // rows that it may hold, where the feed says what is done then
 }
 
 // newStore makes n columns with room for an expected number of rows. Room that
@@ -255,7 +269,11 @@ func (s *store) reserve(rows int) {
 	if len(s.columns) > 0 && rows > len(s.columns[0]) {
 		s.lock.Lock()
 		for i, old := range s.columns {
-			grown := make([]float64, rows+rows/2)
+			room := rows + rows/2
+			if s.limit > 0 {
+				room = min(room, s.limit)
+			}
+			grown := make([]float64, room)
 			copy(grown, old)
 			s.columns[i] = grown
 		}

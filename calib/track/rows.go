@@ -63,30 +63,41 @@ type parsed struct {
 	skip    []int // lines of data that hold no sample, ascending
 	again   []int // those that repeat the header
 	lines   int   // lines of data
+	base    int   // lines of data before these
 	bad     []badLine
 	total   int
 }
 
 // parseRows reads all rows with the given number of workers. The result does
-// not depend on that number.
-func parseRows(ctx context.Context, in *feed, lay *layout, beads *beadIndex, workers int) (*parsed, error) {
+// not depend on that number. Where the feed's store has a limit, full is called with the rows before it is emptied.
+func parseRows(ctx context.Context, in *feed, lay *layout, beads *beadIndex, workers int, full func(*parsed) error) (*parsed, error) {
 	parsers := make([]*parser, workers)
-	var wait sync.WaitGroup
+	if full != nil {
+		in.full = func() error { return full(collect(in, parsers)) }
+	}
 	for i := range parsers {
-		p := &parser{lay: lay, name: in.name, beads: beads}
-		parsers[i] = p
+		parsers[i] = &parser{lay: lay, name: in.name, beads: beads}
+	}
+	var wait sync.WaitGroup
+	for _, p := range parsers {
 		wait.Go(func() { p.run(in) })
 	}
 	wait.Wait()
 	if in.err != nil && !errors.Is(in.err, io.EOF) {
 		return nil, in.err
 	}
-	all := &parsed{columns: in.store.columns, lines: in.row}
+	return collect(in, parsers), ctx.Err()
+}
+
+// collect puts together what the parsers found since it was last called.
+func collect(in *feed, parsers []*parser) *parsed {
+	all := &parsed{columns: slices.Clone(in.store.columns), lines: in.row, base: in.base}
 	for _, p := range parsers {
 		all.skip = append(all.skip, p.skip...)
 		all.again = append(all.again, p.again...)
 		all.bad = append(all.bad, p.bad...)
 		all.total += p.total
+		p.skip, p.again, p.bad, p.total = nil, nil, nil, 0
 	}
 	slices.Sort(all.skip)
 	slices.Sort(all.again)
@@ -94,7 +105,7 @@ func parseRows(ctx context.Context, in *feed, lay *layout, beads *beadIndex, wor
 	all.bad = all.bad[:min(len(all.bad), keptBad)]
 	all.rows = all.lines - len(all.skip)
 	all.compact()
-	return all, ctx.Err()
+	return all
 }
 
 // compact closes the rows that hold no sample and cuts the columns to length.

@@ -27,10 +27,8 @@ func (g *grid) scatter(values []float64) []float64 {
 	return out
 }
 
-// survey counts the missing values and says why an axis carries no motion; empty
-// if it does.
-func (a *Axis) survey() string {
-	values := a.Values
+// extent counts the missing values and finds the smallest and the largest of the others.
+func extent(values []float64) (missing int, low, high float64) {
 	found := blockSums(len(values), func(lo, hi int) (s sums) {
 		low, high := math.Inf(1), math.Inf(-1)
 		missing := 0
@@ -47,11 +45,18 @@ func (a *Axis) survey() string {
 		}
 		return sums{a: float64(missing), max: high, min: low}
 	})
-	a.Missing = int(found.a)
+	return int(found.a), found.min, found.max
+}
+
+// survey counts the missing values and says why an axis carries no motion; empty
+// if it does.
+func (a *Axis) survey() string {
+	missing, low, high := extent(a.Values)
+	a.Missing = missing
 	switch {
-	case a.Missing == len(values):
+	case missing == len(a.Values):
 		return "holds no number"
-	case found.min == found.max:
+	case low == high:
 		return "has one value in every row"
 	}
 	return ""

@@ -21,10 +21,15 @@ type table struct {
 	place   func(row int) *Error // position of a row's time stamp in the file
 	readAs  ReadAs
 	notes   []Note
+	whole   *Recording // what was handed out in parts, instead of rows
+	stretch bool       // the rows are part of a recording: a constant axis may move elsewhere
 }
 
 // recordings turns the table into one recording per bead.
 func (tab *table) recordings(opt Options) ([]*Recording, error) {
+	if tab.whole != nil {
+		return []*Recording{tab.whole}, nil
+	}
 	name := tab.plan.name
 	if tab.rows < 2 {
 		what := "the file has a header but no data"
@@ -171,7 +176,7 @@ func (tab *table) recording(g group, opt Options, several bool) (*Recording, err
 	for _, u := range g.axes {
 		axis := Axis{Name: string(u.axis), Header: tab.plan.columns[u.column].header, Unit: u.unit.name, ToMetre: u.unit.toMetre()}
 		axis.Values = grid.scatter(tab.si(u, g.pick(tab.columns[u.out])))
-		if why := axis.survey(); why != "" {
+		if why := axis.survey(); why != "" && !tab.stretch {
 			if _, named := opt.Columns[axis.Name]; named {
 				return nil, &Error{File: rec.Name, Code: CodeEmpty, What: fmt.Sprintf("column %s for %s %s", quoted(axis.Header), axis.Name, why), Remedy: "name another column (--columns)"}
 			}

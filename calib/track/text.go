@@ -148,14 +148,35 @@ func (lay *layout) commaColumn(v *view, sample []byte, opt Options) *view {
 func (lay *layout) readRows(ctx context.Context, p *plan, text io.Reader, opt Options, size int64) (*table, error) {
 	expected := int(float64(size)/max(lay.lineBytes, 1)*1.02) + 4096
 	beads := &beadIndex{}
-	in := &feed{ctx: ctx, name: opt.Name, reader: text, store: newStore(lay.kept, expected), line: lay.firstLine, delimiter: lay.delimiter, returns: lay.returns}
-	rows, err := parseRows(ctx, in, lay, beads, opt.Workers)
+	in := &feed{ctx: ctx, name: opt.Name, reader: text, line: lay.firstLine, delimiter: lay.delimiter, returns: lay.returns}
+	var parts *partReader
+	var full func(*parsed) error
+	if limit := p.mostRows(opt); limit > 0 {
+		parts = &partReader{opt: opt, table: func(rows *parsed) (*table, error) { return lay.table(p, rows, beads, opt) }}
+		full = parts.take
+		if size == 0 || expected > limit { // of a stream the size is not known
+			expected = limit
+		}
+		in.store = newStore(lay.kept, expected)
+		in.store.limit = limit
+	} else {
+		in.store = newStore(lay.kept, expected)
+	}
+	rows, err := parseRows(ctx, in, lay, beads, opt.Workers, full)
 	if err != nil {
 		return nil, err
+	}
+	if parts != nil && parts.first != nil {
+		return parts.finish(rows)
 	}
 	if err := rows.judge(); err != nil {
 		return nil, err
 	}
+	return lay.table(p, rows, beads, opt)
+}
+
+// table makes the table of the rows that were read.
+func (lay *layout) table(p *plan, rows *parsed, beads *beadIndex, opt Options) (*table, error) {
 	if err := rows.checkRepeats(opt.Name, lay, p); err != nil {
 		return nil, err
 	}
@@ -169,7 +190,7 @@ func (lay *layout) readRows(ctx context.Context, p *plan, text io.Reader, opt Op
 		if stamp == nil {
 			stamp = p.frame
 		}
-		e := &Error{File: opt.Name, Line: lay.firstLine + rows.lineOf(row)}
+		e := &Error{File: opt.Name, Line: lay.firstLine + rows.base + rows.lineOf(row)}
 		if stamp != nil && stamp.column == 0 {
 			e.Column = 1
 		} else if stamp != nil {
@@ -179,7 +200,7 @@ func (lay *layout) readRows(ctx context.Context, p *plan, text io.Reader, opt Op
 	}
 	tab.readAs = lay.readAs(p, rows)
 	if len(rows.again) > 0 {
-		tab.notes = note(tab.notes, "header-repeated", "the header occurs again among the rows, first in line %d: the rows are read as one recording", lay.firstLine+rows.again[0])
+		tab.notes = note(tab.notes, "header-repeated", "the header occurs again among the rows, first in line %d: the rows are read as one recording", lay.firstLine+rows.base+rows.again[0])
 	}
 	if n := rows.dropEmpty(p); n > 0 {
 		tab.rows -= n

@@ -44,9 +44,18 @@ type Options struct {
 	Bead       string            // the one bead to return; empty: all
 	MaxBytes   int64             // limit of the text after decompression [bytes]; 0: 64 GiB
 	Workers    int               // parallel parsers; 0: one per processor. The result does not depend on it
-	NoHash     bool              // leave Recording.SHA256 empty, for speed
-	Inspect    bool              // an unknown unit or rate is a note, not an error: for a first look at a file
+	// MaxMemory bounds the memory [bytes] of reading and of an analysis that holds the samples twice. A recording that needs more is
+	// handed to Part in consecutive stretches. 0, or without Part: no bound.
+	MaxMemory int64
+	Part      Taker
+	NoHash    bool // leave Recording.SHA256 empty, for speed
+	Inspect   bool // an unknown unit or rate is a note, not an error: for a first look at a file
 }
+
+// Taker takes a recording that is too long for the memory, stretch by stretch, in the order of time. The values of a
+// stretch are only valid during the call; gap is the number of samples that are missing before it. An
+// error ends the reading.
+type Taker func(stretch *Recording, gap int) error
 
 // Recording is the track of one particle on a regular time grid.
 type Recording struct {
@@ -61,6 +70,7 @@ type Recording struct {
 	Missing    int      // grid points that are missing on every axis
 	JitterRMS  float64  // root mean square of the stamps about the grid [s]; NaN without a time column
 	JitterMax  float64  // largest distance of a stamp from the grid [s]; NaN without a time column
+	InParts    bool     // it was handed to Options.Part: the axes hold no values
 	Extra      []Column // the columns of Options.Keep
 	ReadAs     ReadAs   // what was found in the file
 	Notes      []Note   // what the reader decided and the user should know

@@ -188,6 +188,7 @@ func (a *app) calibrateTrack(ctx context.Context, src *source, path string, opti
 	if err != nil {
 		return []outcome{{path: path, err: err}}
 	}
+	boundMemory(recordings)
 	options.Program = calib.Program{Name: "beadwell", Version: a.Version, Command: append([]string{"beadwell"}, a.args...)}
 	outcomes := make([]outcome, len(recordings))
 	for i, one := range recordings {

@@ -155,7 +155,7 @@ func trusted(result *calib.Result, o forceOptions) error {
 
 // forceTrack reads the one recording.
 func (a *app) forceTrack(ctx context.Context, o forceOptions) (loaded, error) {
-	src := &source{app: a, file: o.session, flags: &o.flags}
+	src := &source{app: a, file: o.session, flags: &o.flags, samples: true}
 	all, err := src.load(ctx, o.track)
 	if err != nil {
 		return loaded{}, err

@@ -21,6 +21,7 @@ type source struct {
 	app     *app
 	file    string // of --session; empty: session.toml beside the track
 	flags   *settingFlags
+	samples bool // the samples themselves are needed, whatever memory that takes
 	inspect bool // a first look: an unknown unit or rate is no error
 
 	folderLock sync.Mutex
@@ -52,11 +53,13 @@ type loaded struct {
 	freeBead []*calib.FreeBeadDrag
 	// companions are the recordings that the settings name to join a diagnosis.
 	companions []calib.Companion
+	// gathered is what is known of a recording that is too long for the memory; nil for others.
+	gathered *calib.Gatherer
 }
 
 // options adds what was read beside the recording to the choices.
 func (l loaded) options(o calib.Options) calib.Options {
-	o.Background, o.FreeBead, o.Companions = l.background, l.freeBead, l.companions
+	o.Background, o.FreeBead, o.Companions, o.Gathered = l.background, l.freeBead, l.companions, l.gathered
 	return o
 }
 
@@ -74,6 +77,7 @@ func (s *source) load(ctx context.Context, path string) ([]loaded, error) {
 	if err != nil {
 		return nil, err
 	}
+	gathered := s.keepTo(&options, before)
 	recordings, err := s.readWithStage(ctx, path, options, before)
 	if err != nil {
 		return nil, err
@@ -81,6 +85,9 @@ func (s *source) load(ctx context.Context, path string) ([]loaded, error) {
 	all := make([]loaded, len(recordings))
 	for i, recording := range recordings {
 		all[i] = loaded{path: path, recording: recording}
+		if recording.InParts {
+			all[i].gathered = gathered
+		}
 		if all[i].settings, err = s.merged(folder, path, recording.Bead, headerSettings(recording, before)); err != nil {
 			return nil, err
 		}
@@ -96,6 +103,20 @@ func (s *source) load(ctx context.Context, path string) ([]loaded, error) {
 		}
 	}
 	return all, nil
+}
+
+// keepTo makes the reader keep to the memory that the settings allow: a recording that needs more goes through what is
+// returned, stretch by stretch. It is nil without a limit, and where the samples themselves are needed.
+func (s *source) keepTo(options *track.Options, settings *session.Settings) *calib.Gatherer {
+	limit, ok := settings.Lookup("recording.max_memory", "")
+	if !ok || s.inspect || s.samples {
+		return nil
+	}
+	options.MaxMemory = int64(limit.Value.SI)
+	limitHeap(options.MaxMemory - programSize)
+	gathered := calib.NewGatherer(options.MaxMemory)
+	options.Part = gathered.Part
+	return gathered
 }
 
 func (s *source) read(ctx context.Context, path string, options track.Options) ([]*track.Recording, error) {

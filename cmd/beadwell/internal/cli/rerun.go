@@ -152,6 +152,7 @@ func (a *app) readAgain(ctx context.Context, stored *calib.Result, path string, 
 	if err != nil {
 		return again, err
 	}
+	gathered := src.keepTo(&options, before)
 	recordings, err := src.readWithStage(ctx, path, options, before)
 	if err != nil {
 		return again, err
@@ -162,6 +163,9 @@ func (a *app) readAgain(ctx context.Context, stored *calib.Result, path string, 
 			return again, changedInput(path, one.SHA256, stored.Input.SHA256)
 		case one.Bead == stored.Input.Bead:
 			again.recording, again.settings = one, before.With(headerSettings(one, before))
+			if one.InParts {
+				again.gathered = gathered
+			}
 			if err = src.addOthers(ctx, path, &again); err == nil {
 				again.freeBead, err = src.freeBeads(ctx, path, one.Bead, again.settings)
 			}
