@@ -38,13 +38,23 @@ type Figure struct {
 // displacement and trace of each axis in the order of the result.
 //
 // A figure that the result does not hold enough numbers for is there all the
-// same, as an empty frame that carries the reason.
+// same, as an empty frame that carries the reason. A free bead and a background have no
+// trap to show, and their traces alone are drawn.
 func All(r *calib.Result) []Figure {
-	figures := []Figure{estimates(r)}
-	names := map[string]bool{figures[0].Name: true}
+	untrapped := r.Role == calib.RoleFree || r.Role == calib.RoleBackground
+	var figures []Figure
+	names := map[string]bool{}
+	if !untrapped {
+		figures = append(figures, estimates(r))
+		names[figures[0].Name] = true
+	}
 	for i := range r.Axes {
 		axis := &r.Axes[i]
-		for _, f := range []Figure{spectrum(axis), position(r, axis), displacement(axis), trace(r, axis)} {
+		ofAxis := []Figure{trace(r, axis)}
+		if !untrapped {
+			ofAxis = append([]Figure{spectrum(axis), position(r, axis), displacement(axis)}, ofAxis...)
+		}
+		for _, f := range ofAxis {
 			f.Axis = clean(axis.Name)
 			f.Name = uniqueName(names, string(f.Kind)+"-"+fileSafe(axis.Name))
 			figures = append(figures, f)

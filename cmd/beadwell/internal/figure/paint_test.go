@@ -129,7 +129,7 @@ func TestWrapBreaksBetweenWords(t *testing.T) {
 	}
 }
 
-var textElement = regexp.MustCompile(`<text [^>]*?(?:x="([0-9.]+)" y="([0-9.]+)"|rotate\((-?[0-9.]+)\)"[^>]*?) font-size="([0-9.]+)">([^<]*)<`)
+var textElement = regexp.MustCompile(`<text [^>]*?(?:x="([0-9.]+)" y="([0-9.]+)"|rotate\((-?[0-9.]+)\)"[^>]*?) font-size="([0-9.]+)"(?: textLength="([0-9.]+)" lengthAdjust="spacingAndGlyphs")?>([^<]*)<`)
 
 func TestWordsOnThePage(t *testing.T) {
 	axis := scale{quantity: "density", unit: "nm^{2}", factor: 1, log: true, low: 1, high: 1e4}
@@ -137,10 +137,16 @@ func TestWordsOnThePage(t *testing.T) {
 	base, raised, upright := 0.0, 0.0, false
 	for _, m := range textElement.FindAllStringSubmatch(string(renderSVG(f, Light, true)), -1) {
 		y, _ := strconv.ParseFloat(m[2], 64)
+		// Every text of more than a letter keeps the width that it was laid out with, in any font.
+		size, _ := strconv.ParseFloat(m[4], 64)
+		width, _ := strconv.ParseFloat(m[5], 64)
+		if laidOut := float64(widthOf(m[6], vg.Length(size))); len(m[6]) > 1 && math.Abs(width-laidOut) > 0.1 {
+			t.Errorf("%q has the width %s, want %g", m[6], m[5], laidOut)
+		}
 		switch {
-		case m[5] == "10" && base == 0:
+		case m[6] == "10" && base == 0:
 			base = y
-		case m[5] == "0" && raised == 0:
+		case m[6] == "0" && raised == 0:
 			raised = y
 			if want := number(smallSize * raisedSize); m[4] != want {
 				t.Errorf("an exponent has size %s, want %s", m[4], want)

@@ -8,6 +8,7 @@ import (
 	"image/color"
 	"math"
 	"strconv"
+	"unicode/utf8"
 
 	"gonum.org/v1/plot/font"
 	"gonum.org/v1/plot/vg"
@@ -176,7 +177,8 @@ func (c *svgCanvas) step(command byte, points ...vg.Point) {
 	}
 }
 
-// FillString sets one line of text.
+// FillString sets one line of text, at the width that it was laid out with: a reader who has
+// none of the fonts sees a wider or narrower one fitted to it, not one that runs into the axis.
 func (c *svgCanvas) FillString(f font.Face, pt vg.Point, s string) {
 	if f.Font.Size == 0 || s == "" {
 		return
@@ -190,7 +192,11 @@ func (c *svgCanvas) FillString(f font.Face, pt vg.Point, s string) {
 	} else {
 		fmt.Fprintf(&c.out, ` x="%s" y="%s"`, number(x), number(y))
 	}
-	fmt.Fprintf(&c.out, ` font-size="%s">`, number(float64(f.Font.Size)))
+	fmt.Fprintf(&c.out, ` font-size="%s"`, number(float64(f.Font.Size)))
+	if utf8.RuneCountInString(s) > 1 { // one letter alone has no spacing
+		fmt.Fprintf(&c.out, ` textLength="%s" lengthAdjust="spacingAndGlyphs"`, number(float64(f.Width(s))))
+	}
+	c.out.WriteByte('>')
 	_ = xml.EscapeText(&c.out, []byte(clean(s))) // a bytes.Buffer takes every write
 	c.out.WriteString("</text>\n")
 }

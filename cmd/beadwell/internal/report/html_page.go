@@ -31,6 +31,7 @@ type shownVerdict struct{ Status, Class, Mark, Word, Text, Reason string }
 
 // answer is the adopted stiffness of one axis.
 type answer struct {
+	Title    string // what it is a number of
 	Axis     string
 	Value    string
 	Withheld bool
@@ -66,7 +67,7 @@ func pageOf(r *calib.Result) (page, error) {
 		Figures: figureGroups(r),
 	}
 	for _, axis := range r.Axes {
-		p.Answers = append(p.Answers, answerOf(axis))
+		p.Answers = append(p.Answers, answerOf(r.Role, axis))
 		if axis.Adopted.Stiffness.Known() {
 			p.AnswerNote = "In brackets: the combined standard uncertainty of the last digits."
 		}
@@ -111,9 +112,27 @@ func verdictOf(v calib.Verdict) shownVerdict {
 	return shown
 }
 
-func answerOf(a calib.Axis) answer {
+// answerOf is what the recording was made for: the stiffness of an axis, the diffusion of a free
+// bead, or the noise of a background.
+func answerOf(role string, a calib.Axis) answer {
+	switch {
+	case role == calib.RoleFree && a.Free != nil && a.Free.Diffusion.Known():
+		shown := answer{Title: "Free diffusion", Axis: Plain(a.Name), Value: typeset(withUnit(combined(a.Free.Diffusion, "um2/s"), "um2/s"))}
+		shown.Lines = append(shown.Lines, typeset("kT over the computed drag "+withUnit(combined(a.Free.Expected, "um2/s"), "um2/s")))
+		if a.DragRatio.Known() {
+			shown.Lines = append(shown.Lines, typeset("measured over computed drag "+combined(a.DragRatio, "1")))
+		}
+		return shown
+	case role == calib.RoleBackground && a.Background != nil && a.Background.Noise.Known():
+		unit := a.Background.Noise.Unit
+		if unit == "m" {
+			unit = "nm"
+		}
+		return answer{Title: "Noise", Axis: Plain(a.Name), Value: typeset(withUnit(combined(a.Background.Noise, unit), unit)),
+			Lines: []string{"standard deviation of the white noise"}}
+	}
 	q := a.Adopted.Stiffness
-	shown := answer{Axis: Plain(a.Name)}
+	shown := answer{Title: "Stiffness", Axis: Plain(a.Name)}
 	if !q.Known() {
 		shown.Withheld, shown.Value = true, "withheld"
 		if reason := withheldReason(a.Adopted); reason != "" {

@@ -49,6 +49,9 @@ type cellText struct {
 
 func sections(r *calib.Result) []section {
 	all := append(whySections(r), kindSections(r)...)
+	if !holdsTrap(r) {
+		return append(all, readSection(r), settingsSection(r), provenance(r))
+	}
 	return append(all, []section{
 		{ID: "estimates", Title: "Estimates", Paragraphs: []string{
 			"Two routes lead from a recording to a stiffness: through the drag on the bead, and through the amplitude of its motion. " +
@@ -58,9 +61,13 @@ func sections(r *calib.Result) []section {
 		{ID: "budget", Title: "Uncertainty budget", Paragraphs: append(budgetFacts(r), budgetNotes(r)...), Tables: budgetTables(r)},
 		{ID: "fits", Title: "Fits", Tables: []table{fitsTable(r)}},
 		readSection(r),
-		{ID: "settings", Title: "Settings", Tables: []table{settingsTable(r)}},
+		settingsSection(r),
 		provenance(r),
 	}...)
+}
+
+func settingsSection(r *calib.Result) section {
+	return section{ID: "settings", Title: "Settings", Tables: []table{settingsTable(r)}}
 }
 
 // budgetNotes says for which axes there is no budget.

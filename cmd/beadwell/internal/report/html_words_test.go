@@ -158,3 +158,46 @@ func TestHTMLSays(t *testing.T) {
 		t.Errorf("the page differs from %s; review, then go test -update (-want +got):\n%s", name, diff)
 	}
 }
+
+// The page of a free bead and of a background answers what they were made for, and shows
+// nothing of a trap; no heading of a table is empty, which a screen reader would read as nothing.
+func TestPageWithoutATrap(t *testing.T) {
+	sample := func(role string, change func(*calib.Axis)) *calib.Result {
+		r := storedSample()
+		r.Role, r.Axes = role, r.Axes[:1]
+		change(&r.Axes[0])
+		return r
+	}
+	diffusion := calib.Quantity{Value: 4.8e-13, Unit: "m2/s", Combined: &calib.Uncertainty{Standard: 2e-14, Interval68: [2]calib.Float{4.6e-13, 5e-13}, Interval95: [2]calib.Float{4.408e-13, 5.192e-13}}}
+	for _, test := range []struct {
+		r            *calib.Result
+		want         []string
+		estimatesToo bool
+	}{
+		{sample(calib.RoleFree, func(a *calib.Axis) { a.Free = &calib.FreeBead{Diffusion: diffusion, Expected: diffusion} }),
+			[]string{"<dt>Free diffusion along x</dt>", "0.480(20)\u00a0µm²/s</dd>", "kT over the computed drag 0.480(20)"}, false},
+		{sample(calib.RoleBackground, func(a *calib.Axis) {
+			a.Background = &calib.Background{Noise: calib.Quantity{Value: 3e-9, Unit: "m", Combined: &calib.Uncertainty{Standard: 1e-10, Interval68: [2]calib.Float{2.9e-9, 3.1e-9}, Interval95: [2]calib.Float{2.804e-9, 3.196e-9}}}}
+		}), []string{"<dt>Noise along x</dt>", "3.00(10)\u00a0nm</dd>"}, false},
+		{sample("", func(a *calib.Axis) { a.Free = &calib.FreeBead{Diffusion: diffusion, Expected: diffusion} }), []string{"<dt>Stiffness along x</dt>"}, true},
+	} {
+		var b strings.Builder
+		if err := HTML(&b, test.r); err != nil {
+			t.Fatal(err)
+		}
+		page := b.String()
+		for _, want := range test.want {
+			if !strings.Contains(page, want) {
+				t.Errorf("role %q: %q is not on the page", test.r.Role, want)
+			}
+		}
+		for _, part := range []string{`id="estimates"`, `id="budget"`, `id="figure-spectrum-x"`} {
+			if strings.Contains(page, part) != test.estimatesToo {
+				t.Errorf("role %q: %s on the page is %v", test.r.Role, part, !test.estimatesToo)
+			}
+		}
+		if strings.Contains(page, `<th scope="col"></th>`) {
+			t.Errorf("role %q: a heading of a table is empty", test.r.Role)
+		}
+	}
+}

@@ -196,7 +196,7 @@ func kindSections(r *calib.Result) []section {
 		return nil
 	}
 	t := table{Caption: "What this kind of recording gives beyond stiffness; combined standard uncertainty of the last digits in brackets",
-		Head: heads("axis", "quantity", "value", "")}
+		Head: heads("axis", "quantity", "value", "how")}
 	t.Head[2].Number = true
 	var list []tableRow
 	for _, k := range rows {
