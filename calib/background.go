@@ -202,5 +202,6 @@ func measureBackground(ctx context.Context, rec *track.Recording, set *session.S
 	r.Medium = Medium{Temperature: Withheld("K", noBead), Viscosity: Withheld("Pa s", noBead), Density: Withheld("kg/m3", noBead), ThermalEnergy: Withheld("J", noBead)}
 	r.Bead = Bead{Diameter: Withheld("m", noBead), Height: Withheld("m", noBead)}
 	r.Verdict = Verdict{Status: Consistent, Text: "The background gives the noise of the detection.", Reason: "it holds no bead, and no stiffness", FamilyWiseP: Float(math.NaN())}
+	r.inspect(rec, set)
 	return r, nil
 }

@@ -48,6 +48,7 @@ func calibrateFree(ctx context.Context, rec *track.Recording, set *session.Setti
 	}
 	r.addFreeFinding()
 	r.settingFindings(set, works)
+	r.inspect(rec, set)
 	return r, nil
 }
 

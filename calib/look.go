@@ -52,9 +52,7 @@ func LookAt(rec *track.Recording, set *session.Settings) Look {
 		}
 		l.Axes = append(l.Axes, LookAxis{Name: a.Name, Header: a.Header, Unit: a.Unit, InUnit: unit, Low: Float(low), High: Float(high), Missing: a.Missing})
 	}
-	for _, c := range health.Run(in) {
-		l.Checks = append(l.Checks, newCheck(c, rec.Start))
-	}
+	l.Checks = checksOf(rec, set)
 	return l
 }
 
