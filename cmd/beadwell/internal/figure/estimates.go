@@ -88,7 +88,7 @@ func estimatePanel(a *calib.Axis) (p panel, words string, ok bool) {
 			reach.show(s.x[0], s.low[0], s.high[0])
 		} else {
 			share := 1 - (float64(row)+0.6)/(float64(len(list))+0.2)
-			p.notes = append(p.notes, note{text: "withheld", x: 0.5, y: share, ink: soft, middle: true})
+			p.notes = append(p.notes, note{text: "withheld", x: 0.01, y: share, ink: soft})
 		}
 	}
 	if len(list) == 0 || reach.empty() {

@@ -29,13 +29,18 @@ func Force(t *calib.ForceTrace, start float64) Figure {
 	p := panel{name: "force", share: 1, x: x.over(times), y: scale{quantity: "force", unit: "pN", si: "N", factor: 1e12}.over(reach)}
 	p.add(s)
 	p.add(mean)
+	f.key = []keyItem{{"smallest to largest", envelope, record}, {"mean", curve, text}}
+	limited := false
 	for _, end := range []float64{t.Trap.Linear.Low, t.Trap.Linear.High} {
 		if force := end * float64(t.Trap.Stiffness.Value); finite(force) && force > reach.low && force < reach.high {
-			p.add(series{name: "end of the linear range", mark: level, ink: rule, y: []float64{force}, label: "linear range"})
+			p.add(series{name: "end of the linear range", mark: level, ink: rule, y: []float64{force}})
+			limited = true
 		}
 	}
+	if limited {
+		f.key = append(f.key, keyItem{"end of the linear range", level, rule})
+	}
 	f.panels = []panel{p}
-	f.key = []keyItem{{"smallest to largest", envelope, record}, {"mean", curve, text}}
 	return f.described(fmt.Sprintf("Force along %s over %s, between %s and %s, thermal motion of the bead included.", name, plain(times.high-times.low, "s"),
 		plain(reach.low*1e12, "pN"), plain(reach.high*1e12, "pN")))
 }

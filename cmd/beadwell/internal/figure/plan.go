@@ -22,7 +22,8 @@ func Plan(p *calib.Plan) Figure {
 		return f.empty("no duration that was compared determines the stiffness")
 	}
 	if p.Wanted != nil {
-		times.add(series{name: "wanted", mark: level, ink: rule, y: []float64{float64(p.Wanted.Uncertainty)}, label: "wanted"})
+		times.add(series{name: "wanted", mark: level, ink: rule, y: []float64{float64(p.Wanted.Uncertainty)}})
+		f.key = []keyItem{{"wanted", level, rule}}
 	}
 	if p.Enough.Known() {
 		times.add(series{name: "enough", mark: upright, ink: rule, x: []float64{float64(p.Enough.Value)}, label: "enough, " + plain(float64(p.Enough.Value), "s")})
@@ -32,7 +33,7 @@ func Plan(p *calib.Plan) Figure {
 		rates.add(series{name: "as planned", mark: upright, ink: rule, x: []float64{float64(p.Rate)}, label: "as planned"})
 		f.panels = append(f.panels, *rates)
 	}
-	f.key = []keyItem{{"by drag", dots, drag}, {"by amplitude", squares, ampl}, {"both", rings, adopted}, {"inputs exact", dashes, text}}
+	f.key = append([]keyItem{{"by drag", dots, drag}, {"by amplitude", squares, ampl}, {"both", rings, adopted}, {"inputs exact", dashes, text}}, f.key...)
 	return f.described(describePlan(p))
 }
 
