@@ -34,12 +34,16 @@ func run() error {
 	write := flag.String("write", "", "page to write from the file of results")
 	limit := flag.Duration("limit", 0, "start no further cell after this time")
 	detection := flag.Bool("detection", false, "study false alarms and detection in place of accuracy")
+	kinds := flag.Bool("kinds", false, "study the other kinds of recordings in place of trapped beads")
 	flag.Parse()
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt)
 	defer stop()
 	var of, at int
 	if n, err := fmt.Sscanf(*part, "%d/%d", &at, &of); n != 2 || err != nil || at < 1 || at > of {
 		return fmt.Errorf("part %q is not of the form 2/4", *part)
+	}
+	if *kinds {
+		return runKinds(ctx, plan{runs: *runs, at: at - 1, of: of, match: *match, file: *file, write: *write, limit: *limit})
 	}
 	if *detection {
 		return runDetection(ctx, plan{runs: *runs, at: at - 1, of: of, match: *match, file: *file, write: *write, limit: *limit})
