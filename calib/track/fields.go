@@ -15,7 +15,8 @@ func (lay *layout) measure(v *view, sampled int) {
 	}
 	last := len(lay.names) - 1
 	lay.lastMarks = map[string]bool{}
-	rows := 0
+	rows, first := 0, true
+	marked := make([]int, len(lay.names)) // numbers with a decimal mark, less nine times those without
 	for i := v.first; i < len(v.lines); i++ {
 		if !v.isRow(i, numeric) {
 			continue
@@ -27,6 +28,9 @@ func (lay *layout) measure(v *view, sampled int) {
 			lay.names[k].clock = lay.names[k].clock || kind == clockCell
 			if kind == numberCell && strings.IndexByte(c.text, lay.mark) >= 0 {
 				lay.names[k].whole = false
+				marked[k]++
+			} else if kind == numberCell {
+				marked[k] -= 9
 			}
 		}
 		lay.padded = lay.padded || v.delimiter == ' ' || hasBlanks(v.lines[i].text, v.delimiter)
@@ -36,11 +40,16 @@ func (lay *layout) measure(v *view, sampled int) {
 		if v.kinds[i][last] == missingCell {
 			lay.lastMarks[v.cells[i][last].text] = true
 		}
-		if d := digitsOf(v.cells[i][last].text, lay.mark); rows == 1 {
-			lay.last = d
+		if d := digitsOf(v.cells[i][last].text, lay.mark); d.decimals < 0 {
+			continue
+		} else if first {
+			lay.last, first = d, false
 		} else if d != lay.last {
 			lay.last = digits{}
 		}
+	}
+	for k, weight := range marked {
+		lay.names[k].marked = weight > 0
 	}
 	if lay.last.decimals < 2 || rows < 3 {
 		lay.last = digits{}
@@ -83,6 +92,7 @@ func (lay *layout) setFields(p *plan, v *view) {
 			f.kind = clockField
 		default:
 			f.kind, f.shift, f.times = numberField, u.unit.siShift(), u.unit.times
+			f.marked = lay.names[u.column].marked
 			if u.unit.isCoarse() {
 				f.kind = timesField
 			}

@@ -121,10 +121,9 @@ func (v *view) findHeader(fits func(width int) bool) (rows []headerRow) {
 	for _, h := range rows {
 		roles = max(roles, h.roles)
 	}
-	if roles == 0 { // a list of settings may look like names
-		if remark := v.commentHeader(fits); len(remark) > 0 {
-			rows = remark
-		}
+	// A list of settings may look like names; what is nearer to the data is preferred.
+	if remark := v.commentHeader(fits); len(remark) > 0 && (roles == 0 || remark[0].line.number > rows[0].line.number && remark[len(remark)-1].roles >= roles) {
+		rows = remark
 	}
 	slices.Reverse(rows)
 	return rows

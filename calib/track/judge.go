@@ -153,6 +153,21 @@ func (v *view) brokenRow(name string, i int) error {
 	return err
 }
 
+// checkBlank refuses blank lines among rows of a single number each, without a time that
+// tells: they can be missing samples, and they can be nothing. Where every second line
+// is blank they are nothing.
+func (a *parsed) checkBlank(name string, lay *layout, p *plan) error {
+	if p.time != nil || p.date != nil || p.frame != nil || len(a.blank) == 0 || 2*len(a.blank) >= a.rows {
+		return nil
+	}
+	first := a.blank[0]
+	if first > a.lineOf(a.rows-1) {
+		return nil // behind the last row
+	}
+	return &Error{File: name, Line: lay.firstLine + first, Code: CodeRow, What: "a blank line among rows of one number: a missing sample or none",
+		Remedy: "write NaN for a missing sample, or remove the blank lines"}
+}
+
 // dropEmpty takes rows off the end that hold neither a time nor a position: spreadsheets
 // write them. It returns their number.
 func (a *parsed) dropEmpty(p *plan) (dropped int) {

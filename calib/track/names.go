@@ -34,6 +34,7 @@ type columnInfo struct {
 	empty   bool // no cell of the sample holds anything
 	clock   bool
 	whole   bool // every number of the sample is whole
+	marked  bool // more than nine numbers in ten of the sample have a decimal mark
 }
 
 func words(s string) map[string]bool {

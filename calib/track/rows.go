@@ -23,11 +23,12 @@ const (
 
 // field is one column of the file.
 type field struct {
-	kind  fieldKind
-	out   int     // index of the kept column
-	shift int     // the unit as a power of ten
-	times float64 // the unit of a timesField
-	name  string  // header, for messages
+	kind   fieldKind
+	out    int     // index of the kept column
+	shift  int     // the unit as a power of ten
+	times  float64 // the unit of a timesField
+	name   string  // header, for messages
+	marked bool    // nearly all numbers of the sample have a decimal mark
 }
 
 // parser turns blocks into rows. Each worker has its own.
@@ -42,6 +43,7 @@ type parser struct {
 	total  int   // bad lines, with those that are not in bad
 	skip   []int // rows that hold no sample
 	again  []int // rows that repeat the header
+	blank  []int // rows that are blank
 	recent string
 	recall float64
 }
@@ -62,6 +64,7 @@ type parsed struct {
 	rows    int   // samples
 	skip    []int // lines of data that hold no sample, ascending
 	again   []int // those that repeat the header
+	blank   []int // those that are blank
 	lines   int   // lines of data
 	base    int   // lines of data before these
 	bad     []badLine
@@ -95,12 +98,14 @@ func collect(in *feed, parsers []*parser) *parsed {
 	for _, p := range parsers {
 		all.skip = append(all.skip, p.skip...)
 		all.again = append(all.again, p.again...)
+		all.blank = append(all.blank, p.blank...)
 		all.bad = append(all.bad, p.bad...)
 		all.total += p.total
 		p.skip, p.again, p.bad, p.total = nil, nil, nil, 0
 	}
 	slices.Sort(all.skip)
 	slices.Sort(all.again)
+	slices.Sort(all.blank)
 	slices.SortFunc(all.bad, func(a, b badLine) int { return a.err.Line - b.err.Line })
 	all.bad = all.bad[:min(len(all.bad), keptBad)]
 	all.rows = all.lines - len(all.skip)

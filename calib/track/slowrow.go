@@ -19,6 +19,9 @@ func (p *parser) slowRow(b block, at, row int) (next int) {
 		if p.lay.isRepeat(text) {
 			p.again = append(p.again, row)
 		}
+		if len(p.lay.fields) == 1 && isBlank(text) {
+			p.blank = append(p.blank, row)
+		}
 		p.skip = append(p.skip, row)
 		return end + 1
 	}
@@ -133,6 +136,9 @@ func (p *parser) value(f *field, text string) (float64, error) {
 		return p.lay.clock.seconds(text)
 	case beadField:
 		return p.bead(text)
+	}
+	if f.marked && strings.ContainsAny(text, ".,") && strings.IndexByte(text, p.lay.mark) < 0 {
+		return 0, twoMarks
 	}
 	v, err := generalNumber(text, p.lay.mark, p.lay.thousands, f.shift)
 	if f.kind == timesField {

@@ -260,17 +260,28 @@ func (v *view) findFirst() int {
 	return best
 }
 
-// hasHeader tells whether the line above the data has the width of the rows.
-func (v *view) hasHeader() bool { return v.width > 0 && v.headerWidth() == v.width }
+// hasHeader tells whether the line above the data has the width of the rows, but for a
+// delimiter at its end.
+func (v *view) hasHeader() bool {
+	if v.width == 0 || v.first < 1 {
+		return false
+	}
+	n := v.headerWidth()
+	return n == v.width || n == v.width+1 && strings.HasSuffix(strings.TrimRight(v.lines[v.first-1].text, " "), string(v.delimiter))
+}
 
 // preferVisible takes a delimiter that can be seen where blanks cut more numbers from
 // the rows, as in "4 102 054.0", but do not fit the line above the data.
 func preferVisible(lines []textLine, best *view, wanted byte) *view {
-	if wanted != 0 || best.delimiter != ' ' || best.first < 1 || best.hasHeader() {
+	if wanted != 0 || best.delimiter != ' ' || best.first < 1 {
 		return best
 	}
 	for _, d := range delimiters {
-		if v := look(lines, d.char); d.char != ' ' && v.width >= 2 && v.first == best.first && v.hasHeader() {
+		if d.char == ' ' || d.char == ',' && best.hasHeader() || !strings.Contains(lines[best.first].text, string(d.char)) {
+			continue
+		}
+		v := look(lines, d.char)
+		if trailing := v.first >= 0 && v.headerWidth() == v.width-1 && v.alwaysEmpty(v.width-1); v.width >= 2 && v.first == best.first && (v.hasHeader() || trailing) {
 			return v
 		}
 	}

@@ -180,6 +180,9 @@ func (lay *layout) table(p *plan, rows *parsed, beads *beadIndex, opt Options) (
 	if err := rows.checkRepeats(opt.Name, lay, p); err != nil {
 		return nil, err
 	}
+	if err := rows.checkBlank(opt.Name, lay, p); err != nil {
+		return nil, err
+	}
 	tab := &table{plan: p, columns: rows.columns, rows: rows.rows, shifted: true, pre: lay.preamble, undated: lay.isUndated(p)}
 	if p.bead != nil {
 		tab.beads = beads.names
