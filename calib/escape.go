@@ -19,7 +19,7 @@ type Escape struct {
 	Drag         Quantity `json:"force_by_drag"` // the same by Stokes drag, computed drag times largest constant speed before, N; triangle
 	AtLoss       Quantity `json:"drag_at_loss"`  // computed drag times speed of the stage when the bead was lost, N; triangle
 	Margin       Float    `json:"excursion_m"`   // the excursion that showed the loss, m; null in a detector's unit
-	Text         string   `json:"text"`
+	Text         string   `json:"text"`          // what it says, for a person
 }
 
 // CodeLost is the code of the finding that a bead was lost from a driven recording.

@@ -18,7 +18,7 @@ func (a *app) explainCommand() *cobra.Command {
 front of the finding in the text, and under "code" in JSON. Without a code it
 lists all.`,
 		Example: "  beadwell explain\n  beadwell explain dropped-samples",
-		Args:    cobra.MaximumNArgs(1),
+		Args:    atMostOneArgument("code of a finding"),
 		RunE: func(_ *cobra.Command, args []string) error {
 			if len(args) == 0 {
 				return report.ExplanationList(a.Out, calib.Explanations())

@@ -69,6 +69,7 @@ func (a *app) root() *cobra.Command {
 		a.schemaCommand(),
 		a.manCommand(),
 	)
+	completionCommand(root)
 	return root
 }
 
@@ -100,7 +101,9 @@ func unknownCommand(root *cobra.Command, name string) error {
 		}
 	}
 	remedy := "the commands are listed by beadwell --help"
-	if near := nearest(name, names); near != "" {
+	if near := nearest(name, append(names, "version")); near == "version" {
+		remedy = "write beadwell --version"
+	} else if near != "" {
 		remedy = "did you mean beadwell " + near + "?"
 	}
 	return usageError(remedy, "%q is not a command", name)
@@ -204,6 +207,37 @@ func oneArgument(what string) cobra.PositionalArgs {
 			return usageError("write: "+cmd.UseLine(), "%s needs %s, but was given %d arguments", cmd.CommandPath(), what, len(args))
 		}
 		return nil
+	}
+}
+
+// atMostOneArgument refuses more than one.
+func atMostOneArgument(what string) cobra.PositionalArgs {
+	return func(cmd *cobra.Command, args []string) error {
+		if len(args) > 1 {
+			return usageError("write: "+cmd.UseLine(), "%s takes one %s, but was given %d arguments", cmd.CommandPath(), what, len(args))
+		}
+		return nil
+	}
+}
+
+// completionCommand gives the completion command of the command library errors like those of
+// the other commands.
+func completionCommand(root *cobra.Command) {
+	root.InitDefaultCompletionCmd()
+	for _, cmd := range root.Commands() {
+		if cmd.Name() != "completion" {
+			continue
+		}
+		cmd.Args = cobra.ArbitraryArgs
+		cmd.RunE = func(cmd *cobra.Command, args []string) error {
+			if len(args) == 0 {
+				return usageError("write: beadwell completion bash, or zsh, fish, powershell", "beadwell completion needs the name of a shell")
+			}
+			return usageError("write: beadwell completion bash, or zsh, fish, powershell", "%q is not a shell that completion is made for", args[0])
+		}
+		for _, shell := range cmd.Commands() {
+			shell.Args = noArguments
+		}
 	}
 }
 
