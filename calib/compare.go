@@ -158,6 +158,27 @@ func pText(p float64) string {
 	return fmt.Sprintf("p = %.2g", p)
 }
 
+// openAbove removes the upper ends of the pooled interval that stand at the end of the domain: the stiffness
+// grows with the corner frequency on the line of the computed drag, up to where samples are white.
+func (w *work) openAbove(o relaxation.Offsets) relaxation.Offsets {
+	edge := math.Log(relaxation.HighestCorner) - w.pooled.maximum.At[0] - edgeWidth
+	for _, end := range []*float64{&o.High68, &o.High95} {
+		if *end > edge {
+			*end = math.Inf(1)
+		}
+	}
+	return o
+}
+
+// edgeWidth is the distance in the logarithm within which the search for an end may stop short of the domain's.
+const edgeWidth = 0.05
+
+// noMaximum is the relative uncertainty, a factor of e^2, beyond which the likelihood of the stiffness is taken
+// to have no maximum within the domain. Below it the adopted stiffness is given with the interval that its likelihood
+// has, open to one side if need be: to withhold it where that interval is wide would leave the recordings in which
+// chance made it narrow, and those cover less than they say.
+const noMaximum = 2
+
 // adopt combines the routes into one stiffness.
 func (w *work) adopt() {
 	a := &w.axis.Adopted
@@ -181,21 +202,22 @@ func (w *work) adopt() {
 		a.Weights = map[string]Float{RouteDrag: Float(drag), RouteAmplitude: Float(1 - drag)}
 		o := relaxation.Normal(p.sdTotal)
 		if p.sdTotal > smallEnough {
-			o = p.problem.Profile(p.maximum, p.weights, p.sdTotal).Scaled(w.bartlett())
-		}
-		if math.IsInf(o.Low95, 0) || math.IsInf(o.High95, 0) || p.sdTotal > hopeless {
-			reason := tooUncertain(p.sdTotal)
-			if p.sdTotal <= hopeless { // an end of the interval is open
-				reason = tooUncertain(math.Inf(1))
-			}
-			a.Stiffness, a.Withheld = Withheld("N/m", reason), reason
-			return
+			o = w.openAbove(p.problem.Profile(p.maximum, p.weights, p.sdTotal)).Scaled(w.bartlett())
 		}
 		stat, rest := o.Scaled(p.sdData/p.sdTotal), math.Sqrt(p.rest)
 		for _, moved := range p.moved {
 			rest = math.Hypot(rest, moved)
 		}
-		a.Stiffness = stiffness(p.value, p.sdData, stat, math.Hypot(p.sdTotal, rest), o.Widened(rest))
+		combined := o.Widened(rest)
+		if math.IsInf(o.Low95, 0) || p.sdTotal > noMaximum {
+			reason := tooUncertain(math.Inf(1))
+			if low := p.value - combined.Low95; math.IsInf(o.High95, 0) && !math.IsInf(low, 0) {
+				reason = fmt.Sprintf("the recording bounds the stiffness from below only: it is above %.3g pN/um (95 %%)", math.Exp(low)*1e6)
+			}
+			a.Stiffness, a.Withheld = Withheld("N/m", reason), reason
+			return
+		}
+		a.Stiffness = stiffness(p.value, p.sdData, stat, math.Hypot(p.sdTotal, rest), combined)
 		w.adoptedLeg = combinedLegs
 	}
 	w.budget()

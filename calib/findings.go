@@ -31,6 +31,11 @@ func (w *work) findings() []Finding {
 			Text:   "The localisation noise is not stated, and at this sampling rate it cannot be told from the motion of the bead; the adopted stiffness rests on the computed drag.",
 			Remedy: `measure the noise with a stuck bead and state it with --noise "4(1) nm"`, Value: nan, Limit: nan})
 	}
+	if u := w.axis.Adopted.Stiffness.Combined; u != nil && !u.Interval95[1].Known() {
+		out = append(out, Finding{Code: CodeOneSided, Severity: Doubtful, Axis: w.axisName,
+			Text:   "The recording bounds the adopted stiffness from below only: its interval has no upper end, and the value says little.",
+			Remedy: "state the localisation noise, sample faster, or record longer", Value: u.Interval95[0], Limit: nan, Unit: "N/m"})
+	}
 	for _, l := range w.record.Lines {
 		if w.drive != nil && l.Frequency == w.drive.frequency {
 			continue

@@ -140,6 +140,7 @@ const (
 	CodeLine          = "narrow-line"
 	CodeInconsistent  = "routes-disagree"
 	CodeWithheld      = "estimate-withheld"
+	CodeOneSided      = "bounded-from-below"
 	CodeNoiseUnknown  = "noise-not-separable"
 	CodeHydrodynamics = "frequency-dependent-drag"
 	CodeSelfScaled    = "sensitivity-from-drag"

@@ -30,13 +30,15 @@ type Likelihood interface {
 // Below, a record would hold no relaxation; above, exp(-2 pi 3) = 7e-9 of the
 // correlation is left after one sample.
 const (
-	lowestCorner  = 1e-9
-	highestCorner = 3.0
+	lowestCorner = 1e-9
+
+	// HighestCorner is the end of the domain at which samples are independent of each other.
+	HighestCorner = 3.0
 )
 
 func inDomain(p Parameters) bool {
 	x := math.Exp(p[0])
-	return x > lowestCorner && x < highestCorner && math.Abs(p[1]) < 60 && !math.IsNaN(p[2])
+	return x > lowestCorner && x < HighestCorner && math.Abs(p[1]) < 60 && !math.IsNaN(p[2])
 }
 
 // Spectral is the likelihood of a record without missing samples, in the form of
