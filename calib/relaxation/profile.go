@@ -37,8 +37,7 @@ func (o Offsets) Widened(sd float64) Offsets {
 // the information: the values at which twice the profiled log-likelihood falls by
 // the squared normal quantile. Unlike estimate plus or minus z sd they do not
 // depend on the scale in which the parameter is written, and they hold their
-// coverage for short records (docs/method.md, Eq. 21). A side on which the likelihood
-// does not fall that far before the end of the domain has no end.
+// coverage for short records (docs/method.md, Eq. 21).
 func (pr Problem) Profile(m Maximum, weights Parameters, sd float64) Offsets {
 	return Offsets{
 		Low68: pr.side(m, weights, sd, -1, 1), High68: pr.side(m, weights, sd, 1, 1),
@@ -52,7 +51,6 @@ func (pr Problem) side(m Maximum, weights Parameters, sd, sign, z float64) float
 	at := m
 	low, lowRoot := 0.0, 0.0
 	high := math.Inf(1)
-	fell := false // by more than was asked for, at some distance
 	d := z * sd
 	for range 25 {
 		root, next, ok := pr.root(m, at, weights, sign*d)
@@ -63,7 +61,6 @@ func (pr Problem) side(m Maximum, weights Parameters, sd, sign, z float64) float
 			low, lowRoot, at = d, root, next
 		} else {
 			high = math.Min(high, d)
-			fell = fell || ok
 		}
 		switch {
 		case !ok:
@@ -83,9 +80,6 @@ func (pr Problem) side(m Maximum, weights Parameters, sd, sign, z float64) float
 		if d > 30*z*sd && d > 8 { // eight e-folds: not bounded
 			return math.Inf(1)
 		}
-	}
-	if !fell {
-		return math.Inf(1)
 	}
 	return d
 }
