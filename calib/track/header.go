@@ -180,7 +180,7 @@ func (v *view) commentHeader(fits func(width int) bool) []headerRow {
 			case !fits(len(cells)):
 			case h.units == h.filled() && h.units > 1:
 				units = []headerRow{h}
-			case h.roles > 0 && (2*(h.roles+h.counters) >= h.filled() || i == last && v.delimiter != ' ' && k == 0 && h.isShort()):
+			case h.roles > 0 && (2*(h.roles+h.counters) >= h.filled() || i == last && k == 0 && (v.delimiter != ' ' || strings.Contains(text, `"`)) && h.isShort()):
 				return append(units, h)
 			}
 		}

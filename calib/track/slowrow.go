@@ -87,7 +87,7 @@ func (p *parser) anyRow(cells []cell, text string, number, row int, last bool) {
 		return
 	}
 	if err := p.checkWidth(cells, text, number, last); err != nil {
-		p.reject(row, texty, err)
+		p.reject(row, texty && !(err.Code == CodeCut && p.lay.knownText), err)
 		return
 	}
 	for k := range p.lay.fields {
