@@ -40,6 +40,8 @@ type Row struct {
 	FreeBead    []string    `json:"free_bead,omitempty"`
 	FamilyWiseP calib.Float `json:"family_wise_p_value"`
 	Axes        []RowAxis   `json:"axes"`
+	// Flow is what a stage at constant speed gives to a line through several recordings.
+	Flow []calib.FlowPart `json:"flow,omitempty"`
 }
 
 // Number is a value with its uncertainties; null where there is none.
@@ -110,6 +112,10 @@ func resultRow(file, folder string, r *calib.Result) Row {
 	row.Temperature, row.Viscosity = number(r.Medium.Temperature), number(r.Medium.Viscosity)
 	row.Power, row.HeightScale = settingNumber(r, "laser.power", ""), settingNumber(r, "chamber.height_scale", "")
 	row.FitScale = slices.ContainsFunc(r.Settings, func(s calib.Setting) bool { return s.Key == "chamber.height_scale" && s.Text == FitWord })
+	row.Flow = calib.FlowParts(r)
+	for i := range row.Flow {
+		row.Flow[i].Name = file
+	}
 	for _, a := range r.Axes {
 		free := unknown
 		if f := a.FreeDrag; f != nil {

@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"encoding/csv"
 	"encoding/json"
+	"fmt"
 	"math"
 	"os"
 	"slices"
@@ -22,6 +23,8 @@ type Summary struct {
 	Schema string   `json:"schema"`
 	Rows   []Row    `json:"rows"`   // in natural order of the files
 	Series []Series `json:"series"` // never null
+	// Joined are the lines through recordings of one trap whose stage moves at constant speed.
+	Joined []calib.FlowJoin `json:"joined_flow,omitempty"`
 	// Notes say what the series assume.
 	Notes []string `json:"notes"`
 }
@@ -36,7 +39,25 @@ func newSummary(entries []entry, growing []Growing, opt SeriesOptions) *Summary 
 	}
 	slices.SortStableFunc(s.Rows, func(a, b Row) int { return natural(a.File, b.File) })
 	s.addSeries(opt)
+	s.join()
 	return s
+}
+
+// join makes the lines of displacement against speed.
+func (s *Summary) join() {
+	var parts []calib.FlowPart
+	for _, row := range s.Rows {
+		parts = append(parts, row.Flow...)
+	}
+	joined := calib.JoinFlow(parts)
+	if len(joined) == 0 {
+		return
+	}
+	s.Joined = joined
+	for _, j := range joined {
+		s.Notes = append(s.Notes, fmt.Sprintf("displacement against speed, axis %s: %s; stiffness %s by constant flow, %s without viscosity; slope %s, intercept %s",
+			j.Axis, j.Text, report.Of(j.Stiffness, "pN/um"), report.Of(j.Driven, "pN/um"), report.Of(j.Slope, "us"), report.Of(j.Intercept, "nm")))
+	}
 }
 
 // Counts are the rows by what came of them.

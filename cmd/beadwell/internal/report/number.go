@@ -60,6 +60,14 @@ func combined(q calib.Quantity, unit string) string {
 	return number(q.Value, u, unit)
 }
 
+// Of prints a quantity with its combined standard uncertainty and its unit; "withheld" where it is not known.
+func Of(q calib.Quantity, unit string) string {
+	if !q.Known() {
+		return "withheld"
+	}
+	return withUnit(combined(q, unit), unit)
+}
+
 // withUnit adds the unit to a number that is there.
 func withUnit(text, unit string) string {
 	if text == dash || unit == "1" || unit == "" {

@@ -50,8 +50,8 @@ func (p *printer) joined(list []calib.FlowJoin) {
 		row("displacement against speed in one line", "")
 		for _, j := range list {
 			row("axis "+j.Axis, "")
-			row("  stiffness by constant flow", withUnit(combined(j.Stiffness, stiffnessUnit), stiffnessUnit))
-			row("  the same without viscosity", withUnit(combined(j.Driven, stiffnessUnit), stiffnessUnit))
+			row("  stiffness by constant flow", Of(j.Stiffness, stiffnessUnit))
+			row("  the same without viscosity", Of(j.Driven, stiffnessUnit))
 			row("  slope, drag/stiffness", withUnit(combined(j.Slope, "us"), "us"))
 			row("  intercept", withUnit(combined(j.Intercept, "nm"), "nm"))
 		}
