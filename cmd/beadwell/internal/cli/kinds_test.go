@@ -1,9 +1,7 @@
 package cli
 
 import (
-	"bytes"
 	"context"
-	"os"
 	"path/filepath"
 	"regexp"
 	"strings"
@@ -23,7 +21,7 @@ func real(args ...string) (int, string, string) {
 }
 
 // Recordings other than a trapped bead in a stage at rest: each is simulated, read back and calibrated for
-// real, and its stored result fits the schema.
+// real, its stored result fits the schema, and all of its outputs are made from that again, byte for byte.
 func TestKinds(t *testing.T) {
 	t.Chdir(t.TempDir())
 	bead := []string{"--diameter", "1.02(2) um", "--temperature", "24.5(5) C", "--height", "8.0(5) um"}
@@ -44,6 +42,7 @@ func TestKinds(t *testing.T) {
 		}
 	}
 	detector := []string{"--exposure", "0 s"}
+	figures := []string{"--figures", "svg,png,pdf", "--figure-data"}
 	for name, c := range map[string]struct {
 		file   string
 		args   [][]string
@@ -64,7 +63,7 @@ func TestKinds(t *testing.T) {
 			[]string{`recording.background.x \(free.csv\) was sampled at 1000 Hz`}},
 	} {
 		out := strings.ReplaceAll(name, " ", "-")
-		status, text, errs := real(flat([][]string{{"calibrate", "--out", out}}, c.args, [][]string{{c.file}})...)
+		status, text, errs := real(flat([][]string{{"calibrate", "--out", out}, figures}, c.args, [][]string{{c.file}})...)
 		if status != c.status {
 			t.Errorf("%s: status %d, want %d: %s%s", name, status, c.status, text, errs)
 			continue
@@ -77,11 +76,10 @@ func TestKinds(t *testing.T) {
 		if status == StatusUsage {
 			continue
 		}
-		stored, err := os.ReadFile(filepath.Join(out, strings.TrimSuffix(c.file, ".csv"), resultJSON))
-		if err != nil {
-			t.Fatal(err)
-		}
-		document, err := jsonschema.UnmarshalJSON(bytes.NewReader(stored))
+		folder := filepath.Join(out, strings.TrimSuffix(c.file, ".csv"))
+		first := contents(t, folder)
+		compareRemade(t, folder, first, c.status, figures...)
+		document, err := jsonschema.UnmarshalJSON(strings.NewReader(first[resultJSON]))
 		if err != nil {
 			t.Fatal(err)
 		}
