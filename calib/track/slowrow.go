@@ -78,6 +78,23 @@ func (p *parser) isRow(line string) bool {
 	return true
 }
 
+// beginsRow tells whether cells are the first ones of a row, at least one of them a
+// number, rather than a line of text.
+func (p *parser) beginsRow(cells []cell) bool {
+	numbers := 0
+	for k, c := range cells[:min(len(cells), len(p.lay.fields))] {
+		f := &p.lay.fields[k]
+		if f.kind != numberField && f.kind != timesField && f.kind != clockField {
+			continue
+		}
+		if _, err := p.value(f, c.text); err != nil {
+			return false
+		}
+		numbers++
+	}
+	return numbers > 0
+}
+
 // anyRow parses the cells of a row. last tells that the line ends the file without a
 // newline.
 func (p *parser) anyRow(cells []cell, text string, number, row int, last bool) {
@@ -87,7 +104,7 @@ func (p *parser) anyRow(cells []cell, text string, number, row int, last bool) {
 		return
 	}
 	if err := p.checkWidth(cells, text, number, last); err != nil {
-		p.reject(row, texty && !(err.Code == CodeCut && p.lay.knownText), err)
+		p.reject(row, texty && !(err.Code == CodeCut && p.beginsRow(cells)), err)
 		return
 	}
 	for k := range p.lay.fields {
