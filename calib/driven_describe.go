@@ -212,10 +212,17 @@ func (w *work) drivenRatio() Quantity {
 	return exponential(e.value, math.Sqrt(record), o, math.Sqrt(total+u*u), o.Widened(inputs), "1")
 }
 
+// finestStage is the relative uncertainty of an amplitude below which it is given as exact: no sensor of a stage is as good, and
+// the scatter of its column is then that of the last digit.
+const finestStage = 1e-6
+
 func (w *work) describeLine(d *Driven) {
 	r := &w.reply
 	amplitude, record, stated := w.drive.amplitude(w.stageBlur())
 	d.Amplitude = input(amplitude, math.Hypot(record, stated)*amplitude, "m")
+	if math.Hypot(record, stated) < finestStage {
+		d.Amplitude = Exact(amplitude, "m")
+	}
 	d.Power = around(r.power, r.powerU*r.power, "m2")
 	ratio := w.fit.Corner / w.drive.frequency
 	sd, _ := w.fit.SD(alongCorner)

@@ -56,6 +56,9 @@ func kindRows(r *calib.Result) []kindRow {
 				remark = "from " + b.Name
 			}
 			add("noise of the background", b.Noise, unit, remark)
+			for _, l := range b.Lines {
+				rows = append(rows, kindRow{a.Name, "narrow line of the background", plainNumber(l.Frequency, "Hz"), "amplitude " + Of(calib.Exact(float64(l.Amplitude), b.Noise.Unit), unit)})
+			}
 		}
 	}
 	return append(rows, trapRows(r)...)

@@ -159,7 +159,10 @@ func (p *printer) readAs() {
 	if rec.Rate.Known() && rec.Duration.Known() {
 		line += fmt.Sprintf(" at %s, %s", hertz(rec.Rate), plainNumber(rec.Duration, "s"))
 	}
-	p.paragraph("", line+"; "+p.medium())
+	if medium := p.medium(); medium != "" {
+		line += "; " + medium
+	}
+	p.paragraph("", line)
 }
 
 // medium tells bead and liquid in half a line.
@@ -187,6 +190,9 @@ func (p *printer) medium() string {
 
 // assumed lists the settings that nobody stated.
 func (p *printer) assumed() {
+	if p.result.Role == calib.RoleBackground { // no liquid and no bead enters it
+		return
+	}
 	var parts []string
 	for _, s := range p.result.Settings {
 		if s.Assumed {
