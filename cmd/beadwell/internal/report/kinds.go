@@ -57,7 +57,7 @@ func kindRows(r *calib.Result) []kindRow {
 			}
 			add("noise of the background", b.Noise, unit, remark)
 			for _, l := range b.Lines {
-				rows = append(rows, kindRow{a.Name, "narrow line of the background", plainNumber(l.Frequency, "Hz"), "amplitude " + Of(calib.Exact(float64(l.Amplitude), b.Noise.Unit), unit)})
+				rows = append(rows, kindRow{a.Name, "narrow line of the background", fmt.Sprintf("%.6g Hz", float64(l.Frequency)), "amplitude " + lineAmplitude(l, b.Noise.Unit)})
 			}
 		}
 	}
@@ -131,6 +131,14 @@ func perDetectorUnit(unit string) string {
 		return "um"
 	}
 	return "um/" + unit
+}
+
+// lineAmplitude prints the amplitude of a line with three digits.
+func lineAmplitude(l calib.NoiseLine, unit string) string {
+	if unit == "m" {
+		return fmt.Sprintf("%.3g nm", 1e9*float64(l.Amplitude))
+	}
+	return fmt.Sprintf("%.3g %s", float64(l.Amplitude), unit)
 }
 
 // correlationWords tells how a fitted value goes with the corner frequency.
