@@ -61,7 +61,7 @@ func goodness(f *Fit, r *Record) Goodness {
 }
 
 // whitened groups the spectrum of the innovations, which is flat for the right model however many samples are
-// missing between them (docs/method.md, Eq. 59). It returns nil where the innovations are not those of the fit: for a
+// missing between them (docs/method.md, Eq. 18). It returns nil where the innovations are not those of the fit: for a
 // part of the band, and for other spectra.
 func (f *Fit) whitened(r *Record) []Point {
 	if f.Method != Exact {
