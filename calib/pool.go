@@ -112,9 +112,17 @@ func (w *work) setRegime() {
 // poolGrid is the number of corner frequencies that are tried, in equal ratios, for a start.
 const poolGrid = 64
 
+// A drag-free fit that knows the corner frequency to surelyOne has one maximum, and where the computed drag costs it less than
+// nearMaximum of log-likelihood, the maximum with that drag is the same: a scan, which takes longer than the search
+// itself, could not find another.
+const (
+	surelyOne   = 0.1
+	nearMaximum = 5
+)
+
 // poolStart scans corner frequencies on the line of the computed drag, each with the
 // noise that fills up the recorded variance where that is not stated, and returns the
-// best of them and of the drag-free fit; with a fitted photodiode only of the latter.
+// best of them and of the drag-free fit; only of the latter where that is near, or has a fitted photodiode.
 func (w *work) poolStart() relaxation.Parameters {
 	p := &w.pooled
 	best, bestValue := relaxation.Parameters{}, math.Inf(-1)
@@ -130,6 +138,9 @@ func (w *work) poolStart() relaxation.Parameters {
 		at[0] += gap
 		at[1] += gap
 		try(at)
+		if sd, _ := w.fit.SD(alongCorner); sd < surelyOne && bestValue > w.fit.Maximum.Value-nearMaximum {
+			return best
+		}
 	}
 	if _, fitted := w.fittedDiode(); fitted {
 		return best // each point of a scan would be a search for the photodiode

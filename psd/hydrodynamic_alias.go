@@ -101,14 +101,28 @@ func chebyshevNode(j int) float64 {
 	return (1 + math.Cos(math.Pi*(float64(j)+0.5)/aliasNodes)) / 4
 }
 
+// chebyshevAngles are cos(k at_j) of the nodes.
+var chebyshevAngles = func() (table [aliasNodes][aliasNodes]float64) {
+	for j := range table {
+		at := math.Pi * (float64(j) + 0.5) / aliasNodes
+		for k := range table[j] {
+			table[j][k] = math.Cos(float64(k) * at)
+		}
+	}
+	return table
+}()
+
 // chebyshevRow returns the weights by which the values at the nodes make the value at phi.
 func chebyshevRow(phi float64) (row [aliasNodes]float64) {
 	angle := math.Acos(math.Max(-1, math.Min(1, 4*phi-1)))
+	var here [aliasNodes]float64
+	for k := 1; k < aliasNodes; k++ {
+		here[k] = math.Cos(float64(k) * angle)
+	}
 	for j := range row {
-		at := math.Pi * (float64(j) + 0.5) / aliasNodes
 		sum := 0.5
 		for k := 1; k < aliasNodes; k++ {
-			sum += math.Cos(float64(k)*angle) * math.Cos(float64(k)*at)
+			sum += here[k] * chebyshevAngles[j][k]
 		}
 		row[j] = 2 * sum / aliasNodes
 	}
