@@ -220,7 +220,10 @@ func studyKind(ctx context.Context, index int, c kindCell, n int, s *KindScore) 
 			return err
 		}
 		r, err := calib.Calibrate(ctx, rec, set, calib.Options{})
-		if err != nil {
+		switch {
+		case ctx.Err() != nil: // this one was not done
+			return nil
+		case err != nil:
 			s.Failed++
 			continue
 		}

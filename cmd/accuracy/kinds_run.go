@@ -44,10 +44,7 @@ func runKinds(ctx context.Context, p plan) error {
 		if err := studyKind(ctx, i, c, n, s); err != nil {
 			return fmt.Errorf("%s: %w", c.Name, err)
 		}
-		if ctx.Err() != nil {
-			break
-		}
-		known[c.Name] = s
+		known[c.Name] = s // what an interrupted run has counts too
 		fmt.Printf("%s: %d recordings, %d failed, %s\n", c.Name, s.Runs, s.Failed, time.Since(begin).Round(time.Second))
 		for _, name := range s.Order {
 			t := s.Scores[name]
