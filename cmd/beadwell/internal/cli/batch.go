@@ -251,8 +251,8 @@ func (a *app) printPlan(ctx context.Context, job batch.Job) error {
 			word = "calibrate"
 			open++
 		}
-		a.print("%s  %s -> %s\n", word, t.Path, filepath.Join(job.Out, t.Folder))
+		a.print("%s  %s -> %s", word, t.Path, filepath.Join(job.Out, t.Folder))
 	}
-	a.print("%d to calibrate, %d unchanged\n", open, len(tasks)-open)
+	a.print("%d to calibrate, %d unchanged", open, len(tasks)-open)
 	return nil
 }

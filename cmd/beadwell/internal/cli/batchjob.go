@@ -268,7 +268,7 @@ func (b *batchWork) outputs(ctx context.Context, r *calib.Result) ([]batch.Outpu
 	return all, err
 }
 
-// print writes to standard output; a failed write shows when it is flushed.
+// print writes one line to standard output; a failed write shows when it is flushed.
 func (a *app) print(format string, values ...any) {
-	fmt.Fprint(a.Out, report.PlainLines(fmt.Sprintf(format, values...)))
+	fmt.Fprintln(a.Out, report.Plain(fmt.Sprintf(format, values...)))
 }

@@ -116,7 +116,7 @@ type app struct {
 	started bool // the command line was understood, and the command runs
 }
 
-// say writes one line to standard error.
+// say writes one line to standard error. A line break in a name is no line break there.
 func (a *app) say(format string, values ...any) {
-	fmt.Fprintln(a.Err, report.PlainLines(fmt.Sprintf(format, values...)))
+	fmt.Fprintln(a.Err, report.Plain(fmt.Sprintf(format, values...)))
 }

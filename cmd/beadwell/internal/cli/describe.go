@@ -59,13 +59,14 @@ func problemText(p report.Problem) string {
 }
 
 func place(p report.Problem) string {
+	file := report.Plain(p.File)
 	switch {
 	case p.Line > 0 && p.Column > 0:
-		return fmt.Sprintf("%s:%d:%d", p.File, p.Line, p.Column)
+		return fmt.Sprintf("%s:%d:%d", file, p.Line, p.Column)
 	case p.Line > 0:
-		return fmt.Sprintf("%s:%d", p.File, p.Line)
+		return fmt.Sprintf("%s:%d", file, p.Line)
 	}
-	return p.File
+	return file
 }
 
 // hintMark stands between the message and the hint of an error text.
