@@ -32,7 +32,7 @@ func TestLoadFull(t *testing.T) {
 	}
 	places := map[string]string{
 		"bead.diameter|": "3:12", "medium.temperature|": "8:15", "recording.noise|y": "18:30", "recording.columns|stage": "19:51",
-		"detector.alpha|": "29:9", "fit.exclude|": "33:1",
+		"detector.alpha|": "30:9", "fit.exclude|": "34:1",
 	}
 	for key, want := range places {
 		name, axis, _ := strings.Cut(key, "|")

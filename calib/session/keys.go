@@ -119,6 +119,8 @@ var registry = []Key{
 
 	{Name: "recording.max_memory", Flag: "max-memory", Dimensions: dims(quantity.Memory), Limits: "200 MB to 1000000 GB",
 		Placeholder: "4 GB", Meaning: "memory to keep to; a recording that needs more is analysed in parts"},
+	{Name: "recording.max_text", Flag: "max-text", Dimensions: dims(quantity.Memory), Limits: "1 kB to 1000000 GB",
+		Placeholder: "200 GB", Meaning: "longest text of a recording, decompressed, that is read; 64 GiB when not stated"},
 
 	{Name: "detector.alpha", Flag: "alpha", Dimensions: dims(quantity.Dimensionless), Words: []string{"fit"}, Limits: "0 to 1",
 		Placeholder: "0.25", Meaning: "share of the signal that a photodiode passes without delay; fit to find it"},

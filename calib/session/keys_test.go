@@ -39,8 +39,8 @@ func TestRegistry(t *testing.T) {
 			testLimits(t, key)
 		}
 	}
-	if len(names) != 36 {
-		t.Errorf("%d settings, want 36: update this count and the documentation", len(names))
+	if len(names) != 37 {
+		t.Errorf("%d settings, want 37: update this count and the documentation", len(names))
 	}
 }
 

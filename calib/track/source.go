@@ -152,7 +152,7 @@ func (l *limited) Read(p []byte) (int, error) {
 	n, err := l.reader.Read(p)
 	if l.left -= int64(n); l.left < 0 {
 		return 0, &Error{File: l.name, Code: CodeLimit, What: fmt.Sprintf("the content is longer than the limit of %d bytes", l.limit),
-			Remedy: "raise the limit, or check that the compressed file is what it should be"}
+			Remedy: "raise the limit (--max-text '200 GB'), or check that the compressed file is what it should be"}
 	}
 	return n, err
 }

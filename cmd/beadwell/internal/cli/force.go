@@ -49,7 +49,7 @@ displacement_m, force_N, force_noise_u_N and force_calibration_u_N.`
 
 // forceSettings are the settings that have an effect on forces.
 var forceSettings = []string{"recording.rate", "recording.unit", "recording.pixel", "recording.noise", "recording.columns", "recording.sensitivity",
-	"recording.bead", "recording.time_unit", "recording.delimiter", "recording.decimal"}
+	"recording.bead", "recording.time_unit", "recording.delimiter", "recording.decimal", "recording.max_text"}
 
 func (a *app) forceCommand(run func(context.Context, *app, forceOptions) error) *cobra.Command {
 	var o forceOptions

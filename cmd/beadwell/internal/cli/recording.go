@@ -289,6 +289,9 @@ func (s *source) readOptions(path string, settings *session.Settings) (track.Opt
 	if o.TimeUnit = word("recording.time_unit"); o.TimeUnit == "frames" {
 		o.TimeUnit = "frame"
 	}
+	if limit, ok := settings.Lookup("recording.max_text", ""); ok {
+		o.MaxBytes = int64(limit.Value.SI)
+	}
 	if rate, ok := settings.Lookup("recording.rate", ""); ok {
 		o.Rate, o.RateForced = rate.Value.SI, rate.Origin == session.FromFlag
 	}

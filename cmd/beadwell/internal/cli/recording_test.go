@@ -26,9 +26,9 @@ func settingsOf(t *testing.T, origin session.Origin, texts map[string]string) *s
 func TestReadOptions(t *testing.T) {
 	texts := map[string]string{
 		"recording.rate": "2 kHz", "recording.unit": "nm", "recording.time_unit": "frames", "recording.decimal": "comma",
-		"recording.delimiter": "tab", "recording.bead": "7", "recording.columns": "time=t, x=2, z=Z",
+		"recording.delimiter": "tab", "recording.bead": "7", "recording.columns": "time=t, x=2, z=Z", "recording.max_text": "2 GB",
 	}
-	want := track.Options{Name: "run.csv", Rate: 2000, Unit: "nm", TimeUnit: "frame", Decimal: "comma", Delimiter: "tab", Bead: "7",
+	want := track.Options{Name: "run.csv", Rate: 2000, Unit: "nm", TimeUnit: "frame", Decimal: "comma", Delimiter: "tab", Bead: "7", MaxBytes: 2e9,
 		Columns: map[string]string{"time": "t", "x": "2", "z": "Z"}}
 	for origin, forced := range map[session.Origin]bool{session.FromSession: false, session.FromTracks: false, session.FromFlag: true} {
 		want.RateForced, want.UnitForced = forced, forced
