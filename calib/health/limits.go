@@ -14,6 +14,7 @@ const (
 	keptBad       = 0.07 // 2 pi fc W = 27
 	slowDoubtful  = 0.6  // standard uncertainty of ln(fc) that the sampling allows at best
 	slowBad       = 1.5
+	unsureCorner  = 0.4 // standard uncertainty of ln(fc) beyond which the corner says little of the length
 	misfitBeyond  = 1e-4 // p-value
 	// whiteMost is 1 - rho(1) above which a slow process cannot be the main motion: for a
 	// record of few relaxation times it is the share of the noise.
@@ -50,8 +51,12 @@ func (v *view) short() Check {
 		return c.spared("most of what is seen is noise or fast motion, which tells nothing of the length")
 	}
 	c.Value = v.Process.Corner * v.h.n / v.rate
+	spread := v.spread()
+	if spread > unsureCorner && spread > 3/math.Sqrt(math.Pi*c.Value) { // what makes it uncertain is not the length: 1/sqrt(pi T fc)
+		return c.spared("the corner frequency is too uncertain here, by noise or slow sampling, to tell how long the record is")
+	}
 	// A record of just 30 is found shorter half of the time: it must be by three standard uncertainties.
-	sure := c.Value * math.Exp(3*math.Min(v.spread(), 0.4))
+	sure := c.Value * math.Exp(3*math.Min(spread, unsureCorner))
 	c.Text = fmt.Sprintf("The record is %s times as long as 1/fc.", digits(c.Value))
 	switch {
 	case c.Value < shortBad:
@@ -75,11 +80,13 @@ func (v *view) blurred() Check {
 	}
 	a := 2 * math.Pi * v.Process.Corner * v.exposure
 	c.Value, _ = relaxation.BlurVariance(a)
+	// the least blur that the corner frequency allows, by three of its standard uncertainties where they are known
+	sure, _ := relaxation.BlurVariance(a * math.Exp(-3*v.CornerSD))
 	c.Text = fmt.Sprintf("The exposure leaves %s of the variance.", percent(c.Value))
 	switch {
-	case c.Value < keptBad:
+	case sure < keptBad:
 		c.Level = Bad
-	case c.Value < keptDoubtful:
+	case sure < keptDoubtful:
 		c.Level = Doubtful
 	default:
 		return c

@@ -66,6 +66,7 @@ type idealBench struct {
 	truth, stated scene
 	sights        []sight
 	known         map[[2]float64][]expected // fits by exposure and noise
+	moves         map[string][][]float64    // priors by the freed cause
 }
 
 // sight is one axis of one recording.
@@ -89,7 +90,7 @@ type expected struct {
 }
 
 func newIdealBench(truth, stated scene, companions []func(scene) scene) (*idealBench, bool) {
-	b := &idealBench{truth: truth, stated: stated, known: map[[2]float64][]expected{}}
+	b := &idealBench{truth: truth, stated: stated, known: map[[2]float64][]expected{}, moves: map[string][][]float64{}}
 	same := func(s scene) scene { return s }
 	for _, of := range append([]func(scene) scene{same}, companions...) {
 		t := of(truth)
@@ -268,6 +269,9 @@ func (b *idealBench) priors(freed string) [][]float64 {
 	if b.stated.exact {
 		return nil
 	}
+	if known, ok := b.moves[freed]; ok {
+		return known
+	}
 	var out [][]float64
 	for _, in := range []struct {
 		code string
@@ -288,6 +292,7 @@ func (b *idealBench) priors(freed string) [][]float64 {
 			out = append(out, row)
 		}
 	}
+	b.moves[freed] = out
 	return out
 }
 
@@ -333,10 +338,10 @@ func (b *idealBench) rivals() []rival {
 
 // most is the greatest expected log-likelihood of a cause, by a scan and a finer one about its best.
 func (b *idealBench) most(h rival) float64 {
-	const steps = 60
+	const steps = 40
 	best, at := math.Inf(-1), h.low
 	low, high := h.low, h.high
-	for range 4 { // each narrows the range by a factor of 30
+	for range 3 { // each narrows the range by a factor of 20
 		for i := range steps + 1 {
 			p := low + (high-low)*float64(i)/steps
 			s := b.stated
