@@ -81,11 +81,20 @@ func (r *Result) findCause(ctx context.Context, works []*work, opt Options) erro
 			others, names = append(others, list...), append(names, c.Recording.Name)
 		}
 	}
-	if r.Diagnosis = diagnose(newBench(works, others)); r.Diagnosis != nil {
+	r.Diagnosis = diagnose(newBench(works, others))
+	if _, upset := r.event(); upset && !r.Diagnosis.explains() { // the event does
+		r.Diagnosis = nil
+	}
+	if r.Diagnosis != nil {
 		r.Diagnosis.Companions = names
 		r.Diagnosis.Text += weighedWith(names, unused)
 	}
 	return nil
+}
+
+// explains tells whether any single cause reconciles the routes.
+func (d *Diagnosis) explains() bool {
+	return d != nil && slices.ContainsFunc(d.Causes, func(c Cause) bool { return c.Tied && c.PValue >= familyLevel })
 }
 
 // allCompanions are the companions and the recordings of the free bead, each once.

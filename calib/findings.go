@@ -1,10 +1,13 @@
 package calib
 
 import (
+	"cmp"
 	"fmt"
 	"math"
+	"slices"
 
 	"beadwell/calib/drag"
+	"beadwell/psd"
 )
 
 // nearFactor is the parallel wall factor at a height.
@@ -36,14 +39,7 @@ func (w *work) findings() []Finding {
 			Text:   "The recording bounds the adopted stiffness from below only: its interval has no upper end, and the value says little.",
 			Remedy: "state the localisation noise, sample faster, or record longer", Value: u.Interval95[0], Limit: nan, Unit: "N/m"})
 	}
-	for _, l := range w.record.Lines {
-		if w.drive != nil && l.Frequency == w.drive.frequency {
-			continue
-		}
-		out = append(out, Finding{Code: CodeLine, Severity: Note, Axis: w.axisName,
-			Text:   fmt.Sprintf("A narrow line at %.6g Hz with an amplitude of %.3g nm was removed.", l.Frequency, l.Amplitude*1e9),
-			Remedy: "look for mains pickup or a vibration", Value: Float(l.Frequency), Limit: nan, Unit: "Hz"})
-	}
+	out = append(out, w.lineFindings()...)
 	out = append(out, w.diodeFindings()...)
 	if w.background != nil {
 		out = append(out, w.background.findingsOf(w.axisName)...)
@@ -55,6 +51,33 @@ func (w *work) findings() []Finding {
 	}
 	if f, ok := w.hydrodynamicFinding(); ok {
 		out = append(out, f)
+	}
+	return out
+}
+
+// mostLines is the number of narrow lines of one axis that are told one by one.
+const mostLines = 3
+
+// lineFindings tell of the narrow lines that were removed.
+func (w *work) lineFindings() []Finding {
+	var lines []psd.Line
+	for _, l := range w.record.Lines {
+		if w.drive == nil || l.Frequency != w.drive.frequency {
+			lines = append(lines, l)
+		}
+	}
+	const remedy = "look for mains pickup or a vibration"
+	finding := func(l psd.Line, text string) Finding {
+		return Finding{Code: CodeLine, Severity: Note, Axis: w.axisName, Text: text, Remedy: remedy, Value: Float(l.Frequency), Limit: Float(math.NaN()), Unit: "Hz"}
+	}
+	if n := len(lines); n > mostLines {
+		largest := slices.MaxFunc(lines, func(a, b psd.Line) int { return cmp.Compare(a.Amplitude, b.Amplitude) })
+		return []Finding{finding(largest, fmt.Sprintf("%d narrow lines from %.6g Hz to %.6g Hz were removed; the largest, at %.6g Hz, has an amplitude of %.3g nm.",
+			n, lines[0].Frequency, lines[n-1].Frequency, largest.Frequency, largest.Amplitude*1e9))}
+	}
+	var out []Finding
+	for _, l := range lines {
+		out = append(out, finding(l, fmt.Sprintf("A narrow line at %.6g Hz with an amplitude of %.3g nm was removed.", l.Frequency, l.Amplitude*1e9)))
 	}
 	return out
 }

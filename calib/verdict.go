@@ -1,10 +1,13 @@
 package calib
 
 import (
+	"cmp"
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 
+	"beadwell/calib/health"
 	"beadwell/calib/session"
 )
 
@@ -105,6 +108,34 @@ func (r *Result) judgeHealth() {
 		reason = "axis " + c.Axis + ": " + reason
 	}
 	v.Reason = strings.TrimSuffix(reason, ".") + "; cross-check: " + v.Reason
+	if _, upset := r.event(); !upset {
+		return
+	}
+	v.Reason = strings.TrimSuffix(reason, ".") + "; what was estimated from all of the recording together means nothing then"
+	for i := range r.Axes {
+		if a := &r.Axes[i].Adopted; !a.Stiffness.Known() {
+			a.Withheld = "the recording is not one process: " + lower(strings.TrimSuffix(c.Text, "."))
+			a.Stiffness = Withheld("N/m", a.Withheld)
+		}
+	}
+}
+
+// event returns the first bad check that says where in the recording something happened: an escape, a jump, a bead that
+// was held. Before and after it the recording is not one process.
+func (r *Result) event() (Check, bool) {
+	for _, c := range r.Checks {
+		if c.Level == Bad && health.Placed(c.Code) {
+			return c, true
+		}
+	}
+	return Check{}, false
+}
+
+func lower(s string) string {
+	if s == "" {
+		return s
+	}
+	return strings.ToLower(s[:1]) + s[1:]
 }
 
 func (r *Result) anyAdopted() bool {
@@ -155,13 +186,23 @@ func (r *Result) collectFindings(set *session.Settings, works []*work) {
 			Remedy: r.firstMeasurement(), Value: r.Verdict.FamilyWiseP, Limit: familyLevel, Unit: "1"})
 	}
 	r.settingFindings(set, works)
+	_, upset := r.event()
 	for _, w := range works {
 		for _, f := range append(w.findings(), w.freeFindings()...) {
-			add(f)
+			if !upset || !ofTheFit[f.Code] {
+				add(f)
+			}
 		}
 	}
 	r.checkFindings()
+	slices.SortStableFunc(r.Findings, func(a, b Finding) int { return cmp.Compare(urgency[a.Severity], urgency[b.Severity]) })
 }
+
+// urgency orders findings: what spoils the calibration comes first.
+var urgency = map[string]int{Bad: 0, Doubtful: 1, Note: 2}
+
+// ofTheFit are the findings on a fit that mean nothing where the recording is not one process.
+var ofTheFit = map[string]bool{CodeWithheld: true, CodeLine: true, CodeHydrodynamics: true, CodeNoiseUnknown: true}
 
 // settingFindings tells what was assumed or not stated.
 func (r *Result) settingFindings(set *session.Settings, works []*work) {

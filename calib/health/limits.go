@@ -14,7 +14,7 @@ const (
 	keptBad       = 0.07 // 2 pi fc W = 27
 	slowDoubtful  = 0.6  // standard uncertainty of ln(fc) that the sampling allows at best
 	slowBad       = 1.5
-	unsureCorner  = 0.4 // standard uncertainty of ln(fc) beyond which the corner says little of the length
+	unsureCorner  = 0.4  // standard uncertainty of ln(fc) beyond which the corner says little of the length
 	misfitBeyond  = 1e-4 // p-value
 	// whiteMost is 1 - rho(1) above which a slow process cannot be the main motion: for a
 	// record of few relaxation times it is the share of the noise.
@@ -46,6 +46,9 @@ func (v *view) short() Check {
 	c.Threshold = shortDoubtful
 	if !v.Known {
 		return c.spared("no corner frequency was found")
+	}
+	if why := v.upset(); why != "" {
+		return c.spared(why)
 	}
 	if v.judgeable() && v.whole.whiteness() > whiteMost {
 		return c.spared("most of what is seen is noise or fast motion, which tells nothing of the length")
