@@ -31,13 +31,12 @@ func (r *Result) examine(rec *track.Recording, works []*work) stretch {
 	in := health.Input{Rate: rec.Rate, Missing: rec.Missing, JitterRMS: rec.JitterRMS, Start: rec.Start}
 	for _, w := range works {
 		in.Exposure = w.exposure
-		process := w.soundProcess()
-		a := health.Axis{Name: w.axisName, X: w.source.Values, Process: process, Known: w.fitErr == nil || w.poolErr == nil, GoodnessP: math.NaN()}
+		process, cornerSD := w.soundProcess()
+		a := health.Axis{Name: w.axisName, X: w.source.Values, Process: process, Known: w.fitErr == nil || w.poolErr == nil, CornerSD: cornerSD, GoodnessP: math.NaN()}
 		if w.gathered != nil {
 			a.Gathered = w.gatheredHealth()
 		}
 		if w.fitErr == nil {
-			a.CornerSD, _ = w.fit.SD(alongCorner)
 			a.GoodnessP = w.fit.Goodness.PValue
 		}
 		if w.drive != nil {
@@ -68,32 +67,38 @@ func (r *Result) examine(rec *track.Recording, works []*work) stretch {
 
 // soundProcess returns the process that the record is checked against: the drag-free fit,
 // or the pooled one where the record hardly determines its corner frequency.
-func (w *work) soundProcess() relaxation.Process {
-	free, _, _, _ := w.bestProcess()
-	if w.fitErr == nil {
-		if p, ok := w.withNoiseFree(); ok {
-			return p
-		}
+//
+// With it comes the standard uncertainty of the logarithm of its corner frequency, 0 when nothing is known of it.
+func (w *work) soundProcess() (p relaxation.Process, cornerSD float64) {
+	pooled := func() float64 { return math.Sqrt(math.Max(0, w.pooled.total[0][0])) }
+	if w.fitErr != nil {
+		free, _, _, _ := w.bestProcess()
+		return free, pooled()
 	}
-	if w.fitErr != nil || w.poolErr != nil || w.pooled.regimeFC <= w.limit() {
-		return free
+	if f, ok := w.withNoiseFree(); ok {
+		sd, _ := f.SD(alongCorner)
+		return relaxation.Process{Corner: f.Corner, Variance: f.Variance, Noise: f.NoiseQ, Interval: 1 / w.rate, Exposure: w.exposure}, sd
 	}
-	return w.processAt(w.pooled.maximum.At)
+	if w.poolErr != nil || w.pooled.regimeFC <= w.limit() {
+		sd, _ := w.fit.SD(alongCorner)
+		return w.fit.Process(), sd
+	}
+	return w.processAt(w.pooled.maximum.At), pooled()
 }
 
-// withNoiseFree is the process of a fit that does not trust the stated noise, where the one that does misses the
+// withNoiseFree is a fit that does not trust the stated noise, where the one that does misses the
 // shape of the spectrum: a wrong noise or exposure would otherwise show as drifts, jumps and tones that nobody made.
-func (w *work) withNoiseFree() (relaxation.Process, bool) {
+func (w *work) withNoiseFree() (*psd.Fit, bool) {
 	if !w.noise.Known || w.form != nil || !(w.fit.Goodness.PValue < misfitLevel) {
-		return relaxation.Process{}, false
+		return nil, false
 	}
 	o := w.fitOptions()
 	o.KeepLines, o.Noise = true, psd.Noise{}
 	f, err := psd.Estimate(w.record, o)
 	if err != nil || f.Goodness.PValue < w.fit.Goodness.PValue {
-		return relaxation.Process{}, false
+		return nil, false
 	}
-	return relaxation.Process{Corner: f.Corner, Variance: f.Variance, Noise: f.NoiseQ, Interval: 1 / w.rate, Exposure: w.exposure}, true
+	return f, true
 }
 
 // misfitLevel is the p-value of the fitted spectrum from which the health checks call it odd.
