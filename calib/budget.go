@@ -166,7 +166,7 @@ func expanded(lines []BudgetLine, q Quantity) *Expanded {
 }
 
 // effectiveFreedom is the number of degrees of freedom of a combined standard uncertainty with contributions u
-// of nu degrees of freedom each (JCGM 100:2008, Eq. G.2b); +Inf when all are infinite.
+// of nu degrees of freedom each (JCGM 100:2008, Eq. G.2b; docs/method.md, Eq. 67); +Inf when all are infinite.
 func effectiveFreedom(u, nu []float64) float64 {
 	total, sum := 0.0, 0.0
 	for i := range u {

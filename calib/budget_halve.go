@@ -23,7 +23,7 @@ func toHalve(lines []BudgetLine) string {
 	sum := 0.0
 	for i, l := range sorted {
 		sum += float64(l.Contribution*l.Contribution) / total
-		// 1 - sum + sum/f^2 = 1/4
+		// 1 - sum + sum/f^2 = 1/4 (docs/method.md, Eq. 69)
 		factor := math.Sqrt(sum / (sum - 0.75))
 		if sum > 0.75 && (factor <= mostImprovement || i == len(sorted)-1) {
 			return "To halve the combined standard uncertainty: " + improvements(sorted[:i+1], factor) + "."

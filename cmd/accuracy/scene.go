@@ -159,10 +159,6 @@ func (s scene) recording(seed uint64) (*track.Recording, error) {
 		rec.Missing = missing // samples are lost on every axis at once
 		rec.Axes = append(rec.Axes, track.Axis{Name: string(s.axes[i]), Header: string(s.axes[i]), Unit: "px", ToMetre: nan, Values: x, Missing: missing})
 	}
-	if s.drive > 0 {
-		rec.Extra = []track.Column{{Header: "stage", Values: made.Stage}}
-		rec.ReadAs.Columns = append(rec.ReadAs.Columns, track.ColumnUse{Header: "stage", Role: "kept", Unit: "m"})
-	}
 	return rec, nil
 }
 
@@ -192,6 +188,7 @@ func (s scene) settings() (*session.Settings, error) {
 	}
 	if s.drive > 0 {
 		text["role"], text["drive.waveform"] = calib.RoleDriven, "sine"
+		text["drive.frequency"] = fmt.Sprintf("%g Hz", driveHz)
 		text["drive.amplitude"] = with(s.drive, carefulDrive*s.drive, "m")
 	}
 	if s.free {
