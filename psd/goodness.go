@@ -68,6 +68,9 @@ func (f *Fit) whitened(r *Record) []Point {
 		return nil
 	}
 	e := f.Process().Innovations(r.X)
+	if len(e) < leastSamples {
+		return nil
+	}
 	n := transform.GoodLength(len(e))
 	plan, err := transform.NewPlan(n)
 	if err != nil {
