@@ -93,7 +93,7 @@ func (w *work) evidenceAt(value float64, at relaxation.Parameters, data relaxati
 		r, along, move := at[0]+at[1]-w.pooled.expected, alongDrag, 0.0
 		if w.drive != nil {
 			// the length scale by the stage, under this corner frequency and this exposure
-			scale := w.reply.logScale - w.reply.bend*(at[0]-w.fit.Maximum.At[0]) + w.stageBlurred(exposure)
+			scale := w.reply.logScale + w.scaleMoved(at[0]-w.fit.Maximum.At[0]) + w.stageBlurred(exposure)
 			if kind == scaleReading {
 				r, along, move = scale, relaxation.Parameters{-w.reply.bend, 0, 0}, w.reply.record
 			} else if w.scaledByDrive() {
@@ -115,6 +115,16 @@ func (w *work) evidenceAt(value float64, at relaxation.Parameters, data relaxati
 		e.covariance = append(e.covariance, row)
 	}
 	return e
+}
+
+// scaleMoved is the change of the logarithm of the length scale by the stage when ln fc is another: that of Eq. 55 for a
+// sine, and all of it for constant speed.
+func (w *work) scaleMoved(by float64) float64 {
+	if w.drive.waveform != sineWave {
+		return -w.reply.bend * by
+	}
+	ratio := w.fit.Corner / w.drive.frequency
+	return math.Log(expectedPower(1, ratio*math.Exp(by))/expectedPower(1, ratio)) / 2
 }
 
 // stageBlurred is the change of the logarithm of the length scale when the exposure was another: what it took
