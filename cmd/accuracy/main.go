@@ -1,7 +1,7 @@
 // Command accuracy reruns the accuracy study: simulated recordings of known truth in
 // every regime, calibrated by the whole program, and scored for bias, efficiency,
-// coverage and the size of the tests. It keeps the outcomes in a file, so that a study
-// can be run in parts, and writes docs/accuracy.md from it.
+// coverage and the size of the tests; with -detection the study of false alarms and detection. It keeps the outcomes in a file, so that a study
+// can be run in parts, and writes docs/accuracy.md or docs/detection.md from it.
 package main
 
 import (
