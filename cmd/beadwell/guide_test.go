@@ -30,6 +30,19 @@ func TestPipelinesPage(t *testing.T) {
 	followPage(t, "../../docs/pipelines/README.md", "camera.csv", "quadrant.csv", "session.toml", "tracks.csv")
 }
 
+// TestBatchPage does what docs/batch.md says, with the demo session as the folder tonight.
+func TestBatchPage(t *testing.T) {
+	paths, err := filepath.Glob("../../testdata/demo/*.csv")
+	if err != nil {
+		t.Fatal(err)
+	}
+	names := []string{"session.toml"}
+	for _, path := range paths {
+		names = append(names, filepath.Base(path))
+	}
+	followPage(t, "../../docs/batch.md", names...)
+}
+
 // followPage does what a page says in an empty folder in which tonight holds some files of the
 // demo: commands run, files are written, and what the page shows as output (as JSON: on
 // standard error) is compared. A line [...] stands for any lines.

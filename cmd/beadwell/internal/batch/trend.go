@@ -177,9 +177,9 @@ func (c TrendChart) shown(value, u float64) string {
 // Text is the trend for a person.
 func (t *Trend) Text() string {
 	var b strings.Builder
-	fmt.Fprintf(&b, "%d sessions\n", len(t.Sessions))
+	fmt.Fprintf(&b, "%s\n", sessionCount(len(t.Sessions)))
 	for _, c := range t.Charts {
-		fmt.Fprintf(&b, "\n%s, %d sessions\n", c.Name, len(c.Values))
+		fmt.Fprintf(&b, "\n%s, %s\n", c.Name, sessionCount(len(c.Values)))
 		if c.Chart == nil {
 			fmt.Fprintf(&b, "  no chart: %s\n", c.Reason)
 			continue
@@ -226,4 +226,11 @@ func (t *Trend) CSV() ([]byte, error) {
 	}
 	w.Flush()
 	return b.Bytes(), w.Error()
+}
+
+func sessionCount(n int) string {
+	if n == 1 {
+		return "1 session"
+	}
+	return fmt.Sprintf("%d sessions", n)
 }

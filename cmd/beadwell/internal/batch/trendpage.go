@@ -29,7 +29,7 @@ type trendSection struct {
 
 // HTML is the trend as a page with a chart for each number.
 func (t *Trend) HTML() ([]byte, error) {
-	page := trendPage{Style: template.CSS(report.StyleSheet()), Policy: report.Policy(report.StyleSheet()), Lead: fmt.Sprintf("%d sessions", len(t.Sessions))}
+	page := trendPage{Style: template.CSS(report.StyleSheet()), Policy: report.Policy(report.StyleSheet()), Lead: sessionCount(len(t.Sessions))}
 	for i, c := range t.Charts {
 		s := trendSection{ID: fmt.Sprintf("chart-%d", i+1), Title: c.Name, Reason: c.Reason, Alarms: c.alarms()}
 		if c.Chart != nil {
