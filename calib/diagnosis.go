@@ -82,7 +82,7 @@ func (r *Result) findCause(ctx context.Context, works []*work, opt Options) erro
 		}
 	}
 	r.Diagnosis = diagnose(newBench(works, others))
-	if _, upset := r.event(); upset && !r.Diagnosis.explains() { // the event does
+	if _, upset := r.event(); upset && !r.Diagnosis.blamesDrift() { // the event is the cause
 		r.Diagnosis = nil
 	}
 	if r.Diagnosis != nil {
@@ -92,9 +92,10 @@ func (r *Result) findCause(ctx context.Context, works []*work, opt Options) erro
 	return nil
 }
 
-// explains tells whether any single cause reconciles the routes.
-func (d *Diagnosis) explains() bool {
-	return d != nil && slices.ContainsFunc(d.Causes, func(c Cause) bool { return c.Tied && c.PValue >= familyLevel })
+// blamesDrift tells whether a slow drift reconciles the routes: it can pass for an event in the recording, and is
+// none.
+func (d *Diagnosis) blamesDrift() bool {
+	return d != nil && slices.ContainsFunc(d.Causes, func(c Cause) bool { return c.Code == CauseDrift && c.Tied && c.PValue >= familyLevel })
 }
 
 // allCompanions are the companions and the recordings of the free bead, each once.

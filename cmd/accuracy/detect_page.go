@@ -25,6 +25,13 @@ standard error of 0.7 %, one of 90 % of 2.1 %.
 The bead and the trap are those of [accuracy.md](accuracy.md).
 
 `)
+	run := 0
+	for _, c := range list {
+		if known[c.Name] != nil {
+			run++
+		}
+	}
+	fmt.Fprintf(w, "Of the %d cells of the study %d have been run; the command runs the others.\n\n", len(list), run)
 	writeClean(w, list, known)
 	writeStatements(w, list, known)
 	writeRecordings(w, list, known)
@@ -113,13 +120,14 @@ says 0 another cause has the very same pattern.
 |---|---|---|---|---|---|---|---|---|---|
 `, 100*carefulDiameter, carefulKelvin, 100*carefulHeight, 100*carefulPixel, 100*carefulDrive, leastLeft)
 	for i, d := range scores {
-		power, alone := "", ""
+		power, alone, covered := "", "", ""
 		if d.Ideal.Known {
+			covered = percentOf(d.Covered, d.Top)
 			power, alone = fmt.Sprintf("%.0f", 100*d.Ideal.Power), fmt.Sprintf("%.0f", 100*d.Ideal.Alone)
 		}
 		n, of := d.Runs-d.Failed, d.Diagnosed
 		fmt.Fprintf(w, "| %s | %s | %d | %s | %s | %s | %s | %s | %s | %s |\n", cells[i].fault.name, cells[i].setup.name, n, percentOf(of, n), power,
-			percentOf(d.Top, of), percentOf(d.Alone, of), alone, percentOf(d.Excluded, of), percentOf(d.Covered, d.Top))
+			percentOf(d.Top, of), percentOf(d.Alone, of), alone, percentOf(d.Excluded, of), covered)
 	}
 	fmt.Fprintln(w)
 }
