@@ -186,7 +186,7 @@ func measureBackground(ctx context.Context, rec *track.Recording, set *session.S
 		if err := ctx.Err(); err != nil {
 			return nil, err
 		}
-		b, err := measureNoise(w.source.Values, w.rate)
+		b, err := measureNoise(w.positions(), w.rate)
 		if err != nil {
 			return nil, w.dataError(err, "record longer, or check the columns")
 		}

@@ -22,7 +22,7 @@ func blankAxis(w *work, reason string) Axis {
 			Skewness: Withheld("1", reason), Reason: reason}}
 	a.Displacement = MeanSquareDisplacement{Plateau: Withheld("m2", reason), RelaxationTime: Withheld("s", reason), Goodness: goodness,
 		Points: []MSDPoint{}, Model: []Point{}}
-	if mean, n := meanOf(w.source.Values); n > 0 && !w.unscaled {
+	if mean, n := meanOf(w.positions()); n > 0 && !w.unscaled {
 		a.Mean = Float(mean)
 	}
 	if p := w.phys; p.gamma > 0 {

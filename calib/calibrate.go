@@ -173,7 +173,7 @@ const longRecord = 1 << 21
 func runAll(ctx context.Context, works []*work) error {
 	errs := make([]error, len(works))
 	workers := runtime.GOMAXPROCS(0)
-	if len(works) > 0 && len(works[0].source.Values) >= longRecord {
+	if len(works) > 0 && len(works[0].recorded.Values) >= longRecord {
 		workers = 1
 	}
 	limit := make(chan struct{}, workers)

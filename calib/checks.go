@@ -32,7 +32,7 @@ func (r *Result) examine(rec *track.Recording, works []*work) stretch {
 	for _, w := range works {
 		in.Exposure = w.exposure
 		process, cornerSD := w.soundProcess()
-		a := health.Axis{Name: w.axisName, X: w.source.Values, Process: process, Known: w.fitErr == nil || w.poolErr == nil, CornerSD: cornerSD, GoodnessP: math.NaN()}
+		a := health.Axis{Name: w.axisName, X: w.positions(), Process: process, Known: w.fitErr == nil || w.poolErr == nil, CornerSD: cornerSD, GoodnessP: math.NaN()}
 		if w.gathered != nil {
 			a.Gathered = w.gatheredHealth()
 		}
@@ -54,6 +54,9 @@ func (r *Result) examine(rec *track.Recording, works []*work) stretch {
 		in.Products = works[0].opt.Gathered.products(works)
 	}
 	checks := health.Run(in)
+	for _, w := range works {
+		w.unload()
+	}
 	good := goodStretch(in, checks)
 	r.Checks = []Check{}
 	for _, c := range checks {

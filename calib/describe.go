@@ -336,7 +336,7 @@ func (w *work) trace() Trace {
 	if w.gathered != nil {
 		return w.gatheredTrace()
 	}
-	x := w.source.Values
+	x := w.recorded.Values
 	n := min(traceSteps, len(x))
 	t := Trace{Start: Float(w.start), Step: Float(float64(len(x)) / float64(n) / w.rate), Low: make([]Float, n), High: make([]Float, n)}
 	stretch := func(i int) {
@@ -349,7 +349,7 @@ func (w *work) trace() Trace {
 				high = v
 			}
 		}
-		t.Low[i], t.High[i] = Float(low), Float(high)
+		t.Low[i], t.High[i] = Float(low*w.unit), Float(high*w.unit)
 		if low > high {
 			t.Low[i], t.High[i] = Float(math.NaN()), Float(math.NaN())
 		}

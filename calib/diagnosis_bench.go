@@ -281,7 +281,7 @@ func (f refits) of(w *work, exposure float64, noise psd.Noise) (evidence, bool) 
 
 // freeRefitted is the evidence of a free bead under another exposure [s] and noise.
 func (w *work) freeRefitted(exposure float64, noise psd.Noise) (evidence, bool) {
-	fit, err := relaxation.FitFree(w.source.Values, relaxation.FreeOptions{Interval: 1 / w.rate, Exposure: exposure,
+	fit, err := relaxation.FitFree(w.positions(), relaxation.FreeOptions{Interval: 1 / w.rate, Exposure: exposure,
 		NoiseKnown: noise.Known, Noise: noise.Variance, NoiseU: noise.VarianceU, Brief: true})
 	if err != nil {
 		return evidence{}, false

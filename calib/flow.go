@@ -257,7 +257,7 @@ func (w *work) answerToFlow() error {
 		if !(rough < bentStroke) {
 			continue
 		}
-		mean, n := meanOf(w.source.Values[begin:end])
+		mean, n := meanOf(w.positions()[begin:end])
 		if n < 4 {
 			continue
 		}

@@ -120,13 +120,13 @@ func (w *work) ratioU() float64 {
 func (w *work) fitFree(o relaxation.FreeOptions) (relaxation.FreeFit, error) {
 	o.NoiseKnown, o.Noise, o.NoiseU = w.noise.Known, w.noise.Variance, w.noise.VarianceU
 	if !w.unscaled || !w.noise.Known || w.noiseRecorded {
-		return relaxation.FitFree(w.source.Values, o)
+		return relaxation.FitFree(w.positions(), o)
 	}
 	o.Noise, o.NoiseU = 0, 0
 	var fit relaxation.FreeFit
 	for range scaleSteps {
 		var err error
-		if fit, err = relaxation.FitFree(w.source.Values, o); err != nil {
+		if fit, err = relaxation.FitFree(w.positions(), o); err != nil {
 			return fit, err
 		}
 		square := w.phys.kT / w.phys.gamma / fit.Diffusion

@@ -203,15 +203,10 @@ func (r *Result) markUsed(rec *track.Recording, used stretch, works []*work) {
 // wholeTrace is the trace of all that was recorded, when only a part was used.
 func (w *work) wholeTrace(rec *track.Recording, index int) Trace {
 	all := *w
-	a := rec.Axes[index]
-	if math.IsNaN(a.ToMetre) {
-		values := make([]float64, len(a.Values))
-		for i, v := range a.Values {
-			values[i] = v * w.perUnit
-		}
-		a.Values = values
+	all.recorded, all.start, all.unit = rec.Axes[index], rec.Start, 1
+	if math.IsNaN(all.recorded.ToMetre) {
+		all.unit = w.perUnit
 	}
-	all.source, all.start = a, rec.Start
 	return all.trace()
 }
 

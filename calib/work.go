@@ -151,11 +151,20 @@ func (w *work) setLength() error {
 // scaleBy multiplies the recorded positions.
 func (w *work) scaleBy(scale float64) {
 	w.unit = scale
-	values := make([]float64, len(w.recorded.Values))
-	for i, v := range w.recorded.Values {
-		values[i] = v * scale
+	w.source.Values = nil
+}
+
+// positions are the recorded positions in their unit, or in metres where that is known. Those that had to be
+// converted are a copy, which release lets go for a long record.
+func (w *work) positions() []float64 {
+	if w.source.Values == nil && w.recorded.Values != nil {
+		values := make([]float64, len(w.recorded.Values))
+		for i, v := range w.recorded.Values {
+			values[i] = v * w.unit
+		}
+		w.source.Values = values
 	}
-	w.source.Values = values
+	return w.source.Values
 }
 
 func (w *work) setNoise() {
@@ -189,8 +198,17 @@ func (w *work) run(ctx context.Context) error {
 
 // release lets go of the samples of a long record, mean and line removed, which can be made again.
 func (w *work) release() {
-	if w.record.Samples >= longRecord {
-		w.record.Release()
+	if w.record.Samples < longRecord {
+		return
+	}
+	w.record.Release()
+	w.unload()
+}
+
+// unload lets go of the copy of converted positions of a long record.
+func (w *work) unload() {
+	if w.unit != 1 && len(w.recorded.Values) >= longRecord {
+		w.source.Values = nil
 	}
 }
 
@@ -256,7 +274,7 @@ func (w *work) fitPositions() error {
 func (w *work) prepare() (err error) {
 	if w.gathered != nil {
 		w.record = w.gathered.spectrum.Record(w.unit, w.rate)
-	} else if w.record, err = psd.Prepare(w.source.Values, w.rate); err != nil {
+	} else if w.record, err = psd.PrepareIn(w.recorded.Values, w.unit, w.rate); err != nil {
 		return w.dataError(err, "record longer, or check the columns")
 	}
 	if w.drive != nil {

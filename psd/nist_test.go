@@ -74,10 +74,11 @@ func TestCertifiedMoments(t *testing.T) {
 		if n < 3 {
 			t.Fatalf("%s: %d values", name, n)
 		}
-		r := &Record{X: make([]float64, n), Samples: n, Rate: 1, source: c.values}
+		r := &Record{Samples: n, Rate: 1, source: c.values, unit: 1}
 		if err := r.removeLine(); err != nil {
 			t.Fatal(err)
 		}
+		r.Restore()
 		nn := float64(n)
 		square := nn*meanSquare(r.X, n) + r.Slope*r.Slope*nn*(nn*nn-1)/12
 		about := make([]float64, n)

@@ -37,7 +37,8 @@ type Record struct {
 	Length  int               // samples behind Power, an even 5-smooth number
 	Ends    []relaxation.Ends // of these samples
 
-	source  []float64   // what Prepare was given
+	source  []float64   // what PrepareIn was given
+	unit    float64     // its unit [m]
 	steps   [2]straight // taken off the source, in this order
 	waves   []wave      // taken off after that
 	reshape bool        // other shapes were taken off too, so that X cannot be made again
@@ -60,8 +61,11 @@ type straight struct{ level, slope float64 }
 // Prepare removes the least-squares straight line from the positions x [m], NaN
 // where a sample is missing, sampled at rate [Hz]. It copies x, and keeps it for
 // Restore. The error is ErrTooShort, or names the first sample that is infinite.
-func Prepare(x []float64, rate float64) (*Record, error) {
-	r := &Record{X: make([]float64, len(x)), Samples: len(x), Rate: rate, source: x}
+func Prepare(x []float64, rate float64) (*Record, error) { return PrepareIn(x, 1, rate) }
+
+// PrepareIn is Prepare for positions x in a unit [m].
+func PrepareIn(x []float64, unit, rate float64) (*Record, error) {
+	r := &Record{Samples: len(x), Rate: rate, source: x, unit: unit}
 	if err := r.removeLine(); err != nil {
 		return nil, err
 	}
@@ -106,14 +110,15 @@ func (s *lineSums) add(v, t float64) {
 	s.product += t * v
 }
 
-// removeLine sets X to the source without its least-squares straight line, in two passes, the
+// removeLine finds the least-squares straight line of the source, in two passes, the
 // second of which takes out what rounding left of a mean far from zero.
 func (r *Record) removeLine() error {
 	pieces := make([]lineSums, transform.Pieces(r.Samples))
-	reference, mid := firstKnown(r.source), float64(r.Samples-1)/2
+	reference, mid := r.firstKnown(), float64(r.Samples-1)/2
 	transform.InPieces(r.Samples, func(piece, from, to int) {
 		s := lineSums{far: -1}
 		for i, v := range r.source[from:to] {
+			v *= r.unit
 			if math.Abs(v) > farthest && s.far < 0 {
 				s.far = from + i
 			}
@@ -125,31 +130,22 @@ func (r *Record) removeLine() error {
 	})
 	for _, p := range pieces {
 		if p.far >= 0 {
-			return fmt.Errorf("sample %d is at %g m, where no position can be", p.far, r.source[p.far])
+			return fmt.Errorf("sample %d is at %g m, where no position can be", p.far, r.source[p.far]*r.unit)
 		}
 	}
 	first, observed := fitLine(pieces, reference)
 	r.Missing = r.Samples - observed
 	transform.InPieces(r.Samples, func(piece, from, to int) {
 		var s lineSums
-		x := r.X[from:to]
 		for i, v := range r.source[from:to] {
 			t := float64(from+i) - mid
-			v -= first.level + first.slope*t
-			x[i] = v
-			if v == v {
+			if v = v*r.unit - (first.level + first.slope*t); v == v {
 				s.add(v, t)
 			}
 		}
 		pieces[piece] = s
 	})
 	second, _ := fitLine(pieces, 0)
-	transform.InPieces(r.Samples, func(_, from, to int) {
-		x := r.X[from:to]
-		for i := range x {
-			x[i] -= second.level + second.slope*(float64(from+i)-mid)
-		}
-	})
 	r.steps = [2]straight{first, second}
 	r.Mean = first.level + second.level
 	r.Slope = (first.slope + second.slope) * r.Rate
@@ -157,9 +153,9 @@ func (r *Record) removeLine() error {
 }
 
 // firstKnown returns the first sample that is not missing.
-func firstKnown(x []float64) float64 {
-	for _, v := range x {
-		if v == v && math.Abs(v) <= farthest {
+func (r *Record) firstKnown() float64 {
+	for _, v := range r.source {
+		if v *= r.unit; v == v && math.Abs(v) <= farthest {
 			return v
 		}
 	}
@@ -180,7 +176,11 @@ func (r *Record) Restore() {
 	if r.X != nil || r.Parts > 1 {
 		return
 	}
-	x := make([]float64, r.Samples)
+	r.levelAll(make([]float64, r.Samples))
+}
+
+// levelAll makes X in x.
+func (r *Record) levelAll(x []float64) {
 	transform.InPieces(r.Samples, func(_, from, to int) { r.level(x[from:to], from) })
 	for _, w := range r.waves {
 		w.takeOff(x, 0)
@@ -205,28 +205,36 @@ func (r *Record) level(x []float64, from int) {
 	mid := float64(r.Samples-1) / 2
 	for i := range x {
 		t := float64(from+i) - mid
-		v := r.source[from+i] - (r.steps[0].level + r.steps[0].slope*t)
+		v := r.source[from+i]*r.unit - (r.steps[0].level + r.steps[0].slope*t)
 		x[i] = v - (r.steps[1].level + r.steps[1].slope*t)
 	}
 }
 
-// transform computes Power.
+// transform computes Power, and X where it is not there yet. The first transform comes before X and works in
+// its room, so that a long record needs no more.
 func (r *Record) transform() error {
-	n := transform.GoodLength(len(r.X))
+	n := transform.GoodLength(r.Samples)
 	plan, err := transform.NewPlan(n)
 	if err != nil {
 		return err
 	}
-	x := r.X[:n]
-	if r.Missing > 0 {
-		x = make([]float64, n)
-		for i, v := range r.X[:n] {
-			if v == v {
-				x[i] = v
+	var room []float64
+	if r.X == nil {
+		room = make([]float64, r.Samples)
+	}
+	r.Power = plan.PowerOf(r.Power, room[:min(n, len(room))], func(x []float64, from int) {
+		r.Part(x, from)
+		if r.Missing > 0 {
+			for i, v := range x {
+				if v != v {
+					x[i] = 0
+				}
 			}
 		}
+	})
+	if r.X == nil {
+		r.levelAll(room)
 	}
-	r.Power = plan.Power(r.Power, x)
 	r.Length = n
 	r.Ends = []relaxation.Ends{relaxation.NewEnds(r.X[:n])}
 	r.blocked = nil

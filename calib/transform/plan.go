@@ -90,6 +90,19 @@ func (p *Plan) Power(dst, x []float64) []float64 {
 	return dst
 }
 
+// PowerOf is Power of a series of the plan's length that is not in memory: fill sets x to its points from one on. It is
+// called from several goroutines at a time. work is room for as many numbers, which are overwritten; nil: it is made.
+func (p *Plan) PowerOf(dst, work []float64, fill func(x []float64, from int)) []float64 {
+	dst = sized(dst, p.half+1)
+	var room *[]complex128
+	if len(work) == p.n {
+		z := asComplex(work)
+		room = &z
+	}
+	runIn(p, dst, source{fill: func(z []complex128, first int) { fill(asReal(z), 2*first) }}, powerPairs, room)
+	return dst
+}
+
 // Forward returns X_k for k = 0 .. n/2 [unit of x]. A series shorter than the plan
 // is padded with zeros at its end; a longer one is a caller's error and panics. x is not
 // modified. The result is in dst if that has the capacity.

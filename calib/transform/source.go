@@ -19,6 +19,14 @@ func asComplex(x []float64) []complex128 {
 	return unsafe.Slice((*complex128)(unsafe.Pointer(&x[0])), len(x)/2)
 }
 
+// asReal views complex numbers as pairs of neighbouring real ones.
+func asReal(z []complex128) []float64 {
+	if len(z) == 0 {
+		return nil
+	}
+	return unsafe.Slice((*float64)(unsafe.Pointer(&z[0])), 2*len(z))
+}
+
 // seriesSource is the real series of up to n points taken as n/2 complex numbers, zeros
 // after its end.
 func seriesSource(x []float64, n int) source {

@@ -37,6 +37,11 @@ func (p *Plan) newDesk() *desk {
 // run transforms the source and writes results for k = 0 .. half, or up to half-1 if
 // dst is that short, by way of pair.
 func run[T float64 | complex128](p *Plan, dst []T, from source, pair pairing[T]) {
+	runIn(p, dst, from, pair, nil)
+}
+
+// runIn is run with a buffer of length half; nil: one of the plan's.
+func runIn[T float64 | complex128](p *Plan, dst []T, from source, pair pairing[T], work *[]complex128) {
 	if p.rows == 1 {
 		d := p.borrowDesk()
 		defer p.desks.Put(d)
@@ -49,8 +54,12 @@ func run[T float64 | complex128](p *Plan, dst []T, from source, pair pairing[T])
 		storeWhole(p, dst, z, pair)
 		return
 	}
-	work := p.work.get(p.half)
-	defer p.work.put(work)
+	if work == nil {
+		work = p.work.get(p.half)
+		if p.half <= keptWork {
+			defer p.work.put(work)
+		}
+	}
 	z := from.z
 	if z == nil {
 		z = *work
@@ -68,6 +77,10 @@ func run[T float64 | complex128](p *Plan, dst []T, from source, pair pairing[T])
 		rowBlock(p, d, dst, *work, block*blockWidth, pair)
 	})
 }
+
+// keptWork is the longest buffer that is kept for the next transform, in complex points: 16 MB. Longer ones count in the
+// memory of the process, and their first touch costs little of a transform of that length.
+const keptWork = 1 << 20
 
 // fillLength is the number of points of a source that are made at a time. They are made in
 // their order and not as the columns need them: numbers far apart have to be waited
