@@ -96,6 +96,33 @@ func (s scene) record(t *testing.T, seed uint64) *track.Recording {
 	return rec
 }
 
+// gamma is the drag of the bead for motion parallel to the surface [N s/m].
+func (s scene) gamma(t *testing.T) float64 {
+	t.Helper()
+	liquid, err := medium.ParseFluid("water")
+	if err != nil {
+		t.Fatal(err)
+	}
+	p, err := liquid.At(s.kelvin)
+	if err != nil {
+		t.Fatal(err)
+	}
+	wall, err := drag.Chamber{Radius: s.diameter / 2, Height: s.height}.Wall()
+	if err != nil {
+		t.Fatal(err)
+	}
+	return drag.Stokes(p.Viscosity, s.diameter/2) * wall.Factor
+}
+
+// trapped are the axes of the scene for the simulator, all parallel to the surface.
+func (s scene) trapped(t *testing.T) (axes []simulate.Axis) {
+	t.Helper()
+	for _, name := range s.axes {
+		axes = append(axes, simulate.Axis{Name: name, Corner: s.kappa / (2 * math.Pi * s.gamma(t)), Variance: medium.Boltzmann * s.kelvin / s.kappa, Noise: s.noise})
+	}
+	return axes
+}
+
 func (s scene) calibrate(t *testing.T, seed uint64) *Result {
 	t.Helper()
 	r, err := Calibrate(context.Background(), s.record(t, seed), s.set(t), Options{})

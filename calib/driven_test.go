@@ -5,9 +5,7 @@ import (
 	"math"
 	"testing"
 
-	"beadwell/calib/drag"
 	"beadwell/calib/medium"
-	"beadwell/calib/simulate"
 	"beadwell/calib/track"
 )
 
@@ -17,23 +15,8 @@ func (s scene) driven(t *testing.T, seed uint64, stage simulate.Stage, column bo
 	still := s
 	still.events = nil
 	rec := still.record(t, seed)
-	liquid, err := medium.ParseFluid("water")
-	if err != nil {
-		t.Fatal(err)
-	}
-	p, err := liquid.At(s.kelvin)
-	if err != nil {
-		t.Fatal(err)
-	}
-	wall, err := drag.Chamber{Radius: s.diameter / 2, Height: s.height}.Wall()
-	if err != nil {
-		t.Fatal(err)
-	}
-	gamma := drag.Stokes(p.Viscosity, s.diameter/2) * wall.Factor
 	truth := simulate.Truth{Samples: s.samples, Rate: s.rate, Exposure: s.exposure, Stage: &stage, Events: s.events}
-	for _, name := range s.axes {
-		truth.Axes = append(truth.Axes, simulate.Axis{Name: name, Corner: s.kappa / (2 * math.Pi * gamma), Variance: medium.Boltzmann * s.kelvin / s.kappa, Noise: s.noise})
-	}
+	truth.Axes = s.trapped(t)
 	made := simulate.Make(truth, seed)
 	for i := range rec.Axes {
 		rec.Axes[i].Values = made.Positions[i]

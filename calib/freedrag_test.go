@@ -9,7 +9,6 @@ import (
 	"strings"
 	"testing"
 
-	"beadwell/calib/drag"
 	"beadwell/calib/medium"
 	"beadwell/calib/simulate"
 	"beadwell/calib/track"
@@ -18,19 +17,7 @@ import (
 // freeRecord makes a recording of the free bead of a scene.
 func (s scene) freeRecord(t *testing.T, seed uint64) *track.Recording {
 	t.Helper()
-	liquid, err := medium.ParseFluid("water")
-	if err != nil {
-		t.Fatal(err)
-	}
-	p, err := liquid.At(s.kelvin)
-	if err != nil {
-		t.Fatal(err)
-	}
-	wall, err := drag.Chamber{Radius: s.diameter / 2, Height: s.height}.Wall()
-	if err != nil {
-		t.Fatal(err)
-	}
-	gamma := drag.Stokes(p.Viscosity, s.diameter/2) * wall.Factor
+	gamma := s.gamma(t)
 	rec := s.like(t, simulate.Axis{Diffusion: medium.Boltzmann * s.kelvin / gamma, Noise: s.noise}, seed)
 	rec.Name = "free.csv"
 	return rec

@@ -6,9 +6,7 @@ import (
 	"strings"
 	"testing"
 
-	"beadwell/calib/drag"
 	"beadwell/calib/medium"
-	"beadwell/calib/simulate"
 	"beadwell/calib/track"
 	"beadwell/psd"
 )
@@ -17,23 +15,8 @@ import (
 func (s scene) behind(t *testing.T, seed uint64, diode simulate.Photodiode) *track.Recording {
 	t.Helper()
 	rec := s.record(t, seed)
-	liquid, err := medium.ParseFluid("water")
-	if err != nil {
-		t.Fatal(err)
-	}
-	p, err := liquid.At(s.kelvin)
-	if err != nil {
-		t.Fatal(err)
-	}
-	wall, err := drag.Chamber{Radius: s.diameter / 2, Height: s.height}.Wall()
-	if err != nil {
-		t.Fatal(err)
-	}
-	gamma := drag.Stokes(p.Viscosity, s.diameter/2) * wall.Factor
 	truth := simulate.Truth{Samples: s.samples, Rate: s.rate, Exposure: s.exposure, Photodiode: &diode}
-	for _, name := range s.axes {
-		truth.Axes = append(truth.Axes, simulate.Axis{Name: name, Corner: s.kappa / (2 * math.Pi * gamma), Variance: medium.Boltzmann * s.kelvin / s.kappa, Noise: s.noise})
-	}
+	truth.Axes = s.trapped(t)
 	for i, x := range simulate.Record(truth, seed) {
 		rec.Axes[i].Values = x
 	}
