@@ -59,7 +59,7 @@ func Main(args []string, w World) int {
 
 // grace is how long a command may take to stop after Ctrl-C. Writing one file
 // takes less; people wait no longer than a second.
-const grace = 900 * time.Millisecond
+const grace = 700 * time.Millisecond
 
 // run executes one command line; when ctx ends it waits no longer than grace.
 func run(ctx context.Context, args []string, w World) int {
