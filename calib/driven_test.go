@@ -5,7 +5,7 @@ import (
 	"math"
 	"testing"
 
-	"beadwell/calib/medium"
+	"beadwell/calib/simulate"
 	"beadwell/calib/track"
 )
 

@@ -6,7 +6,7 @@ import (
 	"strings"
 	"testing"
 
-	"beadwell/calib/medium"
+	"beadwell/calib/simulate"
 	"beadwell/calib/track"
 	"beadwell/psd"
 )
