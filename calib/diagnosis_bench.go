@@ -84,7 +84,7 @@ func (w *work) freeEvidence(fit relaxation.FreeFit) evidence {
 }
 
 // evidenceAt reads the evidence from a fit that does not know the drag: its log-likelihood, parameters and their
-// covariance by the data, and the exposure [s] under which it was made (docs/method.md, Eq. 66).
+// covariance by the data, and the exposure [s] under which it was made (docs/method.md, Eq. 60).
 func (w *work) evidenceAt(value float64, at relaxation.Parameters, data relaxation.Matrix, exposure float64) evidence {
 	e := evidence{likelihood: value}
 	var weights []relaxation.Parameters

@@ -23,7 +23,7 @@ const CodeFreeUnused = "free-bead-not-used"
 
 // FreeDrag is the drag of the bead as recordings with the laser off gave it, carried to a recording in the trap.
 //
-// What is carried is the ratio of measured to computed drag (docs/method.md, Eqs 64 and 65): the drag here is the ratio times Stokes
+// What is carried is the ratio of measured to computed drag (docs/method.md, Eqs 65 and 66): the drag here is the ratio times Stokes
 // drag and wall factor of this recording, so that another height, and the warmer water of a trap that heats it, are allowed for.
 // Inputs that both recordings share act once: the bead's diameter and the viscosity all but cancel, and the length scale stays.
 type FreeDrag struct {

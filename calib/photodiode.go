@@ -10,7 +10,7 @@ import (
 
 // Photodiode is the low-pass of the detector of one axis. A silicon photodiode passes the share alpha of the signal at
 // once and the rest through a low-pass at f3dB (Berg-Sorensen et al., J. Appl. Phys. 93 (2003) 3167), so that the power
-// at f is multiplied by alpha^2 + (1 - alpha^2)/(1 + (f/f3dB)^2) (docs/method.md, Eq. 60).
+// at f is multiplied by alpha^2 + (1 - alpha^2)/(1 + (f/f3dB)^2) (docs/method.md, Eq. 61).
 type Photodiode struct {
 	Alpha       Quantity `json:"alpha"`           // 1; from the power it passes where it was fitted, so that its interval is lopsided
 	AlphaOrigin string   `json:"alpha_origin"`    // "stated", "fitted", "not stated": 0 then
@@ -148,7 +148,7 @@ func (w *work) fittedDiode() (psd.Diode, bool) {
 
 // detected is what the photodiode adds to the mean-square displacement at a lag [samples], in m2; nil without one. With
 // a constant drag the autocovariance behind the photodiode is a sum of two exponentials, of trap and photodiode
-// (docs/method.md, Eq. 62).
+// (docs/method.md, Eq. 63).
 func (w *work) detected(p relaxation.Process) func(lag int) float64 {
 	h := w.seen
 	if w.form == nil || h.F3dB == 0 {

@@ -319,7 +319,7 @@ const closeCorners = 6
 //
 // With a constant drag the recorded spectrum is (1 + alpha^2 f^2/f3dB^2)/[(1 + f^2/fc^2)(1 + f^2/f3dB^2)]: fc and f3dB
 // may be exchanged when alpha becomes alpha fc/f3dB, and the likelihood is the same. Only the inertia of the liquid, a given
-// alpha, or what is known of the amplitude tells which is the trap (docs/method.md, Eq. 63).
+// alpha, or what is known of the amplitude tells which is the trap (docs/method.md, Eq. 64).
 func (f *Fit) Exchanged(r *Record) (*Fit, bool) {
 	d, ok := f.Problem.Likelihood.(*freeDiode)
 	if !ok {
