@@ -4,7 +4,9 @@ import (
 	"errors"
 	"math"
 	"math/rand/v2"
+	"slices"
 	"testing"
+	"time"
 )
 
 // pearson is the data of Pearson 1901 with the weights of York 1966 (Can. J. Phys. 44, 1079,
@@ -248,5 +250,33 @@ func TestOutliersAreNamed(t *testing.T) {
 		if math.Abs(fit.Slope.Value-2) < 0.2 {
 			t.Errorf("the fit to all points must keep them: slope %g", fit.Slope.Value)
 		}
+	}
+}
+
+// A long series takes a time that goes with its length, not with its square:
+// its outliers are found as in a short one.
+func TestOutliersOfLongSeries(t *testing.T) {
+	rng := rand.New(rand.NewPCG(4, 4))
+	var points []Point
+	for i := range 4000 {
+		x := 1 + float64(i%40)
+		points = append(points, Point{X: x, Y: 2*x + 0.1*rng.NormFloat64(), UY: 0.1})
+	}
+	want := []int{5, 700, 701, 3999}
+	for _, i := range want {
+		points[i].Y += 1.5 // 15 standard deviations
+	}
+	start := time.Now()
+	got := outliers(points, false, LineOptions{ThroughOrigin: true, Level: 0.01})
+	var indices []int
+	for _, o := range got {
+		indices = append(indices, o.Index)
+	}
+	if !slices.Equal(indices, want) {
+		t.Errorf("outliers %v, want %v", indices, want)
+	}
+	// patience + 4 fits of 4000 points take 0.1 s; a turn for each third point would take minutes
+	if spent := time.Since(start); spent > 20*time.Second {
+		t.Errorf("took %v", spent)
 	}
 }

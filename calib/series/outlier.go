@@ -23,6 +23,8 @@ const outlierShare = 1.0 / 3
 // found. Each turn's limit is Level over the points that are left, and over the turns. A point
 // that was taken out only because others had bent the line goes back when the line of the
 // points that stay finds nothing wrong with it.
+//
+// The turns end early when patience points in a row were none, so that the time of a long series goes with its length.
 func outliers(points []Point, unknown bool, opt LineOptions) []Outlier {
 	left := make([]int, len(points))
 	for i := range left {
@@ -40,12 +42,19 @@ func outliers(points []Point, unknown bool, opt LineOptions) []Outlier {
 		if worst.PValue < opt.Level/float64(len(left)*turns) {
 			named = len(taken)
 		}
+		if len(taken)-named >= patience {
+			break
+		}
 		left = slices.Delete(left, worst.Index, worst.Index+1)
 	}
 	taken = putBack(points, taken[:named], unknown, opt, opt.Level/float64(len(points)*max(turns, 1)))
 	slices.SortFunc(taken, func(a, b Outlier) int { return a.Index - b.Index })
 	return taken
 }
+
+// patience is the number of points taken out in a row, none of them beyond its limit, after which outliers that hide each
+// other are no longer looked for: so many would be a bent line.
+const patience = 30
 
 // putBack takes out of the named, again and again, the point that is the likeliest with
 // respect to those that stay, as long as its chance is not below the limit.
