@@ -35,7 +35,7 @@ need() {
 	fi
 }
 need go timeout
-[ "$which" = snakemake ] || need munged slurmctld slurmd sbatch srun scontrol sinfo
+[ "$which" = snakemake ] || need munged slurmctld slurmd sbatch srun scontrol sinfo squeue pgrep
 [ "$which" = slurm ] || need snakemake
 
 work=$(mktemp -d "${TMPDIR:-/tmp}/beadwell-pipelines.XXXXXX")
@@ -251,6 +251,9 @@ END
 	scontrol --oneliner show job "$joined" | grep -oE 'ExitCode=[0-9]+:[0-9]+'
 	scontrol --oneliner show job "$joined" | grep -q 'ExitCode=5:0'
 	cat "beadwell-collect-$joined.log"
+	# Nothing of a job is left behind when the daemons end.
+	no_step() { [ -z "$(squeue --noheader)" ] && ! pgrep -f "slurmstepd: \[($array|$joined)" >/dev/null; }
+	await 30 "the last step ended" no_step
 	compare Slurm by-slurm
 fi
 
