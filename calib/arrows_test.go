@@ -23,7 +23,7 @@ var allowed = map[string][]string{
 	"beadwell/psd":              {"beadwell/calib/relaxation", "beadwell/calib/transform"},
 	"beadwell/equipartition":    {"beadwell/calib/relaxation", "beadwell/calib/transform"},
 	"beadwell/calib/msd":        {"beadwell/calib/relaxation", "beadwell/calib/transform"},
-	"beadwell/internal/bound":   {},
+	"beadwell/calib/bound":      {},
 }
 
 // TestArrows holds the direction of the imports: leaves import only what is listed, and

@@ -6,7 +6,7 @@ import (
 	"strings"
 	"testing"
 
-	"beadwell/internal/bound"
+	"beadwell/calib/bound"
 )
 
 // ulp is the allowance for one product of two float64: half a unit in the

@@ -9,7 +9,7 @@ import (
 	"strings"
 	"testing"
 
-	"beadwell/internal/bound"
+	"beadwell/calib/bound"
 )
 
 func TestLoadFull(t *testing.T) {

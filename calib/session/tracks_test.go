@@ -8,7 +8,7 @@ import (
 
 	"github.com/google/go-cmp/cmp"
 
-	"beadwell/internal/bound"
+	"beadwell/calib/bound"
 )
 
 const listText = `file,role,height,power,noise.x,recording.noise.y,note

@@ -9,7 +9,7 @@ import (
 	"strconv"
 	"testing"
 
-	"beadwell/internal/bound"
+	"beadwell/calib/bound"
 )
 
 // checkOutcome verifies what holds for every input: either recordings or an

@@ -12,7 +12,7 @@ import (
 	"github.com/google/go-cmp/cmp/cmpopts"
 
 	"beadwell/calib"
-	"beadwell/internal/bound"
+	"beadwell/calib/bound"
 )
 
 func encoded(t *testing.T, r *calib.Result) []byte {
