@@ -60,6 +60,7 @@ type response struct {
 	powerU        float64 // relative, of the record
 	blur          float64
 	flow          *flow
+	mean, slope   float64 // of the record, beside those that were fitted without the answer [m, m/s]
 }
 
 // checkFlow refuses to adopt Stokes drag at constant speed where there is none, or where the lengths rest on it.
@@ -88,6 +89,7 @@ func (w *work) takeOutDrive() error {
 			w.drive.refine(w.record)
 		}
 		w.reply.line, err = w.record.TakeSinusoid(w.drive.frequency)
+		w.reply.mean, w.reply.slope = w.reply.line.Mean, w.reply.line.Slope
 	}
 	if err != nil {
 		return w.dataError(fmt.Errorf("the answer to the stage: %w", err), "record several periods of the drive")

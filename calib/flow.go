@@ -82,6 +82,7 @@ func (w *work) takeOutFlow() error {
 			return err
 		}
 		if round == flowRounds-1 {
+			w.reply.mean, w.reply.slope = fit.Mean, fit.Slope
 			break
 		}
 		shift := fit.Coefficients[3] / fit.Coefficients[0] // samples

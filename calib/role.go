@@ -36,12 +36,14 @@ func assignDrive(rec *track.Recording, set *session.Settings, works []*work) err
 	return works[at].checkFlow()
 }
 
-// undriven returns the recorded positions without the answer to the stage.
+// undriven returns the recorded positions without the answer to the stage. Mean and line are those that were fitted
+// together with the answer: strokes that are no whole number of periods have a mean and a slope of their own.
 func (w *work) undriven() []float64 {
 	out := make([]float64, w.record.Samples)
 	middle := float64(len(out)-1) / 2
+	mean, slope := w.record.Mean+w.reply.mean, w.record.Slope+w.reply.slope
 	for i, v := range w.record.X {
-		out[i] = v + w.record.Mean + w.record.Slope*(float64(i)-middle)/w.rate
+		out[i] = v + mean + slope*(float64(i)-middle)/w.rate
 	}
 	return out
 }

@@ -14,6 +14,8 @@ type Regression struct {
 	// Inverse is the inverse of the normal matrix, mean and line included as free terms: times the
 	// variance of white samples it is the covariance of the coefficients.
 	Inverse [][]float64
+	Mean    float64 // that was subtracted with the shapes, beside Record.Mean [m]
+	Slope   float64 // of the line that was subtracted with them, beside Record.Slope [m/s]
 }
 
 // ErrShapes tells that shapes cannot be told apart, or from a mean and a straight line.
@@ -31,6 +33,7 @@ func (r *Record) TakeOut(shapes ...[]float64) (Regression, error) {
 		return out, err
 	}
 	r.reshape = true
+	out.Slope *= r.Rate
 	return out, r.transform()
 }
 
@@ -74,7 +77,7 @@ func regress(x []float64, shapes [][]float64) (Regression, error) {
 			x[i] -= v[a] * solution[a]
 		}
 	}
-	out := Regression{Coefficients: solution[2:]}
+	out := Regression{Coefficients: solution[2:], Mean: solution[0], Slope: solution[1] / middle}
 	for a := 2; a < p; a++ {
 		out.Inverse = append(out.Inverse, inverse[a][2:])
 	}
@@ -126,7 +129,8 @@ type Sinusoid struct {
 	Phase     float64 // rad
 	// Scatter is the variance of the coefficient of the sine or the cosine, mean of the two, for white samples of
 	// variance one. Near it the variance of the amplitude is Scatter times the two-sided spectrum times the rate.
-	Scatter float64
+	Scatter     float64
+	Mean, Slope float64 // subtracted with it [m, m/s], as in Regression
 }
 
 // TakeSinusoid takes a sinusoid of known frequency [Hz] out of the record, as a line that the fit leaves
@@ -140,7 +144,8 @@ func (r *Record) TakeSinusoid(hz float64) (Sinusoid, error) {
 		return Sinusoid{}, err
 	}
 	a, b := fit.Coefficients[0], fit.Coefficients[1]
-	s := Sinusoid{Frequency: hz, Amplitude: math.Hypot(a, b), Phase: math.Atan2(a, b), Scatter: (fit.Inverse[0][0] + fit.Inverse[1][1]) / 2}
+	s := Sinusoid{Frequency: hz, Amplitude: math.Hypot(a, b), Phase: math.Atan2(a, b), Scatter: (fit.Inverse[0][0] + fit.Inverse[1][1]) / 2,
+		Mean: fit.Mean, Slope: fit.Slope}
 	step := r.Rate / float64(r.Length)
 	r.blocked = nil
 	r.Lines = append(r.Lines, Line{Frequency: hz, Amplitude: s.Amplitude, Low: hz - (halfGap+0.25)*step, High: hz + (halfGap+0.25)*step})

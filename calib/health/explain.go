@@ -158,7 +158,7 @@ What to do: look at the residuals. High frequencies point to the detector, the i
 	{
 		Code: "axes-mixed", Title: "cross-talk of the axes", unit: "1",
 		reason: "If one axis shows part of the other's motion, both stiffnesses are mixtures.",
-		Long: `Looked at: the correlation coefficient of two axes at equal times, with the number of effective samples. Doubtful above 0.06 beyond chance, bad above 0.5.
+		Long: `Looked at: the correlation coefficient of two axes at equal times, with the number of effective samples. Doubtful above 0.06 beyond chance, bad above 0.5. Narrow lines that stand in both axes, such as mains pickup, are left out.
 Cross-talk of the detector does this, and so does a detector that is turned against the axes of a trap that is not round.
 What to do: turn the detector or the coordinates; check wiring and alignment.` + caution,
 	},

@@ -279,6 +279,25 @@ func TestMixedLevels(t *testing.T) {
 	}
 }
 
+// TestMixedByLine: a line of 0.4 rms on both axes gives independent ones a correlation coefficient of 0.08/1.08 = 0.074. It is
+// left out when the fit has found it: 0 within 1/sqrt(N) = 0.005. A true 0.2 stays within that beside it.
+func TestMixedByLine(t *testing.T) {
+	for share, want := range map[float64]Level{0: OK, 0.2: Doubtful} {
+		x, y := white(40000, rms, 1), white(40000, rms, 2)
+		for i := range y {
+			pickup := 0.4 * rms * math.Sin(2*math.Pi*50.3/1000*float64(i)+0.4)
+			y[i] = share*x[i] + math.Sqrt(1-share*share)*y[i] + pickup
+			x[i] += pickup
+		}
+		a, b := axis("x", x), axis("y", y)
+		a.Lines, b.Lines = []Line{{Frequency: 50.301, Amplitude: 0.4 * rms}}, []Line{{Frequency: 50.299, Amplitude: 0.4 * rms}}
+		c := find(t, Run(Input{Axes: []Axis{a, b}, Rate: 1000}), "axes-mixed", "x-y")
+		if c.Level != want || math.Abs(c.Value-share) > 0.02 {
+			t.Errorf("share %v: %v %v, want %v", share, c.Value, c.Level, want)
+		}
+	}
+}
+
 // TestSkewed: y = x + 0.045 (x^2 - 1) has the skewness 6 x 0.045 = 0.27. With 300 periods
 // of 1/fc that of a Gaussian has the standard deviation sqrt(6 x 2/(3 x 2 pi x 300)) =
 // 0.046. If the samples decorrelated only as fast as for the mean it would be 0.08.

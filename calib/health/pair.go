@@ -31,7 +31,8 @@ func crossTalk(in Input, a, b *view, pair int) Check {
 			return c.spared(why)
 		}
 	}
-	r, n := correlation(a, b)
+	s := momentsOf(a, b)
+	r, n := s.coefficient(), s.n
 	if a.Gathered != nil && pair < len(in.Products) {
 		p := in.Products[pair]
 		n = float64(p.Samples)
@@ -43,6 +44,10 @@ func crossTalk(in Input, a, b *view, pair int) Check {
 	c.Value = r
 	z := math.Atanh(math.Max(math.Min(r, 1-1e-15), -1+1e-15)) * math.Sqrt(n/mutual(a.h, b.h))
 	axes := len(in.Axes)
+	if math.Abs(r) >= talkDoubtful && s.takeLines(a, b) { // a line that stands in both axes has a finding of its own
+		r = s.coefficient()
+		c.Value = r
+	}
 	if pairs := float64(axes * (axes - 1) / 2); twoSided(z) > chance/math.Max(pairs, 1) || math.Abs(r) < talkDoubtful {
 		c.Text = fmt.Sprintf("The axes move independently (correlation coefficient %s).", digits(r))
 		return c
@@ -62,33 +67,87 @@ func mutual(a, b null) float64 {
 	return 1 + 2*(a.vb/a.r0)*(b.vb/b.r0)*math.Sqrt(a.observed*b.observed)*math.Exp(-x)/-math.Expm1(-x)
 }
 
-// correlation returns the correlation coefficient of two axes about their fitted
-// lines, and the number of samples that are there on both.
-func correlation(a, b *view) (r, n float64) {
-	var xx, yy, xy float64
+// moments are sums over the samples that are there on both of two axes, each about its fitted line and in its own scale.
+type moments struct{ xx, yy, xy, n float64 }
+
+func (s moments) coefficient() float64 {
+	if !(s.xx > 0) || !(s.yy > 0) {
+		return 0
+	}
+	return s.xy / math.Sqrt(s.xx*s.yy)
+}
+
+func momentsOf(a, b *view) (s moments) {
 	if a.Gathered != nil || b.Gathered != nil {
-		return 0, 0
+		return s
 	}
 	perA, perB := 1/a.scale, 1/b.scale
 	for k := 0; k*a.length < a.samples; k++ {
-		from, to := k*a.length, min((k+1)*a.length, a.samples)
-		t := (float64(from+to)/2)/float64(a.samples) - 0.5
-		la, lb := a.line.at(t)*a.scale+a.centre, b.line.at(t)*b.scale+b.centre
-		xs, ys := a.X[from:to], b.X[from:to]
-		for i, x := range xs {
-			u, w := (x-la)*perA, (ys[i]-lb)*perB
-			p := u * w
-			if p-p != 0 {
+		p := together(a, b, k)
+		for i, x := range p.xs {
+			u, w := (x-p.la)*perA, (p.ys[i]-p.lb)*perB
+			uw := u * w
+			if uw-uw != 0 {
 				continue
 			}
-			n++
-			xx += u * u
-			yy += w * w
-			xy += p
+			s.n++
+			s.xx += u * u
+			s.yy += w * w
+			s.xy += uw
 		}
 	}
-	if xx == 0 || yy == 0 {
-		return 0, n
+	return s
+}
+
+// pairedBlock is a block of samples of two axes with the values of their fitted lines in its middle.
+type pairedBlock struct {
+	from   int
+	xs, ys []float64
+	la, lb float64
+}
+
+func together(a, b *view, k int) pairedBlock {
+	from, to := k*a.length, min((k+1)*a.length, a.samples)
+	t := (float64(from+to)/2)/float64(a.samples) - 0.5
+	return pairedBlock{from: from, xs: a.X[from:to], ys: b.X[from:to], la: a.line.at(t)*a.scale + a.centre, lb: b.line.at(t)*b.scale + b.centre}
+}
+
+// takeLines takes from the sums what narrow lines that stand in both axes add to them, and tells whether there are any. Lines
+// count as one when they are closer than 1/T.
+func (s *moments) takeLines(a, b *view) bool {
+	if a.Gathered != nil || b.Gathered != nil {
+		return false
 	}
-	return xy / math.Sqrt(xx*yy), n
+	taken := false
+	for _, l := range a.Lines {
+		for _, other := range b.Lines {
+			if math.Abs(l.Frequency-other.Frequency) < a.rate/float64(a.samples) {
+				s.takeLine(a, b, (l.Frequency+other.Frequency)/2/a.rate)
+				taken = true
+				break
+			}
+		}
+	}
+	return taken
+}
+
+// takeLine takes a sinusoid of a frequency in periods a sample, at its amplitude and phase on each axis, from the sums.
+func (s *moments) takeLine(a, b *view, turns float64) {
+	var onA, onB complex128
+	for k := 0; k*a.length < a.samples; k++ {
+		p := together(a, b, k)
+		for i, x := range p.xs {
+			u, w := (x-p.la)/a.scale, (p.ys[i]-p.lb)/b.scale
+			if d := u * w; d-d != 0 {
+				continue
+			}
+			sin, cos := math.Sincos(2 * math.Pi * math.Mod(turns*float64(p.from+i), 1))
+			onA += complex(u*cos, u*sin)
+			onB += complex(w*cos, w*sin)
+		}
+	}
+	square := func(z complex128) float64 { return real(z)*real(z) + imag(z)*imag(z) }
+	s.xx -= 2 * square(onA) / s.n
+	s.yy -= 2 * square(onB) / s.n
+	s.xy -= 2 * (real(onA)*real(onB) + imag(onA)*imag(onB)) / s.n
 }

@@ -161,8 +161,11 @@ func (c TrendChart) alarms() []string {
 		all = append(all, fmt.Sprintf("%d in a row %s the centre, from %s to %s", r.Last-r.First+1, side, report.Plain(c.Sessions[r.First]), report.Plain(c.Sessions[r.Last])))
 	}
 	if ch := c.Chart.Change; ch != nil && ch.PValue < changeLevel {
-		all = append(all, fmt.Sprintf("a change at %s (between %s and %s): %s, that is %+.2g %%, p <= %.2g", report.Plain(c.Sessions[ch.Index]),
-			report.Plain(c.Sessions[ch.Earliest]), report.Plain(c.Sessions[ch.Latest]), c.shown(ch.Step.Value, ch.Step.Combined), 100*ch.Step.Value/ch.Before.Value, ch.PValue))
+		bounds := ""
+		if ch.Earliest != ch.Latest {
+			bounds = fmt.Sprintf(" (between %s and %s)", report.Plain(c.Sessions[ch.Earliest]), report.Plain(c.Sessions[ch.Latest]))
+		}
+		all = append(all, fmt.Sprintf("a change at %s%s: %s, that is %+.2g %%, p <= %.2g", report.Plain(c.Sessions[ch.Index]), bounds, c.shown(ch.Step.Value, ch.Step.Combined), 100*ch.Step.Value/ch.Before.Value, ch.PValue))
 	}
 	return all
 }
