@@ -48,6 +48,8 @@ func shown(q Quantity) string {
 		unit = "C"
 	case "Pa s":
 		unit = "mPa s"
+	case "m/V":
+		unit = "um/V"
 	case "s":
 		unit = "ms"
 	case "1":

@@ -3,6 +3,8 @@ package calib
 import (
 	"context"
 	"math"
+	"slices"
+	"strings"
 	"testing"
 
 	"beadwell/calib/simulate"
@@ -154,6 +156,48 @@ func TestDrivenTriangle(t *testing.T) {
 		f := a.Driven.Flow
 		if p := float64(f.Goodness.PValue); !(p > 1e-3) || len(f.Points) < 12 {
 			t.Errorf("%s: straight line through %d strokes: p = %g", name, len(f.Points), p)
+		}
+	}
+}
+
+// Where estimates disagree, each way out that is named gives a stiffness, in metres and in volts, and none that is refused is
+// named. The viscosity is 1.3 times what it was.
+func TestAdoptAsTold(t *testing.T) {
+	sine := usual().driving("sine", "150(1) nm", "28.37 Hz").with("medium.fluid", "").with("medium.viscosity", "1.16 mPa s")
+	sine.samples, sine.axes = 100000, []string{"x", "y"}
+	still := usual().with("medium.fluid", "").with("medium.viscosity", "1.16 mPa s")
+	driven := func() *track.Recording { return sine.driven(t, 21, hum, false) }
+	for name, c := range map[string]struct {
+		s    scene
+		rec  *track.Recording
+		want []string // routes, on the first axis
+	}{
+		"still":           {still, still.record(t, 5), []string{RouteDrag, RouteAmplitude}},
+		"driven":          {sine, driven(), []string{RouteDrag, RouteAmplitude, RouteDriven}},
+		"driven in volts": {sine, inVolts(driven(), 1.31e-6), []string{RouteDrag, RouteDriven}},
+	} {
+		r := calibrated(t, c.rec, c.s)
+		if r.Verdict.Status != Inconsistent {
+			t.Errorf("%s: %+v", name, r.Verdict)
+		}
+		for i, a := range r.Axes {
+			named := 0
+			for _, route := range []string{RouteDrag, RouteAmplitude, RouteDriven} {
+				if !strings.Contains(a.Adopted.Withheld, "--adopt "+route) {
+					continue
+				}
+				named++
+				again, err := Calibrate(context.Background(), c.rec, c.s.set(t), Options{Adopt: route})
+				if err != nil || !again.Axes[i].Adopted.Stiffness.Known() {
+					t.Errorf("%s, %s: %q, but --adopt %s gives %v", name, a.Name, a.Adopted.Withheld, route, err)
+				}
+				if i == 0 && !slices.Contains(c.want, route) {
+					t.Errorf("%s, %s: %q", name, a.Name, a.Adopted.Withheld)
+				}
+			}
+			if i == 0 && named != len(c.want) || named == 0 {
+				t.Errorf("%s, %s: %q names %d routes", name, a.Name, a.Adopted.Withheld, named)
+			}
 		}
 	}
 }

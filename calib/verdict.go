@@ -81,17 +81,26 @@ func (r *Result) judge(works []*work, opt Options) {
 		if byStage && r.Axes[i].Driven != nil {
 			continue
 		}
-		reason := "the drag route and the amplitude route disagree; --adopt drag or --adopt amplitude takes one of them"
-		if r.Axes[i].FreeDrag != nil {
-			reason = "computed drag, drag of the free bead and amplitude disagree; --adopt drag, --adopt free-bead or --adopt amplitude takes one of them"
-		}
-		if r.Axes[i].Driven != nil {
-			reason += "; --adopt driven takes the estimate without viscosity"
-		}
+		reason := works[i].disagreement()
 		a := &r.Axes[i].Adopted
 		a.Stiffness, a.Withheld = Withheld("N/m", reason), reason
 		a.Basis, a.Weights, a.Budget = "", nil, nil
 	}
+}
+
+// disagreement says why the stiffness of an axis is withheld when estimates disagree, and what can be taken all the same.
+func (w *work) disagreement() string {
+	switch {
+	case w.takesDrag():
+		return "the estimates disagree, and the sensitivity of this axis was taken from the computed drag; --adopt drag takes it all the same"
+	case w.scaledByDrive():
+		return "the drag route and the driven stage disagree; --adopt drag or --adopt driven takes one of them"
+	case w.axis.Driven != nil:
+		return "drag route, amplitude route and driven stage do not agree; --adopt drag, --adopt amplitude or --adopt driven takes one of them"
+	case w.axis.FreeDrag != nil:
+		return "computed drag, drag of the free bead and amplitude disagree; --adopt drag, --adopt free-bead or --adopt amplitude takes one of them"
+	}
+	return "the drag route and the amplitude route disagree; --adopt drag or --adopt amplitude takes one of them"
 }
 
 // judgeHealth lets a bad check overrule the verdict of the cross-check.
