@@ -72,6 +72,56 @@ recording.noise = "1 nm"
 	}
 }
 
+// Flags that hold for the recording in question do not make another bead the same one, nor move the free bead to its height; a free
+// bead that only a flag names needs no track list.
+func TestFreeBeadAndFlags(t *testing.T) {
+	t.Chdir(t.TempDir())
+	real := func(args ...string) (int, string) {
+		w, text, errs := testWorld("")
+		w.Calibrate = calib.Calibrate
+		status := run(context.Background(), args, w)
+		return status, strings.Join(strings.Fields(text.String()+errs.String()), " ")
+	}
+	common := []string{"--rate", "10 kHz", "--axes", "x", "--noise", "1 nm"}
+	for name, args := range map[string][]string{
+		"day/trapped.csv": {"--stiffness", "31 pN/um", "--diameter", "1.03 um", "--height", "2 um", "--duration", "5 s", "--seed", "1"},
+		"day/free.csv":    {"--role", "free", "--diameter", "1.03 um", "--height", "9 um", "--duration", "1 s", "--seed", "2"},
+	} {
+		if status, text := real(flat([][]string{{"simulate", "--out", name}, common, args})...); status != StatusDone {
+			t.Fatalf("simulate %s: status %d, %s", name, status, text)
+		}
+	}
+	write := func(name, text string) {
+		if err := os.WriteFile(filepath.Join("day", name), []byte(text), 0o644); err != nil {
+			t.Fatal(err)
+		}
+	}
+	write("session.toml", "medium.temperature = \"22(1) C\"\nrecording.noise = \"1 nm\"\n")
+	list := func(diameter string) {
+		write("tracks.csv", "file,role,diameter,height\ntrapped.csv,trapped,1.03(1) um,4 um\nfree.csv,free,"+diameter+",9 um\n")
+	}
+	const used = "stiffness by the free bead's drag"
+	for _, c := range []struct {
+		diameter string
+		flags    []string
+		status   int
+		joined   bool
+	}{
+		{"1.50(1) um", []string{"--height", "2 um", "--diameter", "1.03(1) um"}, StatusDone, false},
+		{"1.03(1) um", []string{"--height", "2 um", "--diameter", "1.02(1) um"}, StatusDone, true}, // at the height of the free bead it would be 18 % off
+	} {
+		list(c.diameter)
+		args := append([]string{"calibrate", "day/trapped.csv"}, c.flags...)
+		if status, text := real(args...); status != c.status || strings.Contains(text, used) != c.joined {
+			t.Errorf("free bead of %s, %q: status %d: %s", c.diameter, args, status, text)
+		}
+	}
+	if err := os.Remove("day/tracks.csv"); err != nil {
+		t.Fatal(err)
+	}
+	check(t, real, []string{"calibrate", "day/trapped.csv", "--height", "2 um", "--diameter", "1.03(1) um", "--free-bead", "day/free.csv"}, StatusDistrust, []string{used})
+}
+
 // check runs a command and looks for its status and texts.
 func check(t *testing.T, real func(...string) (int, string), args []string, want int, texts []string) {
 	t.Helper()

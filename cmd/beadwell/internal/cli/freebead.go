@@ -27,7 +27,7 @@ func isTrapped(settings *session.Settings) bool {
 // name some, and states them in the settings as the track list's. Of several heights it takes the nearest, as the
 // surface sees it: by 1/height.
 func (s *source) findFreeBeads(folder folderSettings, path, bead string, settings *session.Settings) {
-	if _, stated := settings.Lookup(freeBeadKey, ""); stated || !isTrapped(settings) || s.inspect {
+	if _, stated := settings.Lookup(freeBeadKey, ""); stated || !isTrapped(settings) || s.inspect || s.alone {
 		return
 	}
 	type candidate struct {
@@ -39,8 +39,9 @@ func (s *source) findFreeBeads(folder folderSettings, path, bead string, setting
 		if row.Bead != "" && row.Bead != bead {
 			continue
 		}
-		own, err := s.merged(folder, filepath.Join(folder.base, filepath.FromSlash(row.File)), row.Bead, nil)
-		if err == nil && !isTrapped(own) && sameBead(own, settings) {
+		file := filepath.Join(folder.base, filepath.FromSlash(row.File))
+		own, err := s.forAnother(folder, file, row.Bead).merged(folder, file, row.Bead, nil)
+		if err == nil && !isTrapped(own) && s.sameBead(folder, file, row.Bead, path, bead) {
 			where, _ := own.Lookup("role", "")
 			found = append(found, candidate{row.File, where.Where, math.Abs(nearness(own) - nearness(settings))})
 		}
@@ -72,8 +73,31 @@ func nearness(settings *session.Settings) float64 {
 	return 1 / height.Value.SI
 }
 
-// sameBead tells whether two recordings are of one bead in one liquid, as far as the settings say.
-func sameBead(a, b *session.Settings) bool {
+// forAnother reads another recording of the same experiment: with the flags, but for those that are of the recording in
+// question, and for the height only where the track list and the session file say none.
+func (s *source) forAnother(folder folderSettings, path, bead string) *source {
+	lacking := ofOneRecording
+	if stated, err := s.stated(folder, path, bead); err == nil {
+		if _, has := stated.Lookup("chamber.height", ""); !has {
+			lacking = slices.DeleteFunc(slices.Clone(lacking), func(key string) bool { return key == "chamber.height" })
+		}
+	}
+	return &source{app: s.app, file: s.file, flags: &settingFlags{settings: *s.flags.settings.Lacking(lacking...)}, alone: true}
+}
+
+// stated are the settings of a recording without the flags.
+func (s *source) stated(folder folderSettings, path, bead string) (*session.Settings, error) {
+	return (&source{flags: &settingFlags{}}).merged(folder, path, bead, nil)
+}
+
+// sameBead tells whether two recordings are of one bead in one liquid, as far as the track list and the session file say. Flags hold
+// for both, and cannot tell them apart.
+func (s *source) sameBead(folder folderSettings, file, bead, otherFile, otherBead string) bool {
+	a, errA := s.stated(folder, file, bead)
+	b, errB := s.stated(folder, otherFile, otherBead)
+	if errA != nil || errB != nil {
+		return false
+	}
 	for _, key := range []string{"bead.diameter", "medium.fluid", "medium.viscosity"} {
 		one, _ := a.Lookup(key, "")
 		two, _ := b.Lookup(key, "")
@@ -88,7 +112,7 @@ func sameBead(a, b *session.Settings) bool {
 // and a track list they are from the folder of these, in a flag from the working folder.
 func (s *source) freeFiles(of string, settings *session.Settings) []string {
 	named, ok := settings.Lookup(freeBeadKey, "")
-	if !ok || named.Word == "none" || !isTrapped(settings) || s.inspect {
+	if !ok || named.Word == "none" || !isTrapped(settings) || s.inspect || s.alone {
 		return nil
 	}
 	return s.beside(of, named, named.Files())
@@ -144,7 +168,11 @@ func (s *source) freeBeads(ctx context.Context, of, bead string, settings *sessi
 
 // freeBead measures the drag by one recording: of the same bead where the file holds several.
 func (s *source) freeBead(ctx context.Context, path, bead string) (*calib.FreeBeadDrag, error) {
-	loaded, err := s.load(ctx, path)
+	folder, err := s.folder(path)
+	if err != nil {
+		return calib.UnusableFreeBead(path, err), nil
+	}
+	loaded, err := s.forAnother(folder, path, bead).load(ctx, path)
 	if ctx.Err() != nil {
 		return nil, ctx.Err()
 	}
