@@ -27,6 +27,7 @@ type indexPage struct {
 	Policy, Lead string
 	Style        template.CSS
 	Axes         []string
+	FreeBead     bool // any row used one
 	Rows         []indexRow
 	Series       []indexSeries
 	Notes        []string
@@ -34,6 +35,7 @@ type indexPage struct {
 
 type indexRow struct {
 	File, Link, Status, Reason string
+	FreeBead                   string   // recordings of the free bead that gave a drag
 	Facts                      []string // power, height
 	Stiffness                  []string // by axis
 }
@@ -54,6 +56,7 @@ func (s *Summary) HTML() ([]byte, error) {
 		Lead: fmt.Sprintf("%d recordings: %d consistent, %d not to be trusted, %d failed, %d set aside", len(s.Rows), good, distrusted, failed, aside)}
 	for _, row := range s.Rows {
 		page.Rows = append(page.Rows, indexRowOf(row, page.Axes))
+		page.FreeBead = page.FreeBead || len(row.FreeBead) > 0
 	}
 	for i, one := range s.Series {
 		page.Series = append(page.Series, indexSeriesOf(i, one))
@@ -82,7 +85,10 @@ func (s *Summary) axes() []string {
 }
 
 func indexRowOf(row Row, axes []string) indexRow {
-	out := indexRow{File: report.Plain(row.File), Status: row.word(), Reason: report.PlainLines(row.Reason)}
+	out := indexRow{File: report.Plain(row.File), Status: row.word(), Reason: report.PlainLines(row.Reason), FreeBead: "-"}
+	if len(row.FreeBead) > 0 {
+		out.FreeBead = report.Plain(strings.Join(row.FreeBead, "; "))
+	}
 	if row.Bead != "" {
 		out.File += ", bead " + report.Plain(row.Bead)
 	}

@@ -3,7 +3,6 @@ package batch
 import (
 	"bytes"
 	"encoding/csv"
-	"encoding/json"
 	"fmt"
 	"math"
 	"os"
@@ -100,12 +99,11 @@ func (s *Summary) write(root *os.Root) error {
 }
 
 // JSON is the content of summary.json.
-func (s *Summary) JSON() ([]byte, error) {
+func (s *Summary) JSON() ([]byte, error) { return indented(s) }
+
+func indented(value any) ([]byte, error) {
 	var b bytes.Buffer
-	e := json.NewEncoder(&b)
-	e.SetEscapeHTML(false)
-	e.SetIndent("", " ")
-	err := e.Encode(s)
+	err := report.WriteJSON(&b, value)
 	return b.Bytes(), err
 }
 

@@ -1,7 +1,9 @@
 package batch
 
 import (
+	"encoding/json"
 	"fmt"
+	"math"
 	"math/rand/v2"
 	"os"
 	"path/filepath"
@@ -47,6 +49,21 @@ func TestTrendFindsTheChange(t *testing.T) {
 	table, err := trend.CSV()
 	if err != nil || strings.Count(string(table), "\n") != 25 {
 		t.Errorf("%d lines of CSV, want a header and 24 rows: %v", strings.Count(string(table), "\n"), err)
+	}
+	stored, err := trend.JSON()
+	if err != nil {
+		t.Fatal(err)
+	}
+	var got storedTrend
+	if err := json.Unmarshal(stored, &got); err != nil || got.Schema != TrendSchema || len(got.Sessions) != 12 || len(got.Charts) != 2 {
+		t.Fatalf("JSON: %v\n%s", err, stored)
+	}
+	change := got.Charts[0].Change
+	if filepath.Base(change.At) != "2026-9" || !change.Told || math.Abs(float64(change.Step.Value)/-0.08e-3-1) > 0.3 { // 1 mN/(m W) falls by 8 %; 1 % of noise on each of 12
+		t.Errorf("the change in JSON: %+v", change)
+	}
+	if steady := got.Charts[1]; steady.Change != nil && steady.Change.Told || len(steady.Messages) != 0 || len(steady.Points) != 12 || math.Abs(float64(steady.Centre.Value)-1) > 0.02 {
+		t.Errorf("the drag ratio in JSON: %+v", steady)
 	}
 	if page, err := trend.HTML(); err != nil || !strings.Contains(string(page), "2026-9") || !strings.Contains(string(page), "<svg") {
 		t.Errorf("page: %v", err)

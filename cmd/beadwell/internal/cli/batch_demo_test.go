@@ -113,6 +113,10 @@ func TestDemoBatch(t *testing.T) {
 			t.Errorf("%s: %s", name, row.Reason)
 		}
 	}
+	// The index names the free bead in the row of each of the ten that use it.
+	if page := string(mustRead(t, "results/index.html")); strings.Count(page, "Drag also by the free bead") != 1 || strings.Count(page, `free.csv</td>`) != 10 {
+		t.Error("the index does not say which recordings use the free bead")
+	}
 	want := map[string]float64{ // README of the demo
 		"stiffness against power x stiffness per power, through the origin": 0.25e-3,
 		"stiffness against power y stiffness per power, through the origin": 0.232e-3,

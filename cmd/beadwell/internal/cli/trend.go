@@ -41,15 +41,15 @@ func (a *app) trendCommand(run func(context.Context, *app, trendOptions) error) 
 			if err := notEmpty(cmd, "html"); err != nil {
 				return err
 			}
-			if err := oneOf("format", o.format, "text", "csv"); err != nil {
+			if err := oneOf("format", o.format, formats...); err != nil {
 				return err
 			}
 			return run(cmd.Context(), a, o)
 		},
 	}
-	cmd.Flags().StringVar(&o.format, "format", "text", "form of the trend on standard output: `text|csv`")
+	cmd.Flags().StringVar(&o.format, "format", "text", "form of the trend on standard output: `text|json|csv`")
 	cmd.Flags().StringVar(&o.html, "html", "", "also write a page with the charts to `FILE`")
-	completeWords(cmd, "format", "text", "csv")
+	completeWords(cmd, "format", formats...)
 	return cmd
 }
 
@@ -59,10 +59,14 @@ func runTrend(ctx context.Context, a *app, o trendOptions) error {
 		return inputError("give folders that beadwell batch wrote, or their summary.json", err)
 	}
 	content := []byte(trend.Text())
-	if o.format == "csv" {
-		if content, err = trend.CSV(); err != nil {
-			return err
-		}
+	switch o.format {
+	case "csv":
+		content, err = trend.CSV()
+	case "json":
+		content, err = trend.JSON()
+	}
+	if err != nil {
+		return err
 	}
 	if _, err := a.Out.Write(content); err != nil {
 		return err

@@ -13,7 +13,7 @@ import (
 const shownChanges = 40
 
 // ComparisonJSON writes a comparison as indented JSON.
-func ComparisonJSON(w io.Writer, c Comparison) error { return writeJSON(w, c) }
+func ComparisonJSON(w io.Writer, c Comparison) error { return WriteJSON(w, c) }
 
 // ComparisonCSV writes one row for each change, those in words too.
 func ComparisonCSV(w io.Writer, c Comparison) error {

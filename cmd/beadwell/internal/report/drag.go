@@ -41,7 +41,7 @@ type DragRow struct {
 // DragJSON writes the drag as indented JSON.
 func DragJSON(w io.Writer, d Drag) error {
 	d.Schema = DragVersion
-	return writeJSON(w, d)
+	return WriteJSON(w, d)
 }
 
 // DragText writes the drag for a person.

@@ -39,7 +39,7 @@ func ForceJSON(w io.Writer, f Force) error {
 	if f.Findings == nil {
 		f.Findings = []calib.Finding{}
 	}
-	return writeJSON(w, f)
+	return WriteJSON(w, f)
 }
 
 // ForceText writes the summary for a person.

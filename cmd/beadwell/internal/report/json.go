@@ -60,7 +60,7 @@ func (e *FileError) Unwrap() error { return e.Err }
 // result gives the same bytes, and ReadJSON gives the same result back. An
 // input name that is no UTF-8, which JSON cannot carry, is kept beside its
 // readable form as input.name_bytes.
-func JSON(w io.Writer, r *calib.Result) error { return writeJSON(w, storable(r)) }
+func JSON(w io.Writer, r *calib.Result) error { return WriteJSON(w, storable(r)) }
 
 // SetJSON writes the results of several recordings.
 func SetJSON(w io.Writer, s Set) error {
@@ -69,7 +69,7 @@ func SetJSON(w io.Writer, s Set) error {
 		stored.Results = append(stored.Results, storable(r))
 	}
 	stored.Failures = append(stored.Failures, s.Failures...)
-	return writeJSON(w, stored)
+	return WriteJSON(w, stored)
 }
 
 // ProblemJSON writes one problem on one line.
@@ -82,7 +82,9 @@ func ProblemJSON(w io.Writer, p Problem) error {
 	return err
 }
 
-func writeJSON(w io.Writer, value any) error {
+// WriteJSON writes a value as all JSON outputs are: indented, ending with a newline, and with the characters escaped that a terminal would
+// act on.
+func WriteJSON(w io.Writer, value any) error {
 	var b bytes.Buffer
 	e := json.NewEncoder(&b)
 	e.SetEscapeHTML(false)

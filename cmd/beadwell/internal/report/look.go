@@ -26,7 +26,7 @@ func LooksJSON(w io.Writer, s LookSet) error {
 		l.Settings = append([]calib.Setting{}, l.Settings...)
 		out.Looks = append(out.Looks, l)
 	}
-	return writeJSON(w, out)
+	return WriteJSON(w, out)
 }
 
 // lookHeader names the columns of LooksCSV.

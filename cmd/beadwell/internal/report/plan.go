@@ -11,7 +11,7 @@ import (
 )
 
 // PlanJSON writes a plan as indented JSON.
-func PlanJSON(w io.Writer, p *calib.Plan) error { return writeJSON(w, p) }
+func PlanJSON(w io.Writer, p *calib.Plan) error { return WriteJSON(w, p) }
 
 // PlanText writes a plan for a person.
 func PlanText(w io.Writer, plan *calib.Plan) error {
