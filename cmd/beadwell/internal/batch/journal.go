@@ -32,8 +32,9 @@ type header struct {
 // entry is one file of the list that was done.
 type entry struct {
 	File        string            `json:"file"`
-	Folder      string            `json:"folder"` // of its outputs
-	SHA256      string            `json:"sha256"` // of the file; empty when it could not be read
+	FileBytes   string            `json:"file_bytes,omitempty"` // as of a Row
+	Folder      string            `json:"folder"`               // of its outputs
+	SHA256      string            `json:"sha256"`               // of the file; empty when it could not be read
 	Fingerprint string            `json:"fingerprint"`
 	Rows        []Row             `json:"rows"`
 	Outputs     map[string]string `json:"outputs"` // SHA-256 by path in the folder of results
@@ -63,11 +64,24 @@ func readJournal(root *os.Root, name string) (head header, entries map[string]en
 			continue
 		}
 		var e entry
-		if json.Unmarshal(line, &e) != nil {
+		if json.Unmarshal(line, &e) != nil || e.restoreNames() != nil {
 			return head, entries, nil
 		}
 		entries[e.File] = e
 	}
+}
+
+// restoreNames gives the entry and its rows the names that JSON could not carry.
+func (e *entry) restoreNames() (err error) {
+	if e.File, err = nameOf(e.File, e.FileBytes); err != nil {
+		return err
+	}
+	for i := range e.Rows {
+		if e.Rows[i].File, err = nameOf(e.Rows[i].File, e.Rows[i].FileBytes); err != nil {
+			return err
+		}
+	}
+	return nil
 }
 
 // journal appends entries as they come.

@@ -1,8 +1,10 @@
 package batch
 
 import (
+	"encoding/hex"
 	"math"
 	"slices"
+	"unicode/utf8"
 
 	"beadwell/calib"
 	"beadwell/cmd/beadwell/internal/report"
@@ -20,6 +22,7 @@ const FitWord = "fit"
 // Row is one recording in the summary: one bead of one file.
 type Row struct {
 	File        string          `json:"file"`
+	FileBytes   string          `json:"file_bytes,omitempty"` // hexadecimal; of a name that is no UTF-8, which JSON cannot carry
 	Bead        string          `json:"bead,omitempty"`
 	Role        string          `json:"role,omitempty"` // of the recording, where there is a result
 	Status      string          `json:"status"`         // a verdict, "failed" or "set aside"
@@ -93,8 +96,25 @@ func (r Row) word() string {
 
 // emptyRow is a recording without a result.
 func emptyRow(file, status, reason string) Row {
-	return Row{File: file, Status: status, Reason: reason, Diameter: unknown, Height: unknown, HeightScale: unknown, Power: unknown, Temperature: unknown,
+	return Row{File: file, FileBytes: nameBytes(file), Status: status, Reason: reason, Diameter: unknown, Height: unknown, HeightScale: unknown, Power: unknown, Temperature: unknown,
 		Viscosity: unknown, FamilyWiseP: unknown.Value, Axes: []RowAxis{}}
+}
+
+// nameBytes is the hexadecimal form of a name that is no UTF-8; empty for others.
+func nameBytes(name string) string {
+	if utf8.ValidString(name) {
+		return ""
+	}
+	return hex.EncodeToString([]byte(name))
+}
+
+// nameOf is the name that JSON kept, with its bytes where it is no UTF-8.
+func nameOf(name, stored string) (string, error) {
+	if stored == "" {
+		return name, nil
+	}
+	whole, err := hex.DecodeString(stored)
+	return string(whole), err
 }
 
 // failedRow is a recording with a problem.

@@ -247,7 +247,7 @@ func (job Job) do(ctx context.Context, root *os.Root, t Task) (e entry, err erro
 			e.SHA256, e.Outputs, err = FileSum(t.Path), map[string]string{}, nil
 		}
 	}()
-	e = entry{File: t.Path, Folder: t.Folder, Fingerprint: t.fingerprint, Outputs: map[string]string{}}
+	e = entry{File: t.Path, FileBytes: nameBytes(t.Path), Folder: t.Folder, Fingerprint: t.fingerprint, Outputs: map[string]string{}}
 	before, errBefore := os.Stat(t.Path)
 	outcomes, err := job.Calibrate(ctx, t.Path)
 	if err != nil {

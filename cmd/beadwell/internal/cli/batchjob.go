@@ -110,7 +110,7 @@ func (b *batchWork) command(path string) []string {
 		}
 		command = append(command, "--"+key.Flag, text)
 	}
-	return append(command, path)
+	return utf8Words(append(command, path))
 }
 
 // fingerprint is a hash of all that the result depends on besides the recording: the

@@ -189,7 +189,7 @@ func (a *app) calibrateTrack(ctx context.Context, src *source, path string, opti
 		return []outcome{{path: path, err: err}}
 	}
 	boundMemory(recordings)
-	options.Program = calib.Program{Name: "beadwell", Version: a.Version, Command: append([]string{"beadwell"}, a.args...)}
+	options.Program = calib.Program{Name: "beadwell", Version: a.Version, Command: a.command()}
 	outcomes := make([]outcome, len(recordings))
 	for i, one := range recordings {
 		outcomes[i] = outcome{path: path}

@@ -138,7 +138,7 @@ func runForce(ctx context.Context, a *app, o forceOptions) error {
 		return err
 	}
 	summary := forceSummary(one.recording, result, traces, where)
-	summary.Program = calib.Program{Name: "beadwell", Version: a.Version, Command: append([]string{"beadwell"}, a.args...)}
+	summary.Program = calib.Program{Name: "beadwell", Version: a.Version, Command: a.command()}
 	summary.Created, summary.Input.Name = created, o.track
 	summary.Findings = append(findings, summary.Findings...)
 	return a.writeForces(ctx, o, folder, one.recording, traces, summary)

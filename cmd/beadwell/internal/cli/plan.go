@@ -122,7 +122,7 @@ func runPlan(ctx context.Context, a *app, o planOptions) error {
 	if err != nil {
 		return err
 	}
-	options.Program = calib.Program{Name: "beadwell", Version: a.Version, Command: append([]string{"beadwell"}, a.args...)}
+	options.Program = calib.Program{Name: "beadwell", Version: a.Version, Command: a.command()}
 	folder, err := openSheets(o.out, "", o.force)
 	if err != nil {
 		return err

@@ -122,7 +122,7 @@ func runSimulate(ctx context.Context, a *app, o simulateOptions) error {
 		_, err := a.Out.Write(track.Bytes())
 		return err
 	}
-	plan.Command = append([]string{"beadwell"}, a.args...)
+	plan.Command = a.command()
 	truth, err := json.MarshalIndent(plan, "", "  ")
 	if err != nil {
 		return err

@@ -9,6 +9,10 @@ func version() string {
 	if !ok {
 		return "unknown"
 	}
+	return versionOf(info)
+}
+
+func versionOf(info *debug.BuildInfo) string {
 	text := info.Main.Version
 	if text == "" {
 		text = "(devel)"
@@ -26,4 +30,16 @@ func version() string {
 		return text
 	}
 	return text + " (commit " + commit + changed + ")"
+}
+
+// command is the command line as results keep it.
+func (a *app) command() []string { return utf8Words(append([]string{"beadwell"}, a.args...)) }
+
+// utf8Words are words of a command line as JSON can carry them: each byte that is no UTF-8 is U+FFFD, so that what
+// is made from a result and what is made from its stored form are the same.
+func utf8Words(words []string) []string {
+	for i, word := range words {
+		words[i] = string([]rune(word))
+	}
+	return words
 }

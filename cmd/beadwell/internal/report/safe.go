@@ -79,7 +79,7 @@ func escapeInvisible(encoded []byte) []byte {
 	b.Grow(len(text))
 	for _, r := range text {
 		switch {
-		case r == '\n' || unicode.IsPrint(r):
+		case r == '\n' || unicode.IsPrint(r) && r != utf8.RuneError: // encoding/json writes that as \ufffd for a byte that is no UTF-8
 			b.WriteRune(r)
 		case r <= 0xffff:
 			fmt.Fprintf(&b, `\u%04x`, r)
