@@ -2,6 +2,7 @@ package report
 
 import (
 	"fmt"
+	"slices"
 	"strings"
 	"unicode"
 	"unicode/utf8"
@@ -69,11 +70,17 @@ func cell(text string) string {
 	return safe
 }
 
+// unusual tells of a byte whether it may be part of a character to escape.
+func unusual(b byte) bool { return b != '\n' && (b < ' ' || b > '~') }
+
 // escapeInvisible rewrites encoded JSON so that it can be shown on a terminal:
 // the characters that encoding/json leaves as they are although they are
 // invisible or steer the terminal become \u escapes, which every reader turns
 // back into the same characters. They can stand inside strings only.
 func escapeInvisible(encoded []byte) []byte {
+	if !slices.ContainsFunc(encoded, unusual) {
+		return encoded
+	}
 	text := string(encoded)
 	var b strings.Builder
 	b.Grow(len(text))
