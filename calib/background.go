@@ -171,7 +171,7 @@ func (b background) findingsOf(axis string) []Finding {
 func measureBackground(ctx context.Context, rec *track.Recording, set *session.Settings, opt Options) (*Result, error) {
 	var works []*work
 	for _, a := range rec.Axes {
-		w := &work{name: rec.Name, axisName: a.Name, set: set, source: a, recorded: a, rate: rec.Rate, start: rec.Start, phys: &physics{}}
+		w := &work{name: rec.Name, axisName: a.Name, set: set, source: a, recorded: a, rate: rec.Rate, start: rec.Start, unit: 1, phys: &physics{}}
 		if err := w.setExposure(); err != nil {
 			return nil, err
 		}

@@ -3,6 +3,7 @@ package calib
 import (
 	"context"
 	"math"
+	"slices"
 	"testing"
 
 	"beadwell/calib/simulate"
@@ -75,6 +76,9 @@ func TestBackground(t *testing.T) {
 	}
 	if len(b.Lines) != 1 || math.Abs(float64(b.Lines[0].Frequency)-50) > 0.1 || math.Abs(float64(b.Lines[0].Amplitude)-3e-9) > 3e-10 {
 		t.Errorf("lines %+v, want 3 nm at 50 Hz", b.Lines)
+	}
+	if a := r.Axes[0]; float64(slices.Max(a.Trace.High)) < 3*s.noise || float64(slices.Min(a.Trace.Low)) > -3*s.noise { // the largest of 20000
+		t.Errorf("trace from %v to %v m", slices.Min(a.Trace.Low), slices.Max(a.Trace.High))
 	}
 	for name, perVolt := range map[string]float64{"metres": 0, "volts": 1.31e-6} {
 		rec, other := s.record(t, 4), s.like(t, empty, 3)
