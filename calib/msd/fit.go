@@ -246,8 +246,8 @@ func (f *fitter) search() error {
 		step, gain := f.step()
 		if gain < 1e-9 {
 			f.chi2 = value
-			if !(math.Exp(f.at[0])*f.in.Guess.Interval < 3) {
-				return ErrNoFit
+			if f.free[0] == 0 && !(math.Exp(f.at[0])*f.in.Guess.Interval < relaxation.HighestCorner) {
+				return ErrNoFit // it ran to the end of the domain; one that is not fitted may stand there
 			}
 			return nil
 		}

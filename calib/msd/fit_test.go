@@ -386,3 +386,26 @@ func TestEstimateRefuses(t *testing.T) {
 		}
 	}
 }
+
+// White samples have a plateau, whatever the corner frequency beyond the sampling rate: also where the guess
+// stands at the end of the domain. The mean square of n samples is known to sqrt(2/n) of itself; four of
+// those bound a fixed seed, and the plateau is what remains without a noise of a fifth.
+func TestPlateauOfWhiteSamples(t *testing.T) {
+	const n = 300
+	x := noise(n, 5)
+	mean := 0.0
+	for _, v := range x {
+		mean += v * v / n
+	}
+	for _, corner := range []float64{0.8, relaxation.HighestCorner, 5} {
+		r, err := Estimate(Input{X: x, Scale: mean, Noise: Noise{Known: true, Variance: mean / 5},
+			Guess: relaxation.Process{Corner: corner, Variance: 0.8 * mean, Noise: mean / 5, Interval: 1}})
+		if err != nil {
+			t.Errorf("corner %g: %v", corner, err)
+			continue
+		}
+		if gap := r.Variance/(0.8*mean) - 1; math.Abs(gap) > 4*math.Sqrt(2./n)/0.8 {
+			t.Errorf("corner %g: plateau off by %.2g", corner, gap)
+		}
+	}
+}
