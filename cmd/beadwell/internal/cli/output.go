@@ -21,6 +21,19 @@ type outputFolder struct {
 	root   *os.Root // of --out
 	parent string   // as the user gave it
 	name   string
+	// pending makes the file that write fills; nil is that of renameio. Tests give one that fails.
+	pending func(name string, opts ...renameio.Option) (pendingFile, error)
+}
+
+// pendingFile is a file under a temporary name.
+type pendingFile interface {
+	Write([]byte) (int, error)
+	CloseAtomicallyReplace() error // syncs, closes, renames
+	Cleanup() error                // does nothing after a rename
+}
+
+func newPendingFile(name string, opts ...renameio.Option) (pendingFile, error) {
+	return renameio.NewPendingFile(name, opts...)
 }
 
 // openParent makes the folder of --out when it is not there, and opens it.
@@ -88,11 +101,15 @@ func (f outputFolder) write(ctx context.Context, file string, content []byte) er
 	if _, err := f.check(file); err != nil {
 		return err
 	}
-	pending, err := renameio.NewPendingFile(filepath.Join(f.name, file), renameio.WithRoot(f.root), renameio.WithPermissions(0o666))
+	open := f.pending
+	if open == nil {
+		open = newPendingFile
+	}
+	pending, err := open(filepath.Join(f.name, file), renameio.WithRoot(f.root), renameio.WithPermissions(0o666))
 	if err != nil {
 		return outputError(f.path(file), err)
 	}
-	defer pending.Cleanup() // does nothing after a rename
+	defer pending.Cleanup()
 	if _, err := pending.Write(content); err != nil {
 		return outputError(f.path(file), err)
 	}

@@ -11,7 +11,12 @@ import (
 	"path/filepath"
 	"slices"
 	"strings"
+	"syscall"
 	"testing"
+
+	"github.com/google/renameio/v2"
+
+	"beadwell/calib"
 )
 
 // Each file of --out in turn cannot be replaced: the status is not 0, the file
@@ -104,6 +109,89 @@ func TestFullDiskWalk(t *testing.T) {
 		for other, text := range after {
 			if text != old[other] && text != renewed[other] {
 				t.Errorf("no room for %s: %s is torn", name, other)
+			}
+		}
+	}
+}
+
+// failing is a file of which one step fails, as on a disk that goes away.
+type failing struct {
+	pendingFile
+	step string
+}
+
+func (f failing) Write(p []byte) (int, error) {
+	if f.step == "write" {
+		n, _ := f.pendingFile.Write(p[:len(p)/2])
+		return n, syscall.EIO
+	}
+	return f.pendingFile.Write(p)
+}
+
+func (f failing) CloseAtomicallyReplace() error {
+	switch f.step {
+	case "sync":
+		return &os.PathError{Op: "sync", Path: "tmp", Err: syscall.EIO}
+	case "close": // a network disk tells here that it lost what it took
+		return &os.PathError{Op: "close", Path: "tmp", Err: syscall.EDQUOT}
+	case "rename":
+		return &os.LinkError{Op: "rename", Old: "tmp", New: "file", Err: syscall.EROFS}
+	}
+	return f.pendingFile.CloseAtomicallyReplace()
+}
+
+// Making, writing, syncing, closing and renaming each file of a recording in turn fail: there is an error that names the file, the files before it
+// are new, it and those behind it are old, and nothing else is left.
+func TestEachStepOfEachFileFails(t *testing.T) {
+	names := []string{resultJSON, resultText, reportHTML}
+	for _, step := range []string{"make", "write", "sync", "close", "rename"} {
+		for at, bad := range names {
+			out := t.TempDir()
+			w, err := newResultWriter(out, true, []string{"run.csv"})
+			if err != nil {
+				t.Fatal(err)
+			}
+			content := "old"
+			w.files = func(context.Context, *calib.Result) (files []file, err error) {
+				for _, name := range names {
+					files = append(files, file{name, []byte(content + " " + name)})
+				}
+				return files, nil
+			}
+			write := func() error {
+				return w.writeAll(context.Background(), []outcome{{path: "run.csv", result: &calib.Result{}}})
+			}
+			if err := write(); err != nil {
+				t.Fatal(err)
+			}
+			content = "new"
+			w.pending = func(name string, opts ...renameio.Option) (pendingFile, error) {
+				whole, err := newPendingFile(name, opts...)
+				if filepath.Base(name) != bad {
+					return whole, err
+				}
+				if step == "make" {
+					return nil, errors.Join(syscall.EMFILE, err, whole.Cleanup())
+				}
+				return failing{whole, step}, err
+			}
+			var told *failure
+			if err := write(); !errors.As(err, &told) || told.status != StatusFailed || !strings.Contains(err.Error(), bad) {
+				t.Errorf("%s of %s: %v", step, bad, err)
+			}
+			w.close()
+			got := contents(t, filepath.Join(out, "run"))
+			for i, name := range names {
+				want := "new " + name
+				if i >= at {
+					want = "old " + name
+				}
+				if got[name] != want {
+					t.Errorf("%s of %s: %s is %q, want %q", step, bad, name, got[name], want)
+				}
+			}
+			if len(got) != len(names) {
+				t.Errorf("%s of %s: %d files are left, want %d", step, bad, len(got), len(names))
 			}
 		}
 	}

@@ -9,6 +9,8 @@ import (
 	"path/filepath"
 	"slices"
 
+	"github.com/google/renameio/v2"
+
 	"beadwell/calib"
 	"beadwell/cmd/beadwell/internal/figure"
 	"beadwell/cmd/beadwell/internal/report"
@@ -22,6 +24,8 @@ type resultWriter struct {
 	force  bool
 	names  map[string]string // folder of each track
 	files  func(context.Context, *calib.Result) ([]file, error)
+	// pending is that of each outputFolder.
+	pending func(name string, opts ...renameio.Option) (pendingFile, error)
 }
 
 // The names of the files; figures have names of their own.
@@ -64,7 +68,7 @@ func (w *resultWriter) close() {
 }
 
 func (w *resultWriter) folder(name string) outputFolder {
-	return outputFolder{root: w.root, parent: w.parent, name: name}
+	return outputFolder{root: w.root, parent: w.parent, name: name, pending: w.pending}
 }
 
 // writeAll writes the outputs of every recording that has a result. It goes on
