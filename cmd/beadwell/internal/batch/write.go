@@ -25,10 +25,13 @@ func writeFile(root *os.Root, name string, content []byte) error {
 		return err
 	}
 	_, err = file.Write(content)
-	if err = errors.Join(err, file.Close()); err != nil {
+	if err = errors.Join(err, file.Close()); err == nil {
+		err = root.Rename(part, name)
+	}
+	if err != nil {
 		return errors.Join(err, root.Remove(part))
 	}
-	return root.Rename(part, name)
+	return nil
 }
 
 // Output is one file of a recording.

@@ -190,8 +190,9 @@ func TestEachStepOfEachFileFails(t *testing.T) {
 					t.Errorf("%s of %s: %s is %q, want %q", step, bad, name, got[name], want)
 				}
 			}
-			if len(got) != len(names) {
-				t.Errorf("%s of %s: %d files are left, want %d", step, bad, len(got), len(names))
+			beside, err := os.ReadDir(out) // temporary names stand in the folder of --out
+			if len(got) != len(names) || len(beside) != 1 || err != nil {
+				t.Errorf("%s of %s: %d files are left, want %d; beside them %v, %v", step, bad, len(got), len(names), beside, err)
 			}
 		}
 	}
