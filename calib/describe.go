@@ -339,6 +339,9 @@ func (w *work) trace() Trace {
 	x := w.recorded.Values
 	n := min(traceSteps, len(x))
 	t := Trace{Start: Float(w.start), Step: Float(float64(len(x)) / float64(n) / w.rate), Low: make([]Float, n), High: make([]Float, n)}
+	if w.unscaled && w.unit == 1 {
+		t.Unit = w.recorded.Unit
+	}
 	stretch := func(i int) {
 		low, high := math.Inf(1), math.Inf(-1)
 		for _, v := range x[i*len(x)/n : (i+1)*len(x)/n] {

@@ -80,6 +80,10 @@ func TestBackground(t *testing.T) {
 	if a := r.Axes[0]; float64(slices.Max(a.Trace.High)) < 3*s.noise || float64(slices.Min(a.Trace.Low)) > -3*s.noise { // the largest of 20000
 		t.Errorf("trace from %v to %v m", slices.Min(a.Trace.Low), slices.Max(a.Trace.High))
 	}
+	inV := calibrated(t, inVolts(s.like(t, empty, 3), 1.31e-6), alone).Axes[0].Trace
+	if high := float64(slices.Max(inV.High)) * 1.31e-6; inV.Unit != "V" || r.Axes[0].Trace.Unit != "" || math.Abs(high/float64(slices.Max(r.Axes[0].Trace.High))-1) > 1e-9 {
+		t.Errorf("trace in %q reaches to %v m", inV.Unit, high)
+	}
 	for name, perVolt := range map[string]float64{"metres": 0, "volts": 1.31e-6} {
 		rec, other := s.record(t, 4), s.like(t, empty, 3)
 		other.Name = "empty"

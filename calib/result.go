@@ -324,10 +324,11 @@ type MSDPoint struct {
 // Trace is the position against time, decimated to minimum and maximum of
 // consecutive stretches.
 type Trace struct {
-	Start Float   `json:"start_s"` // time of the first sample
-	Step  Float   `json:"step_s"`  // length of a stretch
-	Low   []Float `json:"low_m"`   // lowest position in each stretch; null without a sample
-	High  []Float `json:"high_m"`  // highest position in each stretch
+	Start Float   `json:"start_s"`        // time of the first sample
+	Step  Float   `json:"step_s"`         // length of a stretch
+	Low   []Float `json:"low_m"`          // lowest position in each stretch; null without a sample
+	High  []Float `json:"high_m"`         // highest position in each stretch
+	Unit  string  `json:"unit,omitempty"` // of the positions where no length is known: V, mV, counts or 1; absent when they are in m
 }
 
 // The statuses of a verdict.

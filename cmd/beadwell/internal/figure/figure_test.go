@@ -260,6 +260,18 @@ func TestUnitsOfAxes(t *testing.T) {
 	}
 }
 
+// A trace without a length keeps the unit of the detector, in the figure and in its words.
+func TestTraceInVolts(t *testing.T) {
+	r := &calib.Result{Axes: []calib.Axis{{Name: "x", Trace: calib.Trace{Step: 1, Low: []calib.Float{-0.02, -0.01}, High: []calib.Float{0.01, 0.03}, Unit: "V"}}}}
+	f := trace(r, &r.Axes[0])
+	if y := f.panels[0].y; y.unit != "V" || y.si != "V" || y.factor != 1 || y.low > -0.02 || y.high < 0.03 || y.high > 0.1 {
+		t.Errorf("scale %+v", y)
+	}
+	if !strings.Contains(f.Description, "between −0.02 V and 0.03 V") {
+		t.Errorf("words %q", f.Description)
+	}
+}
+
 func TestPlateauLabelSaysWhatWasRemoved(t *testing.T) {
 	a := specimen.Result().Axes[0]
 	if _, s := find(t, displacement(&a), "displacement", "plateau"); strings.Contains(s.label, "removed") {

@@ -21,7 +21,7 @@ func trace(r *calib.Result, a *calib.Axis) Figure {
 	if times.high-times.low < 0.2 {
 		unit.unit, unit.factor = "ms", 1e3
 	}
-	p := panel{name: "trace", share: 1, x: unit.over(times), y: positionScale("position", reach)}
+	p := panel{name: "trace", share: 1, x: unit.over(times), y: traceScale(a.Trace.Unit, reach)}
 	marks, named := findingSpans(r, a)
 	unused := unusedSpans(r, times)
 	for _, m := range unused {
@@ -136,9 +136,21 @@ func findingSpans(r *calib.Result, a *calib.Axis) (marks []series, named []strin
 	return marks, named
 }
 
+// traceScale is the scale of positions in m, or in a detector's unit.
+func traceScale(unit string, reach extent) scale {
+	if unit == "" {
+		return positionScale("position", reach)
+	}
+	return scale{quantity: "position", unit: clean(unit), si: unit, factor: 1}.over(reach)
+}
+
 func describeTrace(a *calib.Axis, times, reach extent, named []string) string {
+	factor, unit := 1e9, "nm"
+	if a.Trace.Unit != "" {
+		factor, unit = 1, clean(a.Trace.Unit)
+	}
 	s := fmt.Sprintf("Position along %s over %s, between %s and %s", clean(a.Name), plain(times.high-times.low, "s"),
-		plain(reach.low*1e9, "nm"), plain(reach.high*1e9, "nm"))
+		plain(reach.low*factor, unit), plain(reach.high*factor, unit))
 	if len(named) > 0 {
 		s += "; marked: " + strings.Join(named, ", ")
 	}
