@@ -27,17 +27,30 @@ func Format(value, u float64, unit string) string {
 
 // FormatInterval prints an interval, in SI units, in the given unit, with
 // two significant digits of its width: "[51.2, 53.5] pN/um". An end that is
-// NaN is printed as "unknown", one that is infinite as "inf". It panics on an unknown
-// unit, as Format does.
+// NaN is printed as "unknown", one that is infinite as "inf", and the other then with three
+// significant digits. It panics on an unknown unit, as Format does.
 func FormatInterval(low, high float64, unit string) string {
 	s := mustScale(unit)
 	a, b := s.fromSI(low), s.fromSI(high)
 	show := func(x float64) string { return formatNumber(x, 0) }
-	if width := math.Abs(b - a); width > 0 && !math.IsInf(width, 0) {
-		_, exponent := roundDigits(width, 2)
-		decimals := 1 - exponent
-		if !needsExponent(math.Max(math.Abs(a), math.Abs(b)), decimals) {
-			show = func(x float64) string { return fixed(x, decimals) }
+	wide, largest, digits := math.Abs(b-a), math.Max(math.Abs(a), math.Abs(b)), 2
+	if math.IsNaN(wide) || math.IsInf(wide, 0) { // the end that is there, if any
+		wide, digits = math.Abs(a), 3
+		if math.IsNaN(wide) || math.IsInf(wide, 0) {
+			wide = math.Abs(b)
+		}
+		largest = wide
+	}
+	if wide > 0 && !math.IsInf(wide, 0) {
+		_, exponent := roundDigits(wide, digits)
+		decimals := digits - 1 - exponent
+		if !needsExponent(largest, decimals) {
+			show = func(x float64) string {
+				if math.IsNaN(x) || math.IsInf(x, 0) {
+					return formatNumber(x, 0)
+				}
+				return fixed(x, decimals)
+			}
 		}
 	}
 	return withUnit("["+show(a)+", "+show(b)+"]", unit)

@@ -93,8 +93,12 @@ func TestFormatInterval(t *testing.T) {
 		{0.001, 0.997, "1", "[0.0, 1.0]"}, // the width rounds to 1.0
 		{1200, 4800, "Hz", "[1200, 4800] Hz"},
 		{1, 1, "Hz", "[1, 1] Hz"},
-		{nan, 2, "Hz", "[unknown, 2] Hz"},
-		{1.5, math.Inf(1), "Hz", "[1.5, inf] Hz"},
+		{nan, 2, "Hz", "[unknown, 2.00] Hz"},
+		{1.5, math.Inf(1), "Hz", "[1.50, inf] Hz"},
+		{4.42969e-3, nan, "ms", "[4.43, unknown] ms"},
+		{nan, nan, "Hz", "[unknown, unknown] Hz"},
+		{math.Inf(-1), math.Inf(1), "Hz", "[-inf, inf] Hz"},
+		{0, nan, "Hz", "[0, unknown] Hz"},
 		{1e12, 2e12, "Hz", "[1e12, 2e12] Hz"},
 	}
 	for _, tt := range tests {

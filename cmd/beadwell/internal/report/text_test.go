@@ -119,7 +119,7 @@ func TestNumber(t *testing.T) {
 		{normal(52.34e-6, 1.1e-6), "52.3(11)"}, // JCGM 100:2008, 7.2.2, two digits
 		{normal(52.34e-6, 0.31e-6), "52.34(31)"},
 		{lopsided, "52.3 [51.4, 53.9]"},
-		{open, "52.3 [51.24, unknown]"},
+		{open, "52.3 [51.2, unknown]"},
 		{noWidth, "52.34(?)"},
 		{nil, "52.34"},
 	} {
