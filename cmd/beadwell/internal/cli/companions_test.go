@@ -10,22 +10,24 @@ import (
 	"beadwell/calib"
 )
 
+// calibrated runs a command that calibrates indeed; what it says comes with single spaces.
+func calibrated(args ...string) (int, string) {
+	w, text, errs := testWorld("")
+	w.Calibrate = calib.Calibrate
+	status := run(context.Background(), args, w)
+	return status, strings.Join(strings.Fields(text.String()+errs.String()), " ")
+}
+
 // A trap that the laser heats by 10 K, which nobody stated. Alone the recording cannot tell it from a wrong
 // scale; with that of the free bead, which the session file or a flag names, it can, also in a batch and in a rerun.
 func TestCompanions(t *testing.T) {
 	t.Chdir(t.TempDir())
-	real := func(args ...string) (int, string) {
-		w, text, errs := testWorld("")
-		w.Calibrate = calib.Calibrate
-		status := run(context.Background(), args, w)
-		return status, strings.Join(strings.Fields(text.String()+errs.String()), " ")
-	}
 	bead := []string{"--diameter", "1.03 um", "--height", "6 um", "--rate", "10 kHz", "--axes", "x", "--noise", "1 nm"}
 	for name, args := range map[string][]string{
 		"day/trapped.csv": {"--stiffness", "31 pN/um", "--temperature", "35 C", "--duration", "20 s", "--seed", "11"},
 		"day/free.csv":    {"--role", "free", "--temperature", "25 C", "--duration", "1 s", "--seed", "12"},
 	} {
-		if status, text := real(flat([][]string{{"simulate", "--out", name}, bead, args})...); status != StatusDone {
+		if status, text := calibrated(flat([][]string{{"simulate", "--out", name}, bead, args})...); status != StatusDone {
 			t.Fatalf("simulate %s: status %d, %s", name, status, text)
 		}
 	}
@@ -52,7 +54,7 @@ recording.noise = "1 nm"
 		{[]string{"calibrate", "--free-bead", "none", "--companions", "day/free.csv", "day/trapped.csv"}, StatusDistrust, []string{alone, "Weighed together with day/free.csv", "eyewear"}},
 		{[]string{"calibrate", "--companions", "nowhere.csv", "day/trapped.csv"}, StatusInput, []string{"nowhere.csv: no such file or directory"}},
 	} {
-		check(t, real, c.args, c.status, c.want)
+		check(t, calibrated, c.args, c.status, c.want)
 	}
 	write("session.toml", session+`recording.companions = "trapped.csv; free.csv"`+"\n") // for the whole folder: each passes itself over
 	for _, c := range []struct {
@@ -64,7 +66,7 @@ recording.noise = "1 nm"
 		{[]string{"rerun", "results/trapped/result.json"}, StatusDone, []string{"same"}},
 		{[]string{"batch", "--out", "all", "day"}, StatusDistrust, nil},
 	} {
-		check(t, real, c.args, c.status, c.want)
+		check(t, calibrated, c.args, c.status, c.want)
 	}
 	stored, err := os.ReadFile("all/trapped/result.json")
 	if err != nil || !strings.Contains(string(stored), `"companions": [`) {
@@ -76,18 +78,12 @@ recording.noise = "1 nm"
 // bead that only a flag names needs no track list.
 func TestFreeBeadAndFlags(t *testing.T) {
 	t.Chdir(t.TempDir())
-	real := func(args ...string) (int, string) {
-		w, text, errs := testWorld("")
-		w.Calibrate = calib.Calibrate
-		status := run(context.Background(), args, w)
-		return status, strings.Join(strings.Fields(text.String()+errs.String()), " ")
-	}
 	common := []string{"--rate", "10 kHz", "--axes", "x", "--noise", "1 nm"}
 	for name, args := range map[string][]string{
 		"day/trapped.csv": {"--stiffness", "31 pN/um", "--diameter", "1.03 um", "--height", "2 um", "--duration", "5 s", "--seed", "1"},
 		"day/free.csv":    {"--role", "free", "--diameter", "1.03 um", "--height", "9 um", "--duration", "1 s", "--seed", "2"},
 	} {
-		if status, text := real(flat([][]string{{"simulate", "--out", name}, common, args})...); status != StatusDone {
+		if status, text := calibrated(flat([][]string{{"simulate", "--out", name}, common, args})...); status != StatusDone {
 			t.Fatalf("simulate %s: status %d, %s", name, status, text)
 		}
 	}
@@ -112,20 +108,20 @@ func TestFreeBeadAndFlags(t *testing.T) {
 	} {
 		list(c.diameter)
 		args := append([]string{"calibrate", "day/trapped.csv"}, c.flags...)
-		if status, text := real(args...); status != c.status || strings.Contains(text, used) != c.joined {
+		if status, text := calibrated(args...); status != c.status || strings.Contains(text, used) != c.joined {
 			t.Errorf("free bead of %s, %q: status %d: %s", c.diameter, args, status, text)
 		}
 	}
 	if err := os.Remove("day/tracks.csv"); err != nil {
 		t.Fatal(err)
 	}
-	check(t, real, []string{"calibrate", "day/trapped.csv", "--height", "2 um", "--diameter", "1.03(1) um", "--free-bead", "day/free.csv"}, StatusDistrust, []string{used})
+	check(t, calibrated, []string{"calibrate", "day/trapped.csv", "--height", "2 um", "--diameter", "1.03(1) um", "--free-bead", "day/free.csv"}, StatusDistrust, []string{used})
 }
 
 // check runs a command and looks for its status and texts.
 func check(t *testing.T, real func(...string) (int, string), args []string, want int, texts []string) {
 	t.Helper()
-	status, text := real(args...)
+	status, text := calibrated(args...)
 	if status != want {
 		t.Errorf("%v: status %d, want %d: %s", args, status, want, text)
 	}
