@@ -31,7 +31,11 @@ func (v *view) checkShape(name string) error {
 		}
 	}
 	if rows <= 12 && v.width >= 64 {
-		return &Error{File: name, Line: line, Code: CodeLayout, What: fmt.Sprintf("the table has %d rows of %d cells: it seems to lie on its side", rows, v.width),
+		many := "1 row"
+		if rows != 1 {
+			many = fmt.Sprintf("%d rows", rows)
+		}
+		return &Error{File: name, Line: line, Code: CodeLayout, What: fmt.Sprintf("the table has %s of %d cells: it seems to lie on its side", many, v.width),
 			Remedy: "transpose it: one row per sample, one column per axis"}
 	}
 	if v.width > columnLimit {

@@ -8,6 +8,7 @@ import (
 	"path/filepath"
 	"strings"
 	"testing"
+	"unicode/utf8"
 
 	"beadwell/cmd/beadwell/internal/batch"
 )
@@ -102,6 +103,10 @@ func TestHostileNames(t *testing.T) {
 			t.Errorf("%q: report makes another result", name)
 		}
 		quietly(StatusDone, "force", path, "--with", results[0], "--centre", "mean", "--out", out+"-force")
+		if forces, _ := filepath.Glob(out + "-force/*/force.json"); len(forces) != 1 ||
+			!utf8.ValidString(name) && strings.Count(string(mustRead(t, forces[0])), fmt.Sprintf(`"name_bytes": "%x"`, path)) != 2 {
+			t.Errorf("%q: forces %q lose the name", name, forces)
+		}
 		quietly(StatusDone, "rerun", results[0])
 		quietly(StatusDone, "plan", "--stiffness", "31 pN/um", "--diameter", "1.03 um", "--rate", "10 kHz", "--out", "plan/"+name)
 		for _, folder := range []string{out, out + "-report", out + "-force"} {

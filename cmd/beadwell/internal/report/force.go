@@ -35,7 +35,7 @@ const forceUnit = "pN"
 
 // ForceJSON writes the summary as indented JSON.
 func ForceJSON(w io.Writer, f Force) error {
-	f.Schema = ForceVersion
+	f.Schema, f.Input, f.Calibration = ForceVersion, storableInput(f.Input), storableInput(f.Calibration)
 	if f.Findings == nil {
 		f.Findings = []calib.Finding{}
 	}

@@ -343,10 +343,16 @@ func checkKeys(text []byte) error {
 // is nil, and the name of the input is UTF-8.
 func storable(r *calib.Result) *calib.Result {
 	stored := withLists(r)
-	if !utf8.ValidString(r.Input.Name) {
-		stored.Input.NameBytes = hex.EncodeToString([]byte(r.Input.Name))
-	}
+	stored.Input = storableInput(r.Input)
 	return stored
+}
+
+// storableInput keeps a name that is no UTF-8 by its bytes.
+func storableInput(in calib.Input) calib.Input {
+	if !utf8.ValidString(in.Name) {
+		in.NameBytes = hex.EncodeToString([]byte(in.Name))
+	}
+	return in
 }
 
 // restore undoes storable.
