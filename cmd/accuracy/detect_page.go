@@ -16,7 +16,7 @@ func writeDetection(w io.Writer, list []trialCell, known map[string]*Detection) 
 
 Simulated recordings, clean and with known faults, calibrated by the whole program and scored. Written by
 
-    go run ./cmd/accuracy -detection -results detection.json -write docs/detection.md
+    go run ./cmd/accuracy -detection -results cmd/accuracy/results/detection.json -write docs/detection.md
 
 `+"`-runs`"+` sets the recordings per cell, `+"`-match`"+` picks cells by a part of their names, `+"`-part 1/4`"+` to `+"`-part 4/4`"+` run a quarter of the cells
 each. Cells of long recordings get fewer; the number behind each row stands in the row. A share of 1 % of 200 recordings has a

@@ -70,7 +70,7 @@ func writeKinds(w io.Writer, list []kindCell, known map[string]*KindScore) {
 Moving stages, free beads, volts, photodiodes and the inertia of the liquid: simulated recordings of known truth, calibrated by the whole
 program and scored. Written by
 
-    go run ./cmd/accuracy -kinds -results kinds.json -write docs/accuracy-kinds.md
+    go run ./cmd/accuracy -kinds -results cmd/accuracy/results/kinds.json -write docs/accuracy-kinds.md
 
 The bead is one of 1 um in water at 25 C, 8 um above the surface, in a trap of 500 Hz, recorded for 4 s at 8 kHz, unless the row says
 otherwise. Inputs are exact: bias is the mean error in units of its scatter, and coverage that of the statistical interval of 95 %. A coverage of 500

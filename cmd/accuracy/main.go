@@ -5,14 +5,17 @@
 package main
 
 import (
+	"bytes"
 	"context"
 	"encoding/json"
 	"errors"
 	"flag"
 	"fmt"
 	"io/fs"
+	"maps"
 	"os"
 	"os/signal"
+	"slices"
 	"strings"
 	"time"
 
@@ -88,15 +91,20 @@ func run() error {
 	if *write == "" {
 		return nil
 	}
+	var page strings.Builder
+	writeTables(&page, inOrder(list, known))
+	return renameio.WriteFile(*write, []byte(page.String()), 0o644)
+}
+
+// inOrder returns the outcomes there are, in the order of the cells.
+func inOrder(list []Cell, known map[string]*Outcome) []*Outcome {
 	var outcomes []*Outcome
 	for _, c := range list {
 		if o := known[c.String()]; o != nil {
 			outcomes = append(outcomes, o)
 		}
 	}
-	var page strings.Builder
-	writeTables(&page, outcomes)
-	return renameio.WriteFile(*write, []byte(page.String()), 0o644)
+	return outcomes
 }
 
 // load reads the file of results; one that does not exist is empty.
@@ -112,10 +120,20 @@ func load[T any](name string) (map[string]*T, error) {
 	return known, json.Unmarshal(data, &known)
 }
 
+// save writes the file of results, a line for each cell in the order of the names.
 func save[T any](name string, known map[string]*T) error {
-	data, err := json.MarshalIndent(known, "", " ")
-	if err != nil {
-		return err
+	var b bytes.Buffer
+	b.WriteString("{\n")
+	for i, cell := range slices.Sorted(maps.Keys(known)) {
+		if i > 0 {
+			b.WriteString(",\n")
+		}
+		value, err := json.Marshal(known[cell])
+		if err != nil {
+			return fmt.Errorf("%s: %w", cell, err)
+		}
+		fmt.Fprintf(&b, "%q: %s", cell, value)
 	}
-	return renameio.WriteFile(name, data, 0o644)
+	b.WriteString("\n}\n")
+	return renameio.WriteFile(name, b.Bytes(), 0o644)
 }

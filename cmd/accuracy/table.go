@@ -25,11 +25,10 @@ func writeTables(w io.Writer, outcomes []*Outcome) {
 
 Simulated recordings of known truth, calibrated by the whole program and scored. Written by
 
-    go run ./cmd/accuracy -results accuracy.json -write docs/accuracy.md
+    go run ./cmd/accuracy -results cmd/accuracy/results/accuracy.json -write docs/accuracy.md
 
-which runs every cell that the file of results does not hold yet with the number of recordings asked for;
-`+"`-part 1/4`"+` to `+"`-part 4/4`"+` run a quarter of the cells each, `+"`-runs`"+` sets the recordings per cell. The number of
-recordings behind each row stands in the row.
+which adds to the file of results what its cells lack: 2000 recordings for the main cells, 200 for the others, or as many as `+"`-runs`"+` asks for.
+`+"`-part 1/4` to `-part 4/4`"+` run a quarter of the cells each. The number of recordings behind each row stands in the row.
 
 One bead of 1 um in water at 25 C, 5 um above a surface, corner frequency 500 Hz; the sampling rate follows from fc/fs.
 Simulated and fitted with constant drag. Columns, for each estimate of ln(stiffness):
