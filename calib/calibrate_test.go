@@ -69,16 +69,23 @@ func (s scene) set(t *testing.T) *session.Settings {
 	return set
 }
 
-func (s scene) record(t *testing.T, seed uint64) *track.Recording {
+// waterAt returns the properties of water.
+func waterAt(t testing.TB, kelvin float64) medium.Properties {
 	t.Helper()
 	liquid, err := medium.ParseFluid("water")
 	if err != nil {
 		t.Fatal(err)
 	}
-	p, err := liquid.At(s.kelvin)
+	p, err := liquid.At(kelvin)
 	if err != nil {
 		t.Fatal(err)
 	}
+	return p
+}
+
+func (s scene) record(t *testing.T, seed uint64) *track.Recording {
+	t.Helper()
+	p := waterAt(t, s.kelvin)
 	truth := simulate.Truth{Samples: s.samples, Rate: s.rate, Exposure: s.exposure, Events: s.events}
 	rec := &track.Recording{Name: "simulated", Rate: s.rate, RateOrigin: "setting", Samples: s.samples, JitterRMS: math.NaN(), JitterMax: math.NaN(), RateU: math.NaN()}
 	for _, name := range s.axes {
@@ -99,14 +106,7 @@ func (s scene) record(t *testing.T, seed uint64) *track.Recording {
 // gamma is the drag of the bead for motion parallel to the surface [N s/m].
 func (s scene) gamma(t *testing.T) float64 {
 	t.Helper()
-	liquid, err := medium.ParseFluid("water")
-	if err != nil {
-		t.Fatal(err)
-	}
-	p, err := liquid.At(s.kelvin)
-	if err != nil {
-		t.Fatal(err)
-	}
+	p := waterAt(t, s.kelvin)
 	wall, err := drag.Chamber{Radius: s.diameter / 2, Height: s.height}.Wall()
 	if err != nil {
 		t.Fatal(err)

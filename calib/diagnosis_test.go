@@ -69,14 +69,7 @@ func (s stage) settingsWith(t testing.TB, more map[string]string) *session.Setti
 // simulated is the truth in the terms of the simulator.
 func (s stage) simulated(t testing.TB) simulate.Truth {
 	t.Helper()
-	liquid, err := medium.ParseFluid("water")
-	if err != nil {
-		t.Fatal(err)
-	}
-	p, err := liquid.At(s.kelvin)
-	if err != nil {
-		t.Fatal(err)
-	}
+	p := waterAt(t, s.kelvin)
 	ordinaryGamma := drag.Stokes(0.89e-3, 0.5e-6)
 	truth := simulate.Truth{Samples: int(s.seconds * s.rate), Rate: s.rate, Exposure: s.exposure / s.rate}
 	for _, name := range s.axes {

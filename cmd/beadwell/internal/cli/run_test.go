@@ -157,7 +157,7 @@ func TestEveryErrorAsJSON(t *testing.T) {
 		{"collect mixed", 4, "input", "mixed", 0},
 		{"collect shard", 4, "input", "", 0},
 		{"trend", 2, "usage", "", 0},
-		{"trend gone", 2, "usage", "", 0}, // there is no JSON of a trend
+		{"trend gone", 4, "input", "gone", 0},
 		{"drag", 2, "usage", "", 0},
 		{"drag --diameter 1um --fluid beer", 2, "settings", "", 0},
 		{"drag --diameter 1um --height 0.2um", 2, "usage", "", 0},
