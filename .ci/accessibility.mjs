@@ -1,8 +1,11 @@
 // Runs axe-core in Chromium over pages that beadwell wrote, light and dark, at the width of a desk and of a phone.
-// Not part of .ci/run, for it needs a browser and two packages of npm, in a folder outside of the repository:
+// Not part of .ci/run, for it needs a browser and two packages of npm. In a folder outside of the repository:
 //
-//   mkdir /tmp/axe && cd /tmp/axe && npm install axe-core@4 puppeteer-core@24
-//   NODE_PATH=/tmp/axe/node_modules CHROMIUM=/usr/bin/chromium node .ci/accessibility.mjs results/*/report.html results/index.html
+//   npm install axe-core@4 puppeteer-core@24
+//
+// and in the repository, with the folder in PACKAGES:
+//
+//   NODE_PATH=$PACKAGES/node_modules CHROMIUM=$(command -v chromium) node .ci/accessibility.mjs results/*/report.html
 //
 // Prints a line for each page and view. Exit status 1 when there is a violation, or a page is wider than its window.
 import { createRequire } from 'node:module'
@@ -12,7 +15,7 @@ import path from 'node:path'
 const require = createRequire(path.join(process.env.NODE_PATH ?? '.', 'any.js'))
 const puppeteer = require('puppeteer-core')
 const axe = fs.readFileSync(require.resolve('axe-core/axe.min.js'), 'utf8')
-const browser = await puppeteer.launch({ executablePath: process.env.CHROMIUM ?? '/usr/bin/chromium', args: ['--no-sandbox'] })
+const browser = await puppeteer.launch({ executablePath: process.env.CHROMIUM, args: ['--no-sandbox'] })
 let bad = 0
 for (const file of process.argv.slice(2)) {
   for (const scheme of ['light', 'dark']) {
