@@ -18,7 +18,15 @@ func (f Float) MarshalJSON() ([]byte, error) {
 	if math.IsNaN(v) || math.IsInf(v, 0) {
 		return []byte("null"), nil
 	}
-	return json.Marshal(v)
+	// As encoding/json writes a float64; a result holds thousands.
+	if size := math.Abs(v); size == 0 || size >= 1e-6 && size < 1e21 {
+		return strconv.AppendFloat(make([]byte, 0, 24), v, 'f', -1, 64), nil
+	}
+	text := strconv.AppendFloat(make([]byte, 0, 24), v, 'e', -1, 64)
+	if n := len(text); text[n-4] == 'e' && text[n-3] == '-' && text[n-2] == '0' { // e-09 is e-9
+		text = append(text[:n-2], text[n-1])
+	}
+	return text, nil
 }
 
 // UnmarshalJSON reads a number, or null as NaN.

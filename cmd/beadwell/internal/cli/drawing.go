@@ -9,6 +9,7 @@ import (
 
 	"beadwell/calib"
 	"beadwell/cmd/beadwell/internal/figure"
+	"beadwell/cmd/beadwell/internal/report"
 )
 
 // defaultFigures are the forms of the figures when nobody chooses.
@@ -81,22 +82,23 @@ func (d drawing) outputs(ctx context.Context, r *calib.Result, texts ...string) 
 	if err != nil {
 		return nil, err
 	}
-	files, err := reports(r, texts)
-	if err != nil {
-		return nil, err
+	made := report.Prepare(r)
+	files, err := reports(made, texts)
+	if err != nil || len(formats) == 0 && !d.data {
+		return files, err
 	}
-	drawn, err := figureFiles(ctx, r, formats...)
+	drawn, err := figureFiles(ctx, made.Figures(), formats)
 	if err != nil || !d.data {
 		return append(files, drawn...), err
 	}
-	numbers, err := figureNumbers(r)
+	numbers, err := figureNumbers(made.Figures())
 	return append(append(files, drawn...), numbers...), err
 }
 
 // figureNumbers makes the CSV of every figure.
-func figureNumbers(r *calib.Result) ([]file, error) {
+func figureNumbers(figures []figure.Figure) ([]file, error) {
 	var files []file
-	for _, f := range figure.All(r) {
+	for _, f := range figures {
 		table, err := figure.Data(f)
 		if err != nil {
 			return nil, err

@@ -153,24 +153,26 @@ func outputs(ctx context.Context, r *calib.Result) ([]file, error) {
 // forms make the content of the files but the figures.
 var forms = []struct {
 	name string
-	make func(io.Writer, *calib.Result) error
+	make func(io.Writer, *report.Prepared) error
 }{
-	{resultJSON, report.JSON},
-	{resultText, func(w io.Writer, r *calib.Result) error { return report.Text(w, r, report.TextOptions{}) }},
-	{resultCSV, func(w io.Writer, r *calib.Result) error {
-		return report.CSV(w, report.Set{Results: []*calib.Result{r}})
+	{resultJSON, func(w io.Writer, made *report.Prepared) error { return made.JSON(w) }},
+	{resultText, func(w io.Writer, made *report.Prepared) error {
+		return report.Text(w, made.Result, report.TextOptions{})
 	}},
-	{reportHTML, report.HTML},
+	{resultCSV, func(w io.Writer, made *report.Prepared) error {
+		return report.CSV(w, report.Set{Results: []*calib.Result{made.Result}})
+	}},
+	{reportHTML, func(w io.Writer, made *report.Prepared) error { return made.HTML(w) }},
 }
 
 // reports makes the content of the named files.
-func reports(r *calib.Result, names []string) (files []file, err error) {
+func reports(made *report.Prepared, names []string) (files []file, err error) {
 	for _, form := range forms {
 		if !slices.Contains(names, form.name) {
 			continue
 		}
 		var content bytes.Buffer
-		if err := form.make(&content, r); err != nil {
+		if err := form.make(&content, made); err != nil {
 			return nil, err
 		}
 		files = append(files, file{form.name, content.Bytes()})
@@ -178,10 +180,9 @@ func reports(r *calib.Result, names []string) (files []file, err error) {
 	return files, nil
 }
 
-// figureFiles draws every figure in each of the formats.
-func figureFiles(ctx context.Context, r *calib.Result, formats ...figure.Format) ([]file, error) {
+// figureFiles draws figures in each of the formats.
+func figureFiles(ctx context.Context, figures []figure.Figure, formats []figure.Format) ([]file, error) {
 	var files []file
-	figures := figure.All(r)
 	for _, format := range formats {
 		drawn, err := figure.RenderAll(ctx, figures, format, figure.Light)
 		if err != nil {

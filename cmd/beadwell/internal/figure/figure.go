@@ -3,6 +3,7 @@ package figure
 import (
 	"fmt"
 	"strings"
+	"sync"
 
 	"beadwell/calib"
 )
@@ -31,7 +32,8 @@ type Figure struct {
 
 	panels []panel
 	key    []keyItem
-	height float64 // mm
+	height float64       // mm
+	drawn  func() []byte // what lies inside its SVG in the light theme, made once; nil: made each time
 }
 
 // All returns every figure of a result: the estimates, then spectrum, position,
@@ -39,7 +41,8 @@ type Figure struct {
 //
 // A figure that the result does not hold enough numbers for is there all the
 // same, as an empty frame that carries the reason. A free bead and a background have no
-// trap to show, and their traces alone are drawn.
+// trap to show, and their traces alone are drawn. A figure that is shown on a page
+// and written as a file of its own is drawn once.
 func All(r *calib.Result) []Figure {
 	untrapped := r.Role == calib.RoleFree || r.Role == calib.RoleBackground
 	var figures []Figure
@@ -59,6 +62,9 @@ func All(r *calib.Result) []Figure {
 			f.Name = uniqueName(names, string(f.Kind)+"-"+fileSafe(axis.Name))
 			figures = append(figures, f)
 		}
+	}
+	for i, f := range figures {
+		figures[i].drawn = sync.OnceValue(func() []byte { return f.elements(Light) })
 	}
 	return figures
 }

@@ -107,10 +107,15 @@ func (f Figure) size() (w, h vg.Length) {
 // alone has its own namespace, size and, when automatic, dark rules.
 func renderSVG(f Figure, theme Theme, alone bool) []byte {
 	w, h := f.size()
-	canvas := newSVG(w, h)
-	brush{canvas, theme}.paint(f, w, h)
+	var inside []byte
+	if f.drawn != nil && theme != Dark { // the automatic theme has the colours of the light one
+		inside = f.drawn()
+	} else {
+		inside = f.elements(theme)
+	}
 	id := "figure-" + f.Name + "-" // a name is safe in an attribute
 	var out bytes.Buffer
+	out.Grow(len(inside) + 4096)
 	out.WriteString("<svg")
 	if alone {
 		fmt.Fprintf(&out, ` xmlns="http://www.w3.org/2000/svg" width="%smm" height="%smm"`,
@@ -124,9 +129,17 @@ func renderSVG(f Figure, theme Theme, alone bool) []byte {
 	if alone && theme == Automatic {
 		out.WriteString("<style>:root{color-scheme:light dark}" + StyleSheet() + "</style>\n")
 	}
-	out.Write(canvas.out.Bytes())
+	out.Write(inside)
 	out.WriteString("</svg>\n")
 	return out.Bytes()
+}
+
+// elements draws what lies inside an SVG.
+func (f Figure) elements(theme Theme) []byte {
+	w, h := f.size()
+	canvas := newSVG(w, h)
+	brush{canvas, theme}.paint(f, w, h)
+	return canvas.out.Bytes()
 }
 
 func element(out *bytes.Buffer, name, id, content string) {

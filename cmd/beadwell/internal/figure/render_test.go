@@ -10,6 +10,7 @@ import (
 	"image/png"
 	"io"
 	"math"
+	"strconv"
 	"strings"
 	"testing"
 
@@ -244,6 +245,42 @@ func BenchmarkSetSVG(b *testing.B) {
 	for b.Loop() {
 		if _, err := RenderAll(b.Context(), All(r), SVG, Automatic); err != nil {
 			b.Fatal(err)
+		}
+	}
+}
+
+// Lengths have the shortest form with at most two decimals.
+func TestNumber(t *testing.T) {
+	for v, want := range map[float64]string{
+		0: "0", -0.001: "0", 0.004: "0", 0.005: "0.01", 1: "1", -1.5: "-1.5", 12.34: "12.34", 0.07: "0.07", -0.99: "-0.99", 100.1: "100.1",
+		99.995: "100", 1e14: "100000000000000", 1e18: "1000000000000000000", math.Inf(1): "+Inf",
+	} {
+		if got := number(v); got != want {
+			t.Errorf("number(%v) = %q, want %q", v, got, want)
+		}
+	}
+	for i := -2000; i < 2000; i++ {
+		v := float64(i) / 100
+		if got, want := number(v), strconv.FormatFloat(v, 'f', -1, 64); got != want {
+			t.Errorf("number(%v) = %q, want %q", v, got, want)
+		}
+	}
+}
+
+// A figure that is drawn once has the bytes of one that is drawn each time, in every theme.
+func TestDrawnOnce(t *testing.T) {
+	for _, f := range All(specimen.Result()) {
+		if f.drawn == nil {
+			t.Fatalf("%s is drawn anew each time", f.Name)
+		}
+		afresh := f
+		afresh.drawn = nil
+		for _, theme := range []Theme{Light, Dark, Automatic, Light} {
+			for _, alone := range []bool{true, false} {
+				if !bytes.Equal(renderSVG(f, theme, alone), renderSVG(afresh, theme, alone)) {
+					t.Errorf("%s in the theme %s, alone %v: other bytes", f.Name, theme, alone)
+				}
+			}
 		}
 	}
 }

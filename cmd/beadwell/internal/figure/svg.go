@@ -160,7 +160,8 @@ func (c *svgCanvas) arc(arc vg.PathComp) {
 		if arc.Angle < 0 {
 			sweep = "1"
 		}
-		c.out.WriteString("A" + r + " " + r + " 0 0 " + sweep + " " + number(x) + " " + number(y))
+		c.out.WriteString("A" + r + " " + r + " 0 0 " + sweep + " ")
+		c.pair(x, y)
 	}
 }
 
@@ -170,11 +171,14 @@ func (c *svgCanvas) step(command byte, points ...vg.Point) {
 		if i > 0 {
 			c.out.WriteByte(' ')
 		}
-		x, y := c.now.at.apply(p)
-		c.out.WriteString(number(x))
-		c.out.WriteByte(' ')
-		c.out.WriteString(number(y))
+		c.pair(c.now.at.apply(p))
 	}
+}
+
+// pair writes a place on the page.
+func (c *svgCanvas) pair(x, y float64) {
+	text := append(appendNumber(c.out.AvailableBuffer(), x), ' ')
+	c.out.Write(appendNumber(text, y))
 }
 
 // FillString sets one line of text, at the width that it was laid out with: a reader who has
@@ -205,12 +209,28 @@ func (c *svgCanvas) FillString(f font.Face, pt vg.Point, s string) {
 func (c *svgCanvas) DrawImage(vg.Rectangle, image.Image) {}
 
 // number prints a length with two decimals, a hundredth of a point.
-func number(v float64) string {
-	s := strconv.FormatFloat(math.Round(v*100)/100, 'f', -1, 64)
-	if s == "-0" {
-		return "0"
+func number(v float64) string { return string(appendNumber(nil, v)) }
+
+// appendNumber appends what number prints. A figure is made of some thousands of them, and whole hundredths are
+// printed several times faster than the shortest digits of a float.
+func appendNumber(to []byte, v float64) []byte {
+	hundredths := math.Round(v * 100)
+	if !(math.Abs(hundredths) < 1e15) {
+		return strconv.AppendFloat(to, hundredths/100, 'f', -1, 64)
 	}
-	return s
+	n := int64(hundredths)
+	if n < 0 {
+		to, n = append(to, '-'), -n
+	}
+	to = strconv.AppendInt(to, n/100, 10)
+	switch rest := byte(n % 100); {
+	case rest == 0:
+		return to
+	case rest%10 == 0:
+		return append(to, '.', '0'+rest/10)
+	default:
+		return append(to, '.', '0'+rest/10, '0'+rest%10)
+	}
 }
 
 func classOf(i ink) string { return "bw-" + inks[i].name }

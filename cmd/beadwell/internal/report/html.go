@@ -5,11 +5,11 @@ import (
 	"crypto/sha256"
 	_ "embed"
 	"encoding/base64"
-	"encoding/json"
 	"fmt"
 	"html/template"
 	"io"
 	"strings"
+	"sync"
 
 	"beadwell/calib"
 	"beadwell/cmd/beadwell/internal/figure"
@@ -28,19 +28,24 @@ var pageStyle string
 //
 // The same result gives the same bytes. The error is one of writing, or says
 // which part of the page could not be made.
-func HTML(w io.Writer, r *calib.Result) error {
-	page, err := pageOf(r)
+func HTML(w io.Writer, r *calib.Result) error { return Prepare(r).HTML(w) }
+
+// pageTemplate is parsed when it is first needed, and not at start-up, where every command would pay for it.
+var pageTemplate = sync.OnceValues(func() (*template.Template, error) { return template.New("page").Parse(pageText) })
+
+// HTML writes the report as the function HTML does.
+func (p *Prepared) HTML(w io.Writer) error {
+	page, err := p.page()
 	if err != nil {
 		return err
 	}
-	// Parsed here and not at start-up, where every command would pay for it.
-	t, err := template.New("page").Parse(pageText)
+	t, err := pageTemplate()
 	if err != nil {
-		return fmt.Errorf("page of %s: %w", Plain(InputName(r.Input)), err)
+		return fmt.Errorf("page of %s: %w", Plain(InputName(p.Result.Input)), err)
 	}
 	var out bytes.Buffer
 	if err := t.Execute(&out, page); err != nil {
-		return fmt.Errorf("page of %s: %w", Plain(InputName(r.Input)), err)
+		return fmt.Errorf("page of %s: %w", Plain(InputName(p.Result.Input)), err)
 	}
 	_, err = w.Write(out.Bytes())
 	return err
@@ -57,16 +62,5 @@ func policy(style string) string {
 // styleSheet is the style sheet of the page and of the figures in it.
 func styleSheet() string { return pageStyle + figure.StyleSheet() + "\n" }
 
-// embeddedJSON is the result as JSON inside a script element. The characters
-// that could end the element are written as escapes, which mean the same.
-func embeddedJSON(r *calib.Result) (template.JS, error) {
-	var b bytes.Buffer
-	if err := JSON(&b, r); err != nil {
-		return "", err
-	}
-	var compact bytes.Buffer
-	if err := json.Compact(&compact, b.Bytes()); err != nil {
-		return "", fmt.Errorf("JSON of %s: %w", Plain(InputName(r.Input)), err)
-	}
-	return template.JS(strings.NewReplacer("<", `\u003c`, ">", `\u003e`, "&", `\u0026`).Replace(compact.String())), nil
-}
+// embeddable keeps the characters that could end a script element out of JSON: as escapes they mean the same.
+var embeddable = strings.NewReplacer("<", `\u003c`, ">", `\u003e`, "&", `\u0026`)

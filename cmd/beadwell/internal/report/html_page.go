@@ -52,19 +52,20 @@ type shownFigure struct {
 	SVG                  template.HTML
 }
 
-func pageOf(r *calib.Result) (page, error) {
-	encoded, err := embeddedJSON(r)
+func (made *Prepared) page() (page, error) {
+	encoded, err := made.compact()
 	if err != nil {
 		return page{}, err
 	}
+	r := made.Result
 	style := styleSheet()
 	p := page{
-		Policy: policy(style), Style: template.CSS(style), JSON: encoded,
+		Policy: policy(style), Style: template.CSS(style), JSON: template.JS(embeddable.Replace(string(encoded))),
 		Program: Plain(strings.TrimSpace(r.Program.Name + " " + r.Program.Version)),
 		Name:    Plain(InputName(r.Input)),
 		Lead:    lead(r),
 		Verdict: verdictOf(r.Verdict),
-		Figures: figureGroups(r),
+		Figures: figureGroups(made.Figures()),
 	}
 	for _, axis := range r.Axes {
 		p.Answers = append(p.Answers, answerOf(r.Role, axis))
@@ -184,10 +185,10 @@ func findingOf(f calib.Finding) shownFinding {
 
 // figureGroups puts the estimates first, and then the figures of each axis
 // under its name.
-func figureGroups(r *calib.Result) []figureGroup {
+func figureGroups(figures []figure.Figure) []figureGroup {
 	var groups []figureGroup
 	last := ""
-	for _, f := range figure.All(r) {
+	for _, f := range figures {
 		heading := ""
 		if f.Axis != "" {
 			heading = "Axis " + f.Axis
