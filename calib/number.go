@@ -18,15 +18,19 @@ func (f Float) MarshalJSON() ([]byte, error) {
 	if math.IsNaN(v) || math.IsInf(v, 0) {
 		return []byte("null"), nil
 	}
-	// As encoding/json writes a float64; a result holds thousands.
+	return AppendFloat(make([]byte, 0, 24), v), nil
+}
+
+// AppendFloat appends a finite number with the shortest digits that read back to the same bits, as encoding/json writes it.
+func AppendFloat(to []byte, v float64) []byte {
 	if size := math.Abs(v); size == 0 || size >= 1e-6 && size < 1e21 {
-		return strconv.AppendFloat(make([]byte, 0, 24), v, 'f', -1, 64), nil
+		return strconv.AppendFloat(to, v, 'f', -1, 64)
 	}
-	text := strconv.AppendFloat(make([]byte, 0, 24), v, 'e', -1, 64)
-	if n := len(text); text[n-4] == 'e' && text[n-3] == '-' && text[n-2] == '0' { // e-09 is e-9
-		text = append(text[:n-2], text[n-1])
+	to = strconv.AppendFloat(to, v, 'e', -1, 64)
+	if n := len(to); to[n-4] == 'e' && to[n-3] == '-' && to[n-2] == '0' { // e-09 is e-9
+		to = append(to[:n-2], to[n-1])
 	}
-	return text, nil
+	return to
 }
 
 // UnmarshalJSON reads a number, or null as NaN.

@@ -155,7 +155,7 @@ var forms = []struct {
 	name string
 	make func(io.Writer, *report.Prepared) error
 }{
-	{resultJSON, func(w io.Writer, made *report.Prepared) error { return made.JSON(w) }},
+	{resultJSON, func(w io.Writer, made *report.Prepared) error { return report.JSON(w, made.Result) }},
 	{resultText, func(w io.Writer, made *report.Prepared) error {
 		return report.Text(w, made.Result, report.TextOptions{})
 	}},

@@ -53,14 +53,14 @@ type shownFigure struct {
 }
 
 func (made *Prepared) page() (page, error) {
-	encoded, err := made.compact()
+	r := made.Result
+	stored, err := jsonOf(storable(r), false)
 	if err != nil {
 		return page{}, err
 	}
-	r := made.Result
 	style := styleSheet()
 	p := page{
-		Policy: policy(style), Style: template.CSS(style), JSON: template.JS(embeddable.Replace(string(encoded))),
+		Policy: policy(style), Style: template.CSS(style), JSON: template.JS(embeddable.Replace(string(stored))),
 		Program: Plain(strings.TrimSpace(r.Program.Name + " " + r.Program.Version)),
 		Name:    Plain(InputName(r.Input)),
 		Lead:    lead(r),

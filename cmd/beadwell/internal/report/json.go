@@ -1,9 +1,7 @@
 package report
 
 import (
-	"bytes"
 	"encoding/json"
-	"fmt"
 	"io"
 
 	"beadwell/calib"
@@ -60,7 +58,7 @@ func (e *FileError) Unwrap() error { return e.Err }
 // result gives the same bytes, and ReadJSON gives the same result back. An
 // input name that is no UTF-8, which JSON cannot carry, is kept beside its
 // readable form as input.name_bytes.
-func JSON(w io.Writer, r *calib.Result) error { return Prepare(r).JSON(w) }
+func JSON(w io.Writer, r *calib.Result) error { return WriteJSON(w, storable(r)) }
 
 // SetJSON writes the results of several recordings.
 func SetJSON(w io.Writer, s Set) error {
@@ -74,42 +72,21 @@ func SetJSON(w io.Writer, s Set) error {
 
 // ProblemJSON writes one problem on one line.
 func ProblemJSON(w io.Writer, p Problem) error {
-	encoded, err := json.Marshal(p)
+	line, err := json.Marshal(p)
 	if err != nil {
 		return err
 	}
-	_, err = w.Write(append(escapeInvisible(encoded), '\n'))
+	_, err = w.Write(append(escapeInvisible(line), '\n'))
 	return err
 }
 
 // WriteJSON writes a value as all JSON outputs are: indented, ending with a newline, and with the characters escaped that a terminal would
 // act on.
 func WriteJSON(w io.Writer, value any) error {
-	compact, err := compactJSON(value)
+	text, err := jsonOf(value, true)
 	if err != nil {
 		return err
 	}
-	return writeIndented(w, compact)
-}
-
-// compactJSON is a value as JSON without white space, with those characters escaped.
-func compactJSON(value any) ([]byte, error) {
-	var b bytes.Buffer
-	e := json.NewEncoder(&b)
-	e.SetEscapeHTML(false)
-	if err := e.Encode(value); err != nil {
-		return nil, fmt.Errorf("the result cannot be written as JSON: %w", err)
-	}
-	return escapeInvisible(bytes.TrimSuffix(b.Bytes(), []byte("\n"))), nil
-}
-
-func writeIndented(w io.Writer, compact []byte) error {
-	var b bytes.Buffer
-	b.Grow(2 * len(compact))
-	if err := json.Indent(&b, compact, "", " "); err != nil {
-		return fmt.Errorf("the result cannot be written as JSON: %w", err)
-	}
-	b.WriteByte('\n')
-	_, err := w.Write(b.Bytes())
+	_, err = w.Write(append(text, '\n'))
 	return err
 }
