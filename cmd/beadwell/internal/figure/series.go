@@ -47,7 +47,7 @@ func bound(s scale, v float64) float64 {
 
 // points draws marks with their error bars, the bars first.
 func (b brush) points(c draw.Canvas, p panel, s series) {
-	var bars, glyphs vg.Path
+	bars, glyphs := make(vg.Path, 0, 2*len(s.x)), make(vg.Path, 0, 3*len(s.x))
 	for i := range s.x {
 		at, inside := place(c, p, s.x[i], s.y[i])
 		if !inside {
@@ -151,7 +151,7 @@ func (b brush) columns(c draw.Canvas, p panel, s series) {
 
 // envelope fills between low and high, stretch by stretch of known values.
 func (b brush) envelope(c draw.Canvas, p panel, s series) {
-	var up, down []vg.Point
+	up, down := make([]vg.Point, 0, 2*pieceLength), make([]vg.Point, 0, pieceLength)
 	flush := func() {
 		if len(up) > 0 {
 			for i := len(down) - 1; i >= 0; i-- {
@@ -159,7 +159,7 @@ func (b brush) envelope(c draw.Canvas, p panel, s series) {
 			}
 			b.fillBetween(c, s, up, len(down))
 		}
-		up, down = nil, nil
+		up, down = up[:0], down[:0]
 	}
 	const half = 0.3 // of the thinnest envelope [pt], so that a flat one shows
 	for i := range s.x {

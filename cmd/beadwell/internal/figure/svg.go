@@ -41,6 +41,7 @@ var _ vg.CanvasSizer = (*svgCanvas)(nil)
 func newSVG(w, h vg.Length) *svgCanvas {
 	// The page of vg has its origin at the bottom left, that of SVG at the top.
 	c := &svgCanvas{w: w, h: h, now: pen{at: affine{1, 0, 0, -1, 0, float64(h)}}}
+	c.out.Grow(48 << 10) // the larger figures of a recording
 	vg.Initialize(c)
 	return c
 }
@@ -198,7 +199,7 @@ func (c *svgCanvas) FillString(f font.Face, pt vg.Point, s string) {
 	}
 	fmt.Fprintf(&c.out, ` font-size="%s"`, number(float64(f.Font.Size)))
 	if utf8.RuneCountInString(s) > 1 { // one letter alone has no spacing
-		fmt.Fprintf(&c.out, ` textLength="%s" lengthAdjust="spacingAndGlyphs"`, number(float64(f.Width(s))))
+		fmt.Fprintf(&c.out, ` textLength="%s" lengthAdjust="spacingAndGlyphs"`, number(float64(textWidth(f, s))))
 	}
 	c.out.WriteByte('>')
 	_ = xml.EscapeText(&c.out, []byte(clean(s))) // a bytes.Buffer takes every write

@@ -2,6 +2,7 @@ package figure
 
 import (
 	"strings"
+	"sync"
 	"unicode"
 
 	"gonum.org/v1/plot/font"
@@ -89,7 +90,7 @@ func (handler) Lines(s string) []string { return strings.Split(strings.TrimRight
 func (h handler) Box(s string, f font.Font) (width, height, depth vg.Length) {
 	for _, p := range pieces(s) {
 		at := sized(f, p)
-		width += at.Width(p.text)
+		width += textWidth(at, p.text)
 	}
 	extents := h.Extents(f)
 	return width, extents.Ascent, extents.Descent
@@ -117,7 +118,7 @@ func (h handler) Draw(c vg.Canvas, s string, style gonumtext.Style, pt vg.Point)
 				rise = style.Font.Size * raisedBy
 			}
 			c.FillString(at, vg.Point{X: x, Y: y + rise}, p.text)
-			x += at.Width(p.text)
+			x += textWidth(at, p.text)
 		}
 		y -= lineHeight
 	}
@@ -129,6 +130,50 @@ func sized(f font.Font, p piece) font.Face {
 		return fonts.Lookup(f, f.Size*raisedSize)
 	}
 	return fonts.Lookup(f, f.Size)
+}
+
+// advances are how far the pen moves for a letter that stands behind another, in units of the typeface: its width and the kerning of the two.
+// The tables of the typeface are searched once for each pair of common letters, not for each label of each figure.
+var advances = struct {
+	sync.RWMutex
+	of map[[2]rune]vg.Length
+}{of: map[[2]rune]vg.Length{}}
+
+// commonLetters ends the letters whose pairs are remembered: those of Latin and Greek.
+const commonLetters = 0x400
+
+// textWidth is the width of a text, to the bit that of font.Face.
+func textWidth(f font.Face, s string) vg.Length {
+	perEm := vg.Points(float64(f.Face.UnitsPerEm()))
+	whole := f
+	whole.Font.Size = perEm
+	width, before := vg.Length(0), rune(0)
+	for _, letter := range s {
+		width += advance(whole, [2]rune{before, letter})
+		before = letter
+	}
+	return width * (f.Font.Size / perEm)
+}
+
+// advance is that of a pair; the first letter is 0 at the start of a text.
+func advance(whole font.Face, pair [2]rune) vg.Length {
+	advances.RLock()
+	found, ok := advances.of[pair]
+	advances.RUnlock()
+	if ok {
+		return found
+	}
+	if pair[0] == 0 {
+		found = whole.Width(string(pair[1]))
+	} else {
+		found = whole.Width(string(pair[:])) - whole.Width(string(pair[0]))
+	}
+	if max(pair[0], pair[1]) < commonLetters {
+		advances.Lock()
+		advances.of[pair] = found
+		advances.Unlock()
+	}
+	return found
 }
 
 // clean removes what XML cannot carry and what would turn text around: control

@@ -44,6 +44,7 @@ func (p *Prepared) HTML(w io.Writer) error {
 		return fmt.Errorf("page of %s: %w", Plain(InputName(p.Result.Input)), err)
 	}
 	var out bytes.Buffer
+	out.Grow(512 << 10)
 	if err := t.Execute(&out, page); err != nil {
 		return fmt.Errorf("page of %s: %w", Plain(InputName(p.Result.Input)), err)
 	}
