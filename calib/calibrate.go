@@ -119,6 +119,11 @@ func calibrateAll(ctx context.Context, rec *track.Recording, set *session.Settin
 		r.Axes = append(r.Axes, w.axis)
 	}
 	seen.works, seen.good = works, r.examine(rec, works)
+	if _, upset := r.event(); !upset { // an event in the recording is the better answer
+		if err := firstHopeless(works); err != nil {
+			return nil, err
+		}
+	}
 	r.describeParts(rec, works, opt.Gathered)
 	r.judge(works, opt)
 	if err := r.findCause(ctx, works, opt); err != nil {
@@ -167,6 +172,16 @@ func newResult(rec *track.Recording, set *session.Settings, works []*work, opt O
 // longRecord is the number of samples from which axes are analysed one after the other, each on all
 // processors, and their copies of the samples let go: memory then counts.
 const longRecord = 1 << 21
+
+// firstHopeless is the error of the first axis of which nothing can be said.
+func firstHopeless(works []*work) error {
+	for _, w := range works {
+		if w.hopeless != nil {
+			return w.hopeless
+		}
+	}
+	return nil
+}
 
 // runAll analyses the axes at the same time; the first error in the order of the
 // axes is returned.

@@ -130,6 +130,9 @@ func (c Companion) analyse(ctx context.Context) ([]*work, error) {
 		if err := runTrapped(ctx, c.Recording, c.Settings, works, Options{}); err != nil {
 			return nil, err
 		}
+		if err := firstHopeless(works); err != nil {
+			return nil, err
+		}
 	}
 	return works, nil
 }

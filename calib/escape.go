@@ -171,12 +171,42 @@ func calibrateDriven(ctx context.Context, rec *track.Recording, set *session.Set
 			Remedy: "drive more slowly at first, so that the bead is held for at least a tenth of the recording"}
 	}
 	before.why = []string{fmt.Sprintf("The bead was lost at %.4g s.", at)}
+	before.to -= wayOut(ctx, cutRecording(rec, stretch{to: before.to / 2}), set, lost.axis, before.to)
 	r, err := calibrateAll(ctx, cutRecording(rec, before), set, opt, seen)
 	if err != nil {
 		return nil, err
 	}
 	r.describeEscape(rec, lost, before, seen.works)
 	return r, nil
+}
+
+// wayOut is the number of samples, before the end of a part of so many, that a free bead may have needed from the trap to where it
+// was seen to be away. What the bead does while it is held comes from the first half of the part; where that cannot be fitted nothing is given.
+//
+// A bead diffuses over a distance r in the time r^2/(2 D), and seldom takes two and a half times as long. The distance is that of
+// lostDeviations thermal rms or, where the stage moves as a sine, what hides in the swing of a free bead: up to the
+// limit less its amplitude, as long as it still swings through the trap; there it is the last passage that is seen, which seldom takes
+// six times as long. At most a fifth of the part is given away.
+func wayOut(ctx context.Context, half *track.Recording, set *session.Settings, axis string, samples int) int {
+	works, err := newWorks(half, set, Options{})
+	if err != nil || runAll(ctx, works) != nil {
+		return 0
+	}
+	for _, w := range works {
+		if w.axisName != axis || w.fitErr != nil {
+			continue
+		}
+		distance, often := lostDeviations*math.Sqrt(w.fit.Variance), 2.5
+		if w.drive != nil && w.drive.waveform == sineWave {
+			swing, _, _ := w.drive.amplitude(1)
+			rms := math.Sqrt(w.fit.Variance + w.reply.line.Amplitude*w.reply.line.Amplitude/2)
+			limit := math.Max(lostDeviations*rms, lostShare*swing)
+			distance, often = math.Max(distance, math.Min(limit-swing, swing+2*rms)), 6
+		}
+		diffusion := 2 * math.Pi * w.fit.Corner * w.fit.Variance
+		return int(math.Min(often*distance*distance/(2*diffusion)*half.Rate, float64(samples)/5))
+	}
+	return 0
 }
 
 // describeEscape adds the loss to the result of the part before.

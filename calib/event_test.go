@@ -37,3 +37,29 @@ func TestEventComesFirst(t *testing.T) {
 		}
 	}
 }
+
+// A bead that escapes early: nothing can be fitted to the whole, and yet the result says when it left, in place of an
+// error that speaks of units.
+func TestEventWithoutAFit(t *testing.T) {
+	unfitted := 0
+	for seed := range uint64(6) {
+		s := usual().with("recording.noise", "0.1 nm")
+		s.kappa /= 2
+		s.rate, s.samples = 25e3, 100000
+		s.events = []simulate.Event{{Kind: simulate.Escape, Time: 2}}
+		r, err := Calibrate(context.Background(), s.record(t, seed), s.set(t), Options{})
+		if err != nil {
+			t.Fatalf("recording %d: %v", seed, err)
+		}
+		c, bad := r.event()
+		if !bad || c.Code != "lost-bead" || r.Verdict.Status != Unfit || r.Axes[0].Adopted.Stiffness.Known() {
+			t.Errorf("recording %d: %s, %s %+v", seed, r.Verdict.Status, c.Code, r.Axes[0].Adopted.Stiffness)
+		}
+		if !r.Axes[0].MeasuredDrag.Known() {
+			unfitted++
+		}
+	}
+	if unfitted == 0 {
+		t.Error("all recordings could be fitted: the test tests nothing")
+	}
+}

@@ -122,9 +122,10 @@ func (r *Result) judgeHealth() {
 	}
 	v.Reason = strings.TrimSuffix(reason, ".") + "; what was estimated from all of the recording together means nothing then"
 	for i := range r.Axes {
-		if a := &r.Axes[i].Adopted; !a.Stiffness.Known() {
+		if a := &r.Axes[i].Adopted; !a.Stiffness.Known() || r.Choices == nil || r.Choices.Adopt == "" {
 			a.Withheld = "the recording is not one process: " + lower(strings.TrimSuffix(c.Text, "."))
 			a.Stiffness = Withheld("N/m", a.Withheld)
+			a.Basis, a.Weights, a.Budget = "", nil, nil
 		}
 	}
 }

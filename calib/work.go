@@ -48,6 +48,7 @@ type work struct {
 	record        *psd.Record
 	fit           *psd.Fit
 	fitErr        error
+	hopeless      error // set when nothing at all can be said of the trap
 	legs          legs
 	pooled        pooled
 	adoptedLeg    int // the leg that was adopted, or combinedLegs
@@ -186,7 +187,7 @@ func (w *work) run(ctx context.Context) error {
 		return err
 	}
 	if w.poolErr = w.pool(); w.poolErr != nil && w.fitErr != nil && w.noise.Known {
-		return w.dataError(fmt.Errorf("the positions do not look like those of a trapped bead: %w", w.fitErr),
+		w.hopeless = w.dataError(fmt.Errorf("the positions do not look like those of a trapped bead: %w", w.fitErr),
 			"check the unit, the diameter and the exposure, and that the bead was trapped; state the noise if it is known")
 	}
 	w.estimate()

@@ -1,6 +1,7 @@
 package health
 
 import (
+	"cmp"
 	"fmt"
 	"math"
 	"slices"
@@ -35,6 +36,29 @@ func grid(v []float64, scale float64) float64 {
 		}
 	}
 	return smallest
+}
+
+// gridGroups are the groups, by size, of the values that grids looks at.
+const gridGroups = 16
+
+// grids are the spacings of equal shares of the values, from the smallest to the largest in size. Numbers that were written with a
+// fixed count of digits have a coarser one beyond each power of ten.
+type grids [gridGroups]float64
+
+// gridsOf finds the spacings; v is reordered.
+func gridsOf(v []float64, scale float64) (g grids) {
+	slices.SortFunc(v, func(a, b float64) int { return cmp.Compare(math.Abs(a), math.Abs(b)) })
+	for k := range g {
+		g[k] = grid(v[k*len(v)/gridGroups:(k+1)*len(v)/gridGroups], scale)
+	}
+	return g
+}
+
+func (g grids) scaled(factor float64) grids {
+	for k := range g {
+		g[k] *= factor
+	}
+	return g
 }
 
 const (

@@ -50,15 +50,22 @@ func (v *view) coarseSteps() bool {
 	return grid*grid > 0.5*v.total.d2/math.Max(v.total.steps, 1)
 }
 
-// equalByChance returns the share of neighbours that rounding to the grid makes
+// equalByChance returns the share of neighbours that rounding to the grid of their values makes
 // equal: the mean of max(0, 1 - |d|/grid) over normal steps d. Rounding has added
 // grid^2/6 to the mean square of the steps.
 func (v *view) equalByChance() float64 {
-	if v.values.grid == 0 {
-		return 0
+	square, sum := v.total.d2/v.total.steps, 0.0
+	for _, spacing := range v.values.grids {
+		if spacing == 0 {
+			spacing = v.values.grid
+		}
+		grid := spacing / v.scale
+		if grid == 0 {
+			continue
+		}
+		a := grid / math.Sqrt(math.Max(square-grid*grid/6, square/2))
+		density := func(x float64) float64 { return math.Exp(-x*x/2) / math.Sqrt(2*math.Pi) }
+		sum += math.Erf(a/math.Sqrt2) - 2/a*(density(0)-density(a))
 	}
-	grid := v.values.grid / v.scale
-	a := grid / math.Sqrt(v.total.d2/v.total.steps-grid*grid/6)
-	density := func(x float64) float64 { return math.Exp(-x*x/2) / math.Sqrt(2*math.Pi) }
-	return math.Erf(a/math.Sqrt2) - 2/a*(density(0)-density(a))
+	return sum / gridGroups
 }

@@ -16,6 +16,7 @@ type Gathered struct {
 	run     int
 
 	grid      float64
+	grids     grids
 	comb      histogram
 	low, high tail
 
@@ -41,6 +42,7 @@ func Gather(first []float64) *Gathered {
 	for _, v := range values {
 		square += (v - mean) * (v - mean) / float64(len(values))
 	}
+	g.grids = gridsOf(values, s.scale)
 	g.comb = newHistogram(mean, math.Sqrt(square))
 	g.low.sign, g.high.sign = 1, -1
 	return g
@@ -118,6 +120,7 @@ func (g *Gathered) Scaled(factor float64) *Gathered {
 	out.summary.centre *= factor
 	out.summary.scale *= factor
 	out.grid *= factor
+	out.grids = g.grids.scaled(factor)
 	out.comb.low *= factor
 	out.comb.per /= factor
 	out.low, out.high = g.low.scaled(factor), g.high.scaled(factor)
@@ -131,7 +134,7 @@ func (g *Gathered) Scaled(factor float64) *Gathered {
 
 // survey returns what survey finds of samples that are at hand.
 func (g *Gathered) survey() values {
-	v := values{grid: g.grid, comb: g.comb}
+	v := values{grid: g.grid, grids: g.grids, comb: g.comb}
 	sd := math.Sqrt(g.summary.total.variance()) * g.summary.scale
 	width := railWidth(v.grid, sd)
 	v.low, v.high = g.low.rail(width), g.high.rail(width)

@@ -3,6 +3,7 @@ package health
 import (
 	"math"
 	"math/rand/v2"
+	"strconv"
 	"strings"
 	"testing"
 
@@ -195,6 +196,25 @@ func TestRoundedClean(t *testing.T) {
 						t.Errorf("%+v rounded to %v rms: %s: %s", r, step, c.Code, c.Text)
 					}
 				}
+			}
+		}
+	}
+}
+
+// TestFixedDigitsClean: numbers of four significant digits, as many programs write them, are ten times as coarse beyond a power of
+// ten; where they are coarse, neighbours are equal by chance.
+func TestFixedDigitsClean(t *testing.T) {
+	for _, mean := range []float64{0, 100e-9, -1e-6} {
+		for seed := range uint64(5) {
+			truth := regime{0.001, 100, 0, 0}.truth(1)
+			truth.Axes[0].Mean = mean
+			x := simulate.Record(truth, seed)
+			for i, v := range x[0] {
+				x[0][i], _ = strconv.ParseFloat(strconv.FormatFloat(v*1e9, 'g', 4, 64), 64)
+				x[0][i] *= 1e-9
+			}
+			if c := find(t, Run(fitted(x, truth.Rate, truth.Exposure)), "frozen-samples", "x"); c.Level != OK {
+				t.Errorf("four digits about %v m: %s", mean, c.Text)
 			}
 		}
 	}

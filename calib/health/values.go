@@ -8,6 +8,7 @@ import (
 // values is what the second pass finds about the exact values of the samples.
 type values struct {
 	grid      float64 // spacing of the values that occur, when it is coarse enough to be seen [unit of X]; 0 when there is none
+	grids     grids   // the same of the values by size
 	low, high rail
 	comb      histogram
 }
@@ -24,7 +25,8 @@ type rail struct {
 // survey reads the record a second time and counts the samples at its two extremes
 // and just inside them.
 func survey(x []float64, s summary) values {
-	v := values{grid: grid(sampled(x, 4096), s.scale)}
+	some := sampled(x, 4096)
+	v := values{grid: grid(some, s.scale), grids: gridsOf(some, s.scale)}
 	if s.total.n == 0 {
 		return v
 	}
