@@ -391,3 +391,60 @@ func TestHeightSeries(t *testing.T) {
 		t.Errorf("with scale and diameter: %+v, %q", s.Series, s.Notes)
 	}
 }
+
+// Copies are told, each once, and recordings of several beads in one file are none.
+func TestCopiesAreNoted(t *testing.T) {
+	rows := func(more ...Row) *Summary { return newSummary([]entry{{Rows: more}}, nil, SeriesOptions{}) }
+	named := func(file, sum, bead string) Row {
+		row := emptyRow(file, calib.Consistent, "")
+		row.SHA256, row.Bead = sum, bead
+		return row
+	}
+	if s := rows(named("a", "1", "left"), named("a", "1", "right"), named("b", "2", ""), named("c", "", ""), named("d", "", "")); len(s.Notes) != 0 {
+		t.Errorf("notes %q", s.Notes)
+	}
+	if s := rows(named("a", "1", ""), named("b", "1", "")); len(s.Notes) != 1 || !strings.Contains(s.Notes[0], "b has the content of a:") {
+		t.Errorf("notes %q", s.Notes)
+	}
+	if s := rows(named("a", "1", ""), named("b", "1", ""), named("c", "1", "")); len(s.Notes) != 1 || !strings.Contains(s.Notes[0], "2 recordings are copies of others (b has") {
+		t.Errorf("notes %q", s.Notes)
+	}
+}
+
+// The reason of a failed row says where.
+func TestReasonSaysWhere(t *testing.T) {
+	for _, c := range []struct {
+		problem report.Problem
+		want    string
+	}{
+		{report.Problem{Message: "is bad"}, "is bad"},
+		{report.Problem{Message: "is bad", File: "a.csv"}, "is bad"},
+		{report.Problem{Message: "is bad", File: "a.csv", Line: 3, Column: 7}, "line 3, column 7: is bad"},
+		{report.Problem{Message: "is bad", File: "stuck.csv", Line: 3}, "stuck.csv: line 3: is bad"},
+	} {
+		if row := failedRow("a.csv", c.problem); row.Reason != c.want {
+			t.Errorf("%+v: %q, want %q", c.problem, row.Reason, c.want)
+		}
+	}
+}
+
+// The stated uncertainty of a power is that of the meter's scale: it moves the slope, and neither intercept nor chi-square.
+func TestPowerUncertainty(t *testing.T) {
+	rowsAt := func(u float64) Series {
+		var m []member
+		for i := range 4 {
+			p := 0.02 * float64(i+1)
+			row := emptyRow("a", calib.Consistent, "")
+			row.Power = Number{Value: calib.Float(p), Statistical: unknown.Value, Combined: calib.Float(u * p)}
+			m = append(m, member{row, RowAxis{Axis: "x", Stiffness: Number{Value: calib.Float(1e-3 * p), Statistical: calib.Float(1e-5 * p), Combined: calib.Float(1e-5 * p)}}})
+		}
+		return againstPower(m)
+	}
+	exactly, stated := rowsAt(0), rowsAt(0.03)
+	if got := float64(stated.Values[0].Shared / stated.Values[0].Value); math.Abs(got-0.03) > 1e-12 || exactly.Values[0].Shared != 0 {
+		t.Errorf("shared uncertainty of the slope %g of it, want 0.03; %g with exact powers", got, float64(exactly.Values[0].Shared))
+	}
+	if a, b := exactly.Values[2], stated.Values[2]; a.Name != "intercept" || a != b || exactly.ChiSquare != stated.ChiSquare {
+		t.Errorf("intercept %+v and %+v, chi-square %g and %g: want no difference", a, b, float64(exactly.ChiSquare), float64(stated.ChiSquare))
+	}
+}

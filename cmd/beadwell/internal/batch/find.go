@@ -79,10 +79,8 @@ func (f *Found) folder(folder string, below bool) error {
 		switch {
 		case strings.HasPrefix(name, "."), name == session.FileName, name == session.TracksName:
 		case entry.IsDir():
-			if below && !isResults(path) {
-				if err := f.folder(path, below); err != nil {
-					return err
-				}
+			if below && !isResults(path) && f.folder(path, below) != nil {
+				f.Paths = append(f.Paths, path) // one that cannot be read has a row in the summary
 			}
 		case strings.HasSuffix(name, truthEnding): // of a simulated recording
 		case looksLikeRecording(name):

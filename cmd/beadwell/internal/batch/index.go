@@ -89,6 +89,9 @@ func indexRowOf(row Row, axes []string) indexRow {
 	if len(row.FreeBead) > 0 {
 		out.FreeBead = report.Plain(strings.Join(row.FreeBead, "; "))
 	}
+	if row.Problem != nil && row.Problem.Remedy != "" {
+		out.Reason += "; " + report.Plain(row.Problem.Remedy)
+	}
 	if row.Bead != "" {
 		out.File += ", bead " + report.Plain(row.Bead)
 	}

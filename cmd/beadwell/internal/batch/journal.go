@@ -77,7 +77,7 @@ func (e *entry) restoreNames() (err error) {
 		return err
 	}
 	for i := range e.Rows {
-		if e.Rows[i].File, err = nameOf(e.Rows[i].File, e.Rows[i].FileBytes); err != nil {
+		if err := e.Rows[i].restoreNames(); err != nil {
 			return err
 		}
 	}
@@ -146,8 +146,11 @@ func hexSum(content []byte) string {
 	return hex.EncodeToString(sum[:])
 }
 
-// FileSum is the SHA-256 of a file; empty when it cannot be read.
+// FileSum is the SHA-256 of a file; empty when it cannot be read, or is a pipe or a device.
 func FileSum(path string) string {
+	if info, err := os.Stat(path); err != nil || !info.Mode().IsRegular() {
+		return ""
+	}
 	file, err := os.Open(path)
 	if err != nil {
 		return ""

@@ -2,6 +2,7 @@ package batch
 
 import (
 	"encoding/hex"
+	"fmt"
 	"math"
 	"slices"
 	"unicode/utf8"
@@ -40,9 +41,11 @@ type Row struct {
 	Temperature Number `json:"temperature_K"`
 	Viscosity   Number `json:"viscosity_Pa_s"`
 	// FreeBead are the recordings of the free bead whose drag was used.
-	FreeBead    []string    `json:"free_bead,omitempty"`
-	FamilyWiseP calib.Float `json:"family_wise_p_value"`
-	Axes        []RowAxis   `json:"axes"`
+	FreeBead []string `json:"free_bead,omitempty"`
+	// FreeBeadBytes are their names in hexadecimal, "" where a name is UTF-8; absent where all are.
+	FreeBeadBytes []string    `json:"free_bead_bytes,omitempty"`
+	FamilyWiseP   calib.Float `json:"family_wise_p_value"`
+	Axes          []RowAxis   `json:"axes"`
 	// Flow is what a stage at constant speed gives to a line through several recordings.
 	Flow []calib.FlowPart `json:"flow,omitempty"`
 }
@@ -117,9 +120,48 @@ func nameOf(name, stored string) (string, error) {
 	return string(whole), err
 }
 
+// namesBytes are those of each name; nil when every name is UTF-8.
+func namesBytes(names []string) []string {
+	all, any := make([]string, len(names)), false
+	for i, name := range names {
+		all[i] = nameBytes(name)
+		any = any || all[i] != ""
+	}
+	if !any {
+		return nil
+	}
+	return all
+}
+
+// restoreNames gives a row that was read from JSON the names that JSON could not carry.
+func (r *Row) restoreNames() (err error) {
+	if r.File, err = nameOf(r.File, r.FileBytes); err != nil {
+		return err
+	}
+	for i := range r.Flow {
+		r.Flow[i].Name = r.File
+	}
+	for i := range min(len(r.FreeBead), len(r.FreeBeadBytes)) {
+		if r.FreeBead[i], err = nameOf(r.FreeBead[i], r.FreeBeadBytes[i]); err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
 // failedRow is a recording with a problem.
 func failedRow(file string, p report.Problem) Row {
-	row := emptyRow(file, Failed, p.Message)
+	reason := p.Message
+	switch {
+	case p.Line > 0 && p.Column > 0:
+		reason = fmt.Sprintf("line %d, column %d: %s", p.Line, p.Column, reason)
+	case p.Line > 0:
+		reason = fmt.Sprintf("line %d: %s", p.Line, reason)
+	}
+	if p.File != "" && p.File != file { // a background, say
+		reason = p.File + ": " + reason
+	}
+	row := emptyRow(file, Failed, reason)
 	row.Problem = &p
 	return row
 }
@@ -150,6 +192,7 @@ func resultRow(file, folder string, r *calib.Result) Row {
 			Stiffness: number(a.Adopted.Stiffness), Corner: number(a.Spectrum.Corner), Drag: number(a.MeasuredDrag),
 			DragRatio: number(a.DragRatio), FreeDragRatio: free, Sensitivity: settingNumber(r, "recording.sensitivity", a.Name), WallFactor: number(a.Wall.Factor)})
 	}
+	row.FreeBeadBytes = namesBytes(row.FreeBead)
 	return row
 }
 

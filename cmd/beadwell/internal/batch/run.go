@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"io/fs"
 	"maps"
 	"os"
 	"path/filepath"
@@ -249,6 +250,10 @@ func (job Job) do(ctx context.Context, root *os.Root, t Task) (e entry, err erro
 	}()
 	e = entry{File: t.Path, FileBytes: nameBytes(t.Path), Folder: t.Folder, Fingerprint: t.fingerprint, Outputs: map[string]string{}}
 	before, errBefore := os.Stat(t.Path)
+	if errBefore == nil && !before.Mode().IsRegular() {
+		e.Rows = []Row{failedRow(t.Path, noFile(t.Path, before.Mode()))}
+		return e, nil // without a sum: looked at again by the next run
+	}
 	outcomes, err := job.Calibrate(ctx, t.Path)
 	if err != nil {
 		return e, err
@@ -277,6 +282,33 @@ func (job Job) do(ctx context.Context, root *os.Root, t Task) (e entry, err erro
 		e.SHA256 = FileSum(t.Path)
 	}
 	return e, nil
+}
+
+// noFile is the problem with what stands in the place of a file. A pipe or a device could be read for ever, and no second time.
+func noFile(path string, mode fs.FileMode) report.Problem {
+	p := report.Problem{Code: "input", Status: 4, Input: path, File: path,
+		Message: "is a device, not a file", Remedy: "take it out of the list, or copy the recording into a file"}
+	switch {
+	case mode.IsDir():
+		p.Message, p.Remedy = "is a folder, not a file", "name the recordings in it, or add --below"
+		if _, err := os.ReadDir(path); err != nil {
+			p.Message, p.Remedy = "is a folder that cannot be read: "+reasonOf(err).Error(), "allow it to be read, or move it away"
+		}
+	case mode&fs.ModeNamedPipe != 0:
+		p.Message = "is a pipe, not a file"
+	case mode&fs.ModeSocket != 0:
+		p.Message = "is a socket, not a file"
+	}
+	return p
+}
+
+// reasonOf is an error without the name of the file, which stands beside it.
+func reasonOf(err error) error {
+	var of *fs.PathError
+	if errors.As(err, &of) {
+		return of.Err
+	}
+	return err
 }
 
 // store writes the outputs of one result.

@@ -46,11 +46,12 @@ type Series struct {
 
 // SeriesPoint is one recording in a series.
 type SeriesPoint struct {
-	File    string      `json:"file"`
-	X       calib.Float `json:"x"`
-	Y       calib.Float `json:"y"`
-	YU      calib.Float `json:"y_standard_uncertainty"`
-	Outlier bool        `json:"outlier"`
+	File      string      `json:"file"`
+	FileBytes string      `json:"file_bytes,omitempty"` // as of a Row
+	X         calib.Float `json:"x"`
+	Y         calib.Float `json:"y"`
+	YU        calib.Float `json:"y_standard_uncertainty"`
+	Outlier   bool        `json:"outlier"`
 }
 
 // SeriesValue is one number of a fit.
@@ -207,7 +208,7 @@ func take(m []member, x func(member) calib.Float, y func(member) Number) (kept [
 		n := y(one)
 		if v := x(one); v.Known() && known(n.Value) && known(n.Statistical) {
 			kept = append(kept, one)
-			points = append(points, SeriesPoint{File: one.row.File, X: v, Y: n.Value, YU: n.Statistical})
+			points = append(points, SeriesPoint{File: one.row.File, FileBytes: one.row.FileBytes, X: v, Y: n.Value, YU: n.Statistical})
 		}
 	}
 	return kept, points
@@ -215,13 +216,17 @@ func take(m []member, x func(member) calib.Float, y func(member) Number) (kept [
 
 func stiffness(m member) Number { return m.axis.Stiffness }
 
-// sharedRelative is the relative uncertainty that the inputs give to all stiffnesses alike:
+// sharedRelative is the relative uncertainty that the inputs give to a number of all recordings alike:
 // the median over the members of what combined has beyond statistical.
 func sharedRelative(m []member, of func(member) Number) float64 {
 	var shares []float64
 	for _, one := range m {
 		n := of(one)
-		if c, s := float64(n.Combined), float64(n.Statistical); c > s {
+		c, s := float64(n.Combined), float64(n.Statistical)
+		if math.IsNaN(s) {
+			s = 0 // an input
+		}
+		if c > s {
 			shares = append(shares, math.Sqrt(c*c-s*s)/math.Abs(float64(n.Value)))
 		} else {
 			shares = append(shares, 0)

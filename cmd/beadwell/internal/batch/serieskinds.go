@@ -30,8 +30,11 @@ func againstPower(m []member) Series {
 	for _, p := range points {
 		data = append(data, series.Point{X: float64(p.X), Y: float64(p.Y), UY: float64(p.YU)})
 	}
-	shared := sharedRelative(m, stiffness)
-	line, err := series.Line(data, series.LineOptions{ThroughOrigin: true, SharedY: shared})
+	// What is stated of a power is the scale of the meter, which all recordings of the evening share.
+	options := series.LineOptions{SharedX: sharedRelative(m, func(one member) Number { return one.row.Power }), SharedY: sharedRelative(m, stiffness)}
+	free, noIntercept := series.Line(data, options)
+	options.ThroughOrigin = true
+	line, err := series.Line(data, options)
 	if err != nil {
 		s.Reason = err.Error()
 		return s
@@ -47,7 +50,7 @@ func againstPower(m []member) Series {
 		s.goodness(line.Without.Goodness)
 		s.Values = append(s.Values, value("the same without the outliers", "N/(m W)", slope))
 	}
-	if free, err := series.Line(data, series.LineOptions{SharedY: shared}); err == nil {
+	if noIntercept == nil {
 		s.Values = append(s.Values, value("slope, with an intercept", "N/(m W)", free.Slope), value("intercept", "N/m", free.Intercept))
 	}
 	for _, x := range samples(points, true, 2) {
@@ -219,7 +222,7 @@ func axesRatio(m []member) Series {
 		}
 		ratio, err := series.Ratio(series.Pair{First: measured(one.axis.Stiffness), Second: measured(y.Stiffness)})
 		if err == nil {
-			points = append(points, SeriesPoint{File: one.row.File, X: calib.Float(len(points) + 1), Y: calib.Float(ratio.Value), YU: calib.Float(ratio.Uncertainty)})
+			points = append(points, SeriesPoint{File: one.row.File, FileBytes: one.row.FileBytes, X: calib.Float(len(points) + 1), Y: calib.Float(ratio.Value), YU: calib.Float(ratio.Uncertainty)})
 		}
 	}
 	s := newSeries(kindRatio, "recording", "1", points)

@@ -39,6 +39,7 @@ func newSummary(entries []entry, growing []Growing, opt SeriesOptions) *Summary 
 	slices.SortStableFunc(s.Rows, func(a, b Row) int { return natural(a.File, b.File) })
 	s.addSeries(opt)
 	s.join()
+	s.noteCopies()
 	return s
 }
 
@@ -56,6 +57,31 @@ func (s *Summary) join() {
 	for _, j := range joined {
 		s.Notes = append(s.Notes, fmt.Sprintf("displacement against speed, axis %s: %s; stiffness %s by constant flow, %s without viscosity; slope %s, intercept %s",
 			j.Axis, j.Text, report.Of(j.Stiffness, "pN/um"), report.Of(j.Driven, "pN/um"), report.Of(j.Slope, "us"), report.Of(j.Intercept, "nm")))
+	}
+}
+
+// noteCopies tells of recordings that are there twice: a copy is no repeat, and makes the scatter of a series look smaller than it is.
+func (s *Summary) noteCopies() {
+	type content struct{ sum, bead string }
+	first := map[content]string{}
+	copies, example := 0, ""
+	for _, row := range s.Rows {
+		of := content{row.SHA256, row.Bead}
+		switch original, seen := first[of]; {
+		case row.SHA256 == "":
+		case !seen:
+			first[of] = row.File
+		default:
+			if copies++; example == "" {
+				example = fmt.Sprintf("%s has the content of %s", report.Plain(row.File), report.Plain(original))
+			}
+		}
+	}
+	switch {
+	case copies == 1:
+		s.Notes = append(s.Notes, example+": a copy is no repeat, leave one of them out of the series")
+	case copies > 1:
+		s.Notes = append(s.Notes, fmt.Sprintf("%d recordings are copies of others (%s): a copy is no repeat, leave them out of the series", copies, example))
 	}
 }
 

@@ -12,9 +12,11 @@ const TrendSchema = "beadwell-trend/1"
 
 // storedTrend is a trend as JSON holds it. Numbers are SI; null where there is none.
 type storedTrend struct {
-	Schema   string        `json:"schema"`
-	Sessions []string      `json:"sessions"` // in natural order
-	Charts   []storedChart `json:"charts"`   // never null
+	Schema   string   `json:"schema"`
+	Sessions []string `json:"sessions"` // in natural order
+	// SessionBytes are their names in hexadecimal, "" where a name is UTF-8; absent where all are.
+	SessionBytes []string      `json:"session_bytes,omitempty"`
+	Charts       []storedChart `json:"charts"` // never null
 }
 
 type storedChart struct {
@@ -34,6 +36,7 @@ type storedChart struct {
 
 type storedPoint struct {
 	Session     string         `json:"session"`
+	Bytes       string         `json:"session_bytes,omitempty"` // hexadecimal; of a name that is no UTF-8, which JSON cannot carry
 	Value       calib.Float    `json:"value"`
 	Uncertainty calib.Float    `json:"standard_uncertainty"`
 	Stated      [2]calib.Float `json:"stated_limits"`
@@ -62,7 +65,7 @@ type storedChange struct {
 
 // JSON is the trend with the charts, their limits and what they show.
 func (t *Trend) JSON() ([]byte, error) {
-	out := storedTrend{Schema: TrendSchema, Sessions: t.Sessions, Charts: []storedChart{}}
+	out := storedTrend{Schema: TrendSchema, Sessions: t.Sessions, SessionBytes: namesBytes(t.Sessions), Charts: []storedChart{}}
 	for _, c := range t.Charts {
 		out.Charts = append(out.Charts, c.stored())
 	}
@@ -73,7 +76,7 @@ func (c TrendChart) stored() storedChart {
 	nan := calib.Float(math.NaN())
 	out := storedChart{Name: c.Name, Unit: c.Unit, Between: nan, Birge: nan, PValue: nan, Runs: []storedRun{}, Messages: append([]string{}, c.alarms()...), Reason: c.Reason}
 	for i, v := range c.Values {
-		p := storedPoint{Session: c.Sessions[i], Value: calib.Float(v.Value), Uncertainty: calib.Float(v.Uncertainty),
+		p := storedPoint{Session: c.Sessions[i], Bytes: nameBytes(c.Sessions[i]), Value: calib.Float(v.Value), Uncertainty: calib.Float(v.Uncertainty),
 			Stated: [2]calib.Float{nan, nan}, Observed: [2]calib.Float{nan, nan}, Score: nan}
 		if c.Chart != nil {
 			of := c.Chart.Points[i]

@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"os"
 	"path/filepath"
+	"slices"
 	"strings"
 	"testing"
 	"unicode/utf8"
@@ -88,6 +89,15 @@ func TestHostileNames(t *testing.T) {
 		t.Errorf("summary.json loses names: %d rows", len(s.Rows))
 	}
 
+	for _, one := range s.Series {
+		for _, p := range one.Points {
+			delete(bytesOf, p.FileBytes)
+		}
+	}
+	if len(s.Series) == 0 || len(bytesOf) > 0 {
+		t.Errorf("the %d series of summary.json lose the names %v", len(s.Series), bytesOf)
+	}
+
 	trend := []string{"trend", "--html", "trend.html"}
 	for i, name := range hostileNames {
 		path, out := "raw/"+name+".csv", fmt.Sprintf("one-%d", i)
@@ -122,4 +132,51 @@ func TestHostileNames(t *testing.T) {
 		quietly(StatusDone, append(trend, "--format", format)...)
 	}
 	harmless(t, "trend.html", string(mustRead(t, "trend.html")), true)
+	var joined struct {
+		Sessions     []string
+		SessionBytes []string `json:"session_bytes"`
+		Charts       []struct {
+			Points []struct {
+				Bytes string `json:"session_bytes"`
+			}
+		}
+	}
+	if err := json.Unmarshal([]byte(quietly(StatusDone, append(trend, "--format", "json")...)), &joined); err != nil {
+		t.Fatal(err)
+	}
+	for _, name := range []string{"sessions/inv\xff", "sessions/inv\xfe"} {
+		i := slices.Index(joined.SessionBytes, fmt.Sprintf("%x", name))
+		if len(joined.SessionBytes) != len(joined.Sessions) || i < 0 || joined.Charts[0].Points[i].Bytes != joined.SessionBytes[i] {
+			t.Errorf("the trend loses %q: %q", name, joined.SessionBytes)
+		}
+	}
+}
+
+// A free bead whose name is no UTF-8 has its bytes in the summary, and a batch that goes on ends with the bytes of one run.
+func TestHostileFreeBead(t *testing.T) {
+	from, err := filepath.Abs(demoFolder)
+	if err != nil {
+		t.Fatal(err)
+	}
+	t.Chdir(t.TempDir())
+	demoCopy(t, from, "power-80mW.csv", "free.csv", "stuck.csv")
+	if err := os.Rename("demo", "night\xff"); err != nil {
+		t.Fatal(err)
+	}
+	runReal(t, StatusDone, "batch", "night\xff", "--out", "whole", "--reports", "none")
+	runReal(t, StatusDone, "batch", "night\xff/free.csv", "night\xff/power-80mW.csv", "--out", "again", "--reports", "none")
+	// The journal alone is left of all but one recording.
+	if err := os.RemoveAll("again/free"); err != nil {
+		t.Fatal(err)
+	}
+	runReal(t, StatusDone, "batch", "night\xff", "--out", "again", "--reports", "none")
+	sameTree(t, "gone on", "whole", "again")
+	var s batch.Summary
+	if err := json.Unmarshal(mustRead(t, "whole/summary.json"), &s); err != nil {
+		t.Fatal(err)
+	}
+	want := fmt.Sprintf("%x", "night\xff/free.csv")
+	if len(s.Rows) != 3 || !slices.Equal(s.Rows[1].FreeBeadBytes, []string{want}) {
+		t.Errorf("the free bead of %+v, want the bytes %s", s.Rows, want)
+	}
 }
