@@ -212,6 +212,13 @@ func (b *bench) try(h hypothesis) (candidate, bool) {
 	if !ok {
 		return candidate{}, false
 	}
+	if h.also != nil {
+		if other, ok := h.also(top); ok {
+			if second, ok := other.maximise(); ok && second.value > top.value {
+				h, top = other, second
+			}
+		}
+	}
 	c := Cause{Code: h.code, Name: h.name, Axis: h.axis, Stated: h.stated, Ratio: Float(math.NaN()), Change: Float(math.NaN()),
 		Likelihood: Float(top.value), ChiSquare: Float(top.left), Freedom: b.size() - 1, PValue: 1, Measurement: measurements[h.code]}
 	if h.fixed() || top.atBound {

@@ -86,6 +86,30 @@ func TestOneAxisCannotTellScaleFromDrag(t *testing.T) {
 	}
 }
 
+// A noise that was measured with the wrong scale is wrong with it; one that is known in true lengths is not, and then another
+// one in the lengths of the recording. The length scale is found in either case, and at its value.
+func TestScaleWithNoise(t *testing.T) {
+	for name, noise := range map[string]float64{"with the wrong scale": 10e-9 * 100 / 94, "in true lengths": 10e-9} {
+		s := ordinary()
+		s.noise, s.seconds, s.pixel = 10e-9, 40, 94e-9
+		stated := s
+		stated.noise, stated.pixel = noise, 100e-9
+		for seed := range uint64(3) {
+			r, err := Calibrate(context.Background(), s.recording(t, seed), stated.settings(t), Options{})
+			if err != nil {
+				t.Fatal(err)
+			}
+			if r.Diagnosis == nil {
+				t.Fatalf("noise %s, seed %d: %s", name, seed, r.Verdict.Reason)
+			}
+			c, ok := tied(r.Diagnosis)[CauseScale]
+			if !ok || c.PValue < 0.01 || math.Abs(float64(c.Needed.Value)-94e-9) > 4*float64(c.Needed.Combined.Standard) {
+				t.Errorf("noise %s, seed %d: %s", name, seed, r.Diagnosis.Text)
+			}
+		}
+	}
+}
+
 // Where the routes agree there is nothing to explain.
 func TestNothingIsInvented(t *testing.T) {
 	for seed := uint64(1); seed <= 6; seed++ {

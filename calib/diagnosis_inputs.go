@@ -78,9 +78,9 @@ func (b *bench) scales() []hypothesis {
 		if axis >= 0 {
 			h.axis = w.axisName
 		}
-		h.at = func(p float64) (weighed, bool) {
-			of := func(o *work) bool { return axis < 0 || o.axisName == w.axisName }
-			return b.weigh(b.asRead, func(o *work, kind reading) float64 {
+		of := func(o *work) bool { return axis < 0 || o.axisName == w.axisName }
+		weigh := func(found []evidence, p float64) (weighed, bool) {
+			return b.weigh(found, func(o *work, kind reading) float64 {
 				switch {
 				case !of(o):
 					return 0
@@ -92,6 +92,8 @@ func (b *bench) scales() []hypothesis {
 				return -2 * p // lengths are recorded too small by the factor
 			}, func(in influence, o *work) bool { return in.length != 0 && of(o) })
 		}
+		h.at = func(p float64) (weighed, bool) { return weigh(b.asRead, p) }
+		h.also = func(top summit) (hypothesis, bool) { return b.noiseInTrueLengths(h, top, of, weigh) }
 		return h
 	}
 	list := []hypothesis{scale(CauseScale, -1)}
@@ -101,6 +103,44 @@ func (b *bench) scales() []hypothesis {
 		}
 	}
 	return list
+}
+
+const (
+	noiseReach = 0.2 // in the logarithm of the length scale, about where it was without a change of the noise
+	noiseGain  = 0.1 // of the log-likelihood, below which a change of the noise is not followed
+)
+
+// noiseInTrueLengths is a hypothesis on the length scale that also moves the stated noise. A noise that was measured with the same scale
+// is wrong with it, and right in the lengths of the recording; one that is known in true lengths is e^-p of it there.
+func (b *bench) noiseInTrueLengths(h hypothesis, top summit, of func(*work) bool, weigh func([]evidence, float64) (weighed, bool)) (hypothesis, bool) {
+	stated := func(w *work) bool {
+		return of(w) && w.noise.Known && w.noise.Variance > 0 && w.background == nil && !w.scaledByDrive()
+	}
+	if !slices.ContainsFunc(b.works, stated) {
+		return h, false
+	}
+	near := refits{}
+	h.at = func(p float64) (weighed, bool) {
+		found := slices.Clone(b.asRead)
+		for i, w := range b.works {
+			if !stated(w) {
+				continue
+			}
+			n := w.noise
+			n.Variance *= math.Exp(-2 * p)
+			n.VarianceU *= math.Exp(-2 * p)
+			var ok bool
+			if found[i], ok = near.of(w, w.exposure, n); !ok {
+				return weighed{}, false
+			}
+		}
+		return weigh(found, p)
+	}
+	if w, ok := h.at(top.at); ok && math.Abs(w.value-top.value) < noiseGain {
+		return h, false
+	}
+	h.low, h.high, h.steps = top.at-noiseReach, top.at+noiseReach, refitSteps
+	return h, true
 }
 
 // lengthScale is the stated length of a recorded unit, or 1 where the file has a unit of length.

@@ -13,6 +13,7 @@ type hypothesis struct {
 	value            func(parameter float64) float64 // SI
 	order            func(needed float64) float64    // change in standard uncertainties that are usual, where none is stated
 	text             func(Cause) string
+	also             func(top summit) (hypothesis, bool) // the same cause in another way, to be taken when it explains more; nil: none
 }
 
 func (h hypothesis) fixed() bool { return h.steps == 1 }
