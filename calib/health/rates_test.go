@@ -3,6 +3,7 @@ package health
 import (
 	"math"
 	"math/rand/v2"
+	"strings"
 	"testing"
 
 	"beadwell/calib/simulate"
@@ -76,7 +77,8 @@ func trials() []trial {
 		}))
 	}
 	all = append(all,
-		trial{"2 % lost without a trace", regime{ratio: 0.01, periods: 5000}, func(t *simulate.Truth) { t.Faults.Dropped = 0.02 }, true, "rough-steps", Doubtful},
+		trial{"2 % lost without a trace", regime{ratio: 0.01, periods: 3500}, func(t *simulate.Truth) { t.Faults.Dropped = 0.02 }, true, "rough-steps", Doubtful},
+		trial{"2 % lost without a trace, three axes", regime{ratio: 0.01, periods: 750}, func(t *simulate.Truth) { t.Faults.Dropped = 0.02 }, false, "rough-steps", Doubtful},
 		trial{"second bead changes the variance alone", detector, event(simulate.SecondBead, 0.5, func(e *simulate.Event) { e.Stiffness, e.Drag = 1.7, 1.6 }), false, "unsteady-motion", Bad},
 		trial{"rounding to 0.7 rms", camera, func(t *simulate.Truth) { t.Faults.Rounding = 0.7 * rms }, false, "coarse-steps", Doubtful},
 		trial{"quartic trap", detector, eachAxis(func(a *simulate.Axis) { a.Quartic = 0.1 }), false, "not-gaussian", Doubtful},
@@ -123,8 +125,11 @@ func TestDetection(t *testing.T) {
 		t.Run(tr.name, func(t *testing.T) {
 			t.Parallel()
 			axes := 1
-			if tr.code == "axes-mixed" {
+			switch {
+			case tr.code == "axes-mixed":
 				axes = 2
+			case strings.HasSuffix(tr.name, "three axes"):
+				axes = 3
 			}
 			found := 0
 			for seed := range uint64(repeats) {

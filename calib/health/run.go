@@ -28,6 +28,7 @@ func Run(in Input) []Check {
 			made[i] = views[i].checks()
 		}
 	})
+	roughTogether(views, made)
 	checks = append(checks, slices.Concat(made...)...)
 	pair := 0
 	for i := range views {
@@ -44,20 +45,21 @@ func Run(in Input) []Check {
 type view struct {
 	Axis
 	summary
-	rate     float64 // [Hz]
-	start    float64 // [s]
-	exposure float64 // [s]
-	h        null
-	local    null // the same without a fit, from parts of the record
-	values   values
-	line     line
-	rms      float64 // standard deviation of the samples by the null hypothesis [unit of X]
-	mean     meanFindings
-	spell    spell
-	whole    part    // the record, line and step taken off
-	per      int     // fine blocks in one block of the spell
-	escapeAt int     // fine block, -1 when there is none
-	beyond   float64 // farthest position from the beginning of the record, in standard deviations of that
+	rate      float64 // [Hz]
+	start     float64 // [s]
+	exposure  float64 // [s]
+	h         null
+	local     null // the same without a fit, from parts of the record
+	values    values
+	line      line
+	rms       float64 // standard deviation of the samples by the null hypothesis [unit of X]
+	mean      meanFindings
+	spell     spell
+	freeSteps float64 // steps between neighbours that count as independent in their kurtosis
+	whole     part    // the record, line and step taken off
+	per       int     // fine blocks in one block of the spell
+	escapeAt  int     // fine block, -1 when there is none
+	beyond    float64 // farthest position from the beginning of the record, in standard deviations of that
 }
 
 // newView reads an axis and makes the decisions that several checks share.

@@ -88,15 +88,28 @@ func kurtosisDeviate(g, n float64) float64 {
 }
 
 const (
-	stepsDoubtful = 0.1 // excess kurtosis of the steps between neighbours: 3 % of steps over two intervals make 0.09
-	stepsBad      = 5.0
+	stepsBeyond = 3.1  // deviates, one-sided: 1e-3
+	stepsFloor  = 0.01 // 2 % of steps over two intervals make 0.057 where fc is small against the rate, 0.01 at fc/fs = 0.14
+	stepsBad    = 5.0
 )
+
+// kurtosisAt is the excess kurtosis of n independent samples that is a normal deviate of z.
+func kurtosisAt(z, n float64) float64 {
+	low, high := 0.0, 100.0
+	for range 50 {
+		if mid := (low + high) / 2; kurtosisDeviate(mid, n) < z {
+			low = mid
+		} else {
+			high = mid
+		}
+	}
+	return high
+}
 
 // roughSteps compares the steps from sample to sample with Gaussian ones. Single
 // wrong positions and samples lost without a trace make some steps too large.
 func (v *view) roughSteps() Check {
 	c := v.check("rough-steps")
-	c.Threshold = stepsDoubtful
 	if !v.judgeable() || v.total.d2 == 0 {
 		return c.spared("too few samples")
 	}
@@ -109,24 +122,55 @@ func (v *view) roughSteps() Check {
 	n := v.total.steps
 	m2, m4 := v.total.d2/n, v.total.d4/n
 	c.Value = m4/(m2*m2) - 3
-	z := kurtosisDeviate(c.Value, math.Max(n/v.h.stepInflation(), 20))
-	if !(z > stepsBeyond) || c.Value < stepsFloor {
+	v.freeSteps = math.Max(n/v.h.stepInflation(), 20)
+	c.Threshold = math.Max(stepsFloor, kurtosisAt(stepsBeyond, v.freeSteps))
+	if c.Value <= c.Threshold {
 		c.Text = "The steps from sample to sample are those of a bead."
 		return c
 	}
+	c.roughen("Some steps from one sample to the next are too large: their excess kurtosis is %s.")
+	return c
+}
+
+// roughen raises the alarm of steps that are too large.
+func (c *Check) roughen(text string) {
 	c.Level = Doubtful
 	if c.Value > stepsBad {
 		c.Level = Bad
 	}
-	c.Text = fmt.Sprintf("Some steps from one sample to the next are too large: their excess kurtosis is %s. Samples lost without a trace, or single wrong positions, do this.", digits(c.Value))
+	c.Text = fmt.Sprintf(text, digits(c.Value)) + " Samples lost without a trace, or single wrong positions, do this."
 	c.Remedy = "Compare the frame numbers of camera and file, and look at the largest steps in the track; record with time stamps."
-	return c
 }
 
-const (
-	stepsBeyond = 3.8  // deviates, one-sided: 7e-5
-	stepsFloor  = 0.02 // 1 % of steps over two intervals make 0.03
-)
+// roughTogether judges the steps of all axes as one where no axis shows anything by itself: a sample that is lost is
+// lost on every axis. The alarm is that of the axis with the largest steps.
+func roughTogether(views []*view, made [][]Check) {
+	var most *Check
+	z, mean, free, count := 0.0, 0.0, 0.0, 0.0
+	for i, v := range views {
+		for j := range made[i] {
+			c := &made[i][j]
+			if c.Code != "rough-steps" || !c.Judged {
+				continue
+			}
+			if c.Level != OK {
+				return
+			}
+			z += kurtosisDeviate(c.Value, v.freeSteps)
+			mean += c.Value
+			free += v.freeSteps
+			count++
+			if most == nil || c.Value > most.Value {
+				most = c
+			}
+		}
+	}
+	if count < 2 || z/math.Sqrt(count) <= stepsBeyond || mean/count <= stepsFloor {
+		return
+	}
+	most.Value, most.Threshold = mean/count, math.Max(stepsFloor, kurtosisAt(stepsBeyond, free))
+	most.roughen("Some steps from one sample to the next are too large on all axes taken together: their mean excess kurtosis is %s.")
+}
 
 // stepInflation returns sum_k rho_d(k)^4 of the steps d between neighbours, whose
 // autocovariance is 2 r(k) - r(k-1) - r(k+1): the number of steps that count as one
