@@ -5,6 +5,7 @@ import (
 	"encoding/csv"
 	"errors"
 	"fmt"
+	"html"
 	"io/fs"
 	"math"
 	"os"
@@ -72,6 +73,10 @@ func TestFind(t *testing.T) {
 	}
 	if _, err := Find([]string{filepath.Join(folder, "gone*")}, false); err == nil {
 		t.Error("a pattern that matches nothing was not refused")
+	}
+	gone := filepath.Join(folder, "gone.csv")
+	if found, err := Find([]string{gone, filepath.Join(folder, "x.npy"), filepath.Join(folder, "*.none")}, false); err != nil || len(found.Paths) != 3 || !slices.Contains(found.Paths, gone) {
+		t.Errorf("one of a list that is not there: %v, %q", err, found.Paths)
 	}
 }
 
@@ -446,5 +451,41 @@ func TestPowerUncertainty(t *testing.T) {
 	}
 	if a, b := exactly.Values[2], stated.Values[2]; a.Name != "intercept" || a != b || exactly.ChiSquare != stated.ChiSquare {
 		t.Errorf("intercept %+v and %+v, chi-square %g and %g: want no difference", a, b, float64(exactly.ChiSquare), float64(stated.ChiSquare))
+	}
+}
+
+// The index shows rows of one outcome without a script, when there are several, under a policy that allows its style alone; names stand
+// without the folder that all share.
+func TestIndexChoices(t *testing.T) {
+	rows := []Row{emptyRow("night/a.csv", calib.Consistent, ""), emptyRow("night/b.csv", calib.Unfit, ""), failedRow("night/c.csv", report.Problem{Message: "is bad", Remedy: "mend it"})}
+	rows[0].FreeBead = []string{"night/f.csv", "night/g.csv", "other/night/h.csv"}
+	s := newSummary([]entry{{Rows: rows}}, nil, SeriesOptions{})
+	page, err := s.HTML()
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, want := range []string{`id="show-all" checked> all 3<`, `id="show-good"> 1 consistent<`, `id="show-distrusted"> 1 not to be trusted<`, `id="show-failed"> 1 failed<`,
+		`<tr class="failed"><th scope="row">c.csv`, "is bad; mend it", "names are those in night<", "<td>f.csv; g.csv; other/night/h.csv</td>", html.EscapeString(report.Policy(report.StyleSheet() + choiceStyle))} {
+		if !strings.Contains(string(page), want) {
+			t.Errorf("the index lacks %q", want)
+		}
+	}
+	if strings.Contains(string(page), "show-aside\"") {
+		t.Error("a choice of nothing")
+	}
+	if page, _ := newSummary([]entry{{Rows: rows[:1]}}, nil, SeriesOptions{}).HTML(); strings.Contains(string(page), "<fieldset") {
+		t.Error("a choice of all or all")
+	}
+	for _, c := range []struct {
+		files []string
+		want  string
+	}{{nil, "."}, {[]string{"a.csv"}, "."}, {[]string{"n/a.csv", "n/b/c.csv"}, "n"}, {[]string{"n/a.csv", "nn/a.csv"}, "."}, {[]string{"/d/a/x", "/d/b/x"}, "/d"}, {[]string{"/x", "/y"}, "/"}} {
+		s := &Summary{}
+		for _, file := range c.files {
+			s.Rows = append(s.Rows, Row{File: filepath.FromSlash(file)})
+		}
+		if got := filepath.ToSlash(s.folder()); got != c.want {
+			t.Errorf("folder of %q = %q, want %q", c.files, got, c.want)
+		}
 	}
 }

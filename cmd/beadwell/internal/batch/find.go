@@ -1,6 +1,7 @@
 package batch
 
 import (
+	"cmp"
 	"errors"
 	"fmt"
 	"io/fs"
@@ -31,14 +32,21 @@ var endings = []string{".csv", ".tsv", ".txt", ".dat", ".asc", ".npy"}
 // looks like a recording in them or stands in their track list (with below, in their folders too), and patterns that
 // the shell left as they were. Results of earlier runs are not looked into.
 //
-// The error names the first argument that is not there.
+// An argument that is not there, or cannot be looked into, is listed as a recording, of which it will be told, unless there is
+// no other: then it is the error.
 func Find(arguments []string, below bool) (Found, error) {
 	var found Found
+	var gone []string
+	var first error
 	for _, argument := range arguments {
 		if err := found.add(argument, below); err != nil {
-			return found, err
+			gone, first = append(gone, filepath.Clean(argument)), cmp.Or(first, err)
 		}
 	}
+	if len(found.Paths) == 0 && first != nil {
+		return found, first
+	}
+	found.Paths = append(found.Paths, gone...)
 	slices.SortFunc(found.Paths, natural)
 	found.Paths = slices.Compact(found.Paths)
 	return found, nil

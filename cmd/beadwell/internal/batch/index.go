@@ -7,6 +7,7 @@ import (
 	"html/template"
 	"math"
 	"net/url"
+	"path/filepath"
 	"strings"
 
 	"beadwell/calib/quantity"
@@ -28,12 +29,25 @@ type indexPage struct {
 	Style        template.CSS
 	Axes         []string
 	FreeBead     bool // any row used one
+	Choices      []indexChoice
 	Rows         []indexRow
 	Series       []indexSeries
 	Notes        []string
 }
 
+// indexChoice shows the rows of one class alone.
+type indexChoice struct{ Class, Text string }
+
+// choiceStyle lets the choices act without a script: a row is hidden while another class is chosen.
+const choiceStyle = `.choices{border:0;padding:0;margin:0 0 1rem;display:flex;flex-wrap:wrap;gap:.3rem 1.4rem;font:.92rem "Helvetica Neue",Helvetica,Arial,"Liberation Sans",sans-serif}
+.choices legend{float:left;padding:.25rem 0;margin-right:1.4rem;color:var(--soft)}
+.choices label{padding:.25rem 0}
+section:has(#show-good:checked) tbody tr:not(.good),section:has(#show-distrusted:checked) tbody tr:not(.distrusted),section:has(#show-failed:checked) tbody tr:not(.failed),section:has(#show-aside:checked) tbody tr:not(.aside){display:none}
+@media print{.choices{display:none}}
+`
+
 type indexRow struct {
+	Class                      string // of its status, as in the choices
 	File, Link, Status, Reason string
 	FreeBead                   string   // recordings of the free bead that gave a drag
 	Facts                      []string // power, height
@@ -52,10 +66,25 @@ type indexSeries struct {
 // reports, and the series with their figures.
 func (s *Summary) HTML() ([]byte, error) {
 	good, distrusted, failed, aside := s.Counts()
-	page := indexPage{Style: template.CSS(report.StyleSheet()), Policy: report.Policy(report.StyleSheet()), Axes: s.axes(), Notes: s.Notes,
+	style := report.StyleSheet() + choiceStyle
+	page := indexPage{Style: template.CSS(style), Policy: report.Policy(style), Axes: s.axes(), Notes: s.Notes,
 		Lead: fmt.Sprintf("%d recordings: %d consistent, %d not to be trusted, %d failed, %d set aside", len(s.Rows), good, distrusted, failed, aside)}
+	for _, c := range []struct {
+		class, text string
+		count       int
+	}{{classGood, "consistent", good}, {classDistrusted, "not to be trusted", distrusted}, {classFailed, "failed", failed}, {classAside, "set aside", aside}} {
+		if c.count > 0 && c.count < len(s.Rows) {
+			page.Choices = append(page.Choices, indexChoice{c.class, fmt.Sprintf("%d %s", c.count, c.text)})
+		}
+	}
+	folder := s.folder()
+	if folder != "." {
+		page.Lead += "; names are those in " + report.Plain(folder)
+	}
 	for _, row := range s.Rows {
-		page.Rows = append(page.Rows, indexRowOf(row, page.Axes))
+		shown := indexRowOf(row, page.Axes)
+		shown.File, shown.FreeBead = inFolder(folder, shown.File), inFolder(folder, shown.FreeBead)
+		page.Rows = append(page.Rows, shown)
 		page.FreeBead = page.FreeBead || len(row.FreeBead) > 0
 	}
 	for i, one := range s.Series {
@@ -68,6 +97,25 @@ func (s *Summary) HTML() ([]byte, error) {
 	var out bytes.Buffer
 	err = t.Execute(&out, page)
 	return out.Bytes(), err
+}
+
+// folder is the one that all recordings stand in, or "." when there is none.
+func (s *Summary) folder() string {
+	if len(s.Rows) == 0 {
+		return "."
+	}
+	folder := filepath.Dir(s.Rows[0].File)
+	for _, row := range s.Rows {
+		for folder != "." && folder != filepath.Dir(folder) && !strings.HasPrefix(row.File, folder+string(filepath.Separator)) {
+			folder = filepath.Dir(folder)
+		}
+	}
+	return folder
+}
+
+// inFolder takes the folder off the names in a text.
+func inFolder(folder, names string) string {
+	return strings.TrimPrefix(strings.ReplaceAll(names, "; "+report.Plain(folder)+"/", "; "), report.Plain(folder)+"/")
 }
 
 // axes are those that any row has.
@@ -85,7 +133,7 @@ func (s *Summary) axes() []string {
 }
 
 func indexRowOf(row Row, axes []string) indexRow {
-	out := indexRow{File: report.Plain(row.File), Status: row.word(), Reason: report.PlainLines(row.Reason), FreeBead: "-"}
+	out := indexRow{Class: row.class(), File: report.Plain(row.File), Status: row.word(), Reason: report.PlainLines(row.Reason), FreeBead: "-"}
 	if len(row.FreeBead) > 0 {
 		out.FreeBead = report.Plain(strings.Join(row.FreeBead, "; "))
 	}
@@ -150,13 +198,14 @@ func indexSeriesOf(i int, s Series) indexSeries {
 	if s.Group != "" {
 		out.Title += ": " + s.Group
 	}
+	out.Title = report.Typeset(strings.ToUpper(out.Title[:1]) + out.Title[1:])
 	if s.PValue.Known() {
 		out.Fit = fmt.Sprintf("chi-square %.3g with %d degrees of freedom, p = %.2g", float64(s.ChiSquare), s.Freedom, float64(s.PValue))
 	}
 	drawn := s.figure(i, out.Title)
 	out.Figure, out.Caption = template.HTML(figure.Inline(drawn)), drawn.Caption
 	for _, v := range s.Values {
-		out.Values = append(out.Values, [2]string{v.Name, v.text()})
+		out.Values = append(out.Values, [2]string{v.Name, report.Typeset(v.text())})
 	}
 	for _, p := range s.Points {
 		if p.Outlier {

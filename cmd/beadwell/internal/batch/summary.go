@@ -88,18 +88,38 @@ func (s *Summary) noteCopies() {
 // Counts are the rows by what came of them.
 func (s *Summary) Counts() (good, distrusted, failed, aside int) {
 	for _, row := range s.Rows {
-		switch row.Status {
-		case calib.Consistent, calib.Unchecked:
+		switch row.class() {
+		case classGood:
 			good++
-		case Failed:
+		case classFailed:
 			failed++
-		case SetAside:
+		case classAside:
 			aside++
 		default:
 			distrusted++
 		}
 	}
 	return good, distrusted, failed, aside
+}
+
+// What came of a recording, in one word.
+const (
+	classGood       = "good"
+	classDistrusted = "distrusted"
+	classFailed     = "failed"
+	classAside      = "aside"
+)
+
+func (r Row) class() string {
+	switch r.Status {
+	case calib.Consistent, calib.Unchecked:
+		return classGood
+	case Failed:
+		return classFailed
+	case SetAside:
+		return classAside
+	}
+	return classDistrusted
 }
 
 // write writes the summary in its three forms.

@@ -97,7 +97,7 @@ func (a *app) batchCommand(run func(context.Context, *app, batchOptions) error) 
 		},
 	}
 	flags := cmd.Flags()
-	flags.StringVar(&o.filesFrom, "files-from", "", "take recordings or folders from the lines of `FILE`; - is standard input")
+	flags.StringVar(&o.filesFrom, "files-from", "", "take recordings or folders from the lines of `FILE`, or with NUL between them; - is standard input")
 	flags.BoolVar(&o.below, "below", false, "look into the folders of a folder too")
 	flags.StringVar(&o.session, "session", "", "settings `FILE` in place of session.toml beside each track")
 	flags.StringVar(&o.format, "format", "text", "form of the summary on standard output: `text|json|csv`")

@@ -114,7 +114,7 @@ func TestDemoBatch(t *testing.T) {
 		}
 	}
 	// The index names the free bead in the row of each of the ten that use it.
-	if page := string(mustRead(t, "results/index.html")); strings.Count(page, "Drag also by the free bead") != 1 || strings.Count(page, `free.csv</td>`) != 10 {
+	if page := string(mustRead(t, "results/index.html")); strings.Count(page, "Free bead used") != 1 || strings.Count(page, `free.csv</td>`) != 10 {
 		t.Error("the index does not say which recordings use the free bead")
 	}
 	want := map[string]float64{ // README of the demo

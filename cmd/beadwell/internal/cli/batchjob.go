@@ -1,7 +1,6 @@
 package cli
 
 import (
-	"bufio"
 	"context"
 	"crypto/sha256"
 	"encoding/hex"
@@ -61,7 +60,7 @@ func (a *app) batchJob(o batchOptions) (job batch.Job, aside []string, err error
 		Fingerprint: b.fingerprint, Calibrate: b.calibrate, Outputs: b.outputs, Series: options}, found.Aside, nil
 }
 
-// readLines reads names from a file or standard input, one on each line.
+// readLines reads names from a file or standard input, one on each line, or with NUL between them.
 func (a *app) readLines(path string) ([]string, error) {
 	var from io.Reader = a.In
 	if path != "-" {
@@ -72,17 +71,18 @@ func (a *app) readLines(path string) ([]string, error) {
 		defer file.Close()
 		from = file
 	}
-	var lines []string
-	scanner := bufio.NewScanner(from)
-	for scanner.Scan() {
-		if line := strings.TrimSuffix(scanner.Text(), "\r"); line != "" {
-			lines = append(lines, line)
-		}
+	content, err := io.ReadAll(from)
+	if err != nil {
+		return nil, fileError(path, "check that the file may be read", err)
 	}
-	if err := scanner.Err(); err != nil {
-		return nil, fileError(path, "give one name on each line", err)
+	text := string(content)
+	end := "\n"
+	if strings.Contains(text, "\x00") { // of find -print0: names may hold ends of lines
+		end = "\x00"
+	} else {
+		text = strings.ReplaceAll(text, "\r\n", "\n")
 	}
-	return lines, nil
+	return slices.DeleteFunc(strings.Split(text, end), func(name string) bool { return name == "" }), nil
 }
 
 // batchWork reads and calibrates the recordings of a batch.

@@ -4,6 +4,9 @@ package report
 // without control characters.
 func Cell(text string) string { return cell(text) }
 
+// Typeset makes text safe to show on a page and spells its units as print does.
+func Typeset(text string) string { return typeset(text) }
+
 // StyleSheet is the style sheet of every page, with that of the figures in it.
 func StyleSheet() string { return styleSheet() }
 
