@@ -39,31 +39,41 @@ func (p Process) SampleVariance(n int, removed Removed) (mean, variance float64)
 	return tr / nn, 2 * tr2 / (nn * nn)
 }
 
-// fewestCoarse is the least number of steps of a coarse-grained record: the sums over steps
-// differ from those over samples by its inverse squared.
-const fewestCoarse = 1 << 12
+// fewestSpans is the number of relaxation times in a record from which the sums of project are taken in closed form. Below it
+// they would lose digits to cancellation, as its inverse squared.
+const fewestSpans = 30
 
-// project returns u' C u and u' C^2 u for a removed direction. A record of very
-// many samples is coarse-grained first: as long as m samples are within 0.05
-// relaxation times, one in m with m times the covariance gives the same sums to
-// (0.05)^2/12 = 2e-4 of themselves; with more than 1e4 relaxation times both are the
-// long-run variance and its square to better than 1e-3 of themselves.
+// project returns u' C u and u' C^2 u for a removed direction. With g = (1+c)/(1-c), h = white + vb g,
+//
+//	sum_j c^|i-j|         = g - (c^(i+1) + c^(n-i))/(1-c)
+//	sum_j c^|i-j| (j - m) = g (i - m) + ((1+m)/(1-c) + c/(1-c)^2) (c^(i+1) - c^(n-i))
+//
+// about the middle m = (n-1)/2, and the sums over i of these and of their squares are geometric.
 func (p Process) project(d Removed, n int, vb, white float64) (uCu, uC2u float64) {
 	rho := 2 * math.Pi * p.Corner * p.Interval
-	if n > 1<<16 {
-		if rho*float64(n) > 1e4 {
-			long := white + vb/math.Tanh(rho/2)
-			return long, long * long
-		}
-		if m := min(int(0.05/rho), n/fewestCoarse); m > 1 {
-			coarse := n / m
-			ratio := float64(n) / float64(coarse) // m, but for the rest of the division
-			n, rho, vb = coarse, rho*ratio, vb*ratio
-		}
+	c, nn := math.Exp(-rho), float64(n)
+	if rho*nn < fewestSpans {
+		u := direction(d, n)
+		cu := toeplitz(u, c, vb, white)
+		return dot(u, cu), dot(cu, cu)
 	}
-	u := direction(d, n)
-	cu := toeplitz(u, math.Exp(-rho), vb, white)
-	return dot(u, cu), dot(cu, cu)
+	one := -math.Expm1(-rho)      // 1 - c
+	cn := math.Exp(-rho * nn)     // c^n
+	first := c * (1 - cn) / one   // sum of c^(i+1)
+	second := c * c * (1 - cn*cn) // sum of its square
+	second /= -math.Expm1(-2 * rho)
+	cross := nn * c * cn // sum of c^(i+1) c^(n-i)
+	h := white + vb*(1+c)/one
+	if d == RemovedMean {
+		end := vb / one
+		return h - 2*end*first/nn, h*h - 4*h*end*first/nn + 2*end*end*(second+cross)/nn
+	}
+	mid := (nn - 1) / 2
+	norm := nn * (nn*nn - 1) / 12
+	end := vb * ((1+mid)/one + c/(one*one))
+	// sum of (i - m) (c^(i+1) - c^(n-i)), twice that of (i - m) c^(i+1)
+	lever := 2 * (c*(c-nn*cn+(nn-1)*cn*c)/(one*one) - mid*first)
+	return h + end*lever/norm, h*h + (2*h*end*lever+2*end*end*(second-cross))/norm
 }
 
 // weightedPowers returns sum_{k=1}^{n-1} (n-k) z^k for z = exp(-x).

@@ -117,3 +117,24 @@ func TestSampleVarianceLimits(t *testing.T) {
 		t.Errorf("doubled positions: %g, %g, want %g, %g", m2, v2, 4*m1, 16*v1)
 	}
 }
+
+// The closed form of the removed directions against the sums themselves, from the fewest relaxation times at which it is used.
+// 1e-9: rounding of some thousand terms, times (1/fewestSpans)^-2 of cancellation.
+func TestProjectIsTheSum(t *testing.T) {
+	for _, n := range []int{31, 1000, 5000} {
+		for _, spans := range []float64{fewestSpans, 60, 1000, 20000} {
+			p := Process{Corner: 1, Interval: spans / float64(n) / (2 * math.Pi)}
+			c := math.Exp(-spans / float64(n))
+			for _, d := range []Removed{RemovedMean, RemovedLine} {
+				for _, white := range []float64{0, 0.3} {
+					u := direction(d, n)
+					cu := toeplitz(u, c, 0.9, white)
+					one, two := p.project(d, n, 0.9, white)
+					if relativeGap(one, dot(u, cu)) > 1e-9 || relativeGap(two, dot(cu, cu)) > 1e-9 {
+						t.Errorf("%v, %d samples, %g spans, white %g: %.12g and %.12g, want %.12g and %.12g", d, n, spans, white, one, two, dot(u, cu), dot(cu, cu))
+					}
+				}
+			}
+		}
+	}
+}
