@@ -35,6 +35,7 @@ func (w *work) hydrodynamic(inertia bool) (psd.Hydrodynamic, bool) {
 		if d.Check() == nil {
 			static := complex(d.StaticFactor, 0)
 			h.Drag = func(f float64) complex128 { return d.Factor(f) / static }
+			h.DragKey = d
 			density := p.beadDensity
 			if math.IsNaN(density) {
 				density = p.density
@@ -103,6 +104,9 @@ func (w *work) refit(h psd.Hydrodynamic) error {
 	options := w.fitOptions()
 	options.Form = h.Form(w.rate, w.exposure)
 	options.KeepLines = w.record.Missing > 0
+	if w.fitErr == nil && !h.FitAlpha && !h.FitF3dB {
+		options.From = w.fit
+	}
 	var record *psd.Record
 	w.fit, record, w.fitErr = w.estimateFilled(options)
 	w.form, w.seen = options.Form, h
@@ -165,6 +169,7 @@ func (w *work) chooseDrag(h psd.Hydrodynamic) error {
 	constant := h
 	constant.Drag, constant.MassCorner = nil, 0
 	options.Form = constant.Form(w.rate, w.exposure)
+	options.From = plain.fit
 	base, _, err := w.estimateFilled(options)
 	if err != nil {
 		w.backTo(&plain)

@@ -27,6 +27,7 @@ type Options struct {
 	Band      Range   // frequencies to fit; zero: all
 	Exclude   []Range // frequencies to leave out
 	KeepLines bool    // do not search for narrow lines
+	From      *Fit    // another fit to the same record, from whose maximum to search; nil: a scan finds where to begin
 
 	// Form replaces the likelihood of the relaxation process, for a spectrum of
 	// another shape; nil is the relaxation process. It is given the blocked periodogram of the record and a scale [m2].
@@ -109,12 +110,29 @@ func estimate(r *Record, opt Options) (*Fit, error) {
 	case opt.Noise.Known:
 		f.Problem.Directions = []relaxation.Parameters{{1, 0, 0}, {0, 1, 0}}
 	}
-	start := f.Problem.Start(opt.Noise.Variance, !opt.Noise.Known)
+	var start relaxation.Parameters
+	if opt.From != nil {
+		start = f.from(*opt.From, opt.Noise)
+	} else {
+		start = f.Problem.Start(opt.Noise.Variance, !opt.Noise.Known)
+	}
 	m, err := f.Problem.Maximise(start)
 	if err != nil {
 		return f, err
 	}
 	return f, f.settle(m, r)
+}
+
+// from returns where the search starts after another fit, which may have had another unit of variance.
+func (f *Fit) from(fit Fit, noise Noise) relaxation.Parameters {
+	at := fit.Maximum.At
+	unit := fit.Scale() / f.Scale()
+	at[1] += math.Log(unit)
+	at[2] *= unit
+	if noise.Known && noise.VarianceU == 0 {
+		at[2] = noise.Variance / f.Scale()
+	}
+	return at
 }
 
 // settle fills in what follows from the maximum of the likelihood.

@@ -27,8 +27,11 @@ type Hydrodynamic struct {
 	// Drag returns gamma(f)/gamma(0) at f [Hz] > 0, for the time factor
 	// exp(-i 2 pi f t): its real part dissipates, a negative imaginary part is inertia
 	// of the fluid. Where the real part is not positive the spectrum counts as 0. Nil is a
-	// constant drag. It is called from one goroutine.
+	// constant drag. With a DragKey it must be safe for concurrent use; without, it is called from one goroutine.
 	Drag func(f float64) complex128
+	// DragKey, of a comparable type, tells Drag from other functions: equal keys are equal functions. What was
+	// computed with it is then used again. Nil computes all anew.
+	DragKey any
 	// MassCorner is f_m = gamma(0)/(2 pi m), m the mass of the bead [Hz]; 0 and +Inf
 	// leave out the inertia of the bead.
 	MassCorner float64
@@ -78,7 +81,7 @@ func (h Hydrodynamic) Response(f float64) float64 {
 // With a free photodiode it is not safe for concurrent use by several goroutines; else it is.
 func (h Hydrodynamic) Form(rate, exposure float64) func(relaxation.Blocks, float64) relaxation.Likelihood {
 	return func(b relaxation.Blocks, scale float64) relaxation.Likelihood {
-		w := newWhittle(h.newLattice(b, rate, exposure), b, scale)
+		w := newWhittle(h.lattice(b, rate, exposure), b, scale)
 		if h.FitAlpha || h.FitF3dB {
 			return newFreeDiode(w, h)
 		}

@@ -33,9 +33,10 @@ const (
 // lattice holds the sites of a record: what depends neither on parameters nor on the detector.
 type lattice struct {
 	source   Hydrodynamic
-	rate     float64 // [Hz]
-	exposure float64 // in units of the sampling interval
-	blocks   []site  // at the blocks, and
+	rate     float64      // [Hz]
+	exposure float64      // in units of the sampling interval
+	blocks   []site       // at the blocks, and
+	turns    []complex128 // 1 - exp(2 pi i f dt) there
 	rows     [][aliasNodes]float64
 	aliases  []site // 2 aliasPairs of them for each node
 	tail     []site
@@ -48,6 +49,8 @@ func (h Hydrodynamic) newLattice(b relaxation.Blocks, rate, exposure float64) *l
 		phi := math.Asin(math.Min(1, math.Sqrt(sigma)/2)) / math.Pi
 		l.blocks = append(l.blocks, l.at(phi, false, 1))
 		l.rows = append(l.rows, chebyshevRow(phi))
+		sine, cosine := math.Sincos(math.Pi * phi)
+		l.turns = append(l.turns, complex(2*sine*sine, -2*sine*cosine))
 	}
 	for j := range aliasNodes {
 		phi := chebyshevNode(j)
@@ -114,10 +117,11 @@ var chebyshevAngles = func() (table [aliasNodes][aliasNodes]float64) {
 
 // chebyshevRow returns the weights by which the values at the nodes make the value at phi.
 func chebyshevRow(phi float64) (row [aliasNodes]float64) {
-	angle := math.Acos(math.Max(-1, math.Min(1, 4*phi-1)))
-	var here [aliasNodes]float64
-	for k := 1; k < aliasNodes; k++ {
-		here[k] = math.Cos(float64(k) * angle)
+	t := math.Max(-1, math.Min(1, 4*phi-1))
+	var here [aliasNodes]float64 // T_k(t)
+	here[0], here[1] = 1, t
+	for k := 2; k < aliasNodes; k++ {
+		here[k] = 2*t*here[k-1] - here[k-2]
 	}
 	for j := range row {
 		sum := 0.5

@@ -13,7 +13,7 @@ type Design struct {
 	Corner    float64 // true corner frequency [Hz]
 	Noise     float64 // q/V, noise variance over that of the position
 	NoiseFree bool    // the noise would be fitted
-	Band      Range   // frequencies to fit; zero: from Corner/1000 to half the rate
+	Band      Range   // frequencies to fit; zero: from below Corner/1000 to half the rate
 }
 
 // Bias is by how much a fit with constant drag, seen by the same detector, is wrong, however long the record:
@@ -44,7 +44,7 @@ func (h Hydrodynamic) Bias(d Design) (Bias, error) {
 	b := d.blocks()
 	truth := relaxation.Parameters{math.Log(d.Corner / d.Rate), 0, d.Noise}
 	h.FitAlpha, h.FitF3dB = false, false
-	w := newWhittle(h.newLattice(b, d.Rate, d.Exposure), b, 1)
+	w := newWhittle(h.lattice(b, d.Rate, d.Exposure), b, 1)
 	e := w.expected(w.lattice.model(h.diode().power, h.diode().prompt()), d.Corner/d.Rate, false)
 	for i, v := range e.value {
 		b.Power[i] = v + d.Noise
@@ -66,11 +66,12 @@ func (h Hydrodynamic) Bias(d Design) (Bias, error) {
 
 // biasSamples makes the weights of the blocks large: the search ends at a gain of the
 // log-likelihood that is small against one.
-const biasSamples = 1 << 30
+const biasSamples = 1 << 20
 
 // blocks returns the band in blocks without power.
 func (d Design) blocks() relaxation.Blocks {
-	low, high := d.Corner/1000/d.Rate, 0.5
+	// a power of two, so that recordings of nearly the same corner share a lattice
+	low, high := math.Exp2(math.Floor(math.Log2(d.Corner/1000/d.Rate))), 0.5
 	if d.Band.High > 0 {
 		low, high = math.Max(low, d.Band.Low/d.Rate), math.Min(high, d.Band.High/d.Rate)
 	}

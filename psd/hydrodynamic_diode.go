@@ -256,7 +256,7 @@ func (d *freeDiode) Start(noise float64, noiseFree bool) relaxation.Parameters {
 	}
 	top, at := math.Inf(-1), start
 	for _, n := range net {
-		fixed := &whittle{blocks: d.blocks, turns: d.turns, lattice: d.lattice, scale: d.scale,
+		fixed := &whittle{blocks: d.blocks, lattice: d.lattice, scale: d.scale,
 			model: d.lattice.model(n.power, n.prompt())}
 		m, err := relaxation.Problem{Likelihood: fixed, Directions: directions}.Maximise(start)
 		if err == nil && m.Value > top {

@@ -11,7 +11,6 @@ import (
 // whittle is the likelihood of a hydrodynamic spectrum.
 type whittle struct {
 	blocks  relaxation.Blocks
-	turns   []complex128 // 1 - exp(2 pi i f dt) of the blocks
 	lattice *lattice
 	model   *model
 	scale   float64
@@ -20,12 +19,7 @@ type whittle struct {
 }
 
 func newWhittle(l *lattice, b relaxation.Blocks, scale float64) *whittle {
-	w := &whittle{blocks: b, lattice: l, scale: scale}
-	for _, s := range l.blocks {
-		sine, cosine := math.Sincos(math.Pi * s.hz / l.rate)
-		w.turns = append(w.turns, complex(2*sine*sine, -2*sine*cosine))
-	}
-	return w
+	return &whittle{blocks: b, lattice: l, scale: scale}
 }
 
 // Scale returns the unit of variance [m2].
@@ -69,7 +63,7 @@ func (w *whittle) expected(m *model, x float64, finite bool) *expected {
 		e.value[i] = inner*(1+r) + m.prompt*c.level + other
 		e.slope[i] = dinner*(1+r) + inner*dr + m.prompt*c.dlevel + dother
 		if finite {
-			v, s := c.leakage(w.turns[i], w.blocks.Samples)
+			v, s := c.leakage(w.lattice.turns[i], w.blocks.Samples)
 			e.value[i] += v
 			e.slope[i] += s
 			e.jump[i], e.djump[i] = c.jump(d, dd, w.blocks.Samples)

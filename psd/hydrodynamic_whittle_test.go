@@ -109,7 +109,7 @@ func TestJump(t *testing.T) {
 // Mean and variance of sigma over the blocks of Bias, by a sum over each.
 func TestDesignBlocks(t *testing.T) {
 	b := Design{Rate: 1000, Corner: 20}.blocks()
-	low := 20.0 / 1000 / 1000
+	low := math.Exp2(-16) // the power of two below 20/1000/1000
 	growth := math.Pow(0.5/low, 1.0/biasBlocks)
 	for _, i := range []int{100, 300, biasBlocks - 30} {
 		from := low * math.Pow(growth, float64(i))
@@ -226,5 +226,30 @@ func BenchmarkHydrodynamicFreeDiode(b *testing.B) {
 	l := h.Form(100e3, 0)(blocks, 1)
 	for b.Loop() {
 		l.Score(relaxation.Parameters{math.Log(0.01), 0, 0.01})
+	}
+}
+
+// Records of one drag share a lattice, those of another drag or other frequencies have their own, and
+// what comes out is the same to the last bit.
+func TestLatticesAreShared(t *testing.T) {
+	b := Design{Rate: 50e3, Corner: 800}.blocks()
+	h := Hydrodynamic{Drag: func(f float64) complex128 { return complex(1, -f/1e6) }, DragKey: "a", MassCorner: 1e6}
+	first := h.lattice(b, 50e3, 0)
+	if h.lattice(b, 50e3, 0) != first {
+		t.Error("the same drag at the same frequencies has two lattices")
+	}
+	other := h
+	other.DragKey, other.Drag = "b", func(f float64) complex128 { return complex(1, -f/1e5) }
+	narrow := Design{Rate: 50e3, Corner: 800, Band: Range{Low: 10, High: 5e3}}.blocks()
+	for what, l := range map[string]*lattice{"another drag": other.lattice(b, 50e3, 0), "another exposure": h.lattice(b, 50e3, 1e-5), "other blocks": h.lattice(narrow, 50e3, 0)} {
+		if l == first {
+			t.Errorf("%s has the lattice of the first", what)
+		}
+	}
+	fresh := h
+	fresh.DragKey = nil
+	p := relaxation.Parameters{math.Log(0.016), 0, 0.01}
+	if got, want := h.Form(50e3, 0)(b, 1).Value(p), fresh.Form(50e3, 0)(b, 1).Value(p); got != want {
+		t.Errorf("log-likelihood %v on a shared lattice, %v on a fresh one", got, want)
 	}
 }

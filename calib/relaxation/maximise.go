@@ -59,13 +59,13 @@ func (pr Problem) Start(noise float64, noiseFree bool) Parameters {
 // solves (information + prior precision) step = gradient within the directions.
 func (pr Problem) Maximise(from Parameters) (Maximum, error) {
 	m := Maximum{At: from}
-	value, grad, info := pr.score(from)
-	if math.IsInf(value, -1) || math.IsNaN(value) {
+	here := pr.score(from)
+	if math.IsInf(here.value, -1) || math.IsNaN(here.value) {
 		return m, ErrNoMaximum
 	}
 	damping := 0.0
 	for m.Iterations = 1; m.Iterations <= maxIterations; m.Iterations++ {
-		step, gain, err := pr.within(m.At, grad).step(grad, info, damping)
+		step, gain, err := pr.within(m.At, here.grad).step(here.grad, here.info, damping)
 		if err != nil {
 			return m, ErrNoMaximum
 		}
@@ -73,7 +73,7 @@ func (pr Problem) Maximise(from Parameters) (Maximum, error) {
 			m.Converged = true
 			break
 		}
-		at, better := pr.climb(m.At, step, value)
+		at, next, better := pr.climb(m.At, step, here.value)
 		if !better {
 			if damping > 1e6 {
 				m.Converged = gain < 1e-4
@@ -86,11 +86,9 @@ func (pr Problem) Maximise(from Parameters) (Maximum, error) {
 		if damping < 1e-6 {
 			damping = 0
 		}
-		m.At = at
-		value, grad, info = pr.score(at)
+		m.At, here = at, next
 	}
-	m.Value = value
-	_, _, m.Information = pr.Likelihood.Score(m.At)
+	m.Value, m.Information = here.value, here.data
 	if !m.Converged {
 		return m, ErrNoMaximum
 	}
@@ -113,14 +111,18 @@ func (pr Problem) within(at, grad Parameters) Problem {
 	return inner
 }
 
+// numeric marks a likelihood whose score takes several times as long as its value.
+type numeric interface{ Numeric() }
+
 // climb halves the step until the value rises; steps are bounded to one e-fold in
-// the logarithms first.
-func (pr Problem) climb(at, step Parameters, value float64) (Parameters, bool) {
+// the logarithms first. It returns the point and the score there.
+func (pr Problem) climb(at, step Parameters, value float64) (Parameters, scored, bool) {
 	scale := 1.0
 	if big := math.Max(math.Abs(step[0]), math.Abs(step[1])); big > 1 {
 		scale = 1 / big
 	}
-	for range 30 {
+	_, slow := pr.Likelihood.(numeric)
+	for try := range 30 {
 		next := at
 		for a := range next {
 			next[a] += scale * step[a]
@@ -128,12 +130,17 @@ func (pr Problem) climb(at, step Parameters, value float64) (Parameters, bool) {
 		if pr.NonNegative {
 			next[2] = math.Max(0, next[2])
 		}
-		if v := pr.Value(next); v > value {
-			return next, true
+		// the first step is nearly always the one that is taken
+		if try == 0 && !slow {
+			if s := pr.score(next); s.value > value {
+				return next, s, true
+			}
+		} else if pr.Value(next) > value {
+			return next, pr.score(next), true
 		}
 		scale /= 2
 	}
-	return at, false
+	return at, scored{}, false
 }
 
 // Value returns the log-likelihood less the penalties of the priors.
@@ -146,19 +153,29 @@ func (pr Problem) Value(p Parameters) float64 {
 	return v
 }
 
-func (pr Problem) score(p Parameters) (float64, Parameters, Matrix) {
-	v, g, f := pr.Likelihood.Score(p)
+// scored is a point with its derivatives.
+type scored struct {
+	value float64 // with the penalties of the priors
+	grad  Parameters
+	info  Matrix // with the precision of the priors
+	data  Matrix // without
+}
+
+func (pr Problem) score(p Parameters) scored {
+	var s scored
+	s.value, s.grad, s.data = pr.Likelihood.Score(p)
+	s.info = s.data
 	for _, q := range pr.Priors {
 		z := (q.Weights.dot(p) - q.Mean) / q.SD
-		v -= z * z / 2
-		for a := range g {
-			g[a] -= z * q.Weights[a] / q.SD
-			for b := range g {
-				f[a][b] += q.Weights[a] * q.Weights[b] / (q.SD * q.SD)
+		s.value -= z * z / 2
+		for a := range s.grad {
+			s.grad[a] -= z * q.Weights[a] / q.SD
+			for b := range s.grad {
+				s.info[a][b] += q.Weights[a] * q.Weights[b] / (q.SD * q.SD)
 			}
 		}
 	}
-	return v, g, f
+	return s
 }
 
 func (p Parameters) dot(q Parameters) float64 { return p[0]*q[0] + p[1]*q[1] + p[2]*q[2] }
