@@ -39,6 +39,7 @@ func (r *Result) examine(rec *track.Recording, works []*work) stretch {
 		if w.fitErr == nil {
 			a.GoodnessP = w.fit.Goodness.PValue
 		}
+		a.Spectrum = w.tones
 		if w.drive != nil {
 			a.X = w.undriven()
 		}

@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"math"
 
+	"beadwell/calib/health"
 	"beadwell/calib/msd"
 	"beadwell/calib/relaxation"
 	"beadwell/calib/session"
@@ -42,6 +43,7 @@ type work struct {
 	reply             response
 	free              *carried            // drag of the free bead; nil without one
 	freeUnused        []string            // recordings of it that say nothing, with the reason
+	tones             *health.Spectrum    // periodogram of the positions; nil where it is not that of the record
 	adopter           *work               // the work by whose drag the stiffness was adopted; nil: itself
 	loose             *relaxation.FreeFit // of a free bead whose lengths are known; nil for others
 
@@ -197,8 +199,12 @@ func (w *work) run(ctx context.Context) error {
 	return ctx.Err()
 }
 
-// release lets go of the samples of a long record, mean and line removed, which can be made again.
+// release keeps the spectrum of a record from which nothing but mean and line was taken, for the search of lines, and lets go of
+// the samples of a long record, mean and line removed, which can be made again.
 func (w *work) release() {
+	if w.record.Missing == 0 && len(w.record.Lines) == 0 && w.drive == nil && w.gathered == nil {
+		w.tones = health.SpectrumOf(w.record.Power, w.record.Length)
+	}
 	if w.record.Samples < longRecord {
 		return
 	}

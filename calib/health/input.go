@@ -28,15 +28,46 @@ type Product struct {
 
 // Axis is one coordinate. All axes have the same number of samples.
 type Axis struct {
-	Name      string
-	Unit      string             // of X; empty is m. Process, Lines and texts use the same
-	X         []float64          // positions [m], the mean included; NaN is a missing sample
-	Gathered  *Gathered          // what was kept of a record whose samples are not at hand; X is nil then
-	Process   relaxation.Process // the fitted process
-	Known     bool               // Process holds a fit; false when none could be made
-	CornerSD  float64            // standard uncertainty of ln(Process.Corner) from the fit; 0: not given
-	Lines     []Line             // narrow lines that the fit has removed
-	GoodnessP float64            // p-value of the fitted spectrum; NaN, or 0 with Known false, when there is none
+	Name     string
+	Unit     string             // of X; empty is m. Process, Lines and texts use the same
+	X        []float64          // positions [m], the mean included; NaN is a missing sample
+	Gathered *Gathered          // what was kept of a record whose samples are not at hand; X is nil then
+	Process  relaxation.Process // the fitted process
+	Known    bool               // Process holds a fit; false when none could be made
+	CornerSD float64            // standard uncertainty of ln(Process.Corner) from the fit; 0: not given
+	Lines    []Line             // narrow lines that the fit has removed
+	// Spectrum is the periodogram of X without mean and line, nothing else taken off and nothing missing, where somebody has
+	// computed it; nil: the checks make their own.
+	Spectrum  *Spectrum
+	GoodnessP float64 // p-value of the fitted spectrum; NaN, or 0 with Known false, when there is none
+}
+
+// Spectrum is a periodogram: the mean of |X_k|^2 [unit of X, squared] over Segments stretches of Length samples, or over as many
+// neighbouring frequencies of one stretch Segments times as long.
+type Spectrum struct {
+	Power    []float64
+	Length   float64 // samples; frequency k is k times the rate over this
+	Segments int
+}
+
+// SpectrumOf returns the periodogram |X_k|^2, k = 0 .. n/2, of a record of n samples in the resolution in which lines are looked for.
+func SpectrumOf(power []float64, n int) *Spectrum {
+	m := (n + toneSegment - 1) / toneSegment
+	if m <= 1 {
+		return &Spectrum{Power: power, Length: float64(n), Segments: 1}
+	}
+	m |= 1 // odd, so that a group of frequencies has a middle
+	s := &Spectrum{Power: make([]float64, 0, len(power)/m+1), Length: float64(n) / float64(m), Segments: m}
+	// A sinusoid has all of its power, n^2 A^2/4, at one frequency: over m^2 it is that of a stretch of n/m samples.
+	// The noise of a stretch is that of the record over m, and a mean over m frequencies has as much again.
+	for from := -m / 2; from+m <= len(power); from += m {
+		sum := 0.0
+		for _, p := range power[max(from, 0) : from+m] {
+			sum += p
+		}
+		s.Power = append(s.Power, sum/float64(m*m))
+	}
+	return s
 }
 
 // sampleCount returns the number of samples, with the missing ones.

@@ -7,6 +7,8 @@ import (
 	"strings"
 	"testing"
 
+	"beadwell/calib/transform"
+
 	"beadwell/calib/relaxation"
 	"beadwell/calib/simulate"
 )
@@ -332,5 +334,25 @@ func TestSkewed(t *testing.T) {
 	c := find(t, Run(in), "not-gaussian", "x")
 	if c.Level != Doubtful {
 		t.Errorf("skewed positions: %v (%s)", c.Level, c.Text)
+	}
+}
+
+// A periodogram at hand, in one piece or with its frequencies in groups, is what the line is looked for in, and shows its amplitude.
+func TestToneFromSpectrum(t *testing.T) {
+	for _, n := range []int{1 << 17, 3 * toneSegment} {
+		x := white(n, rms, 1)
+		for i := range x {
+			x[i] += 0.1 * rms * math.Sin(2*math.Pi*50*float64(i)/1000)
+		}
+		plan, err := transform.NewPlan(n)
+		if err != nil {
+			t.Fatal(err)
+		}
+		a := axis("x", white(n, rms, 2)) // which has no line: it comes from the spectrum
+		a.Spectrum = SpectrumOf(plan.Power(nil, x), n)
+		c := find(t, Run(Input{Axes: []Axis{a}, Rate: 1000}), "tone", "x")
+		if c.Level != Doubtful || c.Value < 0.1*2/math.Pi-0.01 || c.Value > 0.11 { // off the centre of a bin as low as 2/pi
+			t.Errorf("line of 0.1 rms in the spectrum of %d samples: %v %v", n, c.Value, c.Level)
+		}
 	}
 }

@@ -49,15 +49,7 @@ func loudest(blocks []block, h null, least float64) spell {
 		sums[i+1] = block{n: sums[i].n + b.n, s1: sums[i].s1 + b.s1, s2: sums[i].s2 + b.s2}
 	}
 	total := sums[len(blocks)]
-	known := map[float64]meanLoss{} // there are as many lengths as blocks, and their square of intervals
-	loss := func(n float64) meanLoss {
-		l, ok := known[n]
-		if !ok {
-			l = h.meanLoss(n)
-			known[n] = l
-		}
-		return l
-	}
+	inside, outside := newLosses(h, len(blocks)), newLosses(h, len(blocks))
 	var best spell
 	for i := range blocks {
 		for j := i + 1; j <= len(blocks); j++ {
@@ -66,7 +58,7 @@ func loudest(blocks []block, h null, least float64) spell {
 			if in.n < least || out.n < least {
 				continue
 			}
-			z, ratio := compare(in, out, loss(in.n), loss(out.n))
+			z, ratio := compare(in, out, inside.of(j-i, in.n), outside.of(j-i, out.n))
 			if math.Abs(z) > math.Abs(best.z) {
 				best = spell{from: i, to: j, z: z, ratio: ratio}
 			}
@@ -80,6 +72,24 @@ func loudest(blocks []block, h null, least float64) spell {
 		}
 	}
 	return best
+}
+
+// losses remembers what the means of intervals take. Those over equally many blocks mostly have equally many samples.
+type losses struct {
+	h       null
+	samples []float64 // of the last interval over so many blocks
+	loss    []meanLoss
+}
+
+func newLosses(h null, blocks int) *losses {
+	return &losses{h: h, samples: make([]float64, blocks+1), loss: make([]meanLoss, blocks+1)}
+}
+
+func (l *losses) of(blocks int, samples float64) meanLoss {
+	if l.samples[blocks] != samples {
+		l.samples[blocks], l.loss[blocks] = samples, l.h.meanLoss(samples)
+	}
+	return l.loss[blocks]
 }
 
 // compare returns the ratio of two variances, each corrected for the part that its

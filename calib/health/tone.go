@@ -9,6 +9,7 @@ import (
 
 const (
 	toneSegment  = 1 << 18 // samples transformed at a time: 2 MB
+	fewestTone   = 256     // samples
 	toneSide     = 24      // neighbours on each side that give the level
 	toneGap      = 3       // neighbours left out, which the line itself leaks into
 	toneDoubtful = 0.06    // amplitude over rms: adds 0.2 % to the variance
@@ -56,10 +57,11 @@ func (v *view) tone() Check {
 // its neighbours has for K = 1 the tail probability (1 + r/M)^-M, and in general
 // that of a Fisher distribution with 2K and 2KM degrees of freedom.
 func (v *view) findTone() Line {
-	power, n, segments := v.periodogram()
-	if segments == 0 {
+	spectrum := v.spectrum()
+	if spectrum == nil {
 		return Line{}
 	}
+	power, n, segments := spectrum.Power, spectrum.Length, spectrum.Segments
 	var best Line
 	bestRatio := 0.0
 	first := max(toneCycles, toneSide+toneGap+1)
@@ -74,7 +76,7 @@ func (v *view) findTone() Line {
 			bestRatio = r
 			// amplitude of a sinusoid at the centre of the bin: power N^2 A^2/4
 			excess := math.Max(power[k]-level/float64(bins), 0)
-			best = Line{Frequency: float64(k) * v.rate / float64(n), Amplitude: 2 * math.Sqrt(excess) / float64(n)}
+			best = Line{Frequency: float64(k) * v.rate / n, Amplitude: 2 * math.Sqrt(excess) / n}
 		}
 		level += power[k-toneGap] - power[k-toneGap-toneSide]
 		level += power[k+toneGap+toneSide+1] - power[k+toneGap+1]
@@ -98,32 +100,37 @@ func at(x []float64, i int) float64 {
 	return x[i]
 }
 
-// periodogram returns the mean of |X_k|^2 over segments of n samples, the mean line
-// taken off and missing samples as nothing.
-func (v *view) periodogram() (power []float64, n, segments int) {
+// spectrum returns the periodogram that is at hand, or that of segments, the mean line taken off and missing samples as nothing;
+// nil of a record that is too short.
+func (v *view) spectrum() *Spectrum {
 	if g := v.Gathered; g != nil {
-		return g.Power, g.Length, g.Segments
+		if g.Segments == 0 {
+			return nil
+		}
+		return &Spectrum{Power: g.Power, Length: float64(g.Length), Segments: g.Segments}
 	}
-	n = transform.GoodLength(min(v.samples, toneSegment))
-	if n < 256 {
-		return nil, 0, 0
+	n := transform.GoodLength(min(v.samples, toneSegment))
+	if n < fewestTone {
+		return nil
+	}
+	if v.Spectrum != nil {
+		return v.Spectrum
 	}
 	plan, err := transform.NewPlan(n)
 	if err != nil { // n is a good length
-		return nil, 0, 0
+		return nil
 	}
-	segments = v.samples / n
-	power = make([]float64, n/2+1)
+	s := &Spectrum{Power: make([]float64, n/2+1), Length: float64(n), Segments: v.samples / n}
 	part := make([]float64, n)
 	one := make([]float64, n/2+1)
-	for s := range segments {
-		v.levelled(part, s*n)
+	for i := range s.Segments {
+		v.levelled(part, i*n)
 		one = plan.Power(one, part)
 		for k, p := range one {
-			power[k] += p / float64(segments)
+			s.Power[k] += p / float64(s.Segments)
 		}
 	}
-	return power, n, segments
+	return s
 }
 
 // levelled copies samples from one on, minus the fitted line [unit of X].
