@@ -50,6 +50,7 @@ func loudest(blocks []block, h null, least float64) spell {
 	}
 	total := sums[len(blocks)]
 	inside, outside := newLosses(h, len(blocks)), newLosses(h, len(blocks))
+	ordinary := make([]ordinaryRatio, len(blocks)+1) // of intervals of so many blocks
 	var best spell
 	for i := range blocks {
 		for j := i + 1; j <= len(blocks); j++ {
@@ -58,8 +59,12 @@ func loudest(blocks []block, h null, least float64) spell {
 			if in.n < least || out.n < least {
 				continue
 			}
-			z, ratio := compare(in, out, inside.of(j-i, in.n), outside.of(j-i, out.n))
-			if math.Abs(z) > math.Abs(best.z) {
+			a, b := inside.of(j-i, in.n), outside.of(j-i, out.n)
+			ratio := varianceRatio(in, out, a, b)
+			if ordinary[j-i].holds(ratio, a, b, math.Abs(best.z)) {
+				continue
+			}
+			if z := deviate(ratio, a, b); math.Abs(z) > math.Abs(best.z) {
 				best = spell{from: i, to: j, z: z, ratio: ratio}
 			}
 		}
@@ -92,24 +97,52 @@ func (l *losses) of(blocks int, samples float64) meanLoss {
 	return l.loss[blocks]
 }
 
-// compare returns the ratio of two variances, each corrected for the part that its
-// own mean takes, and its significance as a normal deviate.
+// varianceRatio returns the ratio of two variances, each corrected for the part that its own mean takes.
+func varianceRatio(a, b block, lossA, lossB meanLoss) float64 {
+	va, vb := a.variance()/(1-lossA.taken), b.variance()/(1-lossB.taken)
+	if va <= 0 && vb <= 0 {
+		return 1
+	}
+	// A constant stretch has the ratio 0; the floor keeps logarithms finite.
+	return max(va, 1e-12*vb) / max(vb, 1e-12*va)
+}
+
+// deviate returns the significance of a ratio of variances as a normal deviate.
 //
 // The effective degrees of freedom of each come from the second Hermite order, and
 // the cube root of the ratio is taken as normal (Paulson, Ann. Math. Stat. 13
 // (1942) 233).
-func compare(a, b block, lossA, lossB meanLoss) (z, ratio float64) {
-	va, na := a.variance()/(1-lossA.taken), lossA.freedom
-	vb, nb := b.variance()/(1-lossB.taken), lossB.freedom
-	if va <= 0 && vb <= 0 {
-		return 0, 1
-	}
-	// A constant stretch has the ratio 0; the floor keeps logarithms finite.
-	ratio = math.Max(va, 1e-12*vb) / math.Max(vb, 1e-12*va)
+func deviate(ratio float64, lossA, lossB meanLoss) float64 {
 	r := math.Cbrt(ratio)
-	ka, kb := 2/(9*na), 2/(9*nb)
-	z = ((1-kb)*r - (1 - ka)) / math.Sqrt(kb*r*r+ka)
-	return z, ratio
+	ka, kb := 2/(9*lossA.freedom), 2/(9*lossB.freedom)
+	return ((1-kb)*r - (1 - ka)) / math.Sqrt(kb*r*r+ka)
+}
+
+// ordinaryRatio is the range of ratios whose deviate is no larger than a limit.
+type ordinaryRatio struct {
+	a, b             meanLoss
+	limit, low, high float64
+}
+
+// holds tells whether a ratio is surely within; the range is found anew when its limit or the degrees of freedom change.
+func (o *ordinaryRatio) holds(ratio float64, a, b meanLoss, limit float64) bool {
+	if limit == 0 {
+		return false
+	}
+	if o.limit != limit || o.a != a || o.b != b {
+		*o = ordinaryRatio{a: a, b: b, limit: limit, low: math.Inf(1)}
+		// ((1-kb) r - (1-ka))^2 = z^2 (kb r^2 + ka) for r, the cube root of the ratio
+		ka, kb := 2/(9*a.freedom), 2/(9*b.freedom)
+		qa := (1-kb)*(1-kb) - limit*limit*kb
+		qb := (1 - ka) * (1 - kb)
+		qc := (1-ka)*(1-ka) - limit*limit*ka
+		if root := math.Sqrt(qb*qb - qa*qc); qa > 0 && root > 0 {
+			const margin = 1e-9 // of rounding
+			low, high := (qb-root)/qa, (qb+root)/qa
+			o.low, o.high = low*low*low*(1+margin), high*high*high*(1-margin)
+		}
+	}
+	return ratio > o.low && ratio < o.high
 }
 
 // meanLoss is what the mean of a stretch takes: the share of its variance, and the effective

@@ -147,13 +147,20 @@ const (
 func wander(p []point, h null, scale float64) (ratio, pValue, excess float64) {
 	l := fitLine(p)
 	orders := float64(wanderTo - wanderFrom + 1)
-	for j := wanderFrom; j <= wanderTo; j++ {
-		var c, norm float64
-		for _, q := range p {
-			w := math.Cos(math.Pi * float64(j) * (q.t + 0.5))
-			c += q.n * w * (q.y - l.at(q.t))
-			norm += q.n * w * w
+	var cosines, norms [wanderTo + 1]float64
+	for _, q := range p {
+		// cos(j a) of all j, by the recurrence of Chebyshev
+		first := math.Cos(math.Pi * (q.t + 0.5))
+		before, w := 1.0, first
+		y := q.n * (q.y - l.at(q.t))
+		for j := 1; j <= wanderTo; j++ {
+			cosines[j] += w * y
+			norms[j] += q.n * w * w
+			before, w = w, 2*first*w-before
 		}
+	}
+	for j := wanderFrom; j <= wanderTo; j++ {
+		c, norm := cosines[j], norms[j]
 		if norm == 0 {
 			continue
 		}
