@@ -37,12 +37,13 @@ type Record struct {
 	Length  int               // samples behind Power, an even 5-smooth number
 	Ends    []relaxation.Ends // of these samples
 
-	source  []float64   // what PrepareIn was given
-	unit    float64     // its unit [m]
-	steps   [2]straight // taken off the source, in this order
-	waves   []wave      // taken off after that
-	reshape bool        // other shapes were taken off too, so that X cannot be made again
-	square  float64     // mean square of X [m2]
+	source  []float64 // what PrepareIn was given
+	unit    float64   // its unit [m]
+	base    float64   // taken off the source first, so that a level far from zero costs no digits, and
+	rest    straight  // then this
+	waves   []wave    // taken off after that
+	reshape bool      // other shapes were taken off too, so that X cannot be made again
+	square  float64   // mean square of X [m2]
 	blocked []blocked
 
 	restoring sync.Mutex
@@ -82,11 +83,16 @@ func PrepareIn(x []float64, unit, rate float64) (*Record, error) {
 // from the reference, times from the middle of the record.
 type lineSums struct {
 	n, sum, moment, square, product float64
-	far                             int // first sample where no position can be, or -1
+	power                           float64 // sum of the squares of the positions
+	far                             int     // first sample where no position can be, or -1
 }
 
-// fitLine returns the least-squares line of the sums of pieces.
-func fitLine(pieces []lineSums, reference float64) (line straight, observed int) {
+// nearReference is the distance of the mean from the reference, in standard deviations about the mean, up to which sums of
+// positions from the reference are as good as sums about the mean: they lose its square of 1e16 digits.
+const nearReference = 1000
+
+// fitLine returns the least-squares line of the sums of pieces, its level from the reference, and whether they were near enough to their reference.
+func fitLine(pieces []lineSums) (line straight, observed int, near bool) {
 	var all lineSums
 	for _, p := range pieces {
 		all.n += p.n
@@ -94,11 +100,13 @@ func fitLine(pieces []lineSums, reference float64) (line straight, observed int)
 		all.moment += p.moment
 		all.square += p.square
 		all.product += p.product
+		all.power += p.power
 	}
 	mean, centre := all.sum/all.n, all.moment/all.n
 	line.slope = (all.product - all.n*centre*mean) / (all.square - all.n*centre*centre)
-	line.level = reference + mean - line.slope*centre
-	return line, int(all.n)
+	line.level = mean - line.slope*centre
+	near = mean*mean < nearReference*nearReference*(all.power/all.n-mean*mean)
+	return line, int(all.n), near
 }
 
 // add counts one sample: v is the position from the reference, t the time.
@@ -108,10 +116,11 @@ func (s *lineSums) add(v, t float64) {
 	s.moment += t
 	s.square += t * t
 	s.product += t * v
+	s.power += v * v
 }
 
-// removeLine finds the least-squares straight line of the source, in two passes, the
-// second of which takes out what rounding left of a mean far from zero.
+// removeLine finds the least-squares straight line of the source, in a second pass, where the first sample was far from
+// the others, what rounding left.
 func (r *Record) removeLine() error {
 	pieces := make([]lineSums, transform.Pieces(r.Samples))
 	reference, mid := r.firstKnown(), float64(r.Samples-1)/2
@@ -133,23 +142,32 @@ func (r *Record) removeLine() error {
 			return fmt.Errorf("sample %d is at %g m, where no position can be", p.far, r.source[p.far]*r.unit)
 		}
 	}
-	first, observed := fitLine(pieces, reference)
+	first, observed, near := fitLine(pieces)
 	r.Missing = r.Samples - observed
+	if near {
+		r.setLine(reference, first, straight{})
+		return nil
+	}
 	transform.InPieces(r.Samples, func(piece, from, to int) {
 		var s lineSums
 		for i, v := range r.source[from:to] {
 			t := float64(from+i) - mid
-			if v = v*r.unit - (first.level + first.slope*t); v == v {
+			if v = v*r.unit - reference - (first.level + first.slope*t); v == v {
 				s.add(v, t)
 			}
 		}
 		pieces[piece] = s
 	})
-	second, _ := fitLine(pieces, 0)
-	r.steps = [2]straight{first, second}
-	r.Mean = first.level + second.level
-	r.Slope = (first.slope + second.slope) * r.Rate
+	second, _, _ := fitLine(pieces)
+	r.setLine(reference, first, second)
 	return nil
+}
+
+// setLine sets what is taken off the source: two lines about a reference.
+func (r *Record) setLine(reference float64, first, second straight) {
+	r.base, r.rest = reference, straight{level: first.level + second.level, slope: first.slope + second.slope}
+	r.Mean = reference + r.rest.level
+	r.Slope = r.rest.slope * r.Rate
 }
 
 // firstKnown returns the first sample that is not missing.
@@ -205,13 +223,15 @@ func (r *Record) level(x []float64, from int) {
 	mid := float64(r.Samples-1) / 2
 	for i := range x {
 		t := float64(from+i) - mid
-		v := r.source[from+i]*r.unit - (r.steps[0].level + r.steps[0].slope*t)
-		x[i] = v - (r.steps[1].level + r.steps[1].slope*t)
+		x[i] = r.source[from+i]*r.unit - r.base - (r.rest.level + r.rest.slope*t)
 	}
 }
 
-// transform computes Power, and X where it is not there yet. The first transform comes before X and works in
-// its room, so that a long record needs no more.
+// shortRecord is the number of samples up to which room for a second copy counts for nothing.
+const shortRecord = 1 << 20
+
+// transform computes Power, and X where it is not there yet. The first transform of a long record comes before X and works in
+// its room, so that it needs no more.
 func (r *Record) transform() error {
 	n := transform.GoodLength(r.Samples)
 	plan, err := transform.NewPlan(n)
@@ -219,7 +239,10 @@ func (r *Record) transform() error {
 		return err
 	}
 	var room []float64
-	if r.X == nil {
+	switch {
+	case r.X == nil && r.Samples <= shortRecord:
+		r.levelAll(make([]float64, r.Samples))
+	case r.X == nil:
 		room = make([]float64, r.Samples)
 	}
 	r.Power = plan.PowerOf(r.Power, room[:min(n, len(room))], func(x []float64, from int) {
