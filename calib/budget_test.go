@@ -117,7 +117,7 @@ func TestExpandedUncertainty(t *testing.T) {
 	if e == nil || math.Abs(float64(e.Freedom)/want-1) > 0.25 {         // fc is estimated to 4 %, and the wall factor rounded
 		t.Fatalf("expanded = %+v, want about %.0f degrees of freedom", e, want)
 	}
-	if got := float64(e.Uncertainty / a.Stiffness.Combined.Standard); got != float64(e.Factor) || got < 1.96 || got > 2.1 {
+	if got := float64(e.Uncertainty / a.Stiffness.Combined.Standard); math.Abs(got/float64(e.Factor)-1) > 1e-15 || got < 1.96 || got > 2.1 { // a product and a quotient are rounded
 		t.Errorf("expanded over standard uncertainty is %g, coverage factor %g", got, float64(e.Factor))
 	}
 }

@@ -9,6 +9,7 @@ import (
 	"beadwell/calib/msd"
 	"beadwell/calib/relaxation"
 	"beadwell/equipartition"
+	"beadwell/psd"
 )
 
 // hopeless is the Cramer-Rao bound of a logarithm above which a leg is withheld: beyond
@@ -116,7 +117,21 @@ func (w *work) profile(weights relaxation.Parameters, data float64) relaxation.O
 	if data < smallEnough || total == 0 {
 		return relaxation.Normal(data)
 	}
-	return w.fit.Problem.Profile(w.fit.Maximum, weights, total).Scaled(data / total * w.bartlett())
+	for _, known := range w.profiles {
+		if known.fit == w.fit && known.weights == weights {
+			return known.offsets.Scaled(data / total * w.bartlett())
+		}
+	}
+	o := w.fit.Problem.Profile(w.fit.Maximum, weights, total)
+	w.profiles = append(w.profiles, profileOf{w.fit, weights, o})
+	return o.Scaled(data / total * w.bartlett())
+}
+
+// profileOf is a profile that was computed before.
+type profileOf struct {
+	fit     *psd.Fit
+	weights relaxation.Parameters
+	offsets relaxation.Offsets
 }
 
 // bartlettExcess is the mean excess over one of the likelihood-ratio statistic of one

@@ -52,6 +52,7 @@ type work struct {
 	fitErr        error
 	hopeless      error // set when nothing at all can be said of the trap
 	legs          legs
+	profiles      []profileOf
 	pooled        pooled
 	adoptedLeg    int // the leg that was adopted, or combinedLegs
 	poolErr       error

@@ -54,7 +54,7 @@ func TestEstimateProperties(t *testing.T) {
 		near(t, "times 1e9", estimate(t, change(func(_ int, v float64) float64 { return 1e9 * v }), 1000, opt), base, 1e18, rounding)
 		near(t, "upside down", estimate(t, change(func(_ int, v float64) float64 { return -v }), 1000, opt), base, 1, 0)
 		near(t, "far from zero", estimate(t, change(func(_ int, v float64) float64 { return v + 1e6*rms }), 1000, opt), base, 1, 1e-7)
-		near(t, "drifting", estimate(t, change(func(i int, v float64) float64 { return v + rms*float64(i)/float64(n) }), 1000, opt), base, 1, 1e-9)
+		near(t, "drifting", estimate(t, change(func(i int, v float64) float64 { return v + rms*float64(i)/float64(n) }), 1000, opt), base, 1, max(1e-9, rounding))
 		near(t, "backwards", estimate(t, change(func(i int, _ float64) float64 { return x[n-1-i] }), 1000, opt), base, 1, 1e-6)
 
 		faster := estimate(t, x, 4000, psd.Options{Exposure: 1.25e-4}) // the clock runs four times as fast

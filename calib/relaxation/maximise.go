@@ -23,6 +23,8 @@ type Problem struct {
 	// NonNegative keeps the noise at zero or above. Directions must then contain {0, 0, 1}
 	// alone for it.
 	NonNegative bool
+
+	gain float64 // of the log-likelihood at which the search ends; 0: settled
 }
 
 // Maximum is the point of greatest (penalised) likelihood.
@@ -63,13 +65,16 @@ func (pr Problem) Maximise(from Parameters) (Maximum, error) {
 	if math.IsInf(here.value, -1) || math.IsNaN(here.value) {
 		return m, ErrNoMaximum
 	}
-	damping := 0.0
+	damping, enough := 0.0, settled
+	if pr.gain > 0 {
+		enough = pr.gain
+	}
 	for m.Iterations = 1; m.Iterations <= maxIterations; m.Iterations++ {
 		step, gain, err := pr.within(m.At, here.grad).step(here.grad, here.info, damping)
 		if err != nil {
 			return m, ErrNoMaximum
 		}
-		if gain < settled {
+		if gain < enough {
 			m.Converged = true
 			break
 		}

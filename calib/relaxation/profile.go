@@ -39,21 +39,44 @@ func (o Offsets) Widened(sd float64) Offsets {
 // depend on the scale in which the parameter is written, and they hold their
 // coverage for short records (docs/method.md, Eq. 21).
 func (pr Problem) Profile(m Maximum, weights Parameters, sd float64) Offsets {
-	return Offsets{
-		Low68: pr.side(m, weights, sd, -1, 1), High68: pr.side(m, weights, sd, 1, 1),
-		Low95: pr.side(m, weights, sd, -1, z95), High95: pr.side(m, weights, sd, 1, z95),
+	v := valley{problem: pr, top: m, weights: weights}
+	v.problem.gain = profiled
+	if total, _, err := pr.Covariance(m.Information); err == nil {
+		if variance := total.Form(weights, weights); variance > 0 {
+			for k := range v.course {
+				v.course[k] = total.Form(unit(k), weights) / variance
+			}
+		}
 	}
+	return Offsets{Low68: v.side(sd, -1, 1), High68: v.side(sd, 1, 1), Low95: v.side(sd, -1, z95), High95: v.side(sd, 1, z95)}
+}
+
+// profiled is the gain in log-likelihood at which the search of a point of a profile ends: its root is right to as much.
+const profiled = 1e-7
+
+func unit(k int) (u Parameters) {
+	u[k] = 1
+	return u
+}
+
+// valley is a profile: the likelihood at given values of weights . p, greatest over the rest.
+type valley struct {
+	problem Problem
+	top     Maximum
+	weights Parameters
+	// course is by how much the parameters move with weights . p when the likelihood is a parabola; zero: not known.
+	course Parameters
 }
 
 // side searches the distance at which the signed root of the profiled likelihood
 // ratio is z, by secant steps on the root, which is nearly linear in the distance.
-func (pr Problem) side(m Maximum, weights Parameters, sd, sign, z float64) float64 {
-	at := m
+func (v *valley) side(sd, sign, z float64) float64 {
+	at := v.top
 	low, lowRoot := 0.0, 0.0
 	high := math.Inf(1)
 	d := z * sd
 	for range 25 {
-		root, next, ok := pr.root(m, at, weights, sign*d)
+		root, next, ok := v.root(at, sign*d)
 		if ok && math.Abs(root-z) < 2e-3 {
 			return d * z / root
 		}
@@ -86,16 +109,27 @@ func (pr Problem) side(m Maximum, weights Parameters, sd, sign, z float64) float
 
 // root returns the signed root of twice the fall of the log-likelihood at a
 // distance d of weights . p from the maximum, profiled over the rest.
-func (pr Problem) root(m, near Maximum, weights Parameters, d float64) (float64, Maximum, bool) {
-	sub, from, ok := pr.constrained(near.At, weights, weights.dot(m.At)+d)
+func (v *valley) root(near Maximum, d float64) (float64, Maximum, bool) {
+	value := v.weights.dot(v.top.At) + d
+	sub, from, ok := v.problem.constrained(near.At, v.weights, value)
 	if !ok {
 		return 0, near, false
 	}
-	best, err := sub.Maximise(from)
-	if err != nil && math.IsInf(best.Value, 0) || best.Value == 0 && err != nil {
-		return 0, near, false
+	starts := []Parameters{from}
+	if along := near.At; v.course != (Parameters{}) {
+		for k := range along {
+			along[k] += (value - v.weights.dot(near.At)) * v.course[k]
+		}
+		if along[2] >= 0 || !v.problem.NonNegative {
+			starts = []Parameters{along, from}
+		}
 	}
-	return math.Sqrt(math.Max(0, 2*(m.Value-best.Value))), best, true
+	for _, start := range starts {
+		if best, err := sub.Maximise(start); !(err != nil && (math.IsInf(best.Value, 0) || best.Value == 0)) {
+			return math.Sqrt(math.Max(0, 2*(v.top.Value-best.Value))), best, true
+		}
+	}
+	return 0, near, false
 }
 
 // constrained returns the problem within weights . p = value and a point there.
@@ -116,7 +150,7 @@ func (pr Problem) constrained(near, weights Parameters, value float64) (Problem,
 	for k := range from {
 		from[k] += t * u[along][k]
 	}
-	sub := Problem{Likelihood: pr.Likelihood, Priors: pr.Priors, Directions: []Parameters{}, NonNegative: pr.NonNegative}
+	sub := Problem{Likelihood: pr.Likelihood, Priors: pr.Priors, Directions: []Parameters{}, NonNegative: pr.NonNegative, gain: pr.gain}
 	for i := range u {
 		if i == along {
 			continue

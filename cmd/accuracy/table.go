@@ -130,20 +130,21 @@ func percent(bound float64) string {
 }
 
 func naiveTable(w io.Writer, outcomes []*Outcome) {
-	fmt.Fprint(w, `## A script of one's own on the same recordings
+	fmt.Fprintf(w, `## A script of one's own on the same recordings
 
+On the first %d recordings of each cell.
 Unweighted plain Lorentzian on a spectrum averaged over 16 segments; kT over the raw variance with the error of independent
-samples; unweighted fit of the MSD with independent errors. Error in % of the stiffness, and coverage of the 95 % interval in %.
+samples; unweighted fit of the MSD with independent errors. Error in %% of the stiffness, and coverage of the 95 %% interval in %%.
 
 | fc/fs | T fc | exposure | noise | Lorentzian | covers | variance | covers | MSD | covers |
 |---|---|---|---|---|---|---|---|---|---|
-`)
+`, naiveRuns)
 	for _, o := range outcomes {
 		if o.Cell.Drawn || o.Cell.Gaps > 0 {
 			continue
 		}
 		fmt.Fprint(w, o.Cell.columns())
-		for _, name := range []string{naiveLorentzian, naiveRaw, naiveDisplacements} {
+		for _, name := range naiveNames {
 			t := o.tally(name)
 			if t.Count < 2 {
 				fmt.Fprint(w, " | |")

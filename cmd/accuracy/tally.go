@@ -89,6 +89,8 @@ const (
 	naiveLorentzian    = "naive Lorentzian"
 	naiveRaw           = "naive variance"
 	naiveDisplacements = "naive MSD"
+
+	naiveRuns = 200 // recordings of a cell that a script is tried on: what it misses shows in fewer
 )
 
 // study adds recordings of a cell to its outcome until there are as many as asked for.
@@ -97,7 +99,7 @@ const (
 func (o *Outcome) study(ctx context.Context, runs int) {
 	c := o.Cell
 	trials := make([]trial, max(0, runs-o.Runs))
-	each(len(trials), func(i int) { trials[i] = c.try(ctx, c.seed(o.Runs+i)) })
+	each(len(trials), func(i int) { trials[i] = c.try(ctx, c.seed(o.Runs+i), o.Runs+i < naiveRuns) })
 	if ctx.Err() != nil {
 		return
 	}
@@ -136,27 +138,29 @@ func each(runs int, f func(i int)) {
 	group.Wait()
 }
 
+var naiveNames = []string{naiveLorentzian, naiveRaw, naiveDisplacements}
+
 // trial is the outcome of one recording.
 type trial struct {
 	result *calib.Result
 	truth  float64
-	naive  [3]naive
+	naive  []naive // nil where no script was tried
 	err    error
 }
 
-func (c Cell) try(ctx context.Context, seed uint64) trial {
+func (c Cell) try(ctx context.Context, seed uint64, compare bool) trial {
 	r, w, rec, err := c.calibrate(ctx, seed)
 	if err != nil {
 		return trial{err: err}
 	}
 	t := trial{result: slim(r), truth: w.kappa}
-	if c.Gaps == 0 {
+	if compare && c.Gaps == 0 {
 		x := rec.Axes[0].Values
 		for i := range x {
 			x[i] *= statedPixel
 		}
 		gamma, kT := float64(r.Axes[0].Drag.Value), float64(r.Medium.ThermalEnergy.Value)
-		t.naive = [3]naive{naiveSpectrum(x, rec.Rate, gamma), naiveVariance(x, kT), naiveDisplacement(x, kT)}
+		t.naive = []naive{naiveSpectrum(x, rec.Rate, gamma), naiveVariance(x, kT), naiveDisplacement(x, kT)}
 	}
 	return t
 }
@@ -185,8 +189,8 @@ func (o *Outcome) score(t trial) {
 		o.tally(e.Leg).add(e.Stiffness, truth)
 	}
 	o.tally(adopted).add(a.Adopted.Stiffness, truth)
-	for i, name := range []string{naiveLorentzian, naiveRaw, naiveDisplacements} {
-		o.tally(name).addNaive(t.naive[i], truth)
+	for i, n := range t.naive {
+		o.tally(naiveNames[i]).addNaive(n, truth)
 	}
 	count := func(p calib.Float, n *int) {
 		if float64(p) < 0.05 {
