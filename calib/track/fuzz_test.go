@@ -7,6 +7,7 @@ import (
 	"os"
 	"path/filepath"
 	"strconv"
+	"strings"
 	"testing"
 
 	"beadwell/calib/bound"
@@ -85,6 +86,21 @@ func FuzzNumber(f *testing.F) {
 			want, err := strconv.ParseFloat(string(b[:next]), 64)
 			if err != nil || math.Float64bits(v) != math.Float64bits(want) {
 				t.Fatalf("%q reads as %v, ParseFloat(%q) says %v, %v", s, v, b[:next], want, err)
+			}
+		}
+		for decimals := range mostDecimals + 1 { // and a column that expects so many decimals
+			p := &parser{lay: &layout{delimiter: ';', mark: '.', fields: []field{{kind: numberField}}}}
+			p.setColumns([][]float64{{0}})
+			first := padded(strconv.FormatFloat(1.5, 'f', decimals, 64))
+			if _, ok := p.fastRow(first, 0, 0); !ok || !p.columns[0].expects {
+				t.Fatalf("nothing is expected after %q", first)
+			}
+			next, ok := p.fastRow(b, 0, 0)
+			if text := strings.TrimSuffix(string(b[:max(next-1, 0)]), "\r"); ok && text != "" && text[0] != '"' && text[0]|0x20 != 'n' {
+				want, err := strconv.ParseFloat(text, 64)
+				if got := p.out[0][0]; err != nil || math.Float64bits(got) != math.Float64bits(want) {
+					t.Fatalf("after %d decimals %q reads as %v, ParseFloat says %v, %v", decimals, text, got, want, err)
+				}
 			}
 		}
 		v, err := generalNumber(s, '.', 0, 0)

@@ -33,19 +33,19 @@ type field struct {
 
 // parser turns blocks into rows. Each worker has its own.
 type parser struct {
-	lay    *layout
-	name   string
-	beads  *beadIndex
-	out    [][]float64
-	fast   [][]float64 // the same by field
-	cells  []cell      // room for the fields of a row
-	bad    []badLine
-	total  int   // bad lines, with those that are not in bad
-	skip   []int // rows that hold no sample
-	again  []int // rows that repeat the header
-	blank  []int // rows that are blank
-	recent string
-	recall float64
+	lay     *layout
+	name    string
+	beads   *beadIndex
+	out     [][]float64
+	columns []column
+	cells   []cell // room for the fields of a row
+	bad     []badLine
+	total   int   // bad lines, with those that are not in bad
+	skip    []int // rows that hold no sample
+	again   []int // rows that repeat the header
+	blank   []int // rows that are blank
+	recent  string
+	recall  float64
 }
 
 // badLine is a line of the data that is no sample.
@@ -156,19 +156,6 @@ func (p *parser) run(in *feed) {
 	}
 }
 
-// setColumns takes the columns to write to.
-func (p *parser) setColumns(columns [][]float64) {
-	p.out, p.fast = columns, p.fast[:0]
-	for k := range p.lay.fields {
-		f := &p.lay.fields[k]
-		if f.kind == skipField {
-			p.fast = append(p.fast, nil)
-		} else {
-			p.fast = append(p.fast, columns[f.out])
-		}
-	}
-}
-
 // block parses the lines of b into the rows that belong to it.
 func (p *parser) block(b block) {
 	data := b.data[: len(b.data)+pad : len(b.data)+pad]
@@ -185,70 +172,6 @@ func (p *parser) block(b block) {
 		}
 		at = next
 	}
-}
-
-// fastRow parses a row of plain numbers and reports false for any other. It
-// allocates nothing and knows nothing of quotes, comments and other dialects.
-func (p *parser) fastRow(b []byte, i, row int) (next int, ok bool) {
-	lay := p.lay
-	delimiter, mark, blanks := lay.delimiter, lay.mark, lay.padded
-	fields := lay.fields
-	last := len(fields) - 1
-	for k := range fields {
-		f := &fields[k]
-		if blanks {
-			i = skipBlanks(b, i, delimiter)
-		}
-		switch f.kind {
-		case numberField, timesField:
-			v, after, ok := plainNumber(b, i, mark, f.shift)
-			if !ok {
-				if v, after, ok = p.rareNumber(b, i, f.shift); !ok {
-					return 0, false
-				}
-			}
-			if f.kind == timesField {
-				v *= f.times
-			}
-			p.fast[k][row] = v
-			i = after
-		case skipField:
-			for b[i] != delimiter && b[i] != '\n' {
-				if b[i] == '"' || b[i] == '\r' {
-					break
-				}
-				i++
-			}
-		default:
-			return 0, false
-		}
-		if k == last {
-			break
-		}
-		if blanks {
-			if delimiter == ' ' {
-				if b[i] != ' ' && b[i] != '\t' {
-					return 0, false
-				}
-				continue
-			}
-			i = skipBlanks(b, i, delimiter)
-		}
-		if b[i] != delimiter {
-			return 0, false
-		}
-		i++
-	}
-	if blanks {
-		i = skipBlanks(b, i, delimiter)
-	}
-	if lay.trailing && b[i] == delimiter {
-		i++
-	}
-	if b[i] == '\r' {
-		i++
-	}
-	return i + 1, b[i] == '\n'
 }
 
 // skipBlanks steps over spaces, and over tabs where they do not delimit.
