@@ -24,6 +24,15 @@ type block struct {
 	cut  bool
 }
 
+// buffer is the memory of a block.
+type buffer struct {
+	room   []byte
+	passed int64 // what tally.wait waits for before the bytes may change
+}
+
+// bufferPool keeps buffers from one recording to the next.
+var bufferPool = sync.Pool{New: func() any { return &buffer{room: make([]byte, blockSize+pad+1)} }}
+
 // feed hands out the lines of the data in order. Workers call next in turn; the
 // rows of each block are reserved in the store while the lock is held, so that
 // every worker writes straight to its final place.
@@ -31,6 +40,7 @@ type feed struct {
 	ctx    context.Context
 	name   string
 	reader io.Reader
+	whole  *tally // where the bytes come from
 	store  *store
 
 	delimiter byte // of the cells
@@ -48,10 +58,10 @@ type feed struct {
 	err   error
 }
 
-// next fills buf, which it may replace by a longer one, with the next lines.
+// next fills buf, the room of which it may replace by a longer one, with the next lines.
 // While the caller works on the block it holds the store for reading and must
 // call store.release. The error is io.EOF when no lines are left.
-func (f *feed) next(buf []byte) (block, []byte, error) {
+func (f *feed) next(buf *buffer) (block, error) {
 	f.mu.Lock()
 	defer f.mu.Unlock()
 	if f.err == nil {
@@ -61,15 +71,16 @@ func (f *feed) next(buf []byte) (block, []byte, error) {
 		f.err = io.EOF
 	}
 	if f.err != nil {
-		return block{}, buf, f.err
+		return block{}, f.err
 	}
-	data, buf, cut, err := f.fill(buf)
+	data, room, cut, err := f.fill(buf.room)
+	buf.room, buf.passed = room, f.whole.passed
 	if err == nil && len(data) == 0 {
 		err = io.EOF
 	}
 	if err != nil {
 		f.err = err
-		return block{}, buf, err
+		return block{}, err
 	}
 	lines := bytes.Count(data, []byte{'\n'})
 	if f.full != nil && f.row+lines > f.store.limit {
@@ -78,14 +89,14 @@ func (f *feed) next(buf []byte) (block, []byte, error) {
 		f.base, f.row = f.base+f.row, 0
 		f.store.lock.Unlock()
 		if f.err != nil {
-			return block{}, buf, f.err
+			return block{}, f.err
 		}
 	}
 	b := block{data: data, line: f.line, row: f.row, cut: cut}
 	f.line += lines
 	f.row += lines
 	f.store.reserve(f.row)
-	return b, buf, nil
+	return b, nil
 }
 
 // fill reads up to blockSize bytes (more only for a long line) and returns them
@@ -145,10 +156,17 @@ func tooLong(name string, line int) *Error {
 // where that is wrong, the row is refused, and not misread.
 func (f *feed) endLines(b []byte, final bool) {
 	returns := bytes.Count(b, []byte{'\r'})
-	if returns > 0 && (f.returns || returns != bytes.Count(b, []byte{'\n'})) && endLines(b, final) {
+	if returns == 0 || !f.returns && returns == bytes.Count(b, []byte{'\n'}) {
+		return
+	}
+	f.settle()
+	if endLines(b, final) {
 		f.returns = true
 	}
 }
+
+// settle waits until the hash has done with all that was read, so that it may change.
+func (f *feed) settle() { f.whole.wait(f.whole.passed) }
 
 // quoteLines is the number of lines over which a quoted cell may run on.
 const quoteLines = 10
@@ -207,6 +225,7 @@ func (f *feed) finish(buf []byte, have int) (data []byte, cut bool, err error) {
 		have--
 	}
 	if have > 0 && buf[have-1] != '\n' {
+		f.settle() // there may be padding
 		buf[have] = '\n'
 		have++
 		cut = true

@@ -130,12 +130,13 @@ func read(ctx context.Context, r io.Reader, opt Options, size int64) ([]*Recordi
 }
 
 // readContent looks at the first bytes and reads text or an array.
-func readContent(ctx context.Context, r io.Reader, opt Options, size int64) ([]*Recording, error) {
+func readContent(ctx context.Context, r *tally, opt Options, size int64) ([]*Recording, error) {
 	content, compression, end, err := decompressed(opt.Name, r)
 	if err != nil {
 		return nil, err
 	}
 	defer end()
+	r.direct = compression == ""
 	content = &limited{content, opt.MaxBytes, opt.Name, opt.MaxBytes}
 	start := make([]byte, 8)
 	n, err := io.ReadFull(content, start)
@@ -150,7 +151,7 @@ func readContent(ctx context.Context, r io.Reader, opt Options, size int64) ([]*
 	if bytes.HasPrefix(start[:n], []byte(npyMagic)) {
 		tab, err = readArray(ctx, content, opt)
 	} else {
-		tab, err = readText(ctx, content, opt, size)
+		tab, err = readText(ctx, content, r, opt, size)
 	}
 	if err != nil {
 		return nil, err

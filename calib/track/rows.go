@@ -2,7 +2,6 @@ package track
 
 import (
 	"bytes"
-	"context"
 	"errors"
 	"io"
 	"math"
@@ -73,7 +72,7 @@ type parsed struct {
 
 // parseRows reads all rows with the given number of workers. The result does
 // not depend on that number. Where the feed's store has a limit, full is called with the rows before it is emptied.
-func parseRows(ctx context.Context, in *feed, lay *layout, beads *beadIndex, workers int, full func(*parsed) error) (*parsed, error) {
+func parseRows(in *feed, lay *layout, beads *beadIndex, workers int, full func(*parsed) error) (*parsed, error) {
 	parsers := make([]*parser, workers)
 	if full != nil {
 		in.full = func() error { return full(collect(in, parsers)) }
@@ -89,7 +88,7 @@ func parseRows(ctx context.Context, in *feed, lay *layout, beads *beadIndex, wor
 	if in.err != nil && !errors.Is(in.err, io.EOF) {
 		return nil, in.err
 	}
-	return collect(in, parsers), ctx.Err()
+	return collect(in, parsers), in.ctx.Err()
 }
 
 // collect puts together what the parsers found since it was last called.
@@ -141,18 +140,29 @@ func (a *parsed) lineOf(row int) int {
 	return row
 }
 
-// run parses blocks until the feed ends.
+// run parses blocks until the feed ends. While the hash is still at the last buffers
+// it goes on with another one.
 func (p *parser) run(in *feed) {
-	buf := make([]byte, blockSize+pad+1)
-	for {
-		b, room, err := in.next(buf)
-		buf = room
+	var buffers [4]*buffer
+	for i := range buffers {
+		buffers[i] = bufferPool.Get().(*buffer)
+	}
+	for i := 0; ; i = (i + 1) % len(buffers) {
+		in.whole.wait(buffers[i].passed)
+		b, err := in.next(buffers[i])
 		if err != nil {
-			return
+			break
 		}
 		p.setColumns(in.store.columns)
 		p.block(b)
 		in.store.release()
+	}
+	for _, b := range buffers {
+		in.whole.wait(b.passed)
+		b.passed = 0
+		if len(b.room) <= 2*blockSize {
+			bufferPool.Put(b)
+		}
 	}
 }
 

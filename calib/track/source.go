@@ -11,53 +11,95 @@ import (
 	"fmt"
 	"hash"
 	"io"
+	"sync"
 
 	"github.com/klauspost/compress/gzip"
 	"github.com/klauspost/compress/zstd"
 )
 
 // tally counts and hashes the bytes of a file as they pass. The hash runs
-// beside the parsing: buffers go to it over a channel and come back.
+// beside the parsing, over the buffers of the reader where these stay as they are until
+// wait returns, otherwise over copies of them.
 type tally struct {
 	reader io.Reader
 	size   int64
-	work   chan []byte
+	direct bool  // what is read from here comes to the reader as it is
+	stays  bool  // the reader leaves what it read untouched until wait returns
+	passed int64 // buffers given to the hash
+	work   chan passed
 	free   chan []byte
 	done   chan struct{}
 	sum    hash.Hash
+
+	lock   sync.Mutex
+	behind sync.Cond
+	hashed int64 // buffers
+}
+
+// passed is a buffer on its way to the hash.
+type passed struct {
+	data   []byte
+	copied bool
 }
 
 // newTally starts the hash unless none is wanted.
 func newTally(r io.Reader, hashed bool) *tally {
 	t := &tally{reader: r}
 	if hashed {
-		t.work, t.free, t.done = make(chan []byte, 4), make(chan []byte, 8), make(chan struct{})
+		t.work, t.free, t.done = make(chan passed, 4), make(chan []byte, 8), make(chan struct{})
 		t.sum = sha256.New()
-		go func() {
-			defer close(t.done)
-			for b := range t.work {
-				t.sum.Write(b)
-				select {
-				case t.free <- b:
-				default:
-				}
-			}
-		}()
+		t.behind.L = &t.lock
+		go t.hash()
 	}
 	return t
 }
 
-// Read passes bytes on and hands a copy to the hash.
+// hash takes the buffers as they come.
+func (t *tally) hash() {
+	defer close(t.done)
+	for b := range t.work {
+		t.sum.Write(b.data)
+		if b.copied {
+			select {
+			case t.free <- b.data:
+			default:
+			}
+		}
+		t.lock.Lock()
+		t.hashed++
+		t.lock.Unlock()
+		t.behind.Broadcast()
+	}
+}
+
+// wait returns when the first n buffers are hashed.
+func (t *tally) wait(n int64) {
+	if t == nil || t.sum == nil || n == 0 {
+		return
+	}
+	t.lock.Lock()
+	for t.hashed < n {
+		t.behind.Wait()
+	}
+	t.lock.Unlock()
+}
+
+// Read passes bytes on and hands them to the hash.
 func (t *tally) Read(p []byte) (int, error) {
 	n, err := t.reader.Read(p)
 	t.size += int64(n)
 	if n > 0 && t.sum != nil {
-		var b []byte
-		select {
-		case b = <-t.free:
-		default:
+		b := passed{data: p[:n]}
+		if !t.stays {
+			var room []byte
+			select {
+			case room = <-t.free:
+			default:
+			}
+			b = passed{append(room[:0], p[:n]...), true}
 		}
-		t.work <- append(b[:0], p[:n]...)
+		t.passed++
+		t.work <- b
 	}
 	return n, err
 }
@@ -65,6 +107,7 @@ func (t *tally) Read(p []byte) (int, error) {
 // drain reads what a decompressor left behind, so that size and hash are those
 // of the whole file.
 func (t *tally) drain(ctx context.Context) error {
+	t.stays = false
 	buf := make([]byte, 64<<10)
 	for {
 		if err := ctx.Err(); err != nil {
@@ -91,24 +134,26 @@ func (t *tally) finish() string {
 // decompressed returns the content of r, whatever its compression, and the name
 // of that. It looks at the first bytes, never at the name.
 func decompressed(name string, r io.Reader) (content io.Reader, compression string, end func(), err error) {
-	buffered := bufio.NewReaderSize(r, blockSize)
-	start, err := buffered.Peek(6)
-	if err != nil && err != io.EOF {
+	start := make([]byte, 6)
+	n, err := io.ReadFull(r, start)
+	if err != nil && err != io.EOF && !errors.Is(err, io.ErrUnexpectedEOF) {
 		return nil, "", nil, err
 	}
+	start = start[:n]
+	content = io.MultiReader(bytes.NewReader(start), r)
 	nothing := func() {}
 	damaged := func(err error) error {
 		return &Error{File: name, Code: CodeFormat, What: "the compressed data are damaged: " + err.Error(), Remedy: "compress the file again, or give it uncompressed"}
 	}
 	switch {
 	case bytes.HasPrefix(start, []byte{0x1f, 0x8b}):
-		z, err := gzip.NewReader(buffered)
+		z, err := gzip.NewReader(bufio.NewReaderSize(content, blockSize))
 		if err != nil {
 			return nil, "", nil, damaged(err)
 		}
 		return &unpacked{z, name}, "gzip", nothing, nil
 	case bytes.HasPrefix(start, []byte{0x28, 0xb5, 0x2f, 0xfd}):
-		z, err := zstd.NewReader(buffered, zstd.WithDecoderConcurrency(1), zstd.WithDecoderMaxMemory(256<<20))
+		z, err := zstd.NewReader(bufio.NewReaderSize(content, blockSize), zstd.WithDecoderConcurrency(1), zstd.WithDecoderMaxMemory(256<<20))
 		if err != nil {
 			return nil, "", nil, damaged(err)
 		}
@@ -118,7 +163,7 @@ func decompressed(name string, r io.Reader) (content io.Reader, compression stri
 			return nil, "", nil, &Error{File: name, Code: CodeFormat, What: "a bzip2 archive", Remedy: "unpack it first, or use gzip or zstd"}
 		}
 	}
-	return buffered, "", nothing, nil
+	return content, "", nothing, nil
 }
 
 // unpacked names the errors of a decompressor.

@@ -16,31 +16,35 @@ const (
 	footerLimit = 40   // lines of text behind the data
 )
 
-// readText reads a text: first the layout from a sample, then the rows.
-func readText(ctx context.Context, r io.Reader, opt Options, size int64) (*table, error) {
+// readText reads a text: first the layout from a sample, then the rows. whole is the
+// file from which it comes.
+func readText(ctx context.Context, r io.Reader, whole *tally, opt Options, size int64) (*table, error) {
 	text, encoding, err := transcode(opt.Name, r)
 	if err != nil {
 		return nil, err
 	}
 	head := make([]byte, sampleSize)
 	n, err := io.ReadFull(text, head)
-	whole := errors.Is(err, io.EOF) || errors.Is(err, io.ErrUnexpectedEOF)
-	if err != nil && !whole {
+	complete := errors.Is(err, io.EOF) || errors.Is(err, io.ErrUnexpectedEOF)
+	if err != nil && !complete {
 		return nil, err
 	}
 	head = head[:n]
 	if err := checkBinary(opt.Name, head); err != nil {
 		return nil, err
 	}
-	lay := &layout{encoding: encoding, returns: endLines(head, whole), legacy: isLegacy(head, whole)}
+	lay := &layout{encoding: encoding, returns: endLines(head, complete), legacy: isLegacy(head, complete)}
 	if lay.legacy {
 		lay.encoding = "Windows-1252"
 	}
-	p, err := lay.find(opt, head, whole)
+	p, err := lay.find(opt, head, complete)
 	if err != nil {
 		return nil, err
 	}
-	return lay.readRows(ctx, p, io.MultiReader(bytes.NewReader(head[lay.start:]), text), opt, size)
+	whole.stays = whole.direct && encoding == "UTF-8" // the blocks are read in place
+	in := &feed{ctx: ctx, name: opt.Name, reader: io.MultiReader(bytes.NewReader(head[lay.start:]), text), whole: whole,
+		line: lay.firstLine, delimiter: lay.delimiter, returns: lay.returns}
+	return lay.readRows(in, p, opt, size)
 }
 
 // find settles the layout from the sample.
@@ -145,10 +149,9 @@ func (lay *layout) commaColumn(v *view, sample []byte, opt Options) *view {
 }
 
 // readRows parses all rows and judges the lines that are none.
-func (lay *layout) readRows(ctx context.Context, p *plan, text io.Reader, opt Options, size int64) (*table, error) {
+func (lay *layout) readRows(in *feed, p *plan, opt Options, size int64) (*table, error) {
 	expected := int(float64(size)/max(lay.lineBytes, 1)*1.02) + 4096
 	beads := &beadIndex{}
-	in := &feed{ctx: ctx, name: opt.Name, reader: text, line: lay.firstLine, delimiter: lay.delimiter, returns: lay.returns}
 	var parts *partReader
 	var full func(*parsed) error
 	if limit := p.mostRows(opt); limit > 0 {
@@ -162,7 +165,7 @@ func (lay *layout) readRows(ctx context.Context, p *plan, text io.Reader, opt Op
 	} else {
 		in.store = newStore(lay.kept, expected)
 	}
-	rows, err := parseRows(ctx, in, lay, beads, opt.Workers, full)
+	rows, err := parseRows(in, lay, beads, opt.Workers, full)
 	if err != nil {
 		return nil, err
 	}
