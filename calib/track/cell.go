@@ -42,7 +42,7 @@ func trimCell(s string) string {
 
 // isMissing tells whether a trimmed cell stands for a missing sample.
 func isMissing(s string) bool {
-	if len(s) > 12 {
+	if len(s) > 12 || s != "" && s[0]-'0' <= 9 {
 		return false
 	}
 	return missingWords[s] || missingWords[strings.ToLower(s)]

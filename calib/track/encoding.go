@@ -2,6 +2,7 @@ package track
 
 import (
 	"bytes"
+	"encoding/binary"
 	"io"
 	"unicode/utf8"
 
@@ -96,19 +97,24 @@ func transcode(name string, r io.Reader) (text io.Reader, encoding string, err e
 // padding at its end.
 func checkBinary(name string, sample []byte) error {
 	text := bytes.TrimRight(sample, "\x00\x1a")
-	line := 1
-	for i, c := range text {
-		switch {
-		case c == '\n':
-			line++
-		case c < 0x20 && c != '\t' && c != '\r' && c != '\f' && c != '\v' && c != 0x1a && c != 0x1b:
-			if c == 0 && len(bytes.Trim(text[i:], "\x00\x1a\r\n ")) == 0 {
-				return nil
-			}
-			at := bytes.LastIndexByte(text[:i], '\n')
-			return &Error{File: name, Line: line, Column: i - at, Code: CodeFormat, What: "this is binary data, a table of text is expected",
-				Remedy: "export the recording as CSV text or as .npy"}
+	for i := 0; i < len(text); i++ {
+		for i+8 <= len(text) && (binary.LittleEndian.Uint64(text[i:])-0x20*ones)&^binary.LittleEndian.Uint64(text[i:])&highs == 0 {
+			i += 8 // none below 0x20
 		}
+		if i == len(text) {
+			break
+		}
+		c := text[i]
+		if c >= 0x20 || c == '\n' || c == '\t' || c == '\r' || c == '\f' || c == '\v' || c == 0x1a || c == 0x1b {
+			continue
+		}
+		if c == 0 && len(bytes.Trim(text[i:], "\x00\x1a\r\n ")) == 0 {
+			return nil
+		}
+		line := 1 + bytes.Count(text[:i], []byte{'\n'})
+		at := bytes.LastIndexByte(text[:i], '\n')
+		return &Error{File: name, Line: line, Column: i - at, Code: CodeFormat, What: "this is binary data, a table of text is expected",
+			Remedy: "export the recording as CSV text or as .npy"}
 	}
 	return nil
 }

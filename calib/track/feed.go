@@ -159,14 +159,11 @@ func (f *feed) endLines(b []byte, final bool) {
 	if returns == 0 || !f.returns && returns == bytes.Count(b, []byte{'\n'}) {
 		return
 	}
-	f.settle()
+	f.whole.settle()
 	if endLines(b, final) {
 		f.returns = true
 	}
 }
-
-// settle waits until the hash has done with all that was read, so that it may change.
-func (f *feed) settle() { f.whole.wait(f.whole.passed) }
 
 // quoteLines is the number of lines over which a quoted cell may run on.
 const quoteLines = 10
@@ -225,7 +222,7 @@ func (f *feed) finish(buf []byte, have int) (data []byte, cut bool, err error) {
 		have--
 	}
 	if have > 0 && buf[have-1] != '\n' {
-		f.settle() // there may be padding
+		f.whole.settle() // there may be padding
 		buf[have] = '\n'
 		have++
 		cut = true

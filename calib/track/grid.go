@@ -4,6 +4,7 @@ import (
 	"cmp"
 	"fmt"
 	"math"
+	"slices"
 	"strconv"
 )
 
@@ -48,12 +49,12 @@ const timeRemedy = "repair the stamps, or leave out the time column and state th
 // units of rounding can come from rounding or from lost rows; likely, the rate
 // that is expected [Hz], decides, and without one (0) such stamps are refused.
 func fitGrid(t []float64, written resolution, likely float64) (grid, *gridFault) {
-	for i, v := range t {
-		if v != v {
+	g := fitLine(t, nil)
+	if g.interval != g.interval {
+		if i := slices.IndexFunc(t, math.IsNaN); i >= 0 {
 			return grid{}, &gridFault{i, "the time is missing", "complete the time, or remove the row"}
 		}
 	}
-	g := fitLine(t, nil)
 	if g.interval > 0 && g.fits() {
 		g.samples = len(t)
 		g.rounded = written.step > 0 && g.max <= 0.55*written.step
@@ -128,11 +129,14 @@ func fitLine(t []float64, place []int) grid {
 	g := grid{interval: moments.b / xx, place: place}
 	offset := moments.a/n - g.interval*centre
 	g.start = first + offset
+	interval := g.interval
 	residuals := blockSums(len(t), func(lo, hi int) (s sums) {
 		for i := lo; i < hi; i++ {
-			r := math.Abs(t[i] - first - offset - g.interval*at(i))
+			r := math.Abs(t[i] - first - offset - interval*at(i))
 			s.a += r * r
-			s.max = max(s.max, r)
+			if r > s.max {
+				s.max = r
+			}
 		}
 		return s
 	})

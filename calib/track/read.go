@@ -136,7 +136,7 @@ func readContent(ctx context.Context, r *tally, opt Options, size int64) ([]*Rec
 		return nil, err
 	}
 	defer end()
-	r.direct = compression == ""
+	r.stays = compression == "" // a decompressor has a buffer that it uses again
 	content = &limited{content, opt.MaxBytes, opt.Name, opt.MaxBytes}
 	start := make([]byte, 8)
 	n, err := io.ReadFull(content, start)
@@ -149,6 +149,7 @@ func readContent(ctx context.Context, r *tally, opt Options, size int64) ([]*Rec
 	}
 	var tab *table
 	if bytes.HasPrefix(start[:n], []byte(npyMagic)) {
+		r.stays = false
 		tab, err = readArray(ctx, content, opt)
 	} else {
 		tab, err = readText(ctx, content, r, opt, size)

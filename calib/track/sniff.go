@@ -2,6 +2,7 @@ package track
 
 import (
 	"bytes"
+	"slices"
 	"strings"
 )
 
@@ -323,9 +324,16 @@ func sniff(lay *layout, sample []byte, wanted byte) *view {
 	for limit := 400; ; limit *= 8 {
 		lines := lay.sampleLines(sample, limit)
 		best = nil
+		absent := false
 		for _, d := range delimiters {
 			if wanted != 0 && d.char != wanted {
 				continue
+			}
+			if d.char != ' ' && !slices.ContainsFunc(lines, func(l textLine) bool { return strings.IndexByte(l.text, d.char) >= 0 }) {
+				if absent {
+					continue // it cuts the lines as the other one does
+				}
+				absent = true
 			}
 			v := look(lines, d.char)
 			if best == nil || v.score > best.score || v.score == best.score && v.hasHeader() && !best.hasHeader() {

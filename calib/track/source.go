@@ -23,7 +23,6 @@ import (
 type tally struct {
 	reader io.Reader
 	size   int64
-	direct bool  // what is read from here comes to the reader as it is
 	stays  bool  // the reader leaves what it read untouched until wait returns
 	passed int64 // buffers given to the hash
 	work   chan passed
@@ -74,7 +73,7 @@ func (t *tally) hash() {
 
 // wait returns when the first n buffers are hashed.
 func (t *tally) wait(n int64) {
-	if t == nil || t.sum == nil || n == 0 {
+	if t.sum == nil || n == 0 {
 		return
 	}
 	t.lock.Lock()
@@ -83,6 +82,9 @@ func (t *tally) wait(n int64) {
 	}
 	t.lock.Unlock()
 }
+
+// settle returns when all that was read is hashed, and may be changed.
+func (t *tally) settle() { t.wait(t.passed) }
 
 // Read passes bytes on and hands them to the hash.
 func (t *tally) Read(p []byte) (int, error) {

@@ -8,6 +8,7 @@ import (
 	"io"
 	"math"
 	"strings"
+	"sync"
 )
 
 // Limits of a table.
@@ -16,6 +17,9 @@ const (
 	footerLimit = 40   // lines of text behind the data
 )
 
+// samplePool keeps the memory of samples from one recording to the next.
+var samplePool = sync.Pool{New: func() any { return new([sampleSize]byte) }}
+
 // readText reads a text: first the layout from a sample, then the rows. whole is the
 // file from which it comes.
 func readText(ctx context.Context, r io.Reader, whole *tally, opt Options, size int64) (*table, error) {
@@ -23,7 +27,11 @@ func readText(ctx context.Context, r io.Reader, whole *tally, opt Options, size 
 	if err != nil {
 		return nil, err
 	}
-	head := make([]byte, sampleSize)
+	whole.stays = whole.stays && encoding == "UTF-8" // otherwise a decoder has a buffer that it uses again
+	sample := samplePool.Get().(*[sampleSize]byte)
+	defer samplePool.Put(sample)
+	defer whole.settle()
+	head := sample[:]
 	n, err := io.ReadFull(text, head)
 	complete := errors.Is(err, io.EOF) || errors.Is(err, io.ErrUnexpectedEOF)
 	if err != nil && !complete {
@@ -33,6 +41,9 @@ func readText(ctx context.Context, r io.Reader, whole *tally, opt Options, size 
 	if err := checkBinary(opt.Name, head); err != nil {
 		return nil, err
 	}
+	if bytes.IndexByte(head, '\r') >= 0 {
+		whole.settle()
+	}
 	lay := &layout{encoding: encoding, returns: endLines(head, complete), legacy: isLegacy(head, complete)}
 	if lay.legacy {
 		lay.encoding = "Windows-1252"
@@ -41,7 +52,6 @@ func readText(ctx context.Context, r io.Reader, whole *tally, opt Options, size 
 	if err != nil {
 		return nil, err
 	}
-	whole.stays = whole.direct && encoding == "UTF-8" // the blocks are read in place
 	in := &feed{ctx: ctx, name: opt.Name, reader: io.MultiReader(bytes.NewReader(head[lay.start:]), text), whole: whole,
 		line: lay.firstLine, delimiter: lay.delimiter, returns: lay.returns}
 	return lay.readRows(in, p, opt, size)
