@@ -13,7 +13,6 @@ import (
 	"context"
 	"fmt"
 	"math"
-	"runtime"
 	"slices"
 	"strings"
 	"sync"
@@ -118,7 +117,9 @@ func calibrateAll(ctx context.Context, rec *track.Recording, set *session.Settin
 	for _, w := range works {
 		r.Axes = append(r.Axes, w.axis)
 	}
+	pairs := startPairs(works, opt.Gathered)
 	seen.works, seen.good = works, r.examine(rec, works)
+	sums := pairs()
 	if _, upset := r.event(); !upset { // an event in the recording is the better answer
 		if err := firstHopeless(works); err != nil {
 			return nil, err
@@ -133,7 +134,7 @@ func calibrateAll(ctx context.Context, rec *track.Recording, set *session.Settin
 		return nil, err
 	}
 	r.collectFindings(set, works)
-	r.findAxes(works, opt.Gathered)
+	r.findAxes(works, sums)
 	r.partFindings()
 	return r, nil
 }
@@ -187,11 +188,11 @@ func firstHopeless(works []*work) error {
 // axes is returned.
 func runAll(ctx context.Context, works []*work) error {
 	errs := make([]error, len(works))
-	workers := runtime.GOMAXPROCS(0)
+	workers := len(works) // three axes on two processors end together, when none waits for another
 	if len(works) > 0 && len(works[0].recorded.Values) >= longRecord {
 		workers = 1
 	}
-	limit := make(chan struct{}, workers)
+	limit := make(chan struct{}, max(workers, 1))
 	var group sync.WaitGroup
 	for i, w := range works {
 		group.Go(func() {

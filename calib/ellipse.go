@@ -56,24 +56,18 @@ const (
 	fastBand = 8
 )
 
-// findAxes compares the recorded axes with those of the trap.
-func (r *Result) findAxes(works []*work, gathered *Gatherer) {
-	n := len(works)
-	if n < 2 {
+// findAxes compares the recorded axes with those of the trap, by the sums over their pairs, nil where they cannot be compared.
+func (r *Result) findAxes(works []*work, sums []pairSums) {
+	if sums == nil {
 		return
 	}
-	for _, w := range works {
-		if w.fitErr != nil || w.record.Samples != works[0].record.Samples {
-			return
-		}
-	}
+	n := len(works)
 	t := &TrapAxes{}
 	v := mat.NewSymDense(n, nil)
 	for i, w := range works {
 		t.Names = append(t.Names, w.axisName)
 		v.SetSym(i, i, w.ownVariance())
 	}
-	sums := commonSums(works, gathered)
 	for i := range n {
 		for j := i + 1; j < n; j++ {
 			c, pair := pairOf(works[i], works[j], sums[len(t.Pairs)])

@@ -221,6 +221,14 @@ func chiSquareOffsets(sd float64) relaxation.Offsets {
 	return relaxation.Offsets{Low68: end(0.84134), High68: end(0.15866), Low95: end(0.975), High95: end(0.025)}
 }
 
+// spectrumOfPositions is the periodogram of the record, where it is that of all its samples.
+func (w *work) spectrumOfPositions() *msd.Spectrum {
+	if r := w.record; r.Missing == 0 && r.Parts <= 1 && r.X != nil {
+		return &msd.Spectrum{Power: r.Power, Length: r.Length}
+	}
+	return nil
+}
+
 func (w *work) displacementLegs(p relaxation.Process, total relaxation.Matrix, drawn bool) {
 	l := &w.legs
 	if w.poolErr != nil && w.fitErr != nil {
@@ -232,7 +240,7 @@ func (w *work) displacementLegs(p relaxation.Process, total relaxation.Matrix, d
 	if w.dragModel == FrequencyDependentDrag { // short lags follow the inertia of the liquid
 		first = int(math.Ceil(relaxationsOfInertia / (2 * math.Pi * p.Corner / w.rate)))
 	}
-	m, err := msd.Estimate(msd.Input{FirstLag: first, Detected: w.detected(p), X: w.record.X, Summed: w.summedDisplacements(), Missing: w.record.Missing > 0, Guess: p, Scale: w.fit.Scale(), FitCovariance: total,
+	m, err := msd.Estimate(msd.Input{FirstLag: first, Detected: w.detected(p), X: w.record.X, Known: w.spectrumOfPositions(), Summed: w.summedDisplacements(), Missing: w.record.Missing > 0, Guess: p, Scale: w.fit.Scale(), FitCovariance: total,
 		Noise: msd.Noise{Known: w.noise.Known, Variance: w.noise.Variance, VarianceU: w.noise.VarianceU}})
 	if err != nil {
 		l.reason[displacementLeg], l.reason[timeLeg] = err.Error(), err.Error()

@@ -2,6 +2,7 @@ package calib
 
 import (
 	"math"
+	"sync"
 
 	"beadwell/calib/transform"
 	"beadwell/psd"
@@ -18,7 +19,7 @@ type pairSums struct {
 
 const (
 	// leastSegment is the shortest stretch that is transformed, when the record is as long.
-	leastSegment = 1 << 16
+	leastSegment = 1 << 12
 	// segmentCorners is the least length of a stretch times the corner frequency: what the slow motion leaks into
 	// higher frequencies is about the inverse of it.
 	segmentCorners = 256
@@ -124,6 +125,37 @@ func (s pairSums) fast(missing bool) Quantity {
 		return Withheld("1", "too few frequencies above the corner frequencies")
 	}
 	return around(s.fastXY/math.Sqrt(s.fastXX*s.fastYY), 1/math.Sqrt(2*float64(s.bins)), "1")
+}
+
+// startPairs begins to add up the pairs of the axes of a recording, and returns what waits for the sums: nil where axes cannot be
+// compared. The checks go through each axis at the same time.
+func startPairs(works []*work, gathered *Gatherer) (wait func() []pairSums) {
+	if !comparable(works) {
+		return func() []pairSums { return nil }
+	}
+	var sums []pairSums
+	var failure any // a panic belongs to who waits
+	var group sync.WaitGroup
+	group.Go(func() {
+		defer func() { failure = recover() }()
+		sums = commonSums(works, gathered)
+	})
+	return func() []pairSums {
+		group.Wait()
+		if failure != nil {
+			panic(failure)
+		}
+		return sums
+	}
+}
+
+func comparable(works []*work) bool {
+	for _, w := range works {
+		if w.fitErr != nil || w.record.Samples != works[0].record.Samples {
+			return false
+		}
+	}
+	return len(works) > 1
 }
 
 // commonSums adds up the pairs of the axes of a recording.

@@ -208,8 +208,11 @@ func (r *Record) levelAll(x []float64) {
 
 // Part sets dst to the samples of X from one on, also after Release.
 func (r *Record) Part(dst []float64, from int) {
-	if r.X != nil {
-		copy(dst, r.X[from:])
+	r.restoring.Lock()
+	x := r.X
+	r.restoring.Unlock()
+	if x != nil {
+		copy(dst, x[from:])
 		return
 	}
 	r.level(dst, from)

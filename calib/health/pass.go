@@ -61,12 +61,13 @@ type summary struct {
 	centre, scale float64
 	blocks        []block
 	total         block
-	frozenAt      int // first sample of the longest run of equal values
-	frozen        int // samples in that run
+	low, high     float64 // smallest and largest x
+	frozenAt      int     // first sample of the longest run of equal values
+	frozen        int     // samples in that run
 }
 
 func summarise(x []float64) summary {
-	s := summary{samples: len(x)}
+	s := summary{samples: len(x), low: math.Inf(1), high: math.Inf(-1)}
 	s.centre, s.scale = location(x)
 	s.length = max(1, (len(x)+fineBlocks-1)/fineBlocks)
 	s.blocks = make([]block, 0, (len(x)+s.length-1)/s.length)
@@ -86,6 +87,7 @@ func summarise(x []float64) summary {
 func (s *summary) read(x []float64, from int, previous float64, run int) (block, float64, int) {
 	b := emptyBlock()
 	per := 1 / s.scale
+	low, high := math.Inf(1), math.Inf(-1)
 	for i, v := range x {
 		if v-v != 0 { // NaN or infinite
 			previous, run = v, 0
@@ -113,9 +115,15 @@ func (s *summary) read(x []float64, from int, previous float64, run int) (block,
 			run = 0
 		}
 		previous = y
-		b.low = min(b.low, y)
-		b.high = max(b.high, y)
+		if v < low {
+			low = v
+		}
+		if v > high {
+			high = v
+		}
 	}
+	s.low, s.high = min(s.low, low), max(s.high, high)
+	b.low, b.high = (low-s.centre)*per, (high-s.centre)*per // infinities stay
 	return b, previous, run
 }
 

@@ -32,12 +32,7 @@ func survey(x []float64, s summary) values {
 	}
 	sd := math.Sqrt(s.total.variance()) * s.scale
 	width := railWidth(v.grid, sd)
-	low, high := math.Inf(1), math.Inf(-1)
-	for _, y := range x {
-		if y-y == 0 {
-			low, high = min(low, y), max(high, y)
-		}
-	}
+	low, high := s.low, s.high
 	v.low, v.high = rail{value: low}, rail{value: high}
 	v.comb = newHistogram(s.total.mean()*s.scale+s.centre, sd)
 	nearLow, nearHigh := low+width, high-width

@@ -28,6 +28,7 @@ type Noise struct {
 type Input struct {
 	X       []float64          // positions, mean and drift removed [m]; NaN where missing
 	Missing bool               // whether there are NaNs
+	Known   *Spectrum          // periodogram of X, where it is at hand; nil: it is not
 	Summed  *Summed            // what is known of a record whose samples are not at hand; X is nil then
 	Guess   relaxation.Process // interval and exposure; the rest gives lags, covariance and start
 	Noise   Noise
@@ -85,7 +86,7 @@ func Estimate(in Input) (*Result, error) {
 		lags, values, pairs = in.Summed.from(in.FirstLag)
 	} else {
 		lags = from(Lags(len(in.X), 1/(2*math.Pi*g.Corner*g.Interval)), in.FirstLag)
-		values, pairs = Displacements(in.X, in.Missing, lags)
+		values, pairs = Displacements(in.X, in.Missing, lags, in.Known)
 	}
 	lags, values, pairs = keepFull(lags, values, pairs)
 	if in.Detected != nil {

@@ -194,7 +194,7 @@ func TestEstimateCalibrated(t *testing.T) {
 func withRidge(t *testing.T, in Input, ridge float64) *Result {
 	t.Helper()
 	lags := Lags(len(in.X), 1/(2*math.Pi*in.Guess.Corner*in.Guess.Interval))
-	values, pairs := Displacements(in.X, false, lags)
+	values, pairs := Displacements(in.X, false, lags, nil)
 	f, err := newFitter(in, lags, values, pairs)
 	if err != nil {
 		t.Fatal(err)

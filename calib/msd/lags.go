@@ -46,7 +46,9 @@ func Lags(n int, tau float64) []int {
 
 // Displacements returns the mean-square displacements [m2] of x [m] (mean removed, NaN
 // where missing) at the lags, and the number of pairs behind each.
-func Displacements(x []float64, missing bool, lags []int) (msd []float64, pairs []int) {
+//
+// A spectrum that is at hand saves the transforms; nil takes them.
+func Displacements(x []float64, missing bool, lags []int, known *Spectrum) (msd []float64, pairs []int) {
 	msd, pairs = make([]float64, len(lags)), make([]int, len(lags))
 	if missing {
 		for i, lag := range lags {
@@ -58,7 +60,7 @@ func Displacements(x []float64, missing bool, lags []int) (msd []float64, pairs 
 	// positions: there the sums of products would cancel. All others come from
 	// one set of autocovariance sums.
 	last := lags[len(lags)-1]
-	var products []float64
+	var products func(lag int) float64
 	head := prefixSquares(x, last)
 	tail := suffixSquares(x, last)
 	total := head.total
@@ -69,11 +71,39 @@ func Displacements(x []float64, missing bool, lags []int) (msd []float64, pairs 
 			continue
 		}
 		if products == nil {
-			products = transform.Autocovariance(x, last)
+			products = productsOf(x, last, known)
 		}
-		msd[i] = (2*total - head.at(lag) - tail.at(lag) - 2*products[lag]) / float64(pairs[i])
+		msd[i] = (2*total - head.at(lag) - tail.at(lag) - 2*products(lag)) / float64(pairs[i])
 	}
 	return msd, pairs
+}
+
+// Spectrum is the periodogram |X_k|^2 [m2], k = 0 .. Length/2, of the first Length samples of a record.
+type Spectrum struct {
+	Power  []float64
+	Length int // a good length, even
+}
+
+const (
+	fewestByRing = 40      // lags up to which sums of products are fast anyway
+	mostByRing   = 1 << 18 // samples beyond which a transform of the whole leaves the caches, and takes memory that blocks do not
+)
+
+// productsOf returns the sums of x_j x_{j+k} over j, for lags k up to the last. From a periodogram come the sums around
+// the ring of its samples; what that adds across the seam is taken off, and samples beyond it are added: both are a few products for each lag.
+func productsOf(x []float64, last int, known *Spectrum) func(lag int) float64 {
+	var ring []float64
+	if known != nil && last > fewestByRing && known.Length <= mostByRing {
+		ring = transform.Ring(known.Power, known.Length)
+	}
+	if ring == nil {
+		sums := transform.Autocovariance(x, last)
+		return func(lag int) float64 { return sums[lag] }
+	}
+	n := known.Length
+	return func(lag int) float64 {
+		return ring[lag] - dot(x[n-lag:n], x[:lag]) + dot(x[n-lag:len(x)-lag], x[n:])
+	}
 }
 
 // closeLag is the longest lag that is summed pair by pair.

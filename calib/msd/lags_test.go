@@ -4,6 +4,8 @@ import (
 	"math"
 	"math/rand/v2"
 	"testing"
+
+	"beadwell/calib/transform"
 )
 
 // Lags rise, start at one sample, and end at 60 relaxation times or a quarter of the record.
@@ -60,7 +62,7 @@ func TestDisplacementsAreMeans(t *testing.T) {
 	for _, n := range []int{20, 300, 5000} {
 		x := noise(n, uint64(n))
 		lags := Lags(n, 3)
-		values, pairs := Displacements(x, false, lags)
+		values, pairs := Displacements(x, false, lags, nil)
 		for i, lag := range lags {
 			want, count := bruteMSD(x, lag)
 			if pairs[i] != count || math.Abs(values[i]/want-1) > 1e-12 {
@@ -72,7 +74,7 @@ func TestDisplacementsAreMeans(t *testing.T) {
 				x[i] = math.NaN()
 			}
 		}
-		values, pairs = Displacements(x, true, lags)
+		values, pairs = Displacements(x, true, lags, nil)
 		for i, lag := range lags {
 			want, count := bruteMSD(x, lag)
 			if pairs[i] != count || math.Abs(values[i]/want-1) > 1e-12 {
@@ -92,7 +94,7 @@ func TestShortLagsKeepDigits(t *testing.T) {
 		x[i] = 100*math.Sin(float64(i)/600) + sum
 	}
 	lags := []int{1, 2, 3, 100}
-	values, _ := Displacements(x, false, lags)
+	values, _ := Displacements(x, false, lags, nil)
 	for i, lag := range lags {
 		want, _ := bruteMSD(x, lag)
 		// beyond closeLag: 1e-15 of the mean square over the displacement
@@ -109,11 +111,37 @@ func TestDisplacementsOfLine(t *testing.T) {
 		x[i] = 0.5 * (float64(i) - 249.5)
 	}
 	lags := []int{1, 2, 3, 10, 100}
-	values, _ := Displacements(x, false, lags)
+	values, _ := Displacements(x, false, lags, nil)
 	for i, lag := range lags {
 		want := 0.25 * float64(lag*lag)
 		if math.Abs(values[i]-want) > 1e-11*2500 { // mean square 5000, to 1e-14
 			t.Errorf("MSD(%d) = %.15g, want %.15g", lag, values[i], want)
+		}
+	}
+}
+
+// With the periodogram of all samples, or of all but the last few, the displacements are the same. The sums err by rounding
+// of the sum at lag 0, 2e-13 here; displacements at close lags are smaller than that by up to a hundred.
+func TestDisplacementsFromSpectrum(t *testing.T) {
+	for _, n := range []int{6000, 6007} {
+		x := make([]float64, n)
+		rng := rand.New(rand.NewPCG(3, 1))
+		for i := range x {
+			if i > 0 {
+				x[i] = 0.99*x[i-1] + 0.1*rng.NormFloat64()
+			}
+		}
+		lags := Lags(n, 100)
+		want, _ := Displacements(x, false, lags, nil)
+		plan, err := transform.NewPlan(6000)
+		if err != nil {
+			t.Fatal(err)
+		}
+		got, pairs := Displacements(x, false, lags, &Spectrum{Power: plan.Power(nil, x[:6000]), Length: 6000})
+		for i := range lags {
+			if math.Abs(got[i]/want[i]-1) > 1e-11 || pairs[i] != n-lags[i] {
+				t.Errorf("%d samples, lag %d: %.14g from %d pairs, want %.14g", n, lags[i], got[i], pairs[i], want[i])
+			}
 		}
 	}
 }

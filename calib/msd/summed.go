@@ -16,7 +16,7 @@ type Summed struct {
 
 // Add adds a part x [m] of the record, its mean removed, without missing samples.
 func (s *Summed) Add(x []float64) {
-	values, pairs := Displacements(x, false, s.Lags)
+	values, pairs := Displacements(x, false, s.Lags, nil)
 	one := Summed{Samples: len(x), Pairs: pairs, Squares: values}
 	for i, n := range pairs {
 		one.Squares[i] *= float64(n)

@@ -54,3 +54,17 @@ func PowerAndAutocovariance(x []float64) (power, sums []float64, err error) {
 	}
 	return p.Power(nil, x), Autocovariance(x, len(x)-1), nil
 }
+
+// Ring returns the sums sum_j x_j x_{(j+k) mod n} for k = 0 .. n-1 [unit of x, squared] from |X_k|^2, k = 0 .. n/2, of a series
+// of the even good length n; nil when n is not one or the powers are not as many. The accuracy is that of Autocovariance.
+func Ring(power []float64, n int) []float64 {
+	p, err := NewPlan(n)
+	if err != nil || len(power) != p.half+1 {
+		return nil
+	}
+	spectrum := make([]complex128, len(power))
+	for k, v := range power {
+		spectrum[k] = complex(v, 0)
+	}
+	return p.Inverse(nil, spectrum)
+}
