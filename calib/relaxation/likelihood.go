@@ -1,6 +1,10 @@
 package relaxation
 
-import "math"
+import (
+	"math"
+
+	"gonum.org/v1/gonum/mat"
+)
 
 // Parameters are the free quantities of a fit, in the scaled units in which the
 // likelihood is close to a parabola:
@@ -139,9 +143,12 @@ func (s *Spectral) Score(p Parameters) (float64, Parameters, Matrix) {
 	f[0][1], f[0][2], f[1][2] = f[1][0], f[2][0], f[2][1]
 	if len(s.ends) > 0 {
 		sum += s.opening(sh, v, q)
-		addNumericGradient(&g, p, func(p Parameters) float64 {
+		ends := gradientAlong(p, allDirections, func(p Parameters) float64 {
 			return s.opening(newShape(math.Exp(p[0]), s.exposure), s.scale*math.Exp(p[1]), s.scale*p[2])
 		})
+		for a := range g {
+			g[a] += ends[a]
+		}
 	}
 	return sum, g, f
 }
@@ -150,16 +157,48 @@ func (s *Spectral) Score(p Parameters) (float64, Parameters, Matrix) {
 // difference of a smooth function of order one: the cube root of 1e-16, rounded up.
 const numericStep = 1e-5
 
-func addNumericGradient(g *Parameters, p Parameters, f func(Parameters) float64) {
-	for a := range p {
+// gradientAlong returns the vector in the space of some directions whose products with them are the derivatives along them, by
+// central differences. One that does not exist counts as zero.
+func gradientAlong(p Parameters, directions []Parameters, f func(Parameters) float64) (g Parameters) {
+	slopes := make([]float64, len(directions))
+	orthonormal := true
+	for i, u := range directions {
 		up, down := p, p
-		up[a] += numericStep
-		down[a] -= numericStep
-		d := (f(up) - f(down)) / (2 * numericStep)
-		if !math.IsNaN(d) && !math.IsInf(d, 0) {
-			g[a] += d
+		for a := range p {
+			up[a] += numericStep * u[a]
+			down[a] -= numericStep * u[a]
+		}
+		if d := (f(up) - f(down)) / (2 * numericStep); !math.IsNaN(d) && !math.IsInf(d, 0) {
+			slopes[i] = d
+		}
+		for _, v := range directions[:i] {
+			orthonormal = orthonormal && u.dot(v) == 0
+		}
+		orthonormal = orthonormal && u.dot(u) == 1
+	}
+	if !orthonormal {
+		slopes = inDual(directions, slopes)
+	}
+	for i, u := range directions {
+		for a := range g {
+			g[a] += slopes[i] * u[a]
 		}
 	}
+	return g
+}
+
+// inDual returns the coefficients of directions in the vector whose products with them are given.
+func inDual(directions []Parameters, products []float64) []float64 {
+	gram := mat.NewSymDense(len(directions), nil)
+	for i, u := range directions {
+		for j := range i + 1 {
+			gram.SetSym(j, i, u.dot(directions[j]))
+		}
+	}
+	var c mat.VecDense
+	// it does not fail: the directions of a search are independent
+	_ = c.SolveVec(gram, mat.NewVecDense(len(products), products))
+	return c.RawVector().Data
 }
 
 // amplitude returns the best variance for a spectrum of given corner frequency and noise

@@ -236,3 +236,23 @@ func ExampleProblem() {
 	fmt.Println(err, m.Converged)
 	// Output: <nil> true
 }
+
+// The gradient within directions has the derivatives of a quadratic along them, and no part outside.
+func TestGradientAlong(t *testing.T) {
+	f := func(p Parameters) float64 { return 3*p[0] - 2*p[1]*p[1] + p[0]*p[2] }
+	p := Parameters{0.3, -0.7, 0.2}
+	full := Parameters{3 + p[2], -4 * p[1], p[0]}
+	for _, directions := range [][]Parameters{allDirections, {{1, 0, 0}, {0, 0, 1}}, {{1, -1, 0}}, {{1, -1, 0}, {0, 0.5, 1}}, {}} {
+		g := gradientAlong(p, directions, f)
+		for _, u := range directions {
+			if math.Abs(g.dot(u)-full.dot(u)) > 1e-9 { // rounding over the step, 1e-16/1e-5
+				t.Errorf("along %v of %v: %g, want %g", u, directions, g.dot(u), full.dot(u))
+			}
+		}
+		if len(directions) == 1 {
+			if across := g.dot(Parameters{1, 1, 0}); math.Abs(across) > 1e-9 {
+				t.Errorf("across %v: %g, want 0", directions, across)
+			}
+		}
+	}
+}

@@ -116,8 +116,10 @@ func (pr Problem) within(at, grad Parameters) Problem {
 	return inner
 }
 
-// numeric marks a likelihood whose score takes several times as long as its value.
-type numeric interface{ Numeric() }
+// numeric is a likelihood whose score takes several times as long as its value, and longer for each direction.
+type numeric interface {
+	ScoreAlong(Parameters, []Parameters) (float64, Parameters, Matrix)
+}
 
 // climb halves the step until the value rises; steps are bounded to one e-fold in
 // the logarithms first. It returns the point and the score there.
@@ -168,7 +170,11 @@ type scored struct {
 
 func (pr Problem) score(p Parameters) scored {
 	var s scored
-	s.value, s.grad, s.data = pr.Likelihood.Score(p)
+	if l, ok := pr.Likelihood.(numeric); ok {
+		s.value, s.grad, s.data = l.ScoreAlong(p, pr.directions())
+	} else {
+		s.value, s.grad, s.data = pr.Likelihood.Score(p)
+	}
 	s.info = s.data
 	for _, q := range pr.Priors {
 		z := (q.Weights.dot(p) - q.Mean) / q.SD
