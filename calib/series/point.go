@@ -89,6 +89,19 @@ func newParameter(value, statistical, shared, freedom float64) Parameter {
 	return p
 }
 
+// WithShared adds a relative standard uncertainty that all points share to a fitted parameter above 0. Its interval keeps its shape:
+// each end moves away, on the scale of ln(value), by the factor by which the combined uncertainty grows.
+func (p Parameter) WithShared(relative float64) Parameter {
+	before := p.Combined
+	p.Shared = math.Hypot(p.Shared, relative*p.Value)
+	p.Combined = math.Hypot(p.Statistical, p.Shared)
+	if before > 0 {
+		grown := p.Combined / before
+		p.Low, p.High = p.Value*math.Pow(p.Low/p.Value, grown), p.Value*math.Pow(p.High/p.Value, grown)
+	}
+	return p
+}
+
 // coverage is the factor of a 95 % interval with that many degrees of freedom.
 func coverage(freedom float64) float64 {
 	const upper = 0.975

@@ -93,11 +93,13 @@ func dragAgainstHeight(m []member, opt SeriesOptions) Series {
 		return s
 	}
 	data, options := readings(m, points, scale, opt)
+	// A scale of length that is off moves all drags by one factor, as the viscosity does.
+	common := sharedRelative(m, func(one member) Number { return one.axis.Drag })
 	if opt.FitDiameter && scale.Free {
 		v := m[0].row.Viscosity
-		options.Viscosity = series.Input{Value: float64(v.Value)}
+		options.Viscosity = series.Input{Value: float64(v.Value), Uncertainty: common * float64(v.Value)}
 		if v.Combined.Known() {
-			options.Viscosity.Uncertainty = float64(v.Combined)
+			options.Viscosity.Uncertainty = math.Hypot(options.Viscosity.Uncertainty, float64(v.Combined))
 		}
 	}
 	fit, err := series.DragAgainstHeight(data, options)
@@ -105,7 +107,11 @@ func dragAgainstHeight(m []member, opt SeriesOptions) Series {
 		s.Reason = err.Error()
 		return s
 	}
-	s.surface(fit, value("viscosity", "Pa s", fit.Viscosity))
+	viscosity := fit.Viscosity
+	if viscosity.Fitted {
+		viscosity = viscosity.WithShared(common)
+	}
+	s.surface(fit, value("viscosity", "Pa s", viscosity))
 	stokes := drag.Stokes(fit.Viscosity.Value, fit.Radius.Value)
 	s.wallCurve(fit, m[0].axis.Perpendicular, func(_, factor float64) float64 { return stokes * factor })
 	return s
