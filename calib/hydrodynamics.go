@@ -21,6 +21,9 @@ const (
 	// hydroBias is the bias of a fit with constant drag, in its statistical uncertainties, from which on
 	// the frequency dependence is looked at: a tenth of that in quadrature.
 	hydroBias = 0.25
+	// otherBead is the likelihood-ratio statistic of one degree of freedom beyond which the computed drag is not that of
+	// the recording, whichever the spectrum: p = 0.005, the level of the cross-check.
+	otherBead = 7.88
 )
 
 // hydrodynamic is the spectrum with the inertia of liquid and bead and the low-pass of
@@ -175,7 +178,13 @@ func (w *work) chooseDrag(h psd.Hydrodynamic) error {
 		w.backTo(&plain)
 		return nil
 	}
-	w.inertia = w.agreement(w.fit) - w.agreement(base)
+	with, without := w.agreement(w.fit), w.agreement(base)
+	w.inertia = with - without
+	if 2*min(w.fit.Maximum.Value-with, base.Maximum.Value-without) > otherBead {
+		// A wrong height, say: what the computed drag would like better is no evidence and must not move the measured one, and
+		// recordings of one series must not differ by chance.
+		w.inertia = w.fit.Maximum.Value - base.Maximum.Value - otherBead/2
+	}
 	if w.inertia > 0 {
 		w.dragModel = FrequencyDependentDrag
 		return nil
@@ -219,7 +228,7 @@ func agreeOnDrag(ctx context.Context, rec *track.Recording, set *session.Setting
 }
 
 // agreement returns the log-likelihood of a fit that knows the computed drag: the shape
-// of the spectrum counts, and where that cannot tell, what Stokes drag and kT say of D. The noise is
+// of the spectrum counts, and where that cannot tell, what Stokes drag and kT say of D, unless they contradict the record. The noise is
 // kept from turning negative, which would let a wrong shape pass.
 func (w *work) agreement(fit *psd.Fit) float64 {
 	kept := w.fit

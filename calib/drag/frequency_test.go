@@ -221,6 +221,15 @@ func TestRecommended(t *testing.T) {
 			t.Errorf("perpendicular %v: recommended factor %v, want that of shape %d", perpendicularly, got, want)
 		}
 	}
+	for ratio, want := range map[float64]Shape{1.1: PointForce, 1.99: PointForce, 2: Published, 5: Published} {
+		d := example(0.5)
+		d.Height = ratio * d.Radius
+		named := d
+		named.Shape = want
+		if got := d.Factor(1e4); got != named.Factor(1e4) {
+			t.Errorf("parallel at h/R = %g: recommended factor %v, want that of shape %d", ratio, got, want)
+		}
+	}
 	d := example(0.5)
 	d.Shape = BulkShape
 	if !d.Approximate() {
