@@ -26,7 +26,7 @@ const (
 
 // Sizes of the study, so that it takes hours and not days.
 const (
-	fullNumber  = 300000 // samples of all axes up to which a cell gets the full number of recordings; longer ones get fewer in proportion
+	fullNumber  = 200000 // samples of all axes up to which a cell gets the full number of recordings; longer ones get fewer in proportion
 	fewest      = 5      // recordings of a cell
 	manySamples = 400000 // beyond which clean recordings have one axis, not three
 )
@@ -129,8 +129,11 @@ type Detection struct {
 // detect runs a number of recordings of a cell, scored in the order of their seeds.
 func detect(ctx context.Context, c trialCell, runs int) *Detection {
 	d := &Detection{Name: c.Name, Runs: runs, Checks: map[string]int{}, Tied: map[string]int{}}
-	if c.group == statementGroup {
+	switch c.group {
+	case statementGroup:
 		d.Ideal = c.ideal()
+	case recordingGroup:
+		d.Ideal = c.checked()
 	}
 	results := make([]*calib.Result, runs)
 	errs := make([]error, runs)

@@ -7,6 +7,7 @@ import (
 	"slices"
 	"strings"
 
+	"beadwell/calib"
 	"beadwell/calib/health"
 )
 
@@ -113,8 +114,7 @@ Stated with standard uncertainties of %g %% of the diameter, %g K, %g %% of the 
 says exact. Columns in %%: found, the verdict is inconsistent or the diagnosis is made; power, what theory allows (the likelihood-ratio test at the level of the verdict, a
 noncentral chi-square from the expected log-likelihood); tied, of those found, the true cause is in the top group; alone, it is all of it; theory,
 what the distance to the next cause allows; excluded, the group holds a cause whose remaining disagreement has p < %g; covered, the 95 %% interval of the
-value that would reconcile holds the true one. Theory is not worked out for faults that make no stationary record (drift) or another spectrum (inertia). Where theory
-says 0 another cause has the very same pattern.
+value that would reconcile holds the true one, where there is one. Where theory says 0 another cause has the very same pattern.
 
 | fault | setup | recordings | found | power | tied | alone | theory | excluded | covered |
 |---|---|---|---|---|---|---|---|---|---|
@@ -122,8 +122,10 @@ says 0 another cause has the very same pattern.
 	for i, d := range scores {
 		power, alone, covered := "", "", ""
 		if d.Ideal.Known {
-			covered = percentOf(d.Covered, d.Top)
 			power, alone = fmt.Sprintf("%.0f", 100*d.Ideal.Power), fmt.Sprintf("%.0f", 100*d.Ideal.Alone)
+		}
+		if code := cells[i].fault.code; code != calib.CauseDrift && code != calib.CauseInertia { // which have no value that is true
+			covered = percentOf(d.Covered, d.Top)
 		}
 		n, of := d.Runs-d.Failed, d.Diagnosed
 		fmt.Fprintf(w, "| %s | %s | %d | %s | %s | %s | %s | %s | %s | %s |\n", cells[i].fault.name, cells[i].setup.name, n, percentOf(of, n), power,
@@ -136,11 +138,14 @@ func writeRecordings(w io.Writer, list []trialCell, known map[string]*Detection)
 	cells, scores := scored(list, known, recordingGroup)
 	fmt.Fprint(w, `## Spoiled recordings
 
-Found: the check named raises an alarm, doubtful or bad. Status 3: the recording is called unfit or inconsistent. Also: other
+Found: the check named raises an alarm, doubtful or bad. Power: what theory allows at the level of 1 %, in the likelihood-ratio test of the fault
+against a sound recording; empty where the fault leaves marks that chance does not make at all (samples that pile up at a value, gaps between time stamps,
+a bead that is gone, held or elsewhere). Frames that are lost without a trace leave nothing but steps that are too large, by a factor that falls to one as
+the corner frequency nears the sampling rate: only time stamps or frame numbers tell of them in all recordings. Status 3: the recording is called unfit or inconsistent. Also: other
 checks that were raised in at least a tenth of the recordings.
 
-| fault | setup | check | recordings | found, % | status 3, % | also |
-|---|---|---|---|---|---|---|
+| fault | setup | check | recordings | found, % | power, % | status 3, % | also |
+|---|---|---|---|---|---|---|---|
 `)
 	for i, d := range scores {
 		n, code := d.Runs-d.Failed, cells[i].fault.code
@@ -150,6 +155,10 @@ checks that were raised in at least a tenth of the recordings.
 				also = append(also, fmt.Sprintf("%s %s", e.Code, percentOf(d.Checks[e.Code], n)))
 			}
 		}
-		fmt.Fprintf(w, "| %s | %s | `%s` | %d | %s | %s | %s |\n", cells[i].fault.name, cells[i].setup.name, code, n, percentOf(d.Checks[code], n), percentOf(d.Bad, n), strings.Join(also, ", "))
+		power := ""
+		if d.Ideal.Known {
+			power = fmt.Sprintf("%.0f", 100*d.Ideal.Power)
+		}
+		fmt.Fprintf(w, "| %s | %s | `%s` | %d | %s | %s | %s | %s |\n", cells[i].fault.name, cells[i].setup.name, code, n, percentOf(d.Checks[code], n), power, percentOf(d.Bad, n), strings.Join(also, ", "))
 	}
 }

@@ -3,6 +3,7 @@ package main
 import (
 	"context"
 	"math"
+	"math/cmplx"
 	"path/filepath"
 	"runtime"
 	"slices"
@@ -66,6 +67,9 @@ func TestSpoiledRecordingsAreFound(t *testing.T) {
 			continue
 		}
 		d := detect(context.Background(), c, runs)
+		if d.Ideal.Known && d.Ideal.Power < 0.99 {
+			continue
+		}
 		if d.Failed > 0 || d.Checks[c.fault.code] < runs-1 {
 			t.Errorf("%s has to raise %s: %v %s", c.Name, c.fault.code, d, d.Error)
 		}
@@ -97,7 +101,7 @@ func TestIdeal(t *testing.T) {
 	c := cellsNamed(t, "length scale 6 % too small: "+detectorExact)[0]
 	c.setup.scene.unknownNoise = false
 	got := c.ideal()
-	b, err := Cell{Ratio: 0.03, Periods: 3000, Noise: 0.02}.bounds()
+	b, err := Cell{Ratio: 0.03, Periods: 2000, Noise: 0.02}.bounds()
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -112,6 +116,69 @@ func TestIdeal(t *testing.T) {
 	}
 	if p := excess(9, 2.807); math.Abs(p-0.5765) > 1e-4 {
 		t.Errorf("excess(9, 2.807) = %.4f, want 0.5765", p)
+	}
+}
+
+// The spectrum of a random walk less its straight line, by the sum over its steps; the closed form leaves out terms of k/n.
+func TestWalkPower(t *testing.T) {
+	const n = 2000
+	for _, k := range []int{1, 2, 5, 20} {
+		w := 2 * math.Pi * float64(k) / n
+		turn := func(j int) complex128 { return cmplx.Exp(complex(0, -w*float64(j))) }
+		var ramp complex128
+		squares := 0.0
+		for j := range n {
+			x := float64(j) - (n-1)/2.0
+			ramp += complex(x, 0) * turn(j)
+			squares += x * x
+		}
+		sum := 0.0
+		for j := range n {
+			g, slope := (turn(j)-1)/(1-turn(1)), float64(j)*float64(n-j)/2/squares
+			sum += math.Pow(cmplx.Abs(g-complex(slope, 0)*ramp), 2)
+		}
+		if got := walkPower(k, n); math.Abs(got/sum-1) > 0.01 {
+			t.Errorf("k = %d: %.5g, want %.5g", k, got, sum)
+		}
+	}
+}
+
+// The information on lost samples against that in the kurtosis of the steps, which is excess^2/48 a sample: an ideal test has that
+// much at least, but for the little that neighbouring steps share, and a third more at most where the mixture is as mild as here.
+func TestLossInformation(t *testing.T) {
+	for _, ratio := range []float64{0.003, 0.01, 0.03} {
+		s := usual(Cell{Ratio: ratio, Periods: 1000}, "x")
+		c := math.Exp(-2 * math.Pi * ratio)
+		excess := 3 * ((1-lostShare+lostShare*(1+c)*(1+c))/math.Pow(1+lostShare*c, 2) - 1)
+		if got, least := lossInformation(s, lostShare), excess*excess/48; got < least || got > 1.35*least {
+			t.Errorf("fc/fs %g: %.4g a sample, want %.4g to a third more", ratio, got, least)
+		}
+		if got := lossInformation(s, 0); math.Abs(got) > 1e-12 {
+			t.Errorf("fc/fs %g: nothing lost, and %.3g a sample", ratio, got)
+		}
+	}
+}
+
+// Theory of the checks against what is found: where it gives a power near one the check finds the fault; the figure that stands for the
+// detector of 67000 samples is that of a test between 40 and 60 %.
+func TestCheckedPower(t *testing.T) {
+	for name, want := range map[string][2]float64{
+		"drift of one rms, straight: " + cameraTwo:             {0.999, 1},
+		"wander of one rms: " + cameraOne:                      {0.999, 1},
+		"line of 50 Hz, 0.3 rms: " + detectorOne:               {0.999, 1},
+		"2 % of frames lost without a trace: " + detectorOne:   {0.4, 0.6},
+		"2 % of frames lost without a trace: " + longDetector:  {0.999, 1},
+		"inertia of the liquid ignored: " + fastBead:           {0.999, 1},
+		"slow drift of one rms, a random walk: " + detectorOne: {0.999, 1},
+	} {
+		c := cellsNamed(t, name)[0]
+		got := c.checked()
+		if c.group == statementGroup {
+			got = c.ideal()
+		}
+		if !got.Known || got.Power < want[0] || got.Power > want[1] {
+			t.Errorf("%s: power %.4f, known %t, want %v", name, got.Power, got.Known, want)
+		}
 	}
 }
 

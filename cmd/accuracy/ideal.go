@@ -7,11 +7,16 @@ import (
 	"gonum.org/v1/gonum/stat/distuv"
 
 	"beadwell/calib"
+	"beadwell/calib/drag"
+	"beadwell/calib/medium"
 	"beadwell/calib/relaxation"
+	"beadwell/psd"
 )
 
 // Ideal is what theory allows in a cell: the power of the likelihood-ratio test of the true statement against
 // the wrong one at the level of the verdict, and the probability that the true cause is alone in the tie.
+//
+// Of a check of the recording it is the power of the likelihood-ratio test of the fault against a sound recording at the promised level of false alarms.
 //
 // It is computed without any recording: the expected spectrum of the truth stands for the record, whose
 // log-likelihood under a statement is then the expected one, and twice its deficit against the truth the
@@ -27,14 +32,14 @@ type Ideal struct {
 // ideal evaluates a cell.
 func (c trialCell) ideal() Ideal {
 	truth, stated := c.scenes()
-	if c.fault.code == calib.CauseDrift || c.fault.code == calib.CauseInertia {
-		return Ideal{}
-	}
 	b, ok := newIdealBench(truth, stated, c.setup.companions)
 	if !ok {
 		return Ideal{}
 	}
 	best := b.weigh(truth, c.fault.code)
+	if truth.wander > 0 || truth.inertia {
+		best = b.self() // no relaxation process with white noise
+	}
 	out := Ideal{Known: true, Noncentrality: math.Max(0, 2*(best-b.weigh(stated, ""))), Distance: math.Inf(1)}
 	out.Power = excess(out.Noncentrality, familyQuantile)
 	for _, h := range b.rivals() {
@@ -65,7 +70,7 @@ func excess(lambda, quantile float64) float64 {
 type idealBench struct {
 	truth, stated scene
 	sights        []sight
-	known         map[[2]float64][]expected // fits by exposure and noise
+	known         map[[3]float64][]expected // fits by exposure and the noise in true lengths, of x and of the other axes
 	moves         map[string][][]float64    // priors by the freed cause
 }
 
@@ -81,6 +86,17 @@ type sight struct {
 	process relaxation.Process
 }
 
+// self is the expected log-likelihood of the truth where its spectrum is not that of a relaxation process.
+func (b *idealBench) self() float64 {
+	sum := 0.0
+	for _, s := range b.sights {
+		for i, w := range s.blocks.Weight {
+			sum -= w * (math.Log(s.blocks.Power[i]/s.scale) + 1)
+		}
+	}
+	return sum
+}
+
 // expected is what the expected record of an axis says under an exposure and a noise.
 type expected struct {
 	value    float64
@@ -90,7 +106,7 @@ type expected struct {
 }
 
 func newIdealBench(truth, stated scene, companions []func(scene) scene) (*idealBench, bool) {
-	b := &idealBench{truth: truth, stated: stated, known: map[[2]float64][]expected{}, moves: map[string][][]float64{}}
+	b := &idealBench{truth: truth, stated: stated, known: map[[3]float64][]expected{}, moves: map[string][][]float64{}}
 	same := func(s scene) scene { return s }
 	for _, of := range append([]func(scene) scene{same}, companions...) {
 		t := of(truth)
@@ -125,11 +141,61 @@ func (s *sight) see(t scene) bool {
 	for k := range power {
 		power[k] = spectrum(float64(k)/float64(n)*t.rate) * t.rate * float64(n)
 	}
+	if t.wander > 0 {
+		step := t.wander * thermal(t.soft[s.axis]) / math.Sqrt(float64(t.samples)/wanderSteps)
+		for k := 1; k < len(power); k++ {
+			power[k] += step * step * walkPower(k, n)
+		}
+	}
 	s.blocks, s.scale, s.process = relaxation.NewBlocks(power, n, true, nil), p.RecordedVariance(), p
+	if t.inertia && !s.withInertia(t, gamma) {
+		return false
+	}
 	if t.drive > 0 && s.axis == 0 {
 		ratio := p.Corner / driveHz
 		amplitude := t.drive / math.Sqrt(1+ratio*ratio)
 		s.line = math.Sqrt(2*spectrum(driveHz)/(float64(n)/t.rate)) / amplitude
+	}
+	return true
+}
+
+// walkPower is the expected |X_k|^2 of a random walk of n unit steps less its least-squares straight line. With G_k(j) = (e^{-i w j} - 1)/
+// (1 - e^{-i w}) the transform of a step at j, b(j) = 6 j (n - j)/n^3 the slope that it makes, and T_k = n/(e^{-i w} - 1) the transform
+// of the ramp, w = 2 pi k/n, it is the sum over j of |G_k - b T_k|^2, for n large against k and 1.
+func walkPower(k, n int) float64 {
+	sine := 2 * math.Sin(math.Pi*float64(k)/float64(n))
+	return float64(n) * (1.2 - 6/(math.Pi*math.Pi*float64(k)*float64(k))) / (sine * sine)
+}
+
+// aliases is the number of multiples of the sampling rate on either side whose power is summed; the spectrum falls faster than 1/f^2, so
+// that less than 1e-5 of it is left.
+const aliases = 200
+
+// withInertia replaces the expected spectrum by that of a bead in a liquid with inertia.
+func (s *sight) withInertia(t scene, gamma float64) bool {
+	liquid, err := medium.ParseFluid("water")
+	if err != nil {
+		return false
+	}
+	p, err := liquid.At(t.kelvin)
+	if err != nil {
+		return false
+	}
+	static := gamma / drag.Stokes(p.Viscosity, t.diameter/2)
+	d := drag.Frequency{Radius: t.diameter / 2, Height: t.height, Viscosity: p.Viscosity, Density: p.Density, StaticFactor: static, Perpendicular: s.name == 'z'}
+	h := psd.Hydrodynamic{Drag: func(f float64) complex128 { return d.Factor(f) / complex(static, 0) },
+		MassCorner: gamma / (2 * math.Pi * math.Pi / 6 * t.diameter * t.diameter * t.diameter * beadDensity)}
+	for i, phi := range s.blocks.Frequency {
+		sum := 0.0
+		for m := -aliases; m <= aliases; m++ {
+			f := math.Abs(phi+float64(m)) * t.rate
+			blur := 1.0
+			if x := math.Pi * f * t.exposure; x > 0 {
+				blur = math.Sin(x) / x
+			}
+			sum += h.Position(f, s.process.Corner, s.process.Variance) / 2 * blur * blur
+		}
+		s.blocks.Power[i] = sum*t.rate + s.process.Noise
 	}
 	return true
 }
@@ -149,9 +215,21 @@ func (s *sight) seeFree(t, stated scene) bool {
 	return err == nil
 }
 
+// trueNoise is the noise of a scene in true lengths, of x and of the other axes: it is recorded in the lengths of the scene or, where it was
+// measured with the scale that is stated, in those.
+func (b *idealBench) trueNoise(h scene) (x, others float64) {
+	by := h
+	if h.noiseRecorded {
+		by = b.stated
+	}
+	others = h.noise * b.truth.pixel / by.pixel
+	return others * b.truth.uneven / by.uneven, others
+}
+
 // fits returns what the axes say under the exposure and the noise of a scene.
 func (b *idealBench) fits(h scene) []expected {
-	key := [2]float64{h.exposure * h.rate, h.noise}
+	first, others := b.trueNoise(h)
+	key := [3]float64{h.exposure * h.rate, first, others}
 	if known, ok := b.known[key]; ok {
 		return known
 	}
@@ -165,7 +243,11 @@ func (b *idealBench) fits(h scene) []expected {
 		from := relaxation.Parameters{math.Log(s.process.Corner * s.process.Interval), math.Log(s.process.Variance / s.scale), s.process.Noise / s.scale}
 		if !h.unknownNoise {
 			pr.Directions = []relaxation.Parameters{{1, 0, 0}, {0, 1, 0}}
-			from[2] = h.noise * h.noise / s.scale
+			noise := others
+			if s.axis == 0 {
+				noise = first
+			}
+			from[2] = noise * noise / s.scale
 		}
 		e := expected{}
 		if m, err := pr.Maximise(from); err == nil {
@@ -319,6 +401,14 @@ func (b *idealBench) rivals() []rival {
 		list = append(list, rival{calib.CauseScaleOne, -widest, widest, func(s *scene, p float64) { s.uneven *= math.Exp(p) }})
 	}
 	if !b.stated.unknownNoise {
+		for _, h := range list {
+			if h.code == calib.CauseScale || h.code == calib.CauseScaleOne {
+				list = append(list, rival{h.code, h.low, h.high, func(s *scene, p float64) {
+					h.at(s, p)
+					s.noiseRecorded = true
+				}})
+			}
+		}
 		list = append(list, rival{calib.CauseNoise, 0, 1, func(s *scene, p float64) { s.noise = p * math.Sqrt(b.sights[0].scale) }})
 	}
 	if len(b.sights) > len(b.stated.axes) {

@@ -26,6 +26,7 @@ type scene struct {
 	wander                          float64    // rms of a random walk about its straight line, in thermal rms
 	inertia                         bool       // of the liquid
 	unknownNoise                    bool       // the noise is not stated
+	noiseRecorded                   bool       // in theory alone: the noise was measured with the scale that is stated
 	exact                           bool       // no uncertainty is stated
 	drive                           float64    // amplitude of a sinusoidal motion of the stage along x [m]; 0: at rest
 	free                            bool       // no trap, the laser off
@@ -70,6 +71,12 @@ func stiffness(relative float64) float64 {
 	}
 	return relative * 2 * math.Pi * w.gamma * corner
 }
+
+// wanderSteps: a random walk of n steps is n/15 of the squared step about its straight line.
+const wanderSteps = 15
+
+// beadDensity is that of polystyrene [kg/m3].
+const beadDensity = 1050
 
 // thermal is the thermal rms at a relative stiffness and the stated temperature [m].
 func thermal(relative float64) float64 {
@@ -119,7 +126,7 @@ func (s scene) truth() (simulate.Truth, error) {
 		if err != nil {
 			return t, err
 		}
-		t.Hydrodynamics = &simulate.Hydrodynamics{Radius: s.diameter / 2, Viscosity: p.Viscosity, Density: p.Density, BeadDensity: 1050, Height: s.height}
+		t.Hydrodynamics = &simulate.Hydrodynamics{Radius: s.diameter / 2, Viscosity: p.Viscosity, Density: p.Density, BeadDensity: beadDensity, Height: s.height}
 	}
 	if s.drive > 0 {
 		t.Stage = &simulate.Stage{Phase: 0.7, Parts: []simulate.Drive{{Waveform: simulate.Sine, Amplitude: s.drive, Frequency: driveHz}}}
@@ -145,8 +152,7 @@ func (s scene) recording(seed uint64) (*track.Recording, error) {
 		if i == 0 {
 			pixel *= s.uneven
 		}
-		// a random walk of n steps is n/15 of the squared step about its straight line
-		wander, step, missing := 0.0, s.wander*thermal(s.soft[i])/math.Sqrt(float64(n)/15), 0
+		wander, step, missing := 0.0, s.wander*thermal(s.soft[i])/math.Sqrt(float64(n)/wanderSteps), 0
 		for j := range x {
 			if s.wander > 0 {
 				wander += step * rng.NormFloat64()
