@@ -2,6 +2,7 @@ package calib
 
 import (
 	"math"
+	"slices"
 
 	"beadwell/calib/relaxation"
 	"beadwell/calib/transform"
@@ -94,6 +95,14 @@ func (w *work) covarianceTable() Covariance {
 // spectrumPoints is the number of blocks of the spectrum that are kept for figures.
 const spectrumPoints = 160
 
+// excludedBy says why a range was left out of the fit.
+func (w *work) excludedBy(e psd.Range) string {
+	if w.background != nil && slices.ContainsFunc(w.background.lines, func(l psd.Line) bool { return l.Low == e.Low && l.High == e.High }) {
+		return "narrow line of the background"
+	}
+	return "as set"
+}
+
 func (w *work) describeSpectrum() {
 	s := &w.axis.Spectrum
 	f := w.fit
@@ -104,7 +113,7 @@ func (w *work) describeSpectrum() {
 		s.Excluded = append(s.Excluded, Excluded{Range: [2]Float{Float(l.Low), Float(l.High)}, Reason: "narrow line, removed"})
 	}
 	for _, e := range f.Excluded {
-		s.Excluded = append(s.Excluded, Excluded{Range: [2]Float{Float(e.Low), Float(e.High)}, Reason: "as set"})
+		s.Excluded = append(s.Excluded, Excluded{Range: [2]Float{Float(e.Low), Float(e.High)}, Reason: w.excludedBy(e)})
 	}
 	nan := Float(math.NaN())
 	s.LeastSquares = LeastSquares{Corner: nan, Diffusion: nan}

@@ -144,7 +144,7 @@ func (r *Result) firstMeasurement() string {
 		return otherwise
 	}
 	first := r.Diagnosis.Causes[0]
-	text := first.Measurement
+	text := "first, to decide on the " + first.Name + ": " + first.Measurement
 	if !strings.Contains(text, "repeat") {
 		text += "; then repeat the recording"
 	}

@@ -158,20 +158,30 @@ func (d *drive) speedAt(sample int) float64 {
 	return math.NaN()
 }
 
+// heldPart is the part of a driven recording before the bead was lost; ok is false when it never was.
+func heldPart(ctx context.Context, rec *track.Recording, set *session.Settings) (lost loss, before stretch, ok bool, err error) {
+	if lost, ok = findLoss(rec, set); !ok {
+		return lost, before, false, nil
+	}
+	at := rec.Start + float64(lost.first)/rec.Rate
+	before = stretch{to: lost.begin, why: []string{fmt.Sprintf("The bead was lost at %.4g s.", at)}}
+	if !before.enough(rec.Samples) {
+		return lost, before, true, &DataError{Name: rec.Name, Axis: lost.axis, Problem: fmt.Sprintf("the bead is lost at %.4g s, and what was recorded before is too short", at),
+			Remedy: "drive more slowly at first, so that the bead is held for at least a tenth of the recording"}
+	}
+	before.to -= wayOut(ctx, cutRecording(rec, stretch{to: before.to / 2}), set, lost.axis, before.to)
+	return lost, before, true, nil
+}
+
 // calibrateDriven calibrates a driven recording: the whole, or what there is before the bead was lost.
 func calibrateDriven(ctx context.Context, rec *track.Recording, set *session.Settings, opt Options, seen *pass) (*Result, error) {
-	lost, ok := findLoss(rec, set)
+	lost, before, ok, err := heldPart(ctx, rec, set)
+	if err != nil {
+		return nil, err
+	}
 	if !ok {
 		return calibrateAll(ctx, rec, set, opt, seen)
 	}
-	at := rec.Start + float64(lost.first)/rec.Rate
-	before := stretch{to: lost.begin}
-	if !before.enough(rec.Samples) {
-		return nil, &DataError{Name: rec.Name, Axis: lost.axis, Problem: fmt.Sprintf("the bead is lost at %.4g s, and what was recorded before is too short", at),
-			Remedy: "drive more slowly at first, so that the bead is held for at least a tenth of the recording"}
-	}
-	before.why = []string{fmt.Sprintf("The bead was lost at %.4g s.", at)}
-	before.to -= wayOut(ctx, cutRecording(rec, stretch{to: before.to / 2}), set, lost.axis, before.to)
 	r, err := calibrateAll(ctx, cutRecording(rec, before), set, opt, seen)
 	if err != nil {
 		return nil, err
@@ -211,7 +221,7 @@ func wayOut(ctx context.Context, half *track.Recording, set *session.Settings, a
 
 // describeEscape adds the loss to the result of the part before.
 func (r *Result) describeEscape(rec *track.Recording, lost loss, before stretch, works []*work) {
-	from, to := Float(rec.Start), Float(rec.Start+float64(before.to)/rec.Rate)
+	from, to := Float(rec.Start+float64(before.from)/rec.Rate), Float(rec.Start+float64(before.to)/rec.Rate)
 	r.Recording.UsedFrom, r.Recording.UsedTo = &from, &to
 	text := fmt.Sprintf("The bead was lost at %.4g s; the part before, to %.4g s, was calibrated.", rec.Start+float64(lost.first)/rec.Rate, float64(to))
 	for i, w := range works {

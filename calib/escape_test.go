@@ -81,6 +81,24 @@ func TestDrivenEscape(t *testing.T) {
 	}
 }
 
+// With --use good the force of the escape is there too.
+func TestDrivenEscapeOfTheGoodPart(t *testing.T) {
+	steady := simulate.Stage{Parts: []simulate.Drive{{Waveform: simulate.Triangle, Amplitude: 5e-6, Frequency: 5}}}
+	s := usual().driving("triangle", "5.00(5) um", "5 Hz").escaping(1.53)
+	whole, err := Calibrate(context.Background(), s.driven(t, 41, steady, false), s.set(t), Options{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	good, err := Calibrate(context.Background(), s.driven(t, 41, steady, false), s.set(t), Options{Use: UseGood})
+	if err != nil {
+		t.Fatal(err)
+	}
+	a, b := whole.Axes[0].Driven.Escape, good.Axes[0].Driven.Escape
+	if b == nil || b.Force.Value != a.Force.Value || *good.Recording.UsedTo != *whole.Recording.UsedTo {
+		t.Errorf("the escape of the good part is %+v, that of the whole %+v", b, a)
+	}
+}
+
 // What was recorded while the bead was on its way out of the trap is left out too: a free bead shows the full amplitude of the
 // stage, and would pass for the motion of which the bead was held back before.
 func TestDrivenEscapeLeavesOutTheWay(t *testing.T) {

@@ -114,6 +114,17 @@ func calibrateGood(ctx context.Context, rec *track.Recording, set *session.Setti
 		return nil, &SettingError{Key: "use", Problem: fmt.Sprintf("is %q, which is not for a recording of the role %s", opt.Use, role), Remedy: "leave it out"}
 	}
 	used := stretch{to: rec.Samples}
+	var lost loss
+	carried := false
+	if roleOf(set) == RoleDriven {
+		away, before, ok, err := heldPart(ctx, rec, set)
+		if err != nil {
+			return nil, err
+		}
+		if carried = ok; ok {
+			lost, used = away, before
+		}
+	}
 	for cut := 0; ; cut++ {
 		part := cutRecording(rec, used)
 		var seen pass
@@ -135,6 +146,9 @@ func calibrateGood(ctx context.Context, rec *track.Recording, set *session.Setti
 			return nil, err
 		}
 		r.markUsed(rec, used, seen.works)
+		if carried {
+			r.describeEscape(rec, lost, used, seen.works)
+		}
 		return r, nil
 	}
 }

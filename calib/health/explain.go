@@ -103,7 +103,7 @@ What to do: let the microscope settle, shield it from air currents and heat; or 
 		Code: "slow-wander", Title: "slow wander", unit: "1",
 		reason: "Slow motion of stage or laser adds variance that is not thermal, and no straight line takes it off.",
 		Long: `Looked at: the waves of one to four and a half periods over the record, about a straight line, against those of the fitted process (a Fisher test). The value is their rms beyond expectation, over that of the bead. Doubtful above 0.1 (1 % of the variance), bad above 0.3 (9 %).
-What to do: fit above the frequencies of the wander, or cut the record to its calm part. Shield the microscope.` + caution,
+What to do: fit above the frequencies of the wander, or cut the record to its calm part. Shield the microscope and its beam path from air currents and changes of the temperature.` + caution,
 	},
 	{
 		Code: "unsteady-motion", Title: "change of the variance", unit: "1",
@@ -135,7 +135,7 @@ What to do: find the source by its frequency. 50 or 60 Hz and multiples are the 
 		Code: "short-record", Title: "length of the record", unit: "1",
 		reason: "The precision is set by the number of independent positions, not by that of samples.",
 		Long: `Looked at: duration times corner frequency. Doubtful when it is below 30 by three standard uncertainties of the corner, bad below 8. The relative uncertainty of the corner frequency is at best one over the square root of pi times this number, 10 % at 30.
-What to do: record longer.` + caution,
+What to do: record longer, or use a stiffer trap, which moves through more periods in the same time.` + caution,
 	},
 	{
 		Code: "long-exposure", Title: "motion blur", unit: "1",

@@ -356,3 +356,17 @@ func TestToneFromSpectrum(t *testing.T) {
 		}
 	}
 }
+
+// TestToneRemedy: a line that the fit has removed need not be left out by hand; one that it has not does.
+func TestToneRemedy(t *testing.T) {
+	truth := detector.truth(1)
+	truth.Axes[0].Lines = []simulate.Line{{Frequency: 50, Amplitude: 0.5 * rms}}
+	in := fitted(simulate.Record(truth, 1), truth.Rate, 0)
+	if c := find(t, Run(in), "tone", "x"); c.Level != Doubtful || !strings.Contains(c.Remedy, "--exclude") {
+		t.Errorf("not removed: %s %s", c.Text, c.Remedy)
+	}
+	in.Axes[0].Lines = []Line{{Frequency: 50, Amplitude: 0.5 * rms}}
+	if c := find(t, Run(in), "tone", "x"); !strings.Contains(c.Text, "taken it out") || strings.Contains(c.Remedy, "--exclude") {
+		t.Errorf("removed: %s %s", c.Text, c.Remedy)
+	}
+}

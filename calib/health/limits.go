@@ -70,7 +70,7 @@ func (v *view) short() Check {
 		return c
 	}
 	c.Text = fmt.Sprintf("The record is only %s times as long as 1/fc, so that the bead has visited few independent positions.", digits(c.Value))
-	c.Remedy = fmt.Sprintf("Record for at least %s, better ten times that. A stiffer trap shortens it.", seconds(shortDoubtful/v.Process.Corner)) + caution
+	c.Remedy = fmt.Sprintf("Record for at least %s, better ten times that; with a stiffer trap the time is shorter.", seconds(shortDoubtful/v.Process.Corner)) + caution
 	return c
 }
 

@@ -93,6 +93,6 @@ func (v *view) slowWander() Check {
 		c.Level = Bad
 	}
 	c.Text = fmt.Sprintf("The mean position wandered slowly, by %s times the rms of the bead beyond what chance makes.", digits(c.Value))
-	c.Remedy = "Fit above the frequencies of the wander, or cut the record to its calm part. Shield the microscope from air currents and temperature changes." + caution
+	c.Remedy = "Fit above the frequencies of the wander, or cut the record to its calm part. Shield the microscope and its beam path from air currents and changes of the temperature." + caution
 	return c
 }

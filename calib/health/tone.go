@@ -3,6 +3,7 @@ package health
 import (
 	"fmt"
 	"math"
+	"slices"
 
 	"beadwell/calib/transform"
 )
@@ -46,7 +47,12 @@ func (v *view) tone() Check {
 		c.Level = Bad
 	}
 	c.Text = fmt.Sprintf("The position swings at %s with an amplitude of %s, %s times the rms.", hertz(best.Frequency), length(best.Amplitude, v.Unit), digits(c.Value))
-	c.Remedy = "Find the source: mains pickup, a fan, a pump or a lamp have a frequency of their own. Leave the line out of the fit until then."
+	c.Remedy = "Find the source: mains pickup, a fan, a pump or a lamp have a frequency of their own."
+	if slices.ContainsFunc(v.Lines, func(l Line) bool { return math.Abs(l.Frequency-best.Frequency)*v.duration() < toneGap }) {
+		c.Text += " The fit has taken it out."
+	} else {
+		c.Remedy += " Leave the line out of the fit with --exclude until then."
+	}
 	return c
 }
 

@@ -44,12 +44,18 @@ type dragRow struct {
 
 // newDragInput takes bead and fluid from the settings.
 func newDragInput(settings *session.Settings, stiffness measure) (dragInput, error) {
+	in, err := newLiquid(settings, stiffness)
+	if err == nil && in.diameter.value == 0 {
+		err = usageError("state it: --diameter '1.02(3) um'", "the diameter of the bead is not given, and has no default")
+	}
+	return in, err
+}
+
+// newLiquid is newDragInput where there need be no bead.
+func newLiquid(settings *session.Settings, stiffness measure) (dragInput, error) {
 	in := dragInput{stiffness: stiffness, depth: measured(settings, "chamber.depth"),
 		diameter: measured(settings, "bead.diameter"), temperature: measured(settings, "medium.temperature"),
 		density: measure{math.NaN(), math.NaN()}}
-	if in.diameter.value == 0 {
-		return in, usageError("state it: --diameter '1.02(3) um'", "the diameter of the bead is not given, and has no default")
-	}
 	if own := measured(settings, "medium.viscosity"); own.value != 0 {
 		in.viscosity, in.model, in.source = own, own.relative(), "stated"
 		if density := measured(settings, "medium.density"); density.value != 0 {

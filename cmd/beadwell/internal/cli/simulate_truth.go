@@ -20,7 +20,7 @@ type simulation struct {
 
 // simulatedBead is the bead and its surroundings.
 type simulatedBead struct {
-	Diameter    float64  `json:"diameter_m"`
+	Diameter    float64  `json:"diameter_m,omitempty"` // of a background without a bead there is none
 	Fluid       string   `json:"fluid,omitempty"`
 	Temperature float64  `json:"temperature_K"`
 	Viscosity   float64  `json:"viscosity_Pa_s"`
@@ -31,8 +31,8 @@ type simulatedBead struct {
 type simulatedFor struct {
 	Name       string  `json:"name"`
 	Stiffness  float64 `json:"stiffness_N_per_m"` // 0 without a trap
-	Drag       float64 `json:"drag_N_s_per_m"`
-	WallFactor float64 `json:"wall_factor"`
+	Drag       float64 `json:"drag_N_s_per_m,omitempty"`
+	WallFactor float64 `json:"wall_factor,omitempty"`
 }
 
 // mostSamples keeps a recording and its text in the memory of a small computer.
@@ -53,7 +53,11 @@ func newSimulation(o simulateOptions, settings *session.Settings) (*simulation, 
 	if err != nil {
 		return nil, err
 	}
-	in, err := newDragInput(settings, measure{math.NaN(), math.NaN()})
+	input := newDragInput
+	if role.Word == "background" {
+		input = newLiquid
+	}
+	in, err := input(settings, measure{math.NaN(), math.NaN()})
 	if err != nil {
 		return nil, err
 	}
@@ -122,15 +126,18 @@ func (p *simulation) addAxis(name, role string, stiffness float64, in dragInput,
 		p.Bead.Height = &height.value
 	}
 	normal, _ := settings.Lookup("fit.perpendicular", "")
-	row, err := in.row(height, name == normal.Word)
-	if err != nil {
-		return err
-	}
-	physical := simulate.Physical{Stiffness: stiffness, Radius: in.diameter.value / 2, Viscosity: in.viscosity.value,
-		WallFactor: row.factor.value, Temperature: in.temperature.value}
-	axis := physical.Axis()
-	if role == "background" {
-		axis = simulate.Axis{Fixed: true}
+	axis, bead := simulate.Axis{Fixed: true}, simulatedFor{Name: name, Stiffness: stiffness}
+	if in.diameter.value > 0 {
+		row, err := in.row(height, name == normal.Word)
+		if err != nil {
+			return err
+		}
+		physical := simulate.Physical{Stiffness: stiffness, Radius: in.diameter.value / 2, Viscosity: in.viscosity.value,
+			WallFactor: row.factor.value, Temperature: in.temperature.value}
+		bead.Drag, bead.WallFactor = physical.Drag(), row.factor.value
+		if role != "background" {
+			axis = physical.Axis()
+		}
 	}
 	axis.Name, axis.Perpendicular = name, name == normal.Word
 	noise, _ := settings.Lookup("recording.noise", name)
@@ -141,7 +148,7 @@ func (p *simulation) addAxis(name, role string, stiffness float64, in dragInput,
 	}
 	p.Truth.Exposure = exposure.Value.SI
 	p.Truth.Axes = append(p.Truth.Axes, axis)
-	p.Axes = append(p.Axes, simulatedFor{Name: name, Stiffness: stiffness, Drag: physical.Drag(), WallFactor: row.factor.value})
+	p.Axes = append(p.Axes, bead)
 	return nil
 }
 

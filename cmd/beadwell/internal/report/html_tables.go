@@ -168,7 +168,7 @@ func budgetTables(r *calib.Result) []table {
 func budgetRow(line calib.BudgetLine) tableRow {
 	value := dash
 	if line.Value.Known() {
-		unit := budgetUnit(line.Unit)
+		unit := budgetUnit(line.Unit, line.Value)
 		value = typeset(withUnit(withStandard(line.Value, line.StandardUncertainty, unit), unit))
 	}
 	sensitivity := dash
@@ -197,10 +197,16 @@ func withStandard(value, standard calib.Float, unit string) string {
 	return number(value, &calib.Uncertainty{Standard: standard, Interval68: nowhere, Interval95: nowhere}, unit)
 }
 
+// shortLength is where lengths begin that are read in nanometres, such as a localisation noise or the length of a pixel [m].
+const shortLength = 1e-6
+
 // budgetUnit is the unit in which an input is read.
-func budgetUnit(unit string) string {
+func budgetUnit(unit string, value calib.Float) string {
 	switch unit {
 	case "m":
+		if math.Abs(float64(value)) < shortLength {
+			return "nm"
+		}
 		return "um"
 	case "s":
 		return "ms"

@@ -51,10 +51,7 @@ func causeValue(q calib.Quantity) string {
 	if !q.Known() {
 		return dash
 	}
-	unit := budgetUnit(q.Unit)
-	if q.Unit == "m" && math.Abs(float64(q.Value)) < 1e-6 {
-		unit = "nm"
-	}
+	unit := budgetUnit(q.Unit, q.Value)
 	return withUnit(combined(q, unit), unit)
 }
 
