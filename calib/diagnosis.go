@@ -88,8 +88,19 @@ func (r *Result) findCause(ctx context.Context, works []*work, opt Options) erro
 	if r.Diagnosis != nil {
 		r.Diagnosis.Companions = names
 		r.Diagnosis.Text += weighedWith(names, unused)
+		if c, bad := r.worst(); bad && !r.Diagnosis.blamesDrift() {
+			r.Diagnosis.Text += " But the recording itself has a fault (" + c.Name + onAxis(c.Axis) + "), which may be the cause: mend that first."
+		}
 	}
 	return nil
+}
+
+// onAxis names an axis, if there is one.
+func onAxis(axis string) string {
+	if axis == "" {
+		return ""
+	}
+	return " on " + axis
 }
 
 // blamesDrift tells whether a slow drift reconciles the routes: it can pass for an event in the recording, and is

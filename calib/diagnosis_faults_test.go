@@ -110,6 +110,24 @@ func TestScaleWithNoise(t *testing.T) {
 	}
 }
 
+// A signal that is clipped hard makes the routes disagree, and no statement is at fault.
+func TestFaultOfTheRecordingComesFirst(t *testing.T) {
+	s := ordinary()
+	rec := s.recording(t, 3)
+	x := rec.Axes[0].Values
+	limit := 1.2 * math.Sqrt(s.simulated(t).Axes[0].Variance) / s.pixel
+	for i, v := range x {
+		x[i] = math.Max(-limit, math.Min(limit, v))
+	}
+	r, err := Calibrate(context.Background(), rec, s.settings(t), Options{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if r.Diagnosis == nil || !strings.HasSuffix(r.Diagnosis.Text, "has a fault (clipping on x), which may be the cause: mend that first.") {
+		t.Errorf("%s, %+v", r.Verdict.Reason, r.Diagnosis)
+	}
+}
+
 // Where the routes agree there is nothing to explain.
 func TestNothingIsInvented(t *testing.T) {
 	for seed := uint64(1); seed <= 6; seed++ {
