@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"path/filepath"
 	"runtime"
+	"slices"
 	"strconv"
 
 	"github.com/spf13/cobra"
@@ -22,6 +23,7 @@ type batchOptions struct {
 	session   string
 	format    string
 	out       string
+	unasked   bool // out is the default
 	reports   string
 	choices   choices
 	drawing   drawing
@@ -92,6 +94,7 @@ func (a *app) batchCommand(run func(context.Context, *app, batchOptions) error) 
 			if err := errors.Join(o.choices.check(cmd), o.drawing.check(cmd, o.out)); err != nil {
 				return err
 			}
+			o.unasked = !cmd.Flags().Changed("out")
 			o.figures = o.reports == reportsAll || cmd.Flags().Changed("figures") || o.drawing.data
 			return run(cmd.Context(), a, o)
 		},
@@ -186,6 +189,9 @@ func runBatch(ctx context.Context, a *app, o batchOptions) error {
 	}
 	if o.dryRun {
 		return a.printPlan(ctx, job)
+	}
+	if !o.quiet && o.unasked && slices.ContainsFunc(job.Files, func(path string) bool { return filepath.Dir(path) == "." }) {
+		a.say("beadwell: results go into %s, in the folder of the recordings; --out takes another place", o.out)
 	}
 	var bar *progress
 	job.Plan = func(all int) { bar = a.newProgress(all, o.quiet) }
