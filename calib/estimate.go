@@ -178,8 +178,10 @@ func (w *work) equipartitionLeg(p relaxation.Process, total, data relaxation.Mat
 		l.reason[equipartitionLeg] = tooUncertain(eq.SD)
 		return
 	}
-	// kT/V is biased by the square of the relative uncertainty, its logarithm by half that
-	l.value[equipartitionLeg] = math.Log(w.phys.kT/eq.Variance) - eq.SD*eq.SD/2
+	// kT over a mean square is biased by the square of its relative uncertainty, its logarithm by half that; noise and corner
+	// frequency, which are maximum-likelihood estimates, add none of the kind
+	own := math.Min(eq.SD, eq.OwnSD)
+	l.value[equipartitionLeg] = math.Log(w.phys.kT/eq.Variance) - own*own/2
 	l.offsets[equipartitionLeg] = w.shaped(amplitudeLeg, eq.SD)
 }
 

@@ -55,6 +55,7 @@ type Input struct {
 type Result struct {
 	Variance    float64               // V [m2]
 	SD          float64               // standard uncertainty of ln V, of the record alone
+	OwnSD       float64               // the part of it that is the scatter of the mean square, with noise and corner frequency exact
 	Blur        float64               // S(a)
 	NoiseShare  float64               // q/s2
 	Length      float64               // L
@@ -112,6 +113,7 @@ func Estimate(in Input) (Result, error) {
 			shared[i] += in.Total[i][j] * grad[j]
 		}
 	}
+	res.OwnSD = gain * math.Sqrt(relative)
 	v := gain*gain*relative + in.Data.Form(slopes, slopes) + in.KeptU*in.KeptU
 	for i := range slopes {
 		v += 2 * gain * slopes[i] * shared[i]
