@@ -1,6 +1,6 @@
 // Command accuracy reruns the accuracy study: simulated recordings of known truth in
 // every regime, calibrated by the whole program, and scored for bias, efficiency,
-// coverage and the size of the tests; with -detection the study of false alarms and detection. It keeps the outcomes in a file, so that a study
+// coverage and the size of the tests; with -detection the study of false alarms and detection, with -folders that of series over folders. It keeps the outcomes in a file, so that a study
 // can be run in parts, and writes docs/accuracy.md or docs/detection.md from it.
 package main
 
@@ -38,12 +38,16 @@ func run() error {
 	limit := flag.Duration("limit", 0, "start no further cell after this time")
 	detection := flag.Bool("detection", false, "study false alarms and detection in place of accuracy")
 	kinds := flag.Bool("kinds", false, "study the other kinds of recordings in place of trapped beads")
+	folders := flag.Bool("folders", false, "study series over folders in place of trapped beads; -runs is the number of folders, 0: 100")
 	flag.Parse()
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt)
 	defer stop()
 	var of, at int
 	if n, err := fmt.Sscanf(*part, "%d/%d", &at, &of); n != 2 || err != nil || at < 1 || at > of {
 		return fmt.Errorf("part %q is not of the form 2/4", *part)
+	}
+	if *folders {
+		return runFolders(ctx, plan{runs: *runs, file: *file, write: *write, limit: *limit})
 	}
 	if *kinds {
 		return runKinds(ctx, plan{runs: *runs, at: at - 1, of: of, match: *match, file: *file, write: *write, limit: *limit})

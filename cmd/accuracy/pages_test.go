@@ -20,6 +20,11 @@ func TestPagesAreOfTheResults(t *testing.T) {
 			writeKinds(w, kindCells(), known)
 			return err
 		},
+		"accuracy-folders.md": func(w *strings.Builder) error {
+			known, err := load[FolderScore]("results/folders.json")
+			writeFolders(w, known)
+			return err
+		},
 		"detection.md": func(w *strings.Builder) error {
 			known, err := load[Detection]("results/detection.json")
 			writeDetection(w, detectionCells(), known)
