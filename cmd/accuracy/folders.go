@@ -276,7 +276,7 @@ Simulated folders of known truth, calibrated by `+"`beadwell batch`"+` and score
 A folder of six powers, 20 to 120 mW, 8 um above the surface, and one of eight heights, 0.70 to 8 um, with a hidden reading at the surface; each recording
 has 20,000 positions at 20 kHz along one axis; its drag is constant. In each folder the truth is off by what is stated: diameter %g(%g) um, temperature %g(%g) C, height scale %g(%g), power meter %g %%.
 Bias is the mean error over the combined standard uncertainty, whose own standard error is one over the root of the folders; the spread of that ratio is 1 when the
-uncertainty is right. A coverage of 64 folders has a standard error of 2.7 %%. With points in place of recordings, 1000 folders each:
+uncertainty is right. A coverage of 72 folders has a standard error of 2.6 %%. With points in place of recordings, 1000 folders each:
 `+"`go test ./cmd/beadwell/internal/batch -run CoverageOverFolders -v -folders 1000`"+`.
 
 | folder | series | number | folders | without | root mean square error | bias | spread | 95 %% intervals hold, %% |
