@@ -115,7 +115,7 @@ What to do: calibrate the parts apart; look at the sample.` + caution,
 	{
 		Code: "rough-steps", Title: "steps that are too large", unit: "1",
 		reason: "Lost samples that leave no gap, and single wrong positions, distort the fast part of the spectrum and the noise.",
-		Long: `Looked at: the excess kurtosis of the steps from each sample to the next, which is 0 for a trapped bead whatever its trap. If a share p of the steps span two intervals it is about 3p where the corner frequency is small against the sampling rate, and vanishes where it is not. Doubtful beyond 3.1 standard deviations and above 0.01, on one axis or on all of them together; bad above 5. A loss of 2 % without a trace shows in 250000 samples of one axis at fc/fs = 0.01, and above fc/fs = 0.1 not even in a million: there only time stamps or frame numbers tell.
+		Long: `Looked at: the excess kurtosis of the steps from each sample to the next, which is 0 for a trapped bead whatever its trap. If a share p of the steps span two intervals it is about 3p where the corner frequency is small against the sampling rate, and vanishes where it is not. Doubtful beyond 3.3 standard deviations and above 0.01, on one axis or on all of them together; bad above 5. A loss of 2 % without a trace shows in 250000 samples of one axis at fc/fs = 0.01, and above fc/fs = 0.1 not even in a million: there only time stamps or frame numbers tell.
 What to do: compare the frame numbers of camera and file, record with time stamps, look at the largest steps in the track.`,
 	},
 	{

@@ -88,7 +88,7 @@ func kurtosisDeviate(g, n float64) float64 {
 }
 
 const (
-	stepsBeyond = 3.1  // deviates, one-sided: 1e-3
+	stepsBeyond = 3.3  // deviates, one-sided: 5e-4
 	stepsFloor  = 0.01 // 2 % of steps over two intervals make 0.057 where fc is small against the rate, 0.01 at fc/fs = 0.14
 	stepsBad    = 5.0
 )

@@ -111,8 +111,8 @@ func writeStatements(w io.Writer, list []trialCell, known map[string]*Detection)
 	fmt.Fprintf(w, `## Wrong statements
 
 Stated with standard uncertainties of %g %% of the diameter, %g K, %g %% of the height, %g %% of the pixel, %g %% of the stage's amplitude, unless the setup
-says exact. Columns in %%: found, the verdict is inconsistent or the diagnosis is made; power, what theory allows (the likelihood-ratio test at the level of the verdict, a
-noncentral chi-square from the expected log-likelihood); tied, of those found, the true cause is in the top group; alone, it is all of it; theory,
+says exact. Columns in %%: found, the verdict is inconsistent or the diagnosis is made, or, of a drift, a check is raised; power, what theory allows (the likelihood-ratio test at the level of the verdict, a
+noncentral chi-square from the expected log-likelihood); tied, of those diagnosed, the true cause is in the top group; alone, it is all of it; theory,
 what the distance to the next cause allows; excluded, the group holds a cause whose remaining disagreement has p < %g; covered, the 95 %% interval of the
 value that would reconcile holds the true one, where there is one. Where theory says 0 another cause has the very same pattern.
 
@@ -128,7 +128,11 @@ value that would reconcile holds the true one, where there is one. Where theory 
 			covered = percentOf(d.Covered, d.Top)
 		}
 		n, of := d.Runs-d.Failed, d.Diagnosed
-		fmt.Fprintf(w, "| %s | %s | %d | %s | %s | %s | %s | %s | %s | %s |\n", cells[i].fault.name, cells[i].setup.name, n, percentOf(of, n), power,
+		found := of
+		if cells[i].fault.code == calib.CauseDrift {
+			found = d.Any
+		}
+		fmt.Fprintf(w, "| %s | %s | %d | %s | %s | %s | %s | %s | %s | %s |\n", cells[i].fault.name, cells[i].setup.name, n, percentOf(found, n), power,
 			percentOf(d.Top, of), percentOf(d.Alone, of), alone, percentOf(d.Excluded, of), covered)
 	}
 	fmt.Fprintln(w)
