@@ -18,10 +18,9 @@ func powerAt(lambda, level float64) float64 {
 // not make at all, such as a value at which samples pile up, a gap between time stamps, or a bead that is gone.
 func (c trialCell) checked() Ideal {
 	truth, _ := c.scenes()
-	lambda, level := math.NaN(), checkLevel
+	lambda, level := 0.0, checkLevel
 	switch c.fault.shape {
 	case straightDrift:
-		lambda = 0
 		for _, s := range sightsOf(truth) {
 			// the variance of a straight line's rise over a record of length T is 12 S(0)/T, S two-sided
 			duration := float64(truth.samples) / truth.rate
@@ -38,7 +37,6 @@ func (c trialCell) checked() Ideal {
 			lambda -= 2 * f.value
 		}
 	case narrowLine:
-		lambda = 0
 		for _, s := range sightsOf(truth) {
 			// the energy A^2 T/2 of a sinusoid over the two-sided spectrum; all frequencies are tried
 			amplitude := lineShare * math.Sqrt2 * thermal(truth.soft[s.axis])
