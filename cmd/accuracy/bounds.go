@@ -130,10 +130,11 @@ Monte-Carlo errors; of figures that meet it exactly one in forty does so by chan
 	for _, j := range all {
 		fmt.Fprintf(w, "| %s | %d | %d |\n", j.title, j.pairs, len(j.outside))
 	}
-	fmt.Fprint(w, "\nOutside:\n\n")
+	title := "\nOutside:\n\n"
 	for _, j := range all {
 		for _, s := range j.outside {
-			fmt.Fprintf(w, "- %s (%s)\n", s, strings.SplitN(j.title, " (", 2)[0])
+			fmt.Fprintf(w, "%s- %s (%s)\n", title, s, strings.SplitN(j.title, " (", 2)[0])
+			title = ""
 		}
 	}
 	fmt.Fprint(w, "\nEfficiency, averaged over the cells by their recordings, with its Monte-Carlo error:\n\n| estimate |")
