@@ -192,7 +192,7 @@ func runAll(ctx context.Context, works []*work) error {
 	if len(works) > 0 && len(works[0].recorded.Values) >= longRecord {
 		workers = 1
 	}
-	limit := make(chan struct{}, max(workers, 1))
+	limit := make(chan struct{}, workers)
 	var group sync.WaitGroup
 	for i, w := range works {
 		group.Go(func() {

@@ -130,7 +130,7 @@ func (s pairSums) fast(missing bool) Quantity {
 // startPairs begins to add up the pairs of the axes of a recording, and returns what waits for the sums: nil where axes cannot be
 // compared. The checks go through each axis at the same time.
 func startPairs(works []*work, gathered *Gatherer) (wait func() []pairSums) {
-	if !comparable(works) {
+	if !sameSamples(works) {
 		return func() []pairSums { return nil }
 	}
 	var sums []pairSums
@@ -149,7 +149,8 @@ func startPairs(works []*work, gathered *Gatherer) (wait func() []pairSums) {
 	}
 }
 
-func comparable(works []*work) bool {
+// sameSamples tells that all axes were fitted, over the same samples, and that there are two at least.
+func sameSamples(works []*work) bool {
 	for _, w := range works {
 		if w.fitErr != nil || w.record.Samples != works[0].record.Samples {
 			return false

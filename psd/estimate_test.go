@@ -393,3 +393,20 @@ func TestWhiteNoise(t *testing.T) {
 		}
 	}
 }
+
+// A first sample that is far from the others costs them no digits: their second differences are those that were recorded, to the rounding
+// of the line through all of them, some 1e5 rms x 1e-16, and not to that of 1e8 rms.
+func TestPrepareFarFirst(t *testing.T) {
+	x := simulate.Record(simulate.Truth{Samples: 3000, Rate: 500, Axes: []simulate.Axis{{Fixed: true, Noise: rms}}}, 1)[0]
+	x[0] = 1e8 * rms
+	r, err := psd.Prepare(x, 500)
+	if err != nil {
+		t.Fatal(err)
+	}
+	for i := 2; i < len(x)-1; i++ {
+		got, want := r.X[i+1]-2*r.X[i]+r.X[i-1], x[i+1]-2*x[i]+x[i-1]
+		if math.Abs(got-want) > 1e-10*rms {
+			t.Fatalf("sample %d: second difference %g, want %g", i, got, want)
+		}
+	}
+}

@@ -64,9 +64,9 @@ func (h Hydrodynamic) Bias(d Design) (Bias, error) {
 	return Bias{math.Expm1(corner), math.Expm1(corner + variance), math.Expm1(variance)}, nil
 }
 
-// biasSamples makes the weights of the blocks large: the search ends at a gain of the
-// log-likelihood that is small against one.
-const biasSamples = 1 << 20
+// biasSamples makes the weights of the blocks large: the search ends at a gain of the log-likelihood that is small against
+// one. What a form with the leakage of a finite record owes to it is below 1e-4 from fc/fs = 1e-4 on.
+const biasSamples = 1 << 26
 
 // blocks returns the band in blocks without power.
 func (d Design) blocks() relaxation.Blocks {

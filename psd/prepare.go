@@ -83,16 +83,11 @@ func PrepareIn(x []float64, unit, rate float64) (*Record, error) {
 // from the reference, times from the middle of the record.
 type lineSums struct {
 	n, sum, moment, square, product float64
-	power                           float64 // sum of the squares of the positions
-	far                             int     // first sample where no position can be, or -1
+	far                             int // first sample where no position can be, or -1
 }
 
-// nearReference is the distance of the mean from the reference, in standard deviations about the mean, up to which sums of
-// positions from the reference are as good as sums about the mean: they lose its square of 1e16 digits.
-const nearReference = 1000
-
-// fitLine returns the least-squares line of the sums of pieces, its level from the reference, and whether they were near enough to their reference.
-func fitLine(pieces []lineSums) (line straight, observed int, near bool) {
+// fitLine returns the least-squares line of the sums of pieces, its level from the reference.
+func fitLine(pieces []lineSums) (line straight, observed int) {
 	var all lineSums
 	for _, p := range pieces {
 		all.n += p.n
@@ -100,13 +95,11 @@ func fitLine(pieces []lineSums) (line straight, observed int, near bool) {
 		all.moment += p.moment
 		all.square += p.square
 		all.product += p.product
-		all.power += p.power
 	}
 	mean, centre := all.sum/all.n, all.moment/all.n
 	line.slope = (all.product - all.n*centre*mean) / (all.square - all.n*centre*centre)
 	line.level = mean - line.slope*centre
-	near = mean*mean < nearReference*nearReference*(all.power/all.n-mean*mean)
-	return line, int(all.n), near
+	return line, int(all.n)
 }
 
 // add counts one sample: v is the position from the reference, t the time.
@@ -116,14 +109,13 @@ func (s *lineSums) add(v, t float64) {
 	s.moment += t
 	s.square += t * t
 	s.product += t * v
-	s.power += v * v
 }
 
-// removeLine finds the least-squares straight line of the source, in a second pass, where the first sample was far from
-// the others, what rounding left.
+// removeLine finds the least-squares straight line of the source, from sums of positions about a reference among them.
 func (r *Record) removeLine() error {
 	pieces := make([]lineSums, transform.Pieces(r.Samples))
-	reference, mid := r.firstKnown(), float64(r.Samples-1)/2
+	mid := float64(r.Samples-1) / 2
+	r.base = r.reference()
 	transform.InPieces(r.Samples, func(piece, from, to int) {
 		s := lineSums{far: -1}
 		for i, v := range r.source[from:to] {
@@ -132,7 +124,7 @@ func (r *Record) removeLine() error {
 				s.far = from + i
 			}
 			if v == v {
-				s.add(v-reference, float64(from+i)-mid)
+				s.add(v-r.base, float64(from+i)-mid)
 			}
 		}
 		pieces[piece] = s
@@ -142,42 +134,34 @@ func (r *Record) removeLine() error {
 			return fmt.Errorf("sample %d is at %g m, where no position can be", p.far, r.source[p.far]*r.unit)
 		}
 	}
-	first, observed, near := fitLine(pieces)
-	r.Missing = r.Samples - observed
-	if near {
-		r.setLine(reference, first, straight{})
-		return nil
-	}
-	transform.InPieces(r.Samples, func(piece, from, to int) {
-		var s lineSums
-		for i, v := range r.source[from:to] {
-			t := float64(from+i) - mid
-			if v = v*r.unit - reference - (first.level + first.slope*t); v == v {
-				s.add(v, t)
-			}
-		}
-		pieces[piece] = s
-	})
-	second, _, _ := fitLine(pieces)
-	r.setLine(reference, first, second)
+	line, observed := fitLine(pieces)
+	r.rest, r.Missing = line, r.Samples-observed
+	r.Mean, r.Slope = r.base+line.level, line.slope*r.Rate
 	return nil
 }
 
-// setLine sets what is taken off the source: two lines about a reference.
-func (r *Record) setLine(reference float64, first, second straight) {
-	r.base, r.rest = reference, straight{level: first.level + second.level, slope: first.slope + second.slope}
-	r.Mean = reference + r.rest.level
-	r.Slope = r.rest.slope * r.Rate
+// reference is the median of three samples that are not missing, the first from the beginning and from the middle and the last of
+// all: one of them may be far from where the bead is.
+func (r *Record) reference() float64 {
+	var known []float64
+	known = r.appendKnown(known, 0, 1)
+	known = r.appendKnown(known, r.Samples/2, 1)
+	known = r.appendKnown(known, r.Samples-1, -1)
+	if len(known) == 0 {
+		return 0
+	}
+	slices.Sort(known)
+	return known[len(known)/2]
 }
 
-// firstKnown returns the first sample that is not missing.
-func (r *Record) firstKnown() float64 {
-	for _, v := range r.source {
-		if v *= r.unit; v == v && math.Abs(v) <= farthest {
-			return v
+// appendKnown appends the first sample that is not missing, going one way from one on.
+func (r *Record) appendKnown(known []float64, from, step int) []float64 {
+	for i := from; i >= 0 && i < r.Samples; i += step {
+		if v := r.source[i] * r.unit; v == v && math.Abs(v) <= farthest {
+			return append(known, v)
 		}
 	}
-	return 0
+	return known
 }
 
 // Release lets go of X and Power, the large parts of a long record, when Restore can make X again.

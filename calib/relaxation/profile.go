@@ -44,7 +44,7 @@ func (pr Problem) Profile(m Maximum, weights Parameters, sd float64) Offsets {
 	if total, _, err := pr.Covariance(m.Information); err == nil {
 		if variance := total.Form(weights, weights); variance > 0 {
 			for k := range v.course {
-				v.course[k] = total.Form(unit(k), weights) / variance
+				v.course[k] = total.Form(allDirections[k], weights) / variance
 			}
 		}
 	}
@@ -53,11 +53,6 @@ func (pr Problem) Profile(m Maximum, weights Parameters, sd float64) Offsets {
 
 // profiled is the gain in log-likelihood at which the search of a point of a profile ends: its root is right to as much.
 const profiled = 1e-7
-
-func unit(k int) (u Parameters) {
-	u[k] = 1
-	return u
-}
 
 // valley is a profile: the likelihood at given values of weights . p, greatest over the rest.
 type valley struct {
